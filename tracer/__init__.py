@@ -1,0 +1,31 @@
+"""Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
+
+`load_run`, `run`, `open_product` and `save_product` are loaded when they are first asked for, so that
+`import tracer` costs nothing.
+"""
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from tracer.engine.runspec.load import load_run
+    from tracer.engine.tracing import run
+    from tracer.product.reading import open_product
+    from tracer.product.writing import save_product
+
+__all__ = ["__version__", "load_run", "open_product", "run", "save_product"]
+
+_HOMES = {
+    "load_run": "tracer.engine.runspec.load",
+    "open_product": "tracer.product.reading",
+    "run": "tracer.engine.tracing",
+    "save_product": "tracer.product.writing",
+}
+
+
+def __getattr__(name: str) -> Any:
+    if name == "__version__":
+        return import_module("importlib.metadata").version("exosphere-tracer")
+    if name in _HOMES:
+        return getattr(import_module(_HOMES[name]), name)
+    raise AttributeError(f"module 'tracer' has no attribute {name!r}")
