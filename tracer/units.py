@@ -137,6 +137,8 @@ def quoted(value: object) -> str:
     """Return `value` as a run file would show it, on one printable line of at most 60 characters."""
     if isinstance(value, Mapping):
         return "a table"
+    if isinstance(value, list | tuple) and any(isinstance(entry, Mapping) for entry in value):
+        return "a list of tables"
     if isinstance(value, float):
         return float.__repr__(value)
     text = json.dumps(value, ensure_ascii=False, default=str)

@@ -21,10 +21,12 @@ def shown_progress() -> Iterator[Watcher]:
         return
     columns = (TextColumn("tracing"), BarColumn(), TaskProgressColumn(), TextColumn("{task.description}"))
     with Progress(*columns, TimeRemainingColumn(), console=Console(stderr=True)) as bar:
-        task = bar.add_task("starting", total=None)
-        begin = monotonic()
+        task = bar.add_task("compiling", total=None)
+        begin: float | None = None
 
         def show(status: Status) -> None:
+            nonlocal begin
+            begin = begin or monotonic()
             text = _figures(status, monotonic() - begin)
             bar.update(task, completed=status.atoms, total=status.atoms_expected, description=text)
 
@@ -32,12 +34,15 @@ def shown_progress() -> Iterator[Watcher]:
 
 
 def _plain_lines() -> Watcher:
-    begin = monotonic()
-    last = begin
+    begin: float | None = None
+    last = 0.0
 
     def show(status: Status) -> None:
-        nonlocal last
+        nonlocal begin, last
         now = monotonic()
+        if begin is None:
+            # Compiling is over when the first word comes: it says nothing about the rate.
+            begin = last = now
         if now - last < SECONDS_BETWEEN_LINES:
             return
         last = now

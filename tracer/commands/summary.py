@@ -77,7 +77,7 @@ def _tallied(ds: xr.Dataset) -> list[str]:
 
 
 def _variable_rows(ds: xr.Dataset) -> list[tuple[str, ...]]:
-    rows = []
+    rows: list[tuple[str, ...]] = []
     for name in _tallied(ds):
         error = _median_relative_error(ds, name)
         precision = "never hit" if error != error else f"{100 * error:.3g} %"

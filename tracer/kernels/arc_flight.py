@@ -71,7 +71,7 @@ def score_arc(world, tally, arc, s_end, weight, rng):
     times r ds. Even strata of s, not of time, put more of the samples near the body, where cells are small.
     """
     motion = world.motion
-    width = s_end / SAMPLES_PER_FLIGHT
+    width = s_end / max(1, SAMPLES_PER_FLIGHT)
     for k in range(SAMPLES_PER_FLIGHT):
         t, r, x, y, z = position_at(arc, (k + rng.random()) * width)
         x, y = turned(x, y, motion.frame_rate * t)

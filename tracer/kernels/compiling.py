@@ -1,7 +1,9 @@
 """The compiler options of all kernels, in one place.
 
 No `fastmath`: with it other CPU features give other sums, and a product must be the same to the last bit for any
-number of workers. `error_model="numpy"` lets divisions vectorise; `nogil` lets threads run side by side.
+number of workers. `error_model="numpy"` lets divisions vectorise; `nogil` lets threads run side by side. Kernels that
+allocate nothing also do without numba's reference counts: counted atomically for every array of every NamedTuple at
+every call, they took more time than the flights themselves.
 """
 
 import numba
@@ -12,5 +14,10 @@ OPTIONS = {"nogil": True, "error_model": "numpy"}
 
 
 def kernel(function):
-    """Compile `function` on its first call with the project's options and keep the machine code between starts."""
+    """Compile `function`, which allocates nothing, on its first call and keep the machine code between starts."""
+    return code_cache.attach(numba.njit(**OPTIONS, _nrt=False)(function))
+
+
+def allocating_kernel(function):
+    """Compile `function`, which makes arrays, on its first call and keep the machine code between starts."""
     return code_cache.attach(numba.njit(**OPTIONS)(function))

@@ -6,10 +6,10 @@ import numpy as np
 
 from tracer.kernels.arc import highest, position_at
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import allocating_kernel
 
 
-@kernel
+@allocating_kernel
 def single_hops(motion, positions, velocities):
     """Return (endings, durations [s], arcs [rad], apexes [m]) of launches, each (n,).
 

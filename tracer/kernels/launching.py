@@ -3,10 +3,10 @@
 import numpy as np
 
 from tracer.kernels.bounce import direction_about
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import allocating_kernel
 
 
-@kernel
+@allocating_kernel
 def velocities(positions, speeds, cosines, azimuths):
     """Return velocities (n, 3) [m s-1] of launches at unit vectors `positions` (n, 3).
 

@@ -3,7 +3,7 @@
 import math
 from typing import NamedTuple
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import allocating_kernel, kernel
 
 UNIFORM = 0
 QUARTER_POWER = 1
@@ -28,7 +28,7 @@ def temperature(law, x, y, z):
     return law.night + (law.subsolar - law.night) * math.sqrt(math.sqrt(x))
 
 
-@kernel
+@allocating_kernel
 def temperatures(law, positions):
     """Return the temperatures [K], (n,), at unit vectors `positions`, (n, 3)."""
     result = positions[:, 0].copy()

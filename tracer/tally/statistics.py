@@ -53,4 +53,4 @@ class BatchStatistics:
         """Return each replicate's mean over its batches, shape (replicates, layout.replicated_size)."""
         replicates = self.replicate_sum.shape[0]
         counts = np.array([len(range(i, self.batches, replicates)) for i in range(replicates)], dtype=float)
-        return self.replicate_sum / counts[:, np.newaxis]
+        return np.asarray(self.replicate_sum / counts[:, np.newaxis])

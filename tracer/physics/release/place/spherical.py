@@ -14,7 +14,7 @@ def around_axis(axis: tuple[float, float, float], cosine: Floats, turn: Floats) 
     second = np.cross(n, first)
     sine = np.sqrt(np.maximum(0.0, 1.0 - cosine * cosine))
     azimuth = 2.0 * np.pi * turn
-    return (
+    return np.asarray(
         cosine[:, np.newaxis] * n
         + (sine * np.cos(azimuth))[:, np.newaxis] * first
         + (sine * np.sin(azimuth))[:, np.newaxis] * second

@@ -50,7 +50,7 @@ def cumulative(y: Floats, cutoff: float) -> Floats:
     whole = 0.5 * (y / (1.0 + y)) ** 2
     h = y / (1.0 + root)  # sqrt(1 + y) - 1
     half = 2.0 * h / root - (2.0 / 3.0) * h * (1.0 + root + root * root) / root**3
-    return whole - half / np.sqrt(cutoff)
+    return np.asarray(whole - half / np.sqrt(cutoff))
 
 
 def _density(y: Floats, cutoff: float) -> Floats:

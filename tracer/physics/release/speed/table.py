@@ -26,7 +26,7 @@ class Table(NamedTuple):
         # The root of slope/2 d^2 + start d = rest in the form that stays exact for a small slope.
         sum_ = start + root
         distance = np.divide(2.0 * rest, sum_, out=np.zeros_like(rest), where=sum_ > 0.0)
-        return np.minimum(self.speed[i] + distance, self.speed[i + 1])
+        return np.asarray(np.minimum(self.speed[i] + distance, self.speed[i + 1]))
 
     def mean_speed(self, surface_temperature: float, mass: float) -> float:
         """Return the mean launch speed [m s-1], exact for the piecewise linear pdf."""
