@@ -1,6 +1,8 @@
 """Density, columns and images above a uniform thermal source against Chamberlain 1963, Planet. Space Sci. 11, 901."""
 
 from collections.abc import Callable
+from decimal import Decimal
+from itertools import pairwise
 from math import exp, pi, sqrt
 
 import numpy as np
@@ -12,7 +14,7 @@ from tracer.constants import ATOMIC_MASS, BOLTZMANN
 
 RADIUS, GM, RATE = 1e6, 1e12, 1e24
 HELIUM = 4.002602 * ATOMIC_MASS
-OUTER = 1000.0
+OUTER = 1e4
 G = gamma(1.5)
 
 RUN = """
@@ -31,7 +33,7 @@ direction = {{ law = "{direction}" }}
 [surface]
 sticking = 1.0
 [domain]
-outer_radius = "1000 radii"
+outer_radius = "1e4 radii"
 age_limit = "1000 yr"
 [grid]
 altitude = {{ first_cell = "{first} km", top = "{top} radii", cells = {cells} }}
@@ -83,7 +85,9 @@ def shell_mean(jeans: float, low: float, high: float) -> float:
     """Return n/n_c averaged over the volume between `low` and `high` radii."""
     # With x = 1 + w^2 the root of the profile at the ground becomes smooth.
     content = quad(
-        lambda w: density(jeans, 1.0 + w * w) * (1.0 + w * w) ** 2 * 2.0 * w, sqrt(low - 1.0), sqrt(high - 1.0)
+        lambda w: density(jeans, 1.0 + w * w) * (1.0 + w * w) ** 2 * 2.0 * w,
+        sqrt(low - 1.0),
+        sqrt(high - 1.0),
     )[0]
     return content / ((high**3 - low**3) / 3.0)
 
@@ -115,7 +119,11 @@ def phase_space(jeans: float, x: float, escapes: bool, outer: float = np.inf) ->
     if escapes:
         value = quad(share, edge, 30.0, epsabs=0.0, epsrel=1e-11, limit=400)[0]
     else:
-        value = quad(share, 0.0, edge, points=[min(kink, edge)], epsabs=0.0, epsrel=1e-11, limit=400)[0]
+        least = sqrt(max(0.0, lam - jeans / outer))
+        points = sorted({0.0, min(kink, edge), least, edge})
+        value = sum(
+            quad(share, low, high, epsabs=0.0, epsrel=1e-11, limit=400)[0] for low, high in pairwise(points)
+        )
     return exp(lam - jeans) * pi**-1.5 * value
 
 
@@ -131,7 +139,7 @@ def tangential_column(jeans: float, b: float) -> float:
         z = start + w * w
         return density(jeans, max(1.0, sqrt(b * b + z * z))) * 2.0 * w
 
-    half = sum(quad(integrand, low, high)[0] for low, high in zip(pieces[:-1], pieces[1:], strict=True))
+    half = sum(quad(integrand, low, high)[0] for low, high in pairwise(pieces))
     return half if b < 1.0 else 2.0 * half
 
 
@@ -142,14 +150,15 @@ def tangential_column(jeans: float, b: float) -> float:
 def test_formula_equals_the_table_and_the_phase_space_integral(x):
     # n/n_c at lambda_c = 5, ballistic and escaping: computed for this project by quadrature.
     table = {
-        1.1: (0.59231, 6.035e-3),
-        1.5: (0.14573, 3.017e-3),
-        2.0: (0.047686, 1.752e-3),
-        3.0: (0.011803, 8.494e-4),
-        5.0: (0.0024294, 3.478e-4),
+        1.1: ("0.59231", "6.035e-3"),
+        1.5: ("0.14573", "3.017e-3"),
+        2.0: ("0.047686", "1.752e-3"),
+        3.0: ("0.011803", "8.494e-4"),
+        5.0: ("0.0024294", "3.478e-4"),
     }
-    assert ballistic(5.0, x) == pytest.approx(table[x][0], rel=3e-5)
-    assert escaping(5.0, x) == pytest.approx(table[x][1], rel=2e-4)
+    for found, printed in zip((ballistic(5.0, x), escaping(5.0, x)), table[x], strict=True):
+        last_digit = 10.0 ** Decimal(printed).as_tuple().exponent
+        assert found == pytest.approx(float(printed), abs=0.51 * last_digit)
     assert ballistic(5.0, x) == pytest.approx(phase_space(5.0, x, escapes=False), rel=1e-8)
     assert escaping(5.0, x) == pytest.approx(phase_space(5.0, x, escapes=True), rel=1e-8)
 
@@ -160,14 +169,14 @@ def test_formula_gives_the_known_vertical_columns(jeans, column):
     pieces = [0.0, 0.3, 1.0, 3.0, 10.0, 100.0, 1000.0]
     found = sum(
         quad(lambda w: ballistic(jeans, 1.0 + w * w) * 2.0 * w, low, high)[0]
-        for low, high in zip(pieces[:-1], pieces[1:], strict=True)
+        for low, high in pairwise(pieces)
     )
     assert jeans * found == pytest.approx(column, rel=1e-5)
 
 
-def test_outer_radius_of_a_thousand_radii_leaves_the_density_alone():
-    # Bound atoms that cross R_o do not come back: less than 2e-4 of the density anywhere in the grid.
-    for x in (1.5, 4.0, 9.9):
+def test_outer_radius_of_the_runs_leaves_the_density_alone():
+    # Bound atoms that cross R_o = 1e4 R do not come back: less than 2e-4 of the density anywhere in the grid.
+    for x in (1.5, 4.0, 10.9):
         cut = phase_space(5.0, x, escapes=False, outer=OUTER) + escaping(5.0, x)
         assert cut == pytest.approx(density(5.0, x), rel=2e-4)
 
@@ -193,10 +202,10 @@ pixels = [24, 24]
             direction=direction,
             kelvin=kelvin(jeans),
             first=first,
-            top=9 if jeans < 8.0 else 2,
+            top=10 if jeans < 8.0 else 2,
             cells=8,
             image=image,
-            particles=6_000,
+            particles=12_000 if (law, direction) == ("maxwell-flux", "cosine") else 3_000,
         )
         return traced(text)
 
@@ -246,8 +255,8 @@ def test_vertical_column_to_the_grids_top_is_chamberlains(thermal, jeans):
     top = sqrt(product.altitude_bounds.values[-1, 1] / RADIUS)
     height = quad(lambda w: density(jeans, 1.0 + w * w) * 2.0 * w, 0.0, top, limit=200)[0]
     if jeans == 5.0:
-        # To 10 R at lambda_c 5, over n_c H: 1.3947 + 0.0343, computed for this project by quadrature.
-        assert jeans * height == pytest.approx(1.3947 + 0.0343, rel=1e-4)
+        # To an altitude of 10 R at lambda_c 5, over n_c H: 1.3947 + 0.0343, computed for this project by quadrature.
+        assert jeans * height == pytest.approx(1.3947 + 0.0343, abs=1.02e-4)
     weights = product.cell_area / product.cell_area.sum() / product.sizes["local_time"]
     found = (product.vertical_column * weights).sum().item()
     each = (product.vertical_column_replicates * weights).sum(("latitude", "local_time", "release"))
@@ -281,7 +290,7 @@ def _rings(product, jeans: float):
     mean = np.einsum("ijkl,k,l->ij", known, weights, weights) / 4.0
     limits = [0.0, 0.6, 1.0, 1.25, 1.5, 1.75, 2.0, 2.5, 3.0, 4.3]
     rings, found, error, expected = [], [], [], []
-    for low, high in zip(limits[:-1], limits[1:], strict=True):
+    for low, high in pairwise(limits):
         middle = 0.5 * (nearest + farthest)
         # Pixels across the limb mix hidden and free lines of sight: their quadrature is poor, leave them out.
         inside = (middle >= low) & (middle < high) & ((farthest < 1.0) | (nearest > 1.0))
