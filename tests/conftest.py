@@ -10,7 +10,7 @@ from tracer.engine.runspec.load import load_run, parse_run
 from tracer.engine.tracing import run
 
 SMALL_RUN = """
-title = "Sodium and helium over Harrow"
+title = "Sodium over Harrow, small"
 
 [body]
 name = "Harrow"
@@ -26,10 +26,10 @@ name = "charge exchange"
 rate = "1e-5 s-1"
 
 [[release]]
-name = "photon desorption"
+name = "impact vapour"
 rate = "2e24 s-1"
-speed = { law = "maxwell-flux", temperature = "1200 K" }
-place = { law = "cosine-power", toward = "sun" }
+speed = { law = "maxwell-flux", temperature = "3500 K" }
+place = { law = "cosine-power", toward = "dawn", power = 1 }
 
 [[release]]
 name = "sputtering"
