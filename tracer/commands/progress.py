@@ -43,6 +43,8 @@ def _plain_lines() -> Watcher:
         if begin is None:
             # Compiling is over when the first word comes: it says nothing about the rate.
             begin = last = now
+            text = f"tracing {status.atoms_expected:,} particles on {status.workers} workers"
+            print(text, file=sys.stderr, flush=True)
         if now - last < SECONDS_BETWEEN_LINES:
             return
         last = now

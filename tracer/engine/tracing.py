@@ -98,7 +98,7 @@ def _fold_all(
             folder.take(task, result)
             tick()
     finally:
-        # Whatever ended the loop, batches under way stop at their next slice: closing waits for them.
+        # Whatever ended the loop, batches under way stop at their next slice.
         stop.set()
         results.close()
 

@@ -18,25 +18,26 @@ def map_batches(
 ) -> Generator[tuple[Task, BatchResult], None, None]:
     """Yield (task, result) for each task, in the order in which they finish; `tick` is called while waiting.
 
-    Tasks start in their order; a new one starts when a result was taken. Closing the generator waits for the tasks
-    under way, so whoever stops early tells `trace` first.
+    Tasks start in their order; a new one starts when a result was taken. Whoever stops early, or is interrupted, tells
+    `trace` to give up: tasks under way are left to end by themselves.
     """
     waiting = iter(tasks)
-    with ThreadPoolExecutor(workers, thread_name_prefix="tracer") as pool:
-        running: dict[Future[BatchResult], Task] = {}
+    pool = ThreadPoolExecutor(workers, thread_name_prefix="tracer")
+    running: dict[Future[BatchResult], Task] = {}
 
-        def start(count: int) -> None:
-            for task in islice(waiting, count):
-                running[pool.submit(trace, task)] = task
+    def start(count: int) -> None:
+        for task in islice(waiting, count):
+            running[pool.submit(trace, task)] = task
 
-        try:
-            start(WINDOW * workers)
-            while running:
-                done, _ = wait(running, timeout=POLL_SECONDS, return_when=FIRST_COMPLETED)
-                tick()
-                for future in done:
-                    task = running.pop(future)
-                    yield task, future.result()
-                    start(1)
-        finally:
-            pool.shutdown(wait=False, cancel_futures=True)
+    try:
+        start(WINDOW * workers)
+        while running:
+            done, _ = wait(running, timeout=POLL_SECONDS, return_when=FIRST_COMPLETED)
+            tick()
+            for future in done:
+                task = running.pop(future)
+                yield task, future.result()
+                start(1)
+    finally:
+        # Waiting here would wait for whole batches: only the caller can tell them to stop.
+        pool.shutdown(wait=False, cancel_futures=True)
