@@ -31,6 +31,7 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
     {
         "length": Dimension("length", "m", "1800 km"),
         "length or radii": Dimension("length", "m", "10 radii", radii_allowed=True),
+        "wavelength": Dimension("wavelength", "m", "589.2 nm"),
         "temperature": Dimension("temperature", "K", "1200 K"),
         "speed": Dimension("speed", "m s-1", "2 km/s"),
         "angle": Dimension("angle", "deg", "30 deg"),

@@ -39,6 +39,10 @@ def table(required: dict[str, Any], optional: dict[str, Any] | None = None) -> S
     return st.fixed_dictionaries(required, optional=optional)
 
 
+def lists_of_named(entries: SearchStrategy[dict[str, Any]]) -> SearchStrategy[list[dict[str, Any]]]:
+    return st.lists(entries, max_size=2, unique_by=lambda entry: entry["name"])
+
+
 def law(name: str, **keys: Any) -> SearchStrategy[dict[str, Any]]:
     return table({"law": st.just(name), **keys})
 
@@ -109,19 +113,50 @@ BODIES = table(
         ),
     },
 )
-GASES = table(
-    {"species": LINES},
-    {
-        "mass": quantities(0.0, 300.0, "u", "Da"),
-        "loss": st.lists(table({"name": LINES, "rate": RATES}), max_size=2),
-    },
+SUN_KEYS = {
+    "tide": st.booleans(),
+    "motion": st.just("stationary"),
+    "shadow": st.sampled_from(["penumbra", "cylinder", "none"]),
+    "solar_activity": st.floats(0.0, 1.0),
+}
+SUNS = st.one_of(
+    table({"true_anomaly": quantities(-1e6, 1e6, "deg", "rad")}, SUN_KEYS),
+    table(
+        {"distance": quantities(0.0, 40.0, "au")},
+        {"radial_velocity": quantities(-100.0, 100.0, "km/s"), **SUN_KEYS},
+    ),
 )
+SWITCHED_OFF = {"photoionization_rate": st.just("0 s-1"), "radiation_acceleration": st.just("none")}
+EMISSION_LINES = table(
+    {
+        "name": LINES,
+        "wavelength": quantities(1.0, 1e5, "nm", "AA"),
+        "g": st.just("0 s-1") | RATES | table({"file": LINES}),
+    }
+)
+LIT = {
+    "photoionization_rate": st.just("0 s-1") | RATES,
+    "radiation_acceleration": st.sampled_from(["lines", "none"]) | quantities(0.0, 9.0, "m s-2", "cm/s2"),
+    "line": lists_of_named(EMISSION_LINES),
+}
+LIT_LOSS = {
+    "scaling": st.sampled_from(["inverse-square", "constant"]),
+    "where": st.sampled_from(["everywhere", "sunlight"]),
+}
+
+
+def gases(light: dict[str, Any], loss: dict[str, Any]) -> SearchStrategy[dict[str, Any]]:
+    losses = lists_of_named(table({"name": LINES, "rate": RATES}, loss))
+    return table({"species": LINES}, {"mass": quantities(0.0, 300.0, "u", "Da"), "loss": losses, **light})
+
+
+SKIES = st.one_of(table({"gas": gases(SWITCHED_OFF, {})}), table({"sun": SUNS, "gas": gases(LIT, LIT_LOSS)}))
 WHOLE = st.integers(0, 2**63 - 1)
 
 
 @st.composite
 def run_files(draw: DrawFn) -> dict[str, Any]:
-    required = {"title": LINES, "body": BODIES, "gas": GASES, "release": RELEASES}
+    required = {"title": LINES, "body": BODIES, "release": RELEASES}
     fraction = st.floats(0.0, 1.0)
     surface = table({"temperature": SURFACE_TEMPERATURES}, {"sticking": fraction, "accommodation": fraction})
     altitude = table({"first_cell": quantities(0.0, 9.0, "km"), "top": quantities(0.01, 9.0, "Mm", "radii")})
@@ -133,7 +168,7 @@ def run_files(draw: DrawFn) -> dict[str, Any]:
         "image": IMAGES,
         "ensemble": table({}, {"batches": st.integers(2, 10**6), "seed": WHOLE, "replicates": WHOLE}),
     }
-    return draw(table({**required, "surface": surface}, optional))
+    return {**draw(table({**required, "surface": surface}, optional)), **draw(SKIES)}
 
 
 @settings(max_examples=200, deadline=None)
@@ -160,6 +195,7 @@ def test_defaults_are_written_out() -> None:
     assert release["direction"] == {"law": "cosine", "power": 1.0}
     assert release["place"] == {"law": "uniform"}
     assert written["surface"].keys() == {"temperature", "sticking", "adsorbed", "accommodation"}
+    assert "sun" not in written
     assert written["domain"] == {"age_limit": "1 yr"}
     assert written["grid"].keys() == {"altitude", "latitude_cells", "local_time_cells"}
     assert written["ensemble"].keys() == {"particles_per_batch", "batches", "seed", "replicates"}
@@ -176,7 +212,7 @@ SPOILT = st.one_of(
     st.dates(),
 )
 FOREIGN_WORDS = re.compile(
-    r"pydantic|input should|extra inputs|field required|valid (string|number|tuple|dictionary)|\[type=",
+    r"pydantic|input should|extra inputs|field required|valid (string|number|boolean|tuple|dictionary)|\[type=",
     re.IGNORECASE,
 )
 
@@ -186,6 +222,9 @@ FOREIGN_WORDS = re.compile(
 def test_spoilt_run_file_is_refused_on_one_line_in_our_words(data: st.DataObject) -> None:
     tables = tomllib.loads(run_file_template("Helium over Harrow"))
     tables["release"][0]["place"] = {"law": "cosine-power", "power": 1, "toward": "sun"}
+    tables["sun"] = {"true_anomaly": "60 deg", "tide": True, "shadow": "none"}
+    tables["gas"]["radiation_acceleration"] = "lines"
+    tables["gas"]["line"] = [{"name": "a", "wavelength": "285 nm", "g": {"file": "g.csv"}}]
     _spoil(data, tables)
     try:
         parse_run(tomli_w.dumps(tables), "spoilt.toml")

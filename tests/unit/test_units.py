@@ -15,6 +15,7 @@ from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
     [
         ("1800 km", "length", 1.8e6),
         ("0.42 au", "length", 0.42 * ASTRONOMICAL_UNIT),  # IAU 2012 resolution B2
+        ("285.296 nm", "wavelength", 2.85296e-7),
         ("1200K", "temperature", 1200.0),
         ("4.1 km/s", "speed", 4100.0),
         ("1e24 s-1", "rate", 1e24),

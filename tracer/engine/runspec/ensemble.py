@@ -15,5 +15,7 @@ class EnsembleTable(Table):
     )
     seed: CountOrNone = Field(20310601, description="Seed of the random numbers.")
     replicates: CountOrNone = Field(
-        20, description="Groups of batches kept for the errors of sums; 0 switches them off."
+        20,
+        description="Groups of batches kept for the errors of sums; 0 switches them off, more than `batches` "
+        "count as `batches`.",
     )

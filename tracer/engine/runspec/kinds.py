@@ -1,5 +1,6 @@
 """What a field takes, read from its annotation: for messages and for the reference."""
 
+from collections.abc import Iterator
 from typing import Any, Literal, get_args, get_origin
 
 from pydantic.fields import FieldInfo
@@ -13,6 +14,12 @@ def tables_in(annotation: Any) -> tuple[type[Table], ...]:
     if isinstance(annotation, type) and issubclass(annotation, Table):
         return (annotation,)
     return tuple(table for part in get_args(annotation) for table in tables_in(part))
+
+
+def dimensions_in(table: type[Table]) -> set[str]:
+    """Return the names in `DIMENSIONS` of all that this table and those inside it measure."""
+    parts = (part for field in table.model_fields.values() for part in (field.annotation, *field.metadata))
+    return {name for part in parts for name in _dimensions(part)}
 
 
 def law_name(table: type[Table]) -> str:
@@ -41,6 +48,8 @@ def _kind(annotation: Any, metadata: tuple[Any, ...] = ()) -> str:
         return str(own_words[0])
     if hasattr(annotation, "__metadata__"):
         return _kind(annotation.__origin__, annotation.__metadata__)
+    if annotation is bool:
+        return "true or false"
     arguments = get_args(annotation)
     if get_origin(annotation) is Literal:
         return " or ".join(quoted(word) for word in arguments)
@@ -54,3 +63,12 @@ def _kind(annotation: Any, metadata: tuple[Any, ...] = ()) -> str:
     if tables:
         return "table"
     return _kind(next(part for part in arguments if part is not type(None)))
+
+
+def _dimensions(part: Any) -> Iterator[str]:
+    if hasattr(part, "dimension"):
+        yield part.dimension
+    elif isinstance(part, type) and issubclass(part, Table):
+        yield from dimensions_in(part)
+    for inner in get_args(part):
+        yield from _dimensions(inner)

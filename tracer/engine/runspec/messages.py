@@ -14,7 +14,7 @@ from tracer.engine.runspec.table import Table
 from tracer.units import quoted
 
 _BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
-_NO_ARTICLE = ('"', "text")
+_NO_ARTICLE = ('"', "text", "true or false")
 _UNKNOWN, _OTHER, _MISSING = range(3)
 """Ranks of problems: unknown keys come first and missing ones last, since a key misspelt is both."""
 

@@ -59,20 +59,27 @@ class Measured:
 
 
 POSITIVE = Interval(above=0.0)
+NOT_NEGATIVE = Interval(at_least=0.0)
 
 Length = Annotated[Quantity, Measured("length", POSITIVE)]
 LengthOrRadii = Annotated[Quantity, Measured("length or radii", POSITIVE)]
+Wavelength = Annotated[Quantity, Measured("wavelength", POSITIVE)]
 SkyOffset = Annotated[Quantity, Measured("length or radii")]
 Temperature = Annotated[Quantity, Measured("temperature", POSITIVE)]
 TemperatureOrSurface = Annotated[
     Quantity | Literal["surface"], Measured("temperature", POSITIVE, words=("surface",))
 ]
 Speed = Annotated[Quantity, Measured("speed", POSITIVE)]
+RadialVelocity = Annotated[Quantity, Measured("speed")]
+Angle = Annotated[Quantity, Measured("angle")]
 Latitude = Annotated[Quantity, Measured("angle", Interval(at_least=-90.0, at_most=90.0))]
 Rate = Annotated[Quantity, Measured("rate", POSITIVE)]
-LossRate = Annotated[Quantity, Measured("rate", Interval(at_least=0.0))]
+LossRate = Annotated[Quantity, Measured("rate", NOT_NEGATIVE)]
 Energy = Annotated[Quantity, Measured("energy", POSITIVE)]
 Mass = Annotated[Quantity, Measured("mass", POSITIVE)]
 Duration = Annotated[Quantity, Measured("time", POSITIVE)]
 RotationPeriod = Annotated[Quantity, Measured("time", zero_allowed=False)]
-GravitationalParameter = Annotated[Quantity, Measured("gravitational parameter", Interval(at_least=0.0))]
+GravitationalParameter = Annotated[Quantity, Measured("gravitational parameter", NOT_NEGATIVE)]
+AccelerationOrWord = Annotated[
+    Quantity | Literal["lines", "none"], Measured("acceleration", NOT_NEGATIVE, words=("lines", "none"))
+]

@@ -5,7 +5,7 @@ from typing import Any
 
 from pydantic.fields import FieldInfo
 
-from tracer.engine.runspec.kinds import is_list_of_tables, kind, law_name, tables_in
+from tracer.engine.runspec.kinds import dimensions_in, is_list_of_tables, kind, law_name, tables_in
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.table import Table
@@ -29,10 +29,9 @@ checked; lists count from 1.
 
 def reference() -> str:
     """Return the reference as Markdown: a table for each section of the run file, one for each law."""
-    sections = [_PREFACE, _section("Top level", RunSpec, _top_level(RunSpec))]
+    sections = [_PREFACE, _units(), _section("Top level", RunSpec, _top_level(RunSpec))]
     for key, field in RunSpec.model_fields.items():
         sections.extend(_sections(key, field))
-    sections.append(_units())
     return "\n".join(sections)
 
 
@@ -91,8 +90,9 @@ def _default(field: FieldInfo) -> str:
 
 
 def _units() -> str:
-    dimensions = [dimension for dimension in DIMENSIONS.values() if not dimension.radii_allowed]
-    rows = [(dimension.word, f'`"{dimension.example}"`') for dimension in dimensions]
+    used = {DIMENSIONS[name].word for name in dimensions_in(RunSpec)}
+    shown = [entry for entry in DIMENSIONS.values() if entry.word in used and not entry.radii_allowed]
+    rows = [(dimension.word, f'`"{dimension.example}"`') for dimension in shown]
     return "### Quantities\n\n" + _markdown(("quantity of", "for example"), rows)
 
 

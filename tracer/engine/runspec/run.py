@@ -1,6 +1,6 @@
 """The whole run file."""
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from pathlib import Path
 from typing import Any
 
@@ -9,12 +9,15 @@ from pydantic import Field, PrivateAttr, model_validator
 from tracer.engine.runspec.body import BodyTable
 from tracer.engine.runspec.domain import DomainTable
 from tracer.engine.runspec.ensemble import EnsembleTable
-from tracer.engine.runspec.gas import GasTable
+from tracer.engine.runspec.gas import GasTable, LossTable
 from tracer.engine.runspec.grid import GridTable
 from tracer.engine.runspec.image import ImageTable, product_name
 from tracer.engine.runspec.order import is_below
 from tracer.engine.runspec.release import ReleaseTable
+from tracer.engine.runspec.spectral_line import SpectralLineTable
 from tracer.engine.runspec.speed import MaxwellFlux, MaxwellGas
+from tracer.engine.runspec.sun import SunTable
+from tracer.engine.runspec.sunless import dead_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
 from tracer.engine.runspec.table import Table, conflict
 from tracer.engine.runspec.text import Line
@@ -31,6 +34,7 @@ class RunSpec(Table):
 
     title: Line = Field(description="Title of the run, carried into the product.")
     body: BodyTable = Field(description="What holds the gas.")
+    sun: SunTable | None = Field(None, description="Light and tide.")
     gas: GasTable = Field(description="The gas that is traced.")
     release: tuple[ReleaseTable, ...] = Field(description="Sources, one or more.")
     surface: SurfaceTable = Field(SurfaceTable(), description="What a landing atom meets.")
@@ -70,18 +74,29 @@ class RunSpec(Table):
     def _agrees_with_itself(self) -> "RunSpec":
         if not self.release:
             raise conflict("release", "missing; must be at least one table, headed [[release]]")
-        for problem in (*_repeated_names(self), *_missing_temperature(self), *_buried_outer_radius(self)):
+        for problem in (
+            *_repeated_names("release", self.release),
+            *_repeated_names("gas.line", self.gas.line),
+            *_repeated_names("gas.loss", self.gas.loss),
+            *_colliding_images(self),
+            *_missing_temperature(self),
+            *_buried_outer_radius(self),
+            *(dead_without_sun(self.gas) if self.sun is None else ()),
+        ):
             raise problem
         return self
 
 
-def _repeated_names(spec: RunSpec) -> Iterator[Exception]:
-    releases: dict[str, int] = {}
-    for number, release in enumerate(spec.release, 1):
-        if (first := releases.setdefault(release.name, number)) != number:
-            yield conflict(
-                f"release[{number}].name", f'"{release.name}" is already the name of release[{first}]'
-            )
+def _repeated_names(
+    path: str, entries: Iterable[ReleaseTable | SpectralLineTable | LossTable]
+) -> Iterator[Exception]:
+    known: dict[str, int] = {}
+    for number, entry in enumerate(entries, 1):
+        if (first := known.setdefault(entry.name, number)) != number:
+            yield conflict(f"{path}[{number}].name", f'"{entry.name}" is already the name of {path}[{first}]')
+
+
+def _colliding_images(spec: RunSpec) -> Iterator[Exception]:
     kept: dict[str, int] = {}
     for number, image in enumerate(spec.image, 1):
         names = [product_name(image.name) + ending for ending in _COMPANIONS]

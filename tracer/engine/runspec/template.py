@@ -10,6 +10,13 @@ gm = "9500 km3 s-2"                  # 0 is allowed
 rotation_period = "60 d"             # sidereal, positive where prograde
 orbit = { semi_major_axis = "0.42 au", eccentricity = 0.18 }
 
+# [sun]                              # light, tide and turning frame; left out: gravity alone
+# true_anomaly = "60 deg"            # on the orbit; or distance = "0.4 au" with radial_velocity = "8 km/s"
+# tide = true                        # the Sun's tide on the atoms
+# motion = "stationary"              # the body's distance and velocity stay while atoms fly
+# shadow = "penumbra"                # or "cylinder" or "none"
+# solar_activity = 0.0               # 0 quiet Sun .. 1 active Sun, for the photo-rates
+
 [gas]
 species = "He"                       # a gas of the catalogue, or a name of your own with mass = "4.0026 u"
 

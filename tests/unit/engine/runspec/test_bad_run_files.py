@@ -168,8 +168,9 @@ def test_type(old: str, new: str, message: str) -> None:
         ),
         (
             "[ensemble]",
-            "[sun]\n[ensemble]",
-            "sun: unknown key; allowed here: title, body, gas, release, surface, domain, grid, image, ensemble",
+            "[host]\n[ensemble]",
+            "host: unknown key; allowed here: title, body, sun, gas, release, surface, domain, grid, image, "
+            "ensemble",
         ),
     ],
 )

@@ -13,6 +13,15 @@ def test_template_loads_as_it_is(title: str) -> None:
     assert spec.body.name == "Harrow"
 
 
+def test_template_shows_a_sun_that_loads_without_its_comment_marks() -> None:
+    text = run_file_template("x")
+    sun = parse_run(text.replace("\n# ", "\n"), "new.toml").sun
+    assert parse_run(text, "new.toml").sun is None
+    assert sun is not None
+    shown = {key for key in type(sun).model_fields if f"\n# {key} = " in text}
+    assert shown == type(sun).model_fields.keys() - {"distance", "radial_velocity"}
+
+
 def test_template_explains_its_keys() -> None:
     lines = run_file_template("x").splitlines()
     assert sum("#" in line for line in lines) > 10

@@ -1,0 +1,62 @@
+"""[sun]: where the body stands in sunlight, and what the Sun does."""
+
+from typing import Any, Literal
+
+from pydantic import Field, model_validator
+
+from tracer.engine.runspec.number import Fraction
+from tracer.engine.runspec.quantity import Angle, Length, RadialVelocity
+from tracer.engine.runspec.table import Table, conflict
+from tracer.units import Quantity
+
+
+class SunTable(Table):
+    """The Sun; left out there is no light, no tide and no turning frame, and +x still points to it."""
+
+    true_anomaly: Angle | None = Field(
+        None, description="Where the body stands on its orbit; either this or `distance` is needed."
+    )
+    distance: Length | None = Field(
+        None, description="Distance of the body from the Sun, in place of `true_anomaly`."
+    )
+    radial_velocity: RadialVelocity | None = Field(
+        None,
+        description='Heliocentric, positive away from the Sun; only with `distance`. Default: `"0 km/s"`.',
+    )
+    tide: bool = Field(True, description="Whether the Sun's tide acts on the atoms.")
+    motion: Literal["stationary"] = Field(
+        "stationary", description="The body's distance and velocity stay the same while atoms fly."
+    )
+    shadow: Literal["penumbra", "cylinder", "none"] = Field(
+        "penumbra",
+        description="Shadow of the body: cones of umbra and penumbra, a cylinder of the body's radius, or none.",
+    )
+    solar_activity: Fraction = Field(
+        0.0, description="Activity between the quiet Sun, 0, and the active, 1; interpolates the photo-rates."
+    )
+
+    @model_validator(mode="before")
+    @classmethod
+    def _stand_still_by_default(cls, given: Any) -> Any:
+        # Not the field's own default: beside a true anomaly, which sets the velocity, there must be none.
+        if isinstance(given, dict) and "distance" in given:
+            return {"radial_velocity": Quantity(0.0, "km/s"), **given}
+        return given
+
+    @model_validator(mode="after")
+    def _stands_in_one_place(self) -> "SunTable":
+        if self.true_anomaly is None and self.distance is None:
+            raise conflict(
+                "true_anomaly", 'missing; either this or distance is needed; write for example "60 deg"'
+            )
+        if self.true_anomaly is not None and self.distance is not None:
+            raise conflict(
+                "distance",
+                f'"{self.distance}" stands beside true_anomaly "{self.true_anomaly}"; must be one of the two',
+            )
+        if self.true_anomaly is not None and self.radial_velocity is not None:
+            raise conflict(
+                "radial_velocity",
+                f'"{self.radial_velocity}" needs distance; with true_anomaly it follows from the orbit',
+            )
+        return self
