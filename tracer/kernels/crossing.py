@@ -8,7 +8,7 @@ import math
 
 from tracer.kernels.compiling import kernel
 from tracer.kernels.dense_output import LENGTH, place_at
-from tracer.kernels.shadow import LIT, antumbra_height, penumbra_height, umbra_height
+from tracer.kernels.shadow import LIT, PENUMBRA, antumbra_height, penumbra_height, umbra_height
 
 PENUMBRA_EDGE = 1
 UMBRA_EDGE = 2
@@ -62,12 +62,13 @@ def height(shadow, outer_radius, surface, zone, place):
 
 
 @kernel
-def first_crossing(shadow, outer_radius, surface, zone, curve, start, end):
+def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end):
     """Return the part of the step at which its `curve` first passes `surface`, NEVER where it doesn't.
 
-    `start` and `end` are the places (x, y, z, vx, vy, vz) at the step's ends.
+    Only the step up to its part `reach` counts; `start` and `end` are the places (x, y, z, vx, vy, vz) at the ends of
+    that. Underground the shadow's surfaces have no meaning, so a step that lands counts up to its landing.
     """
-    h = curve[LENGTH]
+    h = reach * curve[LENGTH]
     scale = math.sqrt(start[0] * start[0] + start[1] * start[1] + start[2] * start[2])
     f0, d0 = height(shadow, outer_radius, surface, zone, start)
     f1, d1 = height(shadow, outer_radius, surface, zone, end)
@@ -75,28 +76,30 @@ def first_crossing(shadow, outer_radius, surface, zone, curve, start, end):
     if f1 >= 0.0:
         if d0 >= 0.0 or d1 <= 0.0:
             return NEVER
-        right = _dip(shadow, outer_radius, surface, zone, curve, f0, d0 * h, f1, d1 * h, TOUCH * scale)
+        ends = (f0, d0 * h, f1, d1 * h)
+        right = _dip(shadow, outer_radius, surface, zone, curve, reach, ends, TOUCH * scale)
         if right == NEVER:
             return NEVER
-    return _root(shadow, outer_radius, surface, zone, curve, f0, d0 * h, right, scale)
+    return reach * _root(shadow, outer_radius, surface, zone, curve, reach, f0, d0 * h, right, scale)
 
 
 @kernel
-def _dip(shadow, outer_radius, surface, zone, curve, fa, da, fb, db, depth):
-    """Return a part of the step where the height is below -`depth`, NEVER where there is none."""
+def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
+    """Return where on the way the height is below -`depth`, NEVER where it stays above; `ends` as height, slope twice."""
     a, b = 0.0, 1.0
-    for _ in range(HALVINGS):
+    fa, da, fb, db = ends
+    for trial in range(HALVINGS):
         low = (fb - fa + da * a - db * b) / (da - db)
         bound = fa + da * (low - a)
-        # Twice as deep as the tangents say: they bound a bowl, and a curve is one only nearly.
+        # Twice as deep as the tangents say, and not before two looks: they bound a bowl, a curve is one only nearly.
         lesser = min(fa, fb)
-        if lesser + 2.0 * (bound - lesser) > -depth:
+        if trial > 1 and lesser + 2.0 * (bound - lesser) > -depth:
             return NEVER
         low = min(max(low, a + 0.05 * (b - a)), b - 0.05 * (b - a))
-        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, low))
+        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * low))
         if f < -depth:
             return low
-        d *= curve[LENGTH]
+        d *= reach * curve[LENGTH]
         if d < 0.0:
             a, fa, da = low, f, d
         else:
@@ -107,8 +110,8 @@ def _dip(shadow, outer_radius, surface, zone, curve, fa, da, fb, db, depth):
 
 
 @kernel
-def _root(shadow, outer_radius, surface, zone, curve, f0, d0, right, scale):
-    """Return the part of the step, up to `right`, where the height first becomes 0: Newton's method in a bracket.
+def _root(shadow, outer_radius, surface, zone, curve, reach, f0, d0, right, scale):
+    """Return where on the way, up to `right`, the height first becomes 0: Newton's method in a bracket.
 
     A start on the surface itself is divided out, height / part, so that the way back to it is found.
     """
@@ -118,14 +121,14 @@ def _root(shadow, outer_radius, surface, zone, curve, f0, d0, right, scale):
     left = 0.0
     part = right
     for _ in range(HALVINGS):
-        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, part))
-        if abs(f) <= SHARP * scale and not (launched and part < 1e-6 and d > 0.0):
+        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * part))
+        if abs(f) <= SHARP * scale:
             return part
         if f > 0.0:
             left = part
         else:
             right = part
-        d *= curve[LENGTH]
+        d *= reach * curve[LENGTH]
         if launched:
             d -= f / part
         guess = part - f / d
@@ -133,3 +136,14 @@ def _root(shadow, outer_radius, surface, zone, curve, f0, d0, right, scale):
             guess = 0.5 * (left + right)
         part = guess
     return right
+
+
+@kernel
+def time_to_edge(shadow, place):
+    """Return the time [s] that an atom at `place` in the penumbra needs, straight on, to the nearest edge of it."""
+    time = math.inf
+    for edge in (PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
+        h, rate = height(shadow, math.inf, edge, PENUMBRA, place)
+        if rate < 0.0:
+            time = min(time, -h / rate)
+    return max(time, 0.0)

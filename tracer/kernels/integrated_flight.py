@@ -19,6 +19,7 @@ from tracer.kernels.crossing import (
     PENUMBRA_EDGE,
     UMBRA_EDGE,
     first_crossing,
+    time_to_edge,
 )
 from tracer.kernels.dense_output import (
     CURVE_SIZE,
@@ -65,7 +66,11 @@ SHORTEST_STEP = 1e-13
 """Shortest step in units of the time since launch; below it the clock no longer moves."""
 
 EDGE_PART = 0.3
-"""First step inside a penumbra, in units of the time that crossing it straight on takes."""
+LEAST_EDGE_PART = 0.01
+"""First step inside a penumbra and least step to its edge, in units of the time that crossing it straight on takes."""
+
+OVERSHOOT = 1.01
+"""A step that would end at the penumbra's edge is made longer by this, so that curved ways reach the edge too."""
 
 
 @kernel
@@ -85,7 +90,7 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
     flight[ZONE] = zone
     flight[TRIALS] = 0.0
     if zone == PENUMBRA:
-        flight[STEP] = _first_step_in_penumbra(conditions.sky.shadow, flight)
+        flight[STEP] = EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight))
 
 
 @kernel
@@ -97,6 +102,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
     """
     sky, tables = conditions.sky, borrowed(conditions.push_tables)
+    flight, curve = borrowed(flight), borrowed(curve)
     zone = int(flight[ZONE])
     place = _place(flight)
     slopes = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2], flight[SLOPES + 3], flight[SLOPES + 4])
@@ -104,6 +110,8 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     fastest = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
     speed = math.sqrt(fastest + conditions.sky.forces.gm / r)
     h = flight[STEP]
+    if zone == PENUMBRA:
+        h = min(h, _longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
     while True:
         last = h >= left
@@ -127,10 +135,12 @@ def advance(flight, curve, conditions, tolerance, time_limit):
         place[4] + growth[4],
         place[5] + growth[5],
     )
-    surface, part = _first_surface(sky, zone, curve, place, end)
     flight[STEP] = h * change
-    if part <= 1.0:
-        return _cut(flight, curve, conditions, zone, surface, part)
+    near = _surfaces_near(sky, zone, place, end)
+    if near[0] or near[1] or near[2]:
+        surface, part = _first_surface(sky, zone, curve, near, place, end)
+        if part <= 1.0:
+            return _cut(flight, curve, conditions, zone, surface, part)
     flight[TIME] += h
     _set_place(flight, end)
     flight[HAZARDS] += growth[6]
@@ -215,25 +225,38 @@ def _give_up(flight, curve):
     return UNRESOLVED
 
 
-@kernel
-def _first_surface(sky, zone, curve, start, end):
-    """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
-    forces, shadow = sky.forces, sky.shadow
-    surface, part = GROUND, NEVER
+@inlined
+def _surfaces_near(sky, zone, start, end):
+    """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge)."""
+    forces = sky.forces
     r0 = start[0] * start[0] + start[1] * start[1] + start[2] * start[2]
     r1 = end[0] * end[0] + end[1] * end[1] + end[2] * end[2]
     climb0 = start[0] * start[3] + start[1] * start[4] + start[2] * start[5]
     climb1 = end[0] * end[3] + end[1] * end[4] + end[2] * end[5]
-    if r1 < forces.radius * forces.radius or (climb0 < 0.0 and climb1 > 0.0):
-        part = first_crossing(shadow, forces.outer_radius, GROUND, zone, curve, start, end)
-    if r1 > forces.outer_radius * forces.outer_radius or (
-        climb0 > 0.0 and climb1 < 0.0 and 4.0 * max(r0, r1) > forces.outer_radius * forces.outer_radius
-    ):
-        other = first_crossing(shadow, forces.outer_radius, OUTER, zone, curve, start, end)
+    outer = forces.outer_radius * forces.outer_radius
+    return (
+        r1 < forces.radius * forces.radius or (climb0 < 0.0 and climb1 > 0.0),
+        r1 > outer or (climb0 > 0.0 and climb1 < 0.0 and 4.0 * max(r0, r1) > outer),
+        sky.shadow.kind != NO_SHADOW and not _sunward_in_light(sky.shadow, zone, start, end),
+    )
+
+
+@kernel
+def _first_surface(sky, zone, curve, near, start, end):
+    """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
+    shadow, outer_radius = sky.shadow, sky.forces.outer_radius
+    surface, part = GROUND, NEVER
+    if near[0]:
+        part = first_crossing(shadow, outer_radius, GROUND, zone, curve, 1.0, start, end)
+    if near[1]:
+        other = first_crossing(shadow, outer_radius, OUTER, zone, curve, 1.0, start, end)
         if other < part:
             surface, part = OUTER, other
-    if shadow.kind != NO_SHADOW and not _sunward_in_light(shadow, zone, start, end):
-        edge, other = _first_edge(sky, zone, curve, start, end)
+    if near[2]:
+        reach = 1.0
+        if part <= 1.0:
+            reach, end = part, place_at(curve, part)
+        edge, other = _first_edge(sky, zone, curve, reach, start, end)
         if other < part:
             surface, part = edge, other
     return surface, part
@@ -252,18 +275,18 @@ def _sunward_in_light(shadow, zone, start, end):
 
 
 @kernel
-def _first_edge(sky, zone, curve, start, end):
+def _first_edge(sky, zone, curve, reach, start, end):
     shadow, outer = sky.shadow, sky.forces.outer_radius
     if zone == LIT or zone == PENUMBRA or shadow.kind == CYLINDER:
-        edge, part = PENUMBRA_EDGE, first_crossing(shadow, outer, PENUMBRA_EDGE, zone, curve, start, end)
+        edge, part = PENUMBRA_EDGE, first_crossing(shadow, outer, PENUMBRA_EDGE, zone, curve, reach, start, end)
         if zone != PENUMBRA:
             return edge, part
         for inner in (UMBRA_EDGE, ANTUMBRA_EDGE):
-            other = first_crossing(shadow, outer, inner, zone, curve, start, end)
+            other = first_crossing(shadow, outer, inner, zone, curve, reach, start, end)
             if other < part:
                 edge, part = inner, other
         return edge, part
-    return zone, first_crossing(shadow, outer, zone, zone, curve, start, end)
+    return zone, first_crossing(shadow, outer, zone, zone, curve, reach, start, end)
 
 
 @kernel
@@ -286,15 +309,21 @@ def _cut(flight, curve, conditions, zone, surface, part):
     )
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
-        flight[STEP] = min(flight[STEP], _first_step_in_penumbra(conditions.sky.shadow, flight))
+        flight[STEP] = min(flight[STEP], EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight)))
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING
 
 
 @kernel
-def _first_step_in_penumbra(shadow, flight):
-    x, y, z, vx, vy, vz = _place(flight)
+def _longest_step_in_penumbra(shadow, place):
+    """Return a step [s] that goes just over the nearest edge, where the light has no second derivative."""
+    return max(OVERSHOOT * time_to_edge(shadow, place), LEAST_EDGE_PART * _crossing_time(shadow, place))
+
+
+@kernel
+def _crossing_time(shadow, place):
+    x, y, z, vx, vy, vz = place
     rho = math.sqrt(y * y + z * z)
     width = umbra_height(shadow, x, rho) - penumbra_height(shadow, x, rho)
-    return EDGE_PART * width / math.sqrt(vx * vx + vy * vy + vz * vz)
+    return width / math.sqrt(vx * vx + vy * vy + vz * vz)
