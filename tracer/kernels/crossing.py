@@ -91,9 +91,9 @@ def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
     for trial in range(HALVINGS):
         low = (fb - fa + da * a - db * b) / (da - db)
         bound = fa + da * (low - a)
-        # Twice as deep as the tangents say, and not before two looks: they bound a bowl, a curve is one only nearly.
+        # Twice as deep as the tangents say, and not before four looks: they bound a bowl, a curve is one only nearly.
         lesser = min(fa, fb)
-        if trial > 1 and lesser + 2.0 * (bound - lesser) > -depth:
+        if trial > 3 and lesser + 2.0 * (bound - lesser) > -depth:
             return NEVER
         low = min(max(low, a + 0.05 * (b - a)), b - 0.05 * (b - a))
         f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * low))

@@ -244,22 +244,31 @@ def _surfaces_near(sky, zone, start, end):
 @kernel
 def _first_surface(sky, zone, curve, near, start, end):
     """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
-    shadow, outer_radius = sky.shadow, sky.forces.outer_radius
-    surface, part = GROUND, NEVER
-    if near[0]:
-        part = first_crossing(shadow, outer_radius, GROUND, zone, curve, 1.0, start, end)
-    if near[1]:
-        other = first_crossing(shadow, outer_radius, OUTER, zone, curve, 1.0, start, end)
-        if other < part:
-            surface, part = OUTER, other
-    if near[2]:
-        reach = 1.0
-        if part <= 1.0:
-            reach, end = part, place_at(curve, part)
-        edge, other = _first_edge(sky, zone, curve, reach, start, end)
-        if other < part:
-            surface, part = edge, other
-    return surface, part
+    first, part, reach = 0, NEVER, 1.0
+    for surface in (GROUND, OUTER, PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
+        if _may_meet(sky.shadow, zone, surface, near):
+            other = first_crossing(
+                sky.shadow, sky.forces.outer_radius, surface, zone, curve, reach, start, end
+            )
+            if other < part:
+                first, part = surface, other
+                if surface == GROUND:
+                    reach, end = part, place_at(curve, part)
+    return first, part
+
+
+@kernel
+def _may_meet(shadow, zone, surface, near):
+    """Return True where `surface` bounds `zone` and is `near` (ground, outer sphere, shadow edge)."""
+    if surface == GROUND:
+        return near[0]
+    if surface == OUTER:
+        return near[1]
+    if zone == PENUMBRA:
+        return near[2]
+    if zone == LIT or shadow.kind == CYLINDER:
+        return near[2] and surface == PENUMBRA_EDGE
+    return near[2] and surface == zone
 
 
 @inlined
@@ -272,21 +281,6 @@ def _sunward_in_light(shadow, zone, start, end):
         and end[0] > terminator
         and not (start[3] < 0.0 and end[3] > 0.0)
     )
-
-
-@kernel
-def _first_edge(sky, zone, curve, reach, start, end):
-    shadow, outer = sky.shadow, sky.forces.outer_radius
-    if zone == LIT or zone == PENUMBRA or shadow.kind == CYLINDER:
-        edge, part = PENUMBRA_EDGE, first_crossing(shadow, outer, PENUMBRA_EDGE, zone, curve, reach, start, end)
-        if zone != PENUMBRA:
-            return edge, part
-        for inner in (UMBRA_EDGE, ANTUMBRA_EDGE):
-            other = first_crossing(shadow, outer, inner, zone, curve, reach, start, end)
-            if other < part:
-                edge, part = inner, other
-        return edge, part
-    return zone, first_crossing(shadow, outer, zone, zone, curve, reach, start, end)
 
 
 @kernel
