@@ -11,3 +11,9 @@ GM_SUN = 1.32712440018e20
 
 ASTRONOMICAL_UNIT = 1.495978707e11
 """Astronomical unit [m]; exact (IAU 2012 resolution B2)."""
+
+SPEED_OF_LIGHT = 299792458.0
+"""Speed of light in vacuum c [m s-1]; exact (SI 2019)."""
+
+PLANCK = 6.62607015e-34
+"""Planck constant h [J s]; exact (SI 2019)."""

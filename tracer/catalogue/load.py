@@ -20,13 +20,13 @@ _LENGTH_UNITS = {"au": ASTRONOMICAL_UNIT, "km": KILOMETRE}
 @cache
 def bodies() -> Mapping[str, Body]:
     """Return the airless bodies by name."""
-    return MappingProxyType({row["body"]: _body(row) for row in _rows("bodies.csv")})
+    return MappingProxyType({row["body"]: _body(row) for row in rows("bodies.csv")})
 
 
 @cache
 def hosts() -> Mapping[str, Host]:
     """Return the Sun and the planets that hold moons of the catalogue, by name."""
-    return MappingProxyType({row["host"]: _host(row) for row in _rows("hosts.csv")})
+    return MappingProxyType({row["host"]: _host(row) for row in rows("hosts.csv")})
 
 
 @cache
@@ -35,7 +35,7 @@ def gases() -> Mapping[str, Gas]:
     return MappingProxyType(
         {
             row["species"]: Gas(row["species"], float(row["mass_u"]) * ATOMIC_MASS, row["description"])
-            for row in _rows("gases.csv")
+            for row in rows("gases.csv")
         }
     )
 
@@ -50,7 +50,7 @@ def _text(name: str) -> str:
     return (files("tracer.catalogue") / "data" / name).read_text(encoding="utf-8")
 
 
-def _rows(name: str) -> list[dict[str, str]]:
+def rows(name: str) -> list[dict[str, str]]:
     lines = (line for line in _text(name).splitlines() if line and not line.startswith("#"))
     return list(csv.DictReader(lines))
 

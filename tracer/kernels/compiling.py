@@ -18,6 +18,11 @@ def kernel(function):
     return code_cache.attach(numba.njit(**OPTIONS, _nrt=False)(function))
 
 
+def inlined(function):
+    """Compile `function` like `kernel`, always into its callers: for formulas of the innermost loop."""
+    return code_cache.attach(numba.njit(**OPTIONS, _nrt=False, forceinline=True)(function))
+
+
 def allocating_kernel(function):
     """Compile `function`, which makes arrays, on its first call and keep the machine code between starts."""
     return code_cache.attach(numba.njit(**OPTIONS)(function))

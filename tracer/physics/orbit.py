@@ -1,10 +1,62 @@
-"""Orbits about the Sun and about a host planet."""
+"""Orbits about the Sun and about a host planet, and where on it a body stands."""
 
-from math import cbrt
+import math
+from typing import NamedTuple
 
 from tracer.catalogue.records import Orbit
+from tracer.constants import GM_SUN
+
+
+class Station(NamedTuple):
+    """Where a body stands: `distance` [m] from the Sun, `radial_velocity` [m s-1], `orbital_rate` [rad s-1]."""
+
+    distance: float
+    radial_velocity: float
+    orbital_rate: float
 
 
 def hill_radius(orbit: Orbit, gm: float, host_gm: float) -> float:
     """Return a (1 - e) (m/3M)^(1/3) [m] from the centre of a body of `gm` that orbits a host of `host_gm` [m3 s-2]."""
-    return orbit.semi_major_axis * (1.0 - orbit.eccentricity) * cbrt(gm / (3.0 * host_gm))
+    return orbit.semi_major_axis * (1.0 - orbit.eccentricity) * math.cbrt(gm / (3.0 * host_gm))
+
+
+def angular_momentum(orbit: Orbit) -> float:
+    """Return h = sqrt(GM_sun a (1 - e^2)) [m2 s-1] of a heliocentric orbit, per unit mass."""
+    return math.sqrt(GM_SUN * orbit.semi_major_axis * (1.0 - orbit.eccentricity**2))
+
+
+def station_at_true_anomaly(orbit: Orbit, true_anomaly: float) -> Station:
+    """Return where a body stands on a heliocentric `orbit` at `true_anomaly` [deg], 0 at perihelion.
+
+    d = a (1 - e^2) / (1 + e cos f), v_r = (GM_sun / h) e sin f, Omega = h / d^2 (two-body motion).
+    """
+    f = math.radians(true_anomaly)
+    h = angular_momentum(orbit)
+    semi_latus_rectum = orbit.semi_major_axis * (1.0 - orbit.eccentricity**2)
+    distance = semi_latus_rectum / (1.0 + orbit.eccentricity * math.cos(f))
+    return Station(distance, GM_SUN / h * orbit.eccentricity * math.sin(f), h / distance**2)
+
+
+def station_at_distance(orbit: Orbit | None, distance: float, radial_velocity: float = 0.0) -> Station:
+    """Return a station at `distance` [m] that recedes at `radial_velocity` [m s-1].
+
+    Omega = h / d^2 on `orbit`, else sqrt(GM_sun / d^3), the circular rate.
+
+    Raises
+    ------
+    ValueError
+        If `distance` is not positive, or is one that `orbit` never reaches.
+    """
+    if not distance > 0.0:
+        raise ValueError(f"a distance from the Sun must be positive, not {distance!r} m")
+    if orbit is None:
+        return Station(distance, radial_velocity, math.sqrt(GM_SUN / distance**3))
+    perihelion = orbit.semi_major_axis * (1.0 - orbit.eccentricity)
+    aphelion = orbit.semi_major_axis * (1.0 + orbit.eccentricity)
+    # Relative slack of rounding: perihelion itself, computed in other units, must pass.
+    if not perihelion * (1.0 - 1e-12) <= distance <= aphelion * (1.0 + 1e-12):
+        raise ValueError(
+            f"the distance {distance:.6g} m lies outside the orbit, which runs from {perihelion:.6g} m "
+            f"to {aphelion:.6g} m from the Sun"
+        )
+    return Station(distance, radial_velocity, angular_momentum(orbit) / distance**2)

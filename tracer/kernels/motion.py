@@ -1,0 +1,109 @@
+"""Acceleration and losses of one atom in the turning Sun-fixed frame."""
+
+import math
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.lines import sum_of_lines
+from tracer.kernels.shadow import Shadow, lit_fraction
+
+
+class Forces(NamedTuple):
+    """What acts on an atom, and the spheres between which it flies.
+
+    `gm` [m3 s-2] and `radius` [m] of the body, `outer_radius` [m]; `tide_gm` [m3 s-2] is the Sun's, 0 without tide;
+    the body stands at `distance` [m] and recedes at `radial_velocity` [m s-1]; the frame turns at `turning` [rad s-1]
+    about +z, 0 switches its terms off. `push` [m s-2] away from the Sun, at `light_distance` [m] in full light, comes
+    on top of the lines'.
+    """
+
+    gm: float
+    radius: float
+    outer_radius: float
+    tide_gm: float
+    distance: float
+    radial_velocity: float
+    turning: float
+    push: float
+    light_distance: float
+
+
+class Losses(NamedTuple):
+    """Rates of loss [s-1], at `light_distance` and in full light where they depend on either.
+
+    `ionizing` and `other_sunlight` go as light received; `other_lit` is constant in sunlight, `other_distance` goes
+    with the inverse square of the Sun's distance in light and dark, `other_everywhere` is constant.
+    """
+
+    ionizing: float
+    other_sunlight: float
+    other_lit: float
+    other_distance: float
+    other_everywhere: float
+
+
+class Sky(NamedTuple):
+    """The numbers that govern a flight."""
+
+    forces: Forces
+    losses: Losses
+    shadow: Shadow
+
+
+class Conditions(NamedTuple):
+    """All that governs a flight; `push_tables` (see `lines`) hold each line's acceleration [m s-2] at 1 au."""
+
+    sky: Sky
+    push_tables: np.ndarray
+
+
+@kernel
+def radial_velocity(forces, x, y, z, vx, vy, vz):
+    """Return the atom's heliocentric radial velocity [m s-1], positive away from the Sun.
+
+    The turning of the frame moves atom and origin alike about the Sun and drops out.
+    """
+    sx = forces.distance - x
+    s = math.sqrt(sx * sx + y * y + z * z)
+    return (y * vy + z * vz - sx * (vx - forces.radial_velocity)) / s
+
+
+@kernel
+def sunlight_received(sky, zone, x, y, z):
+    """Return the light at (x, y, z) [m] relative to full light at `light_distance`."""
+    forces = sky.forces
+    sx = forces.distance - x
+    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    return lit * forces.light_distance * forces.light_distance / (sx * sx + y * y + z * z)
+
+
+@inlined
+def rates_of_change(sky, tables, zone, x, y, z, vx, vy, vz):
+    """Return (ax, ay, az [m s-2], ionising loss, other loss [s-1]) of an atom in shadow `zone`.
+
+    a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0), s from the atom to the Sun, D = |s|,
+    W the turning and b the radiation acceleration.
+    """
+    forces, losses = sky.forces, sky.losses
+    r2 = x * x + y * y + z * z
+    pull = forces.gm / (r2 * math.sqrt(r2))
+    sx = forces.distance - x
+    per_s = 1.0 / math.sqrt(sx * sx + y * y + z * z)
+    dilution = forces.light_distance * per_s
+    dilution *= dilution
+    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    light = lit * dilution
+    sunward = forces.tide_gm * per_s * per_s
+    origin_pull = forces.tide_gm / (forces.distance * forces.distance)
+    if lit > 0.0:
+        velocity = (y * vy + z * vz - sx * (vx - forces.radial_velocity)) * per_s
+        sunward -= light * (forces.push + sum_of_lines(tables, velocity))
+    sunward *= per_s
+    w = forces.turning
+    ax = -pull * x + (sunward * sx - origin_pull) + w * (2.0 * vy + w * x)
+    ay = -(pull + sunward) * y + w * (w * y - 2.0 * vx)
+    az = -(pull + sunward) * z
+    other = light * losses.other_sunlight + lit * losses.other_lit + dilution * losses.other_distance
+    return ax, ay, az, light * losses.ionizing, other + losses.other_everywhere
