@@ -11,7 +11,7 @@ from tracer.engine.kernel_world import kernel_world
 from tracer.engine.launching import draw_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
-from tracer.kernels.tracing import ATOM, COUNTERS, STATE_SIZE, Resume, trace_slice
+from tracer.kernels.tracing import ATOM, STEPS, new_resume, trace_slice
 from tracer.kernels.world import World
 from tracer.tally.buffer import BufferLayout, make_layout, tally_views
 
@@ -30,10 +30,14 @@ class Task(NamedTuple):
 
 
 class BatchResult(NamedTuple):
-    """What a batch counted, shape (layout.size,), and what it cost: `kernel_seconds` of processor time."""
+    """What a batch counted, shape (layout.size,), and what it cost.
+
+    `flights`, integration `steps` and `kernel_seconds` of processor time.
+    """
 
     buffer: NDArray[np.float64]
     flights: int
+    steps: int
     kernel_seconds: float
 
 
@@ -49,7 +53,8 @@ class Work(NamedTuple):
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
-    return Work(scene, kernel_world(scene), make_layout(scene.grid, scene.planes), seed, particles)
+    layout = make_layout(scene.grid, scene.planes, len(scene.lines))
+    return Work(scene, kernel_world(scene), layout, seed, particles)
 
 
 def trace_batch(
@@ -77,7 +82,7 @@ def trace_batch(
     launches = draw_launches(work.scene, release, work.particles, rng)
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    resume = Resume(np.zeros(COUNTERS, dtype=np.int64), np.zeros(STATE_SIZE))
+    resume = new_resume(len(work.scene.lines))
     weight = release.rate / work.particles
     flights, seconds, budget = 0, 0.0, FIRST_SLICE_FLIGHTS
     while (atoms_before := int(resume.counters[ATOM])) < work.particles:
@@ -89,7 +94,7 @@ def trace_batch(
         tell(int(resume.counters[ATOM]) - atoms_before, made)
         if stopped():
             raise Interrupted("interrupted")
-    return BatchResult(buffer, flights, seconds)
+    return BatchResult(buffer, flights, int(resume.counters[STEPS]), seconds)
 
 
 def next_budget(budget: int, spent: float) -> int:

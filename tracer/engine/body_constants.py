@@ -14,7 +14,8 @@ class BodyConstants(NamedTuple):
     """Constants of the body at hand.
 
     `radius` [m], `gm` [m3 s-2], `rotation_period` [s] sidereal, None where the ground does not turn; `orbit` about
-    the Sun or about the host planet, None where unknown; `host_gm` [m3 s-2] of what it orbits.
+    the Sun or about the host planet, None where unknown; `host_gm` [m3 s-2] of what it orbits; `heliocentric_orbit` is
+    the host's where the host is a planet.
     """
 
     radius: float
@@ -22,6 +23,7 @@ class BodyConstants(NamedTuple):
     rotation_period: float | None
     orbit: Orbit | None
     host_gm: float
+    heliocentric_orbit: Orbit | None
 
 
 def resolve_body(spec: RunSpec) -> BodyConstants:
@@ -50,6 +52,7 @@ def resolve_body(spec: RunSpec) -> BodyConstants:
         rotation_period=period,
         orbit=orbit,
         host_gm=(known.host if known else hosts()["Sun"]).gm,
+        heliocentric_orbit=(known.host.orbit if known else None) or orbit,
     )
 
 

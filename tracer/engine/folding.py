@@ -14,17 +14,23 @@ class Folder:
 
     Attributes
     ----------
+    layout : BufferLayout
+        What the buffers hold.
     statistics : list of BatchStatistics
         One a release.
     flights : int
         Launches of the folded batches.
+    steps : int
+        Their integration steps.
     kernel_seconds : float
         Processor time [s] of the folded batches.
     """
 
     def __init__(self, layout: BufferLayout, tasks: Sequence[Task], releases: int, replicates: int) -> None:
+        self.layout = layout
         self.statistics = [BatchStatistics(layout, replicates) for _ in range(releases)]
         self.flights = 0
+        self.steps = 0
         self.kernel_seconds = 0.0
         self.folded = 0
         self._tasks = tasks
@@ -37,6 +43,7 @@ class Folder:
             ready = self._waiting.pop(due)
             self.statistics[due.release].fold(ready.buffer)
             self.flights += ready.flights
+            self.steps += ready.steps
             self.kernel_seconds += ready.kernel_seconds
             self.folded += 1
 

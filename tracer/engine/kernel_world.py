@@ -5,12 +5,18 @@ from math import log
 
 import numpy as np
 
-from tracer.constants import BOLTZMANN
+from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
 from tracer.engine.scene import Scene
+from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
+from tracer.kernels.motion import Losses
+from tracer.kernels.step_control import DEFAULT_TOLERANCE
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
-from tracer.kernels.world import Motion, World
+from tracer.kernels.world import Light, Motion, World
+from tracer.physics.lines import line_tables, push_tables
+from tracer.physics.orbit import Station
+from tracer.physics.sunlight import conditions_of, forces_of, losses_of, shadow_of
 from tracer.tally.axes import Grid, ImagePlane
 from tracer.tally.buffer import plane_shape, plane_size
 
@@ -22,9 +28,9 @@ def kernel_world(scene: Scene) -> World:
             gm=float(scene.body.gm),
             radius=float(scene.body.radius),
             outer_radius=float(scene.outer_radius),
-            frame_rate=0.0,
+            frame_rate=float(scene.frame_rate),
             age_limit=float(scene.age_limit),
-            hazard=float(scene.hazard),
+            hazard=float(scene.constant_hazard),
         ),
         Surface(
             # Nothing bounces and nothing takes the ground's temperature where none is given.
@@ -36,7 +42,44 @@ def kernel_world(scene: Scene) -> World:
         ),
         _cells(scene.grid),
         _images(scene.planes),
+        _light(scene),
+        integrated=bool(scene.integrated),
     )
+
+
+def _light(scene: Scene) -> Light:
+    """Return what integrated flights need; without a Sun the numbers are never used, but must have their types."""
+    sun = scene.sun or _NO_SUN
+    body = scene.body
+    forces = forces_of(
+        gm=body.gm,
+        radius=body.radius,
+        outer_radius=scene.outer_radius,
+        station=sun.station,
+        tide=sun.tide,
+        push=sun.push,
+    )
+    pushing = push_tables(sun.lines if sun.lines_push else (), scene.mass)
+    shadow = shadow_of(sun.shadow, body.radius, sun.station.distance)
+    conditions = conditions_of(forces, _losses(scene, sun), shadow, pushing)
+    return Light(conditions, line_tables(sun.lines), DEFAULT_TOLERANCE)
+
+
+def _losses(scene: Scene, sun: Sunlight) -> Losses:
+    """Return the losses summed by how they depend on distance and light."""
+    sums = {(True, True): sun.photo.other, (False, True): 0.0, (True, False): 0.0, (False, False): 0.0}
+    for loss in scene.losses:
+        sums[loss.inverse_square, loss.in_sunlight] += loss.rate
+    return losses_of(
+        ionizing=sun.photo.ionizing,
+        other_sunlight=sums[True, True],
+        other_lit=sums[False, True],
+        other_distance=sums[True, False],
+        other_everywhere=sums[False, False],
+    )
+
+
+_NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), False, "none", (), False, 0.0, NO_PHOTO_LOSS)
 
 
 def _typed(law: SurfaceTemperature) -> SurfaceTemperature:

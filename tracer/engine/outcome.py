@@ -1,6 +1,6 @@
 """From folded batches to the product, with all that is known about the run."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -18,12 +18,13 @@ from tracer.fate import Fate
 from tracer.kernels.temperature import temperatures
 from tracer.product.assembling import assemble
 from tracer.product.checksum import data_checksum
+from tracer.product.layout import has_lines
 from tracer.product.provenance import global_attributes
 from tracer.tally.axes import direction, middles
 from tracer.tally.budget import CLOSURE, budget_gap
-from tracer.tally.buffer import make_layout, tally_views
+from tracer.tally.buffer import BufferLayout, tally_views
 from tracer.tally.field import FieldStatistics
-from tracer.tally.normalizing import product_fields
+from tracer.tally.normalizing import ProductField, product_fields
 from tracer.tally.statistics import BatchStatistics
 
 
@@ -43,10 +44,10 @@ def make_product(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> x
         The particle budget does not close, or the propagator gave up on an atom.
     """
     each = [
-        _release_fields(scene, release, one)
+        _release_fields(scene, folder.layout, release, one)
         for release, one in zip(scene.releases, folder.statistics, strict=True)
     ]
-    fields = {name: _stacked([one[name] for one in each]) for name in each[0]}
+    fields = {name: _stacked([one[name] for one in each], has_lines(name)) for name in each[0]}
     _check_budget(scene, fields["ledger"].mean)
     product = assemble(
         scene.grid,
@@ -55,52 +56,43 @@ def make_product(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> x
         fields,
         _plain_fields(scene),
         _attributes(spec, scene, folder, costs),
+        [line.name for line in scene.lines],
     )
     product.attrs["data_checksum"] = data_checksum(product)
     return product
 
 
 def _release_fields(
-    scene: Scene, release: Release, statistics: BatchStatistics
+    scene: Scene, layout: BufferLayout, release: Release, statistics: BatchStatistics
 ) -> dict[str, FieldStatistics]:
-    layout = make_layout(scene.grid, scene.planes)
-    means = product_fields(tally_views(layout, statistics.mean), scene.grid, scene.planes, release.rate)
-    errors = product_fields(
-        tally_views(layout, statistics.standard_error()), scene.grid, scene.planes, release.rate
-    )
-    replicates = _replicate_fields(scene, release, statistics)
+    def fields_of(buffer: NDArray[np.float64]) -> Iterator[ProductField]:
+        return product_fields(tally_views(layout, buffer), scene.grid, scene.planes, release.rate)
+
+    replicates: dict[str, list[NDArray[np.float64]]] = {}
+    whole = np.zeros(layout.size)
+    for group in statistics.replicate_means():
+        whole[: layout.replicated_size] = group
+        for field in fields_of(whole):
+            if field.replicated:
+                replicates.setdefault(field.name, []).append(field.values * field.scale)
     return {
         mean.name: FieldStatistics(
-            mean.values * mean.scale, error.values * error.scale, replicates.get(mean.name)
+            mean.values * mean.scale,
+            error.values * error.scale,
+            np.stack(replicates[mean.name]) if mean.name in replicates else None,
         )
-        for mean, error in zip(means, errors, strict=True)
+        for mean, error in zip(fields_of(statistics.mean), fields_of(statistics.standard_error()), strict=True)
     }
 
 
-def _replicate_fields(
-    scene: Scene, release: Release, statistics: BatchStatistics
-) -> Mapping[str, NDArray[np.float64]]:
-    groups = statistics.replicate_means()
-    if not len(groups):
-        return {}
-    layout = make_layout(scene.grid, scene.planes)
-    whole = np.zeros(layout.size)
-    found: dict[str, list[NDArray[np.float64]]] = {}
-    for group in groups:
-        whole[: layout.replicated_size] = group
-        for field in product_fields(tally_views(layout, whole), scene.grid, scene.planes, release.rate):
-            if field.replicated:
-                found.setdefault(field.name, []).append(field.values * field.scale)
-    return {name: np.stack(values) for name, values in found.items()}
-
-
-def _stacked(releases: list[FieldStatistics]) -> FieldStatistics:
-    """Put the releases side by side: along the first axis, behind that of the replicates."""
+def _stacked(releases: list[FieldStatistics], by_line: bool) -> FieldStatistics:
+    """Put the releases side by side: along the first axis, behind those of lines and replicates."""
+    axis = int(by_line)
     kept = [one.replicates for one in releases if one.replicates is not None]
     return FieldStatistics(
-        np.stack([one.mean for one in releases]),
-        np.stack([one.standard_error for one in releases]),
-        np.stack(kept, axis=1) if kept else None,
+        np.stack([one.mean for one in releases], axis=axis),
+        np.stack([one.standard_error for one in releases], axis=axis),
+        np.stack(kept, axis=axis + 1) if kept else None,
     )
 
 
@@ -140,10 +132,25 @@ def _attributes(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> di
         "batches": ensemble.batches,
         "particles_per_batch": ensemble.particles_per_batch,
         "flights": folder.flights,
-        "integration_steps": 0,
+        "integration_steps": folder.steps,
         "kernel_seconds": folder.kernel_seconds,
         "wall_seconds": costs.wall_seconds,
         "workers": costs.workers,
         "body_radius": scene.body.radius,
+        **_sun_attributes(scene, folder),
         "complete": 1,
+    }
+
+
+def _sun_attributes(scene: Scene, folder: Folder) -> dict[str, Any]:
+    """Return where the body stood in sunlight, and the share of survival time beyond the end of a line's table."""
+    if scene.sun is None:
+        return {}
+    station = scene.sun.station
+    tallies = [tally_views(folder.layout, one.mean) for one in folder.statistics]
+    return {
+        "sun_distance": station.distance,
+        "sun_radial_velocity": station.radial_velocity,
+        "orbital_rate": station.orbital_rate,
+        "share_beyond_line_tables": np.array([float(one.beyond[0] / one.life[0]) for one in tallies]),
     }

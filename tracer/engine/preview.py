@@ -10,7 +10,7 @@ from tracer.engine.executors.threads import WINDOW
 from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
-from tracer.kernels.arc_flight import CROSSED, LANDED
+from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux

@@ -15,8 +15,10 @@ from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
+from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
 from tracer.engine.runspec.temperature import TemperatureLaw, UniformTemperature
 from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
+from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
 from tracer.tally.axes import Grid, ImagePlane, make_grid, make_image_plane, viewer_direction
@@ -34,20 +36,31 @@ class Release(NamedTuple):
 
 
 class Loss(NamedTuple):
-    """A loss in flight at constant `rate` [s-1]."""
+    """A loss in flight: `rate` [s-1], at 1 au where it goes with the `inverse_square` of the distance from the Sun.
+
+    One that acts `in_sunlight` goes with the visible part of the Sun's disc.
+    """
 
     name: str
     rate: float
+    inverse_square: bool
+    in_sunlight: bool
+
+    @property
+    def constant(self) -> bool:
+        """Whether the rate is the same wherever an atom is."""
+        return not (self.inverse_square or self.in_sunlight)
 
 
 class Scene(NamedTuple):
     """All that decides the physics and the cells of a run, in SI units.
 
-    `body` holds the constants of the body, `mass` [kg] of one atom; `surface_temperature` is None where nothing
+    `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body, `mass` [kg] of one atom; `surface_temperature` is None where nothing
     needs it; `outer_radius` [m] from the centre, `age_limit` [s].
     """
 
     body: BodyConstants
+    sun: Sunlight | None
     mass: float
     losses: tuple[Loss, ...]
     releases: tuple[Release, ...]
@@ -60,15 +73,32 @@ class Scene(NamedTuple):
     planes: tuple[ImagePlane, ...]
 
     @property
-    def hazard(self) -> float:
-        """Rate [s-1] of all losses together."""
-        return sum(loss.rate for loss in self.losses)
+    def lines(self) -> tuple[VelocityTable, ...]:
+        """Emission lines with known g; without a Sun nothing shines."""
+        return () if self.sun is None else self.sun.lines
+
+    @property
+    def constant_hazard(self) -> float:
+        """Rate [s-1] of the losses that act everywhere alike."""
+        return sum(loss.rate for loss in self.losses if loss.constant)
+
+    @property
+    def integrated(self) -> bool:
+        """Whether flights must be integrated; else closed-form arcs are exact."""
+        if self.sun is None:
+            return False
+        return self.sun.matters_in_flight or not all(loss.constant for loss in self.losses)
+
+    @property
+    def frame_rate(self) -> float:
+        """Angular rate [rad s-1] at which the Sun-fixed frame turns about +z; without a Sun it does not."""
+        return 0.0 if self.sun is None else self.sun.station.orbital_rate
 
     @property
     def ground_spin(self) -> float:
-        """Angular rate [rad s-1] of the ground about +z in the Sun-fixed frame, which without a Sun does not turn."""
+        """Angular rate [rad s-1] of the ground about +z in the Sun-fixed frame, 0 where it has no rotation period."""
         period = self.body.rotation_period
-        return 0.0 if period is None else 2.0 * np.pi / period
+        return 0.0 if period is None else 2.0 * np.pi / period - self.frame_rate
 
 
 def build_scene(spec: RunSpec) -> Scene:
@@ -84,8 +114,12 @@ def build_scene(spec: RunSpec) -> Scene:
     temperature = spec.surface.temperature
     return Scene(
         body=body,
+        sun=resolve_sunlight(spec, body),
         mass=_mass(spec),
-        losses=tuple(Loss(loss.name, si(loss.rate)) for loss in spec.gas.loss),
+        losses=tuple(
+            Loss(loss.name, si(loss.rate), loss.scaling == "inverse-square", loss.where == "sunlight")
+            for loss in spec.gas.loss
+        ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
         surface_temperature=None if temperature is None else _surface_temperature(temperature),
         sticking=spec.surface.sticking,
@@ -100,7 +134,8 @@ def build_scene(spec: RunSpec) -> Scene:
 def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
     """Return the files that the run file refers to, in its order."""
     tables = (entry.speed for entry in spec.release)
-    return tuple(spec.folder / table.file for table in tables if isinstance(table, TabulatedSpeed))
+    names = [table.file for table in tables if isinstance(table, TabulatedSpeed)]
+    return tuple(spec.folder / name for name in [*names, *g_files(spec)])
 
 
 def _mass(spec: RunSpec) -> float:

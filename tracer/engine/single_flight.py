@@ -11,7 +11,8 @@ from tracer.engine.scene import Scene
 from tracer.errors import TracerError
 from tracer.fate import Fate
 from tracer.kernels.arc import highest
-from tracer.kernels.arc_flight import AGED, CROSSED, LANDED, arc_end, arc_state, launch_arc
+from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc
+from tracer.kernels.endings import AGED, CROSSED, LANDED
 from tracer.tally.axes import direction
 
 POINTS = 201

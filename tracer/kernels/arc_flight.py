@@ -8,13 +8,9 @@ import math
 
 from tracer.kernels.arc import crossing, landing, make_arc, position_at, state_at
 from tracer.kernels.compiling import kernel
+from tracer.kernels.endings import AGED, CROSSED, LANDED, UNRESOLVED
 from tracer.kernels.scoring import score_sample
 from tracer.kernels.universal import anomaly_at_time, time_at
-
-LANDED = 0
-CROSSED = 1
-AGED = 2
-UNRESOLVED = 3
 
 SAMPLES_PER_FLIGHT = 6
 """Strata of a flight, one sample each: more gain less than the time they cost."""
@@ -64,18 +60,19 @@ def arc_state(motion, arc, s):
 
 
 @kernel
-def score_arc(world, tally, arc, s_end, weight, rng):
+def score_arc(world, tally, arc, s_end, weight, shine, rng):
     """Count the flight from launch to `s_end` by residence time, one random sample in each equal stratum of s.
 
     A sample stands for the time r ds that the atom spends in its stratum, so its content is weight times survival
     times r ds. Even strata of s, not of time, put more of the samples near the body, where cells are small.
     """
     motion = world.motion
-    width = s_end / max(1, SAMPLES_PER_FLIGHT)
+    width = s_end / SAMPLES_PER_FLIGHT
     for k in range(SAMPLES_PER_FLIGHT):
         t, r, x, y, z = position_at(arc, (k + rng.random()) * width)
         x, y = turned(x, y, motion.frame_rate * t)
         content = weight * r * width
         if motion.hazard > 0.0:
             content *= math.exp(-motion.hazard * t)
-        score_sample(tally, world.cells, world.images, x, y, z, r, content)
+        # Arcs are for scenes in which nothing depends on light: nothing shines, nothing is ionised.
+        score_sample(tally, world.cells, world.images, x, y, z, r, content, 0.0, shine[:0])

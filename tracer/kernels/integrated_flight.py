@@ -31,6 +31,7 @@ from tracer.kernels.dense_output import (
     set_component,
 )
 from tracer.kernels.dormand_prince import trial_step
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
 from tracer.kernels.motion import rates_of_change
 from tracer.kernels.shadow import (
     CYLINDER,
@@ -43,12 +44,6 @@ from tracer.kernels.shadow import (
     zone_beyond,
 )
 from tracer.kernels.step_control import first_step, step_change, step_error
-
-FLYING = -1
-LANDED = 0
-CROSSED = 1
-AGED = 2
-UNRESOLVED = 3
 
 TIME = 0
 PLACE = 1

@@ -13,13 +13,18 @@ class Tally(NamedTuple):
     """Views into one batch's counts; weights are [s-1], samples weight times time [atoms].
 
     `content` (altitude, latitude, local_time) and `column_content` (latitude, local_time) hold samples, the latter
-    scaled by (R/r)^2; `image_content` is flat over all image planes. Fluxes (latitude, local_time), `ledger` (fate)
-    and `launches` hold weights, `life` weight times survival time.
+    scaled by (R/r)^2; `image_content` is flat over all image planes. `emission` (line, altitude, latitude,
+    local_time) and `image_emission` (line, pixel) hold samples times scattered photons a second, `ionized` (altitude,
+    latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time), `ledger` (fate) and
+    `launches` hold weights, `life` weight times survival time, `beyond` samples beyond the end of a line's table.
     """
 
     content: np.ndarray
     column_content: np.ndarray
     image_content: np.ndarray
+    emission: np.ndarray
+    image_emission: np.ndarray
+    ionized: np.ndarray
     released: np.ndarray
     returned: np.ndarray
     captured: np.ndarray
@@ -27,6 +32,7 @@ class Tally(NamedTuple):
     escaped_by_direction: np.ndarray
     ledger: np.ndarray
     launches: np.ndarray
+    beyond: np.ndarray
     life: np.ndarray
 
 
@@ -37,18 +43,27 @@ def ground_cell(cells, x, y, z, r):
 
 
 @kernel
-def score_sample(tally, cells, images, x, y, z, r, content):
-    """Count `content` atoms at (x, y, z) [m] in density, vertical column and images."""
+def score_sample(tally, cells, images, x, y, z, r, content, ionizing, shine):
+    """Count `content` atoms at (x, y, z) [m] in density, vertical column, images and what sunlight does to them.
+
+    `ionizing` [s-1] is their rate of ionisation there, `shine` (line,) [s-1] the photons that each scatters.
+    """
     layer = altitude_cell(cells, r)
     if layer >= 0:
         row, column = ground_cell(cells, x, y, z, r)
         tally.content[layer, row, column] += content
         shrink = cells.radius / r
         tally.column_content[row, column] += content * shrink * shrink
+        if ionizing > 0.0:
+            tally.ionized[layer, row, column] += content * ionizing
+        for line in range(shine.shape[0]):
+            tally.emission[line, layer, row, column] += content * shine[line]
     for i in range(images.first.shape[0]):
         pixel = image_pixel(images, i, cells.radius, x, y, z)
         if pixel >= 0:
             tally.image_content[pixel] += content
+            for line in range(shine.shape[0]):
+                tally.image_emission[line, pixel] += content * shine[line]
 
 
 @kernel

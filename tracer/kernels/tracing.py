@@ -6,16 +6,20 @@ from typing import NamedTuple
 import numpy as np
 
 from tracer.fate import Fate
-from tracer.kernels.arc_flight import AGED, CROSSED, LANDED, arc_end, arc_state, launch_arc, score_arc
+from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
 from tracer.kernels.bounce import rebound
 from tracer.kernels.compiling import kernel
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
+from tracer.kernels.integrated_flight import HAZARDS, PLACE, TIME, advance, new_curve, new_flight, start_flight
 from tracer.kernels.scoring import ground_cell, mean_survival_time
+from tracer.kernels.step_scoring import book_step, score_step
 
 ATOM = 0
 ALOFT = 1
 HOME_ROW = 2
 HOME_COLUMN = 3
-COUNTERS = 4
+STEPS = 4
+COUNTERS = 5
 
 SURVIVAL = 6
 AGE = 7
@@ -23,13 +27,22 @@ STATE_SIZE = 8
 
 
 class Resume(NamedTuple):
-    """What a slice leaves for the next: `counters` int64 (COUNTERS,), `state` float64 (STATE_SIZE,).
+    """What a slice leaves for the next, and room to work in.
 
-    The state is position [m], velocity [m s-1] in the Sun-fixed frame, survival and age [s] at a launch.
+    `counters` int64 (COUNTERS,); `state` (STATE_SIZE,): position [m], velocity [m s-1] in the Sun-fixed frame, survival
+    and age [s] at a launch. `flight`, `curve` serve the flight under way, `shine` (line,) its samples.
     """
 
     counters: np.ndarray
     state: np.ndarray
+    flight: np.ndarray
+    curve: np.ndarray
+    shine: np.ndarray
+
+
+def new_resume(lines):
+    """Return the start of a batch of atoms with `lines` emission lines."""
+    return Resume(np.zeros(COUNTERS, np.int64), np.zeros(STATE_SIZE), new_flight(), new_curve(), np.zeros(lines))
 
 
 @kernel
@@ -77,24 +90,64 @@ def _launch(world, state, nx, ny, nz, vx, vy, vz):
 
 @kernel
 def _fly_once(world, weight, resume, tally, rng):
-    state = resume.state
-    motion = world.motion
-    alive = weight * state[SURVIVAL]
-    arc = launch_arc(motion, state[0], state[1], state[2], state[3], state[4], state[5])
-    ending, s_end = arc_end(motion, arc, motion.age_limit - state[AGE])
-    score_arc(world, tally, arc, s_end, alive, rng)
-    t, x, y, z, vx, vy, vz = arc_state(motion, arc, s_end)
-    kept = math.exp(-motion.hazard * t)
+    alive = weight * resume.state[SURVIVAL]
     tally.launches[0] += alive
-    tally.life[0] += alive * mean_survival_time(motion.hazard, t)
-    tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
+    if world.integrated:
+        end = _fly_integrated(world, resume, tally, alive, rng)
+    else:
+        end = _fly_arc(world, resume, tally, alive, rng)
+    ending, kept, t, x, y, z, vx, vy, vz = end
     alive *= kept
-    state[SURVIVAL] *= kept
-    state[AGE] += t
+    resume.state[SURVIVAL] *= kept
+    resume.state[AGE] += t
     if ending == LANDED:
         _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng)
     else:
         _end_aloft(world, resume, tally, ending, alive, x, y, z)
+
+
+@kernel
+def _fly_arc(world, resume, tally, alive, rng):
+    """Return (ending, survival, time, position, velocity) of one flight on a closed-form arc, and count it."""
+    state = resume.state
+    motion = world.motion
+    arc = launch_arc(motion, state[0], state[1], state[2], state[3], state[4], state[5])
+    ending, s_end = arc_end(motion, arc, motion.age_limit - state[AGE])
+    score_arc(world, tally, arc, s_end, alive, resume.shine, rng)
+    t, x, y, z, vx, vy, vz = arc_state(motion, arc, s_end)
+    kept = math.exp(-motion.hazard * t)
+    tally.life[0] += alive * mean_survival_time(motion.hazard, t)
+    tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
+    return ending, kept, t, x, y, z, vx, vy, vz
+
+
+@kernel
+def _fly_integrated(world, resume, tally, alive, rng):
+    """Return (ending, survival, time, position, velocity) of one integrated flight, and count it step by step."""
+    state, flight, curve = resume.state, resume.flight, resume.curve
+    light = world.light
+    start_flight(
+        flight, light.conditions, light.tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
+    )
+    time_left = world.motion.age_limit - state[AGE]
+    standing = FLYING
+    while standing == FLYING:
+        standing = advance(flight, curve, light.conditions, light.tolerance, time_left)
+        resume.counters[STEPS] += 1
+        score_step(world, tally, curve, alive, resume.shine, rng)
+        book_step(tally, curve, alive)
+    kept = math.exp(-(flight[HAZARDS] + flight[HAZARDS + 1]))
+    return (
+        standing,
+        kept,
+        flight[TIME],
+        flight[PLACE],
+        flight[PLACE + 1],
+        flight[PLACE + 2],
+        flight[PLACE + 3],
+        flight[PLACE + 4],
+        flight[PLACE + 5],
+    )
 
 
 @kernel

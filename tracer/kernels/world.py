@@ -2,8 +2,11 @@
 
 from typing import NamedTuple
 
+import numpy as np
+
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
+from tracer.kernels.motion import Conditions
 
 
 class Motion(NamedTuple):
@@ -21,10 +24,20 @@ class Motion(NamedTuple):
     hazard: float
 
 
+class Light(NamedTuple):
+    """What integrated flights need: `conditions`, each line's g (`line_tables`, see `lines`), the `tolerance`."""
+
+    conditions: Conditions
+    line_tables: np.ndarray
+    tolerance: float
+
+
 class World(NamedTuple):
-    """Motion, ground and where to count."""
+    """Motion, ground and where to count; flights are integrated under `light` if `integrated`, else arcs."""
 
     motion: Motion
     surface: Surface
     cells: Cells
     images: Images
+    light: Light
+    integrated: bool

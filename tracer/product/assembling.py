@@ -15,6 +15,7 @@ from tracer.product.layout import (
     FATE,
     LABELS,
     LATITUDE,
+    LINE,
     LOCAL_TIME,
     RELEASE,
     REPLICATE,
@@ -38,6 +39,7 @@ def assemble(
     fields: Mapping[str, FieldStatistics],
     plain: Mapping[str, NDArray[np.float64]],
     attributes: Mapping[str, Any],
+    line_names: Sequence[str] = (),
 ) -> xr.Dataset:
     """Return a product as `open_product` gives it, before it has a file.
 
@@ -55,6 +57,8 @@ def assemble(
         Variables without errors that the grid does not give: `surface_temperature` [K], shape (L, H).
     attributes : mapping
         Global attributes; those that are None are left out.
+    line_names : sequence of str
+        Names along the `line` dimension; without lines there are no line variables.
 
     Raises
     ------
@@ -62,12 +66,13 @@ def assemble(
         Where a variable is missing, unknown or of another shape.
     """
     images = {plane.name: plane for plane in planes}
-    table = layout(images)
+    table = layout(images, bool(line_names))
     values = {**plain, "cell_volume": cell_volume(grid), "cell_area": cell_area(grid)}
     _check_names(table, fields, values)
-    coordinates, bounds = _axes(grid, planes, release_names)
+    names = {RELEASE: release_names, FATE: FATE_LABELS, **({LINE: line_names} if line_names else {})}
+    coordinates, bounds = _axes(grid, planes, names)
     sizes = {axis: len(entry[1]) for axis, entry in coordinates.items()}
-    sizes |= {RELEASE: len(release_names), FATE: len(FATE_LABELS)}
+    sizes |= {dimension: len(labels) for dimension, labels in names.items()}
     variables: dict[str, Entry] = {}
     for name, row in table.items():
         if row.tallied:
@@ -92,7 +97,7 @@ def without_label_indexes(ds: xr.Dataset) -> xr.Dataset:
 
 
 def _axes(
-    grid: Grid, planes: Sequence[ImagePlane], release_names: Sequence[str]
+    grid: Grid, planes: Sequence[ImagePlane], names: Mapping[str, Sequence[str]]
 ) -> tuple[dict[str, Entry], dict[str, Entry]]:
     edges: dict[str, tuple[NDArray[np.float64], dict[str, Any]]] = {
         ALTITUDE: (
@@ -117,7 +122,6 @@ def _axes(
     for axis, (ends, attributes) in edges.items():
         coordinates[axis] = ((axis,), middles(ends), {**attributes, "bounds": axis + BOUNDS})
         bounds[axis + BOUNDS] = ((axis, EDGE), np.stack([ends[:-1], ends[1:]], axis=1), {})
-    names = {RELEASE: release_names, FATE: FATE_LABELS}
     for label in LABELS:
         if label.dimension in names:
             text = np.array(list(names[label.dimension]), dtype=object)

@@ -13,7 +13,7 @@ STANDARD_ERROR = "_standard_error"
 REPLICATES = "_replicates"
 BOUNDS = "_bounds"
 
-RELEASE, FATE = "release", "fate"
+RELEASE, FATE, LINE = "release", "fate", "line"
 ALTITUDE, LATITUDE, LOCAL_TIME = "altitude", "latitude", "local_time"
 REPLICATE, EDGE = "replicate", "bounds"
 
@@ -33,7 +33,7 @@ class Label(NamedTuple):
 LABELS = (
     Label(RELEASE, "release_name", "name of the release"),
     Label(FATE, "fate_name", "how a particle's life ends"),
-    Label("line", "line_name", "name of the emission line"),
+    Label(LINE, "line_name", "name of the emission line"),
 )
 
 
@@ -51,6 +51,8 @@ class Variable(NamedTuple):
     """Also kept as `q_replicates`."""
     optional: bool = False
     """May be missing from a product."""
+    lines: bool = False
+    """Only where the gas has lines with known g."""
     image: str | None = None
     """Product name of the image, in a row that was written out for one."""
 
@@ -69,6 +71,22 @@ ROWS = (
         replicated=True,
     ),
     Variable("column_" + IMAGE, _PIXELS, "m-2", "column density along the line of sight", replicated=True),
+    Variable(
+        "emission_rate",
+        (LINE, *_CELLS),
+        "m-3 s-1",
+        "photons scattered per volume and time, in sunlight",
+        replicated=True,
+        lines=True,
+    ),
+    Variable(
+        "brightness_" + IMAGE,
+        (LINE, *_PIXELS),
+        "1e10 m-2 s-1",
+        "brightness in rayleigh along the line of sight",
+        replicated=True,
+        lines=True,
+    ),
     Variable("release_flux", _GROUND, "m-2 s-1", "flux of new atoms from the surface, bounces not counted"),
     Variable("return_flux", _GROUND, "m-2 s-1", "flux of landing atoms, every landing counted"),
     Variable("capture_flux", _GROUND, "m-2 s-1", "flux of atoms that the surface keeps for good"),
@@ -81,6 +99,7 @@ ROWS = (
         "s-1 sr-1",
         "rate of escape per solid angle, by the place of crossing on the outer sphere",
     ),
+    Variable("ionization_rate", _CELLS, "m-3 s-1", "ions made by sunlight per volume and time"),
     Variable("ledger", (RELEASE, FATE), "s-1", "particle budget"),
     Variable("mean_flights", (RELEASE,), "1", "launches per released atom"),
     Variable("mean_life", (RELEASE,), "s", "mean time from release to any end"),
@@ -110,13 +129,15 @@ LANDMARKS = ("ledger", "release_name", "fate_name")
 """Variables without which a file is no product."""
 
 
-def layout(images: Iterable[str] = ()) -> dict[str, Variable]:
+def layout(images: Iterable[str] = (), lines: bool = False) -> dict[str, Variable]:
     """Return the product's variables by name, with every image row written out for each image.
 
     Parameters
     ----------
     images : iterable of str
         Product names of the images.
+    lines : bool
+        Whether the gas has lines.
 
     Returns
     -------
@@ -126,12 +147,20 @@ def layout(images: Iterable[str] = ()) -> dict[str, Variable]:
     names = tuple(images)
     variables: dict[str, Variable] = {}
     for row in ROWS:
+        if row.lines and not lines:
+            continue
         for variable in [_of_image(row, name) for name in names] if IMAGE in row.name else [row]:
             variables[variable.name] = variable
     return variables
 
 
-def variable_names(images: Iterable[str] = ()) -> list[str]:
+def has_lines(name: str) -> bool:
+    """Return whether variable `name`, as written out for an image or not, has the dimension `line`."""
+    stems = [row.name.split(IMAGE) for row in ROWS if row.lines]
+    return any(name == stem[0] or (len(stem) > 1 and name.startswith(stem[0])) for stem in stems)
+
+
+def variable_names(images: Iterable[str] = (), lines: bool = True) -> list[str]:
     """Return every name that a product with these images may hold, coordinates and bounds included.
 
     A name that comes twice means that two images, or their errors, would collide.
@@ -140,7 +169,7 @@ def variable_names(images: Iterable[str] = ()) -> list[str]:
     names = [label.variable for label in LABELS]
     for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes):
         names += [axis, axis + BOUNDS]
-    for variable in layout(images).values():
+    for variable in layout(images, lines).values():
         names.append(variable.name)
         names += [variable.name + STANDARD_ERROR] * variable.tallied
         names += [variable.name + REPLICATES] * variable.replicated

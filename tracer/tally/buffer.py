@@ -26,16 +26,19 @@ class BufferLayout(NamedTuple):
         return sum(prod(shape) for shape in self.shapes)
 
 
-def make_layout(grid: Grid, planes: Sequence[ImagePlane]) -> BufferLayout:
-    """Return the layout for a grid and its image planes; contents come first, since they are kept by replicate."""
+def make_layout(grid: Grid, planes: Sequence[ImagePlane], lines: int) -> BufferLayout:
+    """Return the layout for a grid, image planes and a number of emission lines.
+
+    What is kept by replicate comes first.
+    """
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
     pixels = sum(plane_size(plane) for plane in planes)
-    contents = ((altitudes, *ground), ground, (pixels,))
+    cells = (altitudes, *ground)
+    kept = (cells, ground, (pixels,), (lines, *cells), (lines, pixels))
     fluxes = (ground,) * 5
-    return BufferLayout(
-        (*contents, *fluxes, (len(Fate),), (1,), (1,)), sum(prod(shape) for shape in contents)
-    )
+    numbers = ((len(Fate),), (1,), (1,), (1,))
+    return BufferLayout((*kept, cells, *fluxes, *numbers), sum(prod(shape) for shape in kept))
 
 
 def plane_shape(plane: ImagePlane) -> tuple[int, int]:

@@ -12,14 +12,21 @@ from tracer.tally.buffer import plane_shape, plane_size
 
 Floats = NDArray[np.float64]
 
+RAYLEIGH = 1e10
+"""Photons m-2 s-1, into 4 pi sr, in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""
+
 
 class ProductField(NamedTuple):
-    """Where a product variable comes from: the raw field's values, times `scale` (broadcast)."""
+    """Where a product variable comes from: the raw field's values, times `scale` (broadcast).
+
+    `replicated` fields are kept by replicate, `by_line` ones have a leading dimension of lines.
+    """
 
     name: str
     values: Floats
     scale: Floats
-    replicated: bool
+    replicated: bool = False
+    by_line: bool = False
 
 
 def product_fields(
@@ -46,25 +53,34 @@ def product_fields(
     per_volume = (1.0 / cell_volume(grid))[:, :, np.newaxis]
     per_atom = np.array(1.0 / release_rate)
     one = np.array(1.0)
-    yield ProductField("number_density", tally.content, per_volume, True)
-    yield ProductField("vertical_column", tally.column_content, per_area, True)
-    yield from _image_columns(tally.image_content, planes)
-    yield ProductField("release_flux", tally.released, per_area, False)
-    yield ProductField("return_flux", tally.returned, per_area, False)
-    yield ProductField("capture_flux", tally.captured, per_area, False)
-    yield ProductField("escape_flux", tally.escaped, per_area, False)
-    yield ProductField("escape_rate_by_direction", tally.escaped_by_direction, per_solid_angle, False)
-    yield ProductField("ledger", tally.ledger, one, False)
-    yield ProductField("mean_flights", tally.launches[0], per_atom, False)
-    yield ProductField("mean_life", tally.life[0], per_atom, False)
+    yield ProductField("number_density", tally.content, per_volume, replicated=True)
+    yield ProductField("vertical_column", tally.column_content, per_area, replicated=True)
+    for plane, content, per_pixel in _images(tally.image_content, planes):
+        yield ProductField(f"column_{plane}", content, per_pixel, replicated=True)
+    if len(tally.emission):
+        yield ProductField("emission_rate", tally.emission, per_volume, replicated=True, by_line=True)
+        for plane, content, per_pixel in _images(tally.image_emission, planes):
+            yield ProductField(
+                f"brightness_{plane}", content, per_pixel / RAYLEIGH, replicated=True, by_line=True
+            )
+    yield ProductField("release_flux", tally.released, per_area)
+    yield ProductField("return_flux", tally.returned, per_area)
+    yield ProductField("capture_flux", tally.captured, per_area)
+    yield ProductField("escape_flux", tally.escaped, per_area)
+    yield ProductField("escape_rate_by_direction", tally.escaped_by_direction, per_solid_angle)
+    yield ProductField("ionization_rate", tally.ionized, per_volume)
+    yield ProductField("ledger", tally.ledger, one)
+    yield ProductField("mean_flights", tally.launches[0], per_atom)
+    yield ProductField("mean_life", tally.life[0], per_atom)
 
 
-def _image_columns(image_content: Floats, planes: Sequence[ImagePlane]) -> Iterator[ProductField]:
+def _images(contents: Floats, planes: Sequence[ImagePlane]) -> Iterator[tuple[str, Floats, Floats]]:
+    """Yield each plane's name, its pixels out of the flat `contents` (..., pixel), and one over a pixel's area."""
     start = 0
     for plane in planes:
         stop = start + plane_size(plane)
         width = plane.horizontal_edges[1] - plane.horizontal_edges[0]
         height = plane.vertical_edges[1] - plane.vertical_edges[0]
-        values = image_content[..., start:stop].reshape(*image_content.shape[:-1], *plane_shape(plane))
-        yield ProductField(f"column_{plane.name}", values, np.array(1.0 / (width * height)), True)
+        pixels = contents[..., start:stop].reshape(*contents.shape[:-1], *plane_shape(plane))
+        yield plane.name, pixels, np.array(1.0 / (width * height))
         start = stop

@@ -1,0 +1,145 @@
+"""The Sun's part of a scene: where the body stands, what pushes, what shines and what destroys."""
+
+from collections.abc import Iterator
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.catalogue.lines import lines_of
+from tracer.engine.body_constants import BodyConstants
+from tracer.engine.refusal import refuse
+from tracer.engine.runspec.run import RunSpec
+from tracer.engine.runspec.spectral_line import GTable, SpectralLineTable
+from tracer.engine.runspec.sun import SunTable
+from tracer.engine.two_columns import read_two_columns
+from tracer.errors import InputError
+from tracer.physics.lines import VelocityTable, catalogue_table, constant_table, table_of
+from tracer.physics.orbit import Station, station_at_distance, station_at_true_anomaly
+from tracer.physics.photo_losses import PhotoLoss, photo_loss
+from tracer.units import Quantity, si
+
+KILOMETRE_PER_SECOND = 1e3
+NO_PHOTO_LOSS = PhotoLoss(0.0, 0.0, True)
+
+
+class Sunlight(NamedTuple):
+    """The Sun as a body at `station` has it.
+
+    `tide` says whether the Sun's tide acts, `shadow` is the run file's word. `lines` shine, and push as well if
+    `lines_push`; `push` [m s-2] at 1 au comes beside them. `photo` holds the photo-losses at 1 au.
+    """
+
+    station: Station
+    tide: bool
+    shadow: str
+    lines: tuple[VelocityTable, ...]
+    lines_push: bool
+    push: float
+    photo: PhotoLoss
+
+    @property
+    def matters_in_flight(self) -> bool:
+        """Whether anything but the turning of the frame depends on where an atom is under the Sun."""
+        return bool(self.tide or self.lines or self.push or self.photo.total)
+
+
+def resolve_sunlight(spec: RunSpec, body: BodyConstants) -> Sunlight | None:
+    """Return the Sun's part of the scene, None where the run file has no `[sun]`.
+
+    Raises
+    ------
+    InputError
+        No orbit to stand on, a distance that the orbit never reaches, a push by lines that nothing is known of, or a
+        table of g that cannot be used.
+    """
+    if spec.sun is None:
+        return None
+    lines = _lines(spec)
+    lines_push, push = _push(spec, bool(lines))
+    return Sunlight(
+        station=_station(spec, spec.sun, body),
+        tide=spec.sun.tide,
+        shadow=spec.sun.shadow,
+        lines=lines,
+        lines_push=lines_push,
+        push=push,
+        photo=_photo(spec, spec.sun),
+    )
+
+
+def lines_without_g(spec: RunSpec) -> tuple[str, ...]:
+    """Return the catalogue's lines of the gas that neither push nor shine, since their g is not known."""
+    own = {line.name for line in spec.gas.line}
+    return tuple(line.name for line in lines_of(spec.gas.species) if not line.has_g and line.name not in own)
+
+
+def replaced_lines(spec: RunSpec) -> tuple[str, ...]:
+    """Return the catalogue's lines with known g that the run file replaces by its own."""
+    own = {line.name for line in spec.gas.line}
+    return tuple(line.name for line in lines_of(spec.gas.species) if line.has_g and line.name in own)
+
+
+def _station(spec: RunSpec, sun: SunTable, body: BodyConstants) -> Station:
+    orbit = body.heliocentric_orbit
+    if sun.true_anomaly is not None:
+        if orbit is None:
+            raise refuse(
+                spec, "sun.true_anomaly", sun.true_anomaly, "needs an orbit; give body.orbit, or sun.distance"
+            )
+        return station_at_true_anomaly(orbit, si(sun.true_anomaly))
+    assert sun.distance is not None
+    velocity = 0.0 if sun.radial_velocity is None else si(sun.radial_velocity)
+    try:
+        return station_at_distance(orbit, si(sun.distance), velocity)
+    except ValueError as error:
+        raise refuse(spec, "sun.distance", sun.distance, str(error)) from None
+
+
+def _lines(spec: RunSpec) -> tuple[VelocityTable, ...]:
+    own = [_own_line(spec, number, line) for number, line in enumerate(spec.gas.line, 1)]
+    taken = {table.name for table in own}
+    known = (catalogue_table(line) for line in lines_of(spec.gas.species) if line.name not in taken)
+    return (*(table for table in known if table is not None), *own)
+
+
+def _own_line(spec: RunSpec, number: int, line: SpectralLineTable) -> VelocityTable:
+    wavelength = si(line.wavelength)
+    if isinstance(line.g, Quantity):
+        return constant_table(line.name, wavelength, si(line.g))
+    key = f"gas.line[{number}].g.file"
+    try:
+        rows = read_two_columns(spec.folder / line.g.file, "radial velocity in km/s, g in 1/s")
+        velocities = np.array([row.first for row in rows]) * KILOMETRE_PER_SECOND
+        return table_of(line.name, wavelength, velocities, np.array([row.second for row in rows]))
+    except (InputError, ValueError) as error:
+        raise refuse(spec, key, line.g.file, str(error)) from None
+
+
+def _push(spec: RunSpec, lines_known: bool) -> tuple[bool, float]:
+    """Return (whether the lines push, push at 1 au beside them [m s-2])."""
+    wanted = spec.gas.radiation_acceleration
+    if isinstance(wanted, Quantity):
+        return False, si(wanted)
+    if wanted == "lines" and not lines_known:
+        raise refuse(
+            spec,
+            "gas.radiation_acceleration",
+            wanted,
+            f"no line of {spec.gas.species} with known g is in the catalogue; give its [[gas.line]], a push such as "
+            '"0.05 m s-2" at 1 au, or "none"',
+        )
+    return wanted != "none" and lines_known, 0.0
+
+
+def _photo(spec: RunSpec, sun: SunTable) -> PhotoLoss:
+    given = spec.gas.photoionization_rate
+    if given is not None:
+        return PhotoLoss(si(given), 0.0, True)
+    return photo_loss(spec.gas.species, sun.solar_activity) or NO_PHOTO_LOSS
+
+
+def g_files(spec: RunSpec) -> Iterator[str]:
+    """Yield the files of g that the run file refers to, as it writes them."""
+    for line in spec.gas.line:
+        if isinstance(line.g, GTable):
+            yield line.g.file

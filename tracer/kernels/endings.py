@@ -1,0 +1,7 @@
+"""How one flight ends; FLYING where it has not."""
+
+FLYING = -1
+LANDED = 0
+CROSSED = 1
+AGED = 2
+UNRESOLVED = 3

@@ -1,0 +1,56 @@
+"""What one accepted step of an integrated flight leaves in the cells and in the particle budget."""
+
+import math
+
+from tracer.fate import Fate
+from tracer.kernels.compiling import kernel
+from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, hazards_at, place_at
+from tracer.kernels.lines import beyond_tables, line_value
+from tracer.kernels.motion import radial_velocity, sunlight_received
+from tracer.kernels.scoring import score_sample
+
+
+@kernel
+def score_step(world, tally, curve, weight, shine, rng):
+    """Count the flown part of a step by residence time: one sample at an even random time within it.
+
+    The sample stands for weight times survival times the step's duration; `shine` is room for each line's photons.
+    """
+    part = rng.random() * curve[FLOWN]
+    x, y, z, vx, vy, vz = place_at(curve, part)
+    ionizing_hazard, other_hazard = hazards_at(curve, part)
+    content = weight * math.exp(-(ionizing_hazard + other_hazard)) * curve[FLOWN] * curve[LENGTH]
+    sky, tables = world.light.conditions.sky, world.light.line_tables
+    received = sunlight_received(sky, int(curve[CURVE_ZONE]), x, y, z)
+    velocity = radial_velocity(sky.forces, x, y, z, vx, vy, vz)
+    for line in range(shine.shape[0]):
+        shine[line] = received * line_value(tables, line, velocity)
+    if beyond_tables(tables, velocity):
+        tally.beyond[0] += content
+    r = math.sqrt(x * x + y * y + z * z)
+    score_sample(
+        tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine
+    )
+
+
+@kernel
+def book_step(tally, curve, weight):
+    """Enter the flown part of a step into life and ledger: survival is integrated, not sampled.
+
+    What is lost is shared between ionisation and other losses as their hazards grew; both grow in proportion within a
+    step but for the small change of their ratio. The survival time is Simpson's rule over the step, whose error goes
+    with the fourth power of the step's hazard.
+    """
+    flown = curve[FLOWN]
+    ionizing0, other0 = hazards_at(curve, 0.0)
+    ionizing1, other1 = hazards_at(curve, flown)
+    ionizing, other = hazards_at(curve, 0.5 * flown)
+    before, after = math.exp(-(ionizing0 + other0)), math.exp(-(ionizing1 + other1))
+    middle = math.exp(-(ionizing + other))
+    tally.life[0] += weight * flown * curve[LENGTH] * (before + 4.0 * middle + after) / 6.0
+    lost = weight * (before - after)
+    grown = (ionizing1 - ionizing0) + (other1 - other0)
+    if grown > 0.0:
+        share = (ionizing1 - ionizing0) / grown
+        tally.ledger[Fate.IONIZED] += lost * share
+        tally.ledger[Fate.OTHER_LOSS] += lost * (1.0 - share)
