@@ -81,7 +81,9 @@ def _release_fields(
             error.values * error.scale,
             np.stack(replicates[mean.name]) if mean.name in replicates else None,
         )
-        for mean, error in zip(fields_of(statistics.mean), fields_of(statistics.standard_error()), strict=True)
+        for mean, error in zip(
+            fields_of(statistics.mean), fields_of(statistics.standard_error()), strict=True
+        )
     }
 
 

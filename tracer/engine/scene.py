@@ -15,8 +15,8 @@ from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
-from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
 from tracer.engine.runspec.temperature import TemperatureLaw, UniformTemperature
+from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
 from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius

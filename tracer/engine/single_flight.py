@@ -5,6 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.optimize import brentq
 
 from tracer.engine.kernel_world import kernel_world
 from tracer.engine.scene import Scene
@@ -12,11 +13,27 @@ from tracer.errors import TracerError
 from tracer.fate import Fate
 from tracer.kernels.arc import highest
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc
-from tracer.kernels.endings import AGED, CROSSED, LANDED
+from tracer.kernels.dense_output import FLOWN, LENGTH, START, hazards_at, place_at
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
+from tracer.kernels.integrated_flight import advance, new_curve, new_flight, start_flight
+from tracer.kernels.motion import Sky
+from tracer.kernels.shadow import lit_fraction, zone_at
+from tracer.kernels.world import World
 from tracer.tally.axes import direction
 
-POINTS = 201
-"""Rows of a flight's path, evenly spaced in the universal anomaly."""
+Floats = NDArray[np.float64]
+Vector = tuple[float, ...]
+
+ARC_POINTS = 201
+"""Rows of the path along an arc, evenly spaced in the universal anomaly."""
+
+STEP_POINTS = 4
+"""Rows of the path for each step of an integrated flight."""
+
+TOLERANCE = 1e-11
+"""Of the integrator: one flight can afford more care than millions."""
+
+LIT_COLUMN = 2
 
 LANDED_WORD = "landed"
 ENDINGS = {LANDED: LANDED_WORD, CROSSED: Fate.ESCAPED.label, AGED: Fate.AGE_LIMIT.label}
@@ -55,10 +72,18 @@ class FlightSummary(NamedTuple):
 
 
 class Flight(NamedTuple):
-    """A flight's `path`, (POINTS, 9) in the order of PATH_COLUMNS, and its `summary`."""
+    """A flight's `path`, (n, 9) in the order of PATH_COLUMNS, and its `summary`."""
 
-    path: NDArray[np.float64]
+    path: Floats
     summary: FlightSummary
+
+
+class Track(NamedTuple):
+    """A flight as a propagator gives it: its `ending`, `path` in the order of PATH_COLUMNS, greatest distance [m]."""
+
+    ending: int
+    path: Floats
+    greatest_distance: float
 
 
 def fly(scene: Scene, launch: Launch) -> Flight:
@@ -69,20 +94,71 @@ def fly(scene: Scene, launch: Launch) -> Flight:
     TracerError
         The propagator gave up.
     """
-    motion = kernel_world(scene).motion
+    world = kernel_world(scene)
     position, velocity = launch_state(launch, scene.body.radius)
+    track = (_integrated_track if scene.integrated else _arc_track)(world, position, velocity)
+    if track.ending not in ENDINGS:
+        raise TracerError("the propagator gave up on this flight. This is a fault of the program")
+    if scene.sun is not None:
+        track.path[:, LIT_COLUMN] = _lit_fractions(world.light.conditions.sky, track.path[:, 3:6])
+    return Flight(track.path, _summary(track, scene.body.radius))
+
+
+def _arc_track(world: World, position: Vector, velocity: Vector) -> Track:
+    motion = world.motion
     arc = launch_arc(motion, *position, *velocity)
     ending, s_end = arc_end(motion, arc, motion.age_limit)
-    if ending not in ENDINGS:
-        raise TracerError("the propagator gave up on this flight. This is a fault of the program")
-    states = np.array([arc_state(motion, arc, s) for s in np.linspace(0.0, s_end, POINTS)])
+    states = np.array([arc_state(motion, arc, s) for s in np.linspace(0.0, s_end, ARC_POINTS)])
     time = states[:, 0]
-    path = np.column_stack([time, np.exp(-motion.hazard * time), np.zeros(POINTS), states[:, 1:]])
+    path = np.column_stack([time, np.exp(-motion.hazard * time), np.zeros(ARC_POINTS), states[:, 1:]])
     top = arc_state(motion, arc, highest(arc, s_end))[1:4]
-    return Flight(path, _summary(ENDINGS[ending], path, float(np.linalg.norm(top)) - scene.body.radius))
+    return Track(ending, path, float(np.linalg.norm(top)))
 
 
-def launch_state(launch: Launch, radius: float) -> tuple[tuple[float, ...], tuple[float, ...]]:
+def _integrated_track(world: World, position: Vector, velocity: Vector) -> Track:
+    conditions = world.light.conditions
+    flight, curve = new_flight(), new_curve()
+    start_flight(flight, conditions, TOLERANCE, *position, *velocity)
+    rows = [(0.0, 1.0, 0.0, *position, *velocity)]
+    top = float(np.linalg.norm(position))
+    standing = FLYING
+    while standing == FLYING:
+        standing = advance(flight, curve, conditions, TOLERANCE, world.motion.age_limit)
+        rows += [_row(curve, part) for part in np.linspace(0.0, curve[FLOWN], STEP_POINTS + 1)[1:]]
+        top = max(top, _highest_in_step(curve))
+    return Track(standing, np.array(rows), top)
+
+
+def _row(curve: Floats, part: float) -> tuple[float, ...]:
+    survival = float(np.exp(-sum(hazards_at(curve, part))))
+    return (curve[START] + part * curve[LENGTH], survival, 0.0, *place_at(curve, part))
+
+
+def _highest_in_step(curve: Floats) -> float:
+    """Return the greatest distance [m] from the centre in the flown part of a step: at its end, or where it turns."""
+
+    def climb(part: float) -> float:
+        x, y, z, vx, vy, vz = place_at(curve, part)
+        return float(x * vx + y * vy + z * vz)
+
+    end = curve[FLOWN]
+    if climb(0.0) > 0.0 > climb(end):
+        end = brentq(climb, 0.0, end)
+    return float(np.linalg.norm(place_at(curve, end)[:3]))
+
+
+def _lit_fractions(sky: Sky, positions: Floats) -> Floats:
+    places = [tuple(map(float, position)) for position in positions]
+    zones = [zone_at(sky.shadow, *place) for place in places]
+    return np.array(
+        [
+            lit_fraction(sky.shadow, zone, *place, sky.forces.distance)
+            for zone, place in zip(zones, places, strict=True)
+        ]
+    )
+
+
+def launch_state(launch: Launch, radius: float) -> tuple[Vector, Vector]:
     """Return position [m] and velocity [m s-1] of a launch in the Sun-fixed frame.
 
     North at a pole is the limit along the meridian of the given local time.
@@ -96,20 +172,21 @@ def launch_state(launch: Launch, radius: float) -> tuple[tuple[float, ...], tupl
     return tuple(map(float, radius * up)), tuple(map(float, launch.speed * way))
 
 
-def _summary(fate: str, path: NDArray[np.float64], apex_altitude: float) -> FlightSummary:
+def _summary(track: Track, radius: float) -> FlightSummary:
+    path = track.path
     directions = path[:, 3:6] / np.linalg.norm(path[:, 3:6], axis=1)[:, np.newaxis]
     x, y, z = directions[-1]
     return FlightSummary(
-        fate=fate,
+        fate=ENDINGS[track.ending],
         flight_time=float(path[-1, 0]),
-        apex_altitude=apex_altitude,
+        apex_altitude=track.greatest_distance - radius,
         latitude=degrees(atan2(z, hypot(x, y))),
         local_time=(12.0 + atan2(y, x) * 12.0 / pi) % 24.0,
         ground_arc=degrees(_swept_angle(directions)),
     )
 
 
-def _swept_angle(directions: NDArray[np.float64]) -> float:
+def _swept_angle(directions: Floats) -> float:
     """Return the angle [rad] along a path of unit vectors (n, 3); it may exceed half a turn."""
     across = np.linalg.norm(np.cross(directions[:-1], directions[1:]), axis=1)
     along = np.sum(directions[:-1] * directions[1:], axis=1)

@@ -5,7 +5,7 @@ Hairer, Norsett & Wanner (1993), Solving Ordinary Differential Equations I, sect
 of the tableau for one component: `y` its value, `h` the step [s], `k1`, `k2`, ... its slopes.
 """
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 from tracer.kernels.motion import rates_of_change
 
 

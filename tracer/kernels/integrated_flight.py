@@ -292,7 +292,17 @@ def _cut(flight, curve, conditions, zone, surface, part):
     flight[ZONE] = beyond
     _set_slopes(
         flight,
-        rates_of_change(conditions.sky, conditions.push_tables, beyond, place[0], place[1], place[2], place[3], place[4], place[5]),
+        rates_of_change(
+            conditions.sky,
+            conditions.push_tables,
+            beyond,
+            place[0],
+            place[1],
+            place[2],
+            place[3],
+            place[4],
+            place[5],
+        ),
     )
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]

@@ -28,9 +28,7 @@ def score_step(world, tally, curve, weight, shine, rng):
     if beyond_tables(tables, velocity):
         tally.beyond[0] += content
     r = math.sqrt(x * x + y * y + z * z)
-    score_sample(
-        tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine
-    )
+    score_sample(tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine)
 
 
 @kernel

@@ -10,7 +10,15 @@ from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
 from tracer.kernels.bounce import rebound
 from tracer.kernels.compiling import kernel
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
-from tracer.kernels.integrated_flight import HAZARDS, PLACE, TIME, advance, new_curve, new_flight, start_flight
+from tracer.kernels.integrated_flight import (
+    HAZARDS,
+    PLACE,
+    TIME,
+    advance,
+    new_curve,
+    new_flight,
+    start_flight,
+)
 from tracer.kernels.scoring import ground_cell, mean_survival_time
 from tracer.kernels.step_scoring import book_step, score_step
 
@@ -42,7 +50,9 @@ class Resume(NamedTuple):
 
 def new_resume(lines):
     """Return the start of a batch of atoms with `lines` emission lines."""
-    return Resume(np.zeros(COUNTERS, np.int64), np.zeros(STATE_SIZE), new_flight(), new_curve(), np.zeros(lines))
+    return Resume(
+        np.zeros(COUNTERS, np.int64), np.zeros(STATE_SIZE), new_flight(), new_curve(), np.zeros(lines)
+    )
 
 
 @kernel

@@ -67,7 +67,9 @@ def table_of(name: str, wavelength: float, velocities: Floats, g: Floats) -> Vel
     step = (velocities[-1] - velocities[0]) / steps.size
     # An even table keeps its own knots: rounding those of the residual flux would shift the line.
     if np.all(np.abs(steps - step) <= 1e-6 * step):
-        return VelocityTable(name, wavelength, float(velocities[0]), float(step), np.array(g, dtype=np.float64))
+        return VelocityTable(
+            name, wavelength, float(velocities[0]), float(step), np.array(g, dtype=np.float64)
+        )
     whole = np.rint(velocities / FINEST_STEP).astype(np.int64)
     common = int(np.gcd.reduce(np.diff(whole)))
     grid = np.arange(whole[0], whole[-1] + common, common) * FINEST_STEP

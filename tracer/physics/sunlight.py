@@ -63,10 +63,16 @@ def losses_of(
 ) -> Losses:
     """Return rates of loss [s-1] as kernels take them (see `tracer.kernels.motion.Losses`), at 1 au where they fall."""
     return Losses(
-        float(ionizing), float(other_sunlight), float(other_lit), float(other_distance), float(other_everywhere)
+        float(ionizing),
+        float(other_sunlight),
+        float(other_lit),
+        float(other_distance),
+        float(other_everywhere),
     )
 
 
-def conditions_of(forces: Forces, losses: Losses, shadow: Shadow, pushing: Floats | None = None) -> Conditions:
+def conditions_of(
+    forces: Forces, losses: Losses, shadow: Shadow, pushing: Floats | None = None
+) -> Conditions:
     """Return all that governs a flight; `pushing` are the lines' accelerations, None where no line pushes."""
     return Conditions(Sky(forces, losses, shadow), push_tables((), 1.0) if pushing is None else pushing)
