@@ -16,7 +16,10 @@ def photo_rates() -> Mapping[str, PhotoRate]:
     """Return the photo-rates by species."""
     channels = {row["species"]: row for row in rows("photo_channels_1au.csv")}
     return MappingProxyType(
-        {row["species"]: _photo_rate(row, channels.get(row["species"])) for row in rows("photo_rates_1au.csv")}
+        {
+            row["species"]: _photo_rate(row, channels.get(row["species"]))
+            for row in rows("photo_rates_1au.csv")
+        }
     )
 
 

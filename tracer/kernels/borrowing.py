@@ -1,7 +1,8 @@
 """Arrays inside kernels without counting references.
 
-numba counts a reference at each function that an array passes through, by an atomic addition: in the innermost loop
-that cost more than the arithmetic. A borrowed view has no owner to count; the caller's array outlives it.
+numba counts a reference at each function that an array passes through, by an atomic addition: in the
+innermost loop that cost more than the arithmetic. A borrowed view has no owner to count; the caller's array
+outlives it.
 """
 
 from llvmlite.ir import Constant

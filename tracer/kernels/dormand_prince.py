@@ -1,11 +1,12 @@
 """One trial step of the Dormand-Prince 5(4) pair with its dense output.
 
-Dormand & Prince (1980), J. Comput. Appl. Math. 6, 19, the seven-stage pair RK5(4)7M; dense output of fourth order by
-Hairer, Norsett & Wanner (1993), Solving Ordinary Differential Equations I, section II.6. Each function below is a row
-of the tableau for one component: `y` its value, `h` the step [s], `k1`, `k2`, ... its slopes.
+Dormand & Prince (1980), J. Comput. Appl. Math. 6, 19, the seven-stage pair RK5(4)7M; dense output of fourth
+order by Hairer, Norsett & Wanner (1993), Solving Ordinary Differential Equations I, section II.6. Each
+function below is a row of the tableau for one component: `y` its value, `h` the step [s], `k1`, `k2`, ... its
+slopes.
 """
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 from tracer.kernels.motion import rates_of_change
 
 
@@ -77,10 +78,10 @@ def _quartic(h, k1, k3, k4, k5, k6, k7):
 def trial_step(sky, tables, zone, h, place, slopes):
     """Try one step of `h` [s] within shadow `zone` from `place` (x, y, z, vx, vy, vz) with its `slopes`.
 
-    `slopes` are accelerations and loss rates as `rates_of_change` returns them. Returns (growth, end slopes, error,
-    quartic): the growth of the six coordinates and the two hazards; the slopes at the end, which are the next step's
-    first; the estimated error of position [m], velocity [m s-1] and hazard, squared; and the fourth-order
-    coefficients of the dense output, eight components.
+    `slopes` are accelerations and loss rates as `rates_of_change` returns them. Returns (growth, end slopes,
+    error, quartic): the growth of the six coordinates and the two hazards; the slopes at the end, which are
+    the next step's first; the estimated error of position [m], velocity [m s-1] and hazard, squared; and the
+    fourth-order coefficients of the dense output, eight components.
     """
     x, y, z, u, v, w = place
     a1, b1, c1, i1, o1 = slopes

@@ -1,8 +1,9 @@
 """A flight by numerical integration: one accepted step at a time, cut where the flight or the shadow's zone ends.
 
-A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the ionising and
-the other hazard, whose sum's negative exponential is the survival; the slopes there; the next step [s]; the step
-before the present zone [s]; the zone; the number of trial steps. It can be kept and gone on with at any time.
+A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the
+ionising and the other hazard, whose sum's negative exponential is the survival; the slopes there; the next
+step [s]; the step before the present zone [s]; the zone; the number of trial steps. It can be kept and gone
+on with at any time.
 """
 
 import math
@@ -97,9 +98,9 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
 def advance(flight, curve, conditions, tolerance, time_limit):
     """Make one accepted step of `flight`, store it in `curve` and return how the flight stands.
 
-    The step is cut at the ground, at the outer sphere, at an edge of the shadow or at `time_limit` [s] since launch,
-    whichever comes first: the flight goes on from there, and `curve[FLOWN]` says which part of the curve is flown.
-    Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
+    The step is cut at the ground, at the outer sphere, at an edge of the shadow or at `time_limit` [s] since
+    launch, whichever comes first: the flight goes on from there, and `curve[FLOWN]` says which part of the
+    curve is flown. Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
     """
     sky, tables = conditions.sky, borrowed(conditions.push_tables)
     flight, curve = borrowed(flight), borrowed(curve)
@@ -107,9 +108,9 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     place = _place(flight)
     slopes = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2], flight[SLOPES + 3], flight[SLOPES + 4])
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
-    fastest = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    speed = math.sqrt(fastest + conditions.sky.forces.gm / r)
-    h = flight[STEP]
+    speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
+    speed = math.sqrt(speed_squared + conditions.sky.forces.gm / r)
+    h = min(flight[STEP], _longest_step(r, speed_squared, slopes))
     if zone == PENUMBRA:
         h = min(h, _longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
@@ -299,7 +300,17 @@ def _cut(flight, curve, conditions, zone, surface, part):
     flight[ZONE] = beyond
     _set_slopes(
         flight,
-        rates_of_change(conditions.sky, conditions.push_tables, beyond, place[0], place[1], place[2], place[3], place[4], place[5]),
+        rates_of_change(
+            conditions.sky,
+            conditions.push_tables,
+            beyond,
+            place[0],
+            place[1],
+            place[2],
+            place[3],
+            place[4],
+            place[5],
+        ),
     )
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
@@ -307,6 +318,16 @@ def _cut(flight, curve, conditions, zone, surface, part):
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING
+
+
+@inlined
+def _longest_step(r, speed_squared, slopes):
+    """Return the time [s] in which an atom can come about as far as it is from the centre.
+
+    A way without gravity has no error to bound its steps, and could pass the body twice in one.
+    """
+    pull = abs(slopes[0]) + abs(slopes[1]) + abs(slopes[2])
+    return r / math.sqrt(speed_squared + pull * r)
 
 
 @kernel

@@ -15,7 +15,8 @@ SHADOW_KINDS = {"none": NO_SHADOW, "cylinder": CYLINDER, "penumbra": CONES}
 def shadow_of(kind: str, radius: float, distance: float) -> Shadow:
     """Return the shadow of a body of `radius` [m] at `distance` [m] from the Sun; `kind` is a word of the run file.
 
-    Penumbra: cone of half angle asin((R_sun + R)/d); umbra: asin((R_sun - R)/d), with its tip at R/sin behind.
+    Penumbra: cone of half angle asin((R_sun + R)/d); umbra: asin((R_sun - R)/d), with its tip at R/sin
+    behind.
     """
     sun_radius = hosts()["Sun"].radius
     penumbra = umbra = 0.0
@@ -63,10 +64,16 @@ def losses_of(
 ) -> Losses:
     """Return rates of loss [s-1] as kernels take them (see `tracer.kernels.motion.Losses`), at 1 au where they fall."""
     return Losses(
-        float(ionizing), float(other_sunlight), float(other_lit), float(other_distance), float(other_everywhere)
+        float(ionizing),
+        float(other_sunlight),
+        float(other_lit),
+        float(other_distance),
+        float(other_everywhere),
     )
 
 
-def conditions_of(forces: Forces, losses: Losses, shadow: Shadow, pushing: Floats | None = None) -> Conditions:
+def conditions_of(
+    forces: Forces, losses: Losses, shadow: Shadow, pushing: Floats | None = None
+) -> Conditions:
     """Return all that governs a flight; `pushing` are the lines' accelerations, None where no line pushes."""
     return Conditions(Sky(forces, losses, shadow), push_tables((), 1.0) if pushing is None else pushing)
