@@ -59,7 +59,9 @@ def _host(row: dict[str, str]) -> Host:
     orbit = None
     if row["semi_major_axis_au"]:
         orbit = Orbit(float(row["semi_major_axis_au"]) * ASTRONOMICAL_UNIT, float(row["eccentricity"]))
-    return Host(row["host"], float(row["gm_km3_s2"]) * KILOMETRE**3, float(row["mean_radius_km"]) * KILOMETRE, orbit)
+    return Host(
+        row["host"], float(row["gm_km3_s2"]) * KILOMETRE**3, float(row["mean_radius_km"]) * KILOMETRE, orbit
+    )
 
 
 def _body(row: dict[str, str]) -> Body:
@@ -70,6 +72,7 @@ def _body(row: dict[str, str]) -> Body:
         radius=float(row["mean_radius_km"]) * KILOMETRE,
         rotation_period=float(row["sidereal_rotation_d"]) * DAY,
         orbit=Orbit(
-            float(row["semi_major_axis"]) * _LENGTH_UNITS[row["semi_major_axis_unit"]], float(row["eccentricity"])
+            float(row["semi_major_axis"]) * _LENGTH_UNITS[row["semi_major_axis_unit"]],
+            float(row["eccentricity"]),
         ),
     )

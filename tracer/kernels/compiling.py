@@ -1,7 +1,28 @@
-"""The compiler options of all kernels, in one place."""
+"""The compiler options of all kernels, in one place.
 
-from numba import njit
+No `fastmath`: with it other CPU features give other sums, and a product must be the same to the last bit for any
+number of workers. `error_model="numpy"` lets divisions vectorise; `nogil` lets threads run side by side. Kernels that
+allocate nothing also do without numba's reference counts: counted atomically for every array of every NamedTuple at
+every call, they took more time than the flights themselves.
+"""
 
-kernel = njit(nogil=True, error_model="numpy")
+import numba
 
-inlined = njit(nogil=True, error_model="numpy", forceinline=True)
+from tracer.kernels import code_cache
+
+OPTIONS = {"nogil": True, "error_model": "numpy"}
+
+
+def kernel(function):
+    """Compile `function`, which allocates nothing, on its first call and keep the machine code between starts."""
+    return code_cache.attach(numba.njit(**OPTIONS, _nrt=False)(function))
+
+
+def allocating_kernel(function):
+    """Compile `function`, which makes arrays, on its first call and keep the machine code between starts."""
+    return code_cache.attach(numba.njit(**OPTIONS)(function))
+
+
+def inlined(function):
+    """Compile `function` into each kernel that calls it: for what runs in the innermost loop, where a call shows."""
+    return code_cache.attach(numba.njit(**OPTIONS, _nrt=False, forceinline=True)(function))

@@ -10,7 +10,6 @@ import math
 
 import numpy as np
 
-from tracer.kernels.borrowing import borrowed
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
@@ -102,8 +101,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     launch, whichever comes first: the flight goes on from there, and `curve[FLOWN]` says which part of the
     curve is flown. Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
     """
-    sky, tables = conditions.sky, borrowed(conditions.push_tables)
-    flight, curve = borrowed(flight), borrowed(curve)
+    sky, tables = conditions.sky, conditions.push_tables
     zone = int(flight[ZONE])
     place = _place(flight)
     slopes = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2], flight[SLOPES + 3], flight[SLOPES + 4])

@@ -5,7 +5,7 @@ import math
 import numpy as np
 import pytest
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import allocating_kernel
 from tracer.kernels.dense_output import CURVE_SIZE, CURVE_ZONE, FLOWN, place_at
 from tracer.kernels.integrated_flight import (
     AGED,
@@ -229,7 +229,7 @@ def test_losses_in_the_dark_are_zero(shadow):
     assert flight[8] > 0.0
 
 
-@kernel
+@allocating_kernel
 def wrong_zones(conditions, tolerance, positions, velocities):
     """Return how many steps hold a point in another zone of the shadow, underground or outside, and all steps."""
     flight, curve = np.zeros(FLIGHT_SIZE), np.zeros(CURVE_SIZE)

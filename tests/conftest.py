@@ -1,0 +1,92 @@
+"""Small products that many tests share, and one way to trace a run file's text once a session."""
+
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+import xarray as xr
+
+from tracer.engine.runspec.load import load_run, parse_run
+from tracer.engine.tracing import run
+
+SMALL_RUN = """
+title = "Sodium over Harrow, small"
+
+[body]
+name = "Harrow"
+radius = "1800 km"
+gm = "9500 km3 s-2"
+rotation_period = "60 d"
+
+[gas]
+species = "Na"
+
+[[gas.loss]]
+name = "charge exchange"
+rate = "1e-5 s-1"
+
+[[release]]
+name = "impact vapour"
+rate = "2e24 s-1"
+speed = { law = "maxwell-flux", temperature = "3500 K" }
+place = { law = "cosine-power", toward = "dawn", power = 1 }
+
+[[release]]
+name = "sputtering"
+rate = "5e23 s-1"
+speed = { law = "sigmund-thompson", binding_energy = "2 eV", cutoff_energy = "2020.75 eV" }
+place = { law = "band", latitude = ["30 deg", "60 deg"] }
+
+[surface]
+temperature = { law = "quarter-power", subsolar = "600 K", night = "110 K" }
+sticking = 0.4
+accommodation = 0.7
+
+[domain]
+outer_radius = "20 radii"
+age_limit = "30 d"
+
+[grid]
+altitude = { first_cell = "50 km", top = "3 radii", cells = 5 }
+latitude_cells = 4
+local_time_cells = 6
+
+[[image]]
+name = "tail from north"
+look_from = "north"
+horizontal = ["-5 radii", "3 radii"]
+vertical = ["-3 radii", "3 radii"]
+pixels = [8, 6]
+
+[ensemble]
+particles_per_batch = 250
+batches = 6
+replicates = 3
+"""
+
+
+@pytest.fixture(scope="session")
+def small_run_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Return a run file that uses most of gravity's keys and traces in a blink; not to be changed."""
+    path = tmp_path_factory.mktemp("small") / "harrow-small.toml"
+    path.write_text(SMALL_RUN, encoding="utf-8")
+    return path
+
+
+@pytest.fixture(scope="session")
+def small_product(small_run_file: Path) -> xr.Dataset:
+    """Return the product of `small_run_file`; not to be changed."""
+    return run(load_run(small_run_file), workers=1)
+
+
+@pytest.fixture(scope="session")
+def traced() -> Callable[[str], xr.Dataset]:
+    """Return a function that traces a run file's text, each text once a session."""
+    known: dict[str, xr.Dataset] = {}
+
+    def trace(text: str) -> xr.Dataset:
+        if text not in known:
+            known[text] = run(parse_run(text, "run file"), workers=1)
+        return known[text]
+
+    return trace

@@ -1,0 +1,38 @@
+"""The demos, with fewer particles than they ask for: each runs, keeps its budget and follows the CF conventions."""
+
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+import tracer
+
+DEMOS = sorted((Path(__file__).parents[3] / "runs").glob("*.toml"))
+FEWER = ("ensemble.particles_per_batch=10", "ensemble.batches=3")
+
+
+@pytest.fixture(scope="module")
+def products(tmp_path_factory):
+    """Return the demos' products by the name of the run file."""
+    folder = tmp_path_factory.mktemp("demos")
+    paths = {demo.stem: folder / f"{demo.stem}.nc" for demo in DEMOS}
+    for demo in DEMOS:
+        tracer.save_product(tracer.run(tracer.load_run(demo, FEWER), workers=1), paths[demo.stem])
+    return paths
+
+
+@pytest.mark.parametrize("demo", [demo.stem for demo in DEMOS])
+def test_demo_closes_its_budget(products, demo):
+    with tracer.open_product(products[demo]) as ds:
+        released = (ds.release_flux * ds.cell_area).sum(("latitude", "local_time"))
+        assert (abs(ds.ledger.sum("fate") / released - 1.0) < 1e-9).all()
+        assert (ds.ledger.sel(fate="unresolved") == 0.0).all()
+
+
+def test_demo_products_follow_the_cf_conventions(products):
+    # One process for all: starting the checker takes longer than checking.
+    checker = [str(Path(sys.executable).with_name("compliance-checker")), "--test=cf:1.11", "--criteria", "lenient"]
+    done = subprocess.run([*checker, *map(str, products.values())], capture_output=True, text=True)
+    assert done.returncode == 0, done.stdout
+    assert done.stdout.count("All tests passed!") == len(products)

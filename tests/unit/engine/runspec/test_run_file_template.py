@@ -1,0 +1,19 @@
+"""The run file to start from is a good one."""
+
+import pytest
+
+from tracer.engine.runspec.load import parse_run
+from tracer.engine.runspec.template import run_file_template
+
+
+@pytest.mark.parametrize("title", ["Helium over Harrow", 'Öl "über" \\ Harrow'])
+def test_template_loads_as_it_is(title: str) -> None:
+    spec = parse_run(run_file_template(title), "new.toml")
+    assert spec.title == title
+    assert spec.body.name == "Harrow"
+
+
+def test_template_explains_its_keys() -> None:
+    lines = run_file_template("x").splitlines()
+    assert sum("#" in line for line in lines) > 10
+    assert max(map(len, lines)) <= 110

@@ -1,0 +1,45 @@
+"""The file against the CF conventions, by the checker that practitioners use; it needs no network."""
+
+import subprocess
+import sysconfig
+from pathlib import Path
+
+import netCDF4
+import pytest
+
+from tracer.product.writing import save_product
+
+CHECKER = Path(sysconfig.get_path("scripts")) / "compliance-checker"
+
+
+def check(path, criteria):
+    command = [CHECKER, "--test=cf:1.11", "--criteria", criteria, "-f", "text", str(path)]
+    return subprocess.run(command, capture_output=True, text=True)
+
+
+@pytest.fixture
+def saved(product, tmp_path):
+    save_product(product, tmp_path / "harrow.nc")
+    return tmp_path / "harrow.nc"
+
+
+def test_the_conventions_are_met(saved):
+    done = check(saved, "lenient")
+    assert done.returncode == 0, done.stdout
+
+
+def test_the_only_advice_not_taken_is_the_order_of_axes(saved):
+    # Local time is neither a longitude nor a time, so its place behind latitude looks foreign to the checker.
+    done = check(saved, "strict")
+    advice = [line for line in done.stdout.splitlines() if line.startswith("*")]
+    assert all(
+        "not in the recommended order T, Z, Y, X" in line and "local_time (U)" in line for line in advice
+    )
+
+
+def test_the_checker_fails_a_coordinate_without_its_unit(saved):
+    with netCDF4.Dataset(saved, "a") as file:
+        file["altitude"].delncattr("units")
+    done = check(saved, "lenient")
+    assert done.returncode == 1
+    assert "units" in done.stdout

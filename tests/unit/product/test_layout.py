@@ -1,0 +1,45 @@
+from tracer.product.layout import layout, variable_names, why_no_product
+
+GROUND = ("release", "latitude", "local_time")
+
+
+def test_every_variable_of_gravity_has_its_dimensions_and_unit():
+    table = {name: (row.dimensions, row.unit) for name, row in layout(["tail"]).items()}
+    assert table == {
+        "number_density": (("release", "altitude", "latitude", "local_time"), "m-3"),
+        "vertical_column": (GROUND, "m-2"),
+        "column_tail": (("release", "tail_vertical", "tail_horizontal"), "m-2"),
+        "release_flux": (GROUND, "m-2 s-1"),
+        "return_flux": (GROUND, "m-2 s-1"),
+        "capture_flux": (GROUND, "m-2 s-1"),
+        "escape_flux": (GROUND, "m-2 s-1"),
+        "escape_rate_by_direction": (GROUND, "s-1 sr-1"),
+        "ledger": (("release", "fate"), "s-1"),
+        "mean_flights": (("release",), "1"),
+        "mean_life": (("release",), "s"),
+        "surface_temperature": (("latitude", "local_time"), "K"),
+        "cell_volume": (("altitude", "latitude"), "m3"),
+        "cell_area": (("latitude",), "m2"),
+    }
+
+
+def test_fields_for_sums_over_cells_are_kept_as_replicates():
+    kept = {name for name, row in layout(["tail"]).items() if row.replicated}
+    assert kept == {"number_density", "vertical_column", "column_tail"}
+
+
+def test_names_of_two_images_that_collide_come_twice():
+    names = variable_names(["tail", "tail_standard_error"])
+    assert {name for name in names if names.count(name) > 1} == {"column_tail_standard_error"}
+
+
+def test_names_of_images_that_do_not_collide_come_once():
+    names = variable_names(["tail", "limb"])
+    assert len(names) == len(set(names))
+
+
+def test_a_later_product_version_is_told_with_the_known_one():
+    variables = ("ledger", "release_name", "fate_name")
+    assert why_no_product({"product_version": 1}, variables) is None
+    reason = why_no_product({"product_version": 2}, variables)
+    assert reason == "is of product_version 2; this package reads version 1"

@@ -1,0 +1,88 @@
+"""The command `tracer`: a table of commands, each loaded only when it is asked for."""
+
+import sys
+from collections.abc import Sequence
+from importlib import import_module
+from typing import Annotated, NamedTuple
+
+import typer
+
+from tracer.errors import TracerError
+
+
+class Entry(NamedTuple):
+    """A command's name, its line in the overview, and the module that holds its function `command`."""
+
+    name: str
+    help: str
+    module: str
+
+
+COMMANDS = (
+    Entry("new", "Write a commented run file to start from.", "tracer.commands.new"),
+    Entry(
+        "check",
+        "Validate a run file and print the resolved scene, without running it.",
+        "tracer.commands.check",
+    ),
+    Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
+    Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
+    Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),
+)
+
+EPILOG = (
+    "Begin with: tracer new, tracer check, tracer run. Results are a planning aid: flight rules and the responsible "
+    "team come first."
+)
+
+
+def main(arguments: Sequence[str] | None = None) -> None:
+    """Run the command line; exit codes are 0 done, 2 bad input, 3 interrupted, 1 anything else."""
+    words = list(sys.argv[1:] if arguments is None else arguments)
+    asked = next((word for word in words if not word.startswith("-")), None)
+    try:
+        _application(asked)(words, prog_name="tracer")
+    except TracerError as error:
+        typer.echo(f"tracer: {error}", err=True)
+        sys.exit(error.exit_code)
+
+
+def _application(asked: str | None) -> typer.Typer:
+    app = typer.Typer(
+        name="tracer",
+        help="Trace the thin gas of airless bodies: from one run file to density, columns and escape.",
+        epilog=EPILOG,
+        add_completion=False,
+        no_args_is_help=True,
+        pretty_exceptions_enable=False,
+    )
+    app.callback()(_overall)
+    for entry in COMMANDS:
+        function = import_module(entry.module).command if entry.name == asked else _not_loaded
+        app.command(entry.name, help=None if entry.name == asked else entry.help, short_help=entry.help)(
+            function
+        )
+    return app
+
+
+def _not_loaded() -> None:
+    """Stand for a command that was not asked for: enough for the overview."""
+
+
+def _show_version(wanted: bool) -> None:
+    if wanted:
+        typer.echo(f"tracer {import_module('importlib.metadata').version('exosphere-tracer')}")
+        raise typer.Exit
+
+
+def _overall(
+    version: Annotated[
+        bool,
+        typer.Option("--version", callback=_show_version, is_eager=True, help="Show the version and exit."),
+    ] = False,
+) -> None:
+    del version
+
+
+if __name__ == "__main__":
+    main()

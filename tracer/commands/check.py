@@ -1,0 +1,88 @@
+"""`tracer check`: the resolved scene, without running it."""
+
+from pathlib import Path
+
+import typer
+
+from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.machine_output import print_json
+from tracer.commands.tables import print_rows
+from tracer.engine.preview import Preview, ReleasePreview, preview
+from tracer.engine.runspec.load import load_run
+from tracer.engine.runspec.run import RunSpec
+from tracer.engine.scene import build_scene
+from tracer.engine.tracing import available_processors
+
+DAY = 86400.0
+MEGABYTE = 1e6
+
+
+def command(
+    run_file: RUN_FILE,
+    settings: SETTINGS = None,
+    json: JSON = False,
+) -> None:
+    """Validate a run file and print what it means, without running it."""
+    spec = load_run(run_file, settings or ())
+    figures = preview(spec, build_scene(spec), available_processors())
+    if json:
+        print_json({"file": Path(run_file).name, "title": spec.title, **figures._asdict()})
+        return
+    _print_scene(spec, figures)
+    for release in figures.releases:
+        _print_release(release)
+    for note in figures.notes:
+        typer.echo(f"Note: {note}.")
+    typer.echo(f"Next: tracer run {run_file}", err=True)
+
+
+def _print_scene(spec: RunSpec, figures: Preview) -> None:
+    ensemble = spec.ensemble
+    rotation = figures.rotation_period
+    typer.echo(f"{spec.title}\n{spec.gas.species} over {spec.body.name}")
+    print_rows(
+        [
+            ("propagator", figures.propagator),
+            ("light", "none: gravity alone"),
+            ("radius", f"{figures.radius / 1e3:.6g} km"),
+            ("gm", f"{figures.gm / 1e9:.7g} km3 s-2"),
+            ("surface gravity", f"{figures.surface_gravity:.4g} m s-2"),
+            ("escape speed", f"{figures.escape_speed:.5g} m s-1"),
+            (
+                "rotation period",
+                "the ground does not turn" if rotation is None else f"{rotation / DAY:.6g} d sidereal",
+            ),
+            ("outer radius", _outer_radius(spec, figures)),
+            ("age limit", f"{figures.age_limit / DAY:.6g} d"),
+            ("losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
+            ("particles", f"{figures.particles:,} in {ensemble.batches} batches, seed {ensemble.seed}"),
+            ("memory", f"at most {figures.memory / MEGABYTE:.0f} MB"),
+            ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
+        ]
+    )
+
+
+def _outer_radius(spec: RunSpec, figures: Preview) -> str:
+    origin = ", the Hill radius" if spec.domain.outer_radius is None else ""
+    return f"{figures.outer_radius / 1e3:.6g} km, {figures.outer_radius / figures.radius:.4g} radii{origin}"
+
+
+def _print_release(release: ReleasePreview) -> None:
+    typer.echo(f"\nrelease {release.name!r}, {release.rate:.4g} s-1")
+    rows = [
+        ("temperature", _figure(release.temperature, "K")),
+        ("most probable speed", _figure(release.most_probable_speed, "m s-1")),
+        ("mean speed", _figure(release.mean_speed, "m s-1")),
+        ("rms speed", _figure(release.rms_speed, "m s-1")),
+        ("mean launch speed", _figure(release.launch_speed, "m s-1")),
+        ("jeans parameter", _figure(release.jeans_parameter, "")),
+        ("scale height", _figure(release.scale_height, "km", 1e3)),
+        ("median hop time", _figure(release.hop_time, "s")),
+        ("median hop range", _figure(release.hop_range, "km", 1e3)),
+        ("cross the outer radius", f"{100 * release.crossing_fraction:.3g} % of first flights"),
+    ]
+    print_rows([(name, text) for name, text in rows if text])
+
+
+def _figure(value: float | None, unit: str, size: float = 1.0) -> str:
+    return "" if value is None else f"{value / size:.5g} {unit}".rstrip()

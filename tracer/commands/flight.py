@@ -1,0 +1,99 @@
+"""`tracer flight`: one flight from launch to end."""
+
+import csv
+import os
+from collections.abc import Iterable
+from typing import Annotated
+
+import typer
+
+from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.machine_output import print_json
+from tracer.commands.tables import print_rows
+from tracer.engine.runspec.load import load_run
+from tracer.engine.scene import build_scene
+from tracer.engine.single_flight import PATH_COLUMNS, Flight, Launch, fly
+from tracer.errors import InputError
+from tracer.units import parse, si
+
+
+def command(
+    run_file: RUN_FILE,
+    latitude: Annotated[
+        float, typer.Option(help="Latitude of the launch, -90 to 90 [deg].", show_default=False)
+    ],
+    local_time: Annotated[
+        float,
+        typer.Option(help="Local time of the launch, 0 to below 24 [h]; 12 is noon.", show_default=False),
+    ],
+    speed: Annotated[
+        str,
+        typer.Option(help='Launch speed in the Sun-fixed frame, for example "2 km/s".', show_default=False),
+    ],
+    zenith_angle: Annotated[
+        float, typer.Option(help="Angle from the local vertical, 0 to 90 [deg].", show_default=False)
+    ],
+    azimuth: Annotated[
+        float,
+        typer.Option(help="Direction along the ground, from north through east [deg].", show_default=False),
+    ],
+    output: Annotated[
+        str | None,
+        typer.Option(
+            "--output", "-o", metavar="FLIGHT.csv", help="Write the path as CSV.", show_default=False
+        ),
+    ] = None,
+    settings: SETTINGS = None,
+    json: JSON = False,
+) -> None:
+    """Follow one flight from a stated launch to landing, outer radius or age limit.
+
+    The launch speed counts in the Sun-fixed frame: the ground's own motion is not added to it.
+    """
+    launch = _launch(latitude, local_time, speed, zenith_angle, azimuth)
+    flown = fly(build_scene(load_run(run_file, settings or ())), launch)
+    if output is not None:
+        _write_path(flown, output)
+    if json:
+        print_json(flown.summary._asdict())
+        return
+    summary = flown.summary
+    print_rows(
+        [
+            ("fate", summary.fate),
+            ("flight_time", f"{summary.flight_time:.9g} s"),
+            ("apex_altitude", f"{summary.apex_altitude / 1e3:.9g} km"),
+            ("latitude", f"{summary.latitude:.7g} deg"),
+            ("local_time", f"{summary.local_time:.7g} h"),
+            ("ground_arc", f"{summary.ground_arc:.8g} deg"),
+        ]
+    )
+
+
+def _launch(latitude: float, local_time: float, speed: str, zenith_angle: float, azimuth: float) -> Launch:
+    _check("--latitude", latitude, -90.0 <= latitude <= 90.0, "-90 to 90 deg")
+    _check("--local-time", local_time, 0.0 <= local_time < 24.0, "0 to below 24 h")
+    _check("--zenith-angle", zenith_angle, 0.0 <= zenith_angle <= 90.0, "0 to 90 deg")
+    _check("--azimuth", azimuth, -360.0 <= azimuth <= 360.0, "-360 to 360 deg")
+    try:
+        metres_per_second = si(parse(speed, "speed"))
+    except ValueError as error:
+        raise InputError(f"--speed: {error}") from None
+    _check("--speed", speed, metres_per_second > 0.0, "above 0")
+    return Launch(latitude, local_time, metres_per_second, zenith_angle, azimuth)
+
+
+def _check(option: str, value: object, allowed: bool, range_words: str) -> None:
+    if not allowed:
+        raise InputError(f"{option}: {value} is out of range; must be {range_words}")
+
+
+def _write_path(flown: Flight, output: str) -> None:
+    rows: Iterable[Iterable[float]] = flown.path.tolist()
+    try:
+        with open(output, "w", newline="", encoding="utf-8") as file:
+            writer = csv.writer(file)
+            writer.writerow(PATH_COLUMNS)
+            writer.writerows(rows)
+    except OSError as error:
+        raise InputError(f"{output}: cannot be written: {os.strerror(error.errno or 0)}") from None

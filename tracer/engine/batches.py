@@ -1,0 +1,103 @@
+"""One batch of one release: launched, traced in slices, counted."""
+
+from collections.abc import Callable
+from time import thread_time
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from tracer.engine.kernel_world import kernel_world
+from tracer.engine.launching import draw_launches
+from tracer.engine.scene import Scene
+from tracer.errors import Interrupted
+from tracer.kernels.tracing import ATOM, COUNTERS, STATE_SIZE, Resume, trace_slice
+from tracer.kernels.world import World
+from tracer.tally.buffer import BufferLayout, make_layout, tally_views
+
+SLICE_SECONDS = 0.1
+"""What a slice aims at: half of the longest time for which Ctrl-C and the progress may have to wait."""
+
+FIRST_SLICE_FLIGHTS = 2_000
+MOST_SLICE_GROWTH = 4.0
+
+
+class Task(NamedTuple):
+    """A unit of work: batch number `batch` of release number `release`, both from 0."""
+
+    release: int
+    batch: int
+
+
+class BatchResult(NamedTuple):
+    """What a batch counted, shape (layout.size,), and what it cost: `kernel_seconds` of processor time."""
+
+    buffer: NDArray[np.float64]
+    flights: int
+    kernel_seconds: float
+
+
+class Work(NamedTuple):
+    """All that a worker needs to trace any batch of a run."""
+
+    scene: Scene
+    world: World
+    layout: BufferLayout
+    seed: int
+    particles: int
+
+
+def make_work(scene: Scene, seed: int, particles: int) -> Work:
+    """Return the work of a run with `particles` per batch and release."""
+    return Work(scene, kernel_world(scene), make_layout(scene.grid, scene.planes), seed, particles)
+
+
+def trace_batch(
+    work: Work, task: Task, tell: Callable[[int, int], None], stopped: Callable[[], bool]
+) -> BatchResult:
+    """Trace one batch in slices.
+
+    Parameters
+    ----------
+    work, task
+        What to trace. Random numbers depend on seed, release and batch alone.
+    tell : callable
+        Called after each slice with the number of atoms and of flights it has finished.
+    stopped : callable
+        Asked after each slice; where it says True the batch is given up.
+
+    Raises
+    ------
+    Interrupted
+        Where `stopped` said True before the batch ended.
+    """
+    seeds = np.random.SeedSequence(work.seed, spawn_key=(task.release, task.batch))
+    rng = np.random.Generator(np.random.PCG64(seeds))
+    release = work.scene.releases[task.release]
+    launches = draw_launches(work.scene, release, work.particles, rng)
+    buffer = np.zeros(work.layout.size)
+    tally = tally_views(work.layout, buffer)
+    resume = Resume(np.zeros(COUNTERS, dtype=np.int64), np.zeros(STATE_SIZE))
+    weight = release.rate / work.particles
+    flights, seconds, budget = 0, 0.0, FIRST_SLICE_FLIGHTS
+    while (atoms_before := int(resume.counters[ATOM])) < work.particles:
+        begin = thread_time()
+        made = trace_slice(work.world, *launches, weight, resume, tally, rng, budget)
+        spent = thread_time() - begin
+        flights, seconds = flights + made, seconds + spent
+        budget = next_budget(budget, spent)
+        tell(int(resume.counters[ATOM]) - atoms_before, made)
+        if stopped():
+            raise Interrupted("interrupted")
+    return BatchResult(buffer, flights, seconds)
+
+
+def next_budget(budget: int, spent: float) -> int:
+    """Return the flights of the next slice after one of `budget` flights took `spent` seconds."""
+    growth = SLICE_SECONDS / max(spent, 1e-6)
+    return max(1, int(budget * min(growth, MOST_SLICE_GROWTH)))
+
+
+def compile_kernels(work: Work) -> None:
+    """Compile or load what `trace_batch` calls, on no atom at all, so that workers start together."""
+    trace_batch(work._replace(particles=1), Task(0, 0), lambda _atoms, _flights: None, lambda: False)

@@ -1,0 +1,1 @@
+"""Where batches run: each executor offers `map_batches`, which yields results as they come, in any order."""

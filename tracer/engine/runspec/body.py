@@ -1,0 +1,32 @@
+"""[body]: what holds the gas."""
+
+from pydantic import Field
+
+from tracer.engine.runspec.number import Eccentricity
+from tracer.engine.runspec.quantity import GravitationalParameter, Length, RotationPeriod
+from tracer.engine.runspec.table import Table
+from tracer.engine.runspec.text import Line
+
+
+class OrbitTable(Table):
+    """An ellipse about the Sun, or about the planet whose moon the body is."""
+
+    semi_major_axis: Length = Field(description="Semi-major axis of the ellipse.")
+    eccentricity: Eccentricity = Field(description="Eccentricity of the ellipse.")
+
+
+class BodyTable(Table):
+    """The airless body; constants left out come from the catalogue."""
+
+    name: Line = Field(
+        description="A body of the catalogue, or the name of your own with the constants below."
+    )
+    radius: Length | None = Field(None, description="Mean radius. Default: the catalogue's.")
+    gm: GravitationalParameter | None = Field(
+        None,
+        description="Gravitational constant times mass; 0 switches gravity off. Default: the catalogue's.",
+    )
+    rotation_period: RotationPeriod | None = Field(
+        None, description="Sidereal rotation period, positive where prograde. Default: the catalogue's."
+    )
+    orbit: OrbitTable | None = Field(None, description="The body's orbit. Default: the catalogue's.")

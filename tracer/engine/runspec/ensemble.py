@@ -1,0 +1,19 @@
+"""[ensemble]: how many particles, in which portions."""
+
+from pydantic import Field
+
+from tracer.engine.runspec.number import Count, CountOrNone, SeveralOf
+from tracer.engine.runspec.table import Table
+
+
+class EnsembleTable(Table):
+    """Number of particles and the seed of their random numbers."""
+
+    particles_per_batch: Count = Field(20_000, description="Particles per batch and release.")
+    batches: SeveralOf = Field(
+        20, description="Batches, the unit of work and of error bars; 100 for the best error bars."
+    )
+    seed: CountOrNone = Field(20310601, description="Seed of the random numbers.")
+    replicates: CountOrNone = Field(
+        20, description="Groups of batches kept for the errors of sums; 0 switches them off."
+    )

@@ -1,0 +1,20 @@
+"""[[release]]: how new atoms leave the surface."""
+
+from pydantic import Field
+
+from tracer.engine.runspec.direction import Cosine, DirectionLaw
+from tracer.engine.runspec.place import PlaceLaw, Uniform
+from tracer.engine.runspec.quantity import Rate
+from tracer.engine.runspec.speed import SpeedLaw
+from tracer.engine.runspec.table import Table
+from tracer.engine.runspec.text import Line
+
+
+class ReleaseTable(Table):
+    """One source of gas."""
+
+    name: Line = Field(description="Name of the source, the label along the product's `release` dimension.")
+    rate: Rate = Field(description="New atoms per second from the whole surface.")
+    speed: SpeedLaw = Field(description="Distribution of launch speeds.")
+    direction: DirectionLaw = Field(Cosine(), description="Distribution of launch directions.")
+    place: PlaceLaw = Field(Uniform(), description="Distribution over the surface.")

@@ -1,0 +1,190 @@
+"""The scene: what a run file means, in SI numbers. The only place where units end."""
+
+from pathlib import Path
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.catalogue.load import gases
+from tracer.engine.body_constants import BodyConstants, resolve_body
+from tracer.engine.laws import direction_law, place_law, speed_law
+from tracer.engine.refusal import refuse
+from tracer.engine.runspec.grid import GridTable
+from tracer.engine.runspec.image import ImageTable, product_name
+from tracer.engine.runspec.release import ReleaseTable
+from tracer.engine.runspec.run import RunSpec
+from tracer.engine.runspec.sky import SkyPoint
+from tracer.engine.runspec.speed import TabulatedSpeed
+from tracer.engine.runspec.temperature import TemperatureLaw, UniformTemperature
+from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
+from tracer.physics.orbit import hill_radius
+from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
+from tracer.tally.axes import Grid, ImagePlane, make_grid, make_image_plane, viewer_direction
+from tracer.units import si
+
+
+class Release(NamedTuple):
+    """One source: `rate` [s-1] of new atoms and the laws by which they leave."""
+
+    name: str
+    rate: float
+    speed: SpeedLaw
+    direction: DirectionLaw
+    place: PlaceLaw
+
+
+class Loss(NamedTuple):
+    """A loss in flight at constant `rate` [s-1]."""
+
+    name: str
+    rate: float
+
+
+class Scene(NamedTuple):
+    """All that decides the physics and the cells of a run, in SI units.
+
+    `body` holds the constants of the body, `mass` [kg] of one atom; `surface_temperature` is None where nothing
+    needs it; `outer_radius` [m] from the centre, `age_limit` [s].
+    """
+
+    body: BodyConstants
+    mass: float
+    losses: tuple[Loss, ...]
+    releases: tuple[Release, ...]
+    surface_temperature: SurfaceTemperature | None
+    sticking: float
+    accommodation: float
+    outer_radius: float
+    age_limit: float
+    grid: Grid
+    planes: tuple[ImagePlane, ...]
+
+    @property
+    def hazard(self) -> float:
+        """Rate [s-1] of all losses together."""
+        return sum(loss.rate for loss in self.losses)
+
+    @property
+    def ground_spin(self) -> float:
+        """Angular rate [rad s-1] of the ground about +z in the Sun-fixed frame, which without a Sun does not turn."""
+        period = self.body.rotation_period
+        return 0.0 if period is None else 2.0 * np.pi / period
+
+
+def build_scene(spec: RunSpec) -> Scene:
+    """Resolve a run file into numbers.
+
+    Raises
+    ------
+    InputError
+        A name that is in no catalogue and lacks its constants, a missing outer radius, lengths that do not fit
+        the body, or a file that cannot be used.
+    """
+    body = resolve_body(spec)
+    temperature = spec.surface.temperature
+    return Scene(
+        body=body,
+        mass=_mass(spec),
+        losses=tuple(Loss(loss.name, si(loss.rate)) for loss in spec.gas.loss),
+        releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
+        surface_temperature=None if temperature is None else _surface_temperature(temperature),
+        sticking=spec.surface.sticking,
+        accommodation=spec.surface.accommodation,
+        outer_radius=_outer_radius(spec, body),
+        age_limit=si(spec.domain.age_limit),
+        grid=_grid(spec, spec.grid, body.radius),
+        planes=tuple(_plane(spec, i, image, body.radius) for i, image in enumerate(spec.image, 1)),
+    )
+
+
+def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
+    """Return the files that the run file refers to, in its order."""
+    tables = (entry.speed for entry in spec.release)
+    return tuple(spec.folder / table.file for table in tables if isinstance(table, TabulatedSpeed))
+
+
+def _mass(spec: RunSpec) -> float:
+    if spec.gas.mass is not None:
+        return si(spec.gas.mass)
+    known = gases()
+    if spec.gas.species not in known:
+        raise refuse(
+            spec,
+            "gas.species",
+            spec.gas.species,
+            f"not in the catalogue; give its mass, or one of {', '.join(known)}",
+        )
+    return known[spec.gas.species].mass
+
+
+def _release(spec: RunSpec, number: int, entry: ReleaseTable, radius: float) -> Release:
+    key = f"release[{number}]"
+    return Release(
+        entry.name,
+        si(entry.rate),
+        speed_law(spec, f"{key}.speed", entry.speed),
+        direction_law(entry.direction),
+        place_law(spec, f"{key}.place", entry.place, radius),
+    )
+
+
+def _surface_temperature(law: TemperatureLaw) -> SurfaceTemperature:
+    if isinstance(law, UniformTemperature):
+        return SurfaceTemperature(UNIFORM, si(law.value), si(law.value))
+    return SurfaceTemperature(QUARTER_POWER, si(law.subsolar), si(law.night))
+
+
+def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:
+    given = spec.domain.outer_radius
+    if given is not None:
+        outer = si(given, body.radius)
+        if outer <= body.radius:
+            raise refuse(
+                spec, "domain.outer_radius", given, f"must be above the body's radius, {body.radius:g} m"
+            )
+        return outer
+    if body.orbit is None:
+        raise refuse(
+            spec, "domain.outer_radius", None, 'required for a body without an orbit, for example "40 radii"'
+        )
+    outer = hill_radius(body.orbit, body.gm, body.host_gm)
+    if outer <= body.radius:
+        raise refuse(
+            spec,
+            "domain.outer_radius",
+            None,
+            f'the Hill radius, {outer:g} m, lies below the surface; give an outer radius, for example "40 radii"',
+        )
+    return outer
+
+
+def _grid(spec: RunSpec, table: GridTable, radius: float) -> Grid:
+    altitude = table.altitude
+    first, top = si(altitude.first_cell, radius), si(altitude.top, radius)
+    if not first < top:
+        raise refuse(spec, "grid.altitude.top", altitude.top, f"must be above first_cell, {first:g} m")
+    try:
+        return make_grid(radius, first, top, altitude.cells, table.latitude_cells, table.local_time_cells)
+    except ValueError as error:
+        raise refuse(spec, "grid.altitude", None, str(error)) from None
+
+
+def _plane(spec: RunSpec, number: int, image: ImageTable, radius: float) -> ImagePlane:
+    look_from = image.look_from
+    viewer = (si(look_from.latitude), look_from.local_time) if isinstance(look_from, SkyPoint) else look_from
+    ends = {}
+    for axis in ("horizontal", "vertical"):
+        low, high = (si(end, radius) for end in getattr(image, axis))
+        if not low < high:
+            raise refuse(
+                spec, f"image[{number}].{axis}", None, f"must rise, and goes from {low:g} m to {high:g} m"
+            )
+        ends[axis] = (low, high)
+    return make_image_plane(
+        product_name(image.name),
+        image.name,
+        viewer_direction(viewer),
+        ends["horizontal"],
+        ends["vertical"],
+        image.pixels,
+    )

@@ -1,0 +1,90 @@
+"""Which grid cell or image pixel a position lies in."""
+
+import math
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.kernels.compiling import kernel
+
+
+class Cells(NamedTuple):
+    """The spherical grid: `radius` [m] of the ground, `radii` (n + 1,) [m] of the cells' edges from the centre.
+
+    Edges above the first cell are evenly spaced in the logarithm of altitude: `first_altitude` [m] and
+    `cells_per_log` describe them for a direct search. Latitude cells are equal in angle, local time cells too.
+    """
+
+    radius: float
+    radii: np.ndarray
+    first_altitude: float
+    cells_per_log: float
+    latitude_cells: int
+    local_time_cells: int
+
+
+@kernel
+def altitude_cell(cells, r):
+    """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
+    last = cells.radii.shape[0] - 2
+    if r >= cells.radii[last + 1]:
+        return -1
+    altitude = r - cells.radius
+    if altitude < cells.first_altitude:
+        return 0
+    guess = min(last, 1 + int(math.log(altitude / cells.first_altitude) * cells.cells_per_log))
+    # The logarithm may round across an edge; the edges themselves decide.
+    if r < cells.radii[guess]:
+        guess -= 1
+    elif r >= cells.radii[guess + 1]:
+        guess += 1
+    return guess
+
+
+@kernel
+def latitude_cell(cells, sine):
+    """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
+    angle = math.asin(min(1.0, max(-1.0, sine)))
+    cell = int((angle / math.pi + 0.5) * cells.latitude_cells)
+    return min(cells.latitude_cells - 1, max(0, cell))
+
+
+@kernel
+def local_time_cell(cells, x, y):
+    """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
+    turn = 0.5 + math.atan2(y, x) / (2.0 * math.pi)
+    cell = int(turn * cells.local_time_cells)
+    # atan2 gives +pi and -pi at midnight: both are the first cell.
+    return 0 if cell >= cells.local_time_cells else cell
+
+
+class Images(NamedTuple):
+    """All image planes: per plane the viewer's direction, right and up (n, 3), lower edges and pixel sizes [m].
+
+    `first` is each plane's first pixel in the flat array that holds all planes, `columns` and `rows` its pixels.
+    """
+
+    toward_viewer: np.ndarray
+    right: np.ndarray
+    up: np.ndarray
+    low: np.ndarray
+    pixel: np.ndarray
+    columns: np.ndarray
+    rows: np.ndarray
+    first: np.ndarray
+
+
+@kernel
+def image_pixel(images, i, radius, x, y, z):
+    """Return the flat pixel of position (x, y, z) in plane `i`, -1 outside it or behind the disc of `radius`."""
+    across = images.right[i, 0] * x + images.right[i, 1] * y + images.right[i, 2] * z
+    along = images.up[i, 0] * x + images.up[i, 1] * y + images.up[i, 2] * z
+    column = (across - images.low[i, 0]) / images.pixel[i, 0]
+    row = (along - images.low[i, 1]) / images.pixel[i, 1]
+    if not (0.0 <= column < images.columns[i] and 0.0 <= row < images.rows[i]):
+        return -1
+    if across * across + along * along < radius * radius:
+        n = images.toward_viewer
+        if n[i, 0] * x + n[i, 1] * y + n[i, 2] * z < 0.0:
+            return -1
+    return images.first[i] + int(row) * images.columns[i] + int(column)

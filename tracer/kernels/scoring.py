@@ -1,0 +1,59 @@
+"""Where a weighted sample or event is counted."""
+
+import math
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.kernels.cells import altitude_cell, image_pixel, latitude_cell, local_time_cell
+from tracer.kernels.compiling import kernel
+
+
+class Tally(NamedTuple):
+    """Views into one batch's counts; weights are [s-1], samples weight times time [atoms].
+
+    `content` (altitude, latitude, local_time) and `column_content` (latitude, local_time) hold samples, the latter
+    scaled by (R/r)^2; `image_content` is flat over all image planes. Fluxes (latitude, local_time), `ledger` (fate)
+    and `launches` hold weights, `life` weight times survival time.
+    """
+
+    content: np.ndarray
+    column_content: np.ndarray
+    image_content: np.ndarray
+    released: np.ndarray
+    returned: np.ndarray
+    captured: np.ndarray
+    escaped: np.ndarray
+    escaped_by_direction: np.ndarray
+    ledger: np.ndarray
+    launches: np.ndarray
+    life: np.ndarray
+
+
+@kernel
+def ground_cell(cells, x, y, z, r):
+    """Return (latitude cell, local-time cell) of position (x, y, z) at distance `r` from the centre."""
+    return latitude_cell(cells, z / r), local_time_cell(cells, x, y)
+
+
+@kernel
+def score_sample(tally, cells, images, x, y, z, r, content):
+    """Count `content` atoms at (x, y, z) [m] in density, vertical column and images."""
+    layer = altitude_cell(cells, r)
+    if layer >= 0:
+        row, column = ground_cell(cells, x, y, z, r)
+        tally.content[layer, row, column] += content
+        shrink = cells.radius / r
+        tally.column_content[row, column] += content * shrink * shrink
+    for i in range(images.first.shape[0]):
+        pixel = image_pixel(images, i, cells.radius, x, y, z)
+        if pixel >= 0:
+            tally.image_content[pixel] += content
+
+
+@kernel
+def mean_survival_time(hazard, duration):
+    """Return the integral [s] of exp(-hazard t) over `duration` [s], for a constant `hazard` [s-1]."""
+    if hazard == 0.0:
+        return duration
+    return -math.expm1(-hazard * duration) / hazard

@@ -1,0 +1,134 @@
+"""Many atoms, each from its release to its end, in slices that stop and go on."""
+
+import math
+from typing import NamedTuple
+
+import numpy as np
+
+from tracer.fate import Fate
+from tracer.kernels.arc_flight import AGED, CROSSED, LANDED, arc_end, arc_state, launch_arc, score_arc
+from tracer.kernels.bounce import rebound
+from tracer.kernels.compiling import kernel
+from tracer.kernels.scoring import ground_cell, mean_survival_time
+
+ATOM = 0
+ALOFT = 1
+HOME_ROW = 2
+HOME_COLUMN = 3
+COUNTERS = 4
+
+SURVIVAL = 6
+AGE = 7
+STATE_SIZE = 8
+
+
+class Resume(NamedTuple):
+    """What a slice leaves for the next: `counters` int64 (COUNTERS,), `state` float64 (STATE_SIZE,).
+
+    The state is position [m], velocity [m s-1] in the Sun-fixed frame, survival and age [s] at a launch.
+    """
+
+    counters: np.ndarray
+    state: np.ndarray
+
+
+@kernel
+def trace_slice(world, positions, velocities, weight, resume, tally, rng, most_flights):
+    """Trace atoms from where `resume` stands for at most `most_flights` launches and return their number.
+
+    `positions` (n, 3) are unit vectors of the places of release, `velocities` (n, 3) [m s-1] relative to the ground,
+    `weight` [s-1] is each atom's share of the release rate. Done when counter ATOM equals n.
+    """
+    flights = 0
+    while flights < most_flights and resume.counters[ATOM] < positions.shape[0]:
+        if resume.counters[ALOFT] == 0:
+            _release(world, positions, velocities, weight, resume, tally)
+        _fly_once(world, weight, resume, tally, rng)
+        flights += 1
+    return flights
+
+
+@kernel
+def _release(world, positions, velocities, weight, resume, tally):
+    i = resume.counters[ATOM]
+    nx, ny, nz = positions[i, 0], positions[i, 1], positions[i, 2]
+    row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
+    tally.released[row, column] += weight
+    resume.counters[HOME_ROW] = row
+    resume.counters[HOME_COLUMN] = column
+    resume.counters[ALOFT] = 1
+    resume.state[SURVIVAL] = 1.0
+    resume.state[AGE] = 0.0
+    _launch(world, resume.state, nx, ny, nz, velocities[i, 0], velocities[i, 1], velocities[i, 2])
+
+
+@kernel
+def _launch(world, state, nx, ny, nz, vx, vy, vz):
+    """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
+    radius = world.motion.radius
+    spin = world.surface.spin
+    state[0] = radius * nx
+    state[1] = radius * ny
+    state[2] = radius * nz
+    state[3] = vx - spin * state[1]
+    state[4] = vy + spin * state[0]
+    state[5] = vz
+
+
+@kernel
+def _fly_once(world, weight, resume, tally, rng):
+    state = resume.state
+    motion = world.motion
+    alive = weight * state[SURVIVAL]
+    arc = launch_arc(motion, state[0], state[1], state[2], state[3], state[4], state[5])
+    ending, s_end = arc_end(motion, arc, motion.age_limit - state[AGE])
+    score_arc(world, tally, arc, s_end, alive, rng)
+    t, x, y, z, vx, vy, vz = arc_state(motion, arc, s_end)
+    kept = math.exp(-motion.hazard * t)
+    tally.launches[0] += alive
+    tally.life[0] += alive * mean_survival_time(motion.hazard, t)
+    tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
+    alive *= kept
+    state[SURVIVAL] *= kept
+    state[AGE] += t
+    if ending == LANDED:
+        _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng)
+    else:
+        _end_aloft(world, resume, tally, ending, alive, x, y, z)
+
+
+@kernel
+def _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng):
+    r = math.sqrt(x * x + y * y + z * z)
+    nx, ny, nz = x / r, y / r, z / r
+    row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
+    tally.returned[row, column] += alive
+    if rng.random() < world.surface.sticking:
+        tally.captured[row, column] += alive
+        tally.ledger[Fate.CAPTURED] += alive
+        _next_atom(resume)
+        return
+    ux = vx + world.surface.spin * y
+    uy = vy - world.surface.spin * x
+    out = rebound(rng, world.surface, nx, ny, nz, ux * ux + uy * uy + vz * vz)
+    _launch(world, resume.state, nx, ny, nz, out[0], out[1], out[2])
+
+
+@kernel
+def _end_aloft(world, resume, tally, ending, alive, x, y, z):
+    if ending == CROSSED:
+        tally.ledger[Fate.ESCAPED] += alive
+        tally.escaped[resume.counters[HOME_ROW], resume.counters[HOME_COLUMN]] += alive
+        row, column = ground_cell(world.cells, x, y, z, math.sqrt(x * x + y * y + z * z))
+        tally.escaped_by_direction[row, column] += alive
+    elif ending == AGED:
+        tally.ledger[Fate.AGE_LIMIT] += alive
+    else:
+        tally.ledger[Fate.UNRESOLVED] += alive
+    _next_atom(resume)
+
+
+@kernel
+def _next_atom(resume):
+    resume.counters[ALOFT] = 0
+    resume.counters[ATOM] += 1

@@ -1,0 +1,1 @@
+"""Laws of the launch direction, one file a law."""

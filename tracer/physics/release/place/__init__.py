@@ -1,0 +1,1 @@
+"""Laws of the place of release, one file a law."""

@@ -1,0 +1,1 @@
+"""Laws of the launch speed, one file a law."""

@@ -1,0 +1,74 @@
+"""A product from its file."""
+
+import os
+from pathlib import Path
+
+import xarray as xr
+
+from tracer.errors import InputError
+from tracer.product.assembling import with_label_indexes
+from tracer.product.layout import why_no_product
+from tracer.product.writing import COMPLETE
+
+SIGNATURE = b"\x89HDF\r\n\x1a\n"
+"""First bytes of every netCDF-4 file."""
+
+
+def open_product(path: str | os.PathLike[str]) -> xr.Dataset:
+    """Open a product; its arrays are read when they are asked for.
+
+    The dimensions `release`, `fate` and `line` get indexes from their label variables, so that
+    `ds.ledger.sel(fate="escaped")` works.
+
+    Parameters
+    ----------
+    path : path
+        A file that `save_product` or `tracer run` wrote.
+
+    Raises
+    ------
+    InputError
+        Where the file is missing, not netCDF-4, damaged, not a product, incomplete, or of a version that this
+        package does not know.
+    """
+    name = os.fspath(path)
+    _check_signature(name)
+    try:
+        # A mean life in seconds stays a number: nothing in a product is a date.
+        ds = xr.open_dataset(Path(path), engine="netcdf4", decode_times=False)
+    except (OSError, RuntimeError, ValueError, KeyError, AttributeError) as error:
+        raise InputError(
+            f"{name}: is damaged or cut short and cannot be read ({_first_line(error)})"
+        ) from error
+    reason = why_no_product(ds.attrs, ds.variables) or _why_incomplete(ds)
+    if reason:
+        ds.close()
+        raise InputError(f"{name}: {reason}")
+    indexed = with_label_indexes(ds)
+    indexed.set_close(ds.close)
+    return indexed
+
+
+def _check_signature(name: str) -> None:
+    try:
+        with open(name, "rb") as file:
+            start = file.read(len(SIGNATURE))
+    except FileNotFoundError:
+        raise InputError(f"{name}: no such file") from None
+    except IsADirectoryError:
+        raise InputError(f"{name}: is a folder, not a product") from None
+    except OSError as error:
+        raise InputError(f"{name}: cannot be read: {error.strerror}") from None
+    if start != SIGNATURE:
+        raise InputError(f"{name}: is not a netCDF-4 file")
+
+
+def _why_incomplete(ds: xr.Dataset) -> str | None:
+    if ds.attrs.get(COMPLETE) == 1:
+        return None
+    return "is incomplete: writing it was not finished"
+
+
+def _first_line(error: Exception) -> str:
+    text = getattr(error, "strerror", None) or str(error) or type(error).__name__
+    return str(text).splitlines()[0]

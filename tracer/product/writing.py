@@ -1,0 +1,134 @@
+"""A product into its file: written beside, marked complete last, synced and renamed."""
+
+import errno
+import os
+import secrets
+import shutil
+from collections.abc import Iterator
+from contextlib import contextmanager, suppress
+from pathlib import Path
+from typing import Any
+
+import netCDF4
+import numpy as np
+import xarray as xr
+
+from tracer.errors import InputError, TracerError
+from tracer.product.assembling import without_label_indexes
+from tracer.product.checksum import data_checksum
+from tracer.product.layout import BOUNDS, why_no_product
+
+COMPLETE = "complete"
+COMPRESSION = {"zlib": True, "complevel": 1, "shuffle": True}
+NAME_START = 40
+"""Characters of the output's name kept in its temporary name, which must stay below 255 bytes."""
+MEGABYTE = 1e6
+DISK_FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
+
+StrPath = str | os.PathLike[str]
+
+
+def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None:
+    """Write a product as netCDF-4; the file appears whole or not at all.
+
+    Parameters
+    ----------
+    ds : xarray.Dataset
+        A product, from a run or from `open_product`. Its `data_checksum` is computed anew.
+    path : path
+        The output.
+    overwrite : bool
+        Whether an existing file is replaced.
+
+    Raises
+    ------
+    InputError
+        Where the file exists and `overwrite` is not set, the folder is missing or not writable, or the
+        Dataset is not a product.
+    TracerError
+        Where writing fails, as on a full disk; no half file is left.
+    """
+    reason = why_no_product(ds.attrs, ds.variables)
+    if reason:
+        raise InputError(f"{os.fspath(path)}: the Dataset cannot be saved: {reason}")
+    check_output(path, overwrite)
+    target = Path(os.path.realpath(path))
+    stored = without_label_indexes(ds).drop_encoding()
+    stored.attrs = {key: value for key, value in ds.attrs.items() if key != COMPLETE}
+    stored.attrs["data_checksum"] = data_checksum(stored)
+    with _written_beside(target, path, stored.nbytes) as beside:
+        stored.to_netcdf(beside, format="NETCDF4", engine="netcdf4", encoding=_encoding(stored))
+        _sync(beside)
+        with netCDF4.Dataset(beside, "a") as file:
+            file.setncattr(COMPLETE, np.int32(1))
+        _sync(beside)
+        check_output(path, overwrite)
+        os.replace(beside, target)
+        _sync_folder(target.parent)
+
+
+def check_output(path: StrPath, overwrite: bool = False) -> None:
+    """Refuse an output that cannot be made, before any work is done for it.
+
+    Raises
+    ------
+    InputError
+        Where the folder is missing or not writable, or the file exists and `overwrite` is not set, or what
+        exists is not a plain file.
+    """
+    target = Path(os.path.realpath(path))
+    if not target.parent.is_dir():
+        raise InputError(f"{os.fspath(path)}: there is no folder {target.parent}")
+    if target.exists() and not target.is_file():
+        raise InputError(f"{os.fspath(path)}: exists and is not a file")
+    if target.exists() and not overwrite:
+        raise InputError(f"{os.fspath(path)}: exists; --overwrite replaces it, or name another output")
+    if not os.access(target.parent, os.W_OK | os.X_OK):
+        raise InputError(f"{os.fspath(path)}: cannot write in {target.parent}: Permission denied")
+
+
+@contextmanager
+def _written_beside(target: Path, path: StrPath, size: int) -> Iterator[Path]:
+    beside = target.with_name(f".{target.name[:NAME_START]}.{secrets.token_hex(6)}.part")
+    try:
+        yield beside
+    except (OSError, RuntimeError) as error:
+        reason = _why_unwritten(error, target.parent, size)
+        raise TracerError(f"{os.fspath(path)}: cannot be written: {reason}") from error
+    finally:
+        with suppress(FileNotFoundError):
+            beside.unlink()
+
+
+def _why_unwritten(error: OSError | RuntimeError, folder: Path, size: int) -> str:
+    number = error.errno if isinstance(error, OSError) else None
+    if number is not None and number > 0 and number not in DISK_FULL:
+        return os.strerror(number)
+    # The netCDF library names a full disk only as "HDF error", with no number of the system's.
+    free = shutil.disk_usage(folder).free
+    return f"is the disk full? {free / MEGABYTE:.1f} MB free, up to {size / MEGABYTE:.1f} MB needed ({error})"
+
+
+def _encoding(ds: xr.Dataset) -> dict[str, dict[str, Any]]:
+    bare = {str(name) for name in ds.variables if name in ds.coords or str(name).endswith(BOUNDS)}
+    encoding: dict[str, dict[str, Any]] = {}
+    for name, variable in ds.variables.items():
+        if variable.dtype.kind == "f":
+            fill = None if name in bare else variable.dtype.type(np.nan)
+            encoding[str(name)] = {"_FillValue": fill, **(COMPRESSION if variable.ndim else {})}
+    return encoding
+
+
+def _sync(path: Path) -> None:
+    with open(path, "r+b") as file:
+        os.fsync(file.fileno())
+
+
+def _sync_folder(folder: Path) -> None:
+    # Not every system can open or sync a folder; the rename stands all the same.
+    with suppress(OSError):
+        descriptor = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(descriptor)
+        finally:
+            os.close(descriptor)
