@@ -44,9 +44,9 @@ def pushed(true_anomaly):
     """Acceleration [m s-2] by light alone of sodium at rest over the subsolar point, from the kernel."""
     conditions = conditions_at(station_at_true_anomaly(MERCURY.orbit, true_anomaly))
     dark = conditions._replace(push_tables=push_tables((), SODIUM))
-    place = (LIT, 1.001 * MERCURY.radius, 0.0, 0.0, 0.0, 0.0, 0.0)
-    lit = rates_of_change(conditions.sky, conditions.push_tables, *place)[0]
-    return rates_of_change(dark.sky, dark.push_tables, *place)[0] - lit
+    place = (LIT, (1.001 * MERCURY.radius, 0.0, 0.0), (0.0, 0.0, 0.0))
+    lit = rates_of_change(conditions.sky, conditions.push_tables, *place)[0][0]
+    return rates_of_change(dark.sky, dark.push_tables, *place)[0][0] - lit
 
 
 def read_afresh(true_anomaly):
@@ -143,9 +143,9 @@ def test_push_follows_the_atoms_own_velocity_and_distance():
     dark = conditions._replace(push_tables=push_tables((), SODIUM))
 
     def push(x, vx):
-        place = (LIT, x, 0.0, 0.0, vx, 0.0, 0.0)
-        lit = rates_of_change(conditions.sky, conditions.push_tables, *place)[0]
-        return rates_of_change(dark.sky, dark.push_tables, *place)[0] - lit
+        place = (LIT, (x, 0.0, 0.0), (vx, 0.0, 0.0))
+        lit = rates_of_change(conditions.sky, conditions.push_tables, *place)[0][0]
+        return rates_of_change(dark.sky, dark.push_tables, *place)[0][0] - lit
 
     assert push(1e9, -5000.0) == pytest.approx(
         line_acceleration(TABLES, SODIUM, 5000.0) * (AU / (AU - 1e9)) ** 2, rel=1e-9
