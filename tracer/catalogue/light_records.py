@@ -25,8 +25,9 @@ class GTable:
 class Line:
     """A resonance line.
 
-    Vacuum `wavelength` [m], `wavelength_air` [m] (None in the far ultraviolet), absorption `oscillator_strength`, and
-    what is known of its g: `continuum_g` [s-1] at 1 au with `residual_flux`, or a table `g`; each None where unknown.
+    Vacuum `wavelength` [m], `wavelength_air` [m] (None in the far ultraviolet), absorption
+    `oscillator_strength`, and what is known of its g: `continuum_g` [s-1] at 1 au with `residual_flux`, or a
+    table `g`; each None where unknown.
     """
 
     name: str
@@ -52,8 +53,8 @@ class Line:
 class PhotoRate:
     """All photo-losses of a species at 1 au under the quiet and the active Sun [s-1].
 
-    `ionizing_quiet` and `ionizing_active` are the part that leaves an ion; None where the channels are not told apart.
-    `low` and `high` bound the plausible range, `basis` says how the numbers are known.
+    `ionizing_quiet` and `ionizing_active` are the part that leaves an ion; None where the channels are not
+    told apart. `low` and `high` bound the plausible range, `basis` says how the numbers are known.
     """
 
     species: str

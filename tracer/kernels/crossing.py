@@ -1,7 +1,7 @@
 """Where a step's curve first passes the ground, the outer sphere or an edge of the shadow.
 
-Every surface is a height that is positive on the atom's side. A curve that starts and ends above a surface may still
-dip below it: where it first nears and then leaves the surface, tangents bound how low it came.
+Every surface is a height that is positive on the atom's side. A curve that starts and ends above a surface
+may still dip below it: where it first nears and then leaves the surface, tangents bound how low it came.
 """
 
 import math
@@ -65,8 +65,9 @@ def height(shadow, outer_radius, surface, zone, place):
 def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end):
     """Return the part of the step at which its `curve` first passes `surface`, NEVER where it doesn't.
 
-    Only the step up to its part `reach` counts; `start` and `end` are the places (x, y, z, vx, vy, vz) at the ends of
-    that. Underground the shadow's surfaces have no meaning, so a step that lands counts up to its landing.
+    Only the step up to its part `reach` counts; `start` and `end` are the places (x, y, z, vx, vy, vz) at the
+    ends of that. Underground the shadow's surfaces have no meaning, so a step that lands counts up to its
+    landing.
     """
     h = reach * curve[LENGTH]
     scale = math.sqrt(start[0] * start[0] + start[1] * start[1] + start[2] * start[2])
@@ -85,13 +86,14 @@ def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end
 
 @kernel
 def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
-    """Return where on the way the height is below -`depth`, NEVER where it stays above; `ends` as height, slope twice."""
+    """Return where on the way the height is below -`depth`, or NEVER; `ends` are height and slope, twice."""
     a, b = 0.0, 1.0
     fa, da, fb, db = ends
     for trial in range(HALVINGS):
         low = (fb - fa + da * a - db * b) / (da - db)
         bound = fa + da * (low - a)
-        # Twice as deep as the tangents say, and not before four looks: they bound a bowl, a curve is one only nearly.
+        # Twice as deep as the tangents say, and not before four looks: they bound a bowl, a curve is one only
+        # nearly.
         lesser = min(fa, fb)
         if trial > 3 and lesser + 2.0 * (bound - lesser) > -depth:
             return NEVER

@@ -1,8 +1,9 @@
 """An accepted step as a curve: where the atom is, how fast, and its hazards, at any time within the step.
 
-The curve is float64 (CURVE_SIZE,): start time [s] and length [s] of the full step, the part of it that was flown
-before ground, outer sphere, shadow edge or age limit cut it, the zone of the shadow, then five coefficients of each
-of x, y, z, vx, vy, vz and the ionising and the other hazard, as Hairer, Norsett & Wanner (1993), II.6, write them.
+The curve is float64 (CURVE_SIZE,): start time [s] and length [s] of the full step, the part of it that was
+flown before ground, outer sphere, shadow edge or age limit cut it, the zone of the shadow, then five
+coefficients of each of x, y, z, vx, vy, vz and the ionising and the other hazard, as Hairer, Norsett & Wanner
+(1993), II.6, write them.
 """
 
 from tracer.kernels.compiling import inlined, kernel
@@ -29,7 +30,7 @@ def set_component(curve, component, start, growth, h, first_slope, last_slope, q
 
 @inlined
 def component_at(curve, component, part):
-    """Return one component (0-2 x, y, z [m], 3-5 velocity [m s-1], 6 ionising, 7 other hazard) at `part` of the step."""
+    """Return a component (0-2 x, y, z [m], 3-5 velocity [m s-1], 6 ionising, 7 other hazard) at `part` of the step."""
     k = COEFFICIENTS + 5 * component
     rest = 1.0 - part
     bend = curve[k + 2] + part * (curve[k + 3] + rest * curve[k + 4])

@@ -1,8 +1,9 @@
 """A flight by numerical integration: one accepted step at a time, cut where the flight or the shadow's zone ends.
 
-A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the ionising and
-the other hazard, whose sum's negative exponential is the survival; the slopes there; the next step [s]; the step
-before the present zone [s]; the zone; the number of trial steps. It can be kept and gone on with at any time.
+A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the
+ionising and the other hazard, whose sum's negative exponential is the survival; the slopes there; the next
+step [s]; the step before the present zone [s]; the zone; the number of trial steps. It can be kept and gone
+on with at any time.
 """
 
 import math
@@ -77,7 +78,9 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
     flight[HAZARDS] = 0.0
     flight[HAZARDS + 1] = 0.0
     zone = zone_at(conditions.sky.shadow, x, y, z)
-    _set_slopes(flight, rates_of_change(conditions.sky, conditions.push_tables, zone, x, y, z, vx, vy, vz))
+    _set_slopes(
+        flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz))
+    )
     climb = (x * vx + y * vy + z * vz) / r
     flight[STEP] = first_step(conditions.sky.forces, tolerance, r, climb, speed)
     flight[OPEN_STEP] = flight[STEP]
@@ -91,18 +94,18 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
 def advance(flight, curve, conditions, tolerance, time_limit):
     """Make one accepted step of `flight`, store it in `curve` and return how the flight stands.
 
-    The step is cut at the ground, at the outer sphere, at an edge of the shadow or at `time_limit` [s] since launch,
-    whichever comes first: the flight goes on from there, and `curve[FLOWN]` says which part of the curve is flown.
-    Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
+    The step is cut at the ground, at the outer sphere, at an edge of the shadow or at `time_limit` [s] since
+    launch, whichever comes first: the flight goes on from there, and `curve[FLOWN]` says which part of the
+    curve is flown. Returns FLYING, LANDED, CROSSED, AGED or UNRESOLVED.
     """
     sky, tables = conditions.sky, conditions.push_tables
     zone = int(flight[ZONE])
     place = _place(flight)
-    slopes = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2], flight[SLOPES + 3], flight[SLOPES + 4])
+    slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
-    fastest = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    speed = math.sqrt(fastest + conditions.sky.forces.gm / r)
-    h = flight[STEP]
+    speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
+    speed = math.sqrt(speed_squared + conditions.sky.forces.gm / r)
+    h = min(flight[STEP], _longest_step(r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
         h = min(h, _longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
@@ -111,7 +114,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
         if last:
             h = left
         flight[TRIALS] += 1.0
-        growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place, slopes)
+        growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place[:3], place[3:], slopes)
         squared = step_error(error, tolerance, r, speed)
         change = step_change(squared)
         if squared <= 1.0:
@@ -120,14 +123,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
         if not (h > SHORTEST_STEP * flight[TIME] and flight[TRIALS] < MOST_TRIALS):
             return _give_up(flight, curve)
     _store(curve, flight, h, place, slopes, growth, end_slopes, quartic)
-    end = (
-        place[0] + growth[0],
-        place[1] + growth[1],
-        place[2] + growth[2],
-        place[3] + growth[3],
-        place[4] + growth[4],
-        place[5] + growth[5],
-    )
+    end = _moved(place, growth)
     flight[STEP] = h * change
     near = _surfaces_near(sky, zone, place, end)
     if near[0] or near[1] or near[2]:
@@ -136,8 +132,8 @@ def advance(flight, curve, conditions, tolerance, time_limit):
             return _cut(flight, curve, conditions, zone, surface, part)
     flight[TIME] += h
     _set_place(flight, end)
-    flight[HAZARDS] += growth[6]
-    flight[HAZARDS + 1] += growth[7]
+    flight[HAZARDS] += growth[2][0]
+    flight[HAZARDS + 1] += growth[2][1]
     _set_slopes(flight, end_slopes)
     if last:
         return AGED
@@ -186,12 +182,30 @@ def _set_place(flight, place):
 
 
 @inlined
+def _moved(place, growth):
+    return (
+        place[0] + growth[0][0],
+        place[1] + growth[0][1],
+        place[2] + growth[0][2],
+        place[3] + growth[1][0],
+        place[4] + growth[1][1],
+        place[5] + growth[1][2],
+    )
+
+
+@inlined
+def _slopes(flight):
+    acceleration = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2])
+    return acceleration, (flight[SLOPES + 3], flight[SLOPES + 4])
+
+
+@inlined
 def _set_slopes(flight, slopes):
-    flight[SLOPES] = slopes[0]
-    flight[SLOPES + 1] = slopes[1]
-    flight[SLOPES + 2] = slopes[2]
-    flight[SLOPES + 3] = slopes[3]
-    flight[SLOPES + 4] = slopes[4]
+    flight[SLOPES] = slopes[0][0]
+    flight[SLOPES + 1] = slopes[0][1]
+    flight[SLOPES + 2] = slopes[0][2]
+    flight[SLOPES + 3] = slopes[1][0]
+    flight[SLOPES + 4] = slopes[1][1]
 
 
 @inlined
@@ -200,14 +214,17 @@ def _store(curve, flight, h, place, slopes, growth, end_slopes, quartic):
     curve[LENGTH] = h
     curve[FLOWN] = 1.0
     curve[CURVE_ZONE] = flight[ZONE]
-    set_component(curve, 0, place[0], growth[0], h, place[3], place[3] + growth[3], quartic[0])
-    set_component(curve, 1, place[1], growth[1], h, place[4], place[4] + growth[4], quartic[1])
-    set_component(curve, 2, place[2], growth[2], h, place[5], place[5] + growth[5], quartic[2])
-    set_component(curve, 3, place[3], growth[3], h, slopes[0], end_slopes[0], quartic[3])
-    set_component(curve, 4, place[4], growth[4], h, slopes[1], end_slopes[1], quartic[4])
-    set_component(curve, 5, place[5], growth[5], h, slopes[2], end_slopes[2], quartic[5])
-    set_component(curve, 6, flight[HAZARDS], growth[6], h, slopes[3], end_slopes[3], quartic[6])
-    set_component(curve, 7, flight[HAZARDS + 1], growth[7], h, slopes[4], end_slopes[4], quartic[7])
+    end = _moved(place, growth)
+    set_component(curve, 0, place[0], growth[0][0], h, place[3], end[3], quartic[0][0])
+    set_component(curve, 1, place[1], growth[0][1], h, place[4], end[4], quartic[0][1])
+    set_component(curve, 2, place[2], growth[0][2], h, place[5], end[5], quartic[0][2])
+    set_component(curve, 3, place[3], growth[1][0], h, slopes[0][0], end_slopes[0][0], quartic[1][0])
+    set_component(curve, 4, place[4], growth[1][1], h, slopes[0][1], end_slopes[0][1], quartic[1][1])
+    set_component(curve, 5, place[5], growth[1][2], h, slopes[0][2], end_slopes[0][2], quartic[1][2])
+    set_component(curve, 6, flight[HAZARDS], growth[2][0], h, slopes[1][0], end_slopes[1][0], quartic[2][0])
+    set_component(
+        curve, 7, flight[HAZARDS + 1], growth[2][1], h, slopes[1][1], end_slopes[1][1], quartic[2][1]
+    )
 
 
 @inlined
@@ -290,26 +307,24 @@ def _cut(flight, curve, conditions, zone, surface, part):
         return CROSSED
     beyond = zone_beyond(conditions.sky.shadow, zone, surface)
     flight[ZONE] = beyond
-    _set_slopes(
-        flight,
-        rates_of_change(
-            conditions.sky,
-            conditions.push_tables,
-            beyond,
-            place[0],
-            place[1],
-            place[2],
-            place[3],
-            place[4],
-            place[5],
-        ),
-    )
+    sky, tables = conditions.sky, conditions.push_tables
+    _set_slopes(flight, rates_of_change(sky, tables, beyond, place[:3], place[3:]))
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
         flight[STEP] = min(flight[STEP], EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight)))
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING
+
+
+@inlined
+def _longest_step(r, speed_squared, acceleration):
+    """Return the time [s] in which an atom can come about as far as it is from the centre.
+
+    A way without gravity has no error to bound its steps, and could pass the body twice in one.
+    """
+    pull = abs(acceleration[0]) + abs(acceleration[1]) + abs(acceleration[2])
+    return r / math.sqrt(speed_squared + pull * r)
 
 
 @kernel

@@ -1,8 +1,8 @@
 """Functions of heliocentric radial velocity from tables with even steps, one for each line.
 
-All tables lie in one flat float64 array, because an array in the innermost loop costs time for each one: the number of
-lines; four numbers for each line (first velocity [m s-1], steps per velocity [s m-1], last step, entry of its first
-knot); then for each knot its value and the rise to the next one (0 at the last).
+All tables lie in one flat float64 array, because an array in the innermost loop costs time for each one: the
+number of lines; four numbers for each line (first velocity [m s-1], steps per velocity [s m-1], last step,
+entry of its first knot); then for each knot its value and the rise to the next one (0 at the last).
 """
 
 import numpy as np

@@ -13,10 +13,10 @@ from tracer.kernels.shadow import Shadow, lit_fraction
 class Forces(NamedTuple):
     """What acts on an atom, and the spheres between which it flies.
 
-    `gm` [m3 s-2] and `radius` [m] of the body, `outer_radius` [m]; `tide_gm` [m3 s-2] is the Sun's, 0 without tide;
-    the body stands at `distance` [m] and recedes at `radial_velocity` [m s-1]; the frame turns at `turning` [rad s-1]
-    about +z, 0 switches its terms off. `push` [m s-2] away from the Sun, at `light_distance` [m] in full light, comes
-    on top of the lines'.
+    `gm` [m3 s-2] and `radius` [m] of the body, `outer_radius` [m]; `tide_gm` [m3 s-2] is the Sun's, 0 without
+    tide; the body stands at `distance` [m] and recedes at `radial_velocity` [m s-1]; the frame turns at
+    `turning` [rad s-1] about +z, 0 switches its terms off. `push` [m s-2] away from the Sun, at
+    `light_distance` [m] in full light, comes on top of the lines'.
     """
 
     gm: float
@@ -33,8 +33,9 @@ class Forces(NamedTuple):
 class Losses(NamedTuple):
     """Rates of loss [s-1], at `light_distance` and in full light where they depend on either.
 
-    `ionizing` and `other_sunlight` go as light received; `other_lit` is constant in sunlight, `other_distance` goes
-    with the inverse square of the Sun's distance in light and dark, `other_everywhere` is constant.
+    `ionizing` and `other_sunlight` go as light received; `other_lit` is constant in sunlight,
+    `other_distance` goes with the inverse square of the Sun's distance in light and dark, `other_everywhere`
+    is constant.
     """
 
     ionizing: float
@@ -80,13 +81,15 @@ def sunlight_received(sky, zone, x, y, z):
 
 
 @inlined
-def rates_of_change(sky, tables, zone, x, y, z, vx, vy, vz):
-    """Return (ax, ay, az [m s-2], ionising loss, other loss [s-1]) of an atom in shadow `zone`.
+def rates_of_change(sky, tables, zone, position, velocity):
+    """Return ((ax, ay, az) [m s-2], (ionising, other) loss [s-1]) of an atom in shadow `zone`.
 
-    a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0), s from the atom to the Sun, D = |s|,
-    W the turning and b the radiation acceleration.
+    a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0), s from the atom to the Sun,
+    D = |s|, W the turning and b the radiation acceleration.
     """
     forces, losses = sky.forces, sky.losses
+    x, y, z = position
+    vx, vy, vz = velocity
     r2 = x * x + y * y + z * z
     pull = forces.gm / (r2 * math.sqrt(r2))
     sx = forces.distance - x
@@ -98,12 +101,12 @@ def rates_of_change(sky, tables, zone, x, y, z, vx, vy, vz):
     sunward = forces.tide_gm * per_s * per_s
     origin_pull = forces.tide_gm / (forces.distance * forces.distance)
     if lit > 0.0:
-        velocity = (y * vy + z * vz - sx * (vx - forces.radial_velocity)) * per_s
-        sunward -= light * (forces.push + sum_of_lines(tables, velocity))
+        receding = (y * vy + z * vz - sx * (vx - forces.radial_velocity)) * per_s
+        sunward -= light * (forces.push + sum_of_lines(tables, receding))
     sunward *= per_s
     w = forces.turning
     ax = -pull * x + (sunward * sx - origin_pull) + w * (2.0 * vy + w * x)
     ay = -(pull + sunward) * y + w * (w * y - 2.0 * vx)
     az = -(pull + sunward) * z
     other = light * losses.other_sunlight + lit * losses.other_lit + dilution * losses.other_distance
-    return ax, ay, az, light * losses.ionizing, other + losses.other_everywhere
+    return (ax, ay, az), (light * losses.ionizing, other + losses.other_everywhere)

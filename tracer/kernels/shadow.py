@@ -1,8 +1,9 @@
 """The zones of a body's shadow and the surfaces between them.
 
-Inside a zone the light is a smooth function of place, so the integrator steps within one zone and stops at its edge.
-The edges are the cones that touch both spheres: the inner tangents bound the penumbra, the outer ones the umbra up
-to its tip and behind the tip the antumbra, where the body stands before the Sun as a ring's hole.
+Inside a zone the light is a smooth function of place, so the integrator steps within one zone and stops at
+its edge. The edges are the cones that touch both spheres: the inner tangents bound the penumbra, the outer
+ones the umbra up to its tip and behind the tip the antumbra, where the body stands before the Sun as a ring's
+hole.
 """
 
 import math

@@ -9,9 +9,10 @@ from tracer.kernels.compiling import kernel
 def visible_fraction(x, y, z, distance, radius, sun_radius):
     """Return the visible part, 0 to 1, of the Sun's disc at (x, y, z) [m] in the Sun-fixed frame.
 
-    Body (`radius` [m]) and Sun (`sun_radius` [m], centre at `distance` [m] on +x) are circles on the sky. In the
-    stereographic projection about the Sun's centre they stay circles, so that the overlap of two plane discs is
-    exact to the square of the Sun's angular radius, beside the ground and behind the umbra's tip alike.
+    Body (`radius` [m]) and Sun (`sun_radius` [m], centre at `distance` [m] on +x) are circles on the sky. In
+    the stereographic projection about the Sun's centre they stay circles, so that the overlap of two plane
+    discs is exact to the square of the Sun's angular radius, beside the ground and behind the umbra's tip
+    alike.
     """
     r2 = x * x + y * y + z * z
     s2 = (distance - x) * (distance - x) + y * y + z * z
@@ -37,7 +38,8 @@ def covered_fraction(limb, curvature):
     if limb >= 1.0:
         return 0.0
     if limb <= -1.0:
-        # The far edge stands at limb + 2 / curvature: beyond +1 all is covered, else the second disc lies inside.
+        # The far edge stands at limb + 2 / curvature: beyond +1 all is covered, else the second disc lies
+        # inside.
         if curvature * (1.0 - limb) <= 2.0:
             return 1.0
         return 1.0 / (curvature * curvature)

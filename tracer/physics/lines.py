@@ -1,7 +1,7 @@
 """g-values of resonance lines against heliocentric radial velocity, and the push they give.
 
-g_l(v) = (pi e^2 / m c^2) lambda^2 f F at the wavelength lambda (1 - v/c), photons per second scattered by one atom in
-the lower level at 1 au; each photon pushes by h / (m lambda).
+g_l(v) = (pi e^2 / m c^2) lambda^2 f F at the wavelength lambda (1 - v/c), photons per second scattered by one
+atom in the lower level at 1 au; each photon pushes by h / (m lambda).
 """
 
 from collections.abc import Sequence
@@ -60,7 +60,8 @@ def table_of(name: str, wavelength: float, velocities: Floats, g: Floats) -> Vel
     Raises
     ------
     ValueError
-        If there are fewer than two knots, they don't rise by more than 1 m/s each, or a value is negative or not finite.
+        If there are fewer than two knots, they don't rise by more than 1 m/s each, or a value is negative or
+        not finite.
     """
     _check(velocities, g)
     steps = np.diff(velocities)
@@ -81,7 +82,7 @@ def table_of(name: str, wavelength: float, velocities: Floats, g: Floats) -> Vel
 def table_value(table: VelocityTable, velocity: npt.ArrayLike) -> Floats:
     """Return g [s-1] at 1 au at `velocity` [m s-1], any shape; end values are held beyond the table's ends."""
     knots = table.first_velocity + table.velocity_step * np.arange(table.g.size)
-    return np.asarray(np.interp(velocity, knots, table.g))
+    return np.asarray(np.interp(np.asarray(velocity, dtype=np.float64), knots, table.g))
 
 
 def line_tables(tables: Sequence[VelocityTable]) -> Floats:

@@ -25,8 +25,8 @@ class PhotoLoss(NamedTuple):
 def photo_loss(species: str, solar_activity: float) -> PhotoLoss | None:
     """Return the photo-losses of `species`, None where the catalogue has none.
 
-    Rates go linearly from the quiet (`solar_activity` 0) to the active Sun (1), and as the inverse square of the
-    distance from the Sun.
+    Rates go linearly from the quiet (`solar_activity` 0) to the active Sun (1), and as the inverse square of
+    the distance from the Sun.
 
     Raises
     ------

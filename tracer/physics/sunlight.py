@@ -15,7 +15,8 @@ SHADOW_KINDS = {"none": NO_SHADOW, "cylinder": CYLINDER, "penumbra": CONES}
 def shadow_of(kind: str, radius: float, distance: float) -> Shadow:
     """Return the shadow of a body of `radius` [m] at `distance` [m] from the Sun; `kind` is a word of the run file.
 
-    Penumbra: cone of half angle asin((R_sun + R)/d); umbra: asin((R_sun - R)/d), with its tip at R/sin behind.
+    Penumbra: cone of half angle asin((R_sun + R)/d); umbra: asin((R_sun - R)/d), with its tip at R/sin
+    behind.
     """
     sun_radius = hosts()["Sun"].radius
     penumbra = umbra = 0.0
