@@ -7,7 +7,8 @@ import typer
 from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
 from tracer.commands.machine_output import print_json
 from tracer.commands.tables import print_rows
-from tracer.engine.preview import Preview, ReleasePreview, preview
+from tracer.constants import ASTRONOMICAL_UNIT
+from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
 from tracer.engine.runspec.load import load_run
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
@@ -43,7 +44,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
     print_rows(
         [
             ("propagator", figures.propagator),
-            ("light", "none: gravity alone"),
+            *_sun_rows(figures.sun),
             ("radius", f"{figures.radius / 1e3:.6g} km"),
             ("gm", f"{figures.gm / 1e9:.7g} km3 s-2"),
             ("surface gravity", f"{figures.surface_gravity:.4g} m s-2"),
@@ -54,12 +55,28 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             ),
             ("outer radius", _outer_radius(spec, figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
-            ("losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
+            ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
             ("particles", f"{figures.particles:,} in {ensemble.batches} batches, seed {ensemble.seed}"),
             ("memory", f"at most {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
     )
+
+
+def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
+    if sun is None:
+        return [("sunlight", "none: gravity alone")]
+    ratio = sun.radiation_acceleration_over_gravity
+    share = "" if ratio is None else f", {100 * ratio:.3g} % of surface gravity"
+    life = "no photo-loss" if sun.photo_lifetime is None else f"{sun.photo_lifetime:.4g} s in full sunlight"
+    return [
+        ("distance from the Sun", f"{sun.distance / ASTRONOMICAL_UNIT:.6g} au"),
+        ("radial velocity", f"{sun.radial_velocity / 1e3:.5g} km/s, positive away from the Sun"),
+        ("radiation acceleration", f"{sun.radiation_acceleration:.4g} m s-2 on an atom at rest{share}"),
+        ("photo-lifetime", life),
+        ("lines with g", ", ".join(sun.lines) or "none"),
+        ("lines without g", ", ".join(sun.lines_without_g) or "none"),
+    ]
 
 
 def _outer_radius(spec: RunSpec, figures: Preview) -> str:
@@ -77,8 +94,8 @@ def _print_release(release: ReleasePreview) -> None:
         ("mean launch speed", _figure(release.launch_speed, "m s-1")),
         ("jeans parameter", _figure(release.jeans_parameter, "")),
         ("scale height", _figure(release.scale_height, "km", 1e3)),
-        ("median hop time", _figure(release.hop_time, "s")),
-        ("median hop range", _figure(release.hop_range, "km", 1e3)),
+        ("median hop time, gravity alone", _figure(release.hop_time, "s")),
+        ("median hop range, gravity alone", _figure(release.hop_range, "km", 1e3)),
         ("cross the outer radius", f"{100 * release.crossing_fraction:.3g} % of first flights"),
     ]
     print_rows([(name, text) for name, text in rows if text])

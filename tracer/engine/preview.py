@@ -1,18 +1,23 @@
 """What a run would do, without running it: the resolved scene in figures."""
 
+from collections.abc import Iterator
 from typing import NamedTuple
 
 import numpy as np
 
+from tracer.catalogue.load import bodies
+from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
 from tracer.engine.body_constants import overridden_constants
 from tracer.engine.executors.threads import WINDOW
 from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
+from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
+from tracer.physics.lines import line_acceleration
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
 from tracer.physics.thermal import (
@@ -30,6 +35,9 @@ TRIAL_SEED = 1
 FLOAT_BYTES = 8
 REPLICATE_BYTES = 4
 
+ARCS = "closed-form Kepler arcs"
+INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
+
 HYDRODYNAMIC_JEANS = 3.0
 """Below this jeans parameter a real gas flows out and needs collisions (Volkov et al. 2011, ApJ 729, L24)."""
 
@@ -40,6 +48,7 @@ class ReleasePreview(NamedTuple):
     `temperature` [K] of the law, or the mean of the ground's over the places of release; the three speeds of a gas of
     that temperature, `launch_speed` the law's own mean [m s-1]; medians of `hop_time` [s] and `hop_range` [m] over the
     trial launches that land, None where none does; `crossing_fraction` of the trial launches cross the outer radius.
+    Trial launches fly under gravity alone.
     """
 
     name: str
@@ -56,10 +65,32 @@ class ReleasePreview(NamedTuple):
     crossing_fraction: float
 
 
+class SunPreview(NamedTuple):
+    """The body in sunlight.
+
+    `distance` [m], heliocentric `radial_velocity` and `orbital_rate` [rad s-1] of the body;
+    `radiation_acceleration` [m s-2] of an atom at rest on the body, and its ratio to the surface gravity, None
+    without gravity; `photo_lifetime` [s] of an atom in full sunlight there, None where sunlight destroys none.
+    """
+
+    distance: float
+    radial_velocity: float
+    orbital_rate: float
+    radiation_acceleration: float
+    radiation_acceleration_over_gravity: float | None
+    photo_lifetime: float | None
+    lines: tuple[str, ...]
+    lines_without_g: tuple[str, ...]
+
+
 class Preview(NamedTuple):
-    """The resolved scene in SI units; `memory` and `product_size` [bytes] are what to expect at the most."""
+    """The resolved scene in SI units; `memory` and `product_size` [bytes] are what to expect at the most.
+
+    `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that act everywhere alike.
+    """
 
     propagator: str
+    sun: SunPreview | None
     radius: float
     gm: float
     surface_gravity: float
@@ -82,7 +113,8 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
     releases = tuple(_preview_release(scene, release) for release in scene.releases)
     memory, product_size = _sizes(spec, scene, workers)
     return Preview(
-        propagator="closed-form Kepler arcs",
+        propagator=INTEGRATOR if scene.integrated else ARCS,
+        sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
         radius=body.radius,
         gm=body.gm,
         surface_gravity=surface_gravity(body.gm, body.radius),
@@ -91,13 +123,58 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         outer_radius=scene.outer_radius,
         age_limit=scene.age_limit,
         mass=scene.mass,
-        loss_rate=scene.hazard,
+        loss_rate=scene.constant_hazard,
         releases=releases,
         particles=spec.ensemble.particles_per_batch * spec.ensemble.batches * len(releases),
         memory=memory,
         product_size=product_size,
-        notes=(*_override_notes(spec), *_outflow_notes(releases)),
+        notes=(*_override_notes(spec), *_outflow_notes(releases), *_sun_notes(spec, scene)),
     )
+
+
+def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
+    dilution = (ASTRONOMICAL_UNIT / sun.station.distance) ** 2
+    pushing = sun.lines if sun.lines_push else ()
+    push = dilution * (sun.push + float(line_acceleration(pushing, scene.mass, sun.station.radial_velocity)))
+    gravity = surface_gravity(scene.body.gm, scene.body.radius)
+    return SunPreview(
+        distance=sun.station.distance,
+        radial_velocity=sun.station.radial_velocity,
+        orbital_rate=sun.station.orbital_rate,
+        radiation_acceleration=push,
+        radiation_acceleration_over_gravity=push / gravity if gravity else None,
+        photo_lifetime=1.0 / (dilution * sun.photo.total) if sun.photo.total else None,
+        lines=tuple(line.name for line in sun.lines),
+        lines_without_g=lines_without_g(spec),
+    )
+
+
+def _sun_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
+    if scene.sun is None:
+        return
+    if missing := lines_without_g(spec):
+        yield f"lines {', '.join(missing)} have no known g: they neither push nor shine; a [[gas.line]] can give it"
+    if replaced := replaced_lines(spec):
+        yield f"lines {', '.join(replaced)} of the run file replace the catalogue's"
+    if spec.gas.photoionization_rate is None:
+        yield from _photo_notes(spec, scene.sun)
+    host = bodies()[spec.body.name].host if spec.body.name in bodies() else None
+    if host is not None and host.orbit is not None:
+        yield (
+            f"{spec.body.name} has the distance and velocity of {host.name} from the Sun; its own motion about "
+            f"{host.name}, and the gravity and shadow of {host.name}, are left out"
+        )
+
+
+def _photo_notes(spec: RunSpec, sun: Sunlight) -> Iterator[str]:
+    species = spec.gas.species
+    if not sun.photo.total:
+        yield (
+            f"the catalogue has no photo-rate of {species}: sunlight destroys none; "
+            "gas.photoionization_rate can give one"
+        )
+    elif not sun.photo.told_apart:
+        yield f"ionisation and dissociation of {species} are not told apart: all counts as other_loss"
 
 
 def _preview_release(scene: Scene, release: Release) -> ReleasePreview:

@@ -55,8 +55,9 @@ class Loss(NamedTuple):
 class Scene(NamedTuple):
     """All that decides the physics and the cells of a run, in SI units.
 
-    `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body, `mass` [kg] of one atom; `surface_temperature` is None where nothing
-    needs it; `outer_radius` [m] from the centre, `age_limit` [s].
+    `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body,
+    `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it; `outer_radius` [m] from the centre,
+    `age_limit` [s].
     """
 
     body: BodyConstants

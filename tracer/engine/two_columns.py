@@ -1,6 +1,7 @@
 """Read a CSV file of two columns of numbers."""
 
 import csv
+from itertools import pairwise
 from pathlib import Path
 from typing import NamedTuple
 
@@ -50,7 +51,7 @@ def read_two_columns(path: Path, columns: str) -> list[Row]:
         rows.append(Row(line, first, second))
     if len(rows) < 2:
         raise InputError(f"has {len(rows)} rows of numbers; at least 2 are needed")
-    for low, high in zip(rows[:-1], rows[1:], strict=True):
+    for low, high in pairwise(rows):
         if not low.first < high.first:
             raise InputError(f"line {high.line}: {high.first:g} does not rise above {low.first:g}")
     return rows

@@ -48,7 +48,7 @@ class Resume(NamedTuple):
     shine: np.ndarray
 
 
-def new_resume(lines):
+def new_resume(lines: int) -> Resume:
     """Return the start of a batch of atoms with `lines` emission lines."""
     return Resume(
         np.zeros(COUNTERS, np.int64), np.zeros(STATE_SIZE), new_flight(), new_curve(), np.zeros(lines)

@@ -13,7 +13,7 @@ from tracer.tally.buffer import plane_shape, plane_size
 Floats = NDArray[np.float64]
 
 RAYLEIGH = 1e10
-"""Photons m-2 s-1, into 4 pi sr, in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""
+"""Photons m-2 s-1 in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""
 
 
 class ProductField(NamedTuple):
