@@ -223,7 +223,8 @@ def make_image_plane(
         Where ends do not rise, a direction has no length, or an axis has no pixel.
     """
     n = _clean(_unit(toward_viewer))
-    off_axis = (-n[2] * n[0], -n[2] * n[1], 1.0 - n[2] * n[2])
+    # x^2 + y^2, not 1 - z^2, which near the pole has no digits left.
+    off_axis = (-n[2] * n[0], -n[2] * n[1], n[0] * n[0] + n[1] * n[1])
     on_axis = n[0] == 0.0 and n[1] == 0.0
     up = (0.0, 1.0, 0.0) if on_axis else _clean(_unit(off_axis))
     return ImagePlane(
