@@ -32,7 +32,12 @@ def test_demo_closes_its_budget(products, demo):
 
 def test_demo_products_follow_the_cf_conventions(products):
     # One process for all: starting the checker takes longer than checking.
-    checker = [str(Path(sys.executable).with_name("compliance-checker")), "--test=cf:1.11", "--criteria", "lenient"]
+    checker = [
+        str(Path(sys.executable).with_name("compliance-checker")),
+        "--test=cf:1.11",
+        "--criteria",
+        "lenient",
+    ]
     done = subprocess.run([*checker, *map(str, products.values())], capture_output=True, text=True)
     assert done.returncode == 0, done.stdout
     assert done.stdout.count("All tests passed!") == len(products)

@@ -27,8 +27,7 @@ def folded(small_run_file):
 
 
 def ledger(folder, release: int) -> np.ndarray:
-    from_layout = folder.statistics[release].mean
-    return from_layout[-2 - len(Fate) : -2]
+    return tally_views(folder.layout, folder.statistics[release].mean).ledger
 
 
 def test_closed_budget_makes_a_product(folded):
@@ -49,12 +48,3 @@ def test_unresolved_atom_is_refused_though_the_budget_closes(folded):
     fates[Fate.UNRESOLVED], fates[Fate.CAPTURED] = fates[Fate.CAPTURED], 0.0
     with pytest.raises(TracerError, match=r"gave up on 0\.\d+ of the atoms of release 'impact vapour'"):
         make_product(*folded, Costs(1.0, 1))
-
-
-def test_ledger_stands_where_these_tests_look_for_it(folded):
-    spec, scene, folder = folded
-    del spec
-    layout = make_work(scene, 1, 1).layout
-    views = tally_views(layout, folder.statistics[0].mean)
-    assert np.shares_memory(views.ledger, ledger(folder, 0))
-    assert views.ledger.shape == (len(Fate),)

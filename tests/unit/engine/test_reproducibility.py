@@ -11,7 +11,7 @@ from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
-from tracer.kernels.tracing import ALOFT, ATOM, COUNTERS, STATE_SIZE, Resume, trace_slice
+from tracer.kernels.tracing import ALOFT, ATOM, new_resume, trace_slice
 from tracer.tally.buffer import tally_views
 from tracer.tally.statistics import BatchStatistics
 
@@ -83,7 +83,7 @@ def _sliced(spec, budget: int) -> tuple[np.ndarray, int, int]:
     launches = draw_launches(work.scene, release, work.particles, rng)
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    resume = Resume(np.zeros(COUNTERS, dtype=np.int64), np.zeros(STATE_SIZE))
+    resume = new_resume(0)
     flights = stops_aloft = 0
     while resume.counters[ATOM] < work.particles:
         made = trace_slice(work.world, *launches, 1.0, resume, tally, rng, budget)

@@ -1,4 +1,4 @@
-from tracer.product.layout import layout, variable_names, why_no_product
+from tracer.product.layout import has_lines, layout, variable_names, why_no_product
 
 GROUND = ("release", "latitude", "local_time")
 
@@ -14,6 +14,7 @@ def test_every_variable_of_gravity_has_its_dimensions_and_unit():
         "capture_flux": (GROUND, "m-2 s-1"),
         "escape_flux": (GROUND, "m-2 s-1"),
         "escape_rate_by_direction": (GROUND, "s-1 sr-1"),
+        "ionization_rate": (("release", "altitude", "latitude", "local_time"), "m-3 s-1"),
         "ledger": (("release", "fate"), "s-1"),
         "mean_flights": (("release",), "1"),
         "mean_life": (("release",), "s"),
@@ -23,6 +24,17 @@ def test_every_variable_of_gravity_has_its_dimensions_and_unit():
     }
 
 
+def test_gas_with_lines_shines_by_line():
+    table = layout(["tail"], lines=True)
+    by_line = {name: (row.dimensions, row.unit) for name, row in table.items() if "line" in row.dimensions}
+    assert by_line == {
+        "emission_rate": (("line", "release", "altitude", "latitude", "local_time"), "m-3 s-1"),
+        "brightness_tail": (("line", "release", "tail_vertical", "tail_horizontal"), "1e10 m-2 s-1"),
+    }
+    assert all(table[name].replicated for name in by_line)
+    assert {name for name in table if has_lines(name)} == set(by_line)
+
+
 def test_fields_for_sums_over_cells_are_kept_as_replicates():
     kept = {name for name, row in layout(["tail"]).items() if row.replicated}
     assert kept == {"number_density", "vertical_column", "column_tail"}
@@ -30,7 +42,10 @@ def test_fields_for_sums_over_cells_are_kept_as_replicates():
 
 def test_names_of_two_images_that_collide_come_twice():
     names = variable_names(["tail", "tail_standard_error"])
-    assert {name for name in names if names.count(name) > 1} == {"column_tail_standard_error"}
+    assert {name for name in names if names.count(name) > 1} == {
+        "column_tail_standard_error",
+        "brightness_tail_standard_error",
+    }
 
 
 def test_names_of_images_that_do_not_collide_come_once():
