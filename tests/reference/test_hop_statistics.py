@@ -1,9 +1,8 @@
 """Ranges and times of thermal hops: flux-weighted Maxwellian, cosine law, on a sphere and in the flat limit.
 
 The table was computed for this project by quadrature; here it is recomputed from the orbit formulas of a hop. Its arcs
-are those that a flight sweeps about the centre, also beyond half a turn; `single_hops` gives the short way, which
-differs where the horizontal speed at launch exceeds the circular speed, and is turned round here. For helium on the
-Moon that makes 11 % of the mean. On a sphere the mean time of bound hops diverges, period ~ (-E)^(-3/2): it is taken
+are those that a flight sweeps about the centre, also beyond half a turn: for helium on the Moon the short way round
+would take 11 % off the mean. On a sphere the mean time of bound hops diverges, period ~ (-E)^(-3/2): it is taken
 over the hops whose apex stays inside the Hill radius.
 """
 
@@ -77,9 +76,8 @@ def hops(case: Case, direction: DirectionLaw) -> Hops:
     up = np.tile([0.36, 0.48, -0.8], (count, 1))
     motion = Motion(case.gm, case.radius, 1e9 * case.radius, 0.0, np.inf, 0.0)
     ending, time, arc, apex = single_hops(motion, up, velocities(up, speed, cosine, 2.0 * pi * u[:, 2]))
-    beyond_half = speed**2 * (1.0 - cosine**2) > case.gm / case.radius
     energy = 0.5 * case.mass * speed**2 / (BOLTZMANN * case.kelvin)
-    return Hops(ending, time, np.where(beyond_half, 2.0 * pi - arc, arc), apex, energy)
+    return Hops(ending, time, arc, apex, energy)
 
 
 def figures(case: Case, found: Hops) -> Floats:

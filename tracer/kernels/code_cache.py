@@ -10,6 +10,7 @@ import os
 import pickle
 import stat
 import sys
+from contextlib import suppress
 from functools import cache
 from pathlib import Path
 
@@ -131,14 +132,15 @@ class _GuardedCache(FunctionCache):
         try:
             return super().load_overload(sig, target_context)
         except Exception:
+            # A damaged index would refuse the save that follows as well.
+            self._drop_index()
             return None
 
     def save_overload(self, sig, data):
-        try:
+        # Failing to keep the code must never stop the work that it was compiled for.
+        with suppress(Exception):
             super().save_overload(sig, data)
-        except Exception:
-            self._drop_index()
 
     def _drop_index(self):
-        # A damaged index would refuse every later save as well.
-        Path(self._cache_file._index_path).unlink(missing_ok=True)
+        with suppress(OSError):
+            Path(self._cache_file._index_path).unlink()

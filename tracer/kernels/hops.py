@@ -6,15 +6,24 @@ import numpy as np
 
 from tracer.kernels.arc import highest, position_at
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc
-from tracer.kernels.compiling import allocating_kernel
+from tracer.kernels.compiling import allocating_kernel, kernel
+from tracer.kernels.endings import LANDED
+
+
+@kernel
+def _above_circular_speed(arc):
+    """Return True where the horizontal speed at launch exceeds that of a circular orbit there."""
+    speed_squared = 2.0 * arc.gm / arc.r0 - arc.beta
+    climb = arc.eta / arc.r0
+    return (speed_squared - climb * climb) * arc.r0 > arc.gm
 
 
 @allocating_kernel
 def single_hops(motion, positions, velocities):
     """Return (endings, durations [s], arcs [rad], apexes [m]) of launches, each (n,).
 
-    `positions` (n, 3) are unit vectors, `velocities` (n, 3) [m s-1] in the Sun-fixed frame. An arc is the angle at the
-    body's centre between launch and end, the short way where the flight goes round more than half of the body.
+    `positions` (n, 3) are unit vectors, `velocities` (n, 3) [m s-1] in the Sun-fixed frame. An arc is the angle that
+    the flight sweeps about the body's centre, which may exceed half a turn.
     """
     count = positions.shape[0]
     endings = np.empty(count, np.int64)
@@ -30,5 +39,8 @@ def single_hops(motion, positions, velocities):
         durations[i] = t
         cx, cy, cz = ny * z - nz * y, nz * x - nx * z, nx * y - ny * x
         arcs[i] = math.atan2(math.sqrt(cx * cx + cy * cy + cz * cz), nx * x + ny * y + nz * z)
+        if endings[i] == LANDED and _above_circular_speed(arc):
+            # The launch lies in the half of the ellipse about its pericentre: the flight goes round the other half.
+            arcs[i] = 2.0 * math.pi - arcs[i]
         apexes[i] = position_at(arc, highest(arc, s_end))[1] - r
     return endings, durations, arcs, apexes
