@@ -35,7 +35,6 @@ def batch(case: tuple[float, ...], seed: int) -> np.ndarray:
     up = np.tile([0.36, 0.48, -0.8], (LAUNCHES, 1))
     motion = Motion(gm, radius, 1e9 * radius, 0.0, np.inf, 0.0)
     ending, time, arc, apex = single_hops(motion, up, velocities(up, speed, cosine, 2.0 * pi * u[:, 2]))
-    # The kernel gives the short way; a flight goes the long way where it starts faster than a circular orbit.
     landed = ending == LANDED
     km, time, inside = arc[landed] * radius / 1e3, time[landed], apex[landed] + radius < hill
     spread = km.mean(), np.median(km), sqrt((km**2).mean())
