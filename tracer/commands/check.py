@@ -69,7 +69,9 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
     ratio = sun.radiation_acceleration_over_gravity
     share = "" if ratio is None else f", {100 * ratio:.3g} % of surface gravity"
     life = "no photo-loss" if sun.photo_lifetime is None else f"{sun.photo_lifetime:.4g} s in full sunlight"
+    anomaly = "" if sun.true_anomaly is None else f"{sun.true_anomaly:.6g} deg"
     return [
+        ("true anomaly", anomaly or "not given: the distance is"),
         ("distance from the Sun", f"{sun.distance / ASTRONOMICAL_UNIT:.6g} au"),
         ("radial velocity", f"{sun.radial_velocity / 1e3:.5g} km/s, positive away from the Sun"),
         ("radiation acceleration", f"{sun.radiation_acceleration:.4g} m s-2 on an atom at rest{share}"),

@@ -29,6 +29,7 @@ from tracer.physics.thermal import (
     scale_height,
     surface_gravity,
 )
+from tracer.units import si
 
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
@@ -68,11 +69,13 @@ class ReleasePreview(NamedTuple):
 class SunPreview(NamedTuple):
     """The body in sunlight.
 
-    `distance` [m], heliocentric `radial_velocity` and `orbital_rate` [rad s-1] of the body;
-    `radiation_acceleration` [m s-2] of an atom at rest on the body, and its ratio to the surface gravity, None
-    without gravity; `photo_lifetime` [s] of an atom in full sunlight there, None where sunlight destroys none.
+    `true_anomaly` [deg], None where the run file gives the distance; `distance` [m], heliocentric `radial_velocity`
+    and `orbital_rate` [rad s-1] of the body; `radiation_acceleration` [m s-2] of an atom at rest on the body, and its
+    ratio to the surface gravity, None without gravity; `photo_lifetime` [s] of an atom in full sunlight there, None
+    where sunlight destroys none.
     """
 
+    true_anomaly: float | None
     distance: float
     radial_velocity: float
     orbital_rate: float
@@ -137,7 +140,9 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
     pushing = sun.lines if sun.lines_push else ()
     push = dilution * (sun.push + float(line_acceleration(pushing, scene.mass, sun.station.radial_velocity)))
     gravity = surface_gravity(scene.body.gm, scene.body.radius)
+    anomaly = None if spec.sun is None else spec.sun.true_anomaly
     return SunPreview(
+        true_anomaly=None if anomaly is None else si(anomaly),
         distance=sun.station.distance,
         radial_velocity=sun.station.radial_velocity,
         orbital_rate=sun.station.orbital_rate,
