@@ -7,7 +7,7 @@ from typing import Annotated, NamedTuple
 
 import typer
 
-from tracer.errors import TracerError
+from tracer.errors import Interrupted, TracerError
 
 
 class Entry(NamedTuple):
@@ -41,9 +41,20 @@ def main(arguments: Sequence[str] | None = None) -> None:
     words = list(sys.argv[1:] if arguments is None else arguments)
     asked = next((word for word in words if not word.startswith("-")), None)
     try:
-        _application(asked)(words, prog_name="tracer")
+        sys.exit(_application(asked)(words, prog_name="tracer", standalone_mode=False) or 0)
     except TracerError as error:
         typer.echo(f"tracer: {error}", err=True)
+        sys.exit(error.exit_code)
+    except (KeyboardInterrupt, typer.Abort):
+        typer.echo("tracer: interrupted", err=True)
+        sys.exit(Interrupted.exit_code)
+    except MemoryError:
+        typer.echo(
+            "tracer: out of memory; fewer cells, pixels or workers need less, see tracer check", err=True
+        )
+        sys.exit(TracerError.exit_code)
+    except typer.TyperException as error:
+        error.show()
         sys.exit(error.exit_code)
 
 
