@@ -1,9 +1,10 @@
 """The command `tracer`: a table of commands, each loaded only when it is asked for."""
 
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from functools import wraps
 from importlib import import_module
-from typing import Annotated, NamedTuple
+from typing import Annotated, Any, NamedTuple
 
 import typer
 
@@ -41,11 +42,11 @@ def main(arguments: Sequence[str] | None = None) -> None:
     words = list(sys.argv[1:] if arguments is None else arguments)
     asked = next((word for word in words if not word.startswith("-")), None)
     try:
-        sys.exit(_application(asked)(words, prog_name="tracer", standalone_mode=False) or 0)
+        _application(asked)(words, prog_name="tracer")
     except TracerError as error:
         typer.echo(f"tracer: {error}", err=True)
         sys.exit(error.exit_code)
-    except (KeyboardInterrupt, typer.Abort):
+    except KeyboardInterrupt:
         typer.echo("tracer: interrupted", err=True)
         sys.exit(Interrupted.exit_code)
     except MemoryError:
@@ -53,9 +54,6 @@ def main(arguments: Sequence[str] | None = None) -> None:
             "tracer: out of memory; fewer cells, pixels or workers need less, see tracer check", err=True
         )
         sys.exit(TracerError.exit_code)
-    except typer.TyperException as error:
-        error.show()
-        sys.exit(error.exit_code)
 
 
 def _application(asked: str | None) -> typer.Typer:
@@ -69,11 +67,23 @@ def _application(asked: str | None) -> typer.Typer:
     )
     app.callback()(_overall)
     for entry in COMMANDS:
-        function = import_module(entry.module).command if entry.name == asked else _not_loaded
-        app.command(entry.name, help=None if entry.name == asked else entry.help, short_help=entry.help)(
-            function
-        )
+        asked_for = entry.name == asked
+        function = _interruptible(import_module(entry.module).command) if asked_for else _not_loaded
+        app.command(entry.name, help=None if asked_for else entry.help, short_help=entry.help)(function)
     return app
+
+
+def _interruptible(command: Callable[..., None]) -> Callable[..., None]:
+    """Return `command` with Ctrl-C as an error of ours; the command-line library gives it another exit code."""
+
+    @wraps(command)
+    def run(*arguments: Any, **options: Any) -> None:
+        try:
+            command(*arguments, **options)
+        except KeyboardInterrupt:
+            raise Interrupted("interrupted") from None
+
+    return run
 
 
 def _not_loaded() -> None:

@@ -99,8 +99,8 @@ def test_seeds_scatter_as_the_standard_errors_of_pixels_say(ensembles, name):
     assert well_hit.sum() > 30
     ratio = ensemble.mean.var(axis=0, ddof=1) / (ensemble.error**2).mean(axis=0)
     # A pixel's ratio scatters by sqrt(2/39) = 0.23; the mean over these pixels, of which neighbours move together, by
-    # 0.03, measured over eight other sets of 40 seeds: 0.9 and 1.1 are three standard errors, false alarm 3e-3.
-    assert 0.9 < ratio[well_hit].mean() < 1.1
+    # 0.04, measured over 50 other sets of 40 seeds: nearly four of these are let off, false alarm 5e-4.
+    assert 0.85 < ratio[well_hit].mean() < 1.15
 
 
 @pytest.mark.parametrize("name", ["column_dawn", "brightness_dawn"])
@@ -119,6 +119,6 @@ def test_replicates_give_the_scatter_of_both_lines_together_where_their_errors_d
     variance = ensemble.mean.sum(axis=1).var(axis=0, ddof=1)
     by_replicates = ensemble.replicates.sum(axis=2).var(axis=1, ddof=1).mean(axis=0) / BATCHES
     blindly = (ensemble.error**2).sum(axis=1).mean(axis=0)
-    # The mean ratio scatters by 0.03, as above.
-    assert 0.9 < (variance / by_replicates)[well_hit].mean() < 1.1
+    # The mean ratio scatters by 0.04, as above.
+    assert 0.85 < (variance / by_replicates)[well_hit].mean() < 1.15
     assert (variance / blindly)[well_hit].mean() > 1.4

@@ -35,7 +35,7 @@ horizontal = ["-20 radii", "20 radii"]
 vertical = ["-20 radii", "20 radii"]
 pixels = [4, 1]
 [ensemble]
-particles_per_batch = 4_000
+particles_per_batch = 2_500
 batches = 10
 """
 BATCHES = 10
@@ -48,7 +48,7 @@ def scene():
 
 def strips(scene):
     """Return (batch, strip): what images hold at -20 to -10, -10 to 0, 0 to 10 and 10 to 20 radii, Sun at the right."""
-    work = make_work(scene, 7, 4_000)
+    work = make_work(scene, 7, 2_500)
     results = [trace_batch(work, Task(0, b), lambda _a, _f: None, lambda: False) for b in range(BATCHES)]
     return np.array([tally_views(work.layout, one.buffer).image_content for one in results])
 

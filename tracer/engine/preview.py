@@ -179,7 +179,7 @@ def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
         launch_speed=float(np.mean(np.linalg.norm(launches.velocities, axis=1))),
         **_thermal_figures(scene, kelvin),
         hop_time=float(np.median(durations[landed])) if landed.any() else None,
-        hop_range=float(np.median(arcs[landed])) * body.radius if landed.any() else None,
+        hop_range=float(np.median(arcs[landed])) * scene.body.radius if landed.any() else None,
         crossing_fraction=float(np.mean(endings == CROSSED)),
     )
 

@@ -118,7 +118,7 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     lands = spec.body.gm is None or spec.body.gm.value > 0.0
     if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
         yield conflict(
-            "surface.temperature", f"missing; atoms that bounce, sticking below 1, take it; {example}"
+            "surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}"
         )
 
 
