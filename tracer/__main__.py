@@ -26,6 +26,14 @@ COMMANDS = (
         "Validate a run file and print the resolved scene, without running it.",
         "tracer.commands.check",
     ),
+    Entry(
+        "retention",
+        "Say which gases a body keeps: escape, sunlight and wind against the age of the Solar System.",
+        "tracer.commands.retention",
+    ),
+    Entry(
+        "catalogue", "List the built-in bodies, gases and lines with sources.", "tracer.commands.catalogue"
+    ),
     Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),

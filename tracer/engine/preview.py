@@ -18,6 +18,7 @@ from tracer.kernels.temperature import temperatures
 from tracer.physics.lines import line_acceleration
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
+from tracer.physics.retention import HYDRODYNAMIC_JEANS
 from tracer.physics.thermal import (
     escape_speed,
     jeans_parameter,
@@ -36,9 +37,6 @@ REPLICATE_BYTES = 4
 
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
-
-HYDRODYNAMIC_JEANS = 3.0
-"""Below this jeans parameter a real gas flows out and needs collisions (Volkov et al. 2011, ApJ 729, L24)."""
 
 
 class ReleasePreview(NamedTuple):
