@@ -18,7 +18,10 @@ def test_heading_and_comments_are_passed_over(tmp_path):
 @pytest.mark.parametrize(
     ("content", "message"),
     [
-        ("km/s,pdf\n0,0\n1,1\n", "line 1: the heading 'km/s,pdf' names another unit; the first column is in m/s"),
+        (
+            "km/s,pdf\n0,0\n1,1\n",
+            "line 1: the heading 'km/s,pdf' names another unit; the first column is in m/s",
+        ),
         ("0,0\n500,x\n", "line 2: '500,x' is not two numbers: speed in m/s, pdf"),
         ("0,0\n500,1\n400,1\n", "line 3: 400 does not rise above 500"),
         ("-1,0\n500,1\n", "line 1: speed -1 must be at least 0 m/s"),

@@ -117,9 +117,7 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
             yield conflict("surface.temperature", f"missing; release[{number}].speed takes it; {example}")
     lands = spec.body.gm is None or spec.body.gm.value > 0.0
     if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
-        yield conflict(
-            "surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}"
-        )
+        yield conflict("surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}")
 
 
 def _buried_outer_radius(spec: RunSpec) -> Iterator[Exception]:
