@@ -137,10 +137,10 @@ def test_whole_runs_agree(traced):
     arcs, integrated = traced(run_text(seed=1)), traced(run_text(seed=2, photo=VANISHING))
     assert arcs.attrs["integration_steps"] == 0 < integrated.attrs["integration_steps"]
     apart = deviations(arcs, integrated)
-    # 217 comparisons at 4 standard errors of 158 degrees of freedom: false alarm 2e-2. Neighbours move together: the
+    # 217 comparisons at 4.8 standard errors of 158 degrees of freedom: false alarm 8e-4. Neighbours move together: the
     # mean square scatters by 0.12 from seed to seed, false alarm 1e-2.
     assert apart.size > 200
-    assert np.abs(apart).max() < 4.0
+    assert np.abs(apart).max() < 4.8
     assert 0.7 < np.mean(apart**2) < 1.3
 
 
