@@ -40,7 +40,7 @@ COMMANDS = (
 )
 
 EPILOG = (
-    "Begin with: tracer new, tracer check, tracer run. Results are a planning aid: flight rules and the responsible "
+    "Begin with: tracer retention, tracer new, tracer check, tracer run. Results are a planning aid: flight rules and the responsible "
     "team come first."
 )
 
