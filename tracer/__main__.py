@@ -37,6 +37,7 @@ COMMANDS = (
     Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),
+    Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
 )
 
 EPILOG = (

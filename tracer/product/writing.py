@@ -67,6 +67,35 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
         _sync_folder(target.parent)
 
 
+def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
+    """Write what was made from a product, such as a figure; the file appears whole or not at all.
+
+    Parameters
+    ----------
+    content : bytes
+        All that the file will hold.
+    path : path
+        The output.
+    overwrite : bool
+        Whether an existing file is replaced.
+
+    Raises
+    ------
+    InputError
+        As `check_output`.
+    TracerError
+        Where writing fails, as on a full disk; no half file is left.
+    """
+    check_output(path, overwrite)
+    target = Path(os.path.realpath(path))
+    with _written_beside(target, path, len(content)) as beside:
+        beside.write_bytes(content)
+        _sync(beside)
+        check_output(path, overwrite)
+        os.replace(beside, target)
+        _sync_folder(target.parent)
+
+
 def check_output(path: StrPath, overwrite: bool = False) -> None:
     """Refuse an output that cannot be made, before any work is done for it.
 

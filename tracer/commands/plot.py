@@ -1,0 +1,110 @@
+"""`tracer plot`: a figure of a product."""
+
+from enum import StrEnum
+from typing import Annotated
+
+import typer
+
+from tracer.commands.arguments import PRODUCT_FILE
+from tracer.errors import InputError
+from tracer.plots.density import density
+from tracer.plots.image import image
+from tracer.plots.ledger import ledger
+from tracer.plots.saving import DOTS_PER_INCH, ENDINGS, ending, figure_bytes
+from tracer.plots.style import Width
+from tracer.plots.vertical_column import vertical_column
+from tracer.product.lock import output_lock
+from tracer.product.reading import open_product
+from tracer.product.writing import check_output, save_bytes
+
+
+class What(StrEnum):
+    """The figures."""
+
+    COLUMN = "column"
+    DENSITY = "density"
+    IMAGE = "image"
+    LEDGER = "ledger"
+
+
+class WidthName(StrEnum):
+    """The widths of a figure."""
+
+    COLUMN = "column"
+    FULL = "full"
+
+
+FIGURES = {What.COLUMN: vertical_column, What.DENSITY: density, What.LEDGER: ledger}
+"""Figures that take no more than a product, a release and a width."""
+
+
+def command(
+    product: PRODUCT_FILE,
+    what: Annotated[
+        What,
+        typer.Option(
+            help="column: above the ground, over latitude and local time. density: in the equatorial and the "
+            "noon-midnight plane. image: as a viewer sees it. ledger: the particle budget.",
+            show_default=False,
+        ),
+    ],
+    output: Annotated[
+        str,
+        typer.Option(
+            "--output",
+            "-o",
+            metavar="FILE",
+            help=f"The figure; its ending says its kind: {', '.join(ENDINGS)}.",
+            show_default=False,
+        ),
+    ],
+    image_name: Annotated[
+        str | None,
+        typer.Option(
+            "--image",
+            metavar="NAME",
+            help="Which image, by its name in the run file or the product; needed where there are several.",
+            show_default=False,
+        ),
+    ] = None,
+    line: Annotated[
+        str | None,
+        typer.Option(
+            metavar="NAME",
+            help="Draw the image in the brightness of this line; otherwise in column density.",
+            show_default=False,
+        ),
+    ] = None,
+    release: Annotated[
+        str | None,
+        typer.Option(
+            metavar="NAME", help="Draw one release; otherwise the sum over all of them.", show_default=False
+        ),
+    ] = None,
+    width: Annotated[
+        WidthName, typer.Option(help="column: 88 mm, one column of a journal. full: 180 mm, the whole page.")
+    ] = WidthName.FULL,
+    dpi: Annotated[int, typer.Option(min=50, max=1200, help="Pixels per inch.")] = DOTS_PER_INCH,
+    overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an existing file.")] = False,
+) -> None:
+    """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
+    suffix = ending(output)
+    for option, value in (("--image", image_name), ("--line", line)):
+        if value is not None and what is not What.IMAGE:
+            raise InputError(f"{option}: goes with --what image alone, not with --what {what}")
+    check_output(output, overwrite)
+    chosen: Width = "column" if width is WidthName.COLUMN else "full"
+    with output_lock(output), open_product(product) as ds:
+        try:
+            if what is What.IMAGE:
+                figure = image(ds, image_name, line, release, chosen)
+            else:
+                figure = FIGURES[what](ds, release, chosen)
+        except InputError as error:
+            raise InputError(f"{product}: {error}") from None
+        save_bytes(figure_bytes(figure, suffix, dpi), output, overwrite)
+    typer.echo(output)
+    # A budget is the last thing to look at; before it, it is the likely next.
+    following = "summary" if what is What.LEDGER else "plot"
+    arguments = "" if what is What.LEDGER else " --what ledger -o ledger.png"
+    typer.echo(f"Next: tracer {following} {product}{arguments}", err=True)
