@@ -41,8 +41,8 @@ COMMANDS = (
 )
 
 EPILOG = (
-    "Begin with: tracer retention, tracer new, tracer check, tracer run. Results are a planning aid: flight rules and the responsible "
-    "team come first."
+    "Begin with: tracer retention, tracer new, tracer check, tracer run. Results are a planning aid: flight rules and "
+    "the responsible team come first."
 )
 
 

@@ -7,13 +7,15 @@ from typing import Annotated
 import typer
 
 from tracer.commands.arguments import JSON, OVERWRITE, RUN_FILE, SETTINGS
+from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import print_json
+from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
-from tracer.commands.text_output import refuse_inputs, write_text
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene, referenced_files
 from tracer.engine.single_flight import PATH_COLUMNS, Flight, Launch, fly
 from tracer.errors import InputError
+from tracer.product.writing import check_output, save_bytes
 from tracer.units import parse, si
 
 
@@ -60,9 +62,10 @@ def command(
     scene = build_scene(spec)
     if output is not None:
         refuse_inputs(output, [run_file, *referenced_files(spec)])
+        check_output(output, overwrite)
     flown = fly(scene, launch)
     if output is not None:
-        write_text(output, _path_text(flown), overwrite)
+        save_bytes(_path_text(flown).encode(), output, overwrite)
     if json:
         print_json(flown.summary._asdict())
         return
@@ -77,6 +80,7 @@ def command(
             ("ground_arc", f"{summary.ground_arc:.8g} deg"),
         ]
     )
+    name_next("run", run_file, settings=settings)
 
 
 def _launch(latitude: float, local_time: float, speed: str, zenith_angle: float, azimuth: float) -> Launch:

@@ -5,7 +5,8 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.next_command import name_next
 from tracer.errors import InputError
 from tracer.plots.density import density
 from tracer.plots.image import image
@@ -85,7 +86,7 @@ def command(
         WidthName, typer.Option(help="column: 88 mm, one column of a journal. full: 180 mm, the whole page.")
     ] = WidthName.FULL,
     dpi: Annotated[int, typer.Option(min=50, max=1200, help="Pixels per inch.")] = DOTS_PER_INCH,
-    overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an existing file.")] = False,
+    overwrite: OVERWRITE = False,
 ) -> None:
     """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
     suffix = ending(output)
@@ -106,5 +107,5 @@ def command(
     typer.echo(output)
     # A budget is the last thing to look at; before it, it is the likely next.
     following = "summary" if what is What.LEDGER else "plot"
-    arguments = "" if what is What.LEDGER else " --what ledger -o ledger.png"
-    typer.echo(f"Next: tracer {following} {product}{arguments}", err=True)
+    arguments = [] if what is What.LEDGER else ["--what", "ledger", "-o", "ledger.png"]
+    name_next(following, product, *arguments)

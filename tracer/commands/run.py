@@ -7,9 +7,9 @@ import typer
 
 from tracer.commands.arguments import OVERWRITE, RUN_FILE, SETTINGS
 from tracer.commands.budget_table import print_budget
+from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.commands.progress import shown_progress
-from tracer.commands.text_output import refuse_inputs
 from tracer.engine.notes import scene_notes
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene, referenced_files

@@ -8,6 +8,7 @@ import xarray as xr
 from tracer.commands.arguments import JSON, PRODUCT_FILE
 from tracer.commands.budget_table import print_budget
 from tracer.commands.machine_output import print_json
+from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.errors import InputError
 from tracer.product.checksum import data_checksum
@@ -46,6 +47,7 @@ def command(product: PRODUCT_FILE, json: JSON = False) -> None:
         print_budget(ds)
         typer.echo("variables, with the median relative standard error of their cells that were hit")
         print_rows(_variable_rows(ds))
+    name_next("plot", product, "--what", "density", "-o", "density.png")
 
 
 def _text(value: Any) -> str:
