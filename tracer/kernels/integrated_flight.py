@@ -10,7 +10,7 @@ import math
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
@@ -159,7 +159,7 @@ def new_curve() -> np.ndarray:
     return np.zeros(CURVE_SIZE)
 
 
-@inlined
+@merged
 def _place(flight):
     return (
         flight[PLACE],
@@ -171,7 +171,7 @@ def _place(flight):
     )
 
 
-@inlined
+@merged
 def _set_place(flight, place):
     flight[PLACE] = place[0]
     flight[PLACE + 1] = place[1]
@@ -181,7 +181,7 @@ def _set_place(flight, place):
     flight[PLACE + 5] = place[5]
 
 
-@inlined
+@merged
 def _moved(place, growth):
     return (
         place[0] + growth[0][0],
@@ -193,13 +193,13 @@ def _moved(place, growth):
     )
 
 
-@inlined
+@merged
 def _slopes(flight):
     acceleration = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2])
     return acceleration, (flight[SLOPES + 3], flight[SLOPES + 4])
 
 
-@inlined
+@merged
 def _set_slopes(flight, slopes):
     flight[SLOPES] = slopes[0][0]
     flight[SLOPES + 1] = slopes[0][1]
@@ -208,7 +208,7 @@ def _set_slopes(flight, slopes):
     flight[SLOPES + 4] = slopes[1][1]
 
 
-@inlined
+@merged
 def _store(curve, flight, h, place, slopes, growth, end_slopes, quartic):
     curve[START] = flight[TIME]
     curve[LENGTH] = h
@@ -227,7 +227,7 @@ def _store(curve, flight, h, place, slopes, growth, end_slopes, quartic):
     )
 
 
-@inlined
+@merged
 def _give_up(flight, curve):
     curve[START] = flight[TIME]
     curve[LENGTH] = 0.0
@@ -235,7 +235,7 @@ def _give_up(flight, curve):
     return UNRESOLVED
 
 
-@inlined
+@merged
 def _surfaces_near(sky, zone, start, end):
     """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge)."""
     forces = sky.forces
@@ -251,7 +251,7 @@ def _surfaces_near(sky, zone, start, end):
     )
 
 
-@kernel
+@merged
 def _first_surface(sky, zone, curve, near, start, end):
     """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
     first, part, reach = 0, NEVER, 1.0
@@ -267,7 +267,7 @@ def _first_surface(sky, zone, curve, near, start, end):
     return first, part
 
 
-@kernel
+@merged
 def _may_meet(shadow, zone, surface, near):
     """Return True where `surface` bounds `zone` and is `near` (ground, outer sphere, shadow edge)."""
     if surface == GROUND:
@@ -281,7 +281,7 @@ def _may_meet(shadow, zone, surface, near):
     return near[2] and surface == zone
 
 
-@inlined
+@merged
 def _sunward_in_light(shadow, zone, start, end):
     """Return True where a step in full light stays sunward of all shadow, which most steps do."""
     terminator = shadow.radius * shadow.penumbra_sine
@@ -293,7 +293,7 @@ def _sunward_in_light(shadow, zone, start, end):
     )
 
 
-@kernel
+@merged
 def _cut(flight, curve, conditions, zone, surface, part):
     """End the step at `part` of its curve, at `surface`."""
     place = place_at(curve, part)
@@ -317,7 +317,7 @@ def _cut(flight, curve, conditions, zone, surface, part):
     return FLYING
 
 
-@inlined
+@merged
 def _longest_step(r, speed_squared, acceleration):
     """Return the time [s] in which an atom can come about as far as it is from the centre.
 

@@ -2,7 +2,7 @@
 
 import math
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import kernel, merged
 
 DEFAULT_TOLERANCE = 1e-6
 """Aimed error of a landing place in radii: half of all lie within it, and all within a thousandfold.
@@ -21,7 +21,7 @@ LEAST_CHANGE = 0.2
 GREATEST_CHANGE = 5.0
 
 
-@inlined
+@merged
 def step_error(error, tolerance, distance, speed):
     """Return the square of a step's error in units of what `tolerance` allows; accepted up to 1.
 
@@ -32,7 +32,7 @@ def step_error(error, tolerance, distance, speed):
     return (error[0] / (distance * distance) + error[1] / (speed * speed) + error[2]) / (allowed * allowed)
 
 
-@inlined
+@merged
 def step_change(error):
     """Return the factor by which the next step is longer, for a fifth-order step of squared `error`."""
     if not error < 1e30:

@@ -3,14 +3,14 @@
 import math
 
 from tracer.fate import Fate
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import merged
 from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, hazards_at, place_at
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity, sunlight_received
 from tracer.kernels.scoring import score_sample
 
 
-@kernel
+@merged
 def score_step(world, tally, curve, weight, shine, rng):
     """Count the flown part of a step by residence time: one sample at an even random time within it.
 
@@ -31,7 +31,7 @@ def score_step(world, tally, curve, weight, shine, rng):
     score_sample(tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine)
 
 
-@kernel
+@merged
 def book_step(tally, curve, weight):
     """Enter the flown part of a step into life and ledger: survival is integrated, not sampled.
 

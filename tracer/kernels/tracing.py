@@ -8,7 +8,7 @@ import numpy as np
 from tracer.fate import Fate
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
 from tracer.kernels.bounce import rebound
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
 from tracer.kernels.integrated_flight import (
     HAZARDS,
@@ -71,7 +71,7 @@ def trace_slice(world, positions, velocities, weight, resume, tally, rng, most_f
     return flights
 
 
-@kernel
+@merged
 def _release(world, positions, velocities, weight, resume, tally):
     i = resume.counters[ATOM]
     nx, ny, nz = positions[i, 0], positions[i, 1], positions[i, 2]
@@ -85,7 +85,7 @@ def _release(world, positions, velocities, weight, resume, tally):
     _launch(world, resume.state, nx, ny, nz, velocities[i, 0], velocities[i, 1], velocities[i, 2])
 
 
-@kernel
+@merged
 def _launch(world, state, nx, ny, nz, vx, vy, vz):
     """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
     radius = world.motion.radius
@@ -98,7 +98,7 @@ def _launch(world, state, nx, ny, nz, vx, vy, vz):
     state[5] = vz
 
 
-@kernel
+@merged
 def _fly_once(world, weight, resume, tally, rng):
     alive = weight * resume.state[SURVIVAL]
     tally.launches[0] += alive
@@ -116,7 +116,7 @@ def _fly_once(world, weight, resume, tally, rng):
         _end_aloft(world, resume, tally, ending, alive, x, y, z)
 
 
-@kernel
+@merged
 def _fly_arc(world, resume, tally, alive, rng):
     """Return (ending, survival, time, position, velocity) of one flight on a closed-form arc, and count it."""
     state = resume.state
@@ -131,7 +131,7 @@ def _fly_arc(world, resume, tally, alive, rng):
     return ending, kept, t, x, y, z, vx, vy, vz
 
 
-@kernel
+@merged
 def _fly_integrated(world, resume, tally, alive, rng):
     """Return (ending, survival, time, position, velocity) of one integrated flight, and count it step by step."""
     state, flight, curve = resume.state, resume.flight, resume.curve
@@ -160,7 +160,7 @@ def _fly_integrated(world, resume, tally, alive, rng):
     )
 
 
-@kernel
+@merged
 def _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng):
     r = math.sqrt(x * x + y * y + z * z)
     nx, ny, nz = x / r, y / r, z / r
@@ -177,7 +177,7 @@ def _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng):
     _launch(world, resume.state, nx, ny, nz, out[0], out[1], out[2])
 
 
-@kernel
+@merged
 def _end_aloft(world, resume, tally, ending, alive, x, y, z):
     if ending == CROSSED:
         tally.ledger[Fate.ESCAPED] += alive
@@ -191,7 +191,7 @@ def _end_aloft(world, resume, tally, ending, alive, x, y, z):
     _next_atom(resume)
 
 
-@kernel
+@merged
 def _next_atom(resume):
     resume.counters[ALOFT] = 0
     resume.counters[ATOM] += 1
