@@ -10,7 +10,7 @@ import math
 
 import numpy as np
 
-from tracer.kernels.compiling import kernel, merged
+from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
@@ -44,7 +44,7 @@ from tracer.kernels.shadow import (
     zone_at,
     zone_beyond,
 )
-from tracer.kernels.step_control import first_step, step_change, step_error
+from tracer.kernels.step_control import error_scales, first_step, step_change, step_error
 
 TIME = 0
 PLACE = 1
@@ -90,7 +90,7 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
         flight[STEP] = EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight))
 
 
-@kernel
+@inlined
 def advance(flight, curve, conditions, tolerance, time_limit):
     """Make one accepted step of `flight`, store it in `curve` and return how the flight stands.
 
@@ -104,7 +104,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    speed = math.sqrt(speed_squared + conditions.sky.forces.gm / r)
+    scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
     h = min(flight[STEP], _longest_step(r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
         h = min(h, _longest_step_in_penumbra(sky.shadow, place))
@@ -115,7 +115,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
             h = left
         flight[TRIALS] += 1.0
         growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place[:3], place[3:], slopes)
-        squared = step_error(error, tolerance, r, speed)
+        squared = step_error(error, scales)
         change = step_change(squared)
         if squared <= 1.0:
             break

@@ -32,9 +32,10 @@ def score_step(world, tally, curve, weight, shine, rng):
 
 
 @merged
-def book_step(tally, curve, weight):
-    """Enter the flown part of a step into life and ledger: survival is integrated, not sampled.
+def book_step(tally, curve, weight, before):
+    """Enter the flown part of a step into life and ledger and return the survival at its end.
 
+    Survival is integrated, not sampled; `before` is that at the step's start.
     What is lost is shared between ionisation and other losses as their hazards grew; both grow in proportion within a
     step but for the small change of their ratio. The survival time is Simpson's rule over the step, whose error goes
     with the fourth power of the step's hazard.
@@ -43,7 +44,7 @@ def book_step(tally, curve, weight):
     ionizing0, other0 = hazards_at(curve, 0.0)
     ionizing1, other1 = hazards_at(curve, flown)
     ionizing, other = hazards_at(curve, 0.5 * flown)
-    before, after = math.exp(-(ionizing0 + other0)), math.exp(-(ionizing1 + other1))
+    after = math.exp(-(ionizing1 + other1))
     middle = math.exp(-(ionizing + other))
     tally.life[0] += weight * flown * curve[LENGTH] * (before + 4.0 * middle + after) / 6.0
     lost = weight * (before - after)
@@ -52,3 +53,4 @@ def book_step(tally, curve, weight):
         share = (ionizing1 - ionizing0) / grown
         tally.ledger[Fate.IONIZED] += lost * share
         tally.ledger[Fate.OTHER_LOSS] += lost * (1.0 - share)
+    return after

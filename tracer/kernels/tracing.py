@@ -11,7 +11,6 @@ from tracer.kernels.bounce import rebound
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
 from tracer.kernels.integrated_flight import (
-    HAZARDS,
     PLACE,
     TIME,
     advance,
@@ -140,13 +139,13 @@ def _fly_integrated(world, resume, tally, alive, rng):
         flight, light.conditions, light.tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
     )
     time_left = world.motion.age_limit - state[AGE]
+    kept = 1.0
     standing = FLYING
     while standing == FLYING:
         standing = advance(flight, curve, light.conditions, light.tolerance, time_left)
         resume.counters[STEPS] += 1
         score_step(world, tally, curve, alive, resume.shine, rng)
-        book_step(tally, curve, alive)
-    kept = math.exp(-(flight[HAZARDS] + flight[HAZARDS + 1]))
+        kept = book_step(tally, curve, alive, kept)
     return (
         standing,
         kept,

@@ -66,5 +66,7 @@ def knots(tables: Floats) -> list[tuple[float, float, Floats]]:
     lines = []
     for heading in tables[1 : 1 + 4 * int(tables[0])].reshape(-1, 4):
         first, per_step, last, entry = heading
-        lines.append((first, 1.0 / per_step, tables[int(entry) :: 2][: int(last) + 1].copy()))
+        number = np.arange(int(last) + 1)
+        pieces = tables[int(entry) :][: 2 * len(number)].reshape(-1, 2)
+        lines.append((first, 1.0 / per_step, pieces[:, 0] + number * pieces[:, 1]))
     return lines
