@@ -6,7 +6,7 @@ coefficients of each of x, y, z, vx, vy, vz and the ionising and the other hazar
 (1993), II.6, write them.
 """
 
-from tracer.kernels.compiling import kernel, merged
+from tracer.kernels.compiling import inlined, merged
 
 START = 0
 LENGTH = 1
@@ -37,7 +37,7 @@ def component_at(curve, component, part):
     return curve[k] + part * (curve[k + 1] + rest * bend)
 
 
-@kernel
+@inlined
 def place_at(curve, part):
     """Return (x, y, z, vx, vy, vz) at `part` (0 to 1) of the step."""
     return (
@@ -50,7 +50,7 @@ def place_at(curve, part):
     )
 
 
-@kernel
+@inlined
 def hazards_at(curve, part):
     """Return (ionising, other) hazard since launch at `part` (0 to 1) of the step."""
     return component_at(curve, 6, part), component_at(curve, 7, part)

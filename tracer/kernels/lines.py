@@ -8,7 +8,7 @@ step 0 and its rise for each step.
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 
 HEADING = 1
 HEADING_SIZE = 4
@@ -40,7 +40,7 @@ def sum_of_lines(tables, velocity):
     return total
 
 
-@kernel
+@inlined
 def beyond_tables(tables, velocity):
     """Return True where `velocity` [m s-1] lies beyond the end of any line's table that has more than one knot."""
     for line in range(int(tables[0])):

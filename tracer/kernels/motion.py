@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 from tracer.kernels.lines import sum_of_lines
 from tracer.kernels.shadow import Shadow, lit_fraction
 
@@ -60,7 +60,7 @@ class Conditions(NamedTuple):
     push_tables: np.ndarray
 
 
-@kernel
+@inlined
 def radial_velocity(forces, x, y, z, vx, vy, vz):
     """Return the atom's heliocentric radial velocity [m s-1], positive away from the Sun.
 
@@ -71,7 +71,7 @@ def radial_velocity(forces, x, y, z, vx, vy, vz):
     return (y * vy + z * vz - sx * (vx - forces.radial_velocity)) / s
 
 
-@kernel
+@inlined
 def sunlight_received(sky, zone, x, y, z):
     """Return the light at (x, y, z) [m] relative to full light at `light_distance`."""
     forces = sky.forces

@@ -54,18 +54,40 @@ def new_resume(lines: int) -> Resume:
     )
 
 
-@kernel
 def trace_slice(world, positions, velocities, weight, resume, tally, rng, most_flights):
     """Trace atoms from where `resume` stands for at most `most_flights` launches and return their number.
 
     `positions` (n, 3) are unit vectors of the places of release, `velocities` (n, 3) [m s-1] relative to the ground,
     `weight` [s-1] is each atom's share of the release rate. Done when counter ATOM equals n.
     """
+    trace = trace_integrated if world.integrated else trace_arcs
+    return trace(world, positions, velocities, weight, resume, tally, rng, most_flights)
+
+
+@kernel
+def trace_integrated(world, positions, velocities, weight, resume, tally, rng, most_flights):
+    """Do what `trace_slice` says with integrated flights; apart from arcs, so that a run compiles one of the two."""
     flights = 0
     while flights < most_flights and resume.counters[ATOM] < positions.shape[0]:
         if resume.counters[ALOFT] == 0:
             _release(world, positions, velocities, weight, resume, tally)
-        _fly_once(world, weight, resume, tally, rng)
+        alive = _take_off(weight, resume, tally)
+        end = _fly_integrated(world, resume, tally, alive, rng)
+        _come_down(world, resume, tally, alive, end, rng)
+        flights += 1
+    return flights
+
+
+@kernel
+def trace_arcs(world, positions, velocities, weight, resume, tally, rng, most_flights):
+    """Do what `trace_slice` says with flights on closed-form arcs."""
+    flights = 0
+    while flights < most_flights and resume.counters[ATOM] < positions.shape[0]:
+        if resume.counters[ALOFT] == 0:
+            _release(world, positions, velocities, weight, resume, tally)
+        alive = _take_off(weight, resume, tally)
+        end = _fly_arc(world, resume, tally, alive, rng)
+        _come_down(world, resume, tally, alive, end, rng)
         flights += 1
     return flights
 
@@ -98,13 +120,15 @@ def _launch(world, state, nx, ny, nz, vx, vy, vz):
 
 
 @merged
-def _fly_once(world, weight, resume, tally, rng):
+def _take_off(weight, resume, tally):
+    """Count a launch and return the weight that flies."""
     alive = weight * resume.state[SURVIVAL]
     tally.launches[0] += alive
-    if world.integrated:
-        end = _fly_integrated(world, resume, tally, alive, rng)
-    else:
-        end = _fly_arc(world, resume, tally, alive, rng)
+    return alive
+
+
+@merged
+def _come_down(world, resume, tally, alive, end, rng):
     ending, kept, t, x, y, z, vx, vy, vz = end
     alive *= kept
     resume.state[SURVIVAL] *= kept
