@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import inlined, kernel
 
 
 class Cells(NamedTuple):
@@ -23,7 +23,7 @@ class Cells(NamedTuple):
     local_time_cells: int
 
 
-@kernel
+@inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
     last = cells.radii.shape[0] - 2
@@ -41,7 +41,7 @@ def altitude_cell(cells, r):
     return guess
 
 
-@kernel
+@inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
     angle = math.asin(min(1.0, max(-1.0, sine)))
@@ -49,7 +49,7 @@ def latitude_cell(cells, sine):
     return min(cells.latitude_cells - 1, max(0, cell))
 
 
-@kernel
+@inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
     turn = 0.5 + math.atan2(y, x) / (2.0 * math.pi)
