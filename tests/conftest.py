@@ -64,6 +64,26 @@ batches = 6
 replicates = 3
 """
 
+SUN = """
+[sun]
+distance = "0.35 au"
+radial_velocity = "8 km/s"
+solar_activity = 0.5
+"""
+
+LIGHT = """scaling = "inverse-square"
+where = "sunlight"
+
+[[gas.line]]
+name = "invented"
+wavelength = "500 nm"
+g = "0.2 s-1"
+"""
+
+SMALL_LIGHT_RUN = SMALL_RUN.replace("\n[gas]", SUN + "\n[gas]").replace(
+    'rate = "1e-5 s-1"\n', 'rate = "1e-5 s-1"\n' + LIGHT
+)
+
 
 @pytest.fixture(scope="session")
 def small_run_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
@@ -77,6 +97,20 @@ def small_run_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def small_product(small_run_file: Path) -> xr.Dataset:
     """Return the product of `small_run_file`; not to be changed."""
     return run(load_run(small_run_file), workers=1)
+
+
+@pytest.fixture(scope="session")
+def small_light_run_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Return `small_run_file` put into sunlight: pushed, shining, ionised, with a shadow; not to be changed."""
+    path = tmp_path_factory.mktemp("small_light") / "harrow-small-light.toml"
+    path.write_text(SMALL_LIGHT_RUN, encoding="utf-8")
+    return path
+
+
+@pytest.fixture(scope="session")
+def small_light_product(small_light_run_file: Path) -> xr.Dataset:
+    """Return the product of `small_light_run_file`; not to be changed."""
+    return run(load_run(small_light_run_file), workers=1)
 
 
 @pytest.fixture(scope="session")

@@ -5,10 +5,14 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import RUN_FILE, SETTINGS
+from tracer.commands.arguments import OVERWRITE, RUN_FILE, SETTINGS
 from tracer.commands.budget_table import print_budget
+from tracer.commands.next_command import name_next
 from tracer.commands.progress import shown_progress
+from tracer.commands.text_output import refuse_inputs
+from tracer.engine.notes import scene_notes
 from tracer.engine.runspec.load import load_run
+from tracer.engine.scene import build_scene, referenced_files
 from tracer.engine.tracing import run
 from tracer.errors import Interrupted
 from tracer.product.lock import output_lock
@@ -33,13 +37,17 @@ def command(
             min=1, help="Threads to trace on; by default all processors. The product does not depend on it."
         ),
     ] = None,
-    overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an existing product.")] = False,
+    overwrite: OVERWRITE = False,
     settings: SETTINGS = None,
 ) -> None:
     """Trace a run file's particles and write the product (netCDF)."""
     spec = load_run(run_file, settings or ())
     path = Path(run_file).stem + ".nc" if output is None else output
+    scene = build_scene(spec)
+    refuse_inputs(path, [run_file, *referenced_files(spec)])
     check_output(path, overwrite)
+    for note in scene_notes(spec, scene):
+        typer.echo(f"Note: {note}.", err=True)
     with output_lock(path):
         try:
             with shown_progress() as watch:
@@ -55,4 +63,4 @@ def command(
         f"{attributes['flights']:,} flights in {attributes['wall_seconds']:.1f} s on {attributes['workers']} workers"
     )
     typer.echo(f"product: {path}")
-    typer.echo(f"Next: tracer summary {path}", err=True)
+    name_next("summary", path)

@@ -11,7 +11,7 @@ from tracer.commands.machine_output import print_json
 from tracer.commands.tables import print_rows
 from tracer.errors import InputError
 from tracer.product.checksum import data_checksum
-from tracer.product.reading import open_product
+from tracer.product.reading import load_all, open_product
 
 SHOWN = (
     "title",
@@ -34,8 +34,8 @@ SHOWN = (
 def command(product: PRODUCT_FILE, json: JSON = False) -> None:
     """Say what is in a product: scene, particle budget, errors, checksum (which is verified)."""
     with open_product(product) as ds:
-        ds.load()
-        if data_checksum(ds) != ds.attrs["data_checksum"]:
+        load_all(ds, product)
+        if data_checksum(ds) != ds.attrs.get("data_checksum"):
             raise InputError(
                 f"{product}: its data do not match its data_checksum; the file was changed or damaged"
             )

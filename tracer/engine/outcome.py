@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from tracer.engine.folding import Folder
 from tracer.engine.hashing import run_hash, scene_hash
+from tracer.engine.references import scene_references
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.writing import run_file_text
 from tracer.engine.scene import Release, Scene, referenced_files
@@ -126,7 +127,9 @@ def _attributes(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> di
     ensemble = spec.ensemble
     scene_digest = scene_hash(scene, referenced_files(spec))
     return {
-        **global_attributes(spec.title, f"traced from {Path(spec.file).name}"),
+        **global_attributes(
+            spec.title, f"traced from {Path(spec.file).name}", tuple(scene_references(scene))
+        ),
         "run_file": run_file_text(spec),
         "scene_hash": scene_digest,
         "run_hash": run_hash(scene_digest, ensemble.seed, ensemble.particles_per_batch),

@@ -29,6 +29,12 @@ HOME_COLUMN = 3
 STEPS = 4
 COUNTERS = 5
 
+GRAZING = 0.02
+"""Sine of the angle above the horizon below which a launch is integrated with more care."""
+
+LEAST_CARE = 1e-5
+"""Smallest part of the tolerance: below it rounding decides anyway."""
+
 SURVIVAL = 6
 AGE = 7
 STATE_SIZE = 8
@@ -132,17 +138,34 @@ def _fly_arc(world, resume, tally, alive, rng):
 
 
 @kernel
+def _care(state):
+    """Return the part of the tolerance that a launch may use: less than all where it leaves along the ground.
+
+    A launch at a small angle above the horizon, faster than a circular orbit, comes back to a pericentre below the
+    ground by about the square of that angle: an error as large would carry it over the ground, round and round.
+    """
+    r = math.sqrt(state[0] * state[0] + state[1] * state[1] + state[2] * state[2])
+    speed = math.sqrt(state[3] * state[3] + state[4] * state[4] + state[5] * state[5])
+    climb = state[0] * state[3] + state[1] * state[4] + state[2] * state[5]
+    if climb >= GRAZING * r * speed:
+        return 1.0
+    angle = climb / (GRAZING * r * speed)
+    return max(angle * angle, LEAST_CARE)
+
+
+@kernel
 def _fly_integrated(world, resume, tally, alive, rng):
     """Return (ending, survival, time, position, velocity) of one integrated flight, and count it step by step."""
     state, flight, curve = resume.state, resume.flight, resume.curve
     light = world.light
+    tolerance = light.tolerance * _care(state)
     start_flight(
-        flight, light.conditions, light.tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
+        flight, light.conditions, tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
     )
     time_left = world.motion.age_limit - state[AGE]
     standing = FLYING
     while standing == FLYING:
-        standing = advance(flight, curve, light.conditions, light.tolerance, time_left)
+        standing = advance(flight, curve, light.conditions, tolerance, time_left)
         resume.counters[STEPS] += 1
         score_step(world, tally, curve, alive, resume.shine, rng)
         book_step(tally, curve, alive)

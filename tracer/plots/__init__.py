@@ -1,4 +1,5 @@
-"""Figures of a product, one file a figure: a function of a Dataset that returns a matplotlib Figure.
+"""Figures, one file a figure: functions that return a matplotlib Figure, most of them of a product's Dataset.
 
-This floor knows how the product's fields are read by people; it must not know how they were traced.
+This floor knows matplotlib, and is the only one that does; it must not know run files, the command line, or how a
+product was traced.
 """

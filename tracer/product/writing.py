@@ -106,6 +106,10 @@ def check_output(path: StrPath, overwrite: bool = False) -> None:
         exists is not a plain file.
     """
     target = Path(os.path.realpath(path))
+    if not os.fspath(path):
+        raise InputError("the output has no name")
+    if not os.fsencode(target).decode("utf-8", "ignore").encode() == os.fsencode(target):
+        raise InputError(f"{os.fspath(path)!r}: the output's name is not UTF-8, which netCDF needs")
     if not target.parent.is_dir():
         raise InputError(f"{os.fspath(path)}: there is no folder {target.parent}")
     if target.exists() and not target.is_file():

@@ -9,7 +9,13 @@ import pytest
 import tracer
 
 DEMOS = sorted((Path(__file__).parents[3] / "runs").glob("*.toml"))
-FEWER = ("ensemble.particles_per_batch=10", "ensemble.batches=3")
+FEWER = (
+    "ensemble.particles_per_batch=10",
+    "ensemble.batches=3",
+    "grid.latitude_cells=6",
+    "grid.local_time_cells=8",
+    "image[1].pixels=[8, 6]",
+)
 
 
 @pytest.fixture(scope="module")
