@@ -1,5 +1,5 @@
-"""Figures, one file a figure: functions that return a matplotlib Figure, most of them of a product's Dataset.
+"""Figures, one file a figure: functions of a Dataset or of plain records that return a matplotlib Figure.
 
-This floor knows matplotlib, and is the only one that does; it must not know run files, the command line, or how a
-product was traced.
+This floor knows matplotlib, and is the only one that does, and how quantities are read by people; it must not know run
+files, how a product was traced, or the command line.
 """
