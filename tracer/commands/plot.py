@@ -6,17 +6,20 @@ from typing import Annotated
 import typer
 
 from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.figure_file import ENDINGS, check_figure_file
+from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
 from tracer.plots.density import density
 from tracer.plots.image import image
 from tracer.plots.ledger import ledger
-from tracer.plots.saving import DOTS_PER_INCH, ENDINGS, ending, figure_bytes
+from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
 from tracer.plots.style import Width
 from tracer.plots.vertical_column import vertical_column
+from tracer.product.layout import REPLICATES
 from tracer.product.lock import output_lock
-from tracer.product.reading import open_product
-from tracer.product.writing import check_output, save_bytes
+from tracer.product.reading import load_all, open_product
+from tracer.product.writing import save_bytes
 
 
 class What(StrEnum):
@@ -89,13 +92,15 @@ def command(
     overwrite: OVERWRITE = False,
 ) -> None:
     """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
-    suffix = ending(output)
     for option, value in (("--image", image_name), ("--line", line)):
         if value is not None and what is not What.IMAGE:
             raise InputError(f"{option}: goes with --what image alone, not with --what {what}")
-    check_output(output, overwrite)
+    refuse_inputs(output, [product])
+    ending = check_figure_file("--output", output, overwrite)
     chosen: Width = "column" if width is WidthName.COLUMN else "full"
-    with output_lock(output), open_product(product) as ds:
+    with output_lock(output), open_product(product) as stored:
+        ds = stored.drop_vars([name for name in stored.data_vars if _is_spared(str(name))])
+        load_all(ds, product)
         try:
             if what is What.IMAGE:
                 figure = image(ds, image_name, line, release, chosen)
@@ -103,9 +108,15 @@ def command(
                 figure = FIGURES[what](ds, release, chosen)
         except InputError as error:
             raise InputError(f"{product}: {error}") from None
-        save_bytes(figure_bytes(figure, suffix, dpi), output, overwrite)
+        save_bytes(figure_bytes(figure, ending, dpi), output, overwrite)
     typer.echo(output)
     # A budget is the last thing to look at; before it, it is the likely next.
-    following = "summary" if what is What.LEDGER else "plot"
-    arguments = [] if what is What.LEDGER else ["--what", "ledger", "-o", "ledger.png"]
-    name_next(following, product, *arguments)
+    if what is What.LEDGER:
+        name_next("summary", product)
+    else:
+        name_next("plot", product, "--what", What.LEDGER, "-o", "ledger.png")
+
+
+def _is_spared(name: str) -> bool:
+    """Return whether a variable needs not be read: replicates, most of a product, serve the planes of density alone."""
+    return name.endswith(REPLICATES) and name != "number_density" + REPLICATES

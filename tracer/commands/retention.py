@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from math import sqrt
+from pathlib import Path
 from typing import Annotated, Any
 
 import typer
@@ -11,6 +12,7 @@ from tracer.catalogue.records import Gas
 from tracer.commands.arguments import JSON
 from tracer.commands.choices import unknown_name
 from tracer.commands.durations import AGE_IN_GYR
+from tracer.commands.figure_file import check_figure_file
 from tracer.commands.machine_output import print_json
 from tracer.commands.quantity_options import Measure, si_option
 from tracer.commands.retention_bodies import (
@@ -28,8 +30,8 @@ from tracer.errors import InputError
 from tracer.physics.retention import SIX_TIMES, kept_jeans_parameter
 from tracer.physics.thermal import escape_speed, most_probable_speed, rms_speed
 from tracer.plots.retention_field import BodyPoint, GasLimit, retention_field
-from tracer.plots.saving import ending, figure_bytes
-from tracer.product.writing import check_output, save_bytes
+from tracer.plots.saving import figure_bytes
+from tracer.product.writing import save_bytes
 
 DEFAULT_GASES = ("H", "H2", "He", "O", "H2O", "Ne", "Na", "Ar", "K", "CO2")
 DRAWN_GASES = ("H", "H2", "He", "O", "Na", "Ar")
@@ -126,8 +128,7 @@ def command(
     )
     body_names, gas_names = _sorted_words(names or [], gas or [])
     if plot is not None:
-        ending(plot)
-        check_output(plot, overwrite)
+        check_figure_file("--plot", plot, overwrite)
     check_overrides(body_names, given)
     asked = [subject(name, given) for name in body_names]
     chosen = [_gas(name) for name in gas_names or DEFAULT_GASES]
@@ -135,7 +136,7 @@ def command(
     _print(reports, wind, json)
     if plot is not None:
         drawn = chosen if gas_names else [_gas(name) for name in DRAWN_GASES]
-        save_bytes(figure_bytes(_figure(asked, drawn), ending(plot)), plot, overwrite)
+        save_bytes(figure_bytes(_figure(asked, drawn), Path(plot).suffix.lower()), plot, overwrite)
         typer.echo(f"figure: {plot}", err=json)
     if not json:
         typer.echo("Next: tracer new", err=True)

@@ -2,12 +2,10 @@
 
 import io
 import warnings
-from pathlib import Path
 from typing import Any
 
 from matplotlib.figure import Figure
 
-from tracer.errors import InputError
 from tracer.plots.style import styled
 
 DOTS_PER_INCH = 300
@@ -19,21 +17,6 @@ ENDINGS: dict[str, dict[str, Any]] = {
     ".svg": {"Date": None, "Creator": None},
 }
 """Endings of files that a figure can be written to, with what is said in the file about its making."""
-
-
-def ending(path: str) -> str:
-    """Return the ending of `path`, in lower case.
-
-    Raises
-    ------
-    InputError
-        Where no figure can be written to such a file.
-    """
-    suffix = Path(path).suffix.lower()
-    if suffix not in ENDINGS:
-        reason = f"a figure cannot end in {suffix}" if suffix else "has no ending"
-        raise InputError(f"{path}: {reason}; allowed: {', '.join(ENDINGS)}")
-    return suffix
 
 
 def figure_bytes(figure: Figure, suffix: str, dots_per_inch: int = DOTS_PER_INCH) -> bytes:

@@ -53,9 +53,12 @@ def test_existing_file_is_kept(folder, capsys):
     [
         (
             ["-o", "a.jpg", "--what", "ledger"],
-            "a.jpg: a figure cannot end in .jpg; allowed: .png, .pdf, .svg",
+            '--output: "a.jpg" has none of the endings of a figure: .png, .pdf, .svg',
         ),
-        (["-o", "a", "--what", "ledger"], "a: has no ending; allowed: .png, .pdf, .svg"),
+        (
+            ["-o", "a", "--what", "ledger"],
+            '--output: "a" has none of the endings of a figure: .png, .pdf, .svg',
+        ),
         (
             ["-o", "a.png", "--what", "density", "--line", "na_d2"],
             "--line: goes with --what image alone, not with --what density",
@@ -86,6 +89,14 @@ def test_line_of_a_gas_without_lines_is_refused(folder, capsys):
     assert ending_of(*words) == 2
     reason = 'there is no line "na_d2": the gas of this product has no lines with g'
     assert capsys.readouterr().err == f"tracer: small.nc: {reason}\n"
+
+
+def test_damaged_product_is_one_message(folder, capsys):
+    content = bytearray((folder / "small.nc").read_bytes())
+    content[len(content) // 3 : len(content) // 3 * 2] = bytes(len(content) // 3)
+    (folder / "small.nc").write_bytes(content)
+    assert ending_of("small.nc", "--what", "density", "-o", "a.png") == 2
+    assert capsys.readouterr().err.startswith("tracer: small.nc: is damaged")
 
 
 def test_unknown_figure_ends_with_2(folder, capsys):

@@ -124,7 +124,7 @@ def test_constants_given_for_a_known_body_are_said_to_replace_the_catalogues(cap
         ),
         (
             ("Moon", "--plot", "field.jpg"),
-            "field.jpg: a figure cannot end in .jpg; allowed: .png, .pdf, .svg",
+            '--plot: "field.jpg" has none of the endings of a figure: .png, .pdf, .svg',
         ),
     ],
 )
