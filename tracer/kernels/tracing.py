@@ -18,8 +18,9 @@ from tracer.kernels.integrated_flight import (
     new_flight,
     start_flight,
 )
-from tracer.kernels.scoring import ground_cell, mean_survival_time
+from tracer.kernels.scoring import Tally, ground_cell, mean_survival_time
 from tracer.kernels.step_scoring import book_step, score_step
+from tracer.kernels.world import World
 
 ATOM = 0
 ALOFT = 1
@@ -54,7 +55,16 @@ def new_resume(lines: int) -> Resume:
     )
 
 
-def trace_slice(world, positions, velocities, weight, resume, tally, rng, most_flights):
+def trace_slice(
+    world: World,
+    positions: np.ndarray,
+    velocities: np.ndarray,
+    weight: float,
+    resume: Resume,
+    tally: Tally,
+    rng: np.random.Generator,
+    most_flights: int,
+) -> int:
     """Trace atoms from where `resume` stands for at most `most_flights` launches and return their number.
 
     `positions` (n, 3) are unit vectors of the places of release, `velocities` (n, 3) [m s-1] relative to the ground,
@@ -168,7 +178,7 @@ def _fly_integrated(world, resume, tally, alive, rng):
     while standing == FLYING:
         standing = advance(flight, curve, light.conditions, light.tolerance, time_left)
         resume.counters[STEPS] += 1
-        score_step(world, tally, curve, alive, resume.shine, rng)
+        score_step(world, tally, curve, alive, kept, resume.shine, rng)
         kept = book_step(tally, curve, alive, kept)
     return (
         standing,

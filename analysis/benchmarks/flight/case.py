@@ -19,7 +19,7 @@ HERE = Path(__file__).parent
 
 
 class Case(NamedTuple):
-    """`work` in sunlight and `gravity` without; `launches` as the package takes them, `states` (n, 6) as all others do."""
+    """`work` in sunlight, `gravity` without; `launches` as the package takes them, `states` (n, 6) as all others do."""
 
     work: Work
     gravity: Work
