@@ -4,6 +4,7 @@ import math
 
 from tracer.fate import Fate
 from tracer.kernels.compiling import merged
+from tracer.kernels.decay import decay
 from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, hazards_at, place_at
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity, sunlight_received
@@ -11,15 +12,18 @@ from tracer.kernels.scoring import mean_survival_time, score_sample
 
 
 @merged
-def score_step(world, tally, curve, weight, shine, rng):
+def score_step(world, tally, curve, weight, before, shine, rng):
     """Count the flown part of a step by residence time: one sample at an even random time within it.
 
-    The sample stands for weight times survival times the step's duration; `shine` is room for each line's photons.
+    The sample stands for weight times survival times the step's duration; `before` is the survival at the step's start,
+    `shine` is room for each line's photons.
     """
     part = rng.random() * curve[FLOWN]
     x, y, z, vx, vy, vz = place_at(curve, part)
-    ionizing_hazard, other_hazard = hazards_at(curve, part)
-    content = weight * math.exp(-(ionizing_hazard + other_hazard)) * curve[FLOWN] * curve[LENGTH]
+    ionizing0, other0 = hazards_at(curve, 0.0)
+    ionizing, other = hazards_at(curve, part)
+    survival = before * decay((ionizing - ionizing0) + (other - other0))
+    content = weight * survival * curve[FLOWN] * curve[LENGTH]
     sky, tables = world.light.conditions.sky, world.light.line_tables
     received = sunlight_received(sky, int(curve[CURVE_ZONE]), x, y, z)
     velocity = radial_velocity(sky.forces, x, y, z, vx, vy, vz)
@@ -44,9 +48,10 @@ def book_step(tally, curve, weight, before):
     ionizing0, other0 = hazards_at(curve, 0.0)
     ionizing1, other1 = hazards_at(curve, flown)
     ionizing, other = hazards_at(curve, 0.5 * flown)
-    after = math.exp(-(ionizing1 + other1))
     grown = (ionizing1 - ionizing0) + (other1 - other0)
-    bend = math.exp(-(ionizing + other)) - before * math.exp(-0.5 * grown)
+    after = before * decay(grown)
+    middle = before * decay((ionizing - ionizing0) + (other - other0))
+    bend = middle - before * decay(0.5 * grown)
     kept = before * mean_survival_time(grown, 1.0) + bend / 1.5
     tally.life[0] += weight * flown * curve[LENGTH] * kept
     lost = weight * (before - after)

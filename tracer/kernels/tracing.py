@@ -201,7 +201,7 @@ def _fly_integrated(world, resume, tally, alive, rng):
     while standing == FLYING:
         standing = advance(flight, curve, light.conditions, tolerance, time_left)
         resume.counters[STEPS] += 1
-        score_step(world, tally, curve, alive, resume.shine, rng)
+        score_step(world, tally, curve, alive, kept, resume.shine, rng)
         kept = book_step(tally, curve, alive, kept)
     return (
         standing,
