@@ -38,7 +38,6 @@ def command(
 
 
 def _print_scene(spec: RunSpec, figures: Preview) -> None:
-    ensemble = spec.ensemble
     rotation = figures.rotation_period
     typer.echo(f"{spec.title}\n{spec.gas.species} over {spec.body.name}")
     print_rows(
@@ -56,7 +55,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             ("outer radius", _outer_radius(spec, figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
-            ("particles", f"{figures.particles:,} in {ensemble.batches} batches, seed {ensemble.seed}"),
+            ("particles", _particles(spec, figures)),
             ("memory", f"at most {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
@@ -79,6 +78,12 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
         ("lines with g", ", ".join(sun.lines) or "none"),
         ("lines without g", ", ".join(sun.lines_without_g) or "none"),
     ]
+
+
+def _particles(spec: RunSpec, figures: Preview) -> str:
+    ensemble = spec.ensemble
+    limit = "" if ensemble.stop is None else "at most "
+    return f"{limit}{figures.particles:,} in {limit}{ensemble.most_batches} batches, seed {ensemble.seed}"
 
 
 def _outer_radius(spec: RunSpec, figures: Preview) -> str:

@@ -104,5 +104,8 @@ def next_budget(budget: int, spent: float) -> int:
 
 
 def compile_kernels(work: Work) -> None:
-    """Compile or load what `trace_batch` calls, on no atom at all, so that workers start together."""
-    trace_batch(work._replace(particles=1), Task(0, 0), lambda _atoms, _flights: None, lambda: False)
+    """Compile or load what `trace_batch` calls, with no flight at all, so that workers start together."""
+    rng = np.random.default_rng(0)
+    launches = draw_launches(work.scene, work.scene.releases[0], 1, rng)
+    tally = tally_views(work.layout, np.zeros(work.layout.size))
+    trace_slice(work.world, *launches, 0.0, new_resume(len(work.scene.lines)), tally, rng, 0)

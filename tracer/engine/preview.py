@@ -9,8 +9,9 @@ from tracer.catalogue.load import bodies
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
 from tracer.engine.body_constants import overridden_constants
-from tracer.engine.executors.threads import WINDOW
 from tracer.engine.launching import draw_launches
+from tracer.engine.memory import sizes
+from tracer.engine.planning import make_plan
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
@@ -33,8 +34,6 @@ from tracer.units import si
 
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
-FLOAT_BYTES = 8
-REPLICATE_BYTES = 4
 
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
@@ -114,7 +113,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
     """Return the figures of `scene`, for a run on `workers` threads."""
     body = scene.body
     releases = tuple(_preview_release(scene, release) for release in scene.releases)
-    memory, product_size = _sizes(spec, scene, workers)
+    memory, product_size = sizes(make_plan(spec, scene), workers)
     return Preview(
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
@@ -128,7 +127,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         mass=scene.mass,
         loss_rate=scene.constant_hazard,
         releases=releases,
-        particles=spec.ensemble.particles_per_batch * spec.ensemble.batches * len(releases),
+        particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
         memory=memory,
         product_size=product_size,
         notes=(*_override_notes(spec), *_outflow_notes(releases), *_sun_notes(spec, scene)),
@@ -221,19 +220,6 @@ def _law_temperature(release: Release, ground: float | None) -> float | None:
     if not isinstance(release.speed, MaxwellFlux | MaxwellGas):
         return None
     return ground if release.speed.temperature is None else release.speed.temperature
-
-
-def _sizes(spec: RunSpec, scene: Scene, workers: int) -> tuple[int, int]:
-    """Return (memory, product size) [bytes]: buffers under way and folded, and the product uncompressed."""
-    layout = make_work(scene, 0, 1).layout
-    releases = len(scene.releases)
-    replicates = min(spec.ensemble.replicates, spec.ensemble.batches)
-    kept = replicates * layout.replicated_size
-    product = releases * (2 * layout.size * FLOAT_BYTES + kept * REPLICATE_BYTES)
-    folded = releases * (2 * layout.size + kept) * FLOAT_BYTES
-    under_way = (WINDOW * workers + 1) * layout.size * FLOAT_BYTES
-    # While the product is put together, the replicates exist in double precision once more.
-    return folded + under_way + product + releases * kept * FLOAT_BYTES, product
 
 
 def _override_notes(spec: RunSpec) -> tuple[str, ...]:

@@ -2,10 +2,9 @@
 
 import errno
 import os
-import secrets
 import shutil
 from collections.abc import Iterator
-from contextlib import contextmanager, suppress
+from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
 
@@ -17,11 +16,10 @@ from tracer.errors import InputError, TracerError
 from tracer.product.assembling import without_label_indexes
 from tracer.product.checksum import data_checksum
 from tracer.product.layout import BOUNDS, why_no_product
+from tracer.product.replacing import put_in_place, sync, written_beside
 
 COMPLETE = "complete"
 COMPRESSION = {"zlib": True, "complevel": 1, "shuffle": True}
-NAME_START = 40
-"""Characters of the output's name kept in its temporary name, which must stay below 255 bytes."""
 MEGABYTE = 1e6
 DISK_FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
 
@@ -58,13 +56,12 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
     stored.attrs["data_checksum"] = data_checksum(stored)
     with _written_beside(target, path, stored.nbytes) as beside:
         stored.to_netcdf(beside, format="NETCDF4", engine="netcdf4", encoding=_encoding(stored))
-        _sync(beside)
+        sync(beside)
         with netCDF4.Dataset(beside, "a") as file:
             file.setncattr(COMPLETE, np.int32(1))
-        _sync(beside)
+        sync(beside)
         check_output(path, overwrite)
-        os.replace(beside, target)
-        _sync_folder(target.parent)
+        put_in_place(beside, target)
 
 
 def check_output(path: StrPath, overwrite: bool = False) -> None:
@@ -89,15 +86,12 @@ def check_output(path: StrPath, overwrite: bool = False) -> None:
 
 @contextmanager
 def _written_beside(target: Path, path: StrPath, size: int) -> Iterator[Path]:
-    beside = target.with_name(f".{target.name[:NAME_START]}.{secrets.token_hex(6)}.part")
     try:
-        yield beside
+        with written_beside(target) as beside:
+            yield beside
     except (OSError, RuntimeError) as error:
         reason = _why_unwritten(error, target.parent, size)
         raise TracerError(f"{os.fspath(path)}: cannot be written: {reason}") from error
-    finally:
-        with suppress(FileNotFoundError):
-            beside.unlink()
 
 
 def _why_unwritten(error: OSError | RuntimeError, folder: Path, size: int) -> str:
@@ -117,18 +111,3 @@ def _encoding(ds: xr.Dataset) -> dict[str, dict[str, Any]]:
             fill = None if name in bare else variable.dtype.type(np.nan)
             encoding[str(name)] = {"_FillValue": fill, **(COMPRESSION if variable.ndim else {})}
     return encoding
-
-
-def _sync(path: Path) -> None:
-    with open(path, "r+b") as file:
-        os.fsync(file.fileno())
-
-
-def _sync_folder(folder: Path) -> None:
-    # Not every system can open or sync a folder; the rename stands all the same.
-    with suppress(OSError):
-        descriptor = os.open(folder, os.O_RDONLY)
-        try:
-            os.fsync(descriptor)
-        finally:
-            os.close(descriptor)

@@ -89,7 +89,7 @@ def test_set_changes_the_run_and_is_recorded(folder):
 
 
 def test_interrupted_run_ends_with_3_and_leaves_nothing(folder, monkeypatch, capsys):
-    def interrupted(*_arguments):
+    def interrupted(*_arguments, **_options):
         raise KeyboardInterrupt
 
     monkeypatch.setattr("tracer.commands.run.run", interrupted)
