@@ -104,6 +104,7 @@ def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
         check_output(job.path, job.overwrite)
     with output_lock(job.path):
         checkpoints = Checkpoints(job.path, job.resume, note)
+        checkpoints.remove_leftovers()
         if job.resume and Path(job.path).exists() and _is_done(job, checkpoints):
             return
         _check_checkpoints(job, checkpoints)

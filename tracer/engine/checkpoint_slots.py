@@ -21,6 +21,7 @@ from tracer.engine.checkpoint import (
 from tracer.engine.folding import Folder
 from tracer.engine.progress import Note, no_note
 from tracer.errors import InputError
+from tracer.product.replacing import remove_leftovers
 
 LETTERS = ("a", "b")
 SHORTEST_INTERVAL = 5.0
@@ -93,6 +94,11 @@ class Checkpoints:
         """Remove both files, the product being written or a fresh start being asked for."""
         for path in self.existing():
             path.unlink(missing_ok=True)
+
+    def remove_leftovers(self) -> None:
+        """Remove what a killed run has half written, of the checkpoints and of the product."""
+        for path in [*self.slots(), *([] if self.output is None else [self.output])]:
+            remove_leftovers(path)
 
     def begin(self, identity: Identity, folder: Folder) -> None:
         """Take over the run, and fill `folder` from the newest whole checkpoint if it is to be resumed.
