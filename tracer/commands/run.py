@@ -180,7 +180,9 @@ def _trace_and_save(
 def _how_to_go_on(job: Job, checkpoints: Checkpoints) -> str:
     if not checkpoints.kept:
         return "No batch is kept. Run the same command to start again"
-    return f"{checkpoints.kept_batches} batches are kept; go on with: {job.again}"
+    batches = checkpoints.kept_batches
+    kept = f"{batches} batches are kept" if batches else "A part of the first batch is kept"
+    return f"{kept}; go on with: {job.again}"
 
 
 def _say_how_it_stopped(product: xr.Dataset) -> None:

@@ -26,6 +26,7 @@ from tracer.tally.budget import CLOSURE, budget_gap
 from tracer.tally.buffer import tally_views
 from tracer.tally.field import FieldStatistics
 from tracer.tally.normalizing import ProductField, product_fields
+from tracer.tally.statistics import replicate_counts
 
 Numbers = NDArray[np.float64]
 
@@ -145,6 +146,7 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
         "seed": ensemble.seed,
         "batches": batches.batches,
         "batch_ranges": ranges_text([(ensemble.seed, *batches)]),
+        **_replicate_attributes(folder),
         "particles_per_batch": ensemble.particles_per_batch,
         "flights": folder.flights,
         "integration_steps": folder.steps,
@@ -156,6 +158,14 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
         **_stop_attributes(plan, folder),
         "complete": 1,
     }
+
+
+def _replicate_attributes(folder: Folder) -> dict[str, Any]:
+    """Return how many batches count into each replicate, in the order of the product's replicates."""
+    one = folder.statistics[0]
+    counts = replicate_counts(one.first_batch, one.batches, len(one.replicate_sum))
+    kept = [count for count in counts if count]
+    return {"replicate_batches": np.array(kept, dtype=np.int64)} if kept else {}
 
 
 def _stop_attributes(plan: Plan, folder: Folder) -> dict[str, Any]:

@@ -10,7 +10,7 @@ from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
 from tracer.engine.body_constants import overridden_constants
 from tracer.engine.launching import draw_launches
-from tracer.engine.memory import sizes
+from tracer.engine.memory import GIGABYTE, available_memory, sizes
 from tracer.engine.planning import make_plan
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
@@ -130,7 +130,12 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
         memory=memory,
         product_size=product_size,
-        notes=(*_override_notes(spec), *_outflow_notes(releases), *_sun_notes(spec, scene)),
+        notes=(
+            *_override_notes(spec),
+            *_outflow_notes(releases),
+            *_sun_notes(spec, scene),
+            *_memory_notes(memory),
+        ),
     )
 
 
@@ -220,6 +225,15 @@ def _law_temperature(release: Release, ground: float | None) -> float | None:
     if not isinstance(release.speed, MaxwellFlux | MaxwellGas):
         return None
     return ground if release.speed.temperature is None else release.speed.temperature
+
+
+def _memory_notes(needed: int) -> Iterator[str]:
+    there = available_memory()
+    if there is not None and needed > there:
+        yield (
+            f"{needed / GIGABYTE:.3g} GB of memory are more than the {there / GIGABYTE:.3g} GB available here: "
+            "the run would be refused"
+        )
 
 
 def _override_notes(spec: RunSpec) -> tuple[str, ...]:

@@ -13,7 +13,7 @@ from typing import NamedTuple
 import pytest
 
 MOTHER = """
-import json, os, resource, signal, sys
+import json, os, resource, signal, sys, traceback
 import tracer.engine.checkpoint_slots as slots
 from tracer.__main__ import main
 from tracer.commands import merge, run, summary
@@ -25,6 +25,7 @@ compile_kernels(make_work(build_scene(load_run(sys.argv[1])), 1, 1))
 print("ready", flush=True)
 
 def child(order):
+    os.setpgid(0, 0)
     os.chdir(order["folder"])
     for number, name in ((0, os.devnull), (1, order["stdout"]), (2, order["stderr"])):
         os.dup2(os.open(name, os.O_RDWR | os.O_CREAT | os.O_TRUNC, 0o600), number)
@@ -32,13 +33,16 @@ def child(order):
     slots.COST_SHARE = 1.0
     if order["file_size"]:
         resource.setrlimit(resource.RLIMIT_FSIZE, (order["file_size"], order["file_size"]))
-    main(order["words"])
+    exec(order["code"], {})
+    if order["words"]:
+        main(order["words"])
 
 for line in sys.stdin:
     order = json.loads(line)
     if "wait" in order:
         print(os.waitstatus_to_exitcode(os.waitpid(order["wait"], 0)[1]), flush=True)
         continue
+    exec(order["before"], {})
     pid = os.fork()
     if pid == 0:
         code = 70
@@ -47,6 +51,8 @@ for line in sys.stdin:
             code = 0
         except SystemExit as end:
             code = end.code or 0
+        except BaseException:
+            traceback.print_exc()
         finally:
             sys.stdout.flush()
             sys.stderr.flush()
@@ -127,17 +133,27 @@ def mother(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Callable[[dict[
 
 @pytest.fixture
 def start(mother: Callable[[dict[str, object]], str], tmp_path: Path) -> Start:
-    """Return a function that starts a command in `tmp_path`, with checkpoints at least `interval` seconds apart."""
+    """Return a function that starts a command in `tmp_path`, with checkpoints at least `interval` seconds apart.
+
+    `code` runs in the new process before the command, `before` in the process from which all are copied.
+    """
 
     numbers = itertools.count()
 
-    def begin(words: Sequence[str], interval: float = 0.05, file_size: int = 0) -> Running:
+    def begin(
+        words: Sequence[str] = (),
+        interval: float = 0.05,
+        file_size: int = 0,
+        code: str = "",
+        before: str = "",
+    ) -> Running:
         number = next(numbers)
         files = (tmp_path / f"{number}.out", tmp_path / f"{number}.err")
         for path in files:
             path.touch()
         order = {"words": list(words), "folder": str(tmp_path), "interval": interval, "file_size": file_size}
-        pid = int(mother({**order, "stdout": str(files[0]), "stderr": str(files[1])}))
+        order |= {"stdout": str(files[0]), "stderr": str(files[1]), "code": code, "before": before}
+        pid = int(mother(order))
         return Running(pid, tmp_path, files, mother)
 
     return begin

@@ -165,8 +165,8 @@ def test_a_share_is_resumed_as_a_share(spec, output):
 
 
 def test_checkpoints_are_written_often_but_cheaply(output, monkeypatch):
-    now = 0.0
-    monkeypatch.setattr(checkpoint_slots, "perf_counter", lambda: now)
+    clock = [0.0]
+    monkeypatch.setattr(checkpoint_slots, "perf_counter", lambda: clock[0])
     written = []
 
     class Folder:
@@ -177,12 +177,12 @@ def test_checkpoints_are_written_often_but_cheaply(output, monkeypatch):
     checkpoints._begun = checkpoint_slots.Begun(None, Folder(), 0.0)
     for cost, interval in ((0.0, 5.0), (0.05, 5.0), (0.4, 20.0), (30.0, 60.0)):
         # Dear checkpoints come seldom, so that they take 2 % of the time; but a minute is the most that may be lost.
-        monkeypatch.setattr(checkpoints, "write", lambda: written.append(now))
-        checkpoints._cost, checkpoints._written = cost, now
-        now += interval - 0.01
+        monkeypatch.setattr(checkpoints, "write", lambda: written.append(clock[0]))
+        checkpoints._cost, checkpoints._written = cost, clock[0]
+        clock[0] += interval - 0.01
         checkpoints.after_fold()
         assert written == []
-        now += 0.02
+        clock[0] += 0.02
         checkpoints.after_fold()
         assert len(written) == 1
         written.clear()

@@ -4,10 +4,12 @@ Needs the extra `cluster`, whose libraries are loaded only when a cluster is ask
 workers again by itself; a batch has the same last bit wherever it runs, if the worker has our fingerprint.
 """
 
+import asyncio
 import json
 import logging
 import re
 from collections.abc import Generator, Iterator, Mapping, Sequence
+from concurrent import futures
 from contextlib import contextmanager, suppress
 from functools import partial
 from importlib import import_module
@@ -30,6 +32,8 @@ FIRST_WORKER_SECONDS = 60.0
 SECONDS_BETWEEN_CENSUSES = 2.0
 MOST_TRIALS = 10
 """Workers that may die under one batch before it is taken for the cause."""
+LIBRARY = "distributed"
+LOST = "the connection to the cluster's scheduler is lost"
 IGNORE_CTRL_C = "import signal; signal.signal(signal.SIGINT, signal.SIG_IGN)"
 """Ctrl-C reaches every process of a terminal; only the one that folds decides what it means."""
 
@@ -66,7 +70,7 @@ def connected(where: str, note: Note) -> Iterator[Connection]:
         No worker has come.
     """
     distributed = _libraries()
-    with _client(distributed, where) as client:
+    with _library_hushed(), _client(distributed, where) as client:
         try:
             client.wait_for_workers(1, timeout=FIRST_WORKER_SECONDS)
         except TimeoutError:
@@ -75,15 +79,17 @@ def connected(where: str, note: Note) -> Iterator[Connection]:
             ) from None
         _refuse_foreign_workers(client, where)
         workers = sum(client.nthreads().values())
-        dashboard = client.dashboard_link
-        note("cluster", f"{workers} workers; dashboard: {dashboard}", workers=workers, dashboard=dashboard)
+        served = "dashboard" in client.scheduler_info()["services"]
+        dashboard = str(client.dashboard_link) if served else None
+        words = f"{workers} workers; dashboard: {dashboard or 'none'}"
+        note("cluster", words, workers=workers, dashboard=dashboard)
         yield Connection(partial(_map_batches, distributed, client, note), workers)
 
 
 def _libraries() -> Any:
     try:
         import_module("dask")
-        return import_module("distributed")
+        return import_module(LIBRARY)
     except ImportError as error:
         raise InputError(
             f"--cluster needs the package {error.name}: pip install 'exosphere-tracer[cluster]'"
@@ -176,7 +182,7 @@ def trace_on_worker(work: Work, task: Task, client: Fingerprint, key: str) -> Ba
 def _is_cancelled(key: str) -> bool:
     """Whether nobody wants the task any longer, because the run was ended or its process has died."""
     with suppress(Exception):
-        state = import_module("distributed").get_worker().state.tasks[key].state
+        state = import_module(LIBRARY).get_worker().state.tasks[key].state
         return bool(state == "cancelled")
     return False
 
@@ -206,8 +212,9 @@ def _map_batches(
 
     def submit(place: int, task: Task, trial: int) -> None:
         key = f"{run}-{place}-{trial}"
-        future = client.submit(trace_on_worker, shared, task, fingerprint(), key, key=key, pure=False)
-        future.add_done_callback(lambda _future: arrival.set())
+        with _loss_told():
+            future = client.submit(trace_on_worker, shared, task, fingerprint(), key, key=key, pure=False)
+            future.add_done_callback(lambda _future: arrival.set())
         running[future] = place, task, trial
 
     try:
@@ -219,7 +226,7 @@ def _map_batches(
             arrival.wait(POLL_SECONDS)
             arrival.clear()
             if client.status != "running":
-                raise TracerError("the connection to the cluster's scheduler is lost")
+                raise TracerError(LOST)
             for future in [future for future in running if future.done()]:
                 place, task, trial = running.pop(future)
                 result = _result(distributed, future, trial)
@@ -238,13 +245,37 @@ def _map_batches(
 def _result(distributed: Any, future: Any, trial: int) -> BatchResult | None:
     """Return a finished batch; None where its workers have died and it must be sent again."""
     try:
-        return BatchResult(*future.result())
+        with _loss_told():
+            return BatchResult(*future.result())
     except distributed.KilledWorker:
         if trial < MOST_TRIALS:
             return None
         raise TracerError(f"the workers of one batch have died {MOST_TRIALS} times") from None
-    except distributed.CancelledError:
-        raise TracerError("the cluster has dropped a batch: its scheduler was ended or restarted") from None
+
+
+@contextmanager
+def _loss_told() -> Iterator[None]:
+    """Say in our words what the library says in many when the scheduler has gone."""
+    try:
+        yield
+    except (futures.CancelledError, asyncio.CancelledError, OSError, TimeoutError):
+        raise TracerError(LOST) from None
+
+
+@contextmanager
+def _library_hushed() -> Iterator[None]:
+    """Keep the library's own log off the terminal: what matters is told by events."""
+    loggers = [
+        logging.getLogger(name) for name in logging.root.manager.loggerDict if name.startswith(LIBRARY)
+    ]
+    levels = [logger.level for logger in loggers]
+    for logger in loggers:
+        logger.setLevel(logging.CRITICAL + 1)
+    try:
+        yield
+    finally:
+        for logger, level in zip(loggers, levels, strict=True):
+            logger.setLevel(level)
 
 
 class _Census:
