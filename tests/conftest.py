@@ -6,8 +6,11 @@ from pathlib import Path
 import pytest
 import xarray as xr
 
+from tracer.engine.batches import compile_kernels, make_work
 from tracer.engine.runspec.load import load_run, parse_run
+from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
+from tracer.kernels.integrated_flight import fly, new_curve, new_flight, start_flight
 
 SMALL_RUN = """
 title = "Sodium over Harrow, small"
@@ -83,6 +86,20 @@ g = "0.2 s-1"
 SMALL_LIGHT_RUN = SMALL_RUN.replace("\n[gas]", SUN + "\n[gas]").replace(
     'rate = "1e-5 s-1"\n', 'rate = "1e-5 s-1"\n' + LIGHT
 )
+
+
+def pytest_sessionstart(session: pytest.Session) -> None:
+    """Compile the kernels once, into the cache that all test processes share, before these processes start."""
+    if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):
+        return
+    for text in (SMALL_RUN, SMALL_LIGHT_RUN):
+        scene = build_scene(parse_run(text, "run file"))
+        work = make_work(scene, 1, 1)
+        compile_kernels(work)
+    flight, curve = new_flight(), new_curve()
+    conditions = work.world.light.conditions
+    start_flight(flight, conditions, 1e-6, scene.body.radius, 0.0, 0.0, 1000.0, 0.0, 0.0)
+    fly(flight, curve, conditions, 1e-6, 1.0)
 
 
 @pytest.fixture(scope="session")

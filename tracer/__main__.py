@@ -1,13 +1,14 @@
 """The command `tracer`: a table of commands, each loaded only when it is asked for."""
 
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from functools import wraps
 from importlib import import_module
-from typing import Annotated, NamedTuple
+from typing import Annotated, Any, NamedTuple
 
 import typer
 
-from tracer.errors import TracerError
+from tracer.errors import Interrupted, TracerError
 
 
 class Entry(NamedTuple):
@@ -25,15 +26,24 @@ COMMANDS = (
         "Validate a run file and print the resolved scene, without running it.",
         "tracer.commands.check",
     ),
+    Entry(
+        "retention",
+        "Say which gases a body keeps: escape, sunlight and wind against the age of the Solar System.",
+        "tracer.commands.retention",
+    ),
+    Entry(
+        "catalogue", "List the built-in bodies, gases and lines with sources.", "tracer.commands.catalogue"
+    ),
     Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
     Entry("merge", "Merge products of one scene, made with other seeds or batches.", "tracer.commands.merge"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),
+    Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
 )
 
 EPILOG = (
-    "Begin with: tracer new, tracer check, tracer run. Results are a planning aid: flight rules and the responsible "
-    "team come first."
+    "Begin with: tracer retention, tracer new, tracer check, tracer run. Results are a planning aid: flight rules and "
+    "the responsible team come first."
 )
 
 
@@ -46,6 +56,14 @@ def main(arguments: Sequence[str] | None = None) -> None:
     except TracerError as error:
         typer.echo(f"tracer: {error}", err=True)
         sys.exit(error.exit_code)
+    except KeyboardInterrupt:
+        typer.echo("tracer: interrupted", err=True)
+        sys.exit(Interrupted.exit_code)
+    except MemoryError:
+        typer.echo(
+            "tracer: out of memory; fewer cells, pixels or workers need less, see tracer check", err=True
+        )
+        sys.exit(TracerError.exit_code)
 
 
 def _application(asked: str | None) -> typer.Typer:
@@ -59,11 +77,23 @@ def _application(asked: str | None) -> typer.Typer:
     )
     app.callback()(_overall)
     for entry in COMMANDS:
-        function = import_module(entry.module).command if entry.name == asked else _not_loaded
-        app.command(entry.name, help=None if entry.name == asked else entry.help, short_help=entry.help)(
-            function
-        )
+        asked_for = entry.name == asked
+        function = _interruptible(import_module(entry.module).command) if asked_for else _not_loaded
+        app.command(entry.name, help=None if asked_for else entry.help, short_help=entry.help)(function)
     return app
+
+
+def _interruptible(command: Callable[..., None]) -> Callable[..., None]:
+    """Return `command` with Ctrl-C as an error of ours; the command-line library gives it another exit code."""
+
+    @wraps(command)
+    def run(*arguments: Any, **options: Any) -> None:
+        try:
+            command(*arguments, **options)
+        except KeyboardInterrupt:
+            raise Interrupted("interrupted") from None
+
+    return run
 
 
 def _not_loaded() -> None:

@@ -17,3 +17,21 @@ SPEED_OF_LIGHT = 299792458.0
 
 PLANCK = 6.62607015e-34
 """Planck constant h [J s]; exact (SI 2019)."""
+
+STEFAN_BOLTZMANN = 5.670374419e-8
+"""Stefan-Boltzmann constant sigma [W m-2 K-4]; exact (SI 2019), rounded to ten digits."""
+
+PROTON_MASS = 1.67262192595e-27
+"""Mass of the proton [kg]; CODATA 2022 (memory), relative uncertainty 3.1e-10."""
+
+VACUUM_PERMEABILITY = 1.25663706127e-6
+"""Magnetic constant mu0 [T m A-1]; CODATA 2022 (memory), relative uncertainty 1.6e-10."""
+
+SOLAR_IRRADIANCE = 1361.0
+"""Total solar irradiance at 1 au [W m-2]; nominal, IAU 2015 resolution B3; it varies by about 0.1 %."""
+
+JULIAN_YEAR = 365.25 * 86400.0
+"""Julian year [s]; exact (IAU)."""
+
+SOLAR_SYSTEM_AGE = 4.567e9 * JULIAN_YEAR
+"""Age of the Solar System [s]: its oldest solids, 4567.3 +- 0.2 Myr (Connelly et al. 2012, Science 338; memory)."""

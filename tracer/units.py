@@ -41,6 +41,8 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "time": Dimension("time", "s", "30 d"),
         "gravitational parameter": Dimension("gravitational parameter", "m3 s-2", "9500 km3 s-2"),
         "acceleration": Dimension("acceleration", "m s-2", "0.05 m s-2"),
+        "magnetic field": Dimension("magnetic field", "T", "195 nT"),
+        "number density": Dimension("number density", "m-3", "50 cm-3"),
     }
 )
 

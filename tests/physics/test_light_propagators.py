@@ -111,13 +111,13 @@ def differences(one, other, launched):
 def test_flights_end_in_the_same_place_at_the_same_time(speeds, age):
     arcs, integrated = scene(age=age), scene(age=age, photo=VANISHING)
     assert (arcs.integrated, integrated.integrated) == (False, True)
-    assert differences(arcs, integrated, launches(40, *speeds)).max() < 1e-7
+    assert differences(arcs, integrated, launches(25, *speeds)).max() < 1e-7
 
 
 def test_flights_in_a_frame_that_does_not_turn_end_elsewhere():
     still = scene(sun="")
     assert not still.integrated
-    assert np.median(differences(still, scene(photo=VANISHING), launches(40, 2000.0, 2320.0))[:, 0]) > 0.01
+    assert np.median(differences(still, scene(photo=VANISHING), launches(25, 2000.0, 2320.0))[:, 0]) > 0.01
 
 
 def deviations(one, other):
@@ -137,10 +137,10 @@ def test_whole_runs_agree(traced):
     arcs, integrated = traced(run_text(seed=1)), traced(run_text(seed=2, photo=VANISHING))
     assert arcs.attrs["integration_steps"] == 0 < integrated.attrs["integration_steps"]
     apart = deviations(arcs, integrated)
-    # 217 comparisons at 4 standard errors of 158 degrees of freedom: false alarm 2e-2. Neighbours move together: the mean
-    # square scatters by 0.12 from seed to seed, false alarm 1e-2.
+    # 217 comparisons at 4.8 standard errors of 158 degrees of freedom: false alarm 8e-4. Neighbours move together: the
+    # mean square scatters by 0.12 from seed to seed, false alarm 1e-2.
     assert apart.size > 200
-    assert np.abs(apart).max() < 4.0
+    assert np.abs(apart).max() < 4.8
     assert 0.7 < np.mean(apart**2) < 1.3
 
 

@@ -25,6 +25,8 @@ from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
         ("1 yr", "time", 365.25 * 86400),  # Julian year, IAU
         ("9_500 km3 s-2", "gravitational parameter", 9.5e12),
         ("5 cm s-2", "acceleration", 0.05),
+        ("195 nT", "magnetic field", 1.95e-7),
+        ("50 cm-3", "number density", 5e7),
     ],
 )
 def test_value_in_si_is_the_written_one(text: str, dimension: str, value: float) -> None:

@@ -14,6 +14,7 @@ from tracer.constants import ASTRONOMICAL_UNIT, ATOMIC_MASS
 
 DAY = 86400.0
 KILOMETRE = 1e3
+NANOTESLA = 1e-9
 _LENGTH_UNITS = {"au": ASTRONOMICAL_UNIT, "km": KILOMETRE}
 
 
@@ -75,4 +76,7 @@ def _body(row: dict[str, str]) -> Body:
             float(row["semi_major_axis"]) * _LENGTH_UNITS[row["semi_major_axis_unit"]],
             float(row["eccentricity"]),
         ),
+        bond_albedo=float(row["bond_albedo"]),
+        emissivity=float(row["emissivity"]),
+        equatorial_field=float(row["equatorial_field_nT"]) * NANOTESLA,
     )

@@ -23,7 +23,11 @@ class Host:
 
 @dataclass(frozen=True)
 class Body:
-    """An airless body: `gm` [m3 s-2], `radius` [m], sidereal `rotation_period` [s], `orbit` about `host`."""
+    """An airless body.
+
+    `gm` [m3 s-2], `radius` [m], sidereal `rotation_period` [s], `orbit` about `host`, `bond_albedo`,
+    `emissivity`, and `equatorial_field` [T], the magnetic field at the equator's surface, 0 where unmagnetised.
+    """
 
     name: str
     host: Host
@@ -31,6 +35,9 @@ class Body:
     radius: float
     rotation_period: float
     orbit: Orbit
+    bond_albedo: float
+    emissivity: float
+    equatorial_field: float
 
     @property
     def heliocentric_orbit(self) -> Orbit:

@@ -20,6 +20,8 @@ SETTINGS = Annotated[
     ),
 ]
 
+OVERWRITE = Annotated[bool, typer.Option("--overwrite", help="Replace an existing output.")]
+
 JSON = Annotated[
     bool, typer.Option("--json", help="Print the figures for machines: SI units, angles in degrees.")
 ]

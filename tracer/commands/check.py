@@ -1,11 +1,13 @@
 """`tracer check`: the resolved scene, without running it."""
 
 from pathlib import Path
+from typing import Any
 
 import typer
 
 from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
 from tracer.commands.machine_output import print_json
+from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
@@ -27,19 +29,27 @@ def command(
     spec = load_run(run_file, settings or ())
     figures = preview(spec, build_scene(spec), available_processors())
     if json:
-        print_json({"file": Path(run_file).name, "title": spec.title, **figures._asdict()})
+        print_json({"file": Path(run_file).name, "title": spec.title, **_flat(figures)})
         return
     _print_scene(spec, figures)
     for release in figures.releases:
         _print_release(release)
     for note in figures.notes:
         typer.echo(f"Note: {note}.")
-    typer.echo(f"Next: tracer run {run_file}", err=True)
+    name_next("run", run_file, settings=settings)
+
+
+def _flat(figures: Preview) -> dict[str, Any]:
+    """Return the figures with those of the Sun beside the others; null where there is no Sun."""
+    sun: dict[str, Any] = dict.fromkeys(SunPreview._fields)
+    if figures.sun is not None:
+        sun = figures.sun._asdict()
+    return {**{key: value for key, value in figures._asdict().items() if key != "sun"}, **sun}
 
 
 def _print_scene(spec: RunSpec, figures: Preview) -> None:
     rotation = figures.rotation_period
-    typer.echo(f"{spec.title}\n{spec.gas.species} over {spec.body.name}")
+    typer.echo(f"{spec.title}\n{figures.species} over {figures.body}")
     print_rows(
         [
             ("propagator", figures.propagator),
@@ -52,11 +62,11 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
                 "rotation period",
                 "the ground does not turn" if rotation is None else f"{rotation / DAY:.6g} d sidereal",
             ),
-            ("outer radius", _outer_radius(spec, figures)),
+            ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
             ("particles", _particles(spec, figures)),
-            ("memory", f"at most {figures.memory / MEGABYTE:.0f} MB"),
+            ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
     )
@@ -81,13 +91,12 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
 
 
 def _particles(spec: RunSpec, figures: Preview) -> str:
-    ensemble = spec.ensemble
-    limit = "" if ensemble.stop is None else "at most "
-    return f"{limit}{figures.particles:,} in {limit}{ensemble.most_batches} batches, seed {ensemble.seed}"
+    limit = "" if spec.ensemble.stop is None else "at most "
+    return f"{limit}{figures.particles:,} in {limit}{figures.batches} batches, seed {figures.seed}"
 
 
-def _outer_radius(spec: RunSpec, figures: Preview) -> str:
-    origin = ", the Hill radius" if spec.domain.outer_radius is None else ""
+def _outer_radius(figures: Preview) -> str:
+    origin = ", the Hill radius" if figures.outer_radius_is_hill_radius else ""
     return f"{figures.outer_radius / 1e3:.6g} km, {figures.outer_radius / figures.radius:.4g} radii{origin}"
 
 

@@ -1,41 +1,47 @@
 """`tracer flight`: one flight from launch to end."""
 
 import csv
-import os
-from collections.abc import Iterable
+from io import StringIO
 from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.arguments import JSON, OVERWRITE, RUN_FILE, SETTINGS
+from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import print_json
+from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.engine.runspec.load import load_run
-from tracer.engine.scene import build_scene
+from tracer.engine.scene import build_scene, referenced_files
 from tracer.engine.single_flight import PATH_COLUMNS, Flight, Launch, fly
 from tracer.errors import InputError
+from tracer.product.writing import check_output, save_bytes
 from tracer.units import parse, si
 
 
 def command(
     run_file: RUN_FILE,
     latitude: Annotated[
-        float, typer.Option(help="Latitude of the launch, -90 to 90 [deg].", show_default=False)
+        float, typer.Option(help="Latitude of the launch, -90 to 90, in degrees.", show_default=False)
     ],
     local_time: Annotated[
         float,
-        typer.Option(help="Local time of the launch, 0 to below 24 [h]; 12 is noon.", show_default=False),
+        typer.Option(
+            help="Local time of the launch, in hours, 0 to below 24; 12 is noon.", show_default=False
+        ),
     ],
     speed: Annotated[
         str,
         typer.Option(help='Launch speed in the Sun-fixed frame, for example "2 km/s".', show_default=False),
     ],
     zenith_angle: Annotated[
-        float, typer.Option(help="Angle from the local vertical, 0 to 90 [deg].", show_default=False)
+        float, typer.Option(help="Angle from the local vertical, 0 to 90, in degrees.", show_default=False)
     ],
     azimuth: Annotated[
         float,
-        typer.Option(help="Direction along the ground, from north through east [deg].", show_default=False),
+        typer.Option(
+            help="Direction along the ground, from north through east, in degrees.", show_default=False
+        ),
     ],
     output: Annotated[
         str | None,
@@ -43,6 +49,7 @@ def command(
             "--output", "-o", metavar="FLIGHT.csv", help="Write the path as CSV.", show_default=False
         ),
     ] = None,
+    overwrite: OVERWRITE = False,
     settings: SETTINGS = None,
     json: JSON = False,
 ) -> None:
@@ -51,9 +58,14 @@ def command(
     The launch speed counts in the Sun-fixed frame: the ground's own motion is not added to it.
     """
     launch = _launch(latitude, local_time, speed, zenith_angle, azimuth)
-    flown = fly(build_scene(load_run(run_file, settings or ())), launch)
+    spec = load_run(run_file, settings or ())
+    scene = build_scene(spec)
     if output is not None:
-        _write_path(flown, output)
+        refuse_inputs(output, [run_file, *referenced_files(spec)])
+        check_output(output, overwrite)
+    flown = fly(scene, launch)
+    if output is not None:
+        save_bytes(_path_text(flown).encode(), output, overwrite)
     if json:
         print_json(flown.summary._asdict())
         return
@@ -68,6 +80,7 @@ def command(
             ("ground_arc", f"{summary.ground_arc:.8g} deg"),
         ]
     )
+    name_next("run", run_file, settings=settings)
 
 
 def _launch(latitude: float, local_time: float, speed: str, zenith_angle: float, azimuth: float) -> Launch:
@@ -88,12 +101,9 @@ def _check(option: str, value: object, allowed: bool, range_words: str) -> None:
         raise InputError(f"{option}: {value} is out of range; must be {range_words}")
 
 
-def _write_path(flown: Flight, output: str) -> None:
-    rows: Iterable[Iterable[float]] = flown.path.tolist()
-    try:
-        with open(output, "w", newline="", encoding="utf-8") as file:
-            writer = csv.writer(file)
-            writer.writerow(PATH_COLUMNS)
-            writer.writerows(rows)
-    except OSError as error:
-        raise InputError(f"{output}: cannot be written: {os.strerror(error.errno or 0)}") from None
+def _path_text(flown: Flight) -> str:
+    text = StringIO()
+    writer = csv.writer(text, lineterminator="\n")
+    writer.writerow(PATH_COLUMNS)
+    writer.writerows(flown.path.tolist())
+    return text.getvalue()

@@ -5,7 +5,10 @@ from typing import Annotated
 
 import typer
 
+from tracer.commands.arguments import OVERWRITE
 from tracer.commands.budget_table import print_budget
+from tracer.commands.input_guard import refuse_inputs
+from tracer.commands.next_command import name_next
 from tracer.product.lock import output_lock
 from tracer.product.merging import merged_product
 from tracer.product.reading import open_product
@@ -25,9 +28,10 @@ def command(
         str,
         typer.Option("--output", "-o", metavar="OUT.nc", help="The merged product.", show_default=False),
     ],
-    overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an existing product.")] = False,
+    overwrite: OVERWRITE = False,
 ) -> None:
     """Merge products of one scene, made with other seeds or batches, into one with smaller errors."""
+    refuse_inputs(output, products)
     check_output(output, overwrite)
     with output_lock(output), ExitStack() as open_files:
         opened = [(name, open_files.enter_context(open_product(name))) for name in products]
@@ -40,7 +44,7 @@ def command(
         )
         typer.echo(_replicate_words(len(attributes.get("replicate_batches", ()))))
     typer.echo(f"product: {output}")
-    typer.echo(f"Next: tracer summary {output}", err=True)
+    name_next("summary", output)
 
 
 def _replicate_words(groups: int) -> str:

@@ -6,6 +6,7 @@ from typing import Annotated
 
 import typer
 
+from tracer.commands.next_command import name_next
 from tracer.engine.runspec.template import run_file_template
 from tracer.errors import InputError
 
@@ -18,7 +19,11 @@ def command(
     ] = "harrow-helium",
 ) -> None:
     """Write a commented run file to start from, in the current folder; it runs as it is."""
-    path = Path(name if name.endswith(SUFFIX) else name + SUFFIX)
+    if not name.isprintable() or not Path(name).stem.strip(". "):
+        raise InputError(
+            f"{name!r} cannot name a run; use printable characters, at least one before the ending"
+        )
+    path = Path(name if name.lower().endswith(SUFFIX) else name + SUFFIX)
     try:
         # "x" refuses an existing file in the same moment as it makes a new one.
         with open(path, "x", encoding="utf-8") as file:
@@ -28,4 +33,4 @@ def command(
     except OSError as error:
         raise InputError(f"{path}: cannot be written: {os.strerror(error.errno or 0)}") from None
     typer.echo(path)
-    typer.echo(f"Next: tracer check {path}", err=True)
+    name_next("check", str(path))

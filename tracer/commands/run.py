@@ -10,15 +10,17 @@ import xarray as xr
 from tracer.commands.arguments import RUN_FILE, SETTINGS
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
+from tracer.commands.input_guard import refuse_inputs
+from tracer.commands.next_command import name_next
 from tracer.commands.progress import shown_progress
 from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.executors.choice import chosen_executor
-from tracer.engine.planning import make_plan
+from tracer.engine.notes import scene_notes
+from tracer.engine.planning import Plan, make_plan
 from tracer.engine.progress import Note
 from tracer.engine.runspec.load import load_run
-from tracer.engine.runspec.run import RunSpec
-from tracer.engine.scene import build_scene
-from tracer.engine.tasks import BatchRange, parse_batches
+from tracer.engine.scene import build_scene, referenced_files
+from tracer.engine.tasks import parse_batches
 from tracer.engine.tracing import run
 from tracer.errors import InputError, Interrupted, TracerError
 from tracer.product.lock import output_lock
@@ -29,9 +31,9 @@ from tracer.product.writing import check_output, save_product
 class Job(NamedTuple):
     """What was asked for, put together from the options."""
 
-    spec: RunSpec
+    plan: Plan
     path: str
-    batches: BatchRange | None
+    share: bool
     overwrite: bool
     resume: bool
     again: str
@@ -88,13 +90,17 @@ def command(
     spec = load_run(run_file, settings or ())
     path = Path(run_file).stem + ".nc" if output is None else output
     share = None if batches is None else parse_batches(batches)
+    plan = make_plan(spec, build_scene(spec), share)
     words = ["tracer", "run", run_file, "-o", path]
     for option, value in (("--batches", batches), ("--cluster", cluster), ("--log", log)):
         words += [option, value] if value is not None else []
     words += ["--workers", str(workers)] if workers is not None else []
     words += [word for change in settings or () for word in ("--set", change)]
     words += ["--overwrite"] if overwrite else []
-    job = Job(spec, path, share, overwrite, resume, shlex.join([*words, "--resume"]))
+    job = Job(plan, path, share is not None, overwrite, resume, shlex.join([*words, "--resume"]))
+    for name in (path, log):
+        if name is not None:
+            refuse_inputs(name, [run_file, *referenced_files(spec)])
     with event_log(log) as note:
         _do(job, cluster, workers, note)
 
@@ -102,6 +108,8 @@ def command(
 def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
     if not (job.resume and Path(job.path).exists()):
         check_output(job.path, job.overwrite)
+    for text in scene_notes(job.plan.spec, job.plan.scene):
+        note("note", f"Note: {text}.")
     with output_lock(job.path):
         checkpoints = Checkpoints(job.path, job.resume, note)
         checkpoints.remove_leftovers()
@@ -116,21 +124,20 @@ def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
     )
     _say_how_it_stopped(product)
     typer.echo(f"product: {job.path}")
-    typer.echo(f"Next: tracer {'summary' if job.batches is None else 'merge'} {job.path}", err=True)
+    name_next(*(("merge", job.path, "...", "-o", "merged.nc") if job.share else ("summary", job.path)))
 
 
 def _is_done(job: Job, checkpoints: Checkpoints) -> bool:
     """Whether the output is the product of this very run already; its checkpoints are of no more use then."""
-    plan = make_plan(job.spec, build_scene(job.spec), job.batches)
     try:
         with open_product(job.path) as ds:
-            same = plan.is_told_by(ds.attrs)
+            same = job.plan.is_told_by(ds.attrs)
     except InputError:
         same = False
     if same:
         checkpoints.remove()
         typer.echo(f"product: {job.path} is complete already: nothing to do")
-        typer.echo(f"Next: tracer summary {job.path}", err=True)
+        name_next("summary", job.path)
         return True
     check_output(job.path, job.overwrite)
     return False
@@ -153,11 +160,11 @@ def _trace_and_save(
     try:
         with chosen_executor(cluster, workers, note) as executor, shown_progress() as watch:
             product = run(
-                job.spec,
+                job.plan.spec,
                 executor.workers,
                 watch,
                 executor.map_batches,
-                batches=job.batches,
+                batches=job.plan.batches if job.share else None,
                 checkpoints=checkpoints,
                 note=note,
             )

@@ -8,10 +8,11 @@ import xarray as xr
 from tracer.commands.arguments import JSON, PRODUCT_FILE
 from tracer.commands.budget_table import print_budget
 from tracer.commands.machine_output import print_json
+from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.errors import InputError
 from tracer.product.checksum import data_checksum
-from tracer.product.reading import open_product
+from tracer.product.reading import load_all, open_product
 
 SHOWN = (
     "title",
@@ -34,8 +35,8 @@ SHOWN = (
 def command(product: PRODUCT_FILE, json: JSON = False) -> None:
     """Say what is in a product: scene, particle budget, errors, checksum (which is verified)."""
     with open_product(product) as ds:
-        ds.load()
-        if data_checksum(ds) != ds.attrs["data_checksum"]:
+        load_all(ds, product)
+        if data_checksum(ds) != ds.attrs.get("data_checksum"):
             raise InputError(
                 f"{product}: its data do not match its data_checksum; the file was changed or damaged"
             )
@@ -46,6 +47,7 @@ def command(product: PRODUCT_FILE, json: JSON = False) -> None:
         print_budget(ds)
         typer.echo("variables, with the median relative standard error of their cells that were hit")
         print_rows(_variable_rows(ds))
+    name_next("plot", product, "--what", "density", "-o", "density.png")
 
 
 def _text(value: Any) -> str:

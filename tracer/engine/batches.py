@@ -19,6 +19,10 @@ SLICE_SECONDS = 0.1
 """What a slice aims at: half of the longest time for which Ctrl-C and the progress may have to wait."""
 
 FIRST_SLICE_FLIGHTS = 2_000
+
+BLOCK = 20_000
+"""Launches drawn at a time: the memory of a batch, and the wait for Ctrl-C, must not grow with its particles."""
+
 MOST_SLICE_GROWTH = 4.0
 
 
@@ -79,22 +83,25 @@ def trace_batch(
     seeds = np.random.SeedSequence(work.seed, spawn_key=(task.release, task.batch))
     rng = np.random.Generator(np.random.PCG64(seeds))
     release = work.scene.releases[task.release]
-    launches = draw_launches(work.scene, release, work.particles, rng)
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    resume = new_resume(len(work.scene.lines))
     weight = release.rate / work.particles
-    flights, seconds, budget = 0, 0.0, FIRST_SLICE_FLIGHTS
-    while (atoms_before := int(resume.counters[ATOM])) < work.particles:
-        begin = thread_time()
-        made = trace_slice(work.world, *launches, weight, resume, tally, rng, budget)
-        spent = thread_time() - begin
-        flights, seconds = flights + made, seconds + spent
-        budget = next_budget(budget, spent)
-        tell(int(resume.counters[ATOM]) - atoms_before, made)
-        if stopped():
-            raise Interrupted("interrupted")
-    return BatchResult(buffer, flights, int(resume.counters[STEPS]), seconds)
+    flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
+    for first in range(0, work.particles, BLOCK):
+        count = min(BLOCK, work.particles - first)
+        launches = draw_launches(work.scene, release, count, rng)
+        resume = new_resume(len(work.scene.lines))
+        while (atoms_before := int(resume.counters[ATOM])) < count:
+            begin = thread_time()
+            made = trace_slice(work.world, *launches, weight, resume, tally, rng, budget)
+            spent = thread_time() - begin
+            flights, seconds = flights + made, seconds + spent
+            budget = next_budget(budget, spent)
+            tell(int(resume.counters[ATOM]) - atoms_before, made)
+            if stopped():
+                raise Interrupted("interrupted")
+        steps += int(resume.counters[STEPS])
+    return BatchResult(buffer, flights, steps, seconds)
 
 
 def next_budget(budget: int, spent: float) -> int:
@@ -104,8 +111,8 @@ def next_budget(budget: int, spent: float) -> int:
 
 
 def compile_kernels(work: Work) -> None:
-    """Compile or load what `trace_batch` calls, with no flight at all, so that workers start together."""
+    """Compile or load what `trace_batch` calls, without flying an atom, so that workers start together."""
     rng = np.random.default_rng(0)
     launches = draw_launches(work.scene, work.scene.releases[0], 1, rng)
     tally = tally_views(work.layout, np.zeros(work.layout.size))
-    trace_slice(work.world, *launches, 0.0, new_resume(len(work.scene.lines)), tally, rng, 0)
+    trace_slice(work.world, *launches, 1.0, new_resume(len(work.scene.lines)), tally, rng, 0)

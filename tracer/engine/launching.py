@@ -28,3 +28,9 @@ def draw_launches(scene: Scene, release: Release, count: int, rng: np.random.Gen
     speeds = release.speed.speeds(u[:, 2], kelvin, scene.mass)
     cosines = release.direction.zenith_cosines(u[:, 3])
     return Launches(positions, velocities(positions, speeds, cosines, 2.0 * np.pi * u[:, 4]))
+
+
+def ground_velocities(scene: Scene, positions: Floats) -> Floats:
+    """Return the ground's velocities (n, 3) [m s-1] in the Sun-fixed frame at unit vectors `positions` (n, 3)."""
+    speed = scene.ground_spin * scene.body.radius
+    return np.column_stack([-speed * positions[:, 1], speed * positions[:, 0], np.zeros(len(positions))])

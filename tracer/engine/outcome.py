@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from tracer.engine.folding import Folder
 from tracer.engine.planning import Plan
+from tracer.engine.references import scene_references
 from tracer.engine.runspec.writing import run_file_text
 from tracer.engine.scene import Scene
 from tracer.engine.tasks import BatchRange
@@ -139,7 +140,9 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
     spec, ensemble = plan.spec, plan.spec.ensemble
     batches = BatchRange(plan.batches.first, plan.batches.first + folder.batches)
     return {
-        **global_attributes(spec.title, f"traced from {Path(spec.file).name}"),
+        **global_attributes(
+            spec.title, f"traced from {Path(spec.file).name}", tuple(scene_references(plan.scene))
+        ),
         "run_file": run_file_text(spec),
         "scene_hash": plan.scene_hash,
         "run_hash": plan.run_hash,

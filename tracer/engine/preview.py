@@ -5,22 +5,22 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.catalogue.load import bodies
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
-from tracer.engine.body_constants import overridden_constants
-from tracer.engine.launching import draw_launches
+from tracer.engine.launching import draw_launches, ground_velocities
 from tracer.engine.memory import GIGABYTE, available_memory, sizes
+from tracer.engine.notes import scene_notes
 from tracer.engine.planning import make_plan
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
-from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
+from tracer.engine.sunlight import Sunlight, lines_without_g
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
 from tracer.physics.lines import line_acceleration
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
+from tracer.physics.retention import HYDRODYNAMIC_JEANS
 from tracer.physics.thermal import (
     escape_speed,
     jeans_parameter,
@@ -38,15 +38,13 @@ TRIAL_SEED = 1
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
 
-HYDRODYNAMIC_JEANS = 3.0
-"""Below this jeans parameter a real gas flows out and needs collisions (Volkov et al. 2011, ApJ 729, L24)."""
-
 
 class ReleasePreview(NamedTuple):
     """One release; what has no meaning for its speed law is None.
 
-    `temperature` [K] of the law, or the mean of the ground's over the places of release; the three speeds of a gas of
-    that temperature, `launch_speed` the law's own mean [m s-1]; medians of `hop_time` [s] and `hop_range` [m] over the
+    `temperature` [K] of the law, or the mean of the ground's over the places of release; the three speeds of a gas,
+    the jeans parameter and the scale height are those of that temperature; `launch_speed` [m s-1] is the mean of the
+    trial launches; medians of `hop_time` [s] and `hop_range` [m] over the
     trial launches that land, None where none does; `crossing_fraction` of the trial launches cross the outer radius.
     Trial launches fly under gravity alone.
     """
@@ -91,6 +89,8 @@ class Preview(NamedTuple):
     `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that act everywhere alike.
     """
 
+    body: str
+    species: str
     propagator: str
     sun: SunPreview | None
     radius: float
@@ -99,11 +99,14 @@ class Preview(NamedTuple):
     escape_speed: float
     rotation_period: float | None
     outer_radius: float
+    outer_radius_is_hill_radius: bool
     age_limit: float
     mass: float
     loss_rate: float
     releases: tuple[ReleasePreview, ...]
     particles: int
+    batches: int
+    seed: int
     memory: int
     product_size: int
     notes: tuple[str, ...]
@@ -115,6 +118,8 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
     releases = tuple(_preview_release(scene, release) for release in scene.releases)
     memory, product_size = sizes(make_plan(spec, scene), workers)
     return Preview(
+        body=spec.body.name,
+        species=spec.gas.species,
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
         radius=body.radius,
@@ -123,19 +128,17 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         escape_speed=escape_speed(body.gm, body.radius),
         rotation_period=body.rotation_period,
         outer_radius=scene.outer_radius,
+        outer_radius_is_hill_radius=spec.domain.outer_radius is None,
         age_limit=scene.age_limit,
         mass=scene.mass,
         loss_rate=scene.constant_hazard,
         releases=releases,
         particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
+        batches=spec.ensemble.most_batches,
+        seed=spec.ensemble.seed,
         memory=memory,
         product_size=product_size,
-        notes=(
-            *_override_notes(spec),
-            *_outflow_notes(releases),
-            *_sun_notes(spec, scene),
-            *_memory_notes(memory),
-        ),
+        notes=(*scene_notes(spec, scene), *_outflow_notes(releases), *_memory_notes(memory)),
     )
 
 
@@ -158,59 +161,40 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
     )
 
 
-def _sun_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
-    if scene.sun is None:
-        return
-    if missing := lines_without_g(spec):
-        yield f"lines {', '.join(missing)} have no known g: they neither push nor shine; a [[gas.line]] can give it"
-    if replaced := replaced_lines(spec):
-        yield f"lines {', '.join(replaced)} of the run file replace the catalogue's"
-    if spec.gas.photoionization_rate is None:
-        yield from _photo_notes(spec, scene.sun)
-    host = bodies()[spec.body.name].host if spec.body.name in bodies() else None
-    if host is not None and host.orbit is not None:
-        yield (
-            f"{spec.body.name} has the distance and velocity of {host.name} from the Sun; its own motion about "
-            f"{host.name}, and the gravity and shadow of {host.name}, are left out"
-        )
-
-
-def _photo_notes(spec: RunSpec, sun: Sunlight) -> Iterator[str]:
-    species = spec.gas.species
-    if not sun.photo.total:
-        yield (
-            f"the catalogue has no photo-rate of {species}: sunlight destroys none; "
-            "gas.photoionization_rate can give one"
-        )
-    elif not sun.photo.told_apart:
-        yield f"ionisation and dissociation of {species} are not told apart: all counts as other_loss"
-
-
 def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
-    rng = np.random.default_rng(TRIAL_SEED)
-    launches = draw_launches(scene, release, TRIAL_LAUNCHES, rng)
+    launches = draw_launches(scene, release, TRIAL_LAUNCHES, np.random.default_rng(TRIAL_SEED))
     motion = make_work(scene, 0, 1).world.motion
-    endings, durations, arcs, _ = single_hops(motion, *launches)
+    endings, durations, arcs, _ = single_hops(
+        motion, launches.positions, launches.velocities + ground_velocities(scene, launches.positions)
+    )
     landed = endings == LANDED
     ground = _ground_temperature(scene, launches.positions)
     kelvin = _law_temperature(release, ground)
-    body, mass = scene.body, scene.mass
     return ReleasePreview(
         name=release.name,
         rate=release.rate,
         temperature=kelvin,
-        most_probable_speed=None if kelvin is None else most_probable_speed(kelvin, mass),
-        mean_speed=None if kelvin is None else mean_speed(kelvin, mass),
-        rms_speed=None if kelvin is None else rms_speed(kelvin, mass),
-        launch_speed=release.speed.mean_speed(np.nan if ground is None else ground, mass),
-        jeans_parameter=None if kelvin is None else jeans_parameter(body.gm, body.radius, kelvin, mass),
-        scale_height=None
-        if kelvin is None or body.gm == 0.0
-        else scale_height(body.gm, body.radius, kelvin, mass),
+        launch_speed=float(np.mean(np.linalg.norm(launches.velocities, axis=1))),
+        **_thermal_figures(scene, kelvin),
         hop_time=float(np.median(durations[landed])) if landed.any() else None,
-        hop_range=float(np.median(arcs[landed])) * body.radius if landed.any() else None,
+        hop_range=float(np.median(arcs[landed])) * scene.body.radius if landed.any() else None,
         crossing_fraction=float(np.mean(endings == CROSSED)),
     )
+
+
+def _thermal_figures(scene: Scene, kelvin: float | None) -> dict[str, float | None]:
+    """Return what a gas of temperature `kelvin` does on the body; all None for a law without temperature."""
+    body, mass = scene.body, scene.mass
+    if kelvin is None:
+        names = ("most_probable_speed", "mean_speed", "rms_speed", "jeans_parameter", "scale_height")
+        return dict.fromkeys(names)
+    return {
+        "most_probable_speed": most_probable_speed(kelvin, mass),
+        "mean_speed": mean_speed(kelvin, mass),
+        "rms_speed": rms_speed(kelvin, mass),
+        "jeans_parameter": jeans_parameter(body.gm, body.radius, kelvin, mass),
+        "scale_height": scale_height(body.gm, body.radius, kelvin, mass) if body.gm else None,
+    }
 
 
 def _ground_temperature(
@@ -234,13 +218,6 @@ def _memory_notes(needed: int) -> Iterator[str]:
             f"{needed / GIGABYTE:.3g} GB of memory are more than the {there / GIGABYTE:.3g} GB available here: "
             "the run would be refused"
         )
-
-
-def _override_notes(spec: RunSpec) -> tuple[str, ...]:
-    keys = overridden_constants(spec)
-    if not keys:
-        return ()
-    return (f"body: {', '.join(keys)} from the run file replace the catalogue's values of {spec.body.name}",)
 
 
 def _outflow_notes(releases: tuple[ReleasePreview, ...]) -> tuple[str, ...]:

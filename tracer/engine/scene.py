@@ -21,8 +21,12 @@ from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperatur
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
+from tracer.product.layout import variable_names
 from tracer.tally.axes import Grid, ImagePlane, make_grid, make_image_plane, viewer_direction
 from tracer.units import si
+
+FARTHEST = 1e8
+"""Largest outer radius in radii: beyond it an arc's end loses the digits that landing and escape promise."""
 
 
 class Release(NamedTuple):
@@ -112,6 +116,7 @@ def build_scene(spec: RunSpec) -> Scene:
         the body, or a file that cannot be used.
     """
     body = resolve_body(spec)
+    _refuse_colliding_images(spec)
     temperature = spec.surface.temperature
     return Scene(
         body=body,
@@ -139,6 +144,16 @@ def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
     return tuple(spec.folder / name for name in [*names, *g_files(spec)])
 
 
+def _refuse_colliding_images(spec: RunSpec) -> None:
+    """Refuse images whose names in the product would be those of other variables, before anything is traced."""
+    names = variable_names([product_name(image.name) for image in spec.image])
+    twice = sorted({name for name in names if names.count(name) > 1})
+    if twice:
+        raise refuse(
+            spec, "image", None, f"names collide in the product: {', '.join(twice)}; rename an image"
+        )
+
+
 def _mass(spec: RunSpec) -> float:
     if spec.gas.mass is not None:
         return si(spec.gas.mass)
@@ -148,7 +163,7 @@ def _mass(spec: RunSpec) -> float:
             spec,
             "gas.species",
             spec.gas.species,
-            f"not in the catalogue; give its mass, or one of {', '.join(known)}",
+            f"is not in the catalogue; give its mass, or one of {', '.join(known)}",
         )
     return known[spec.gas.species].mass
 
@@ -178,6 +193,8 @@ def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:
             raise refuse(
                 spec, "domain.outer_radius", given, f"must be above the body's radius, {body.radius:g} m"
             )
+        if outer > FARTHEST * body.radius:
+            raise refuse(spec, "domain.outer_radius", given, f"must be at most {FARTHEST:g} radii")
         return outer
     if body.orbit is None:
         raise refuse(
@@ -198,7 +215,12 @@ def _grid(spec: RunSpec, table: GridTable, radius: float) -> Grid:
     altitude = table.altitude
     first, top = si(altitude.first_cell, radius), si(altitude.top, radius)
     if not first < top:
-        raise refuse(spec, "grid.altitude.top", altitude.top, f"must be above first_cell, {first:g} m")
+        raise refuse(
+            spec,
+            "grid.altitude.top",
+            altitude.top,
+            f'must be above first_cell "{altitude.first_cell}"; a small body needs both',
+        )
     try:
         return make_grid(radius, first, top, altitude.cells, table.latitude_cells, table.local_time_cells)
     except ValueError as error:

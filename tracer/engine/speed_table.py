@@ -18,7 +18,7 @@ def read_speed_table(path: Path) -> tuple[NDArray[np.float64], NDArray[np.float6
         The file cannot be read, a row is not two finite numbers, speeds do not rise from 0 or above, the pdf is
         negative or zero everywhere.
     """
-    rows = read_two_columns(path, "speed in m/s, pdf")
+    rows = read_two_columns(path, "speed in m/s, pdf", "m/s")
     if rows[0].first < 0.0:
         raise InputError(f"line {rows[0].line}: speed {rows[0].first:g} must be at least 0 m/s")
     for row in rows:
@@ -26,4 +26,9 @@ def read_speed_table(path: Path) -> tuple[NDArray[np.float64], NDArray[np.float6
             raise InputError(f"line {row.line}: pdf {row.second:g} must be at least 0")
     if not any(row.second for row in rows):
         raise InputError("has no flux: the pdf is 0 everywhere")
-    return np.array([row.first for row in rows]), np.array([row.second for row in rows])
+    speed, pdf = np.array([row.first for row in rows]), np.array([row.second for row in rows])
+    with np.errstate(over="ignore"):
+        flux = np.trapezoid(pdf, speed)
+    if not np.isfinite(flux):
+        raise InputError("its speeds or pdf are too large to be summed")
+    return speed, pdf

@@ -108,7 +108,7 @@ def _own_line(spec: RunSpec, number: int, line: SpectralLineTable) -> VelocityTa
         return constant_table(line.name, wavelength, si(line.g))
     key = f"gas.line[{number}].g.file"
     try:
-        rows = read_two_columns(spec.folder / line.g.file, "radial velocity in km/s, g in 1/s")
+        rows = read_two_columns(spec.folder / line.g.file, "radial velocity in km/s, g in 1/s", "km/s")
         velocities = np.array([row.first for row in rows]) * KILOMETRE_PER_SECOND
         return table_of(line.name, wavelength, velocities, np.array([row.second for row in rows]))
     except (InputError, ValueError) as error:

@@ -1,8 +1,10 @@
 """Read a CSV file of two columns of numbers."""
 
 import csv
+import re
 from itertools import pairwise
 from pathlib import Path
+from types import MappingProxyType
 from typing import NamedTuple
 
 import numpy as np
@@ -18,7 +20,16 @@ class Row(NamedTuple):
     second: float
 
 
-def read_two_columns(path: Path, columns: str) -> list[Row]:
+FOREIGN_UNITS = MappingProxyType(
+    {
+        "m/s": re.compile(r"km|cm|ev", re.IGNORECASE),
+        "km/s": re.compile(r"cm|(?<!k)m ?[/_ ] ?s", re.IGNORECASE),
+    }
+)
+"""What a heading must not hold where the first column is in the given unit."""
+
+
+def read_two_columns(path: Path, columns: str, unit: str) -> list[Row]:
     """Return the rows of a CSV file, at least two of them.
 
     Parameters
@@ -27,6 +38,8 @@ def read_two_columns(path: Path, columns: str) -> list[Row]:
         UTF-8 text; lines that begin with `#` are passed over, and so is one line of words before the numbers.
     columns : str
         What the columns are, for messages, for example "speed in m/s, pdf".
+    unit : str
+        Unit of the first column, "m/s" or "km/s"; a heading that names another one is refused.
 
     Raises
     ------
@@ -35,7 +48,7 @@ def read_two_columns(path: Path, columns: str) -> list[Row]:
     """
     rows: list[Row] = []
     headed = False
-    for line, cells in enumerate(csv.reader(_text(path).splitlines()), 1):
+    for line, cells in enumerate(_split(_text(path)), 1):
         if not cells or cells[0].lstrip().startswith("#"):
             continue
         shown = ",".join(cells)
@@ -44,6 +57,7 @@ def read_two_columns(path: Path, columns: str) -> list[Row]:
         except ValueError:
             if rows or headed:
                 raise InputError(f"line {line}: {shown!r} is not two numbers: {columns}") from None
+            _check_heading(line, shown, unit)
             headed = True
             continue
         if not np.isfinite([first, second]).all():
@@ -55,6 +69,20 @@ def read_two_columns(path: Path, columns: str) -> list[Row]:
         if not low.first < high.first:
             raise InputError(f"line {high.line}: {high.first:g} does not rise above {low.first:g}")
     return rows
+
+
+def _check_heading(line: int, heading: str, unit: str) -> None:
+    if FOREIGN_UNITS[unit].search(heading):
+        raise InputError(
+            f"line {line}: the heading {heading!r} names another unit; the first column is in {unit}"
+        )
+
+
+def _split(text: str) -> list[list[str]]:
+    try:
+        return list(csv.reader(text.splitlines()))
+    except csv.Error as error:
+        raise InputError(f"cannot be read: {error}") from None
 
 
 def _text(path: Path) -> str:

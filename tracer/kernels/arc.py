@@ -45,8 +45,11 @@ def crossing(arc, outer_radius):
 
 @kernel
 def landing(arc):
-    """Return the universal anomaly at which a bound arc comes back to its launch radius."""
-    return anomaly_from_half_tangent(arc.beta, arc.eta, -arc.zeta)
+    """Return the universal anomaly at which a bound arc comes back to its launch radius.
+
+    A horizontal launch may have a negative climb by rounding, which would land it one period before its launch.
+    """
+    return anomaly_from_half_tangent(arc.beta, max(0.0, arc.eta), -arc.zeta)
 
 
 @kernel

@@ -7,7 +7,7 @@ back by frame_rate times t.
 import math
 
 from tracer.kernels.arc import crossing, landing, make_arc, position_at, state_at
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import AGED, CROSSED, LANDED, UNRESOLVED
 from tracer.kernels.scoring import score_sample
 from tracer.kernels.universal import anomaly_at_time, time_at
@@ -59,7 +59,7 @@ def arc_state(motion, arc, s):
     return t, x, y, z, vx + rate * y, vy - rate * x, vz
 
 
-@kernel
+@merged
 def score_arc(world, tally, arc, s_end, weight, shine, rng):
     """Count the flight from launch to `s_end` by residence time, one random sample in each equal stratum of s.
 

@@ -5,7 +5,14 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.first_guess import (
+    ANGLE_ERROR,
+    ARCSINE_ERROR,
+    rough_angle,
+    rough_arcsine,
+    rough_logarithm,
+)
 
 
 class Cells(NamedTuple):
@@ -23,7 +30,7 @@ class Cells(NamedTuple):
     local_time_cells: int
 
 
-@kernel
+@inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
     last = cells.radii.shape[0] - 2
@@ -32,30 +39,44 @@ def altitude_cell(cells, r):
     altitude = r - cells.radius
     if altitude < cells.first_altitude:
         return 0
-    guess = min(last, 1 + int(math.log(altitude / cells.first_altitude) * cells.cells_per_log))
-    # The logarithm may round across an edge; the edges themselves decide.
-    if r < cells.radii[guess]:
+    guess = 1 + int(rough_logarithm(altitude / cells.first_altitude) * cells.cells_per_log)
+    guess = min(last, max(0, guess))
+    # The edges themselves decide.
+    while r < cells.radii[guess]:
         guess -= 1
-    elif r >= cells.radii[guess + 1]:
+    while r >= cells.radii[guess + 1]:
         guess += 1
     return guess
 
 
-@kernel
+@inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
-    angle = math.asin(min(1.0, max(-1.0, sine)))
-    cell = int((angle / math.pi + 0.5) * cells.latitude_cells)
-    return min(cells.latitude_cells - 1, max(0, cell))
+    number = cells.latitude_cells
+    place = (rough_arcsine(sine) / math.pi + 0.5) * number
+    if not _clear_of_edges(place, ARCSINE_ERROR / math.pi * number):
+        angle = math.asin(min(1.0, max(-1.0, sine)))
+        place = (angle / math.pi + 0.5) * number
+    return min(number - 1, max(0, int(place)))
 
 
-@kernel
+@inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
-    turn = 0.5 + math.atan2(y, x) / (2.0 * math.pi)
-    cell = int(turn * cells.local_time_cells)
+    number = cells.local_time_cells
+    place = (0.5 + rough_angle(x, y) / (2.0 * math.pi)) * number
+    if not _clear_of_edges(place, ANGLE_ERROR / (2.0 * math.pi) * number):
+        place = (0.5 + math.atan2(y, x) / (2.0 * math.pi)) * number
+    cell = int(place)
     # atan2 gives +pi and -pi at midnight: both are the first cell.
-    return 0 if cell >= cells.local_time_cells else cell
+    return 0 if cell >= number else cell
+
+
+@inlined
+def _clear_of_edges(place, margin):
+    """Return True where `place`, in cells, is further than `margin` from the edges of its cell; False if it is NaN."""
+    part = place - math.floor(place)
+    return margin < part < 1.0 - margin
 
 
 class Images(NamedTuple):

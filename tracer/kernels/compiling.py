@@ -23,6 +23,11 @@ def inlined(function):
     return code_cache.attach(numba.njit(**OPTIONS, _nrt=False, forceinline=True)(function))
 
 
+def merged(function):
+    """Compile `function` like `kernel`, as part of the text of its callers: for what is called from one place."""
+    return code_cache.attach(numba.njit(**OPTIONS, _nrt=False, inline="always")(function))
+
+
 def allocating_kernel(function):
     """Compile `function`, which makes arrays, on its first call and keep the machine code between starts."""
     return code_cache.attach(numba.njit(**OPTIONS)(function))

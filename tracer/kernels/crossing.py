@@ -73,15 +73,34 @@ def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end
     scale = math.sqrt(start[0] * start[0] + start[1] * start[1] + start[2] * start[2])
     f0, d0 = height(shadow, outer_radius, surface, zone, start)
     f1, d1 = height(shadow, outer_radius, surface, zone, end)
+    d0 *= h
+    d1 *= h
+    launched = f0 <= TOUCH * scale
     right = 1.0
     if f1 >= 0.0:
         if d0 >= 0.0 or d1 <= 0.0:
             return NEVER
-        ends = (f0, d0 * h, f1, d1 * h)
+        ends = (f0, d0, f1, d1)
         right = _dip(shadow, outer_radius, surface, zone, curve, reach, ends, TOUCH * scale)
         if right == NEVER:
             return NEVER
-    return reach * _root(shadow, outer_radius, surface, zone, curve, reach, f0, d0 * h, right, scale)
+    if launched and (d0 <= 0.0 or f0 < -TOUCH * scale):
+        return 0.0
+    start = _parabola_root(f0, d0, f1, d1, launched)
+    return reach * _root(shadow, outer_radius, surface, zone, curve, reach, start, right, launched, scale)
+
+
+@kernel
+def _parabola_root(f0, d0, f1, d1, launched):
+    """Return the first root of a parabola with height `f0` and slope `d0` at 0 and height `f1` at 1; 0 if none.
+
+    Launched, it is height / part that is drawn as a parabola, which has the slope `d1` at 1 as well.
+    """
+    a, b, c = f0, d0, f1 - f0 - d0
+    if launched:
+        a, b, c = d0, 3.0 * f1 - 2.0 * d0 - d1, d0 - 2.0 * f1 + d1
+    squared = b * b - 4.0 * a * c
+    return 2.0 * a / (math.sqrt(squared) - b) if squared > 0.0 else 0.0
 
 
 @kernel
@@ -112,16 +131,13 @@ def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
 
 
 @kernel
-def _root(shadow, outer_radius, surface, zone, curve, reach, f0, d0, right, scale):
-    """Return where on the way, up to `right`, the height first becomes 0: Newton's method in a bracket.
+def _root(shadow, outer_radius, surface, zone, curve, reach, start, right, launched, scale):
+    """Return where on the way, up to `right`, the height first becomes 0: Newton's method in a bracket from `start`.
 
-    A start on the surface itself is divided out, height / part, so that the way back to it is found.
+    A start on the surface itself, `launched`, is divided out, height / part, so that the way back to it is found.
     """
-    launched = f0 <= TOUCH * scale
-    if launched and (d0 <= 0.0 or f0 < -TOUCH * scale):
-        return 0.0
     left = 0.0
-    part = right
+    part = start if 0.0 < start < right else right
     for _ in range(HALVINGS):
         f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * part))
         if abs(f) <= SHARP * scale:

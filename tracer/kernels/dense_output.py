@@ -6,7 +6,7 @@ coefficients of each of x, y, z, vx, vy, vz and the ionising and the other hazar
 (1993), II.6, write them.
 """
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined, merged
 
 START = 0
 LENGTH = 1
@@ -16,7 +16,7 @@ COEFFICIENTS = 4
 CURVE_SIZE = 44
 
 
-@inlined
+@merged
 def set_component(curve, component, start, growth, h, first_slope, last_slope, quartic):
     """Store one component's coefficients from its `start`, `growth` over the step and slopes at both ends."""
     k = COEFFICIENTS + 5 * component
@@ -28,7 +28,7 @@ def set_component(curve, component, start, growth, h, first_slope, last_slope, q
     curve[k + 4] = quartic
 
 
-@inlined
+@merged
 def component_at(curve, component, part):
     """Return a component (0-2 x, y, z [m], 3-5 velocity [m s-1], 6 ionising, 7 other hazard) at `part` of the step."""
     k = COEFFICIENTS + 5 * component
@@ -37,7 +37,7 @@ def component_at(curve, component, part):
     return curve[k] + part * (curve[k + 1] + rest * bend)
 
 
-@kernel
+@inlined
 def place_at(curve, part):
     """Return (x, y, z, vx, vy, vz) at `part` (0 to 1) of the step."""
     return (
@@ -50,7 +50,7 @@ def place_at(curve, part):
     )
 
 
-@kernel
+@inlined
 def hazards_at(curve, part):
     """Return (ionising, other) hazard since launch at `part` (0 to 1) of the step."""
     return component_at(curve, 6, part), component_at(curve, 7, part)

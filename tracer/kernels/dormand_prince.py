@@ -3,7 +3,7 @@
 Dormand & Prince (1980), J. Comput. Appl. Math. 6, 19, the seven-stage pair RK5(4)7M; dense output of fourth
 order by Hairer, Norsett & Wanner (1993), Solving Ordinary Differential Equations I, section II.6. Each
 function below is a row of the tableau for one component: `y` its value, `h` the step [s], `k1`, `k2`, ... its
-slopes.
+slopes. The newest slope is added last and by itself: the next stage waits for nothing else.
 """
 
 from tracer.kernels.compiling import inlined
@@ -12,42 +12,35 @@ from tracer.kernels.motion import rates_of_change
 
 @inlined
 def second_row(y, h, k1):
-    return y + h * (0.2 * k1)
+    return y + (0.2 * h) * k1
 
 
 @inlined
 def third_row(y, h, k1, k2):
-    return y + h * (3.0 / 40.0 * k1 + 9.0 / 40.0 * k2)
+    return y + h * (3.0 / 40.0 * k1) + (9.0 / 40.0 * h) * k2
 
 
 @inlined
 def fourth_row(y, h, k1, k2, k3):
-    return y + h * (44.0 / 45.0 * k1 - 56.0 / 15.0 * k2 + 32.0 / 9.0 * k3)
+    return y + h * (44.0 / 45.0 * k1 - 56.0 / 15.0 * k2) + (32.0 / 9.0 * h) * k3
 
 
 @inlined
 def fifth_row(y, h, k1, k2, k3, k4):
-    return y + h * (
-        19372.0 / 6561.0 * k1 - 25360.0 / 2187.0 * k2 + 64448.0 / 6561.0 * k3 - 212.0 / 729.0 * k4
-    )
+    older = 19372.0 / 6561.0 * k1 - 25360.0 / 2187.0 * k2 + 64448.0 / 6561.0 * k3
+    return y + h * older - (212.0 / 729.0 * h) * k4
 
 
 @inlined
 def sixth_row(y, h, k1, k2, k3, k4, k5):
-    return y + h * (
-        9017.0 / 3168.0 * k1
-        - 355.0 / 33.0 * k2
-        + 46732.0 / 5247.0 * k3
-        + 49.0 / 176.0 * k4
-        - 5103.0 / 18656.0 * k5
-    )
+    older = 9017.0 / 3168.0 * k1 - 355.0 / 33.0 * k2 + 46732.0 / 5247.0 * k3 + 49.0 / 176.0 * k4
+    return y + h * older - (5103.0 / 18656.0 * h) * k5
 
 
 @inlined
 def solution_row(h, k1, k3, k4, k5, k6):
-    return h * (
-        35.0 / 384.0 * k1 + 500.0 / 1113.0 * k3 + 125.0 / 192.0 * k4 - 2187.0 / 6784.0 * k5 + 11.0 / 84.0 * k6
-    )
+    older = 35.0 / 384.0 * k1 + 500.0 / 1113.0 * k3 + 125.0 / 192.0 * k4 - 2187.0 / 6784.0 * k5
+    return h * older + (11.0 / 84.0 * h) * k6
 
 
 @inlined

@@ -10,7 +10,7 @@ import math
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
@@ -44,7 +44,7 @@ from tracer.kernels.shadow import (
     zone_at,
     zone_beyond,
 )
-from tracer.kernels.step_control import first_step, step_change, step_error
+from tracer.kernels.step_control import error_scales, first_step, step_change, step_error
 
 TIME = 0
 PLACE = 1
@@ -90,7 +90,7 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
         flight[STEP] = EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight))
 
 
-@kernel
+@inlined
 def advance(flight, curve, conditions, tolerance, time_limit):
     """Make one accepted step of `flight`, store it in `curve` and return how the flight stands.
 
@@ -104,7 +104,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    speed = math.sqrt(speed_squared + conditions.sky.forces.gm / r)
+    scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
     h = min(flight[STEP], _longest_step(r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
         h = min(h, _longest_step_in_penumbra(sky.shadow, place))
@@ -115,7 +115,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
             h = left
         flight[TRIALS] += 1.0
         growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place[:3], place[3:], slopes)
-        squared = step_error(error, tolerance, r, speed)
+        squared = step_error(error, scales)
         change = step_change(squared)
         if squared <= 1.0:
             break
@@ -159,7 +159,7 @@ def new_curve() -> np.ndarray:
     return np.zeros(CURVE_SIZE)
 
 
-@inlined
+@merged
 def _place(flight):
     return (
         flight[PLACE],
@@ -171,7 +171,7 @@ def _place(flight):
     )
 
 
-@inlined
+@merged
 def _set_place(flight, place):
     flight[PLACE] = place[0]
     flight[PLACE + 1] = place[1]
@@ -181,7 +181,7 @@ def _set_place(flight, place):
     flight[PLACE + 5] = place[5]
 
 
-@inlined
+@merged
 def _moved(place, growth):
     return (
         place[0] + growth[0][0],
@@ -193,13 +193,13 @@ def _moved(place, growth):
     )
 
 
-@inlined
+@merged
 def _slopes(flight):
     acceleration = (flight[SLOPES], flight[SLOPES + 1], flight[SLOPES + 2])
     return acceleration, (flight[SLOPES + 3], flight[SLOPES + 4])
 
 
-@inlined
+@merged
 def _set_slopes(flight, slopes):
     flight[SLOPES] = slopes[0][0]
     flight[SLOPES + 1] = slopes[0][1]
@@ -208,7 +208,7 @@ def _set_slopes(flight, slopes):
     flight[SLOPES + 4] = slopes[1][1]
 
 
-@inlined
+@merged
 def _store(curve, flight, h, place, slopes, growth, end_slopes, quartic):
     curve[START] = flight[TIME]
     curve[LENGTH] = h
@@ -227,7 +227,7 @@ def _store(curve, flight, h, place, slopes, growth, end_slopes, quartic):
     )
 
 
-@inlined
+@merged
 def _give_up(flight, curve):
     curve[START] = flight[TIME]
     curve[LENGTH] = 0.0
@@ -235,7 +235,7 @@ def _give_up(flight, curve):
     return UNRESOLVED
 
 
-@inlined
+@merged
 def _surfaces_near(sky, zone, start, end):
     """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge)."""
     forces = sky.forces
@@ -251,7 +251,7 @@ def _surfaces_near(sky, zone, start, end):
     )
 
 
-@kernel
+@merged
 def _first_surface(sky, zone, curve, near, start, end):
     """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
     first, part, reach = 0, NEVER, 1.0
@@ -267,7 +267,7 @@ def _first_surface(sky, zone, curve, near, start, end):
     return first, part
 
 
-@kernel
+@merged
 def _may_meet(shadow, zone, surface, near):
     """Return True where `surface` bounds `zone` and is `near` (ground, outer sphere, shadow edge)."""
     if surface == GROUND:
@@ -281,7 +281,7 @@ def _may_meet(shadow, zone, surface, near):
     return near[2] and surface == zone
 
 
-@inlined
+@merged
 def _sunward_in_light(shadow, zone, start, end):
     """Return True where a step in full light stays sunward of all shadow, which most steps do."""
     terminator = shadow.radius * shadow.penumbra_sine
@@ -293,7 +293,7 @@ def _sunward_in_light(shadow, zone, start, end):
     )
 
 
-@kernel
+@merged
 def _cut(flight, curve, conditions, zone, surface, part):
     """End the step at `part` of its curve, at `surface`."""
     place = place_at(curve, part)
@@ -317,7 +317,7 @@ def _cut(flight, curve, conditions, zone, surface, part):
     return FLYING
 
 
-@inlined
+@merged
 def _longest_step(r, speed_squared, acceleration):
     """Return the time [s] in which an atom can come about as far as it is from the centre.
 

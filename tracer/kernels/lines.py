@@ -2,12 +2,13 @@
 
 All tables lie in one flat float64 array, because an array in the innermost loop costs time for each one: the
 number of lines; four numbers for each line (first velocity [m s-1], steps per velocity [s m-1], last step,
-entry of its first knot); then for each knot its value and the rise to the next one (0 at the last).
+entry of its first knot); then for each knot the straight line to the next one (level at the last), as its value at
+step 0 and its rise for each step.
 """
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 
 HEADING = 1
 HEADING_SIZE = 4
@@ -25,8 +26,9 @@ def line_value(tables, line, velocity):
     if step > last:
         step = last
     knot = int(step)
-    entry = int(tables[heading + 3]) + 2 * knot
-    return tables[entry] + (step - knot) * tables[entry + 1]
+    # Unsigned, so that no time goes into counting from the array's end.
+    entry = np.uintp(int(tables[heading + 3]) + 2 * knot)
+    return tables[entry] + step * tables[entry + np.uintp(1)]
 
 
 @inlined
@@ -38,7 +40,7 @@ def sum_of_lines(tables, velocity):
     return total
 
 
-@kernel
+@inlined
 def beyond_tables(tables, velocity):
     """Return True where `velocity` [m s-1] lies beyond the end of any line's table that has more than one knot."""
     for line in range(int(tables[0])):
@@ -56,6 +58,7 @@ def flat_tables(first_velocities, velocity_steps, values) -> np.ndarray:
     entry = HEADING + HEADING_SIZE * len(values)
     for first, step, value in zip(first_velocities, velocity_steps, values, strict=True):
         headings += [first, 1.0 / step, len(value) - 1, entry]
-        knots.append(np.column_stack([value, np.append(np.diff(value), 0.0)]).ravel())
+        rise = np.append(np.diff(value), 0.0)
+        knots.append(np.column_stack([value - np.arange(len(value)) * rise, rise]).ravel())
         entry += 2 * len(value)
     return np.concatenate([[len(values)], headings, *knots]).astype(np.float64)

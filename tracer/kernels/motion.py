@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined
 from tracer.kernels.lines import sum_of_lines
 from tracer.kernels.shadow import Shadow, lit_fraction
 
@@ -60,7 +60,7 @@ class Conditions(NamedTuple):
     push_tables: np.ndarray
 
 
-@kernel
+@inlined
 def radial_velocity(forces, x, y, z, vx, vy, vz):
     """Return the atom's heliocentric radial velocity [m s-1], positive away from the Sun.
 
@@ -71,7 +71,7 @@ def radial_velocity(forces, x, y, z, vx, vy, vz):
     return (y * vy + z * vz - sx * (vx - forces.radial_velocity)) / s
 
 
-@kernel
+@inlined
 def sunlight_received(sky, zone, x, y, z):
     """Return the light at (x, y, z) [m] relative to full light at `light_distance`."""
     forces = sky.forces
@@ -90,23 +90,29 @@ def rates_of_change(sky, tables, zone, position, velocity):
     forces, losses = sky.forces, sky.losses
     x, y, z = position
     vx, vy, vz = velocity
-    r2 = x * x + y * y + z * z
-    pull = forces.gm / (r2 * math.sqrt(r2))
-    sx = forces.distance - x
-    per_s = 1.0 / math.sqrt(sx * sx + y * y + z * z)
-    dilution = forces.light_distance * per_s
-    dilution *= dilution
-    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
-    light = lit * dilution
-    sunward = forces.tide_gm * per_s * per_s
-    origin_pull = forces.tide_gm / (forces.distance * forces.distance)
-    if lit > 0.0:
-        receding = (y * vy + z * vz - sx * (vx - forces.radial_velocity)) * per_s
-        sunward -= light * (forces.push + sum_of_lines(tables, receding))
-    sunward *= per_s
     w = forces.turning
-    ax = -pull * x + (sunward * sx - origin_pull) + w * (2.0 * vy + w * x)
-    ay = -(pull + sunward) * y + w * (w * y - 2.0 * vx)
-    az = -(pull + sunward) * z
+    r2 = x * x + y * y + z * z
+    pull = forces.gm * math.sqrt(r2) / (r2 * r2)
+    sx = forces.distance - x
+    s2 = sx * sx + y * y + z * z
+    per_s2 = 1.0 / s2
+    per_s = math.sqrt(s2) * per_s2
+    ux, uy, uz = sx * per_s, y * per_s, z * per_s
+    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    dilution = forces.light_distance * forces.light_distance * per_s2
+    light = lit * dilution
+    sunward = forces.tide_gm * per_s2 - light * forces.push
+    # A stage's place is known before its velocity: all but the lines' push is ready when that comes.
+    ax = sunward * ux - forces.tide_gm / (forces.distance * forces.distance) + (w * w - pull) * x
+    ay = (w * w - pull) * y - sunward * uy
+    az = -pull * z - sunward * uz
+    push = 0.0
+    if lit > 0.0:
+        push = sum_of_lines(tables, (uy * vy + uz * vz) - ux * (vx - forces.radial_velocity))
+    acceleration = (
+        (ax + 2.0 * w * vy) - (light * ux) * push,
+        (ay - 2.0 * w * vx) + (light * uy) * push,
+        az + (light * uz) * push,
+    )
     other = light * losses.other_sunlight + lit * losses.other_lit + dilution * losses.other_distance
-    return (ax, ay, az), (light * losses.ionizing, other + losses.other_everywhere)
+    return acceleration, (light * losses.ionizing, other + losses.other_everywhere)

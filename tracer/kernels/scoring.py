@@ -6,7 +6,7 @@ from typing import NamedTuple
 import numpy as np
 
 from tracer.kernels.cells import altitude_cell, image_pixel, latitude_cell, local_time_cell
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import kernel, merged
 
 
 class Tally(NamedTuple):
@@ -36,13 +36,13 @@ class Tally(NamedTuple):
     life: np.ndarray
 
 
-@kernel
+@merged
 def ground_cell(cells, x, y, z, r):
     """Return (latitude cell, local-time cell) of position (x, y, z) at distance `r` from the centre."""
     return latitude_cell(cells, z / r), local_time_cell(cells, x, y)
 
 
-@kernel
+@merged
 def score_sample(tally, cells, images, x, y, z, r, content, ionizing, shine):
     """Count `content` atoms at (x, y, z) [m] in density, vertical column, images and what sunlight does to them.
 

@@ -2,7 +2,9 @@
 
 import math
 
-from tracer.kernels.compiling import inlined, kernel
+import numpy as np
+
+from tracer.kernels.compiling import inlined, kernel, merged
 
 DEFAULT_TOLERANCE = 1e-6
 """Aimed error of a landing place in radii: half of all lie within it, and all within a thousandfold.
@@ -13,33 +15,61 @@ Save some 3 in 100,000, temporary satellites between push and pull, that no step
 STEP_SHARE = 0.1
 """The share of the tolerance that one step may take, in units of the distance from the centre and of the speed."""
 
-FIRST_STEP = 3.0
+FIRST_STEP = 1.5
 """Length of the first step in dynamical times, at a step error of 1; measured."""
 
 SAFETY = 0.9
 LEAST_CHANGE = 0.2
 GREATEST_CHANGE = 5.0
 
+ROOT_BITS = 5.06766e18
+"""Of all offsets between the bits of a number and of its inverse tenth root the one with the least greatest error."""
 
-@inlined
-def step_error(error, tolerance, distance, speed):
-    """Return the square of a step's error in units of what `tolerance` allows; accepted up to 1.
 
-    `error` holds squares: position [m] against `distance` [m] from the centre, velocity [m s-1] against
-    `speed`, the hazard, which survival is the exponential of, against 1.
+@merged
+def error_scales(tolerance, gm, distance, speed_squared):
+    """Return what squared errors of position [m], velocity [m s-1] and hazard are multiplied by in `step_error`.
+
+    Position counts against the `distance` [m] from the centre, velocity against the speed and that of a circular
+    orbit, the hazard, which survival is the exponential of, against 1; one means what `tolerance` allows.
     """
     allowed = STEP_SHARE * tolerance
-    return (error[0] / (distance * distance) + error[1] / (speed * speed) + error[2]) / (allowed * allowed)
+    per_allowed = 1.0 / (allowed * allowed)
+    return (
+        per_allowed / (distance * distance),
+        per_allowed / (speed_squared + gm / distance),
+        per_allowed,
+    )
 
 
-@inlined
+@merged
+def step_error(error, scales):
+    """Return the square of a step's error in units of what the tolerance allows; accepted up to 1."""
+    return error[0] * scales[0] + error[1] * scales[1] + error[2] * scales[2]
+
+
+@merged
 def step_change(error):
     """Return the factor by which the next step is longer, for a fifth-order step of squared `error`."""
     if not error < 1e30:
         return LEAST_CHANGE
     if error < 1e-12:
         return GREATEST_CHANGE
-    return min(GREATEST_CHANGE, max(LEAST_CHANGE, SAFETY * error**-0.1))
+    return min(GREATEST_CHANGE, max(LEAST_CHANGE, SAFETY * inverse_tenth_root(error)))
+
+
+@inlined
+def inverse_tenth_root(value):
+    """Return value^(-1/10) of a positive `value` to half a per cent, in a fraction of the time that a power takes.
+
+    The bits of a float64 are, as a whole number, nearly its logarithm: dividing them by -10 is a first guess, good to
+    3 %, and one step of Newton's method, y (11 - value y^10) / 10, follows.
+    """
+    bits = np.float64(value).view(np.int64)
+    y = np.int64(ROOT_BITS - 0.1 * bits).view(np.float64)
+    y2 = y * y
+    y4 = y2 * y2
+    return y * (1.1 - 0.1 * value * (y4 * y4 * y2))
 
 
 @kernel

@@ -3,14 +3,14 @@
 import math
 
 from tracer.fate import Fate
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import merged
 from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, hazards_at, place_at
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity, sunlight_received
 from tracer.kernels.scoring import mean_survival_time, score_sample
 
 
-@kernel
+@merged
 def score_step(world, tally, curve, weight, shine, rng):
     """Count the flown part of a step by residence time: one sample at an even random time within it.
 
@@ -31,10 +31,11 @@ def score_step(world, tally, curve, weight, shine, rng):
     score_sample(tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine)
 
 
-@kernel
-def book_step(tally, curve, weight):
-    """Enter the flown part of a step into life and ledger: survival is integrated, not sampled.
+@merged
+def book_step(tally, curve, weight, before):
+    """Enter the flown part of a step into life and ledger and return the survival at its end.
 
+    Survival is integrated, not sampled; `before` is that at the step's start.
     What is lost is shared between ionisation and other losses as their hazards grew; both grow in proportion within a
     step but for the small change of their ratio. The survival time is exact for a hazard that grows evenly, however
     much of it a step holds; Simpson's rule adds what bends it.
@@ -43,7 +44,7 @@ def book_step(tally, curve, weight):
     ionizing0, other0 = hazards_at(curve, 0.0)
     ionizing1, other1 = hazards_at(curve, flown)
     ionizing, other = hazards_at(curve, 0.5 * flown)
-    before, after = math.exp(-(ionizing0 + other0)), math.exp(-(ionizing1 + other1))
+    after = math.exp(-(ionizing1 + other1))
     grown = (ionizing1 - ionizing0) + (other1 - other0)
     bend = math.exp(-(ionizing + other)) - before * math.exp(-0.5 * grown)
     kept = before * mean_survival_time(grown, 1.0) + bend / 1.5
@@ -53,3 +54,4 @@ def book_step(tally, curve, weight):
         share = (ionizing1 - ionizing0) / grown
         tally.ledger[Fate.IONIZED] += lost * share
         tally.ledger[Fate.OTHER_LOSS] += lost * (1.0 - share)
+    return after

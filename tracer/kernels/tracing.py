@@ -8,10 +8,9 @@ import numpy as np
 from tracer.fate import Fate
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
 from tracer.kernels.bounce import rebound
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
 from tracer.kernels.integrated_flight import (
-    HAZARDS,
     PLACE,
     TIME,
     advance,
@@ -19,8 +18,9 @@ from tracer.kernels.integrated_flight import (
     new_flight,
     start_flight,
 )
-from tracer.kernels.scoring import ground_cell, mean_survival_time
+from tracer.kernels.scoring import Tally, ground_cell, mean_survival_time
 from tracer.kernels.step_scoring import book_step, score_step
+from tracer.kernels.world import World
 
 ATOM = 0
 ALOFT = 1
@@ -28,6 +28,12 @@ HOME_ROW = 2
 HOME_COLUMN = 3
 STEPS = 4
 COUNTERS = 5
+
+GRAZING = 0.02
+"""Sine of the angle above the horizon below which a launch is integrated with more care."""
+
+LEAST_CARE = 1e-5
+"""Smallest part of the tolerance: below it rounding decides anyway."""
 
 SURVIVAL = 6
 AGE = 7
@@ -55,23 +61,54 @@ def new_resume(lines: int) -> Resume:
     )
 
 
-@kernel
-def trace_slice(world, positions, velocities, weight, resume, tally, rng, most_flights):
+def trace_slice(
+    world: World,
+    positions: np.ndarray,
+    velocities: np.ndarray,
+    weight: float,
+    resume: Resume,
+    tally: Tally,
+    rng: np.random.Generator,
+    most_flights: int,
+) -> int:
     """Trace atoms from where `resume` stands for at most `most_flights` launches and return their number.
 
     `positions` (n, 3) are unit vectors of the places of release, `velocities` (n, 3) [m s-1] relative to the ground,
     `weight` [s-1] is each atom's share of the release rate. Done when counter ATOM equals n.
     """
+    trace = trace_integrated if world.integrated else trace_arcs
+    return trace(world, positions, velocities, weight, resume, tally, rng, most_flights)
+
+
+@kernel
+def trace_integrated(world, positions, velocities, weight, resume, tally, rng, most_flights):
+    """Do what `trace_slice` says with integrated flights; apart from arcs, so that a run compiles one of the two."""
     flights = 0
     while flights < most_flights and resume.counters[ATOM] < positions.shape[0]:
         if resume.counters[ALOFT] == 0:
             _release(world, positions, velocities, weight, resume, tally)
-        _fly_once(world, weight, resume, tally, rng)
+        alive = _take_off(weight, resume, tally)
+        end = _fly_integrated(world, resume, tally, alive, rng)
+        _come_down(world, resume, tally, alive, end, rng)
         flights += 1
     return flights
 
 
 @kernel
+def trace_arcs(world, positions, velocities, weight, resume, tally, rng, most_flights):
+    """Do what `trace_slice` says with flights on closed-form arcs."""
+    flights = 0
+    while flights < most_flights and resume.counters[ATOM] < positions.shape[0]:
+        if resume.counters[ALOFT] == 0:
+            _release(world, positions, velocities, weight, resume, tally)
+        alive = _take_off(weight, resume, tally)
+        end = _fly_arc(world, resume, tally, alive, rng)
+        _come_down(world, resume, tally, alive, end, rng)
+        flights += 1
+    return flights
+
+
+@merged
 def _release(world, positions, velocities, weight, resume, tally):
     i = resume.counters[ATOM]
     nx, ny, nz = positions[i, 0], positions[i, 1], positions[i, 2]
@@ -85,7 +122,7 @@ def _release(world, positions, velocities, weight, resume, tally):
     _launch(world, resume.state, nx, ny, nz, velocities[i, 0], velocities[i, 1], velocities[i, 2])
 
 
-@kernel
+@merged
 def _launch(world, state, nx, ny, nz, vx, vy, vz):
     """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
     radius = world.motion.radius
@@ -98,14 +135,16 @@ def _launch(world, state, nx, ny, nz, vx, vy, vz):
     state[5] = vz
 
 
-@kernel
-def _fly_once(world, weight, resume, tally, rng):
+@merged
+def _take_off(weight, resume, tally):
+    """Count a launch and return the weight that flies."""
     alive = weight * resume.state[SURVIVAL]
     tally.launches[0] += alive
-    if world.integrated:
-        end = _fly_integrated(world, resume, tally, alive, rng)
-    else:
-        end = _fly_arc(world, resume, tally, alive, rng)
+    return alive
+
+
+@merged
+def _come_down(world, resume, tally, alive, end, rng):
     ending, kept, t, x, y, z, vx, vy, vz = end
     alive *= kept
     resume.state[SURVIVAL] *= kept
@@ -116,7 +155,7 @@ def _fly_once(world, weight, resume, tally, rng):
         _end_aloft(world, resume, tally, ending, alive, x, y, z)
 
 
-@kernel
+@merged
 def _fly_arc(world, resume, tally, alive, rng):
     """Return (ending, survival, time, position, velocity) of one flight on a closed-form arc, and count it."""
     state = resume.state
@@ -132,21 +171,38 @@ def _fly_arc(world, resume, tally, alive, rng):
 
 
 @kernel
+def _care(state):
+    """Return the part of the tolerance that a launch may use: less than all where it leaves along the ground.
+
+    A launch at a small angle above the horizon, faster than a circular orbit, comes back to a pericentre below the
+    ground by about the square of that angle: an error as large would carry it over the ground, round and round.
+    """
+    r = math.sqrt(state[0] * state[0] + state[1] * state[1] + state[2] * state[2])
+    speed = math.sqrt(state[3] * state[3] + state[4] * state[4] + state[5] * state[5])
+    climb = state[0] * state[3] + state[1] * state[4] + state[2] * state[5]
+    if climb >= GRAZING * r * speed:
+        return 1.0
+    angle = climb / (GRAZING * r * speed)
+    return max(angle * angle, LEAST_CARE)
+
+
+@merged
 def _fly_integrated(world, resume, tally, alive, rng):
     """Return (ending, survival, time, position, velocity) of one integrated flight, and count it step by step."""
     state, flight, curve = resume.state, resume.flight, resume.curve
     light = world.light
+    tolerance = light.tolerance * _care(state)
     start_flight(
-        flight, light.conditions, light.tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
+        flight, light.conditions, tolerance, state[0], state[1], state[2], state[3], state[4], state[5]
     )
     time_left = world.motion.age_limit - state[AGE]
+    kept = 1.0
     standing = FLYING
     while standing == FLYING:
-        standing = advance(flight, curve, light.conditions, light.tolerance, time_left)
+        standing = advance(flight, curve, light.conditions, tolerance, time_left)
         resume.counters[STEPS] += 1
         score_step(world, tally, curve, alive, resume.shine, rng)
-        book_step(tally, curve, alive)
-    kept = math.exp(-(flight[HAZARDS] + flight[HAZARDS + 1]))
+        kept = book_step(tally, curve, alive, kept)
     return (
         standing,
         kept,
@@ -160,7 +216,7 @@ def _fly_integrated(world, resume, tally, alive, rng):
     )
 
 
-@kernel
+@merged
 def _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng):
     r = math.sqrt(x * x + y * y + z * z)
     nx, ny, nz = x / r, y / r, z / r
@@ -177,7 +233,7 @@ def _land(world, resume, tally, alive, x, y, z, vx, vy, vz, rng):
     _launch(world, resume.state, nx, ny, nz, out[0], out[1], out[2])
 
 
-@kernel
+@merged
 def _end_aloft(world, resume, tally, ending, alive, x, y, z):
     if ending == CROSSED:
         tally.ledger[Fate.ESCAPED] += alive
@@ -191,7 +247,7 @@ def _end_aloft(world, resume, tally, ending, alive, x, y, z):
     _next_atom(resume)
 
 
-@kernel
+@merged
 def _next_atom(resume):
     resume.counters[ALOFT] = 0
     resume.counters[ATOM] += 1

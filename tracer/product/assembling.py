@@ -158,7 +158,8 @@ def _attributes(row: Variable) -> dict[str, Any]:
     averaged = [axis for axis in row.dimensions if axis in cells]
     if row.tallied and averaged:
         attributes["cell_methods"] = " ".join(f"{axis}:" for axis in averaged) + " mean"
-    if {LATITUDE, LOCAL_TIME} <= set(row.dimensions):
+    on_the_outer_sphere = row.unit.endswith("sr-1")
+    if {LATITUDE, LOCAL_TIME} <= set(row.dimensions) and not on_the_outer_sphere:
         attributes["cell_measures"] = (
             "volume: cell_volume" if ALTITUDE in row.dimensions else "area: cell_area"
         )

@@ -59,6 +59,22 @@ def open_product(path: str | os.PathLike[str]) -> xr.Dataset:
     return indexed
 
 
+def load_all(ds: xr.Dataset, path: str | os.PathLike[str]) -> None:
+    """Read every array of the product opened from `path` into memory.
+
+    Raises
+    ------
+    InputError
+        Where the file's data are damaged, which shows only on reading them.
+    """
+    try:
+        ds.load()
+    except (OSError, RuntimeError, ValueError) as error:
+        raise InputError(
+            f"{os.fspath(path)}: is damaged: its data cannot be read ({_first_line(error)})"
+        ) from error
+
+
 def _check_signature(name: str) -> None:
     try:
         with open(name, "rb") as file:

@@ -64,6 +64,34 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
         put_in_place(beside, target)
 
 
+def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
+    """Write what was made from a product, such as a figure; the file appears whole or not at all.
+
+    Parameters
+    ----------
+    content : bytes
+        All that the file will hold.
+    path : path
+        The output.
+    overwrite : bool
+        Whether an existing file is replaced.
+
+    Raises
+    ------
+    InputError
+        As `check_output`.
+    TracerError
+        Where writing fails, as on a full disk; no half file is left.
+    """
+    check_output(path, overwrite)
+    target = Path(os.path.realpath(path))
+    with _written_beside(target, path, len(content)) as beside:
+        beside.write_bytes(content)
+        sync(beside)
+        check_output(path, overwrite)
+        put_in_place(beside, target)
+
+
 def check_output(path: StrPath, overwrite: bool = False) -> None:
     """Refuse an output that cannot be made, before any work is done for it.
 
@@ -74,6 +102,10 @@ def check_output(path: StrPath, overwrite: bool = False) -> None:
         exists is not a plain file.
     """
     target = Path(os.path.realpath(path))
+    if not os.fspath(path):
+        raise InputError("the output has no name")
+    if not os.fsencode(target).decode("utf-8", "ignore").encode() == os.fsencode(target):
+        raise InputError(f"{os.fspath(path)!r}: the output's name is not UTF-8, which netCDF needs")
     if not target.parent.is_dir():
         raise InputError(f"{os.fspath(path)}: there is no folder {target.parent}")
     if target.exists() and not target.is_file():

@@ -9,10 +9,16 @@ import pytest
 import tracer
 
 DEMOS = sorted((Path(__file__).parents[3] / "runs").glob("*.toml"))
-FEWER = ("ensemble.particles_per_batch=10", "ensemble.batches=3")
+FEWER = (
+    "ensemble.particles_per_batch=10",
+    "ensemble.batches=3",
+    "grid.latitude_cells=6",
+    "grid.local_time_cells=8",
+    "image[1].pixels=[8, 6]",
+)
 
 
-@pytest.fixture(scope="module")
+@pytest.fixture(scope="session")
 def products(tmp_path_factory):
     """Return the demos' products by the name of the run file."""
     folder = tmp_path_factory.mktemp("demos")
@@ -30,14 +36,14 @@ def test_demo_closes_its_budget(products, demo):
         assert (ds.ledger.sel(fate="unresolved") == 0.0).all()
 
 
-def test_demo_products_follow_the_cf_conventions(products):
-    # One process for all: starting the checker takes longer than checking.
+@pytest.mark.parametrize("demo", [demo.stem for demo in DEMOS])
+def test_demo_product_follows_the_cf_conventions(products, demo):
     checker = [
         str(Path(sys.executable).with_name("compliance-checker")),
         "--test=cf:1.11",
         "--criteria",
         "lenient",
     ]
-    done = subprocess.run([*checker, *map(str, products.values())], capture_output=True, text=True)
+    done = subprocess.run([*checker, str(products[demo])], capture_output=True, text=True)
     assert done.returncode == 0, done.stdout
-    assert done.stdout.count("All tests passed!") == len(products)
+    assert "All tests passed!" in done.stdout

@@ -65,9 +65,9 @@ def test_ctrl_c_ends_a_run_within_a_second_and_leaves_no_file(tmp_path):
         process.send_signal(signal.SIGINT)
         begin = time.monotonic()
         errors = process.stderr.read()
-        process.wait(timeout=20)
-    # One second is promised on an idle machine; the tests share theirs.
-    assert time.monotonic() - begin < 3.0
+        process.wait(timeout=60)
+    # One second is promised on an idle machine, and the tests share theirs; a batch would take minutes.
+    assert time.monotonic() - begin < 8.0
     assert process.returncode == 3
     assert "interrupted" in errors
     assert [path.name for path in tmp_path.iterdir()] == ["long.toml"]
@@ -78,6 +78,6 @@ def test_second_run_for_the_same_output_is_refused_at_once(tmp_path):
     command = [sys.executable, "-m", "tracer", "run", "long.toml"]
     with started(command, tmp_path) as first:
         assert "tracing" in first.stderr.readline()
-        second = subprocess.run(command, cwd=tmp_path, capture_output=True, text=True, timeout=20)
+        second = subprocess.run(command, cwd=tmp_path, capture_output=True, text=True, timeout=60)
     assert second.returncode == 2
     assert "is being made by another run" in second.stderr

@@ -139,9 +139,9 @@ def test_entries_of_other_sources_are_stale(cache_home):
     shutil.copytree(SOURCES / "tracer", edited / "tracer", ignore=shutil.ignore_patterns("__pycache__"))
     cells = edited / "tracer" / "kernels" / "cells.py"
     text = cells.read_text(encoding="utf-8")
-    old = "cell = int((angle / math.pi + 0.5) * cells.latitude_cells)"
+    old = "return min(number - 1, max(0, int(place)))"
     assert old in text
-    cells.write_text(text.replace(old, "cell = 1 + int((angle / math.pi + 0.5) * cells.latitude_cells)"))
+    cells.write_text(text.replace(old, "return min(number - 1, 1 + max(0, int(place)))"))
     assert probe(cache_home, edited) == ("3", 0)
     folders = [path for path in folder.parent.iterdir() if path.is_dir()]
     assert len(folders) == 2

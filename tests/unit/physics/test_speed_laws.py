@@ -163,20 +163,3 @@ def test_table_of_the_flux_law_gives_the_flux_law():
 
 
 # ---- means
-
-
-@pytest.mark.parametrize(
-    "law",
-    [
-        MaxwellFlux(KELVIN),
-        MaxwellGas(KELVIN),
-        Single(700.0),
-        SigmundThompson(BINDING, CUTOFF),
-        Table(np.array([100.0, 500.0, 3000.0]), np.array([0.0, 2.0, 1.0])),
-    ],
-    ids=lambda law: type(law).__name__,
-)
-def test_mean_speed_is_the_mean_of_the_sample(law):
-    speeds = sample(law, seed=2)
-    # False alarm 6e-5 each.
-    assert abs(law.mean_speed(np.nan, SODIUM) - speeds.mean()) <= 4.0 * speeds.std() / sqrt(COUNT)

@@ -11,7 +11,7 @@ import xarray as xr
 from tracer.errors import InputError, TracerError
 from tracer.product.checksum import data_checksum
 from tracer.product.reading import open_product
-from tracer.product.writing import check_output, save_product
+from tracer.product.writing import check_output, save_bytes, save_product
 
 
 def test_saved_file_has_its_checksum_and_is_complete(product, tmp_path):
@@ -124,6 +124,17 @@ def test_a_full_disk_is_one_message_and_leaves_no_half_file(product, tmp_path, m
     ):
         save_product(product, tmp_path / "harrow.nc")
     assert list(tmp_path.iterdir()) == []
+
+
+def test_bytes_are_written_whole_or_not_at_all(tmp_path, monkeypatch):
+    path = tmp_path / "figure.png"
+    save_bytes(b"first", path)
+    with pytest.raises(InputError, match="exists; --overwrite replaces it"):
+        save_bytes(b"second", path)
+    monkeypatch.setattr(os, "fsync", _fail(errno.ENOSPC))
+    with pytest.raises(TracerError, match=r"figure\.png: cannot be written: is the disk full\?"):
+        save_bytes(b"second", path, overwrite=True)
+    assert [(entry.name, entry.read_bytes()) for entry in tmp_path.iterdir()] == [("figure.png", b"first")]
 
 
 def test_another_failure_does_not_speak_of_a_full_disk(product, tmp_path, monkeypatch):

@@ -9,7 +9,7 @@ from tracer.engine.runspec.text import Line
 
 
 class OrbitTable(Table):
-    """An ellipse about the Sun, or about the planet whose moon the body is."""
+    """An ellipse about the Sun; that of a moon of the catalogue is about its planet."""
 
     semi_major_axis: Length = Field(description="Semi-major axis of the ellipse.")
     eccentricity: Eccentricity = Field(description="Eccentricity of the ellipse.")

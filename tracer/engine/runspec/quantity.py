@@ -61,7 +61,7 @@ class Measured:
 POSITIVE = Interval(above=0.0)
 NOT_NEGATIVE = Interval(at_least=0.0)
 
-Length = Annotated[Quantity, Measured("length", POSITIVE)]
+Length = Annotated[Quantity, Measured("length", Interval(above=0.0, at_most=1e18))]
 LengthOrRadii = Annotated[Quantity, Measured("length or radii", POSITIVE)]
 AltitudeEnd = Annotated[Quantity, Measured("length or radii", NOT_NEGATIVE)]
 Wavelength = Annotated[Quantity, Measured("wavelength", POSITIVE)]
@@ -74,11 +74,12 @@ Speed = Annotated[Quantity, Measured("speed", POSITIVE)]
 RadialVelocity = Annotated[Quantity, Measured("speed")]
 Angle = Annotated[Quantity, Measured("angle")]
 Latitude = Annotated[Quantity, Measured("angle", Interval(at_least=-90.0, at_most=90.0))]
-Rate = Annotated[Quantity, Measured("rate", POSITIVE)]
+Rate = Annotated[Quantity, Measured("rate", Interval(above=0.0, at_most=1e35))]
+"""Replicates are kept in single precision, which ends at 3e38."""
 LossRate = Annotated[Quantity, Measured("rate", NOT_NEGATIVE)]
 Energy = Annotated[Quantity, Measured("energy", POSITIVE)]
 Mass = Annotated[Quantity, Measured("mass", POSITIVE)]
-Duration = Annotated[Quantity, Measured("time", POSITIVE)]
+Duration = Annotated[Quantity, Measured("time", Interval(above=0.0, at_most=1e18))]
 RotationPeriod = Annotated[Quantity, Measured("time", zero_allowed=False)]
 GravitationalParameter = Annotated[Quantity, Measured("gravitational parameter", NOT_NEGATIVE)]
 AccelerationOrWord = Annotated[

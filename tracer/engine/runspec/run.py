@@ -115,7 +115,8 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     for number, release in enumerate(spec.release, 1):
         if isinstance(release.speed, MaxwellFlux | MaxwellGas) and release.speed.temperature == "surface":
             yield conflict("surface.temperature", f"missing; release[{number}].speed takes it; {example}")
-    if spec.surface.sticking < 1.0:
+    lands = spec.body.gm is None or spec.body.gm.value > 0.0
+    if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
         yield conflict("surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}")
 
 

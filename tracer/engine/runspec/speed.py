@@ -4,10 +4,10 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.order import is_below
 from tracer.engine.runspec.quantity import Energy, Speed, TemperatureOrSurface
 from tracer.engine.runspec.table import NAMED_LAW, Table, conflict
 from tracer.engine.runspec.text import FilePath
+from tracer.units import si
 
 
 class MaxwellFlux(Table):
@@ -44,7 +44,8 @@ class SigmundThompson(Table):
 
     @model_validator(mode="after")
     def _leaves_energy_for_flight(self) -> "SigmundThompson":
-        if not is_below(self.binding_energy, self.cutoff_energy):
+        # Nearer to the binding energy the distribution cannot be told from rounding.
+        if not si(self.cutoff_energy) > 1.0001 * si(self.binding_energy):
             raise conflict(
                 "cutoff_energy",
                 f'"{self.cutoff_energy}" is too low; must be above binding_energy "{self.binding_energy}"',

@@ -19,10 +19,6 @@ class SpeedLaw(Protocol):
         """
         ...
 
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return the mean launch speed [m s-1] where the ground has `surface_temperature` [K]."""
-        ...
-
 
 class DirectionLaw(Protocol):
     """A distribution of launch directions about the local vertical, even in azimuth."""

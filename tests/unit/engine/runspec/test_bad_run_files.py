@@ -112,7 +112,11 @@ def test_dimension(old: str, new: str, message: str) -> None:
 @pytest.mark.parametrize(
     ("old", "new", "message"),
     [
-        ('"1800 km"', '"-1 km"', 'body.radius: "-1 km" is out of range; must be above 0 m'),
+        (
+            '"1800 km"',
+            '"-1 km"',
+            'body.radius: "-1 km" is out of range; must be above 0 m and at most 1e+18 m',
+        ),
         (
             "sticking = 0.5",
             "sticking = 1.5",
@@ -185,7 +189,8 @@ def test_unknown_key(old: str, new: str, message: str) -> None:
         (
             'rate = "2e24 s-1"',
             "",
-            'release[1].rate: missing; must be a quantity of rate above 0 s-1, for example "1e24 s-1"',
+            "release[1].rate: missing; must be a quantity of rate above 0 s-1 and at most 1e+35 s-1, "
+            'for example "1e24 s-1"',
         ),
         (
             'law = "maxwell-flux", ',

@@ -1,6 +1,5 @@
 """Flux-weighted Maxwellian: what leaves a surface in thermal equilibrium."""
 
-from math import pi, sqrt
 from typing import NamedTuple
 
 import numpy as np
@@ -23,8 +22,3 @@ class MaxwellFlux(NamedTuple):
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
         return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * gammaincinv(2.0, u)))
-
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return (3 sqrt(pi)/4) v_p [m s-1], v_p = sqrt(2kT/m)."""
-        kelvin = surface_temperature if self.temperature is None else self.temperature
-        return 0.75 * sqrt(pi) * sqrt(2.0 * BOLTZMANN * kelvin / mass)

@@ -1,6 +1,5 @@
 """Maxwellian of a gas at rest: the speeds inside a volume, not those that leave a surface."""
 
-from math import pi, sqrt
 from typing import NamedTuple
 
 import numpy as np
@@ -22,8 +21,3 @@ class MaxwellGas(NamedTuple):
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
         return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * gammaincinv(1.5, u)))
-
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return (2/sqrt(pi)) v_p [m s-1], v_p = sqrt(2kT/m)."""
-        kelvin = surface_temperature if self.temperature is None else self.temperature
-        return 2.0 / sqrt(pi) * sqrt(2.0 * BOLTZMANN * kelvin / mass)

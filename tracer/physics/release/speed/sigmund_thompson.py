@@ -34,11 +34,6 @@ class SigmundThompson(NamedTuple):
         cutoff = np.inf if self.cutoff_energy is None else self.cutoff_energy / self.binding_energy
         return self.binding_energy * _reduced_energies(u, cutoff)
 
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return the mean launch speed [m s-1], by the quantiles' midpoint rule; finite with or without cut-off."""
-        u = (np.arange(TABLE_POINTS) + 0.5) / TABLE_POINTS
-        return float(np.mean(np.sqrt(2.0 * self.energies(u) / mass)))
-
 
 def cumulative(y: Floats, cutoff: float) -> Floats:
     """Return the integral from 0 to `y` of y'/(1 + y')^3 [1 - sqrt((1 + y')/c)], y = E/U, c = E_max/U.

@@ -15,7 +15,3 @@ class Single(NamedTuple):
     def speeds(self, u: Floats, surface_temperature: Floats, mass: float) -> Floats:
         """Return speeds [m s-1]; see `SpeedLaw`."""
         return np.full_like(u, self.speed)
-
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return the speed [m s-1]."""
-        return self.speed

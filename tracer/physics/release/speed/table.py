@@ -27,10 +27,3 @@ class Table(NamedTuple):
         sum_ = start + root
         distance = np.divide(2.0 * rest, sum_, out=np.zeros_like(rest), where=sum_ > 0.0)
         return np.asarray(np.minimum(self.speed[i] + distance, self.speed[i + 1]))
-
-    def mean_speed(self, surface_temperature: float, mass: float) -> float:
-        """Return the mean launch speed [m s-1], exact for the piecewise linear pdf."""
-        v0, v1, p0, p1 = self.speed[:-1], self.speed[1:], self.pdf[:-1], self.pdf[1:]
-        width = v1 - v0
-        first = width * (p0 * (2.0 * v0 + v1) + p1 * (v0 + 2.0 * v1)) / 6.0
-        return float(np.sum(first) / np.sum(0.5 * width * (p0 + p1)))

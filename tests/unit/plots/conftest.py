@@ -1,0 +1,81 @@
+"""Invented products for figures: any number of releases, any size of values, cells never hit or poorly known."""
+
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+import pytest
+import xarray as xr
+
+from tracer.fate import FATE_LABELS
+from tracer.product.assembling import assemble
+from tracer.product.layout import layout
+from tracer.product.provenance import global_attributes
+from tracer.tally.axes import make_grid, make_image_plane, viewer_direction
+from tracer.tally.field import FieldStatistics
+
+RADIUS = 1.8e6
+VIEWS = {"tail_from_north": "north", "from_dawn": "dawn", "from_dusk": "dusk", "from_the_sun": "sun"}
+CELLS = {"altitude": 4, "latitude": 4, "local_time": 6}
+PIXELS = (7, 5)
+
+
+@pytest.fixture
+def make_product() -> Callable[..., xr.Dataset]:
+    """Return a function that makes a product whose fields all have one size, known to a tenth."""
+
+    def make(
+        releases: tuple[str, ...] = ("impact vapour",),
+        size: float = 1e9,
+        replicates: int = 3,
+        lines: tuple[str, ...] = ("na_d2", "na_d1"),
+        views: dict[str, Any] = VIEWS,
+        radius: float = RADIUS,
+        title: str = "Sodium over Harrow",
+    ) -> xr.Dataset:
+        grid = make_grid(radius, 0.01 * radius, 4.0 * radius, *CELLS.values())
+        planes = [
+            make_image_plane(
+                name,
+                name.replace("_", " "),
+                viewer_direction(place),
+                (-4 * radius, 3 * radius),
+                (-2 * radius, 2 * radius),
+                PIXELS,
+            )
+            for name, place in views.items()
+        ]
+        sizes = {"release": len(releases), "fate": len(FATE_LABELS), "line": len(lines), **CELLS}
+        for name in views:
+            sizes |= {f"{name}_horizontal": PIXELS[0], f"{name}_vertical": PIXELS[1]}
+        random = np.random.default_rng(20310601)
+        fields = {}
+        for name, row in layout(views, bool(lines)).items():
+            shape = tuple(sizes[axis] for axis in row.dimensions)
+            if row.tallied:
+                mean = size * random.uniform(0.5, 1.5, shape)
+                kept = row.replicated and replicates > 0
+                spread = mean * random.normal(1.0, 0.1, (replicates, *shape))
+                # Replicates are in single precision, which ends at 3.4e38.
+                fields[name] = FieldStatistics(mean, 0.1 * mean, spread.clip(max=3e38) if kept else None)
+        known = global_attributes(title, "tracer run harrow.toml")
+        return assemble(grid, planes, releases, fields, {}, {**known, "body_radius": radius}, lines)
+
+    return make
+
+
+@pytest.fixture
+def empty() -> Callable[[xr.Dataset], xr.Dataset]:
+    """Return a function that makes a product in which nothing was ever counted."""
+
+    def emptied(product: xr.Dataset) -> xr.Dataset:
+        nothing = product.copy(deep=True)
+        for name in map(str, product.data_vars):
+            if f"{name}_standard_error" in product:
+                nothing[name].values[...] = 0.0
+                nothing[f"{name}_standard_error"].values[...] = np.nan
+            if name.endswith("_replicates"):
+                nothing[name].values[...] = 0.0
+        return nothing
+
+    return emptied

@@ -1,0 +1,101 @@
+"""Figures of odd products: drawn without a warning (warnings are errors here), and every text readable."""
+
+import pytest
+from matplotlib.text import Text
+
+from tracer.plots.density import density
+from tracer.plots.image import image
+from tracer.plots.ledger import ledger
+from tracer.plots.saving import figure_bytes
+from tracer.plots.significance import NOTHING
+from tracer.plots.style import styled
+from tracer.plots.vertical_column import vertical_column
+
+
+def tail(product, release=None, width="full"):
+    return image(product, "tail_from_north", None, release, width)
+
+
+FIGURES = (density, tail, vertical_column, ledger)
+ODD = {
+    "tiny values": {"size": 1e-300},
+    "huge values": {"size": 1e300},
+    "boulder without lines and replicates": {"radius": 50.0, "lines": (), "replicates": 0},
+}
+PIXEL = 1.0
+
+
+def drawn(figure):
+    """Return the figure, drawn."""
+    with styled():
+        figure.canvas.draw()
+    return figure
+
+
+def shown_texts(figure):
+    """Return what is written on the drawn figure, with its place; ticks outside their axis are not drawn."""
+    renderer = figure.canvas.get_renderer()
+    ticks = set()
+    for axes in [*figure.axes, *(child for one in figure.axes for child in one.child_axes)]:
+        for axis in (axes.xaxis, axes.yaxis):
+            drawn_ticks = axis._update_ticks()
+            every = [*axis.majorTicks, *axis.minorTicks]
+            ticks |= {
+                id(label) for tick in every if tick not in drawn_ticks for label in (tick.label1, tick.label2)
+            }
+    texts = [text for text in figure.findobj(Text) if text.get_visible() and text.get_text().strip()]
+    return [(text.get_text(), text.get_window_extent(renderer)) for text in texts if id(text) not in ticks]
+
+
+def assert_readable(figure):
+    """Check that no text leaves the figure or lies over another."""
+    page = figure.bbox
+    texts = shown_texts(figure)
+    for words, box in texts:
+        inside = box.x0 > -PIXEL and box.y0 > -PIXEL and box.x1 < page.x1 + PIXEL and box.y1 < page.y1 + PIXEL
+        assert inside, f"{words!r} leaves the figure"
+    for index, (words, box) in enumerate(texts):
+        for others, other in texts[index + 1 :]:
+            across = min(box.x1, other.x1) - max(box.x0, other.x0)
+            along = min(box.y1, other.y1) - max(box.y0, other.y0)
+            assert across <= PIXEL or along <= PIXEL, f"{words!r} lies over {others!r}"
+
+
+@pytest.mark.parametrize("figure", FIGURES)
+@pytest.mark.parametrize("odd", ODD)
+def test_odd_product_is_drawn_without_a_warning_and_readable(make_product, figure, odd):
+    assert_readable(drawn(figure(make_product(**ODD[odd]), width="column")))
+
+
+@pytest.mark.parametrize("figure", FIGURES)
+def test_figure_is_readable_at_full_width(make_product, figure):
+    one = drawn(figure(make_product(), width="full"))
+    assert_readable(one)
+    assert one.get_size_inches()[0] * 25.4 == pytest.approx(180.0)
+
+
+@pytest.mark.parametrize("figure", [vertical_column, ledger])
+def test_many_releases_and_a_long_title_are_readable(make_product, figure):
+    many = tuple(f"release number {number}" for number in range(15))
+    title = "What a long title, worth $5 or $6, " * 8
+    assert_readable(drawn(figure(make_product(releases=many, title=title), width="column")))
+
+
+@pytest.mark.parametrize("figure", FIGURES)
+def test_empty_product_says_that_nothing_was_counted(make_product, empty, figure):
+    one = drawn(figure(empty(make_product()), width="column"))
+    assert NOTHING in [words for words, _ in shown_texts(one)]
+
+
+def test_letters_that_the_font_lacks_raise_no_warning(make_product):
+    figure = vertical_column(make_product(title="\N{CJK UNIFIED IDEOGRAPH-6C34}"), width="column")
+    assert figure_bytes(figure, ".png", 60).startswith(b"\x89PNG")
+
+
+def test_a_single_cell_that_was_hit_has_a_colour_scale(make_product, empty):
+    product = empty(make_product())
+    product.vertical_column.values[0, 1, 2] = 5e4
+    product.vertical_column_standard_error.values[0, 1, 2] = 1e3
+    figure = drawn(vertical_column(product, width="column"))
+    low, high = figure.axes[-1].get_xlim()
+    assert low <= 5.0 <= high

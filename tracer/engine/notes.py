@@ -1,0 +1,49 @@
+"""What a user should know about a scene before believing its results."""
+
+from collections.abc import Iterator
+
+from tracer.catalogue.load import bodies
+from tracer.engine.body_constants import overridden_constants
+from tracer.engine.runspec.run import RunSpec
+from tracer.engine.scene import Scene
+from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
+
+
+def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
+    """Yield sentences, without a full stop, about what replaces the catalogue, is unknown or is left out."""
+    if keys := overridden_constants(spec):
+        yield f"body: {', '.join(keys)} from the run file replace the catalogue's values of {spec.body.name}"
+    top = scene.body.radius + float(scene.grid.altitude_edges[-1])
+    if top > scene.outer_radius * (1.0 + 1e-12):
+        yield (
+            f"the grid's top, {top / scene.body.radius:.4g} radii from the centre, lies beyond the outer radius, "
+            f"{scene.outer_radius / scene.body.radius:.4g} radii: cells out there stay empty, and the cell that the "
+            "outer radius cuts shows too little"
+        )
+    if scene.sun is not None:
+        yield from _sun_notes(spec, scene.sun)
+
+
+def _sun_notes(spec: RunSpec, sun: Sunlight) -> Iterator[str]:
+    if missing := lines_without_g(spec):
+        yield f"lines {', '.join(missing)} have no known g: they neither push nor shine; a [[gas.line]] can give it"
+    if replaced := replaced_lines(spec):
+        yield f"lines {', '.join(replaced)} of the run file replace the catalogue's"
+    if spec.gas.photoionization_rate is None:
+        yield from _photo_notes(spec.gas.species, sun)
+    host = bodies()[spec.body.name].host if spec.body.name in bodies() else None
+    if host is not None and host.orbit is not None:
+        yield (
+            f"{spec.body.name} has the distance and velocity of {host.name} from the Sun; its own motion about "
+            f"{host.name}, and the gravity and shadow of {host.name}, are left out"
+        )
+
+
+def _photo_notes(species: str, sun: Sunlight) -> Iterator[str]:
+    if not sun.photo.total:
+        yield (
+            f"the catalogue has no photo-rate of {species}: sunlight destroys none; "
+            "gas.photoionization_rate can give one"
+        )
+    elif not sun.photo.told_apart:
+        yield f"ionisation and dissociation of {species} are not told apart: all counts as other_loss"

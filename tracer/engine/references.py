@@ -1,0 +1,25 @@
+"""Publications behind the laws that a scene uses, for the product's `references`."""
+
+from collections.abc import Iterator
+
+from tracer.engine.scene import Scene
+from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
+
+SPUTTERING = "Sigmund, P. (1969), Phys. Rev. 184, 383; Thompson, M. W. (1968), Phil. Mag. 18, 377"
+INTEGRATOR = "Dormand, J. R. & Prince, P. J. (1980), J. Comput. Appl. Math. 6, 19"
+SOLAR_LINES = (
+    "Brault, J. & Neckel, H. (1987) and Neckel, H. (1999), Solar Physics 184, 421: solar flux in the lines"
+)
+PHOTO_RATES = "Huebner, W. F., Keady, J. J. & Lyon, S. P. (1992), Astrophys. Space Sci. 195, 1"
+KEPLER = "Danby, J. M. A. (1988), Fundamentals of Celestial Mechanics, section 6.9"
+
+
+def scene_references(scene: Scene) -> Iterator[str]:
+    """Yield the publications behind what `scene` uses, each once."""
+    yield INTEGRATOR if scene.integrated else KEPLER
+    if any(isinstance(release.speed, SigmundThompson) for release in scene.releases):
+        yield SPUTTERING
+    if scene.lines:
+        yield SOLAR_LINES
+    if scene.sun is not None and scene.sun.photo.total:
+        yield PHOTO_RATES

@@ -1,0 +1,113 @@
+"""Figure: column density above the ground, over latitude and local time."""
+
+from typing import Literal
+
+import numpy as np
+import xarray as xr
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+from matplotlib.patches import Rectangle
+from numpy.typing import NDArray
+
+from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
+from tracer.plots.field import Field, released_words, releases, variable
+from tracer.plots.hatching import hatch_rectangles
+from tracer.plots.planes import DEGREES_PER_HOUR, edges
+from tracer.plots.reading_units import PER_SQUARE_CENTIMETRE
+from tracer.plots.significance import note, say_nothing
+from tracer.plots.style import (
+    COLUMN_COLOURS,
+    DAY_COLOUR,
+    NIGHT_COLOUR,
+    SMALL_SIZE,
+    WIDTHS,
+    Box,
+    Width,
+    axes_in,
+    styled,
+)
+from tracer.plots.words import framed_figure
+from tracer.product.layout import LATITUDE, LOCAL_TIME
+
+DAWN, DUSK, TURN = 6.0, 18.0, 24.0
+LEFT, RIGHT, TOP, STRIP = 11.0, 4.0, 6.5, 3.0
+"""Distances [mm] round the panel, and height of the strip of day and night."""
+LOCAL_TIMES: tuple[tuple[float, str, Literal["left", "center", "right"]], ...] = (
+    (0.0, "midnight", "left"),
+    (DAWN, "dawn", "center"),
+    (12.0, "noon", "center"),
+    (DUSK, "dusk", "center"),
+    (TURN, "midnight", "right"),
+)
+"""Words above the strip, and which part of them stands at their local time."""
+
+
+def vertical_column(product: xr.Dataset, release: str | None = None, width: Width = "full") -> Figure:
+    """Return the column density above the ground [cm-2] over latitude and local time, in logarithmic colours.
+
+    Parameters
+    ----------
+    product : xarray.Dataset
+        As `open_product` gives it.
+    release : str, optional
+        Name of the release to draw; the sum over all if absent.
+    width : "column" or "full"
+        Width of the figure, of one column or the whole page of a journal.
+
+    Raises
+    ------
+    InputError
+        Where the product has no such release.
+    """
+    names = releases(product, release)
+    field = variable(product, "vertical_column", names, PER_SQUARE_CENTIMETRE)
+    hours, latitudes = edges(product, LOCAL_TIME), edges(product, LATITUDE)
+    across = WIDTHS[width] - LEFT - RIGHT
+    height = across * np.ptp(latitudes) / (TURN * DEGREES_PER_HOUR)
+    with styled():
+        figure, box = framed_figure(
+            width,
+            TOP + height + ROOM_BELOW,
+            str(product.attrs.get("title", "")),
+            f"Column density above the ground, {released_words(names)}",
+            note([field], names),
+        )
+        panel = Box(LEFT, box.bottom + ROOM_BELOW, across, height)
+        axes = axes_in(figure, panel)
+        _draw(axes, hours, latitudes, field)
+        _draw_day_and_night(axes_in(figure, panel._replace(bottom=panel.bottom + height, height=STRIP)))
+        bar = axes_in(figure, bar_below(panel))
+        draw_colour_bar(bar, colour_span([field]), COLUMN_COLOURS, "Column density (cm$^{-2}$)", [field])
+    return figure
+
+
+def _draw(axes: Axes, hours: NDArray[np.float64], latitudes: NDArray[np.float64], field: Field) -> None:
+    span = colour_span([field])
+    if span is None:
+        say_nothing(axes)
+    else:
+        value = np.ma.masked_where(~field.hit, field.value)
+        axes.pcolormesh(hours, latitudes, value, norm=log_norm(span), cmap=COLUMN_COLOURS, rasterized=True)
+    hatch_rectangles(axes, hours, latitudes, ~field.significant)
+    for terminator in (DAWN, DUSK):
+        axes.axvline(terminator, color="white", linewidth=1.4, zorder=2.5)
+        axes.axvline(terminator, color="black", linewidth=0.6, linestyle="--", zorder=2.6)
+    axes.set(
+        xlim=(0.0, TURN),
+        ylim=(latitudes[0], latitudes[-1]),
+        xticks=np.arange(0.0, TURN + 1.0, 3.0),
+        yticks=np.arange(-90.0, 91.0, 30.0),
+        xlabel="Local time (h)",
+        ylabel="Latitude (deg)",
+    )
+
+
+def _draw_day_and_night(axes: Axes) -> None:
+    """Draw the strip above the map: what is day, what is night, and the words for local times."""
+    axes.set(xlim=(0.0, TURN), ylim=(0.0, 1.0), xticks=[], yticks=[])
+    axes.add_patch(Rectangle((0.0, 0.0), TURN, 1.0, facecolor=NIGHT_COLOUR, linewidth=0.0))
+    axes.add_patch(Rectangle((DAWN, 0.0), DUSK - DAWN, 1.0, facecolor=DAY_COLOUR, linewidth=0.0))
+    for hour, words, ink in ((3.0, "night", "white"), (12.0, "day", "black"), (21.0, "night", "white")):
+        axes.text(hour, 0.46, words, color=ink, ha="center", va="center", fontsize=SMALL_SIZE)
+    for hour, words, side in LOCAL_TIMES:
+        axes.text(hour, 1.15, words, ha=side, va="bottom", fontsize=SMALL_SIZE)
