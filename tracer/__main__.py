@@ -36,6 +36,7 @@ COMMANDS = (
     ),
     Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
+    Entry("merge", "Merge products of one scene, made with other seeds or batches.", "tracer.commands.merge"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),
     Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
 )

@@ -65,7 +65,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
-            ("particles", f"{figures.particles:,} in {figures.batches} batches, seed {figures.seed}"),
+            ("particles", _particles(spec, figures)),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
@@ -88,6 +88,11 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
         ("lines with g", ", ".join(sun.lines) or "none"),
         ("lines without g", ", ".join(sun.lines_without_g) or "none"),
     ]
+
+
+def _particles(spec: RunSpec, figures: Preview) -> str:
+    limit = "" if spec.ensemble.stop is None else "at most "
+    return f"{limit}{figures.particles:,} in {limit}{figures.batches} batches, seed {figures.seed}"
 
 
 def _outer_radius(figures: Preview) -> str:

@@ -59,5 +59,5 @@ def _plain_lines() -> Watcher:
 def _figures(status: Status, seconds: float) -> str:
     rate = status.flights / seconds if seconds > 0.0 else 0.0
     error = status.relative_error
-    precision = "" if error is None else f", mean life known to {100 * error:.2g} %"
+    precision = "" if error is None else f", {status.known} known to {100 * error:.2g} %"
     return f"{rate:,.0f} flights/s on {status.workers} workers{precision}"

@@ -1,22 +1,43 @@
 """`tracer run`: the main job."""
 
+import shlex
 from pathlib import Path
-from typing import Annotated
+from typing import Annotated, NamedTuple
 
 import typer
+import xarray as xr
 
-from tracer.commands.arguments import OVERWRITE, RUN_FILE, SETTINGS
+from tracer.commands.arguments import RUN_FILE, SETTINGS
 from tracer.commands.budget_table import print_budget
+from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.commands.progress import shown_progress
+from tracer.engine.checkpoint_slots import Checkpoints
+from tracer.engine.executors.choice import chosen_executor
 from tracer.engine.notes import scene_notes
+from tracer.engine.planning import Plan, make_plan
+from tracer.engine.progress import Note
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene, referenced_files
+from tracer.engine.tasks import parse_batches
 from tracer.engine.tracing import run
-from tracer.errors import Interrupted
+from tracer.errors import InputError, Interrupted, TracerError
 from tracer.product.lock import output_lock
+from tracer.product.reading import open_product
 from tracer.product.writing import check_output, save_product
+
+
+class Job(NamedTuple):
+    """What was asked for, put together from the options."""
+
+    plan: Plan
+    path: str
+    share: bool
+    overwrite: bool
+    resume: bool
+    again: str
+    """The command that goes on after an interruption."""
 
 
 def command(
@@ -37,30 +58,144 @@ def command(
             min=1, help="Threads to trace on; by default all processors. The product does not depend on it."
         ),
     ] = None,
-    overwrite: OVERWRITE = False,
+    overwrite: Annotated[
+        bool, typer.Option("--overwrite", help="Replace an existing product; drop an existing checkpoint.")
+    ] = False,
+    resume: Annotated[
+        bool, typer.Option("--resume", help="Go on from the checkpoint of an interrupted run.")
+    ] = False,
+    batches: Annotated[
+        str | None,
+        typer.Option(
+            metavar="FIRST:STOP",
+            help="A share: these batches alone, counted from 0; tracer merge puts shares together.",
+            show_default=False,
+        ),
+    ] = None,
+    cluster: Annotated[
+        str | None,
+        typer.Option(
+            metavar="WHERE",
+            help="Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json.",
+            show_default=False,
+        ),
+    ] = None,
+    log: Annotated[
+        str | None,
+        typer.Option(metavar="FILE", help="Append one JSON line an event.", show_default=False),
+    ] = None,
     settings: SETTINGS = None,
 ) -> None:
     """Trace a run file's particles and write the product (netCDF)."""
     spec = load_run(run_file, settings or ())
     path = Path(run_file).stem + ".nc" if output is None else output
-    scene = build_scene(spec)
-    refuse_inputs(path, [run_file, *referenced_files(spec)])
-    check_output(path, overwrite)
-    for note in scene_notes(spec, scene):
-        typer.echo(f"Note: {note}.", err=True)
-    with output_lock(path):
-        try:
-            with shown_progress() as watch:
-                product = run(spec, workers, watch)
-        except KeyboardInterrupt:
-            raise Interrupted(
-                f"interrupted; {path} was not written. Run the same command to start again"
-            ) from None
-        save_product(product, path, overwrite)
+    share = None if batches is None else parse_batches(batches)
+    plan = make_plan(spec, build_scene(spec), share)
+    words = ["tracer", "run", run_file, "-o", path]
+    for option, value in (("--batches", batches), ("--cluster", cluster), ("--log", log)):
+        words += [option, value] if value is not None else []
+    words += ["--workers", str(workers)] if workers is not None else []
+    words += [word for change in settings or () for word in ("--set", change)]
+    words += ["--overwrite"] if overwrite else []
+    job = Job(plan, path, share is not None, overwrite, resume, shlex.join([*words, "--resume"]))
+    for name in (path, log):
+        if name is not None:
+            refuse_inputs(name, [run_file, *referenced_files(spec)])
+    with event_log(log) as note:
+        _do(job, cluster, workers, note)
+
+
+def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
+    if not (job.resume and Path(job.path).exists()):
+        check_output(job.path, job.overwrite)
+    for text in scene_notes(job.plan.spec, job.plan.scene):
+        note("note", f"Note: {text}.")
+    with output_lock(job.path):
+        checkpoints = Checkpoints(job.path, job.resume, note)
+        checkpoints.remove_leftovers()
+        if job.resume and Path(job.path).exists() and _is_done(job, checkpoints):
+            return
+        _check_checkpoints(job, checkpoints)
+        product = _trace_and_save(job, cluster, workers, checkpoints, note)
     print_budget(product)
     attributes = product.attrs
     typer.echo(
         f"{attributes['flights']:,} flights in {attributes['wall_seconds']:.1f} s on {attributes['workers']} workers"
     )
-    typer.echo(f"product: {path}")
-    name_next("summary", path)
+    _say_how_it_stopped(product)
+    typer.echo(f"product: {job.path}")
+    name_next(*(("merge", job.path, "...", "-o", "merged.nc") if job.share else ("summary", job.path)))
+
+
+def _is_done(job: Job, checkpoints: Checkpoints) -> bool:
+    """Whether the output is the product of this very run already; its checkpoints are of no more use then."""
+    try:
+        with open_product(job.path) as ds:
+            same = job.plan.is_told_by(ds.attrs)
+    except InputError:
+        same = False
+    if same:
+        checkpoints.remove()
+        typer.echo(f"product: {job.path} is complete already: nothing to do")
+        name_next("summary", job.path)
+        return True
+    check_output(job.path, job.overwrite)
+    return False
+
+
+def _check_checkpoints(job: Job, checkpoints: Checkpoints) -> None:
+    """See to it that a fresh start destroys no work unasked."""
+    if job.resume or not checkpoints.existing():
+        return
+    if not job.overwrite:
+        raise InputError(
+            f"{job.path}: an interrupted run has left a checkpoint; --resume goes on from it, --overwrite starts afresh"
+        )
+    checkpoints.remove()
+
+
+def _trace_and_save(
+    job: Job, cluster: str | None, workers: int | None, checkpoints: Checkpoints, note: Note
+) -> xr.Dataset:
+    try:
+        with chosen_executor(cluster, workers, note) as executor, shown_progress() as watch:
+            product = run(
+                job.plan.spec,
+                executor.workers,
+                watch,
+                executor.map_batches,
+                batches=job.plan.batches if job.share else None,
+                checkpoints=checkpoints,
+                note=note,
+            )
+        save_product(product, job.path, job.overwrite)
+    except KeyboardInterrupt:
+        note("interrupted", "", batches_kept=checkpoints.kept_batches)
+        raise Interrupted(
+            f"interrupted; {job.path} was not written. {_how_to_go_on(job, checkpoints)}"
+        ) from None
+    except TracerError as error:
+        note("failed", "", reason=str(error))
+        if checkpoints.begun and checkpoints.write() and checkpoints.kept:
+            raise type(error)(f"{error}. {_how_to_go_on(job, checkpoints)}") from None
+        raise
+    checkpoints.remove()
+    note("written", "", product=job.path, data_checksum=product.attrs["data_checksum"])
+    return product
+
+
+def _how_to_go_on(job: Job, checkpoints: Checkpoints) -> str:
+    if not checkpoints.kept:
+        return "No batch is kept. Run the same command to start again"
+    batches = checkpoints.kept_batches
+    kept = f"{batches} batches are kept" if batches else "A part of the first batch is kept"
+    return f"{kept}; go on with: {job.again}"
+
+
+def _say_how_it_stopped(product: xr.Dataset) -> None:
+    reached = product.attrs.get("stop_reached")
+    if reached is not None:
+        error = product.attrs.get("stop_relative_error")
+        known = "" if error is None else f", the region's mean known to {100 * error:.3g} %"
+        word = "reached" if reached else "NOT reached"
+        typer.echo(f"relative error asked for: {word} after {product.attrs['batches']} batches{known}")

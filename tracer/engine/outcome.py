@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator
 from pathlib import Path
+from types import EllipsisType
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -9,24 +10,26 @@ import xarray as xr
 from numpy.typing import NDArray
 
 from tracer.engine.folding import Folder
-from tracer.engine.hashing import run_hash, scene_hash
+from tracer.engine.planning import Plan
 from tracer.engine.references import scene_references
-from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.writing import run_file_text
-from tracer.engine.scene import Release, Scene, referenced_files
+from tracer.engine.scene import Scene
+from tracer.engine.tasks import BatchRange
 from tracer.errors import TracerError
 from tracer.fate import Fate
 from tracer.kernels.temperature import temperatures
 from tracer.product.assembling import assemble
+from tracer.product.batch_ranges import ranges_text
 from tracer.product.checksum import data_checksum
-from tracer.product.layout import has_lines
 from tracer.product.provenance import global_attributes
 from tracer.tally.axes import direction, middles
 from tracer.tally.budget import CLOSURE, budget_gap
-from tracer.tally.buffer import BufferLayout, tally_views
+from tracer.tally.buffer import tally_views
 from tracer.tally.field import FieldStatistics
 from tracer.tally.normalizing import ProductField, product_fields
-from tracer.tally.statistics import BatchStatistics
+from tracer.tally.statistics import replicate_counts
+
+Numbers = NDArray[np.float64]
 
 
 class Costs(NamedTuple):
@@ -36,7 +39,7 @@ class Costs(NamedTuple):
     workers: int
 
 
-def make_product(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> xr.Dataset:
+def make_product(plan: Plan, folder: Folder, costs: Costs) -> xr.Dataset:
     """Return the product of a finished run.
 
     Raises
@@ -44,11 +47,8 @@ def make_product(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> x
     TracerError
         The particle budget does not close, or the propagator gave up on an atom.
     """
-    each = [
-        _release_fields(scene, folder.layout, release, one)
-        for release, one in zip(scene.releases, folder.statistics, strict=True)
-    ]
-    fields = {name: _stacked([one[name] for one in each], has_lines(name)) for name in each[0]}
+    scene = plan.scene
+    fields = _fields(scene, folder)
     _check_budget(scene, fields["ledger"].mean)
     product = assemble(
         scene.grid,
@@ -56,47 +56,60 @@ def make_product(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> x
         [release.name for release in scene.releases],
         fields,
         _plain_fields(scene),
-        _attributes(spec, scene, folder, costs),
+        _attributes(plan, folder, costs),
         [line.name for line in scene.lines],
     )
     product.attrs["data_checksum"] = data_checksum(product)
     return product
 
 
-def _release_fields(
-    scene: Scene, layout: BufferLayout, release: Release, statistics: BatchStatistics
-) -> dict[str, FieldStatistics]:
-    def fields_of(buffer: NDArray[np.float64]) -> Iterator[ProductField]:
-        return product_fields(tally_views(layout, buffer), scene.grid, scene.planes, release.rate)
+def _fields(scene: Scene, folder: Folder) -> dict[str, FieldStatistics]:
+    """Return the tallied variables of all releases, each array made once and filled release by release."""
+    means: dict[str, Numbers] = {}
+    errors: dict[str, Numbers] = {}
+    replicates: dict[str, NDArray[np.float32]] = {}
+    whole = np.zeros(folder.layout.size)
+    for number, one in enumerate(folder.statistics):
 
-    replicates: dict[str, list[NDArray[np.float64]]] = {}
-    whole = np.zeros(layout.size)
-    for group in statistics.replicate_means():
-        whole[: layout.replicated_size] = group
-        for field in fields_of(whole):
-            if field.replicated:
-                replicates.setdefault(field.name, []).append(field.values * field.scale)
-    return {
-        mean.name: FieldStatistics(
-            mean.values * mean.scale,
-            error.values * error.scale,
-            np.stack(replicates[mean.name]) if mean.name in replicates else None,
-        )
-        for mean, error in zip(
-            fields_of(statistics.mean), fields_of(statistics.standard_error()), strict=True
-        )
-    }
+        def fields_of(buffer: Numbers, number: int = number) -> Iterator[ProductField]:
+            views = tally_views(folder.layout, buffer)
+            return product_fields(views, scene.grid, scene.planes, scene.releases[number].rate)
+
+        for field in fields_of(one.mean):
+            _put(means, field, number, folder)
+        for field in fields_of(one.standard_error()):
+            _put(errors, field, number, folder)
+        for group, row in enumerate(one.replicate_means()):
+            whole[: folder.layout.replicated_size] = row
+            for field in fields_of(whole):
+                if field.replicated:
+                    _put_replicate(replicates, field, number, group, folder)
+    return {name: FieldStatistics(mean, errors[name], replicates.get(name)) for name, mean in means.items()}
 
 
-def _stacked(releases: list[FieldStatistics], by_line: bool) -> FieldStatistics:
-    """Put the releases side by side: along the first axis, behind those of lines and replicates."""
-    axis = int(by_line)
-    kept = [one.replicates for one in releases if one.replicates is not None]
-    return FieldStatistics(
-        np.stack([one.mean for one in releases], axis=axis),
-        np.stack([one.standard_error for one in releases], axis=axis),
-        np.stack(kept, axis=axis + 1) if kept else None,
-    )
+def _put(made: dict[str, Numbers], field: ProductField, number: int, folder: Folder) -> None:
+    if field.name not in made:
+        made[field.name] = np.empty(_shape(field, folder))
+    np.multiply(field.values, field.scale, out=made[field.name][_place(field, number)])
+
+
+def _put_replicate(
+    made: dict[str, NDArray[np.float32]], field: ProductField, number: int, group: int, folder: Folder
+) -> None:
+    if field.name not in made:
+        groups = folder.statistics[0].groups
+        made[field.name] = np.empty((groups, *_shape(field, folder)), np.float32)
+    made[field.name][group][_place(field, number)] = field.values * field.scale
+
+
+def _shape(field: ProductField, folder: Folder) -> tuple[int, ...]:
+    """Return the shape over all releases: they stand first, behind the lines only."""
+    axis = int(field.by_line)
+    return (*field.values.shape[:axis], len(folder.statistics), *field.values.shape[axis:])
+
+
+def _place(field: ProductField, number: int) -> tuple[slice | int | EllipsisType, ...]:
+    return (*(slice(None),) * int(field.by_line), number, ...)
 
 
 def _check_budget(scene: Scene, ledger: NDArray[np.float64]) -> None:
@@ -123,28 +136,46 @@ def _plain_fields(scene: Scene) -> dict[str, NDArray[np.float64]]:
     return {"surface_temperature": kelvin.reshape(len(latitudes), len(local_times))}
 
 
-def _attributes(spec: RunSpec, scene: Scene, folder: Folder, costs: Costs) -> dict[str, Any]:
-    ensemble = spec.ensemble
-    scene_digest = scene_hash(scene, referenced_files(spec))
+def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
+    spec, ensemble = plan.spec, plan.spec.ensemble
+    batches = BatchRange(plan.batches.first, plan.batches.first + folder.batches)
     return {
         **global_attributes(
-            spec.title, f"traced from {Path(spec.file).name}", tuple(scene_references(scene))
+            spec.title, f"traced from {Path(spec.file).name}", tuple(scene_references(plan.scene))
         ),
         "run_file": run_file_text(spec),
-        "scene_hash": scene_digest,
-        "run_hash": run_hash(scene_digest, ensemble.seed, ensemble.particles_per_batch),
+        "scene_hash": plan.scene_hash,
+        "run_hash": plan.run_hash,
         "seed": ensemble.seed,
-        "batches": ensemble.batches,
+        "batches": batches.batches,
+        "batch_ranges": ranges_text([(ensemble.seed, *batches)]),
+        **_replicate_attributes(folder),
         "particles_per_batch": ensemble.particles_per_batch,
         "flights": folder.flights,
         "integration_steps": folder.steps,
         "kernel_seconds": folder.kernel_seconds,
         "wall_seconds": costs.wall_seconds,
         "workers": costs.workers,
-        "body_radius": scene.body.radius,
-        **_sun_attributes(scene, folder),
+        "body_radius": plan.scene.body.radius,
+        **_sun_attributes(plan.scene, folder),
+        **_stop_attributes(plan, folder),
         "complete": 1,
     }
+
+
+def _replicate_attributes(folder: Folder) -> dict[str, Any]:
+    """Return how many batches count into each replicate, in the order of the product's replicates."""
+    one = folder.statistics[0]
+    counts = replicate_counts(one.first_batch, one.batches, len(one.replicate_sum))
+    kept = [count for count in counts if count]
+    return {"replicate_batches": np.array(kept, dtype=np.int64)} if kept else {}
+
+
+def _stop_attributes(plan: Plan, folder: Folder) -> dict[str, Any]:
+    """Return whether the run was good enough when it ended; nothing where it was not asked to be."""
+    if plan.rule is None:
+        return {}
+    return {"stop_reached": int(folder.reached), "stop_relative_error": folder.relative_error()}
 
 
 def _sun_attributes(scene: Scene, folder: Folder) -> dict[str, Any]:

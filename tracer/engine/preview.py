@@ -1,14 +1,16 @@
 """What a run would do, without running it: the resolved scene in figures."""
 
+from collections.abc import Iterator
 from typing import NamedTuple
 
 import numpy as np
 
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
-from tracer.engine.executors.threads import WINDOW
 from tracer.engine.launching import draw_launches, ground_velocities
+from tracer.engine.memory import GIGABYTE, available_memory, sizes
 from tracer.engine.notes import scene_notes
+from tracer.engine.planning import make_plan
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g
@@ -32,8 +34,6 @@ from tracer.units import si
 
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
-FLOAT_BYTES = 8
-REPLICATE_BYTES = 4
 
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
@@ -116,7 +116,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
     """Return the figures of `scene`, for a run on `workers` threads."""
     body = scene.body
     releases = tuple(_preview_release(scene, release) for release in scene.releases)
-    memory, product_size = _sizes(spec, scene, workers)
+    memory, product_size = sizes(make_plan(spec, scene), workers)
     return Preview(
         body=spec.body.name,
         species=spec.gas.species,
@@ -133,12 +133,12 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         mass=scene.mass,
         loss_rate=scene.constant_hazard,
         releases=releases,
-        particles=spec.ensemble.particles_per_batch * spec.ensemble.batches * len(releases),
-        batches=spec.ensemble.batches,
+        particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
+        batches=spec.ensemble.most_batches,
         seed=spec.ensemble.seed,
         memory=memory,
         product_size=product_size,
-        notes=(*scene_notes(spec, scene), *_outflow_notes(releases)),
+        notes=(*scene_notes(spec, scene), *_outflow_notes(releases), *_memory_notes(memory)),
     )
 
 
@@ -211,17 +211,13 @@ def _law_temperature(release: Release, ground: float | None) -> float | None:
     return ground if release.speed.temperature is None else release.speed.temperature
 
 
-def _sizes(spec: RunSpec, scene: Scene, workers: int) -> tuple[int, int]:
-    """Return (memory, product size) [bytes]: buffers under way and folded, and the product uncompressed."""
-    layout = make_work(scene, 0, 1).layout
-    releases = len(scene.releases)
-    replicates = min(spec.ensemble.replicates, spec.ensemble.batches)
-    kept = replicates * layout.replicated_size
-    product = releases * (2 * layout.size * FLOAT_BYTES + kept * REPLICATE_BYTES)
-    folded = releases * (2 * layout.size + kept) * FLOAT_BYTES
-    under_way = (WINDOW * workers + 1) * layout.size * FLOAT_BYTES
-    # While the product is put together, the replicates exist in double precision once more.
-    return folded + under_way + product + releases * kept * FLOAT_BYTES, product
+def _memory_notes(needed: int) -> Iterator[str]:
+    there = available_memory()
+    if there is not None and needed > there:
+        yield (
+            f"{needed / GIGABYTE:.3g} GB of memory are more than the {there / GIGABYTE:.3g} GB available here: "
+            "the run would be refused"
+        )
 
 
 def _outflow_notes(releases: tuple[ReleasePreview, ...]) -> tuple[str, ...]:

@@ -8,7 +8,7 @@ class Status(NamedTuple):
     """How far a run has come.
 
     `atoms` of `atoms_expected` have been followed to their end, on `flights` launches; `batches` of
-    `batches_expected` are folded; `relative_error` is that of the mean content of the grid, None before two batches.
+    `batches_expected` are folded; `relative_error` is None before two batches.
     """
 
     atoms: int
@@ -17,6 +17,8 @@ class Status(NamedTuple):
     batches: int
     batches_expected: int
     relative_error: float | None
+    known: str
+    """What the relative error is one of, in words."""
     workers: int
 
 
@@ -28,13 +30,25 @@ class Watcher(Protocol):
         ...
 
 
+class Note(Protocol):
+    """Whoever keeps a record of what happens to a run, always called from the thread that called `run`."""
+
+    def __call__(self, event: str, text: str, **facts: float | str | None) -> None:
+        """Take note of `event` with its `facts`; `text` is the sentence for people, empty where they need none."""
+        ...
+
+
+def no_note(event: str, text: str, **facts: float | str | None) -> None:
+    """Take no note."""
+
+
 class Counter:
     """Atoms and flights so far, added up over the workers' threads."""
 
-    def __init__(self) -> None:
+    def __init__(self, atoms: int = 0, flights: int = 0) -> None:
         self._lock = Lock()
-        self.atoms = 0
-        self.flights = 0
+        self.atoms = atoms
+        self.flights = flights
 
     def add(self, atoms: int, flights: int) -> None:
         """Count what a slice has finished."""

@@ -1,26 +1,24 @@
 """The main job: from a run file to a product."""
 
 import os
-from collections.abc import Callable, Generator, Sequence
-from functools import partial
-from threading import Event
-from time import perf_counter
+from collections.abc import Generator
 
 import xarray as xr
 
-from tracer.engine.batches import BatchResult, Task, Work, compile_kernels, make_work, trace_batch
+from tracer.engine.batches import BatchResult, Task, compile_kernels
+from tracer.engine.checkpoint_slots import Checkpoints
+from tracer.engine.executors.seam import MapBatches, Tick
 from tracer.engine.executors.threads import map_batches
 from tracer.engine.folding import Folder
+from tracer.engine.interruption import deferred_interrupts
+from tracer.engine.memory import refuse_what_does_not_fit
 from tracer.engine.outcome import Costs, make_product
-from tracer.engine.progress import Counter, Status, Watcher
+from tracer.engine.planning import Plan, make_plan
+from tracer.engine.progress import Counter, Note, Status, Watcher, no_note
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
+from tracer.engine.tasks import BatchRange
 from tracer.errors import InputError
-
-MapBatches = Callable[
-    [Callable[[Task], BatchResult], Sequence[Task], int, Callable[[], None]],
-    Generator[tuple[Task, BatchResult], None, None],
-]
 
 
 def run(
@@ -28,6 +26,10 @@ def run(
     workers: int | None = None,
     watch: Watcher | None = None,
     executor: MapBatches = map_batches,
+    *,
+    batches: BatchRange | None = None,
+    checkpoints: Checkpoints | None = None,
+    note: Note = no_note,
 ) -> xr.Dataset:
     """Trace a run file's particles and return the product.
 
@@ -36,11 +38,18 @@ def run(
     spec : RunSpec
         As `tracer.load_run` gives it.
     workers : int, optional
-        Threads; the machine's processors by default. The product is the same to the last bit for any number.
+        Threads, or whatever else the executor has; the machine's processors by default. The product is the same to the
+        last bit for any number.
     watch : callable, optional
         Told of the progress now and then; nothing is shown without it.
     executor : callable
         Where batches run, see `tracer.engine.executors`.
+    batches : BatchRange, optional
+        A share of the run: these batches alone. `tracer merge` puts shares together.
+    checkpoints : Checkpoints, optional
+        Where the sums so far are kept, and whether to go on from them. Nothing is kept without it.
+    note : callable, optional
+        Told of what happens: checkpoints, lost workers, the decision of a stop rule.
 
     Returns
     -------
@@ -50,25 +59,26 @@ def run(
     Raises
     ------
     InputError
-        The run file cannot be resolved.
+        The run file cannot be resolved, needs more memory than there is, or the checkpoint belongs to another run.
     TracerError
-        The particle budget does not close.
+        The particle budget does not close, or the workers are lost.
     KeyboardInterrupt
-        Ctrl-C; the batches under way are given up within a slice.
+        Ctrl-C; the batches under way are given up within a slice, a checkpoint is written.
     """
     workers = available_processors() if workers is None else workers
     if workers < 1:
         raise InputError(f"workers: {workers} is too few; at least 1")
-    scene = build_scene(spec)
-    ensemble = spec.ensemble
-    work = make_work(scene, ensemble.seed, ensemble.particles_per_batch)
-    compile_kernels(work)
-    tasks = [Task(r, b) for b in range(ensemble.batches) for r in range(len(scene.releases))]
-    replicates = min(ensemble.replicates, ensemble.batches)
-    folder = Folder(work.layout, tasks, len(scene.releases), replicates)
-    begin = perf_counter()
-    _fold_all(work, tasks, workers, folder, watch, executor)
-    return make_product(spec, scene, folder, Costs(perf_counter() - begin, workers))
+    plan = make_plan(spec, build_scene(spec), batches)
+    refuse_what_does_not_fit(plan, workers)
+    compile_kernels(plan.work)
+    folder = plan.new_folder()
+    checkpoints = Checkpoints(None) if checkpoints is None else checkpoints
+    checkpoints.begin(plan.identity(), folder)
+    note("tracing", "", batches=folder.batches, batches_expected=plan.batches.batches, workers=workers)
+    _fold_all(plan, folder, workers, watch, executor, checkpoints)
+    wall_seconds = checkpoints.wall_seconds()
+    note("traced", "", batches=folder.batches, flights=folder.flights, wall_seconds=wall_seconds)
+    return make_product(plan, folder, Costs(wall_seconds, workers))
 
 
 def available_processors() -> int:
@@ -77,39 +87,56 @@ def available_processors() -> int:
 
 
 def _fold_all(
-    work: Work,
-    tasks: Sequence[Task],
-    workers: int,
+    plan: Plan,
     folder: Folder,
+    workers: int,
     watch: Watcher | None,
     executor: MapBatches,
+    checkpoints: Checkpoints,
 ) -> None:
-    stop = Event()
-    counter = Counter()
-    trace = partial(trace_batch, work, tell=counter.add, stopped=stop.is_set)
+    counter = Counter(folder.folded * plan.work.particles, folder.flights)
+    with deferred_interrupts() as interrupted:
 
-    def tick() -> None:
-        if watch is not None:
-            watch(_status(work, tasks, workers, folder, counter))
+        def tick() -> None:
+            if watch is not None:
+                watch(_status(plan, folder, workers, counter))
+            if interrupted():
+                raise KeyboardInterrupt
 
-    results = executor(trace, tasks, workers, tick)
+        if folder.done:
+            return
+        results = executor(plan.work, plan.tasks.behind(folder.folded), workers, counter.add, tick)
+        try:
+            while not folder.done and (arrived := _arrived(results, tick, checkpoints)) is not None:
+                folder.take(*arrived)
+                checkpoints.after_fold()
+            if watch is not None:
+                watch(_status(plan, folder, workers, counter))
+        finally:
+            # Whatever ended the loop, batches under way stop at their next slice.
+            results.close()
+
+
+def _arrived(
+    results: Generator[tuple[Task, BatchResult], None, None], tick: Tick, checkpoints: Checkpoints
+) -> tuple[Task, BatchResult] | None:
+    """Return what comes next, None at the end; whatever goes wrong meanwhile, the sums so far are whole and kept."""
     try:
-        for task, result in results:
-            folder.take(task, result)
-            tick()
-    finally:
-        # Whatever ended the loop, batches under way stop at their next slice.
-        stop.set()
-        results.close()
+        tick()
+        return next(results, None)
+    except BaseException:
+        checkpoints.write()
+        raise
 
 
-def _status(work: Work, tasks: Sequence[Task], workers: int, folder: Folder, counter: Counter) -> Status:
+def _status(plan: Plan, folder: Folder, workers: int, counter: Counter) -> Status:
     return Status(
         atoms=counter.atoms,
-        atoms_expected=len(tasks) * work.particles,
+        atoms_expected=folder.tasks * plan.work.particles,
         flights=counter.flights,
-        batches=folder.folded,
-        batches_expected=len(tasks),
+        batches=folder.batches,
+        batches_expected=plan.batches.batches,
         relative_error=folder.relative_error(),
+        known=plan.known,
         workers=workers,
     )

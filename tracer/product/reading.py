@@ -1,12 +1,17 @@
 """A product from its file."""
 
 import os
+from collections.abc import Mapping
 from pathlib import Path
+from typing import Any
 
+import netCDF4
+import numpy as np
 import xarray as xr
 
 from tracer.errors import InputError
 from tracer.product.assembling import with_label_indexes
+from tracer.product.inspecting import why_suspicious
 from tracer.product.layout import why_no_product
 from tracer.product.writing import COMPLETE
 
@@ -34,16 +39,21 @@ def open_product(path: str | os.PathLike[str]) -> xr.Dataset:
     name = os.fspath(path)
     _check_signature(name)
     try:
+        with netCDF4.Dataset(name) as file:
+            attributes = {key: file.getncattr(key) for key in file.ncattrs()}
+            reason = (
+                why_no_product(attributes, file.variables)
+                or _why_incomplete(attributes)
+                or why_suspicious(file, os.path.getsize(name))
+            )
+        if reason:
+            raise InputError(f"{name}: {reason}")
         # A mean life in seconds stays a number: nothing in a product is a date.
         ds = xr.open_dataset(Path(path), engine="netcdf4", decode_times=False)
     except (OSError, RuntimeError, ValueError, KeyError, AttributeError) as error:
         raise InputError(
             f"{name}: is damaged or cut short and cannot be read ({_first_line(error)})"
         ) from error
-    reason = why_no_product(ds.attrs, ds.variables) or _why_incomplete(ds)
-    if reason:
-        ds.close()
-        raise InputError(f"{name}: {reason}")
     indexed = with_label_indexes(ds)
     indexed.set_close(ds.close)
     return indexed
@@ -79,8 +89,8 @@ def _check_signature(name: str) -> None:
         raise InputError(f"{name}: is not a netCDF-4 file")
 
 
-def _why_incomplete(ds: xr.Dataset) -> str | None:
-    if ds.attrs.get(COMPLETE) == 1:
+def _why_incomplete(attributes: Mapping[str, Any]) -> str | None:
+    if np.array_equal(attributes.get(COMPLETE, 0), 1):
         return None
     return "is incomplete: writing it was not finished"
 

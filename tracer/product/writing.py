@@ -2,12 +2,10 @@
 
 import errno
 import os
-import secrets
 import shutil
 from collections.abc import Iterator
-from contextlib import contextmanager, suppress
+from contextlib import contextmanager
 from pathlib import Path
-from typing import Any
 
 import netCDF4
 import numpy as np
@@ -15,13 +13,12 @@ import xarray as xr
 
 from tracer.errors import InputError, TracerError
 from tracer.product.assembling import without_label_indexes
-from tracer.product.checksum import data_checksum
-from tracer.product.layout import BOUNDS, why_no_product
+from tracer.product.layout import why_no_product
+from tracer.product.netcdf import write_netcdf
+from tracer.product.replacing import put_in_place, sync, written_beside
 
 COMPLETE = "complete"
-COMPRESSION = {"zlib": True, "complevel": 1, "shuffle": True}
-NAME_START = 40
-"""Characters of the output's name kept in its temporary name, which must stay below 255 bytes."""
+CHECKSUM = "data_checksum"
 MEGABYTE = 1e6
 DISK_FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
 
@@ -34,7 +31,8 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
     Parameters
     ----------
     ds : xarray.Dataset
-        A product, from a run or from `open_product`. Its `data_checksum` is computed anew.
+        A product, from a run, `open_product` or `merged_product`; what is not in memory is written chunk by chunk.
+        Its `data_checksum` is computed anew.
     path : path
         The output.
     overwrite : bool
@@ -53,18 +51,17 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
         raise InputError(f"{os.fspath(path)}: the Dataset cannot be saved: {reason}")
     check_output(path, overwrite)
     target = Path(os.path.realpath(path))
-    stored = without_label_indexes(ds).drop_encoding()
-    stored.attrs = {key: value for key, value in ds.attrs.items() if key != COMPLETE}
-    stored.attrs["data_checksum"] = data_checksum(stored)
+    stored = without_label_indexes(ds)
+    stored.attrs = {key: value for key, value in ds.attrs.items() if key not in (COMPLETE, CHECKSUM)}
     with _written_beside(target, path, stored.nbytes) as beside:
-        stored.to_netcdf(beside, format="NETCDF4", engine="netcdf4", encoding=_encoding(stored))
-        _sync(beside)
+        checksum = write_netcdf(stored, beside)
+        sync(beside)
         with netCDF4.Dataset(beside, "a") as file:
+            file.setncattr(CHECKSUM, checksum)
             file.setncattr(COMPLETE, np.int32(1))
-        _sync(beside)
+        sync(beside)
         check_output(path, overwrite)
-        os.replace(beside, target)
-        _sync_folder(target.parent)
+        put_in_place(beside, target)
 
 
 def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
@@ -90,10 +87,9 @@ def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
     target = Path(os.path.realpath(path))
     with _written_beside(target, path, len(content)) as beside:
         beside.write_bytes(content)
-        _sync(beside)
+        sync(beside)
         check_output(path, overwrite)
-        os.replace(beside, target)
-        _sync_folder(target.parent)
+        put_in_place(beside, target)
 
 
 def check_output(path: StrPath, overwrite: bool = False) -> None:
@@ -122,15 +118,12 @@ def check_output(path: StrPath, overwrite: bool = False) -> None:
 
 @contextmanager
 def _written_beside(target: Path, path: StrPath, size: int) -> Iterator[Path]:
-    beside = target.with_name(f".{target.name[:NAME_START]}.{secrets.token_hex(6)}.part")
     try:
-        yield beside
+        with written_beside(target) as beside:
+            yield beside
     except (OSError, RuntimeError) as error:
         reason = _why_unwritten(error, target.parent, size)
         raise TracerError(f"{os.fspath(path)}: cannot be written: {reason}") from error
-    finally:
-        with suppress(FileNotFoundError):
-            beside.unlink()
 
 
 def _why_unwritten(error: OSError | RuntimeError, folder: Path, size: int) -> str:
@@ -138,30 +131,7 @@ def _why_unwritten(error: OSError | RuntimeError, folder: Path, size: int) -> st
     if number is not None and number > 0 and number not in DISK_FULL:
         return os.strerror(number)
     # The netCDF library names a full disk only as "HDF error", with no number of the system's.
+    if not folder.is_dir():
+        return f"there is no folder {folder}"
     free = shutil.disk_usage(folder).free
     return f"is the disk full? {free / MEGABYTE:.1f} MB free, up to {size / MEGABYTE:.1f} MB needed ({error})"
-
-
-def _encoding(ds: xr.Dataset) -> dict[str, dict[str, Any]]:
-    bare = {str(name) for name in ds.variables if name in ds.coords or str(name).endswith(BOUNDS)}
-    encoding: dict[str, dict[str, Any]] = {}
-    for name, variable in ds.variables.items():
-        if variable.dtype.kind == "f":
-            fill = None if name in bare else variable.dtype.type(np.nan)
-            encoding[str(name)] = {"_FillValue": fill, **(COMPRESSION if variable.ndim else {})}
-    return encoding
-
-
-def _sync(path: Path) -> None:
-    with open(path, "r+b") as file:
-        os.fsync(file.fileno())
-
-
-def _sync_folder(folder: Path) -> None:
-    # Not every system can open or sync a folder; the rename stands all the same.
-    with suppress(OSError):
-        descriptor = os.open(folder, os.O_RDONLY)
-        try:
-            os.fsync(descriptor)
-        finally:
-            os.close(descriptor)

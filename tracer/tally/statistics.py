@@ -1,5 +1,7 @@
 """Mean and standard error over batches, folded one batch at a time."""
 
+from collections.abc import Iterator
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -21,8 +23,9 @@ class BatchStatistics:
         Sums of the leading part of the buffers; batch b counts into replicate b mod replicates.
     """
 
-    def __init__(self, layout: BufferLayout, replicates: int) -> None:
+    def __init__(self, layout: BufferLayout, replicates: int, first_batch: int = 0) -> None:
         self.batches = 0
+        self.first_batch = first_batch
         self.mean = np.zeros(layout.size)
         self.squared_deviation = np.zeros(layout.size)
         self.replicate_sum = np.zeros((replicates, layout.replicated_size))
@@ -34,7 +37,7 @@ class BatchStatistics:
         """
         replicates, size = self.replicate_sum.shape
         if replicates:
-            self.replicate_sum[self.batches % replicates] += buffer[:size]
+            self.replicate_sum[(self.first_batch + self.batches) % replicates] += buffer[:size]
         self.batches += 1
         deviation = buffer - self.mean
         self.mean += deviation / self.batches
@@ -49,8 +52,25 @@ class BatchStatistics:
         error[self.mean == 0.0] = np.nan
         return error
 
-    def replicate_means(self) -> Floats:
-        """Return each replicate's mean over its batches, shape (replicates, layout.replicated_size)."""
-        replicates = self.replicate_sum.shape[0]
-        counts = np.array([len(range(i, self.batches, replicates)) for i in range(replicates)], dtype=float)
-        return np.asarray(self.replicate_sum / counts[:, np.newaxis])
+    def arrays(self) -> tuple[Floats, Floats, Floats]:
+        """Return the accumulators themselves, in a fixed order: all that a checkpoint needs beside `batches`."""
+        return self.mean, self.squared_deviation, self.replicate_sum
+
+    @property
+    def groups(self) -> int:
+        """Number of replicates into which a batch was counted."""
+        return min(len(self.replicate_sum), self.batches)
+
+    def replicate_means(self) -> Iterator[Floats]:
+        """Yield the mean, shape (layout.replicated_size,), of each replicate that has batches."""
+        replicates = len(self.replicate_sum)
+        for row, count in zip(
+            self.replicate_sum, replicate_counts(self.first_batch, self.batches, replicates), strict=True
+        ):
+            if count:
+                yield row / count
+
+
+def replicate_counts(first_batch: int, batches: int, replicates: int) -> list[int]:
+    """Return how many of `batches` batches from `first_batch` on count into each replicate."""
+    return [len(range((i - first_batch) % replicates, batches, replicates)) for i in range(replicates)]

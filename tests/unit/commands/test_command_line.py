@@ -89,7 +89,7 @@ def test_set_changes_the_run_and_is_recorded(folder):
 
 
 def test_interrupted_run_ends_with_3_and_leaves_nothing(folder, monkeypatch, capsys):
-    def interrupted(*_arguments):
+    def interrupted(*_arguments, **_options):
         raise KeyboardInterrupt
 
     monkeypatch.setattr("tracer.commands.run.run", interrupted)
@@ -204,3 +204,62 @@ def test_summary_shows_the_budget_and_verifies_the_checksum(folder, capsys):
 def test_summary_of_what_is_no_product_ends_with_2(folder, capsys):
     assert exit_code("summary", "ball.toml") == 2
     assert capsys.readouterr().err == "tracer: ball.toml: is not a netCDF-4 file\n"
+
+
+def test_shares_are_made_and_merged_into_the_whole(folder, capsys):
+    assert exit_code("run", "ball.toml", "-o", "whole.nc", "--set", "ensemble.batches=5") == 0
+    assert exit_code("run", "ball.toml", "-o", "first.nc", "--batches", "0:2") == 0
+    assert exit_code("run", "ball.toml", "-o", "second.nc", "--batches", "2:5") == 0
+    capsys.readouterr()
+    assert exit_code("merge", "second.nc", "first.nc", "-o", "merged.nc") == 0
+    shown = capsys.readouterr()
+    assert "5 batches of 2 products: seed 20310601 batches 0:5\n" in shown.out
+    assert "5 replicates, put together in single precision\n" in shown.out
+    assert "Next: tracer summary merged.nc" in shown.err
+    with tracer.open_product("merged.nc") as merged, tracer.open_product("whole.nc") as whole:
+        np.testing.assert_allclose(merged.number_density, whole.number_density, rtol=1e-12)
+        errors = [ds.number_density_standard_error for ds in (merged, whole)]
+        np.testing.assert_allclose(*errors, rtol=1e-6)
+    assert exit_code("merge", "second.nc", "first.nc", "-o", "merged.nc") == 2
+    assert "merged.nc: exists; --overwrite replaces it" in capsys.readouterr().err
+    assert exit_code("merge", "first.nc", "first.nc", "-o", "again.nc") == 2
+    assert "no batch counts twice" in capsys.readouterr().err
+    assert not Path("again.nc").exists()
+
+
+@pytest.mark.parametrize(
+    ("share", "message"),
+    [
+        ("5", '"5" is no range; write for example 20:40 for the batches 20 to 39, counted from 0'),
+        ("3:3", '"3:3" holds no batch; the first must be below the second'),
+        ("-1:3", '"-1:3" is no range; write for example 20:40 for the batches 20 to 39, counted from 0'),
+        ("0:1000000000000000", '"0:1000000000000000" is out of range; at most 15 digits'),
+    ],
+)
+def test_a_share_that_is_none_is_refused(folder, capsys, share, message):
+    assert exit_code("run", "ball.toml", f"--batches={share}") == 2
+    assert capsys.readouterr().err == f"tracer: --batches: {message}\n"
+
+
+def test_every_event_of_a_run_is_a_line_of_its_log(folder):
+    assert exit_code("run", "ball.toml", "--log", "log.jsonl", "--set", STOP) == 0
+    lines = [json.loads(line) for line in Path("log.jsonl").read_text(encoding="utf-8").splitlines()]
+    assert [line["event"] for line in lines] == ["tracing", "traced", "written"]
+    assert all(line["time"].endswith("+00:00") for line in lines)
+    with tracer.open_product("ball.nc") as ds:
+        assert lines[-1]["data_checksum"] == ds.attrs["data_checksum"]
+        assert lines[1]["flights"] == ds.attrs["flights"]
+    assert exit_code("run", "ball.toml", "-o", "b.nc", "--log", "nowhere/log.jsonl") == 2
+
+
+STOP = 'ensemble.stop={ variable="number_density", relative_error=0.9, at_most_batches=40 }'
+
+
+def test_a_run_until_good_enough_says_whether_it_was_reached(folder, capsys):
+    assert exit_code("run", "ball.toml", "--set", STOP) == 0
+    assert (
+        "relative error asked for: reached after 20 batches, the region's mean known to "
+        in capsys.readouterr().out
+    )
+    assert exit_code("check", "ball.toml", "--set", STOP) == 0
+    assert "at most 2,000 in at most 40 batches" in capsys.readouterr().out

@@ -35,8 +35,11 @@ def test_product_does_not_depend_on_the_workers(spec, small_product, workers):
 
 @pytest.mark.parametrize("order", [1, 2, 3])
 def test_product_does_not_depend_on_the_order_in_which_batches_end(spec, small_product, order):
-    def shuffled(trace, tasks, workers, tick):
-        results = [(task, trace(task)) for task in random.Random(order).sample(tasks, len(tasks))]
+    def shuffled(work, tasks, workers, tell, tick):
+        results = [
+            (task, trace_batch(work, task, tell, lambda: False))
+            for task in random.Random(order).sample(tasks, len(tasks))
+        ]
         assert [task for task, _ in results] != list(tasks)
         yield from results
 

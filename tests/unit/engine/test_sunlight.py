@@ -286,8 +286,9 @@ def test_product_in_sunlight_does_not_depend_on_the_workers(small_light_spec, sm
 def test_product_in_sunlight_does_not_depend_on_the_order_of_batches(
     small_light_spec, small_light_product, order
 ):
-    def shuffled(trace, tasks, workers, tick):
-        yield from [(task, trace(task)) for task in random.Random(order).sample(tasks, len(tasks))]
+    def shuffled(work, tasks, workers, tell, tick):
+        for task in random.Random(order).sample(tasks, len(tasks)):
+            yield task, trace_batch(work, task, tell, lambda: False)
 
     product = run(small_light_spec, executor=shuffled)
     assert product.attrs["data_checksum"] == small_light_product.attrs["data_checksum"]

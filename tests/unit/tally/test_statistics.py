@@ -54,14 +54,27 @@ def test_one_batch_has_no_error():
 @pytest.mark.parametrize("batches", [20, 23])
 def test_batch_counts_into_the_replicate_of_its_number(batches):
     buffers = some_buffers(batches)
-    replicates = folded(buffers, 5).replicate_means()
+    replicates = list(folded(buffers, 5).replicate_means())
     expected = [buffers[i::5, :4].mean(axis=0) for i in range(5)]
     np.testing.assert_allclose(replicates, expected, rtol=1e-13)
 
 
 def test_replicates_average_to_the_mean():
     statistics = folded(some_buffers(20), 5)
-    np.testing.assert_allclose(statistics.replicate_means().mean(axis=0), statistics.mean[:4], rtol=1e-13)
+    replicates = np.array(list(statistics.replicate_means()))
+    np.testing.assert_allclose(replicates.mean(axis=0), statistics.mean[:4], rtol=1e-13)
+
+
+@pytest.mark.parametrize(("first", "batches"), [(0, 20), (3, 5), (17, 23), (7, 2)])
+def test_share_counts_into_the_replicates_of_the_whole_run(first, batches):
+    buffers = some_buffers(batches)
+    statistics = BatchStatistics(LAYOUT, 5, first)
+    for buffer in buffers:
+        statistics.fold(buffer)
+    numbers = first + np.arange(batches)
+    expected = [buffers[numbers % 5 == i, :4].mean(axis=0) for i in range(5) if (numbers % 5 == i).any()]
+    assert statistics.groups == len(expected)
+    np.testing.assert_allclose(list(statistics.replicate_means()), expected, rtol=1e-13)
 
 
 def test_budget_gap_is_relative():

@@ -1,43 +1,38 @@
 """Batches on threads of this process; the kernels run without the interpreter's lock."""
 
-from collections.abc import Callable, Generator, Sequence
+from collections.abc import Generator, Sequence
 from concurrent.futures import FIRST_COMPLETED, Future, ThreadPoolExecutor, wait
-from itertools import islice
+from threading import Event
 
-from tracer.engine.batches import BatchResult, Task
-
-POLL_SECONDS = 0.1
-"""How long a wait may last before Ctrl-C is looked for."""
-
-WINDOW = 2
-"""Tasks under way or waiting to be folded, per worker: bounds the memory."""
+from tracer.engine.batches import BatchResult, Task, Work, trace_batch
+from tracer.engine.executors.seam import POLL_SECONDS, Queue, Tell, Tick, window
 
 
 def map_batches(
-    trace: Callable[[Task], BatchResult], tasks: Sequence[Task], workers: int, tick: Callable[[], None]
+    work: Work, tasks: Sequence[Task], workers: int, tell: Tell, tick: Tick
 ) -> Generator[tuple[Task, BatchResult], None, None]:
-    """Yield (task, result) for each task, in the order in which they finish; `tick` is called while waiting.
-
-    Tasks start in their order; a new one starts when a result was taken. Whoever stops early, or is interrupted, tells
-    `trace` to give up: tasks under way are left to end by themselves.
-    """
-    waiting = iter(tasks)
+    """Yield (task, result) for each task, in the order in which they finish; see `tracer.engine.executors.seam`."""
+    queue = Queue(tasks)
+    size = window(workers, len(work.scene.releases))
+    stop = Event()
     pool = ThreadPoolExecutor(workers, thread_name_prefix="tracer")
-    running: dict[Future[BatchResult], Task] = {}
+    running: dict[Future[BatchResult], tuple[int, Task]] = {}
 
-    def start(count: int) -> None:
-        for task in islice(waiting, count):
-            running[pool.submit(trace, task)] = task
+    def start() -> None:
+        for place, task in queue.startable(size):
+            running[pool.submit(trace_batch, work, task, tell, stop.is_set)] = place, task
 
     try:
-        start(WINDOW * workers)
+        start()
         while running:
             done, _ = wait(running, timeout=POLL_SECONDS, return_when=FIRST_COMPLETED)
             tick()
             for future in done:
-                task = running.pop(future)
+                place, task = running.pop(future)
                 yield task, future.result()
-                start(1)
+                queue.finish(place)
+                start()
     finally:
-        # Waiting here would wait for whole batches: only the caller can tell them to stop.
+        # Tasks under way end by themselves at their next slice: nothing waits for them here.
+        stop.set()
         pool.shutdown(wait=False, cancel_futures=True)

@@ -3,6 +3,7 @@
 from pydantic import Field
 
 from tracer.engine.runspec.number import Count, CountOrNone, SeveralOf
+from tracer.engine.runspec.stop import StopTable
 from tracer.engine.runspec.table import Table
 
 
@@ -19,3 +20,9 @@ class EnsembleTable(Table):
         description="Groups of batches kept for the errors of sums; 0 switches them off, more than `batches` "
         "count as `batches`.",
     )
+    stop: StopTable | None = Field(None, description="Run until good enough, instead of `batches`.")
+
+    @property
+    def most_batches(self) -> int:
+        """Batches that the run has at the most."""
+        return self.batches if self.stop is None else self.stop.at_most_batches

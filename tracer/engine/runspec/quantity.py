@@ -63,6 +63,7 @@ NOT_NEGATIVE = Interval(at_least=0.0)
 
 Length = Annotated[Quantity, Measured("length", Interval(above=0.0, at_most=1e18))]
 LengthOrRadii = Annotated[Quantity, Measured("length or radii", POSITIVE)]
+AltitudeEnd = Annotated[Quantity, Measured("length or radii", NOT_NEGATIVE)]
 Wavelength = Annotated[Quantity, Measured("wavelength", POSITIVE)]
 SkyOffset = Annotated[Quantity, Measured("length or radii")]
 Temperature = Annotated[Quantity, Measured("temperature", POSITIVE)]
