@@ -88,9 +88,7 @@ def test_ctrl_c_ends_with_3_keeps_a_checkpoint_and_says_how_to_go_on(start, fold
     assert interrupted.code == 3
     last = interrupted.err.splitlines()[-1]
     assert last.startswith("tracer: interrupted; ball.nc was not written. ")
-    assert last.endswith(
-        " kept; go on with: tracer run ball.toml -o ball.nc --workers 2 --resume"
-    )
+    assert last.endswith(" kept; go on with: tracer run ball.toml -o ball.nc --workers 2 --resume")
     assert names(folder)[-1] == "ball.toml"
     done = start(last.partition("go on with: tracer ")[2].split()).wait()
     assert done.code == 0
