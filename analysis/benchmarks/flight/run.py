@@ -63,15 +63,16 @@ def contestants(case: Case, program: Path, file: Path, few: int) -> dict[str, Ca
         seconds, steps, trials, ends = kernel_ends(case, DEFAULT_TOLERANCE, count)
         return Result(seconds, count, steps, trials, ends)
 
+    # The better of two, as of the C program.
     def integrated() -> Result:
-        seconds, steps = traced(case.work, case.launches)
+        seconds, steps = min(traced(case.work, case.launches) for _ in range(2))
         return Result(seconds, count, steps)
 
     field: dict[str, Callable[[], Result]] = {
         f"C, counting {word}": lambda tally=tally: fly_c(program, file, tally, count)  # type: ignore[misc]
         for tally, word in enumerate(TALLIES)
     }
-    field["integrated kernel, counting nothing"] = kernel
+    field["integrated kernel, counting nothing"] = lambda: min(kernel(), kernel(), key=lambda r: r.seconds)
     field["integrated kernel, counting all"] = integrated
     field["arcs, gravity alone, counting all"] = lambda: Result(traced(case.gravity, case.launches)[0], count)
     field[f"SciPy RK45, rtol {RELATIVE_TOLERANCE:.0e}"] = lambda: Result(

@@ -8,7 +8,9 @@ import time
 from pathlib import Path
 
 RUN_FILES = ("mercury-sodium.toml", "harrow-helium.toml")
-RUNS = Path(__file__).parents[3] / "runs"
+ROOT = Path(__file__).parents[3]
+"""This checkout: it is what Python imports there, whatever else is installed."""
+
 FIRST_BATCH = """
 import sys
 from pathlib import Path
@@ -26,7 +28,7 @@ def timed(command: list[str], cache: str) -> tuple[float, float]:
     """Return (seconds by the clock, processor seconds) of `command` with kernels kept in `cache`."""
     before, clock = os.times(), time.perf_counter()
     environment = {**os.environ, "XDG_CACHE_HOME": cache}
-    subprocess.run(command, check=True, stdout=subprocess.DEVNULL, env=environment)
+    subprocess.run(command, check=True, stdout=subprocess.DEVNULL, env=environment, cwd=ROOT)
     after = os.times()
     spent = after.children_user + after.children_system - before.children_user - before.children_system
     return time.perf_counter() - clock, spent
@@ -39,7 +41,7 @@ def main() -> int:
         helped = [sys.executable, "-m", "tracer", "--help"]
         rows.append(("tracer --help", min(timed(helped, cache) for _ in range(REPEATS))))
     for name in RUN_FILES:
-        command = [sys.executable, "-c", FIRST_BATCH, str(RUNS / name)]
+        command = [sys.executable, "-c", FIRST_BATCH, str(ROOT / "runs" / name)]
         with tempfile.TemporaryDirectory() as cache:
             rows.append((f"{name}: first batch, first start", timed(command, cache)))
             second = min(timed(command, cache) for _ in range(REPEATS))
