@@ -33,38 +33,51 @@ class Cells(NamedTuple):
 @inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
+    return close_layer(cells, r, rough_logarithm((r - cells.radius) / cells.first_altitude) * cells.cells_per_log)
+
+
+@inlined
+def close_layer(cells, r, guess):
+    """Return the altitude cell of `r` [m], -1 above the grid's top, by a rough `guess` of cells above the first."""
     last = cells.radii.shape[0] - 2
     if r >= cells.radii[last + 1]:
         return -1
-    altitude = r - cells.radius
-    if altitude < cells.first_altitude:
+    if r - cells.radius < cells.first_altitude:
         return 0
-    guess = 1 + int(rough_logarithm(altitude / cells.first_altitude) * cells.cells_per_log)
-    guess = min(last, max(0, guess))
+    layer = min(last, max(0, 1 + int(guess)))
     # The edges themselves decide.
-    while r < cells.radii[guess]:
-        guess -= 1
-    while r >= cells.radii[guess + 1]:
-        guess += 1
-    return guess
+    while r < cells.radii[layer]:
+        layer -= 1
+    while r >= cells.radii[layer + 1]:
+        layer += 1
+    return layer
 
 
 @inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
+    return row_at(cells, (rough_arcsine(sine) / math.pi + 0.5) * cells.latitude_cells, sine)
+
+
+@inlined
+def row_at(cells, place, sine):
+    """Return the latitude cell of sin(latitude) = `sine` by its rough `place` in cells."""
     number = cells.latitude_cells
-    place = (rough_arcsine(sine) / math.pi + 0.5) * number
     if not _clear_of_edges(place, ARCSINE_ERROR / math.pi * number):
-        angle = math.asin(min(1.0, max(-1.0, sine)))
-        place = (angle / math.pi + 0.5) * number
+        place = (math.asin(min(1.0, max(-1.0, sine))) / math.pi + 0.5) * number
     return min(number - 1, max(0, int(place)))
 
 
 @inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
+    return column_at(cells, (0.5 + rough_angle(x, y) / (2.0 * math.pi)) * cells.local_time_cells, x, y)
+
+
+@inlined
+def column_at(cells, place, x, y):
+    """Return the local-time cell of (x, y) by its rough `place` in cells."""
     number = cells.local_time_cells
-    place = (0.5 + rough_angle(x, y) / (2.0 * math.pi)) * number
     if not _clear_of_edges(place, ANGLE_ERROR / (2.0 * math.pi) * number):
         place = (0.5 + math.atan2(y, x) / (2.0 * math.pi)) * number
     cell = int(place)

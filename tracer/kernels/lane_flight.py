@@ -1,0 +1,146 @@
+"""One lane at a time: where a flight begins, what its step meets, and the parts that it flies by itself."""
+
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.crossing import GROUND, OUTER
+from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, START, place_at, set_component
+from tracer.kernels.endings import AGED, CROSSED, LANDED, UNRESOLVED
+from tracer.kernels import integrated_flight as one
+from tracer.kernels import lanes as row
+from tracer.kernels.lane_step import MOST_GRIDS, lane_slopes
+from tracer.kernels.lanes import WIDTH
+from tracer.kernels.motion import rates_of_change
+from tracer.kernels.shadow import LIT, PENUMBRA, UMBRA, zone_beyond
+from tracer.kernels.step_control import STEP_SHARE
+
+
+@inlined
+def alone(tables, zone):
+    """Return True where an atom in `zone` flies by itself: in part of the light, or pushed by too many lines."""
+    return not (zone == UMBRA or (zone == LIT and tables[0] <= MOST_GRIDS))
+
+
+@kernel
+def enter_lane(lanes, lane, sky, tables, flight, tolerance, time_limit):
+    """Put `flight` into a lane, where it goes on with `tolerance` for `time_limit` [s] since its launch."""
+    allowed = STEP_SHARE * tolerance
+    lanes[row.PER_ALLOWED + lane] = 1.0 / (allowed * allowed)
+    lanes[row.TIME_LIMIT + lane] = time_limit
+    return_to_lane(lanes, lane, sky, tables, flight)
+
+
+@kernel
+def return_to_lane(lanes, lane, sky, tables, flight):
+    """Let a flight that went on by itself go on in its lane; a flight in part of the light has no slopes there."""
+    for i in range(6):
+        lanes[row.START + i * WIDTH + lane] = flight[one.PLACE + i]
+    zone = int(flight[one.ZONE])
+    if not alone(tables, zone):
+        place = one.place_of(flight)
+        acceleration, thinning = lane_slopes(sky, tables, zone, place[:3], place[3:])
+        _set_slopes(lanes, row.START, lane, acceleration, thinning)
+    lanes[row.TIME + lane] = flight[one.TIME]
+    lanes[row.STEP + lane] = flight[one.STEP]
+    lanes[row.OPEN_STEP + lane] = flight[one.OPEN_STEP]
+    lanes[row.ZONE + lane] = flight[one.ZONE]
+    lanes[row.TRIALS + lane] = flight[one.TRIALS]
+
+
+@kernel
+def take_from_lane(lanes, lane, sky, tables, flight):
+    """Set `flight` to that of a lane, so that it can go on by itself."""
+    for i in range(6):
+        flight[one.PLACE + i] = lanes[row.START + i * WIDTH + lane]
+    flight[one.HAZARDS] = 0.0
+    flight[one.HAZARDS + 1] = 0.0
+    flight[one.TIME] = lanes[row.TIME + lane]
+    flight[one.STEP] = lanes[row.STEP + lane]
+    flight[one.OPEN_STEP] = lanes[row.OPEN_STEP + lane]
+    flight[one.ZONE] = lanes[row.ZONE + lane]
+    flight[one.TRIALS] = lanes[row.TRIALS + lane]
+    place = one.place_of(flight)
+    one.set_slopes(flight, rates_of_change(sky, tables, int(flight[one.ZONE]), place[:3], place[3:]))
+
+
+@kernel
+def look_closer(lanes, lane, sky, tables, curve):
+    """Decide what a flagged step met: cut it there, end the flight, or let it pass."""
+    if lanes[row.ACCEPTED + lane] == 0.0:
+        lanes[row.STANDING + lane] = UNRESOLVED
+        return
+    zone = int(lanes[row.ZONE + lane])
+    start = _state(lanes, row.START, lane)
+    end = _state(lanes, row.END, lane)
+    near = one.surfaces_near(sky, zone, start, end)
+    if near[0] or near[1] or near[2]:
+        _draw_curve(lanes, lane, curve)
+        surface, part = one.first_surface(sky, zone, curve, near, start, end)
+        if part <= 1.0:
+            _cut(lanes, lane, sky, tables, curve, zone, surface, part)
+            return
+    if lanes[row.LAST + lane] > 0.0:
+        lanes[row.STANDING + lane] = AGED
+    elif lanes[row.TRIALS + lane] >= one.MOST_TRIALS:
+        lanes[row.STANDING + lane] = UNRESOLVED
+
+
+@inlined
+def _cut(lanes, lane, sky, tables, curve, zone, surface, part):
+    """End a lane's step at `part` of its curve, at `surface`."""
+    place = place_at(curve, part)
+    lanes[row.FLOWN + lane] = part
+    for i in range(6):
+        lanes[row.END + i * WIDTH + lane] = place[i]
+    if surface == GROUND:
+        lanes[row.STANDING + lane] = LANDED
+        return
+    if surface == OUTER:
+        lanes[row.STANDING + lane] = CROSSED
+        return
+    beyond = zone_beyond(sky.shadow, zone, surface)
+    lanes[row.ZONE + lane] = beyond
+    step = lanes[row.STEP + lane]
+    if beyond == PENUMBRA:
+        lanes[row.OPEN_STEP + lane] = step
+        lanes[row.STEP + lane] = min(step, one.EDGE_PART * one.crossing_time(sky.shadow, place))
+    else:
+        lanes[row.STEP + lane] = max(step, lanes[row.OPEN_STEP + lane])
+    if not alone(tables, beyond):
+        acceleration, thinning = lane_slopes(sky, tables, beyond, place[:3], place[3:])
+        _set_slopes(lanes, row.END, lane, acceleration, thinning)
+
+
+@inlined
+def _draw_curve(lanes, lane, curve):
+    h = lanes[row.LENGTH + lane]
+    curve[START] = lanes[row.TIME + lane]
+    curve[LENGTH] = h
+    curve[FLOWN] = 1.0
+    curve[CURVE_ZONE] = lanes[row.ZONE + lane]
+    for i in range(6):
+        at = i * WIDTH + lane
+        first = lanes[row.START + 3 * WIDTH + at]
+        last = lanes[row.SEVENTH + at]
+        set_component(
+            curve, i, lanes[row.START + at], lanes[row.GROWTH + at], h, first, last, lanes[row.QUARTIC + at]
+        )
+
+
+@inlined
+def _state(lanes, first, lane):
+    return (
+        lanes[first + lane],
+        lanes[first + WIDTH + lane],
+        lanes[first + 2 * WIDTH + lane],
+        lanes[first + 3 * WIDTH + lane],
+        lanes[first + 4 * WIDTH + lane],
+        lanes[first + 5 * WIDTH + lane],
+    )
+
+
+@inlined
+def _set_slopes(lanes, first, lane, acceleration, thinning):
+    lanes[first + row.ACCELERATION + lane] = acceleration[0]
+    lanes[first + row.ACCELERATION + row.Y + lane] = acceleration[1]
+    lanes[first + row.ACCELERATION + row.Z + lane] = acceleration[2]
+    lanes[first + row.THINNING + lane] = thinning
+
