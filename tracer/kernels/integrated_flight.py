@@ -44,7 +44,7 @@ from tracer.kernels.shadow import (
     zone_at,
     zone_beyond,
 )
-from tracer.kernels.step_control import error_scales, first_step, step_change, step_error
+from tracer.kernels.step_control import error_scales, first_step, inverse_root, step_change, step_error
 
 TIME = 0
 PLACE = 1
@@ -105,7 +105,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
     scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
-    h = min(flight[STEP], longest_step(r, speed_squared, slopes[0]))
+    h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
         h = min(h, _longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
@@ -319,14 +319,14 @@ def _cut(flight, curve, conditions, zone, surface, part):
     return FLYING
 
 
-@merged
-def longest_step(r, speed_squared, acceleration):
-    """Return the time [s] in which an atom can come about as far as it is from the centre.
+@inlined
+def longest_step(per_r, speed_squared, acceleration):
+    """Return the time [s], to a hundredth, in which an atom can come about as far as it is from the centre.
 
     A way without gravity has no error to bound its steps, and could pass the body twice in one.
     """
     pull = abs(acceleration[0]) + abs(acceleration[1]) + abs(acceleration[2])
-    return r / math.sqrt(speed_squared + pull * r)
+    return inverse_root(max(per_r * (speed_squared * per_r + pull), 1e-300))
 
 
 @kernel

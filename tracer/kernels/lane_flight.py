@@ -1,16 +1,18 @@
 """One lane at a time: where a flight begins, what its step meets, and the parts that it flies by itself."""
 
+import math
+
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.crossing import GROUND, OUTER
 from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, START, place_at, set_component
-from tracer.kernels.endings import AGED, CROSSED, LANDED, UNRESOLVED
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
 from tracer.kernels.lane_step import MOST_GRIDS, lane_slopes
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.motion import rates_of_change
-from tracer.kernels.shadow import LIT, PENUMBRA, UMBRA, zone_beyond
-from tracer.kernels.step_control import STEP_SHARE
+from tracer.kernels.shadow import LIT, PENUMBRA, UMBRA, zone_at, zone_beyond
+from tracer.kernels.step_control import STEP_SHARE, first_step
 
 
 @inlined
@@ -20,24 +22,41 @@ def alone(tables, zone):
 
 
 @kernel
-def enter_lane(lanes, lane, sky, tables, flight, tolerance, time_limit):
-    """Put `flight` into a lane, where it goes on with `tolerance` for `time_limit` [s] since its launch."""
+def launch_in_lane(lanes, lane, conditions, tolerance, time_limit, place):
+    """Launch an atom at `place` (x, y, z [m], vx, vy, vz [m s-1]), to fly with `tolerance` for `time_limit` [s].
+
+    What `integrated_flight.start_flight` does.
+    """
+    sky, tables = conditions.sky, conditions.push_tables
+    x, y, z, vx, vy, vz = place
+    zone = zone_at(sky.shadow, x, y, z)
+    r = math.sqrt(x * x + y * y + z * z)
+    speed = math.sqrt(vx * vx + vy * vy + vz * vz)
+    step = first_step(sky.forces, tolerance, r, (x * vx + y * vy + z * vz) / r, speed)
+    lanes[row.OPEN_STEP + lane] = step
+    lanes[row.STEP + lane] = step
+    if zone == PENUMBRA:
+        lanes[row.STEP + lane] = one.EDGE_PART * one.crossing_time(sky.shadow, place)
+    for i in range(6):
+        lanes[row.START + i * WIDTH + lane] = place[i]
+    _set_slopes(lanes, row.START, lane, sky, tables, zone, place)
     allowed = STEP_SHARE * tolerance
     lanes[row.PER_ALLOWED + lane] = 1.0 / (allowed * allowed)
     lanes[row.TIME_LIMIT + lane] = time_limit
-    return_to_lane(lanes, lane, sky, tables, flight)
+    lanes[row.TIME + lane] = 0.0
+    lanes[row.ZONE + lane] = zone
+    lanes[row.TRIALS + lane] = 0.0
+    lanes[row.KEPT + lane] = 1.0
+    lanes[row.STANDING + lane] = FLYING
 
 
 @kernel
 def return_to_lane(lanes, lane, sky, tables, flight):
-    """Let a flight that went on by itself go on in its lane; a flight in part of the light has no slopes there."""
+    """Let a flight that went on by itself go on in its lane."""
+    place = one.place_of(flight)
     for i in range(6):
-        lanes[row.START + i * WIDTH + lane] = flight[one.PLACE + i]
-    zone = int(flight[one.ZONE])
-    if not alone(tables, zone):
-        place = one.place_of(flight)
-        acceleration, thinning = lane_slopes(sky, tables, zone, place[:3], place[3:])
-        _set_slopes(lanes, row.START, lane, acceleration, thinning)
+        lanes[row.START + i * WIDTH + lane] = place[i]
+    _set_slopes(lanes, row.START, lane, sky, tables, int(flight[one.ZONE]), place)
     lanes[row.TIME + lane] = flight[one.TIME]
     lanes[row.STEP + lane] = flight[one.STEP]
     lanes[row.OPEN_STEP + lane] = flight[one.OPEN_STEP]
@@ -104,9 +123,7 @@ def _cut(lanes, lane, sky, tables, curve, zone, surface, part):
         lanes[row.STEP + lane] = min(step, one.EDGE_PART * one.crossing_time(sky.shadow, place))
     else:
         lanes[row.STEP + lane] = max(step, lanes[row.OPEN_STEP + lane])
-    if not alone(tables, beyond):
-        acceleration, thinning = lane_slopes(sky, tables, beyond, place[:3], place[3:])
-        _set_slopes(lanes, row.END, lane, acceleration, thinning)
+    _set_slopes(lanes, row.END, lane, sky, tables, beyond, place)
 
 
 @inlined
@@ -138,9 +155,13 @@ def _state(lanes, first, lane):
 
 
 @inlined
-def _set_slopes(lanes, first, lane, acceleration, thinning):
+def _set_slopes(lanes, first, lane, sky, tables, zone, place):
+    """Set what a state needs beside its place; an atom that goes on by itself needs none of it."""
+    if alone(tables, zone):
+        return
+    acceleration, thinning, nearness = lane_slopes(sky, tables, zone, place[:3], place[3:])
     lanes[first + row.ACCELERATION + lane] = acceleration[0]
     lanes[first + row.ACCELERATION + row.Y + lane] = acceleration[1]
     lanes[first + row.ACCELERATION + row.Z + lane] = acceleration[2]
     lanes[first + row.THINNING + lane] = thinning
-
+    lanes[first + row.NEARNESS + lane] = nearness

@@ -31,6 +31,7 @@ from tracer.kernels.lanes import (
     SAMPLE_R,
     SEVENTH,
     START,
+    STATE_ROWS,
     THINNING,
     TIME,
     VELOCITY,
@@ -73,37 +74,9 @@ def survival(u):
 
 @kernel
 def sample_steps(lanes, sky, cells):
-    """Take the sample at the part DRAWN of the flown step in every lane, and book what the step takes from the atom."""
+    """Take the sample at the part DRAWN of the flown step in every lane, book what the step takes, and go on from its end."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
-    cells_per_turn = cells.local_time_cells / (2.0 * math.pi)
-    rows_per_angle = cells.latitude_cells / math.pi
-    per_first = 1.0 / cells.first_altitude
-    for lane in range(WIDTH):
-        flown = lane_value(lanes, FLOWN + lane)
-        part = flown * lane_value(lanes, DRAWN + lane)
-        h = lane_value(lanes, LENGTH + lane)
-        x = _place(lanes, 0, lane, h, part)
-        y = _place(lanes, Y, lane, h, part)
-        z = _place(lanes, Z, lane, h, part)
-        vx = _velocity(lanes, 0, lane, h, part)
-        vy = _velocity(lanes, Y, lane, h, part)
-        vz = _velocity(lanes, Z, lane, h, part)
-        level = fused(x, x, y * y)
-        r = math.sqrt(fused(z, z, level))
-        sx = forces.distance - x
-        s2 = fused(sx, sx, fused(y, y, z * z))
-        lit = lane_value(lanes, LIT + lane)
-        set_lane_value(lanes, SAMPLE + lane, x)
-        set_lane_value(lanes, SAMPLE + Y + lane, y)
-        set_lane_value(lanes, SAMPLE + Z + lane, z)
-        set_lane_value(lanes, SAMPLE_R + lane, r)
-        set_lane_value(lanes, RECEIVED + lane, lit * full_light / s2)
-        approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
-        set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
-        set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
-        set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
-        set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
     lit_ionizing = full_light * losses.ionizing
     lit_thinned = full_light * (losses.ionizing + losses.other_sunlight)
     thinned = full_light * losses.other_distance
@@ -138,15 +111,37 @@ def sample_steps(lanes, sky, cells):
         set_lane_value(lanes, IONIZED + lane, lost * share)
         set_lane_value(lanes, KEPT + lane, kept * survives)
         set_lane_value(lanes, TIME + lane, lane_value(lanes, TIME + lane) + duration)
-
-
-@kernel
-def go_on(lanes):
-    """Go on from the end of the step in every lane that accepted one."""
-    for row in range(10):
-        for lane in range(WIDTH):
+    cells_per_turn = cells.local_time_cells / (2.0 * math.pi)
+    rows_per_angle = cells.latitude_cells / math.pi
+    per_first = 1.0 / cells.first_altitude
+    for lane in range(WIDTH):
+        flown = lane_value(lanes, FLOWN + lane)
+        part = flown * lane_value(lanes, DRAWN + lane)
+        h = lane_value(lanes, LENGTH + lane)
+        x = _place(lanes, 0, lane, h, part)
+        y = _place(lanes, Y, lane, h, part)
+        z = _place(lanes, Z, lane, h, part)
+        vx = _velocity(lanes, 0, lane, h, part)
+        vy = _velocity(lanes, Y, lane, h, part)
+        vz = _velocity(lanes, Z, lane, h, part)
+        level = fused(x, x, y * y)
+        r = math.sqrt(fused(z, z, level))
+        sx = forces.distance - x
+        s2 = fused(sx, sx, fused(y, y, z * z))
+        lit = lane_value(lanes, LIT + lane)
+        set_lane_value(lanes, SAMPLE + lane, x)
+        set_lane_value(lanes, SAMPLE + Y + lane, y)
+        set_lane_value(lanes, SAMPLE + Z + lane, z)
+        set_lane_value(lanes, SAMPLE_R + lane, r)
+        set_lane_value(lanes, RECEIVED + lane, lit * full_light / s2)
+        approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
+        set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
+        set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
+        set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
+        set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
+        accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
+        for row in range(STATE_ROWS):
             at = row * WIDTH + lane
-            accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
             stands = lane_value(lanes, START + at)
             set_lane_value(lanes, START + at, lane_value(lanes, END + at) if accepted else stands)
 

@@ -38,6 +38,7 @@ from tracer.kernels.lanes import (
     LAST,
     LENGTH,
     LIT,
+    NEARNESS,
     PER_ALLOWED,
     QUARTIC,
     SECOND,
@@ -137,13 +138,14 @@ def try_steps(lanes, sky, tables):
         _set_vector(lanes, END + VELOCITY + lane, v7)
         _set_vector(lanes, END + ACCELERATION + lane, slopes[0])
         set_lane_value(lanes, END + THINNING + lane, slopes[1])
+        set_lane_value(lanes, END + NEARNESS + lane, slopes[2])
     _judge(lanes, sky)
     _flag(lanes, sky)
 
 
 @kernel
 def lane_slopes(sky, tables, zone, position, velocity):
-    """Return ((ax, ay, az) [m s-2], 1/D^2 [m-2]) at the start of a flight in `zone`, full light or umbra."""
+    """Return ((ax, ay, az) [m s-2], 1/D^2 [m-2], 1/r [m-1]) where a flight enters `zone`, full light or umbra."""
     return _rates(_numbers(sky, tables), tables, 1.0 if zone == FULL_LIGHT else 0.0, position, velocity)
 
 
@@ -177,7 +179,7 @@ def _pushed(tables, grid, velocity):
 
 @inlined
 def _rates(numbers, tables, lit, position, velocity):
-    """Return ((ax, ay, az) [m s-2], 1/D^2 [m-2]) as `motion.rates_of_change` does where `lit` is 0 or 1."""
+    """Return ((ax, ay, az) [m s-2], 1/D^2 [m-2], 1/r [m-1]), see `motion.rates_of_change`, where `lit` is 0 or 1."""
     forces, full_light, one_grid, other_grid = numbers
     x, y, z = position
     vx, vy, vz = velocity
@@ -189,7 +191,8 @@ def _rates(numbers, tables, lit, position, velocity):
     # One division for both distances.
     inverse = 1.0 / (r3 * s2)
     thinning = r3 * inverse
-    pull = forces.gm * (s2 * inverse)
+    per_r3 = s2 * inverse
+    pull = forces.gm * per_r3
     per_s = math.sqrt(s2) * thinning
     ux, uy, uz = sx * per_s, y * per_s, z * per_s
     light = (lit * full_light) * thinning
@@ -202,7 +205,7 @@ def _rates(numbers, tables, lit, position, velocity):
         fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level))),
         fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy))),
         -fused(pull, z, sunward * uz),
-    ), thinning
+    ), thinning, r2 * per_r3
 
 
 @inlined
@@ -238,10 +241,9 @@ def _set_stage(lanes, row, velocity, slopes):
 @inlined
 def _choose_lengths(lanes):
     for lane in range(WIDTH):
-        x, y, z = _vector(lanes, START + lane)
-        vx, vy, vz = _vector(lanes, START + VELOCITY + lane)
-        r = math.sqrt(x * x + y * y + z * z)
-        longest = longest_step(r, vx * vx + vy * vy + vz * vz, _first(lanes, lane))
+        v = _vector(lanes, START + VELOCITY + lane)
+        per_r = lane_value(lanes, START + NEARNESS + lane)
+        longest = longest_step(per_r, v[0] * v[0] + v[1] * v[1] + v[2] * v[2], _first(lanes, lane))
         h = min(lane_value(lanes, STEP + lane), longest)
         left = lane_value(lanes, TIME_LIMIT + lane) - lane_value(lanes, TIME + lane)
         last = h >= left
@@ -274,14 +276,13 @@ def _judge(lanes, sky):
         _set_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
         set_lane_value(lanes, QUARTIC + 6 * WIDTH + lane, quartic_row(h, u, u3, u4, u5, u6, u7))
         set_lane_value(lanes, GROWTH + 6 * WIDTH + lane, solution_row(h, u, u3, u4, u5, u6))
-        x, y, z = _vector(lanes, START + lane)
-        r2 = x * x + y * y + z * z
         hazard = lane_value(lanes, LIT + lane) * lit_hazard + dark_hazard
         of_hazard = hazard * error_row(h, u, u3, u4, u5, u6, u7)
+        per_r = lane_value(lanes, START + NEARNESS + lane)
+        v2 = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
         squared = lane_value(lanes, PER_ALLOWED + lane) * (
-            _squared_error(h, v, v3, v4, v5, v6, v7) / r2
-            + _squared_error(h, a, a3, a4, a5, a6, a7)
-            / (v[0] * v[0] + v[1] * v[1] + v[2] * v[2] + forces.gm / math.sqrt(r2))
+            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_r * per_r)
+            + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v2)
             + of_hazard * of_hazard
         )
         accepted = squared <= 1.0
@@ -300,7 +301,6 @@ def _flag(lanes, sky):
     forces, _, shadow = sky
     lowest = forces.radius * forces.radius
     highest = forces.outer_radius * forces.outer_radius
-    terminator = shadow.radius * shadow.penumbra_sine
     edges = shadow.kind != NO_SHADOW
     for lane in range(WIDTH):
         x, y, z = _vector(lanes, START + lane)
@@ -313,15 +313,31 @@ def _flag(lanes, sky):
         end_climb = end_x * end_vx + end_y * end_vy + end_z * end_vz
         dips = (climb < 0.0) & (end_climb > 0.0)
         turns = (climb > 0.0) & (end_climb < 0.0) & (4.0 * max(r2, end_r2) > highest)
-        sunward = (x > terminator) & (end_x > terminator) & ((vx >= 0.0) | (end_vx <= 0.0))
-        shaded = edges & ((lane_value(lanes, LIT + lane) == 0.0) | (not sunward))
-        met = (end_r2 < lowest) | dips | (end_r2 > highest) | turns | shaded
+        # The surface that bounds full light or umbra, see `shadow`: passed, or neared and then left.
+        lit = lane_value(lanes, LIT + lane) > 0.0
+        sign = 1.0 if lit else -1.0
+        sine = shadow.penumbra_sine if lit else -shadow.umbra_sine
+        cosine = shadow.penumbra_cosine if lit else shadow.umbra_cosine
+        above, rate = _cone(shadow.radius, sine, cosine, x, y, z, vx, vy, vz)
+        end_above, end_rate = _cone(shadow.radius, sine, cosine, end_x, end_y, end_z, end_vx, end_vy, end_vz)
+        edge = edges & ((sign * end_above < 0.0) | ((sign * rate <= 0.0) & (sign * end_rate >= 0.0)))
+        met = (end_r2 < lowest) | dips | (end_r2 > highest) | turns | edge
         accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
         too_short = not (lane_value(lanes, STEP + lane) > SHORTEST_STEP * lane_value(lanes, TIME + lane))
         stuck = (lane_value(lanes, TRIALS + lane) >= MOST_TRIALS) | ((not accepted) & too_short)
         ends = accepted & (met | (lane_value(lanes, LAST + lane) > 0.0))
         flagged = (stuck | ends) & (lane_value(lanes, STANDING + lane) == FLYING)
         set_lane_value(lanes, FLAGGED + lane, 1.0 if flagged else 0.0)
+
+
+@inlined
+def _cone(radius, sine, cosine, x, y, z, vx, vy, vz):
+    """Return the height [m] over a cone that touches the body, or over its base, and a number with its rate's sign."""
+    rho = math.sqrt(y * y + z * z)
+    cone = fused(rho, cosine, fused(x, sine, -radius))
+    base = fused(-radius, sine, x)
+    rate = fused(y * vy + z * vz, cosine, (vx * sine) * rho)
+    return max(cone, base), rate if cone > base else vx
 
 
 @inlined

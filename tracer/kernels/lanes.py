@@ -14,13 +14,15 @@ WIDTH = 16
 Y, Z = WIDTH, 2 * WIDTH
 """From the row of a vector's x to those of its y and z."""
 
-VELOCITY, ACCELERATION, THINNING = 3 * WIDTH, 6 * WIDTH, 9 * WIDTH
-"""From the row of a state's x to those of its other numbers: vx, ax, and the inverse square of the Sun's distance."""
+VELOCITY, ACCELERATION, THINNING, NEARNESS = 3 * WIDTH, 6 * WIDTH, 9 * WIDTH, 10 * WIDTH
+"""From the row of a state's x to those of its vx, its ax, the inverse square of the Sun's distance, and that of 1/r."""
+
+STATE_ROWS = 11
 
 _ROWS = (
     # The flight as it stands, and as it will after the step that was tried.
-    ("START", 10),
-    ("END", 10),
+    ("START", STATE_ROWS),
+    ("END", STATE_ROWS),
     # Time since launch [s] and its limit, the next step [s], the step before the present zone, the zone, the number of
     # trial steps, how the flight stands.
     ("TIME", 1),

@@ -25,6 +25,9 @@ GREATEST_CHANGE = 5.0
 ROOT_BITS = 5.06766e18 / 2.0**32
 """Of all offsets between the upper bits of a number and of its inverse tenth root the one with the least error."""
 
+HALF_BITS = 0x5FE6EB50C7B537A9
+"""The same for the inverse square root."""
+
 WHOLE = 2.0**52
 """The sum of it and a whole number below it holds that number in its last bits."""
 
@@ -76,6 +79,13 @@ def inverse_tenth_root(value):
     y2 = y * y
     y4 = y2 * y2
     return y * (1.1 - 0.1 * value * (y4 * y4 * y2))
+
+
+@inlined
+def inverse_root(value):
+    """Return value^(-1/2) of a positive `value` to two thousandths, in the same way."""
+    y = np.int64(HALF_BITS - (np.float64(value).view(np.int64) >> 1)).view(np.float64)
+    return y * (1.5 - 0.5 * value * (y * y))
 
 
 @kernel

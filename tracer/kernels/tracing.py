@@ -10,9 +10,9 @@ from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.integrated_flight import ZONE as ZONE_OF_FLIGHT
-from tracer.kernels.integrated_flight import advance, start_flight
-from tracer.kernels.lane_flight import alone, enter_lane, look_closer, return_to_lane, take_from_lane
-from tracer.kernels.lane_sample import go_on, sample_steps
+from tracer.kernels.integrated_flight import advance
+from tracer.kernels.lane_flight import alone, launch_in_lane, look_closer, return_to_lane, take_from_lane
+from tracer.kernels.lane_sample import sample_steps
 from tracer.kernels.lane_scoring import score_lanes
 from tracer.kernels.lane_step import try_steps
 from tracer.kernels.lanes import (
@@ -99,14 +99,13 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                 lanes[DRAWN + lane] = rng.random()
         sample_steps(lanes, sky, world.cells)
         score_lanes(world, tally, lanes, resume.shine)
-        go_on(lanes)
     return flights
 
 
 @merged
 def _begin_flight(world, launches, resume, tally, lane):
     """Launch the lane's atom again, or a new one, or leave the lane vacant if there are no more."""
-    atom, flight, lanes = resume.atoms[lane], resume.flight, resume.lanes
+    atom, lanes = resume.atoms[lane], resume.lanes
     if atom[UNDER_WAY] == 0.0:
         if resume.counters[RELEASED] == launches.weights.shape[0]:
             lanes[STANDING + lane] = VACANT
@@ -114,19 +113,14 @@ def _begin_flight(world, launches, resume, tally, lane):
         release(world, launches, resume.counters[RELEASED], atom, tally)
         resume.counters[RELEASED] += 1
     lanes[ALIVE + lane] = take_off(atom, tally)
-    lanes[KEPT + lane] = 1.0
-    lanes[STANDING + lane] = FLYING
     light = world.light
-    tolerance = light.tolerance * _care(atom)
-    start_flight(flight, light.conditions, tolerance, atom[0], atom[1], atom[2], atom[3], atom[4], atom[5])
-    enter_lane(
+    launch_in_lane(
         lanes,
         lane,
-        light.conditions.sky,
-        light.conditions.push_tables,
-        flight,
-        tolerance,
+        light.conditions,
+        light.tolerance * _care(atom),
         world.motion.age_limit - atom[AGE],
+        (atom[0], atom[1], atom[2], atom[3], atom[4], atom[5]),
     )
 
 
