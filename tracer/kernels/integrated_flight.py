@@ -107,7 +107,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
     h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
-        h = min(h, _longest_step_in_penumbra(sky.shadow, place))
+        h = min(h, longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
     while True:
         last = h >= left
@@ -330,7 +330,7 @@ def longest_step(per_r, speed_squared, acceleration):
 
 
 @kernel
-def _longest_step_in_penumbra(shadow, place):
+def longest_step_in_penumbra(shadow, place):
     """Return a step [s] that goes just over the nearest edge, where the light has no second derivative."""
     return max(OVERSHOOT * time_to_edge(shadow, place), LEAST_EDGE_PART * crossing_time(shadow, place))
 

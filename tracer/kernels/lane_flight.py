@@ -8,17 +8,10 @@ from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, START, place_
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
-from tracer.kernels.lane_step import MOST_GRIDS, lane_slopes
+from tracer.kernels.lane_step import lane_place, lane_rates
 from tracer.kernels.lanes import WIDTH
-from tracer.kernels.motion import rates_of_change
-from tracer.kernels.shadow import LIT, PENUMBRA, UMBRA, zone_at, zone_beyond
+from tracer.kernels.shadow import PENUMBRA, zone_at, zone_beyond
 from tracer.kernels.step_control import STEP_SHARE, first_step
-
-
-@inlined
-def alone(tables, zone):
-    """Return True where an atom in `zone` flies by itself: in part of the light, or pushed by too many lines."""
-    return not (zone == UMBRA or (zone == LIT and tables[0] <= MOST_GRIDS))
 
 
 @kernel
@@ -39,7 +32,7 @@ def launch_in_lane(lanes, lane, conditions, tolerance, time_limit, place):
         lanes[row.STEP + lane] = one.EDGE_PART * one.crossing_time(sky.shadow, place)
     for i in range(6):
         lanes[row.START + i * WIDTH + lane] = place[i]
-    _set_slopes(lanes, row.START, lane, sky, tables, zone, place)
+    _set_rates(lanes, row.START, lane, sky, tables, zone, place)
     allowed = STEP_SHARE * tolerance
     lanes[row.PER_ALLOWED + lane] = 1.0 / (allowed * allowed)
     lanes[row.TIME_LIMIT + lane] = time_limit
@@ -51,44 +44,14 @@ def launch_in_lane(lanes, lane, conditions, tolerance, time_limit, place):
 
 
 @kernel
-def return_to_lane(lanes, lane, sky, tables, flight):
-    """Let a flight that went on by itself go on in its lane."""
-    place = one.place_of(flight)
-    for i in range(6):
-        lanes[row.START + i * WIDTH + lane] = place[i]
-    _set_slopes(lanes, row.START, lane, sky, tables, int(flight[one.ZONE]), place)
-    lanes[row.TIME + lane] = flight[one.TIME]
-    lanes[row.STEP + lane] = flight[one.STEP]
-    lanes[row.OPEN_STEP + lane] = flight[one.OPEN_STEP]
-    lanes[row.ZONE + lane] = flight[one.ZONE]
-    lanes[row.TRIALS + lane] = flight[one.TRIALS]
-
-
-@kernel
-def take_from_lane(lanes, lane, sky, tables, flight):
-    """Set `flight` to that of a lane, so that it can go on by itself."""
-    for i in range(6):
-        flight[one.PLACE + i] = lanes[row.START + i * WIDTH + lane]
-    flight[one.HAZARDS] = 0.0
-    flight[one.HAZARDS + 1] = 0.0
-    flight[one.TIME] = lanes[row.TIME + lane]
-    flight[one.STEP] = lanes[row.STEP + lane]
-    flight[one.OPEN_STEP] = lanes[row.OPEN_STEP + lane]
-    flight[one.ZONE] = lanes[row.ZONE + lane]
-    flight[one.TRIALS] = lanes[row.TRIALS + lane]
-    place = one.place_of(flight)
-    one.set_slopes(flight, rates_of_change(sky, tables, int(flight[one.ZONE]), place[:3], place[3:]))
-
-
-@kernel
 def look_closer(lanes, lane, sky, tables, curve):
     """Decide what a flagged step met: cut it there, end the flight, or let it pass."""
     if lanes[row.ACCEPTED + lane] == 0.0:
         lanes[row.STANDING + lane] = UNRESOLVED
         return
     zone = int(lanes[row.ZONE + lane])
-    start = _state(lanes, row.START, lane)
-    end = _state(lanes, row.END, lane)
+    start = lane_place(lanes, row.START, lane)
+    end = lane_place(lanes, row.END, lane)
     near = one.surfaces_near(sky, zone, start, end)
     if near[0] or near[1] or near[2]:
         _draw_curve(lanes, lane, curve)
@@ -123,7 +86,7 @@ def _cut(lanes, lane, sky, tables, curve, zone, surface, part):
         lanes[row.STEP + lane] = min(step, one.EDGE_PART * one.crossing_time(sky.shadow, place))
     else:
         lanes[row.STEP + lane] = max(step, lanes[row.OPEN_STEP + lane])
-    _set_slopes(lanes, row.END, lane, sky, tables, beyond, place)
+    _set_rates(lanes, row.END, lane, sky, tables, beyond, place)
 
 
 @inlined
@@ -135,7 +98,7 @@ def _draw_curve(lanes, lane, curve):
     curve[CURVE_ZONE] = lanes[row.ZONE + lane]
     for i in range(6):
         at = i * WIDTH + lane
-        first = lanes[row.START + 3 * WIDTH + at]
+        first = lanes[row.START + row.VELOCITY + at]
         last = lanes[row.SEVENTH + at]
         set_component(
             curve, i, lanes[row.START + at], lanes[row.GROWTH + at], h, first, last, lanes[row.QUARTIC + at]
@@ -143,25 +106,12 @@ def _draw_curve(lanes, lane, curve):
 
 
 @inlined
-def _state(lanes, first, lane):
-    return (
-        lanes[first + lane],
-        lanes[first + WIDTH + lane],
-        lanes[first + 2 * WIDTH + lane],
-        lanes[first + 3 * WIDTH + lane],
-        lanes[first + 4 * WIDTH + lane],
-        lanes[first + 5 * WIDTH + lane],
-    )
-
-
-@inlined
-def _set_slopes(lanes, first, lane, sky, tables, zone, place):
-    """Set what a state needs beside its place; an atom that goes on by itself needs none of it."""
-    if alone(tables, zone):
-        return
-    acceleration, thinning, nearness = lane_slopes(sky, tables, zone, place[:3], place[3:])
+def _set_rates(lanes, first, lane, sky, tables, zone, place):
+    """Set what a state holds beside its place."""
+    acceleration, light, other, nearness = lane_rates(sky, tables, zone, place[:3], place[3:])
     lanes[first + row.ACCELERATION + lane] = acceleration[0]
     lanes[first + row.ACCELERATION + row.Y + lane] = acceleration[1]
     lanes[first + row.ACCELERATION + row.Z + lane] = acceleration[2]
-    lanes[first + row.THINNING + lane] = thinning
+    lanes[first + row.LIGHT + lane] = light
+    lanes[first + row.OTHER + lane] = other
     lanes[first + row.NEARNESS + lane] = nearness

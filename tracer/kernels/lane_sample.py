@@ -21,8 +21,11 @@ from tracer.kernels.lanes import (
     LAYER,
     LENGTH,
     LIFE,
+    LIGHT,
     LIT,
     LOST,
+    OTHER,
+    PARTIAL,
     QUARTIC,
     RECEDING,
     RECEIVED,
@@ -30,9 +33,11 @@ from tracer.kernels.lanes import (
     SAMPLE,
     SAMPLE_R,
     SEVENTH,
+    STAGE_ACCELERATION,
+    STAGE_LIGHT,
+    STAGE_OTHER,
     START,
     STATE_ROWS,
-    THINNING,
     TIME,
     VELOCITY,
     WIDTH,
@@ -77,24 +82,19 @@ def sample_steps(lanes, sky, cells):
     """Take the sample at the part DRAWN of the flown step in every lane, book what the step takes, and go on from its end."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
-    lit_ionizing = full_light * losses.ionizing
-    lit_thinned = full_light * (losses.ionizing + losses.other_sunlight)
-    thinned = full_light * losses.other_distance
+    per_light = losses.ionizing + losses.other_sunlight
     for lane in range(WIDTH):
         flown = lane_value(lanes, FLOWN + lane)
         part = flown * lane_value(lanes, DRAWN + lane)
         h = lane_value(lanes, LENGTH + lane)
-        lit = lane_value(lanes, LIT + lane)
-        per_thinning = lit * lit_thinned + thinned
-        steady = (lit * losses.other_lit + losses.other_everywhere) * h
-        growth = lane_value(lanes, GROWTH + 6 * WIDTH + lane)
-        bend = h * lane_value(lanes, START + THINNING + lane) - growth
-        rest = growth - h * lane_value(lanes, SEVENTH + 6 * WIDTH + lane) - bend
-        quartic = lane_value(lanes, QUARTIC + 6 * WIDTH + lane)
-        through = _at(flown, 0.0, growth, bend, rest, quartic)
-        grown = fused(per_thinning, through, steady * flown)
-        half = fused(per_thinning, _at(0.5 * flown, 0.0, growth, bend, rest, quartic), steady * (0.5 * flown))
-        before_sample = fused(per_thinning, _at(part, 0.0, growth, bend, rest, quartic), steady * part)
+        light = _integral(lanes, lane, h, LIGHT, STAGE_LIGHT)
+        other = _integral(lanes, lane, h, OTHER, STAGE_OTHER)
+        steady = losses.other_everywhere * h
+        lit_through = _at(flown, 0.0, light)
+        grown = fused(per_light, lit_through, fused(steady, flown, _at(flown, 0.0, other)))
+        middle = 0.5 * flown
+        half = fused(per_light, _at(middle, 0.0, light), fused(steady, middle, _at(middle, 0.0, other)))
+        before_sample = fused(per_light, _at(part, 0.0, light), fused(steady, part, _at(part, 0.0, other)))
         kept = lane_value(lanes, KEPT + lane)
         alive = lane_value(lanes, ALIVE + lane) * kept
         mean, survives = survival(grown)
@@ -102,7 +102,7 @@ def sample_steps(lanes, sky, cells):
         excess = half - 0.5 * grown
         bent = math.sqrt(survives) * excess * fused(0.5, excess, -1.0)
         lost = alive * (grown * mean)
-        share = lit * lit_ionizing * through / (grown if grown > 0.0 else 1.0)
+        share = losses.ionizing * lit_through / (grown if grown > 0.0 else 1.0)
         duration = flown * h
         _, sampled = survival(before_sample)
         set_lane_value(lanes, CONTENT + lane, alive * sampled * duration)
@@ -128,12 +128,13 @@ def sample_steps(lanes, sky, cells):
         r = math.sqrt(fused(z, z, level))
         sx = forces.distance - x
         s2 = fused(sx, sx, fused(y, y, z * z))
-        lit = lane_value(lanes, LIT + lane)
         set_lane_value(lanes, SAMPLE + lane, x)
         set_lane_value(lanes, SAMPLE + Y + lane, y)
         set_lane_value(lanes, SAMPLE + Z + lane, z)
         set_lane_value(lanes, SAMPLE_R + lane, r)
-        set_lane_value(lanes, RECEIVED + lane, lit * full_light / s2)
+        # What part of the Sun an atom in the penumbra sees is left to `lane_scoring`.
+        seen = max(lane_value(lanes, LIT + lane), lane_value(lanes, PARTIAL + lane))
+        set_lane_value(lanes, RECEIVED + lane, seen * full_light / s2)
         approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
         set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
         set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
@@ -147,25 +148,50 @@ def sample_steps(lanes, sky, cells):
 
 
 @inlined
-def _at(part, start, growth, bend, rest, quartic):
+def _at(part, start, coefficients):
     """Return `dense_output.component_at`."""
+    growth, bend, rest, quartic = coefficients
     left = 1.0 - part
     return fused(part, fused(left, fused(part, fused(left, quartic, rest), bend), growth), start)
 
 
 @inlined
+def _coefficients(h, growth, first_slope, last_slope, quartic):
+    """Return what `dense_output.set_component` stores."""
+    bend = fused(h, first_slope, -growth)
+    return growth, bend, fused(-h, last_slope, growth) - bend, quartic
+
+
+@inlined
 def _place(lanes, axis, lane, h, part):
-    start = lane_value(lanes, START + axis + lane)
-    growth = lane_value(lanes, GROWTH + axis + lane)
-    bend = fused(h, lane_value(lanes, START + VELOCITY + axis + lane), -growth)
-    rest = growth - h * lane_value(lanes, SEVENTH + axis + lane) - bend
-    return _at(part, start, growth, bend, rest, lane_value(lanes, QUARTIC + axis + lane))
+    coefficients = _coefficients(
+        h,
+        lane_value(lanes, GROWTH + axis + lane),
+        lane_value(lanes, START + VELOCITY + axis + lane),
+        lane_value(lanes, SEVENTH + axis + lane),
+        lane_value(lanes, QUARTIC + axis + lane),
+    )
+    return _at(part, lane_value(lanes, START + axis + lane), coefficients)
 
 
 @inlined
 def _velocity(lanes, axis, lane, h, part):
-    start = lane_value(lanes, START + VELOCITY + axis + lane)
-    growth = lane_value(lanes, GROWTH + VELOCITY + axis + lane)
-    bend = fused(h, lane_value(lanes, START + ACCELERATION + axis + lane), -growth)
-    rest = growth - h * lane_value(lanes, SEVENTH + VELOCITY + axis + lane) - bend
-    return _at(part, start, growth, bend, rest, lane_value(lanes, QUARTIC + VELOCITY + axis + lane))
+    coefficients = _coefficients(
+        h,
+        lane_value(lanes, GROWTH + VELOCITY + axis + lane),
+        lane_value(lanes, START + ACCELERATION + axis + lane),
+        lane_value(lanes, SEVENTH + STAGE_ACCELERATION + axis + lane),
+        lane_value(lanes, QUARTIC + VELOCITY + axis + lane),
+    )
+    return _at(part, lane_value(lanes, START + VELOCITY + axis + lane), coefficients)
+
+
+@inlined
+def _integral(lanes, lane, h, rate, later):
+    return _coefficients(
+        h,
+        lane_value(lanes, GROWTH + later + lane),
+        lane_value(lanes, START + rate + lane),
+        lane_value(lanes, SEVENTH + later + lane),
+        lane_value(lanes, QUARTIC + later + lane),
+    )

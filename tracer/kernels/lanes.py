@@ -14,10 +14,15 @@ WIDTH = 16
 Y, Z = WIDTH, 2 * WIDTH
 """From the row of a vector's x to those of its y and z."""
 
-VELOCITY, ACCELERATION, THINNING, NEARNESS = 3 * WIDTH, 6 * WIDTH, 9 * WIDTH, 10 * WIDTH
-"""From the row of a state's x to those of its vx, its ax, the inverse square of the Sun's distance, and that of 1/r."""
+VELOCITY, ACCELERATION, LIGHT, OTHER, NEARNESS = (rows * WIDTH for rows in (3, 6, 9, 10, 11))
+"""From the row of a state's x to those of its vx, its ax, the light received, the rate of other losses, and 1/r."""
 
-STATE_ROWS = 11
+STATE_ROWS = 12
+
+STAGE_ACCELERATION, STAGE_LIGHT, STAGE_OTHER = (rows * WIDTH for rows in (3, 6, 7))
+"""From the row of a stage's vx to those of its ax, its light and its other losses."""
+
+STAGE_ROWS = 8
 
 _ROWS = (
     # The flight as it stands, and as it will after the step that was tried.
@@ -36,25 +41,29 @@ _ROWS = (
     ("PER_ALLOWED", 1),
     ("ALIVE", 1),
     ("KEPT", 1),
-    # The step that was tried: its length [s]; 1 where the light is full; 1 where age ends it, where it is accepted,
-    # where it needs a closer look; the factor to the next; the part of it that is flown.
+    # The step that was tried: its length [s]; 1 where only part of the Sun is seen; the part that is; the push of lines
+    # beyond the first tables [m s-2]; 1 where age ends it, where it is accepted, where it needs a closer look; the
+    # factor to the next; the part of it that is flown.
     ("LENGTH", 1),
+    ("PARTIAL", 1),
     ("LIT", 1),
+    ("EXTRA", 1),
     ("LAST", 1),
     ("ACCEPTED", 1),
     ("FLAGGED", 1),
     ("CHANGE", 1),
     ("FLOWN", 1),
-    # Its stages: velocity, acceleration, thinning.
-    ("SECOND", 7),
-    ("THIRD", 7),
-    ("FOURTH", 7),
-    ("FIFTH", 7),
-    ("SIXTH", 7),
-    ("SEVENTH", 7),
-    # Growth of place, velocity and the thinning's integral over the whole step; the quartic coefficients of the same.
-    ("GROWTH", 7),
-    ("QUARTIC", 7),
+    # Its stages: velocity, acceleration, light and other losses.
+    ("SECOND", STAGE_ROWS),
+    ("THIRD", STAGE_ROWS),
+    ("FOURTH", STAGE_ROWS),
+    ("FIFTH", STAGE_ROWS),
+    ("SIXTH", STAGE_ROWS),
+    ("SEVENTH", STAGE_ROWS),
+    # Growth of place, velocity and the integrals of light and other losses over the whole step; the quartic
+    # coefficients of the same.
+    ("GROWTH", STAGE_ROWS),
+    ("QUARTIC", STAGE_ROWS),
     # The sample: an even random number; place; distance from the centre; atoms; light received; radial velocity from
     # the Sun; the cells, counted with fractions.
     ("DRAWN", 1),
@@ -93,7 +102,9 @@ PER_ALLOWED = _FIRST["PER_ALLOWED"]
 ALIVE = _FIRST["ALIVE"]
 KEPT = _FIRST["KEPT"]
 LENGTH = _FIRST["LENGTH"]
+PARTIAL = _FIRST["PARTIAL"]
 LIT = _FIRST["LIT"]
+EXTRA = _FIRST["EXTRA"]
 LAST = _FIRST["LAST"]
 ACCEPTED = _FIRST["ACCEPTED"]
 FLAGGED = _FIRST["FLAGGED"]
@@ -128,4 +139,5 @@ def new_lanes() -> np.ndarray:
     """Return lanes without flights, their numbers such as no formula stumbles over."""
     lanes = np.ones(LANES_SIZE)
     lanes[STANDING : STANDING + WIDTH] = VACANT
+    lanes[EXTRA : EXTRA + WIDTH] = 0.0
     return lanes

@@ -21,7 +21,7 @@ def visible_fraction(x, y, z, distance, radius, sun_radius):
     s = math.sqrt(s2)
     # Sine and cosine of the body's angular radius, times r, and of the separation of the centres, times r s.
     low = radius if r2 > radius * radius else math.sqrt(r2)
-    horizon = math.sqrt(r2 - low * low)
+    horizon = math.sqrt(max(0.0, r2 - radius * radius))
     across = distance * math.sqrt(rho2)
     along = r2 - x * distance
     sun_cosine = math.sqrt(s2 - sun_radius * sun_radius)

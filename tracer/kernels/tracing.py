@@ -9,9 +9,7 @@ from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import FLYING
 from tracer.kernels.ground import come_down, release, take_off
-from tracer.kernels.integrated_flight import ZONE as ZONE_OF_FLIGHT
-from tracer.kernels.integrated_flight import advance
-from tracer.kernels.lane_flight import alone, launch_in_lane, look_closer, return_to_lane, take_from_lane
+from tracer.kernels.lane_flight import launch_in_lane, look_closer
 from tracer.kernels.lane_sample import sample_steps
 from tracer.kernels.lane_scoring import score_lanes
 from tracer.kernels.lane_step import try_steps
@@ -21,23 +19,18 @@ from tracer.kernels.lanes import (
     DRAWN,
     FLAGGED,
     KEPT,
-    PER_ALLOWED,
     STANDING,
     START,
     TIME,
-    TIME_LIMIT,
     VACANT,
     VELOCITY,
     WIDTH,
-    ZONE,
     Y,
     Z,
 )
 from tracer.kernels.launches import Launches
 from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, UNDER_WAY, Resume
 from tracer.kernels.scoring import Tally, mean_survival_time
-from tracer.kernels.step_control import STEP_SHARE
-from tracer.kernels.step_scoring import book_step, score_step
 from tracer.kernels.world import World
 
 GRAZING = 0.02
@@ -87,9 +80,6 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                 flights += 1
             _begin_flight(world, launches, resume, tally, lane)
         resume.counters[CURSOR] = 0
-        for lane in range(WIDTH):
-            if lanes[STANDING + lane] == FLYING and alone(tables, int(lanes[ZONE + lane])):
-                _fly_alone(world, resume, tally, lane, rng)
         try_steps(lanes, sky, tables)
         for lane in range(WIDTH):
             if lanes[FLAGGED + lane] > 0.0:
@@ -142,25 +132,6 @@ def _end_flight(world, resume, tally, lane, rng):
     come_down(world, atom, tally, lanes[ALIVE + lane], end, rng)
     if atom[UNDER_WAY] == 0.0:
         resume.counters[ENDED] += 1
-
-
-@merged
-def _fly_alone(world, resume, tally, lane, rng):
-    """Let the lane's flight go on by itself while it has to, and count it step by step."""
-    lanes, flight, curve = resume.lanes, resume.flight, resume.curve
-    conditions = world.light.conditions
-    take_from_lane(lanes, lane, conditions.sky, conditions.push_tables, flight)
-    tolerance = 1.0 / (STEP_SHARE * math.sqrt(lanes[PER_ALLOWED + lane]))
-    kept = lanes[KEPT + lane]
-    standing = FLYING
-    while standing == FLYING and alone(conditions.push_tables, int(flight[ZONE_OF_FLIGHT])):
-        standing = advance(flight, curve, conditions, tolerance, lanes[TIME_LIMIT + lane])
-        resume.counters[STEPS] += 1
-        score_step(world, tally, curve, lanes[ALIVE + lane], kept, resume.shine, rng)
-        kept = book_step(tally, curve, lanes[ALIVE + lane], kept)
-    lanes[KEPT + lane] = kept
-    lanes[STANDING + lane] = standing
-    return_to_lane(lanes, lane, conditions.sky, conditions.push_tables, flight)
 
 
 @kernel
