@@ -12,6 +12,9 @@ from tracer.kernels import code_cache
 
 OPTIONS = {"nogil": True, "error_model": "numpy"}
 
+INLINED = {**OPTIONS, "_nrt": False, "forceinline": True}
+"""Options of what numba chooses by the types of its arguments, see `orbit`."""
+
 
 def kernel(function):
     """Compile `function`, which allocates nothing, on its first call and keep the machine code between starts."""

@@ -1,14 +1,23 @@
 """Where a step's curve first passes the ground, the outer sphere or an edge of the shadow.
 
 Every surface is a height that is positive on the atom's side. A curve that starts and ends above a surface
-may still dip below it: where it first nears and then leaves the surface, tangents bound how low it came.
+may still dip below it: where it first nears and then leaves the surface, tangents bound how low it came. The shadow of
+a moving body is taken at the moment itself.
 """
 
 import math
 
-from tracer.kernels.compiling import kernel
-from tracer.kernels.dense_output import LENGTH, place_at
-from tracer.kernels.shadow import LIT, PENUMBRA, antumbra_height, penumbra_height, umbra_height
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.dense_output import LENGTH, SERIES, place_at
+from tracer.kernels.orbit import body_in_series
+from tracer.kernels.shadow import (
+    LIT,
+    PENUMBRA,
+    antumbra_height,
+    penumbra_height,
+    shadow_behind,
+    umbra_height,
+)
 
 PENUMBRA_EDGE = 1
 UMBRA_EDGE = 2
@@ -42,27 +51,42 @@ def height(shadow, outer_radius, surface, zone, place):
     rho_rate = (y * vy + z * vz) / rho if rho > 0.0 else 0.0
     if surface == PENUMBRA_EDGE:
         h = penumbra_height(shadow, x, rho)
-        rate = rho_rate * shadow.penumbra_cosine + vx * shadow.penumbra_sine
-        if h == x - shadow.radius * shadow.penumbra_sine:
-            rate = vx
+        sine, cosine = shadow.penumbra_sine, shadow.penumbra_cosine
+        rate = rho_rate * cosine + vx * sine + _widened(shadow, sine, cosine, x, rho)
+        if h == x - shadow.radius * sine:
+            rate = vx - shadow.radius * shadow.widening * sine
         if zone != LIT:
             return -h, -rate
         return h, rate
     if surface == UMBRA_EDGE:
         h = umbra_height(shadow, x, rho)
-        rate = rho_rate * shadow.umbra_cosine - vx * shadow.umbra_sine
-        if h == x + shadow.radius * shadow.umbra_sine:
-            rate = vx
+        sine, cosine = shadow.umbra_sine, shadow.umbra_cosine
+        rate = rho_rate * cosine - vx * sine + _widened(shadow, -sine, cosine, x, rho)
+        if h == x + shadow.radius * sine:
+            rate = vx + shadow.radius * shadow.widening * sine
     else:
         h = antumbra_height(shadow, x, rho)
-        rate = rho_rate * shadow.umbra_cosine + vx * shadow.umbra_sine
+        sine, cosine = shadow.umbra_sine, shadow.umbra_cosine
+        rate = rho_rate * cosine + vx * sine + _widened(shadow, sine, cosine, x, rho)
     if zone == surface:
         return -h, -rate
     return h, rate
 
 
+@inlined
+def _widened(shadow, sine, cosine, x, rho):
+    """Return the rate [m s-1] at which a height rho cos + x sin over a cone changes by the body's motion alone."""
+    return shadow.widening * sine * (x - rho * (sine / cosine))
+
+
+@inlined
+def shadow_on(sky, curve, part):
+    """Return the shadow at `part` of the step's `curve`."""
+    return shadow_behind(sky.shadow, body_in_series(sky.forces, curve, SERIES, 1, part * curve[LENGTH]))
+
+
 @kernel
-def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end):
+def first_crossing(sky, surface, zone, curve, reach, start, end):
     """Return the part of the step at which its `curve` first passes `surface`, NEVER where it doesn't.
 
     Only the step up to its part `reach` counts; `start` and `end` are the places (x, y, z, vx, vy, vz) at the
@@ -71,8 +95,9 @@ def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end
     """
     h = reach * curve[LENGTH]
     scale = math.sqrt(start[0] * start[0] + start[1] * start[1] + start[2] * start[2])
-    f0, d0 = height(shadow, outer_radius, surface, zone, start)
-    f1, d1 = height(shadow, outer_radius, surface, zone, end)
+    outer_radius = sky.forces.outer_radius
+    f0, d0 = height(shadow_on(sky, curve, 0.0), outer_radius, surface, zone, start)
+    f1, d1 = height(shadow_on(sky, curve, reach), outer_radius, surface, zone, end)
     d0 *= h
     d1 *= h
     launched = f0 <= TOUCH * scale
@@ -81,13 +106,13 @@ def first_crossing(shadow, outer_radius, surface, zone, curve, reach, start, end
         if d0 >= 0.0 or d1 <= 0.0:
             return NEVER
         ends = (f0, d0, f1, d1)
-        right = _dip(shadow, outer_radius, surface, zone, curve, reach, ends, TOUCH * scale)
+        right = _dip(sky, surface, zone, curve, reach, ends, TOUCH * scale)
         if right == NEVER:
             return NEVER
     if launched and (d0 <= 0.0 or f0 < -TOUCH * scale):
         return 0.0
     start = _parabola_root(f0, d0, f1, d1, launched)
-    return reach * _root(shadow, outer_radius, surface, zone, curve, reach, start, right, launched, scale)
+    return reach * _root(sky, surface, zone, curve, reach, start, right, launched, scale)
 
 
 @kernel
@@ -104,7 +129,7 @@ def _parabola_root(f0, d0, f1, d1, launched):
 
 
 @kernel
-def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
+def _dip(sky, surface, zone, curve, reach, ends, depth):
     """Return where on the way the height is below -`depth`, or NEVER; `ends` are height and slope, twice."""
     a, b = 0.0, 1.0
     fa, da, fb, db = ends
@@ -117,7 +142,8 @@ def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
         if trial > 3 and lesser + 2.0 * (bound - lesser) > -depth:
             return NEVER
         low = min(max(low, a + 0.05 * (b - a)), b - 0.05 * (b - a))
-        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * low))
+        shadow = shadow_on(sky, curve, reach * low)
+        f, d = height(shadow, sky.forces.outer_radius, surface, zone, place_at(curve, reach * low))
         if f < -depth:
             return low
         d *= reach * curve[LENGTH]
@@ -131,7 +157,7 @@ def _dip(shadow, outer_radius, surface, zone, curve, reach, ends, depth):
 
 
 @kernel
-def _root(shadow, outer_radius, surface, zone, curve, reach, start, right, launched, scale):
+def _root(sky, surface, zone, curve, reach, start, right, launched, scale):
     """Return where on the way, up to `right`, the height first becomes 0: Newton's method in a bracket from `start`.
 
     A start on the surface itself, `launched`, is divided out, height / part, so that the way back to it is found.
@@ -139,7 +165,8 @@ def _root(shadow, outer_radius, surface, zone, curve, reach, start, right, launc
     left = 0.0
     part = start if 0.0 < start < right else right
     for _ in range(HALVINGS):
-        f, d = height(shadow, outer_radius, surface, zone, place_at(curve, reach * part))
+        shadow = shadow_on(sky, curve, reach * part)
+        f, d = height(shadow, sky.forces.outer_radius, surface, zone, place_at(curve, reach * part))
         if abs(f) <= SHARP * scale:
             return part
         if f > 0.0:

@@ -3,17 +3,19 @@
 The curve is float64 (CURVE_SIZE,): start time [s] and length [s] of the full step, the part of it that was
 flown before ground, outer sphere, shadow edge or age limit cut it, the zone of the shadow, then five
 coefficients of each of x, y, z, vx, vy, vz and the ionising and the other hazard, as Hairer, Norsett & Wanner
-(1993), II.6, write them.
+(1993), II.6, write them; at the end the series (see `orbit`) of the body's distance, where the body moves.
 """
 
 from tracer.kernels.compiling import inlined, merged
+from tracer.kernels.orbit import ORDER
 
 START = 0
 LENGTH = 1
 FLOWN = 2
 CURVE_ZONE = 3
 COEFFICIENTS = 4
-CURVE_SIZE = 44
+SERIES = 44
+CURVE_SIZE = SERIES + ORDER + 1
 
 
 @merged

@@ -2,8 +2,8 @@
 
 A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the
 ionising and the other hazard, whose sum's negative exponential is the survival; the slopes there; the next
-step [s]; the step before the present zone [s]; the zone; the number of trial steps. It can be kept and gone
-on with at any time.
+step [s]; the step before the present zone [s]; the zone; the number of trial steps; where the body moves, its
+distance [m] and radial velocity [m s-1]. It can be kept and gone on with at any time.
 """
 
 import math
@@ -19,6 +19,7 @@ from tracer.kernels.crossing import (
     PENUMBRA_EDGE,
     UMBRA_EDGE,
     first_crossing,
+    shadow_on,
     time_to_edge,
 )
 from tracer.kernels.dense_output import (
@@ -26,20 +27,29 @@ from tracer.kernels.dense_output import (
     CURVE_ZONE,
     FLOWN,
     LENGTH,
+    SERIES,
     START,
     hazards_at,
     place_at,
     set_component,
 )
-from tracer.kernels.dormand_prince import trial_step
+from tracer.kernels.dormand_prince import NODES, trial_step
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
-from tracer.kernels.motion import rates_of_change
+from tracer.kernels.motion import rates_beside
+from tracer.kernels.orbit import (
+    body_in_series,
+    body_on_orbit,
+    keep_body,
+    longest_on_orbit,
+    set_series,
+)
 from tracer.kernels.shadow import (
     CYLINDER,
     LIT,
     NO_SHADOW,
     PENUMBRA,
     penumbra_height,
+    shadow_behind,
     umbra_height,
     zone_at,
     zone_beyond,
@@ -54,7 +64,8 @@ STEP = 14
 OPEN_STEP = 15
 ZONE = 16
 TRIALS = 17
-FLIGHT_SIZE = 18
+BODY = 18
+FLIGHT_SIZE = 20
 
 MOST_TRIALS = 1_000_000.0
 SHORTEST_STEP = 1e-13
@@ -70,24 +81,29 @@ OVERSHOOT = 1.01
 
 @kernel
 def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
-    """Set `flight` to a launch at (x, y, z) [m] with velocity (vx, vy, vz) [m s-1] in the Sun-fixed frame."""
+    """Set `flight` to a launch at (x, y, z) [m] with velocity (vx, vy, vz) [m s-1] in the Sun-fixed frame.
+
+    A body that moves is at its stated position then.
+    """
+    sky = conditions.sky
+    body = body_on_orbit(sky.forces, 0.0)
+    shadow = shadow_behind(sky.shadow, body)
+    keep_body(body, flight, BODY, 1)
     r = math.sqrt(x * x + y * y + z * z)
     speed = math.sqrt(vx * vx + vy * vy + vz * vz)
     flight[TIME] = 0.0
     _set_place(flight, (x, y, z, vx, vy, vz))
     flight[HAZARDS] = 0.0
     flight[HAZARDS + 1] = 0.0
-    zone = zone_at(conditions.sky.shadow, x, y, z)
-    set_slopes(
-        flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz))
-    )
+    zone = zone_at(shadow, x, y, z)
+    set_slopes(flight, rates_beside(sky, conditions.push_tables, zone, body, (x, y, z), (vx, vy, vz)))
     climb = (x * vx + y * vy + z * vz) / r
-    flight[STEP] = first_step(conditions.sky.forces, tolerance, r, climb, speed)
+    flight[STEP] = first_step(sky.forces, tolerance, r, climb, speed)
     flight[OPEN_STEP] = flight[STEP]
     flight[ZONE] = zone
     flight[TRIALS] = 0.0
     if zone == PENUMBRA:
-        flight[STEP] = EDGE_PART * crossing_time(conditions.sky.shadow, place_of(flight))
+        flight[STEP] = EDGE_PART * crossing_time(shadow, place_of(flight))
 
 
 @inlined
@@ -105,9 +121,12 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
     scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
+    _begin_series(sky.forces, flight, curve)
     h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
+    h = longest_on_orbit(sky.forces, curve, SERIES, 1, h)
     if zone == PENUMBRA:
-        h = min(h, longest_step_in_penumbra(sky.shadow, place))
+        shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, curve, SERIES, 1, 0.0))
+        h = min(h, longest_step_in_penumbra(shadow, place))
     left = time_limit - flight[TIME]
     while True:
         last = h >= left
@@ -115,7 +134,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
             h = left
         flight[TRIALS] += 1.0
         growth, end_slopes, error, quartic = trial_step(
-            rates_of_change, sky, tables, zone, h, place[:3], place[3:], slopes
+            rates_beside, sky, tables, zone, _bodies(sky.forces, curve, h), h, place[:3], place[3:], slopes
         )
         squared = step_error(error, scales)
         change = step_change(squared)
@@ -127,12 +146,13 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     _store(curve, flight, h, place, slopes, growth, end_slopes, quartic)
     end = _moved(place, growth)
     flight[STEP] = h * change
-    near = surfaces_near(sky, zone, place, end)
+    near = surfaces_near(sky, shadow_on(sky, curve, 0.0), shadow_on(sky, curve, 1.0), zone, place, end)
     if near[0] or near[1] or near[2]:
         surface, part = first_surface(sky, zone, curve, near, place, end)
         if part <= 1.0:
             return _cut(flight, curve, conditions, zone, surface, part)
     flight[TIME] += h
+    keep_body(body_in_series(sky.forces, curve, SERIES, 1, h), flight, BODY, 1)
     _set_place(flight, end)
     flight[HAZARDS] += growth[2][0]
     flight[HAZARDS + 1] += growth[2][1]
@@ -140,6 +160,25 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     if last:
         return AGED
     return FLYING if flight[TRIALS] < MOST_TRIALS else UNRESOLVED
+
+
+@merged
+def _begin_series(forces, flight, curve):
+    curve[SERIES], curve[SERIES + 1] = flight[BODY], flight[BODY + 1]
+    set_series(forces, curve, SERIES, 1)
+
+
+@merged
+def _bodies(forces, curve, h):
+    return (
+        body_in_series(forces, curve, SERIES, 1, 0.0),
+        body_in_series(forces, curve, SERIES, 1, NODES[1] * h),
+        body_in_series(forces, curve, SERIES, 1, NODES[2] * h),
+        body_in_series(forces, curve, SERIES, 1, NODES[3] * h),
+        body_in_series(forces, curve, SERIES, 1, NODES[4] * h),
+        body_in_series(forces, curve, SERIES, 1, NODES[5] * h),
+        body_in_series(forces, curve, SERIES, 1, NODES[6] * h),
+    )
 
 
 @kernel
@@ -238,8 +277,11 @@ def _give_up(flight, curve):
 
 
 @merged
-def surfaces_near(sky, zone, start, end):
-    """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge)."""
+def surfaces_near(sky, start_shadow, end_shadow, zone, start, end):
+    """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge).
+
+    `start` and `end` (x, y, z, vx, vy, vz) are its ends, with the shadow as it is at each.
+    """
     forces = sky.forces
     r0 = start[0] * start[0] + start[1] * start[1] + start[2] * start[2]
     r1 = end[0] * end[0] + end[1] * end[1] + end[2] * end[2]
@@ -249,7 +291,7 @@ def surfaces_near(sky, zone, start, end):
     return (
         r1 < forces.radius * forces.radius or (climb0 < 0.0 and climb1 > 0.0),
         r1 > outer or (climb0 > 0.0 and climb1 < 0.0 and 4.0 * max(r0, r1) > outer),
-        sky.shadow.kind != NO_SHADOW and not _sunward_in_light(sky.shadow, zone, start, end),
+        sky.shadow.kind != NO_SHADOW and not _sunward_in_light(start_shadow, end_shadow, zone, start, end),
     )
 
 
@@ -259,9 +301,7 @@ def first_surface(sky, zone, curve, near, start, end):
     first, part, reach = 0, NEVER, 1.0
     for surface in (GROUND, OUTER, PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
         if _may_meet(sky.shadow, zone, surface, near):
-            other = first_crossing(
-                sky.shadow, sky.forces.outer_radius, surface, zone, curve, reach, start, end
-            )
+            other = first_crossing(sky, surface, zone, curve, reach, start, end)
             if other < part:
                 first, part = surface, other
                 if surface == GROUND:
@@ -284,13 +324,12 @@ def _may_meet(shadow, zone, surface, near):
 
 
 @merged
-def _sunward_in_light(shadow, zone, start, end):
+def _sunward_in_light(start_shadow, end_shadow, zone, start, end):
     """Return True where a step in full light stays sunward of all shadow, which most steps do."""
-    terminator = shadow.radius * shadow.penumbra_sine
     return (
         zone == LIT
-        and start[0] > terminator
-        and end[0] > terminator
+        and start[0] > start_shadow.radius * start_shadow.penumbra_sine
+        and end[0] > end_shadow.radius * end_shadow.penumbra_sine
         and not (start[3] < 0.0 and end[3] > 0.0)
     )
 
@@ -301,6 +340,8 @@ def _cut(flight, curve, conditions, zone, surface, part):
     place = place_at(curve, part)
     curve[FLOWN] = part
     flight[TIME] += part * curve[LENGTH]
+    body = body_in_series(conditions.sky.forces, curve, SERIES, 1, part * curve[LENGTH])
+    keep_body(body, flight, BODY, 1)
     _set_place(flight, place)
     flight[HAZARDS], flight[HAZARDS + 1] = hazards_at(curve, part)
     if surface == GROUND:
@@ -310,10 +351,10 @@ def _cut(flight, curve, conditions, zone, surface, part):
     beyond = zone_beyond(conditions.sky.shadow, zone, surface)
     flight[ZONE] = beyond
     sky, tables = conditions.sky, conditions.push_tables
-    set_slopes(flight, rates_of_change(sky, tables, beyond, place[:3], place[3:]))
+    set_slopes(flight, rates_beside(sky, tables, beyond, body, place[:3], place[3:]))
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
-        flight[STEP] = min(flight[STEP], EDGE_PART * crossing_time(conditions.sky.shadow, place_of(flight)))
+        flight[STEP] = min(flight[STEP], EDGE_PART * crossing_time(shadow_behind(sky.shadow, body), place_of(flight)))
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING

@@ -11,6 +11,7 @@ import numpy as np
 from tracer.kernels.apart import lane_value, set_lane_value, table_entry
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.dormand_prince import (
+    NODES,
     TABLEAU,
     error_row,
     fifth,
@@ -52,6 +53,7 @@ from tracer.kernels.lanes import (
     PER_ALLOWED,
     QUARTIC,
     SECOND,
+    SERIES,
     SEVENTH,
     SIXTH,
     STAGE_ACCELERATION,
@@ -73,7 +75,15 @@ from tracer.kernels.lanes import (
 )
 from tracer.kernels.lines import HEADING, HEADING_SIZE, line_value
 from tracer.kernels.motion import radial_velocity
-from tracer.kernels.shadow import ANTUMBRA, NO_SHADOW, PENUMBRA, lit_fraction
+from tracer.kernels.orbit import body_in_series, longest_on_orbit, set_series, with_turning_growth
+from tracer.kernels.shadow import (
+    ANTUMBRA,
+    NO_SHADOW,
+    PENUMBRA,
+    lit_fraction,
+    shadow_behind,
+    with_widening,
+)
 from tracer.kernels.shadow import LIT as FULL_LIGHT
 from tracer.kernels.step_control import step_change
 
@@ -91,20 +101,20 @@ def try_steps(lanes, sky, tables):
     """
     numbers = _numbers(sky, tables)
     apart = prepare_apart(lanes, sky, tables)
-    _choose_lengths(lanes)
+    _choose_lengths(lanes, sky.forces)
     if apart:
         look_apart(lanes, 0, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2 = second(v, h, a)
-        _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, second(p, h, v), v2))
+        _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, 1, second(p, h, v), v2))
     if apart:
         look_apart(lanes, 1, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3 = third(v, h, a, a2)
-        _set_stage(lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, third(p, h, v, v2), v3))
+        _set_stage(lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3))
     if apart:
         look_apart(lanes, 2, sky, tables)
     for lane in range(WIDTH):
@@ -113,7 +123,7 @@ def try_steps(lanes, sky, tables):
         v3, a3 = _stage(lanes, THIRD + lane)
         v4 = fourth(v, h, a, a2, a3)
         p4 = fourth(p, h, v, v2, v3)
-        _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, p4, v4))
+        _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, 3, p4, v4))
     if apart:
         look_apart(lanes, 3, sky, tables)
     for lane in range(WIDTH):
@@ -123,7 +133,7 @@ def try_steps(lanes, sky, tables):
         v4, a4 = _stage(lanes, FOURTH + lane)
         v5 = fifth(v, h, a, a2, a3, a4)
         p5 = fifth(p, h, v, v2, v3, v4)
-        _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, p5, v5))
+        _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, 4, p5, v5))
     if apart:
         look_apart(lanes, 4, sky, tables)
     for lane in range(WIDTH):
@@ -134,7 +144,7 @@ def try_steps(lanes, sky, tables):
         v5, a5 = _stage(lanes, FIFTH + lane)
         v6 = sixth(v, h, a, a2, a3, a4, a5)
         p6 = sixth(p, h, v, v2, v3, v4, v5)
-        _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, p6, v6))
+        _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, 5, p6, v6))
     if apart:
         look_apart(lanes, 5, sky, tables)
     for lane in range(WIDTH):
@@ -147,7 +157,7 @@ def try_steps(lanes, sky, tables):
         turned = solution(h, a, a3, a4, a5, a6)
         v7 = (v[0] + turned[0], v[1] + turned[1], v[2] + turned[2])
         p7 = (p[0] + moved[0], p[1] + moved[1], p[2] + moved[2])
-        rates = _rates_at(lanes, lane, numbers, tables, p7, v7)
+        rates = _rates_at(lanes, lane, numbers, tables, 6, p7, v7)
         _set_stage(lanes, SEVENTH + lane, v7, rates)
         _set_vector(lanes, GROWTH + lane, moved)
         _set_vector(lanes, GROWTH + VELOCITY + lane, turned)
@@ -162,23 +172,22 @@ def try_steps(lanes, sky, tables):
 
 
 @kernel
-def lane_rates(sky, tables, zone, position, velocity):
-    """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone`, as lanes do.
+def lane_rates(sky, tables, zone, body, position, velocity):
+    """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone` of `body`.
 
-    Light is relative to full light at `light_distance`; other losses are those that go neither with it nor are constant.
+    As lanes do. Light is relative to full light at `light_distance`; other losses are those that go neither with it nor are constant.
     """
-    forces = sky.forces
     x, y, z = position
-    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
-    extra = extra_push(forces, tables, position, velocity)
-    return _rates(_numbers(sky, tables), tables, lit, extra, position, velocity)
+    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+    extra = extra_push(body, tables, position, velocity)
+    return _rates(_numbers(sky, tables), tables, lit, extra, body, position, velocity)
 
 
 @kernel
-def extra_push(forces, tables, position, velocity):
+def extra_push(body, tables, position, velocity):
     """Return the acceleration [m s-2] at 1 au by lines beyond the first `MOST_GRIDS` tables."""
     x, y, z = position
-    receding = radial_velocity(forces, x, y, z, velocity[0], velocity[1], velocity[2])
+    receding = radial_velocity(body, x, y, z, velocity[0], velocity[1], velocity[2])
     push = 0.0
     for line in range(MOST_GRIDS, int(tables[0])):
         push += line_value(tables, line, receding)
@@ -196,7 +205,8 @@ def prepare_apart(lanes, sky, tables):
             apart = True
             lanes[PARTIAL + lane] = 1.0
             if zone == PENUMBRA:
-                longest = longest_step_in_penumbra(sky.shadow, lane_place(lanes, START, lane))
+                shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0))
+                longest = longest_step_in_penumbra(shadow, lane_place(lanes, START, lane))
                 lanes[STEP + lane] = min(lanes[STEP + lane], longest)
     return apart
 
@@ -220,13 +230,14 @@ def look_apart(lanes, stage, sky, tables):
         partial = lanes[PARTIAL + lane] > 0.0
         if not partial and tables[0] <= MOST_GRIDS:
             continue
+        body = body_in_series(forces, lanes, SERIES + lane, WIDTH, NODES[stage + 1] * lanes[LENGTH + lane])
         x, y, z = _moved(lanes, stage, lane, START, START + VELOCITY, 0)
         if partial:
             zone = int(lanes[ZONE + lane])
-            lanes[LIT + lane] = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+            lanes[LIT + lane] = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
         if tables[0] > MOST_GRIDS:
             v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
-            lanes[EXTRA + lane] = extra_push(forces, tables, (x, y, z), v)
+            lanes[EXTRA + lane] = extra_push(body, tables, (x, y, z), v)
 
 
 @inlined
@@ -276,21 +287,23 @@ def _pushed(tables, grid, velocity):
 
 
 @inlined
-def _rates_at(lanes, lane, numbers, tables, position, velocity):
+def _rates_at(lanes, lane, numbers, tables, node, position, velocity):
     lit, extra = lane_value(lanes, LIT + lane), lane_value(lanes, EXTRA + lane)
-    return _rates(numbers, tables, lit, extra, position, velocity)
+    since_start = NODES[node] * lane_value(lanes, LENGTH + lane)
+    body = body_in_series(numbers[0].forces, lanes, SERIES + lane, WIDTH, since_start)
+    return _rates(numbers, tables, lit, extra, body, position, velocity)
 
 
 @inlined
-def _rates(numbers, tables, lit, extra, position, velocity):
+def _rates(numbers, tables, lit, extra, body, position, velocity):
     """Return what `lane_rates` does where the part `lit` of the Sun is seen and the lines left out push by `extra`."""
     sky, one_grid, other_grid = numbers
     forces, losses, _ = sky
     x, y, z = position
     vx, vy, vz = velocity
-    w = forces.turning
+    w = body.turning
     r2 = fused(x, x, fused(y, y, z * z))
-    sx = forces.distance - x
+    sx = body.distance - x
     s2 = fused(sx, sx, fused(y, y, z * z))
     r3 = r2 * math.sqrt(r2)
     # One division for both distances.
@@ -302,16 +315,15 @@ def _rates(numbers, tables, lit, extra, position, velocity):
     ux, uy, uz = sx * per_s, y * per_s, z * per_s
     dilution = (forces.light_distance * forces.light_distance) * per_s2
     light = lit * dilution
-    receding = fused(uy, vy, fused(uz, vz, -(ux * (vx - forces.radial_velocity))))
+    receding = fused(uy, vy, fused(uz, vz, -(ux * (vx - body.radial_velocity))))
     push = _pushed(tables, one_grid, receding) + _pushed(tables, other_grid, receding)
     sunward = fused(forces.tide_gm, per_s2, -(light * ((forces.push + extra) + push)))
     stay = w * w - pull
-    level = forces.tide_gm / (forces.distance * forces.distance)
-    acceleration = (
-        fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level))),
-        fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy))),
-        -fused(pull, z, sunward * uz),
-    )
+    level = forces.tide_gm / (body.distance * body.distance)
+    ax = fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level)))
+    ay = fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy)))
+    ax, ay = with_turning_growth(body, ax, ay, x, y)
+    acceleration = ax, ay, -fused(pull, z, sunward * uz)
     return acceleration, light, fused(lit, losses.other_lit, dilution * losses.other_distance), r2 * per_r3
 
 
@@ -353,11 +365,13 @@ def _set_stage(lanes, row, velocity, rates):
 
 
 @inlined
-def _choose_lengths(lanes):
+def _choose_lengths(lanes, forces):
     for lane in range(WIDTH):
         _, _, v, a = _begin(lanes, lane)
         per_r = lane_value(lanes, START + NEARNESS + lane)
         longest = longest_step(per_r, v[0] * v[0] + v[1] * v[1] + v[2] * v[2], a)
+        set_series(forces, lanes, SERIES + lane, WIDTH)
+        longest = longest_on_orbit(forces, lanes, SERIES + lane, WIDTH, longest)
         h = min(lane_value(lanes, STEP + lane), longest)
         left = lane_value(lanes, TIME_LIMIT + lane) - lane_value(lanes, TIME + lane)
         last = h >= left
@@ -434,10 +448,11 @@ def _flag(lanes, sky):
         # The surface that bounds full light or umbra, see `shadow`: passed, or neared and then left.
         lit = lane_value(lanes, ZONE + lane) == FULL_LIGHT
         sign = 1.0 if lit else -1.0
-        sine = shadow.penumbra_sine if lit else -shadow.umbra_sine
-        cosine = shadow.penumbra_cosine if lit else shadow.umbra_cosine
-        above, rate = _cone(shadow.radius, sine, cosine, x, y, z, vx, vy, vz)
-        end_above, end_rate = _cone(shadow.radius, sine, cosine, end_x, end_y, end_z, end_vx, end_vy, end_vz)
+        h = lane_value(lanes, LENGTH + lane)
+        here = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
+        there = body_in_series(forces, lanes, SERIES + lane, WIDTH, h)
+        above, rate = _cone(shadow, here, lit, x, y, z, vx, vy, vz)
+        end_above, end_rate = _cone(shadow, there, lit, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))
         met = (end_r2 < lowest) | dips | (end_r2 > highest) | turns | edge
@@ -450,13 +465,21 @@ def _flag(lanes, sky):
 
 
 @inlined
-def _cone(radius, sine, cosine, x, y, z, vx, vy, vz):
-    """Return the height [m] over a cone that touches the body, or over its base, and a number with its rate's sign."""
+def _cone(shadow, body, lit, x, y, z, vx, vy, vz):
+    """Return the height [m] over a cone that touches the body, or over its base, and a number with its rate's sign.
+
+    It is the penumbra's cone for an atom in full light, `lit`, else the umbra's.
+    """
+    shadow = shadow_behind(shadow, body)
+    sine = shadow.penumbra_sine if lit else -shadow.umbra_sine
+    cosine = shadow.penumbra_cosine if lit else shadow.umbra_cosine
     rho = math.sqrt(y * y + z * z)
-    cone = fused(rho, cosine, fused(x, sine, -radius))
-    base = fused(-radius, sine, x)
+    cone = fused(rho, cosine, fused(x, sine, -shadow.radius))
+    base = fused(-shadow.radius, sine, x)
     rate = fused(y * vy + z * vz, cosine, (vx * sine) * rho)
-    return max(cone, base), rate if cone > base else vx
+    rate = with_widening(body, rho * shadow.widening, sine, cosine, x, rho, rate)
+    base_rate = with_widening(body, shadow.widening, sine, cosine, -shadow.radius, 0.0, vx)
+    return max(cone, base), rate if cone > base else base_rate
 
 
 @inlined

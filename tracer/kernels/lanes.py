@@ -8,6 +8,8 @@ from itertools import accumulate
 
 import numpy as np
 
+from tracer.kernels.orbit import ORDER
+
 WIDTH = 16
 """Number of lanes; known when a loop is compiled, and large enough not to be unrolled before it is vectorised."""
 
@@ -79,6 +81,8 @@ _ROWS = (
     ("LOST", 1),
     ("IONIZED", 1),
     ("LIFE", 1),
+    # Where the body moves: the series of its distance about the step's start.
+    ("SERIES", ORDER + 1),
 )
 _FIRST = dict(
     zip(
@@ -130,6 +134,7 @@ COLUMN = _FIRST["COLUMN"]
 LOST = _FIRST["LOST"]
 IONIZED = _FIRST["IONIZED"]
 LIFE = _FIRST["LIFE"]
+SERIES = _FIRST["SERIES"]
 
 VACANT = -2.0
 """Standing of a lane without a flight."""

@@ -7,6 +7,7 @@ import numpy as np
 
 from tracer.kernels.compiling import inlined
 from tracer.kernels.lines import sum_of_lines
+from tracer.kernels.orbit import Orbit, with_turning_growth
 from tracer.kernels.shadow import Shadow, lit_fraction
 
 
@@ -16,7 +17,8 @@ class Forces(NamedTuple):
     `gm` [m3 s-2] and `radius` [m] of the body, `outer_radius` [m]; `tide_gm` [m3 s-2] is the Sun's, 0 without
     tide; the body stands at `distance` [m] and recedes at `radial_velocity` [m s-1]; the frame turns at
     `turning` [rad s-1] about +z, 0 switches its terms off. `push` [m s-2] away from the Sun, at
-    `light_distance` [m] in full light, comes on top of the lines'.
+    `light_distance` [m] in full light, comes on top of the lines'. A body that moves has an `orbit`, and distance,
+    radial velocity and turning are those at time 0; one that stands still has None.
     """
 
     gm: float
@@ -28,6 +30,7 @@ class Forces(NamedTuple):
     turning: float
     push: float
     light_distance: float
+    orbit: Orbit | None
 
 
 class Losses(NamedTuple):
@@ -61,54 +64,63 @@ class Conditions(NamedTuple):
 
 
 @inlined
-def radial_velocity(forces, x, y, z, vx, vy, vz):
+def radial_velocity(body, x, y, z, vx, vy, vz):
     """Return the atom's heliocentric radial velocity [m s-1], positive away from the Sun.
 
-    The turning of the frame moves atom and origin alike about the Sun and drops out.
+    `body` is the Forces of one that stands still, or a MovingBody. The turning of the frame moves atom and origin alike
+    about the Sun and drops out.
     """
-    sx = forces.distance - x
+    sx = body.distance - x
     s = math.sqrt(sx * sx + y * y + z * z)
-    return (y * vy + z * vz - sx * (vx - forces.radial_velocity)) / s
+    return (y * vy + z * vz - sx * (vx - body.radial_velocity)) / s
 
 
 @inlined
-def sunlight_received(sky, zone, x, y, z):
+def sunlight_received(sky, zone, body, x, y, z):
     """Return the light at (x, y, z) [m] relative to full light at `light_distance`."""
     forces = sky.forces
-    sx = forces.distance - x
-    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    sx = body.distance - x
+    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
     return lit * forces.light_distance * forces.light_distance / (sx * sx + y * y + z * z)
 
 
 @inlined
 def rates_of_change(sky, tables, zone, position, velocity):
-    """Return ((ax, ay, az) [m s-2], (ionising, other) loss [s-1]) of an atom in shadow `zone`.
+    """Return what `rates_beside` does while the body is where its Forces say."""
+    return rates_beside(sky, tables, zone, sky.forces, position, velocity)
 
-    a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0), s from the atom to the Sun,
-    D = |s|, W the turning and b the radiation acceleration.
+
+@inlined
+def rates_beside(sky, tables, zone, body, position, velocity):
+    """Return ((ax, ay, az) [m s-2], (ionising, other) loss [s-1]) of an atom in shadow `zone` of `body`.
+
+    a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0) - dW/dt x r, s from the atom to the
+    Sun, D = |s|, W the turning and b the radiation acceleration; `body` is the Forces of one that stands still, whose
+    W is constant, or a MovingBody.
     """
     forces, losses = sky.forces, sky.losses
     x, y, z = position
     vx, vy, vz = velocity
-    w = forces.turning
+    w = body.turning
     r2 = x * x + y * y + z * z
     pull = forces.gm * math.sqrt(r2) / (r2 * r2)
-    sx = forces.distance - x
+    sx = body.distance - x
     s2 = sx * sx + y * y + z * z
     per_s2 = 1.0 / s2
     per_s = math.sqrt(s2) * per_s2
     ux, uy, uz = sx * per_s, y * per_s, z * per_s
-    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
     dilution = forces.light_distance * forces.light_distance * per_s2
     light = lit * dilution
     sunward = forces.tide_gm * per_s2 - light * forces.push
     # A stage's place is known before its velocity: all but the lines' push is ready when that comes.
-    ax = sunward * ux - forces.tide_gm / (forces.distance * forces.distance) + (w * w - pull) * x
+    ax = sunward * ux - forces.tide_gm / (body.distance * body.distance) + (w * w - pull) * x
     ay = (w * w - pull) * y - sunward * uy
     az = -pull * z - sunward * uz
+    ax, ay = with_turning_growth(body, ax, ay, x, y)
     push = 0.0
     if lit > 0.0:
-        push = sum_of_lines(tables, (uy * vy + uz * vz) - ux * (vx - forces.radial_velocity))
+        push = sum_of_lines(tables, (uy * vy + uz * vz) - ux * (vx - body.radial_velocity))
     acceleration = (
         (ax + 2.0 * w * vy) - (light * ux) * push,
         (ay - 2.0 * w * vx) + (light * uy) * push,

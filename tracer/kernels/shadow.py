@@ -9,7 +9,11 @@ hole.
 import math
 from typing import NamedTuple
 
-from tracer.kernels.compiling import inlined, kernel
+from numba.extending import overload
+
+from tracer.kernels.compiling import INLINED, inlined, kernel
+from tracer.kernels.fused import fused
+from tracer.kernels.orbit import MovingBody
 from tracer.kernels.sunlight import visible_fraction
 
 LIT = 0
@@ -23,7 +27,10 @@ CONES = 2.0
 
 
 class Shadow(NamedTuple):
-    """`kind` (NO_SHADOW, CYLINDER or CONES), the spheres' radii [m], and the cones' half angles as sine, cosine."""
+    """`kind` (NO_SHADOW, CYLINDER or CONES), the spheres' radii [m], and the cones' half angles as sine, cosine.
+
+    Where the body moves, the angles are those at one moment, and the sines change at the relative rate `widening` [s-1].
+    """
 
     kind: float
     radius: float
@@ -32,6 +39,7 @@ class Shadow(NamedTuple):
     penumbra_cosine: float
     umbra_sine: float
     umbra_cosine: float
+    widening: float
 
 
 @kernel
@@ -68,6 +76,55 @@ def zone_at(shadow, x, y, z):
     if antumbra_height(shadow, x, rho) < 0.0:
         return ANTUMBRA
     return PENUMBRA
+
+
+@inlined
+def _shadow_of_moving(shadow, body):
+    cones = shadow.kind == CONES
+    per_distance = 1.0 / body.distance
+    penumbra = (shadow.sun_radius + shadow.radius) * per_distance if cones else 0.0
+    umbra = (shadow.sun_radius - shadow.radius) * per_distance if cones else 0.0
+    return Shadow(
+        shadow.kind,
+        shadow.radius,
+        shadow.sun_radius,
+        penumbra,
+        math.sqrt(1.0 - penumbra * penumbra),
+        umbra,
+        math.sqrt(1.0 - umbra * umbra),
+        -body.radial_velocity * per_distance,
+    )
+
+
+def shadow_behind(shadow, body):
+    """Return the shadow as it is behind `body`, the Forces of one that stands still, or a MovingBody."""
+    return _shadow_of_moving.py_func(shadow, body) if isinstance(body, MovingBody) else shadow
+
+
+@overload(shadow_behind, jit_options=INLINED)
+def _compiled_shadow_behind(shadow, body):
+    if "turning_growth" in body.fields:
+        return lambda shadow, body: _shadow_of_moving(shadow, body)
+    return lambda shadow, body: shadow
+
+
+@inlined
+def _widened(widening, sine, cosine, x, rho, rate):
+    return fused(widening * sine, fused(-rho, sine / cosine, x), rate)
+
+
+def with_widening(body, widening, sine, cosine, x, rho, rate):
+    """Return the `rate` [m s-1] of a height rho cos + x sin over a cone, with that of the cone where the body moves."""
+    if isinstance(body, MovingBody):
+        return _widened.py_func(widening, sine, cosine, x, rho, rate)
+    return rate
+
+
+@overload(with_widening, jit_options=INLINED)
+def _compiled_with_widening(body, widening, sine, cosine, x, rho, rate):
+    if "turning_growth" in body.fields:
+        return lambda body, widening, sine, cosine, x, rho, rate: _widened(widening, sine, cosine, x, rho, rate)
+    return lambda body, widening, sine, cosine, x, rho, rate: rate
 
 
 @inlined

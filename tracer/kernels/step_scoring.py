@@ -25,7 +25,7 @@ def score_step(world, tally, curve, weight, before, shine, rng):
     survival = before * decay((ionizing - ionizing0) + (other - other0))
     content = weight * survival * curve[FLOWN] * curve[LENGTH]
     sky, tables = world.light.conditions.sky, world.light.line_tables
-    received = sunlight_received(sky, int(curve[CURVE_ZONE]), x, y, z)
+    received = sunlight_received(sky, int(curve[CURVE_ZONE]), sky.forces, x, y, z)
     velocity = radial_velocity(sky.forces, x, y, z, vx, vy, vz)
     for line in range(shine.shape[0]):
         shine[line] = received * line_value(tables, line, velocity)

@@ -109,6 +109,7 @@ def _begin_flight(world, launches, resume, tally, lane):
         lane,
         light.conditions,
         light.tolerance * _care(atom),
+        0.0,
         world.motion.age_limit - atom[AGE],
         (atom[0], atom[1], atom[2], atom[3], atom[4], atom[5]),
     )

@@ -5,6 +5,7 @@ from typing import NamedTuple
 
 from tracer.catalogue.records import Orbit
 from tracer.constants import GM_SUN
+from tracer.kernels import orbit as moving
 
 
 class Station(NamedTuple):
@@ -60,3 +61,33 @@ def station_at_distance(orbit: Orbit | None, distance: float, radial_velocity: f
             f"to {aphelion:.6g} m from the Sun"
         )
     return Station(distance, radial_velocity, angular_momentum(orbit) / distance**2)
+
+
+def orbit_through(station: Station) -> moving.Orbit:
+    """Return the two-body orbit about the Sun of a body that stands at `station` at time 0, as kernels take it.
+
+    With h = Omega d^2: p = h^2/GM, e cos f = p/d - 1, e sin f = h v_r/GM; tan(E/2) = sqrt((1 - e)/(1 + e)) tan(f/2),
+    M = E - e sin E (two-body motion).
+
+    Raises
+    ------
+    ValueError
+        If the orbit is not closed.
+    """
+    h = station.orbital_rate * station.distance**2
+    along = h * h / (GM_SUN * station.distance) - 1.0
+    across = h * station.radial_velocity / GM_SUN
+    e = math.hypot(along, across)
+    if not e < 1.0:
+        raise ValueError(f"the orbit is not closed: its eccentricity would be {e:.6g}")
+    a = h * h / (GM_SUN * (1.0 - e * e))
+    f = math.atan2(across, along)
+    anomaly = 2.0 * math.atan2(math.sqrt(1.0 - e) * math.sin(0.5 * f), math.sqrt(1.0 + e) * math.cos(0.5 * f))
+    return moving.Orbit(
+        gm=float(GM_SUN),
+        angular_momentum=float(h),
+        semi_major_axis=float(a),
+        eccentricity=float(e),
+        mean_motion=math.sqrt(GM_SUN / a**3),
+        mean_anomaly=float(anomaly - e * math.sin(anomaly)),
+    )

@@ -5,6 +5,7 @@ import math
 from tracer.catalogue.load import hosts
 from tracer.constants import ASTRONOMICAL_UNIT, GM_SUN
 from tracer.kernels.motion import Conditions, Forces, Losses, Sky
+from tracer.kernels.orbit import Orbit
 from tracer.kernels.shadow import CONES, CYLINDER, NO_SHADOW, Shadow
 from tracer.physics.lines import Floats, push_tables
 from tracer.physics.orbit import Station
@@ -31,15 +32,24 @@ def shadow_of(kind: str, radius: float, distance: float) -> Shadow:
         penumbra_cosine=math.sqrt(1.0 - penumbra * penumbra),
         umbra_sine=umbra,
         umbra_cosine=math.sqrt(1.0 - umbra * umbra),
+        widening=0.0,
     )
 
 
 def forces_of(
-    *, gm: float, radius: float, outer_radius: float, station: Station, tide: bool, push: float
+    *,
+    gm: float,
+    radius: float,
+    outer_radius: float,
+    station: Station,
+    tide: bool,
+    push: float,
+    orbit: Orbit | None = None,
 ) -> Forces:
     """Return the forces on an atom near a body at `station`; `push` [m s-2] is constant, at 1 au, without the lines'.
 
-    `gm` [m3 s-2] and `radius` [m] of the body; beyond `outer_radius` [m] a flight ends.
+    `gm` [m3 s-2] and `radius` [m] of the body; beyond `outer_radius` [m] a flight ends. With an `orbit` the body moves
+    on it, and `station` is where it is at time 0.
     """
     return Forces(
         gm=float(gm),
@@ -51,6 +61,7 @@ def forces_of(
         turning=float(station.orbital_rate),
         push=float(push),
         light_distance=ASTRONOMICAL_UNIT,
+        orbit=orbit,
     )
 
 
