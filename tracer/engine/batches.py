@@ -7,7 +7,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from tracer.engine.kernel_world import kernel_world
+from tracer.engine.kernel_world import kernel_world, world_of_release
 from tracer.engine.launching import draw_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
@@ -87,6 +87,7 @@ def trace_batch(
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
     weight = release.rate / work.particles
+    world = world_of_release(work.world, release)
     flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
     for first in range(0, work.particles, BLOCK):
         count = min(BLOCK, work.particles - first)
@@ -94,7 +95,7 @@ def trace_batch(
         resume = new_resume(len(work.scene.lines))
         while (atoms_before := int(resume.counters[ENDED])) < count:
             begin = thread_time()
-            made = trace_slice(work.world, launches, resume, tally, rng, budget)
+            made = trace_slice(world, launches, resume, tally, rng, budget)
             spent = thread_time() - begin
             flights, seconds = flights + made, seconds + spent
             budget = next_budget(budget, spent)

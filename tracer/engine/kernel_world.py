@@ -6,14 +6,14 @@ from math import log
 import numpy as np
 
 from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
-from tracer.engine.scene import Scene
+from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
 from tracer.kernels.motion import Losses
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
-from tracer.kernels.world import Light, Motion, World
+from tracer.kernels.world import Light, Motion, Snapshot, World
 from tracer.physics.lines import line_tables, push_tables
 from tracer.physics.orbit import Station
 from tracer.physics.sunlight import conditions_of, forces_of, losses_of, shadow_of
@@ -44,6 +44,26 @@ def kernel_world(scene: Scene) -> World:
         _images(scene.planes),
         _light(scene),
         integrated=bool(scene.integrated),
+        snapshot=_snapshot(scene),
+    )
+
+
+def world_of_release(world: World, release: Release) -> World:
+    """Return `world` as `release` has it: around a moving body, with or without a rate that follows the distance."""
+    if world.snapshot is None:
+        return world
+    return world._replace(
+        snapshot=world.snapshot._replace(follows_distance=float(release.follows_distance))
+    )
+
+
+def _snapshot(scene: Scene) -> Snapshot | None:
+    if scene.event_window is None:
+        return None
+    return Snapshot(
+        window=float(scene.event_window),
+        ground_turns=float(scene.body.rotation_period is not None),
+        follows_distance=0.0,
     )
 
 
@@ -58,6 +78,7 @@ def _light(scene: Scene) -> Light:
         station=sun.station,
         tide=sun.tide,
         push=sun.push,
+        orbit=sun.orbit,
     )
     pushing = push_tables(sun.lines if sun.lines_push else (), scene.mass)
     shadow = shadow_of(sun.shadow, body.radius, sun.station.distance)
@@ -79,7 +100,7 @@ def _losses(scene: Scene, sun: Sunlight) -> Losses:
     )
 
 
-_NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), False, "none", (), False, 0.0, NO_PHOTO_LOSS)
+_NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), None, False, "none", (), False, 0.0, NO_PHOTO_LOSS)
 
 
 def _typed(law: SurfaceTemperature) -> SurfaceTemperature:

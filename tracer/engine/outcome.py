@@ -1,6 +1,6 @@
 """From folded batches to the product, with all that is known about the run."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 from types import EllipsisType
 from typing import Any, NamedTuple
@@ -19,6 +19,7 @@ from tracer.engine.sunlight import true_anomaly
 from tracer.engine.tasks import BatchRange
 from tracer.errors import TracerError
 from tracer.fate import Fate
+from tracer.kernels.scoring import Tally
 from tracer.kernels.temperature import temperatures
 from tracer.product.assembling import assemble
 from tracer.product.batch_ranges import ranges_text
@@ -192,5 +193,24 @@ def _sun_attributes(spec: RunSpec, scene: Scene, folder: Folder) -> dict[str, An
         "sun_distance": station.distance,
         "sun_radial_velocity": station.radial_velocity,
         "orbital_rate": station.orbital_rate,
-        "share_beyond_line_tables": np.array([float(one.beyond[0] / one.life[0]) for one in tallies]),
+        "share_beyond_line_tables": np.array([_share_beyond(scene, one) for one in tallies]),
+        **_motion_attributes(scene, tallies),
+    }
+
+
+def _share_beyond(scene: Scene, tally: Tally) -> float:
+    content = float((tally.life if scene.event_window is None else tally.aloft)[0])
+    return float(tally.beyond[0]) / content if content else 0.0
+
+
+def _motion_attributes(scene: Scene, tallies: Sequence[Tally]) -> dict[str, Any]:
+    """Return how the body moves, and where it does the window of the fluxes and what the limit of age leaves out."""
+    if scene.event_window is None:
+        return {"motion": "stationary"}
+    return {
+        "motion": "moving",
+        "event_window": scene.event_window,
+        "share_older_than_age_limit": np.array(
+            [float(one.older[0] / (one.life[0] + one.older[0])) for one in tallies]
+        ),
     }

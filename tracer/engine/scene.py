@@ -30,10 +30,15 @@ FARTHEST = 1e8
 
 
 class Release(NamedTuple):
-    """One source: `rate` [s-1] of new atoms and the laws by which they leave."""
+    """One source: `rate` [s-1] of new atoms and the laws by which they leave.
+
+    A rate that `follows_distance` is that at the stated position and goes with the inverse square of the body's distance
+    from the Sun as the body moves.
+    """
 
     name: str
     rate: float
+    follows_distance: bool
     speed: SpeedLaw
     direction: DirectionLaw
     place: PlaceLaw
@@ -92,7 +97,19 @@ class Scene(NamedTuple):
         """Whether flights must be integrated; else closed-form arcs are exact."""
         if self.sun is None:
             return False
+        if self.sun.orbit is not None:
+            return True
         return self.sun.matters_in_flight or not all(loss.constant for loss in self.losses)
+
+    @property
+    def event_window(self) -> float | None:
+        """Time [s] before the stated position in which events count as fluxes; None where the body stands still.
+
+        One degree of the orbit's mean anomaly, but not more than the limit of age.
+        """
+        if self.sun is None or self.sun.orbit is None:
+            return None
+        return float(min(self.age_limit, np.radians(1.0) / self.sun.orbit.mean_motion))
 
     @property
     def frame_rate(self) -> float:
@@ -173,10 +190,24 @@ def _release(spec: RunSpec, number: int, entry: ReleaseTable, radius: float) -> 
     return Release(
         entry.name,
         si(entry.rate),
+        _follows_distance(spec, f"{key}.rate_scaling", entry),
         speed_law(spec, f"{key}.speed", entry.speed),
         direction_law(entry.direction),
         place_law(spec, f"{key}.place", entry.place, radius),
     )
+
+
+def _follows_distance(spec: RunSpec, key: str, entry: ReleaseTable) -> bool:
+    if entry.rate_scaling == "constant":
+        return False
+    if spec.sun is None or spec.sun.motion == "stationary":
+        raise refuse(
+            spec,
+            key,
+            entry.rate_scaling,
+            'needs sun.motion = "moving"; without it the distance from the Sun does not change',
+        )
+    return True
 
 
 def _surface_temperature(law: TemperatureLaw) -> SurfaceTemperature:

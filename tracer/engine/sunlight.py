@@ -16,9 +16,10 @@ from tracer.engine.runspec.spectral_line import GTable, SpectralLineTable
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.two_columns import read_two_columns
 from tracer.errors import InputError
+from tracer.kernels.orbit import Orbit
 from tracer.physics.ephemeris import KNOWN, Sighting, sighting
 from tracer.physics.lines import VelocityTable, catalogue_table, constant_table, table_of
-from tracer.physics.orbit import Station, station_at_distance, station_at_true_anomaly
+from tracer.physics.orbit import Station, orbit_through, station_at_distance, station_at_true_anomaly
 from tracer.physics.photo_losses import PhotoLoss, photo_loss
 from tracer.units import Quantity, si
 
@@ -29,11 +30,12 @@ NO_PHOTO_LOSS = PhotoLoss(0.0, 0.0, True)
 class Sunlight(NamedTuple):
     """The Sun as a body at `station` has it.
 
-    `tide` says whether the Sun's tide acts, `shadow` is the run file's word. `lines` shine, and push as well if
+    `orbit` is None where the body stands still; one that moves is at `station` at time 0. `tide` says whether the Sun's tide acts, `shadow` is the run file's word. `lines` shine, and push as well if
     `lines_push`; `push` [m s-2] at 1 au comes beside them. `photo` holds the photo-losses at 1 au.
     """
 
     station: Station
+    orbit: Orbit | None
     tide: bool
     shadow: str
     lines: tuple[VelocityTable, ...]
@@ -60,8 +62,10 @@ def resolve_sunlight(spec: RunSpec, body: BodyConstants) -> Sunlight | None:
         return None
     lines = _lines(spec)
     lines_push, push = _push(spec, bool(lines))
+    station = _station(spec, spec.sun, body)
     return Sunlight(
-        station=_station(spec, spec.sun, body),
+        station=station,
+        orbit=_orbit(spec, spec.sun, body, station),
         tide=spec.sun.tide,
         shadow=spec.sun.shadow,
         lines=lines,
@@ -99,6 +103,21 @@ def _station(spec: RunSpec, sun: SunTable, body: BodyConstants) -> Station:
         return station_at_distance(orbit, si(sun.distance), velocity)
     except ValueError as error:
         raise refuse(spec, "sun.distance", sun.distance, str(error)) from None
+
+
+def _orbit(spec: RunSpec, sun: SunTable, body: BodyConstants, station: Station) -> Orbit | None:
+    """Return the orbit of a body that moves: that which osculates its motion at the stated position."""
+    if sun.motion == "stationary":
+        return None
+    if sun.epoch is not None and body.heliocentric_orbit is not body.orbit:
+        raise refuse(
+            spec,
+            "sun.motion",
+            sun.motion,
+            f"beside an epoch is for planets: {spec.body.name} swings about its host, which no orbit about the Sun "
+            "follows; give sun.true_anomaly",
+        )
+    return orbit_through(station)
 
 
 def true_anomaly(spec: RunSpec) -> float | None:

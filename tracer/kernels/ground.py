@@ -2,12 +2,36 @@
 
 import math
 
+from numba.core import types
+from numba.extending import overload
+
 from tracer.fate import Fate
 from tracer.kernels.bounce import rebound
-from tracer.kernels.compiling import merged
+from tracer.kernels.compiling import INLINED, inlined, merged
 from tracer.kernels.endings import AGED, CROSSED, LANDED
-from tracer.kernels.resume import AGE, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
+from tracer.kernels.orbit import field_type, orbit_state, turning_at
+from tracer.kernels.resume import AGE, CLOCK, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
 from tracer.kernels.scoring import ground_cell
+
+
+@inlined
+def _spin_on_orbit(world, atom):
+    forces = world.light.conditions.sky.forces
+    distance, _ = orbit_state(forces.orbit, atom[CLOCK] + atom[AGE])
+    slower = forces.turning - turning_at(forces.orbit, distance)
+    return world.surface.spin + world.snapshot.ground_turns * slower
+
+
+def ground_spin(world, atom):
+    """Return the ground's angular rate [rad s-1] about +z in the Sun-fixed frame, at the atom's present age."""
+    return world.surface.spin if world.snapshot is None else _spin_on_orbit.py_func(world, atom)
+
+
+@overload(ground_spin, jit_options=INLINED)
+def _compiled_ground_spin(world, atom):
+    if isinstance(field_type(world, "snapshot"), types.NoneType):
+        return lambda world, atom: world.surface.spin
+    return lambda world, atom: _spin_on_orbit(world, atom)
 
 
 @merged
@@ -54,7 +78,7 @@ def come_down(world, atom, tally, alive, end, rng):
 def _launch(world, atom, nx, ny, nz, vx, vy, vz):
     """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
     radius = world.motion.radius
-    spin = world.surface.spin
+    spin = ground_spin(world, atom)
     atom[0] = radius * nx
     atom[1] = radius * ny
     atom[2] = radius * nz
@@ -74,8 +98,9 @@ def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
         tally.ledger[Fate.CAPTURED] += alive
         atom[UNDER_WAY] = 0.0
         return
-    ux = vx + world.surface.spin * y
-    uy = vy - world.surface.spin * x
+    spin = ground_spin(world, atom)
+    ux = vx + spin * y
+    uy = vy - spin * x
     out = rebound(rng, world.surface, nx, ny, nz, ux * ux + uy * uy + vz * vz)
     _launch(world, atom, nx, ny, nz, out[0], out[1], out[2])
 

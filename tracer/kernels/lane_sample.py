@@ -32,6 +32,7 @@ from tracer.kernels.lanes import (
     ROW,
     SAMPLE,
     SAMPLE_R,
+    SERIES,
     SEVENTH,
     STAGE_ACCELERATION,
     STAGE_LIGHT,
@@ -44,6 +45,7 @@ from tracer.kernels.lanes import (
     Y,
     Z,
 )
+from tracer.kernels.orbit import body_in_series, keep_body
 
 SHORT = 0.5
 """Hazard up to which the power series is exact to the last bit: its next term is u^14/15! = 5e-17."""
@@ -84,33 +86,7 @@ def sample_steps(lanes, sky, cells):
     full_light = forces.light_distance * forces.light_distance
     per_light = losses.ionizing + losses.other_sunlight
     for lane in range(WIDTH):
-        flown = lane_value(lanes, FLOWN + lane)
-        part = flown * lane_value(lanes, DRAWN + lane)
-        h = lane_value(lanes, LENGTH + lane)
-        light = _integral(lanes, lane, h, LIGHT, STAGE_LIGHT)
-        other = _integral(lanes, lane, h, OTHER, STAGE_OTHER)
-        steady = losses.other_everywhere * h
-        lit_through = _at(flown, 0.0, light)
-        grown = fused(per_light, lit_through, fused(steady, flown, _at(flown, 0.0, other)))
-        middle = 0.5 * flown
-        half = fused(per_light, _at(middle, 0.0, light), fused(steady, middle, _at(middle, 0.0, other)))
-        before_sample = fused(per_light, _at(part, 0.0, light), fused(steady, part, _at(part, 0.0, other)))
-        kept = lane_value(lanes, KEPT + lane)
-        alive = lane_value(lanes, ALIVE + lane) * kept
-        mean, survives = survival(grown)
-        # Simpson's rule for what bends the survival beside a hazard that grows evenly.
-        excess = half - 0.5 * grown
-        bent = math.sqrt(survives) * excess * fused(0.5, excess, -1.0)
-        lost = alive * (grown * mean)
-        share = losses.ionizing * lit_through / (grown if grown > 0.0 else 1.0)
-        duration = flown * h
-        _, sampled = survival(before_sample)
-        set_lane_value(lanes, CONTENT + lane, alive * sampled * duration)
-        set_lane_value(lanes, LIFE + lane, alive * duration * (mean + bent / 1.5))
-        set_lane_value(lanes, LOST + lane, lost)
-        set_lane_value(lanes, IONIZED + lane, lost * share)
-        set_lane_value(lanes, KEPT + lane, kept * survives)
-        set_lane_value(lanes, TIME + lane, lane_value(lanes, TIME + lane) + duration)
+        _book(lanes, lane, losses, per_light)
     cells_per_turn = cells.local_time_cells / (2.0 * math.pi)
     rows_per_angle = cells.latitude_cells / math.pi
     per_first = 1.0 / cells.first_altitude
@@ -140,11 +116,62 @@ def sample_steps(lanes, sky, cells):
         set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
         set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
         set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
-        accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
-        for row in range(STATE_ROWS):
-            at = row * WIDTH + lane
-            stands = lane_value(lanes, START + at)
-            set_lane_value(lanes, START + at, lane_value(lanes, END + at) if accepted else stands)
+        _go_on(lanes, lane)
+
+
+@kernel
+def book_steps(lanes, sky):
+    """Book what the step takes in every lane and go on from its end, the body too; nothing is sampled."""
+    forces, losses, _ = sky
+    per_light = losses.ionizing + losses.other_sunlight
+    for lane in range(WIDTH):
+        _book(lanes, lane, losses, per_light)
+    for lane in range(WIDTH):
+        duration = lane_value(lanes, FLOWN + lane) * lane_value(lanes, LENGTH + lane)
+        keep_body(
+            body_in_series(forces, lanes, SERIES + lane, WIDTH, duration), lanes, SERIES + lane, WIDTH
+        )
+        _go_on(lanes, lane)
+
+
+@inlined
+def _book(lanes, lane, losses, per_light):
+    flown = lane_value(lanes, FLOWN + lane)
+    part = flown * lane_value(lanes, DRAWN + lane)
+    h = lane_value(lanes, LENGTH + lane)
+    light = _integral(lanes, lane, h, LIGHT, STAGE_LIGHT)
+    other = _integral(lanes, lane, h, OTHER, STAGE_OTHER)
+    steady = losses.other_everywhere * h
+    lit_through = _at(flown, 0.0, light)
+    grown = fused(per_light, lit_through, fused(steady, flown, _at(flown, 0.0, other)))
+    middle = 0.5 * flown
+    half = fused(per_light, _at(middle, 0.0, light), fused(steady, middle, _at(middle, 0.0, other)))
+    before_sample = fused(per_light, _at(part, 0.0, light), fused(steady, part, _at(part, 0.0, other)))
+    kept = lane_value(lanes, KEPT + lane)
+    alive = lane_value(lanes, ALIVE + lane) * kept
+    mean, survives = survival(grown)
+    # Simpson's rule for what bends the survival beside a hazard that grows evenly.
+    excess = half - 0.5 * grown
+    bent = math.sqrt(survives) * excess * fused(0.5, excess, -1.0)
+    lost = alive * (grown * mean)
+    share = losses.ionizing * lit_through / (grown if grown > 0.0 else 1.0)
+    duration = flown * h
+    _, sampled = survival(before_sample)
+    set_lane_value(lanes, CONTENT + lane, alive * sampled * duration)
+    set_lane_value(lanes, LIFE + lane, alive * duration * (mean + bent / 1.5))
+    set_lane_value(lanes, LOST + lane, lost)
+    set_lane_value(lanes, IONIZED + lane, lost * share)
+    set_lane_value(lanes, KEPT + lane, kept * survives)
+    set_lane_value(lanes, TIME + lane, lane_value(lanes, TIME + lane) + duration)
+
+
+@inlined
+def _go_on(lanes, lane):
+    accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
+    for row in range(STATE_ROWS):
+        at = row * WIDTH + lane
+        stands = lane_value(lanes, START + at)
+        set_lane_value(lanes, START + at, lane_value(lanes, END + at) if accepted else stands)
 
 
 @inlined

@@ -2,7 +2,10 @@
 
 An atom under way is float64 (ATOM_SIZE,): position [m] and velocity [m s-1] at its latest launch in the Sun-fixed
 frame; its weight [s-1]; the part of it that survives; its age [s]; the row and column of its place of first release;
-1 where it is under way, 0 where the room is free.
+1 where it is under way, 0 where the room is free; and what `snapshot` needs beside that: when it was released [s] after
+the stated position of a moving body; as what it flies; the number of its launch; how many visits that launch gets and
+how many it has had; its limit of age [s]; the age [s] that its cohort's atom reached, the time [s] that it survived, and
+the steps that it made.
 """
 
 from typing import NamedTuple
@@ -32,7 +35,16 @@ AGE = 8
 HOME_ROW = 9
 HOME_COLUMN = 10
 UNDER_WAY = 11
-ATOM_SIZE = 12
+CLOCK = 12
+ROLE = 13
+NUMBER = 14
+VISITS = 15
+VISITED = 16
+LIMIT = 17
+SPAN = 18
+SURVIVED = 19
+STEPS_MADE = 20
+ATOM_SIZE = 21
 
 
 class Resume(NamedTuple):

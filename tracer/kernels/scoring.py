@@ -16,7 +16,8 @@ class Tally(NamedTuple):
     scaled by (R/r)^2; `image_content` is flat over all image planes. `emission` (line, altitude, latitude,
     local_time) and `image_emission` (line, pixel) hold samples times scattered photons a second, `ionized` (altitude,
     latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time), `ledger` (fate) and
-    `launches` hold weights, `life` weight times survival time, `beyond` samples beyond the end of a line's table.
+    `launches` hold weights, `life` weight times survival time, `beyond` samples beyond the end of a line's table. Where
+    the body moves, `aloft` holds all samples, and `older` weight times survival time behind the limit of age.
     """
 
     content: np.ndarray
@@ -34,6 +35,8 @@ class Tally(NamedTuple):
     launches: np.ndarray
     beyond: np.ndarray
     life: np.ndarray
+    aloft: np.ndarray
+    older: np.ndarray
 
 
 @merged

@@ -22,6 +22,12 @@ SAFETY = 0.9
 LEAST_CHANGE = 0.2
 GREATEST_CHANGE = 5.0
 
+GRAZING = 0.02
+"""Sine of the angle above the horizon below which a launch is integrated with more care."""
+
+LEAST_CARE = 1e-5
+"""Smallest part of the tolerance: below it rounding decides anyway."""
+
 ROOT_BITS = 5.06766e18 / 2.0**32
 """Of all offsets between the upper bits of a number and of its inverse tenth root the one with the least error."""
 
@@ -102,3 +108,19 @@ def first_step(forces, tolerance, distance, climb, speed):
     if climb > 0.0 and fall > 0.0:
         step = min(step, 2.2 * climb / fall)
     return step
+
+
+@kernel
+def care(atom):
+    """Return the part of the tolerance that a launch may use: less than all where it leaves along the ground.
+
+    A launch at a small angle above the horizon, faster than a circular orbit, comes back to a pericentre below the
+    ground by about the square of that angle: an error as large would carry it over the ground, round and round.
+    """
+    r = math.sqrt(atom[0] * atom[0] + atom[1] * atom[1] + atom[2] * atom[2])
+    speed = math.sqrt(atom[3] * atom[3] + atom[4] * atom[4] + atom[5] * atom[5])
+    climb = atom[0] * atom[3] + atom[1] * atom[4] + atom[2] * atom[5]
+    if climb >= GRAZING * r * speed:
+        return 1.0
+    angle = climb / (GRAZING * r * speed)
+    return max(angle * angle, LEAST_CARE)

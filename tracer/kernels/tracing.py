@@ -31,14 +31,9 @@ from tracer.kernels.lanes import (
 from tracer.kernels.launches import Launches
 from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, UNDER_WAY, Resume
 from tracer.kernels.scoring import Tally, mean_survival_time
+from tracer.kernels.snapshot import trace_snapshot
+from tracer.kernels.step_control import care
 from tracer.kernels.world import World
-
-GRAZING = 0.02
-"""Sine of the angle above the horizon below which a launch is integrated with more care."""
-
-LEAST_CARE = 1e-5
-"""Smallest part of the tolerance: below it rounding decides anyway."""
-
 
 def trace_slice(
     world: World,
@@ -52,7 +47,11 @@ def trace_slice(
 
     Done when counter ENDED equals the number of `launches`.
     """
-    trace = trace_integrated if world.integrated else trace_arcs
+    trace = trace_arcs
+    if world.snapshot is not None:
+        trace = trace_snapshot
+    elif world.integrated:
+        trace = trace_integrated
     return trace(world, launches, resume, tally, rng, most_flights)
 
 
@@ -108,7 +107,7 @@ def _begin_flight(world, launches, resume, tally, lane):
         lanes,
         lane,
         light.conditions,
-        light.tolerance * _care(atom),
+        light.tolerance * care(atom),
         0.0,
         world.motion.age_limit - atom[AGE],
         (atom[0], atom[1], atom[2], atom[3], atom[4], atom[5]),
@@ -175,19 +174,3 @@ def _fly_arc(world, resume, tally, alive, rng):
     tally.life[0] += alive * mean_survival_time(motion.hazard, t)
     tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
     return ending, kept, t, x, y, z, vx, vy, vz
-
-
-@kernel
-def _care(atom):
-    """Return the part of the tolerance that a launch may use: less than all where it leaves along the ground.
-
-    A launch at a small angle above the horizon, faster than a circular orbit, comes back to a pericentre below the
-    ground by about the square of that angle: an error as large would carry it over the ground, round and round.
-    """
-    r = math.sqrt(atom[0] * atom[0] + atom[1] * atom[1] + atom[2] * atom[2])
-    speed = math.sqrt(atom[3] * atom[3] + atom[4] * atom[4] + atom[5] * atom[5])
-    climb = atom[0] * atom[3] + atom[1] * atom[4] + atom[2] * atom[5]
-    if climb >= GRAZING * r * speed:
-        return 1.0
-    angle = climb / (GRAZING * r * speed)
-    return max(angle * angle, LEAST_CARE)

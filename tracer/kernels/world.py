@@ -32,8 +32,24 @@ class Light(NamedTuple):
     tolerance: float
 
 
+class Snapshot(NamedTuple):
+    """How gas about a moving body is counted, see `tracer.kernels.snapshot`.
+
+    Events count in the last `window` [s] before the stated position. `ground_turns` is 1 where the ground turns on its
+    own, else it keeps its face to the Sun. `follows_distance` is 1 for a release whose rate goes with the inverse square
+    of the body's distance from the Sun, else 0.
+    """
+
+    window: float
+    ground_turns: float
+    follows_distance: float
+
+
 class World(NamedTuple):
-    """Motion, ground and where to count; flights are integrated under `light` if `integrated`, else arcs."""
+    """Motion, ground and where to count; flights are integrated under `light` if `integrated`, else arcs.
+
+    `snapshot` is None where the body stands still.
+    """
 
     motion: Motion
     surface: Surface
@@ -41,3 +57,4 @@ class World(NamedTuple):
     images: Images
     light: Light
     integrated: bool
+    snapshot: Snapshot | None

@@ -37,7 +37,7 @@ def make_layout(grid: Grid, planes: Sequence[ImagePlane], lines: int) -> BufferL
     cells = (altitudes, *ground)
     kept = (cells, ground, (pixels,), (lines, *cells), (lines, pixels))
     fluxes = (ground,) * 5
-    numbers = ((len(Fate),), (1,), (1,), (1,))
+    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,))
     return BufferLayout((*kept, cells, *fluxes, *numbers), sum(prod(shape) for shape in kept))
 
 

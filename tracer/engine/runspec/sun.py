@@ -34,8 +34,11 @@ class SunTable(Table):
         description='Heliocentric, positive away from the Sun; only with `distance`. Default: `"0 km/s"`.',
     )
     tide: bool = Field(True, description="Whether the Sun's tide acts on the atoms.")
-    motion: Literal["stationary"] = Field(
-        "stationary", description="The body's distance and velocity stay the same while atoms fly."
+    motion: Literal["stationary", "moving"] = Field(
+        "stationary",
+        description="Whether distance and velocity of the body stay the same while atoms fly, or the body travels on its "
+        "orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of mean "
+        "anomaly before it, and the ledger is that of the atoms released there; needs an orbit.",
     )
     shadow: Literal["penumbra", "cylinder", "none"] = Field(
         "penumbra",
@@ -67,6 +70,11 @@ class SunTable(Table):
             raise conflict(
                 second,
                 f'"{texts[second]}" stands beside {first} "{texts[first]}"; must be one of the two',
+            )
+        if self.motion == "moving" and self.distance is not None:
+            raise conflict(
+                "motion",
+                '"moving" stands beside distance; it needs a place on the orbit: true_anomaly or epoch',
             )
         if self.distance is None and self.radial_velocity is not None:
             raise conflict(
