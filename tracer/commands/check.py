@@ -17,6 +17,7 @@ from tracer.engine.scene import build_scene
 from tracer.engine.tracing import available_processors
 
 DAY = 86400.0
+HOUR = 3600.0
 MEGABYTE = 1e6
 
 
@@ -84,11 +85,18 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
         ("true anomaly", anomaly or "not given: the distance is"),
         ("distance from the Sun", f"{sun.distance / ASTRONOMICAL_UNIT:.6g} au"),
         ("radial velocity", f"{sun.radial_velocity / 1e3:.5g} km/s, positive away from the Sun"),
+        ("motion", _motion(sun)),
         ("radiation acceleration", f"{sun.radiation_acceleration:.4g} m s-2 on an atom at rest{share}"),
         ("photo-lifetime", life),
         ("lines with g", ", ".join(sun.lines) or "none"),
         ("lines without g", ", ".join(sun.lines_without_g) or "none"),
     ]
+
+
+def _motion(sun: SunPreview) -> str:
+    if sun.event_window is None:
+        return "stationary: distance and velocity of the body stay the same"
+    return f"moving: fluxes count in the last {sun.event_window / HOUR:.4g} h before the stated position"
 
 
 def _particles(spec: RunSpec, figures: Preview) -> str:

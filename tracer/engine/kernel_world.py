@@ -52,9 +52,7 @@ def world_of_release(world: World, release: Release) -> World:
     """Return `world` as `release` has it: around a moving body, with or without a rate that follows the distance."""
     if world.snapshot is None:
         return world
-    return world._replace(
-        snapshot=world.snapshot._replace(follows_distance=float(release.follows_distance))
-    )
+    return world._replace(snapshot=world.snapshot._replace(follows_distance=float(release.follows_distance)))
 
 
 def _snapshot(scene: Scene) -> Snapshot | None:

@@ -69,7 +69,8 @@ class SunPreview(NamedTuple):
     `epoch` in UTC, None where the run file gives none; `true_anomaly` [deg], None where it gives the distance;
     `distance` [m], heliocentric `radial_velocity` and `orbital_rate` [rad s-1] of the body; `radiation_acceleration`
     [m s-2] of an atom at rest on the body, and its ratio to the surface gravity, None without gravity; `photo_lifetime`
-    [s] of an atom in full sunlight there, None where sunlight destroys none.
+    [s] of an atom in full sunlight there, None where sunlight destroys none. `motion` is the run file's word;
+    `event_window` [s] is the time before the stated position in which events count, None where the body stands still.
     """
 
     epoch: str | None
@@ -80,6 +81,8 @@ class SunPreview(NamedTuple):
     radiation_acceleration: float
     radiation_acceleration_over_gravity: float | None
     photo_lifetime: float | None
+    motion: str
+    event_window: float | None
     lines: tuple[str, ...]
     lines_without_g: tuple[str, ...]
 
@@ -157,6 +160,8 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
         radiation_acceleration=push,
         radiation_acceleration_over_gravity=push / gravity if gravity else None,
         photo_lifetime=1.0 / (dilution * sun.photo.total) if sun.photo.total else None,
+        motion="stationary" if sun.orbit is None else "moving",
+        event_window=scene.event_window,
         lines=tuple(line.name for line in sun.lines),
         lines_without_g=lines_without_g(spec),
     )

@@ -32,8 +32,8 @@ FARTHEST = 1e8
 class Release(NamedTuple):
     """One source: `rate` [s-1] of new atoms and the laws by which they leave.
 
-    A rate that `follows_distance` is that at the stated position and goes with the inverse square of the body's distance
-    from the Sun as the body moves.
+    A rate that `follows_distance` is that at the stated position and goes with the inverse square of the body's
+    distance from the Sun as the body moves.
     """
 
     name: str

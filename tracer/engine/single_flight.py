@@ -17,7 +17,8 @@ from tracer.kernels.dense_output import FLOWN, LENGTH, START, hazards_at, place_
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
 from tracer.kernels.integrated_flight import advance, new_curve, new_flight, start_flight
 from tracer.kernels.motion import Sky
-from tracer.kernels.shadow import lit_fraction, zone_at
+from tracer.kernels.orbit import body_on_orbit
+from tracer.kernels.shadow import lit_fraction, shadow_behind, zone_at
 from tracer.kernels.world import World
 from tracer.tally.axes import direction
 
@@ -87,7 +88,7 @@ class Track(NamedTuple):
 
 
 def fly(scene: Scene, launch: Launch) -> Flight:
-    """Follow one atom from `launch` to landing, outer radius or age limit.
+    """Follow one atom from `launch` to landing, outer radius or age limit; a body that moves is at its stated position.
 
     Raises
     ------
@@ -100,7 +101,7 @@ def fly(scene: Scene, launch: Launch) -> Flight:
     if track.ending not in ENDINGS:
         raise TracerError("the propagator gave up on this flight. This is a fault of the program")
     if scene.sun is not None:
-        track.path[:, LIT_COLUMN] = _lit_fractions(world.light.conditions.sky, track.path[:, 3:6])
+        track.path[:, LIT_COLUMN] = _lit_fractions(world.light.conditions.sky, track.path)
     return Flight(track.path, _summary(track, scene.body.radius))
 
 
@@ -147,15 +148,15 @@ def _highest_in_step(curve: Floats) -> float:
     return float(np.linalg.norm(place_at(curve, end)[:3]))
 
 
-def _lit_fractions(sky: Sky, positions: Floats) -> Floats:
-    places = [tuple(map(float, position)) for position in positions]
-    zones = [zone_at(sky.shadow, *place) for place in places]
-    return np.array(
-        [
-            lit_fraction(sky.shadow, zone, *place, sky.forces.distance)
-            for zone, place in zip(zones, places, strict=True)
-        ]
-    )
+def _lit_fractions(sky: Sky, path: Floats) -> Floats:
+    """Return the visible part of the Sun's disc along a path, past a body that moves as at each moment."""
+    fractions = np.empty(len(path))
+    for i, row in enumerate(path):
+        place = tuple(map(float, row[3:6]))
+        body = body_on_orbit(sky.forces, float(row[0]))
+        shadow = shadow_behind(sky.shadow, body)
+        fractions[i] = lit_fraction(shadow, zone_at(shadow, *place), *place, body.distance)
+    return fractions
 
 
 def launch_state(launch: Launch, radius: float) -> tuple[Vector, Vector]:

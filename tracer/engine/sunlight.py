@@ -30,8 +30,9 @@ NO_PHOTO_LOSS = PhotoLoss(0.0, 0.0, True)
 class Sunlight(NamedTuple):
     """The Sun as a body at `station` has it.
 
-    `orbit` is None where the body stands still; one that moves is at `station` at time 0. `tide` says whether the Sun's tide acts, `shadow` is the run file's word. `lines` shine, and push as well if
-    `lines_push`; `push` [m s-2] at 1 au comes beside them. `photo` holds the photo-losses at 1 au.
+    `orbit` is None where the body stands still; one that moves is at `station` at time 0. `tide` says whether the Sun's
+    tide acts, `shadow` is the run file's word. `lines` shine, and push as well if `lines_push`; `push` [m s-2] at 1 au
+    comes beside them. `photo` holds the photo-losses at 1 au.
     """
 
     station: Station

@@ -354,7 +354,9 @@ def _cut(flight, curve, conditions, zone, surface, part):
     set_slopes(flight, rates_beside(sky, tables, beyond, body, place[:3], place[3:]))
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
-        flight[STEP] = min(flight[STEP], EDGE_PART * crossing_time(shadow_behind(sky.shadow, body), place_of(flight)))
+        flight[STEP] = min(
+            flight[STEP], EDGE_PART * crossing_time(shadow_behind(sky.shadow, body), place_of(flight))
+        )
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING

@@ -2,12 +2,12 @@
 
 import math
 
+from tracer.kernels import integrated_flight as one
+from tracer.kernels import lanes as row
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.crossing import GROUND, OUTER
 from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at, set_component
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
-from tracer.kernels import integrated_flight as one
-from tracer.kernels import lanes as row
 from tracer.kernels.lane_step import lane_place, lane_rates
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.orbit import ORDER, body_in_series, body_on_orbit, keep_body

@@ -81,7 +81,7 @@ def survival(u):
 
 @kernel
 def sample_steps(lanes, sky, cells):
-    """Take the sample at the part DRAWN of the flown step in every lane, book what the step takes, and go on from its end."""
+    """Take the sample at the part DRAWN of every lane's flown step, book what the step takes, and go on from its end."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
     per_light = losses.ionizing + losses.other_sunlight
@@ -113,7 +113,9 @@ def sample_steps(lanes, sky, cells):
         set_lane_value(lanes, RECEIVED + lane, seen * full_light / s2)
         approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
         set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
-        set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
+        set_lane_value(
+            lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log
+        )
         set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
         set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
         _go_on(lanes, lane)
@@ -128,9 +130,7 @@ def book_steps(lanes, sky):
         _book(lanes, lane, losses, per_light)
     for lane in range(WIDTH):
         duration = lane_value(lanes, FLOWN + lane) * lane_value(lanes, LENGTH + lane)
-        keep_body(
-            body_in_series(forces, lanes, SERIES + lane, WIDTH, duration), lanes, SERIES + lane, WIDTH
-        )
+        keep_body(body_in_series(forces, lanes, SERIES + lane, WIDTH, duration), lanes, SERIES + lane, WIDTH)
         _go_on(lanes, lane)
 
 

@@ -93,6 +93,7 @@ MOST_GRIDS = 2
 COUNTING = 6755399441055744.0
 """1.5 2^52: the sum of it and a small number holds that number, rounded to a whole one, in its last bits."""
 
+
 @kernel
 def try_steps(lanes, sky, tables):
     """Try the next step in every lane, say whether it is accepted, and flag what needs a closer look.
@@ -114,7 +115,9 @@ def try_steps(lanes, sky, tables):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3 = third(v, h, a, a2)
-        _set_stage(lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3))
+        _set_stage(
+            lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3)
+        )
     if apart:
         look_apart(lanes, 2, sky, tables)
     for lane in range(WIDTH):
@@ -175,7 +178,8 @@ def try_steps(lanes, sky, tables):
 def lane_rates(sky, tables, zone, body, position, velocity):
     """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone` of `body`.
 
-    As lanes do. Light is relative to full light at `light_distance`; other losses are those that go neither with it nor are constant.
+    As lanes do. Light is relative to full light at `light_distance`; other losses are those that go neither with it nor
+    are constant.
     """
     x, y, z = position
     lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
@@ -201,11 +205,13 @@ def prepare_apart(lanes, sky, tables):
     for lane in range(WIDTH):
         zone = lanes[ZONE + lane]
         lanes[PARTIAL + lane] = 0.0
-        if (zone == PENUMBRA or zone == ANTUMBRA) and lanes[STANDING + lane] == FLYING:
+        if zone in (PENUMBRA, ANTUMBRA) and lanes[STANDING + lane] == FLYING:
             apart = True
             lanes[PARTIAL + lane] = 1.0
             if zone == PENUMBRA:
-                shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0))
+                shadow = shadow_behind(
+                    sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0)
+                )
                 longest = longest_step_in_penumbra(shadow, lane_place(lanes, START, lane))
                 lanes[STEP + lane] = min(lanes[STEP + lane], longest)
     return apart
@@ -451,7 +457,7 @@ def _flag(lanes, sky):
         h = lane_value(lanes, LENGTH + lane)
         here = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
         there = body_in_series(forces, lanes, SERIES + lane, WIDTH, h)
-        above, rate = _cone(shadow, here, lit, x, y, z, vx, vy, vz)
+        _, rate = _cone(shadow, here, lit, x, y, z, vx, vy, vz)
         end_above, end_rate = _cone(shadow, there, lit, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))

@@ -8,7 +8,7 @@ every `stride` entries from `at` on.
 """
 
 import math
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 from numba.core import types
 from numba.extending import overload
@@ -203,7 +203,7 @@ def body_in_series(forces, array, at, stride, t):
     return forces if forces.orbit is None else _body_in_series.py_func(forces, array, at, stride, t)
 
 
-def body_on_orbit(forces, time):
+def body_on_orbit(forces: Any, time: float) -> Any:
     """Return the body at `time` [s] after the stated position."""
     return forces if forces.orbit is None else _body_on_orbit.py_func(forces, time)
 

@@ -4,8 +4,8 @@ An atom under way is float64 (ATOM_SIZE,): position [m] and velocity [m s-1] at 
 frame; its weight [s-1]; the part of it that survives; its age [s]; the row and column of its place of first release;
 1 where it is under way, 0 where the room is free; and what `snapshot` needs beside that: when it was released [s] after
 the stated position of a moving body; as what it flies; the number of its launch; how many visits that launch gets and
-how many it has had; its limit of age [s]; the age [s] that its cohort's atom reached, the time [s] that it survived, and
-the steps that it made.
+how many it has had; its limit of age [s]; the age [s] that its cohort's atom reached, the time [s] that it survived,
+and the steps that it made.
 """
 
 from typing import NamedTuple
@@ -50,8 +50,8 @@ ATOM_SIZE = 21
 class Resume(NamedTuple):
     """What a slice leaves for the next, and room to work in.
 
-    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `flight`,
-    `curve` serve a flight that goes on by itself, `shine` (line,) a sample.
+    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`;
+    `flight`, `curve` serve a flight that goes on by itself, `shine` (line,) a sample.
     """
 
     counters: np.ndarray

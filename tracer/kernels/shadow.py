@@ -7,7 +7,7 @@ hole.
 """
 
 import math
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 from numba.extending import overload
 
@@ -29,7 +29,8 @@ CONES = 2.0
 class Shadow(NamedTuple):
     """`kind` (NO_SHADOW, CYLINDER or CONES), the spheres' radii [m], and the cones' half angles as sine, cosine.
 
-    Where the body moves, the angles are those at one moment, and the sines change at the relative rate `widening` [s-1].
+    Where the body moves, the angles are those at one moment, and the sines change at the relative rate `widening`
+    [s-1].
     """
 
     kind: float
@@ -96,7 +97,7 @@ def _shadow_of_moving(shadow, body):
     )
 
 
-def shadow_behind(shadow, body):
+def shadow_behind(shadow: Any, body: Any) -> Any:
     """Return the shadow as it is behind `body`, the Forces of one that stands still, or a MovingBody."""
     return _shadow_of_moving.py_func(shadow, body) if isinstance(body, MovingBody) else shadow
 
@@ -123,7 +124,9 @@ def with_widening(body, widening, sine, cosine, x, rho, rate):
 @overload(with_widening, jit_options=INLINED)
 def _compiled_with_widening(body, widening, sine, cosine, x, rho, rate):
     if "turning_growth" in body.fields:
-        return lambda body, widening, sine, cosine, x, rho, rate: _widened(widening, sine, cosine, x, rho, rate)
+        return lambda body, widening, sine, cosine, x, rho, rate: _widened(
+            widening, sine, cosine, x, rho, rate
+        )
     return lambda body, widening, sine, cosine, x, rho, rate: rate
 
 

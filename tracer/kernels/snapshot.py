@@ -80,8 +80,8 @@ MOST_VISITS = 8.0
 """A launch gets visits by the steps that the cohort's flights took: those that go far have more to show."""
 
 SHARES = (0.30, 0.25, 0.15, 0.20, 0.10)
-"""Of ages even up to: twice the cohort's time of survival; a little over its life; three times the mean survival of all;
-that life and the window; all there is. The last bounds every weight."""
+"""Of ages even up to: twice the cohort's time of survival; a little over its life; three times the mean survival of
+all; that life and the window; all there is. The last bounds every weight."""
 
 SURVIVALS, LIVES, MEANS = 2.0, 1.25, 3.0
 
@@ -329,6 +329,4 @@ def _show(world, tally, atom, lanes, lane, shine):
     if beyond_tables(tables, receding):
         tally.beyond[0] += content
     r = math.sqrt(x * x + y * y + z * z)
-    score_sample(
-        tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine
-    )
+    score_sample(tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine)

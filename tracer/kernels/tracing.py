@@ -35,6 +35,7 @@ from tracer.kernels.snapshot import trace_snapshot
 from tracer.kernels.step_control import care
 from tracer.kernels.world import World
 
+
 def trace_slice(
     world: World,
     launches: Launches,

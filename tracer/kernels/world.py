@@ -36,8 +36,8 @@ class Snapshot(NamedTuple):
     """How gas about a moving body is counted, see `tracer.kernels.snapshot`.
 
     Events count in the last `window` [s] before the stated position. `ground_turns` is 1 where the ground turns on its
-    own, else it keeps its face to the Sun. `follows_distance` is 1 for a release whose rate goes with the inverse square
-    of the body's distance from the Sun, else 0.
+    own, else it keeps its face to the Sun. `follows_distance` is 1 for a release whose rate goes with the inverse
+    square of the body's distance from the Sun, else 0.
     """
 
     window: float

@@ -22,6 +22,7 @@ from tracer.tally.combining import Part, Replicates, batches_of, combined_error,
 
 SUMMED = ("flights", "integration_steps", "kernel_seconds", "wall_seconds")
 BEYOND = "share_beyond_line_tables"
+OLDER = "share_older_than_age_limit"
 GROUPS = "replicate_batches"
 """Attribute: how many batches count into each replicate."""
 
@@ -232,6 +233,7 @@ def _attributes(shares: Sequence[Share], parts: list[list[Part]]) -> dict[str, A
         "workers": max(int(share.ds.attrs["workers"]) for share in shares),
         **{key: sum(share.ds.attrs[key] for share in shares) for key in SUMMED},
         **_beyond(shares),
+        **_older(shares),
         GROUPS: np.array([batches_of(group) for group in parts], dtype=np.int64),
     }
     # An attribute without a number cannot be written.
@@ -251,3 +253,13 @@ def _beyond(shares: Sequence[Share]) -> dict[str, Any]:
     lives = np.array([share.ds["mean_life"].values * share.batches for share in shares])
     each = np.array([np.atleast_1d(share.ds.attrs[BEYOND]) for share in shares])
     return {BEYOND: (lives * each).sum(axis=0) / lives.sum(axis=0)}
+
+
+def _older(shares: Sequence[Share]) -> dict[str, Any]:
+    """Return the share of survival time behind the limit of age, beside the time up to it, which `mean_life` is."""
+    if OLDER not in shares[0].ds.attrs:
+        return {}
+    lives = np.array([share.ds["mean_life"].values * share.batches for share in shares])
+    each = np.array([np.atleast_1d(share.ds.attrs[OLDER]) for share in shares])
+    older = (lives * each / (1.0 - each)).sum(axis=0)
+    return {OLDER: older / (lives.sum(axis=0) + older)}

@@ -36,8 +36,8 @@ class SunTable(Table):
     tide: bool = Field(True, description="Whether the Sun's tide acts on the atoms.")
     motion: Literal["stationary", "moving"] = Field(
         "stationary",
-        description="Whether distance and velocity of the body stay the same while atoms fly, or the body travels on its "
-        "orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of mean "
+        description="Whether distance and velocity of the body stay the same while atoms fly, or the body travels on "
+        "its orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of mean "
         "anomaly before it, and the ledger is that of the atoms released there; needs an orbit.",
     )
     shadow: Literal["penumbra", "cylinder", "none"] = Field(
