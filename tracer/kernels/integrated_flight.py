@@ -120,7 +120,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
+    scales = error_scales(tolerance, sky.forces, r, speed_squared)
     _begin_series(sky.forces, flight, curve)
     h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     h = longest_on_orbit(sky.forces, curve, SERIES, 1, h)

@@ -85,7 +85,7 @@ from tracer.kernels.shadow import (
     with_widening,
 )
 from tracer.kernels.shadow import LIT as FULL_LIGHT
-from tracer.kernels.step_control import step_change
+from tracer.kernels.step_control import far_out, step_change
 
 MOST_GRIDS = 2
 """Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
@@ -406,7 +406,7 @@ def _judge(lanes, sky):
         of_hazard = fused(per_light, light_error, other_error)
         per_r = lane_value(lanes, START + NEARNESS + lane)
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
-        squared = lane_value(lanes, PER_ALLOWED + lane) * (
+        squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_r)) * (
             _squared_error(h, v, v3, v4, v5, v6, v7) * (per_r * per_r)
             + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v_squared)
             + of_hazard * of_hazard

@@ -15,6 +15,9 @@ Save some 3 in 100,000, temporary satellites between push and pull, that no step
 STEP_SHARE = 0.1
 """The share of the tolerance that one step may take, in units of the distance from the centre and of the speed."""
 
+FAR = 20.0
+"""Distance [radii] from which on steps may be less exact, see `far_out`."""
+
 FIRST_STEP = 1.5
 """Length of the first step in dynamical times, at a step error of 1; measured."""
 
@@ -40,18 +43,29 @@ WHOLE = 2.0**52
 WHOLE_BITS = 0x433 << 52
 
 
+@inlined
+def far_out(radius, per_distance):
+    """Return the factor, at most 1, by which an error's square counts less far from a body of `radius` [m].
+
+    What a tail's atoms do there no longer decides where they land, and the kinks of the lines' tables would make every
+    step a short one: beyond `FAR` radii the allowed error grows with the distance's square.
+    """
+    nearness = min(1.0, FAR * radius * per_distance)
+    return (nearness * nearness) * (nearness * nearness)
+
+
 @merged
-def error_scales(tolerance, gm, distance, speed_squared):
+def error_scales(tolerance, forces, distance, speed_squared):
     """Return what squared errors of position [m], velocity [m s-1] and hazard are multiplied by in `step_error`.
 
     Position counts against the `distance` [m] from the centre, velocity against the speed and that of a circular
     orbit, the hazard, which survival is the exponential of, against 1; one means what `tolerance` allows.
     """
     allowed = STEP_SHARE * tolerance
-    per_allowed = 1.0 / (allowed * allowed)
+    per_allowed = far_out(forces.radius, 1.0 / distance) / (allowed * allowed)
     return (
         per_allowed / (distance * distance),
-        per_allowed / (speed_squared + gm / distance),
+        per_allowed / (speed_squared + forces.gm / distance),
         per_allowed,
     )
 
