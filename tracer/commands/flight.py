@@ -55,7 +55,8 @@ def command(
 ) -> None:
     """Follow one flight from a stated launch to landing, outer radius or age limit.
 
-    The launch speed counts in the Sun-fixed frame: the ground's own motion is not added to it.
+    The launch speed counts in the Sun-fixed frame: the ground's own motion is not added to it. A body that moves is at
+    its stated position at the launch.
     """
     launch = _launch(latitude, local_time, speed, zenith_angle, azimuth)
     spec = load_run(run_file, settings or ())

@@ -148,10 +148,10 @@ def quartic(h, k1, k3, k4, k5, k6, k7):
 def trial_step(rates, sky, tables, zone, bodies, h, p, v, slopes):
     """Try one step of `h` [s] within shadow `zone` from position `p` [m] and velocity `v` [m s-1] with their `slopes`.
 
-    `rates` is `rates_beside` or a function like it, `slopes` are acceleration and loss rates as it returns them, `bodies`
-    (7,) is the body at each of the `NODES`. Returns (growth, end slopes, error, quartic): the growth of position, velocity
-    and both hazards; the slopes at the end, which are the next step's first; the squared errors of position, velocity
-    and hazard; the fourth-order coefficients of the dense output.
+    `rates` is `rates_beside` or a function like it, `slopes` are acceleration and loss rates as it returns them,
+    `bodies` (7,) is the body at each of the `NODES`. Returns (growth, end slopes, error, quartic): the growth of
+    position, velocity and both hazards; the slopes at the end, which are the next step's first; the squared errors of
+    position, velocity and hazard; the fourth-order coefficients of the dense output.
     """
     a1, l1 = slopes
     v2 = second(v, h, a1)

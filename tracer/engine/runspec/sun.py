@@ -37,8 +37,8 @@ class SunTable(Table):
     motion: Literal["stationary", "moving"] = Field(
         "stationary",
         description="Whether distance and velocity of the body stay the same while atoms fly, or the body travels on "
-        "its orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of mean "
-        "anomaly before it, and the ledger is that of the atoms released there; needs an orbit.",
+        "its orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of "
+        "mean anomaly before it, and the ledger is that of the atoms released there; needs an orbit.",
     )
     shadow: Literal["penumbra", "cylinder", "none"] = Field(
         "penumbra",
