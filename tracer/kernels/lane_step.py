@@ -48,6 +48,7 @@ from tracer.kernels.lanes import (
     LIT,
     NEARNESS,
     OTHER,
+    OTHER_ERROR,
     PARTIAL,
     PER_ALLOWED,
     QUARTIC,
@@ -79,6 +80,12 @@ from tracer.kernels.step_control import step_change
 
 MOST_GRIDS = 2
 """Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
+
+LANDS, DOUBTFUL = 1.0, 2.0
+"""Flags of a step: it starts well above ground, ends below it and meets nothing else; it wants to be looked at."""
+
+ALOFT = 1.0 + 1e-6
+"""Square of the least distance from the centre, in radii, that is well above ground."""
 
 COUNTING = 6755399441055744.0
 """1.5 2^52: the sum of it and a small number holds that number, rounded to a whole one, in its last bits."""
@@ -372,6 +379,10 @@ def _judge(lanes, sky):
     """Weigh the error of every step, and set the length of the next one."""
     forces, losses, _ = sky
     per_light = losses.ionizing + losses.other_sunlight
+    if losses.other_lit > 0.0 or losses.other_distance > 0.0:
+        for lane in range(WIDTH):
+            h = lane_value(lanes, LENGTH + lane)
+            set_lane_value(lanes, OTHER_ERROR + lane, _integrate(lanes, lane, h, OTHER, STAGE_OTHER))
     for lane in range(WIDTH):
         h, _, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -382,8 +393,7 @@ def _judge(lanes, sky):
         _set_vector(lanes, QUARTIC + lane, quartic(h, v, v3, v4, v5, v6, v7))
         _set_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
         light_error = _integrate(lanes, lane, h, LIGHT, STAGE_LIGHT)
-        other_error = _integrate(lanes, lane, h, OTHER, STAGE_OTHER)
-        of_hazard = fused(per_light, light_error, other_error)
+        of_hazard = fused(per_light, light_error, lane_value(lanes, OTHER_ERROR + lane))
         per_r = lane_value(lanes, START + NEARNESS + lane)
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
         squared = lane_value(lanes, PER_ALLOWED + lane) * (
@@ -440,13 +450,15 @@ def _flag(lanes, sky):
         end_above, end_rate = _cone(shadow.radius, sine, cosine, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))
-        met = (end_r2 < lowest) | dips | (end_r2 > highest) | turns | edge
+        other = (end_r2 > highest) | turns | edge
+        met = (end_r2 < lowest) | dips | other
         accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
         too_short = not (lane_value(lanes, STEP + lane) > SHORTEST_STEP * lane_value(lanes, TIME + lane))
         stuck = (lane_value(lanes, TRIALS + lane) >= MOST_TRIALS) | ((not accepted) & too_short)
-        ends = accepted & (met | (lane_value(lanes, LAST + lane) > 0.0))
-        flagged = (stuck | ends) & (lane_value(lanes, STANDING + lane) == FLYING)
-        set_lane_value(lanes, FLAGGED + lane, 1.0 if flagged else 0.0)
+        last = lane_value(lanes, LAST + lane) > 0.0
+        flagged = (stuck | (accepted & (met | last))) & (lane_value(lanes, STANDING + lane) == FLYING)
+        lands = accepted & (end_r2 < lowest) & (r2 > ALOFT * lowest) & (not other)
+        set_lane_value(lanes, FLAGGED + lane, (LANDS if lands else DOUBTFUL) if flagged else 0.0)
 
 
 @inlined
