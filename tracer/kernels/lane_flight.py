@@ -6,8 +6,10 @@ from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
+    HALVINGS,
     OUTER,
     PENUMBRA_EDGE,
+    SHARP,
     UMBRA_EDGE,
     height,
 )
@@ -15,7 +17,7 @@ from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH,
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
-from tracer.kernels.lane_step import lane_place, lane_rates
+from tracer.kernels.lane_step import LANDS, lane_place, lane_rates
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.shadow import PENUMBRA, zone_at, zone_beyond
 from tracer.kernels.step_control import STEP_SHARE, first_step
@@ -56,6 +58,9 @@ def look_closer(lanes, lane, sky, tables, curve):
     if lanes[row.ACCEPTED + lane] == 0.0:
         lanes[row.STANDING + lane] = UNRESOLVED
         return
+    if lanes[row.FLAGGED + lane] == LANDS:
+        _land(lanes, lane, sky.forces.radius)
+        return
     zone = int(lanes[row.ZONE + lane])
     start = lane_place(lanes, row.START, lane)
     end = lane_place(lanes, row.END, lane)
@@ -86,6 +91,44 @@ def _edge_met(sky, zone, start, end):
 
 
 @inlined
+def _land(lanes, lane, radius):
+    """Cut a step that starts well above ground and ends below it where it passes the ground.
+
+    Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`.
+    """
+    h = lanes[row.LENGTH + lane]
+    x = _polynomial(lanes, lane, h, 0)
+    y = _polynomial(lanes, lane, h, row.Y)
+    z = _polynomial(lanes, lane, h, row.Z)
+    goal = radius * radius
+    above = x[0] * x[0] + y[0] * y[0] + z[0] * z[0] - goal
+    end_x, end_y, end_z = x[0] + x[1], y[0] + y[1], z[0] + z[1]
+    below = goal - (end_x * end_x + end_y * end_y + end_z * end_z)
+    left, right = 0.0, 1.0
+    part = above / (above + below)
+    for _ in range(HALVINGS):
+        px, dx = _value_and_slope(x, part)
+        py, dy = _value_and_slope(y, part)
+        pz, dz = _value_and_slope(z, part)
+        f = px * px + py * py + pz * pz - goal
+        if abs(f) <= 2.0 * SHARP * goal:
+            break
+        if f > 0.0:
+            left = part
+        else:
+            right = part
+        part -= 0.5 * f / (px * dx + py * dy + pz * dz)
+        if not left < part < right:
+            part = 0.5 * (left + right)
+    lanes[row.STANDING + lane] = LANDED
+    lanes[row.FLOWN + lane] = part
+    for axis in range(0, 3 * WIDTH, WIDTH):
+        lanes[row.END + axis + lane] = _value_and_slope(_polynomial(lanes, lane, h, axis), part)[0]
+        at = row.VELOCITY + axis
+        lanes[row.END + at + lane] = _value_and_slope(_polynomial(lanes, lane, h, at), part)[0]
+
+
+@inlined
 def _polynomial(lanes, lane, h, component):
     """Return the five coefficients of `dense_output` of place or velocity, `component` its row within a state."""
     at = component + lane
@@ -93,6 +136,19 @@ def _polynomial(lanes, lane, h, component):
     bend = h * lanes[row.START + row.VELOCITY + at] - growth
     rest = growth - h * lanes[row.SEVENTH + at] - bend
     return lanes[row.START + at], growth, bend, rest, lanes[row.QUARTIC + at]
+
+
+@inlined
+def _value_and_slope(coefficients, part):
+    """Return the value at `part` of a step, and its derivative with respect to it."""
+    start, growth, bend, rest, quartic = coefficients
+    left = 1.0 - part
+    inner = rest + left * quartic
+    middle = bend + part * inner
+    outer = growth + left * middle
+    slope = inner - part * quartic
+    slope = left * slope - middle
+    return start + part * outer, outer + part * slope
 
 
 @inlined

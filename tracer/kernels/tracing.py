@@ -10,10 +10,9 @@ from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.lane_flight import launch_in_lane, look_closer
-from tracer.kernels.lane_landing import land
 from tracer.kernels.lane_sample import sample_steps
 from tracer.kernels.lane_scoring import score_lanes
-from tracer.kernels.lane_step import DOUBTFUL, try_steps
+from tracer.kernels.lane_step import try_steps
 from tracer.kernels.lanes import (
     ACCEPTED,
     ALIVE,
@@ -82,9 +81,8 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
             _begin_flight(world, launches, resume, tally, lane)
         resume.counters[CURSOR] = 0
         try_steps(lanes, sky, tables)
-        land(lanes, world.motion.radius)
         for lane in range(WIDTH):
-            if lanes[FLAGGED + lane] == DOUBTFUL:
+            if lanes[FLAGGED + lane] > 0.0:
                 look_closer(lanes, lane, sky, tables, resume.curve)
             if lanes[ACCEPTED + lane] > 0.0:
                 resume.counters[STEPS] += 1
