@@ -33,7 +33,9 @@ class Cells(NamedTuple):
 @inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
-    return close_layer(cells, r, rough_logarithm((r - cells.radius) / cells.first_altitude) * cells.cells_per_log)
+    return close_layer(
+        cells, r, rough_logarithm((r - cells.radius) / cells.first_altitude) * cells.cells_per_log
+    )
 
 
 @inlined

@@ -11,16 +11,16 @@ import numpy as np
 from tracer.kernels.compiling import inlined
 from tracer.kernels.fused import fused
 
-
 TABLEAU = np.array(
     (
-    (1.0 / 5.0, 0.0, 0.0, 0.0, 0.0, 0.0),
-    (3.0 / 40.0, 9.0 / 40.0, 0.0, 0.0, 0.0, 0.0),
-    (44.0 / 45.0, -56.0 / 15.0, 32.0 / 9.0, 0.0, 0.0, 0.0),
-    (19372.0 / 6561.0, -25360.0 / 2187.0, 64448.0 / 6561.0, -212.0 / 729.0, 0.0, 0.0),
-    (9017.0 / 3168.0, -355.0 / 33.0, 46732.0 / 5247.0, 49.0 / 176.0, -5103.0 / 18656.0, 0.0),
-    (35.0 / 384.0, 0.0, 500.0 / 1113.0, 125.0 / 192.0, -2187.0 / 6784.0, 11.0 / 84.0),
-))
+        (1.0 / 5.0, 0.0, 0.0, 0.0, 0.0, 0.0),
+        (3.0 / 40.0, 9.0 / 40.0, 0.0, 0.0, 0.0, 0.0),
+        (44.0 / 45.0, -56.0 / 15.0, 32.0 / 9.0, 0.0, 0.0, 0.0),
+        (19372.0 / 6561.0, -25360.0 / 2187.0, 64448.0 / 6561.0, -212.0 / 729.0, 0.0, 0.0),
+        (9017.0 / 3168.0, -355.0 / 33.0, 46732.0 / 5247.0, 49.0 / 176.0, -5103.0 / 18656.0, 0.0),
+        (35.0 / 384.0, 0.0, 500.0 / 1113.0, 125.0 / 192.0, -2187.0 / 6784.0, 11.0 / 84.0),
+    )
+)
 """The same rows, from the second stage to the seventh, whose is the solution's, for a single lane."""
 
 
@@ -145,8 +145,8 @@ def quartic(h, k1, k3, k4, k5, k6, k7):
 def trial_step(rates, sky, tables, zone, h, p, v, slopes):
     """Try one step of `h` [s] within shadow `zone` from position `p` [m] and velocity `v` [m s-1] with their `slopes`.
 
-    `rates` is `rates_of_change` or a function like it, `slopes` are acceleration and loss rates as it returns them. Returns (growth, end slopes, error,
-    quartic): the growth of position, velocity and both hazards; the slopes at the end, which are the next step's
+    `rates` is `rates_of_change`, `slopes` are acceleration and loss rates as it returns them. Returns (growth, end
+    slopes, error, quartic): the growth of position, velocity and both hazards; the slopes at the end, which are the next step's
     first; the squared errors of position, velocity and hazard; the fourth-order coefficients of the dense output.
     """
     a1, l1 = slopes

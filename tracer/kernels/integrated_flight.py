@@ -78,9 +78,7 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
     flight[HAZARDS] = 0.0
     flight[HAZARDS + 1] = 0.0
     zone = zone_at(conditions.sky.shadow, x, y, z)
-    set_slopes(
-        flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz))
-    )
+    set_slopes(flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz)))
     climb = (x * vx + y * vy + z * vz) / r
     flight[STEP] = first_step(conditions.sky.forces, tolerance, r, climb, speed)
     flight[OPEN_STEP] = flight[STEP]

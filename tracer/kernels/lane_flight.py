@@ -2,6 +2,8 @@
 
 import math
 
+from tracer.kernels import integrated_flight as one
+from tracer.kernels import lanes as row
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
@@ -15,8 +17,6 @@ from tracer.kernels.crossing import (
 )
 from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, START, place_at
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
-from tracer.kernels import integrated_flight as one
-from tracer.kernels import lanes as row
 from tracer.kernels.lane_step import LANDS, lane_place, lane_rates
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.shadow import PENUMBRA, zone_at, zone_beyond
@@ -81,7 +81,7 @@ def look_closer(lanes, lane, sky, tables, curve):
 def _edge_met(sky, zone, start, end):
     """Return False where a step that ends above ground passes or nears no edge of its zone: see `first_crossing`."""
     for edge in (PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
-        if zone == PENUMBRA or edge == PENUMBRA_EDGE or edge == zone:
+        if zone == PENUMBRA or edge in (PENUMBRA_EDGE, zone):
             above, rate = height(sky.shadow, sky.forces.outer_radius, edge, zone, end)
             if above < 0.0:
                 return True

@@ -79,7 +79,7 @@ def survival(u):
 
 @kernel
 def sample_steps(lanes, sky, cells):
-    """Take the sample at the part DRAWN of the flown step in every lane, book what the step takes, and go on from its end."""
+    """Sample the flown step of every lane at its part DRAWN, book what the step takes, and go on from its end."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
     per_light = losses.ionizing + losses.other_sunlight
@@ -137,7 +137,9 @@ def sample_steps(lanes, sky, cells):
         set_lane_value(lanes, RECEIVED + lane, seen * full_light / s2)
         approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
         set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
-        set_lane_value(lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log)
+        set_lane_value(
+            lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log
+        )
         set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
         set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
         accepted = lane_value(lanes, ACCEPTED + lane) > 0.0

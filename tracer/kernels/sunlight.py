@@ -62,7 +62,9 @@ def _bulge(half, curvature, cosine):
     if abs(sine) < 0.03 and cosine > 0.0:
         s2 = sine * sine
         # The arcsine's series; its next term is 1e-17 of the angle.
-        angle = sine * (1.0 + s2 * (1.0 / 6.0 + s2 * (3.0 / 40.0 + s2 * (5.0 / 112.0 + s2 * (35.0 / 1152.0)))))
+        angle = sine * (
+            1.0 + s2 * (1.0 / 6.0 + s2 * (3.0 / 40.0 + s2 * (5.0 / 112.0 + s2 * (35.0 / 1152.0))))
+        )
     else:
         angle = math.atan2(sine, cosine)
     if abs(angle) > 0.2:

@@ -79,9 +79,7 @@ UNEVEN_LINES = "".join(
 
 
 def scene_of(tmp_path, shadow="penumbra", species="Na", gas="", temperature=1500, age_limit="2 h"):
-    text = SCENE.format(
-        shadow=shadow, species=species, gas=gas, temperature=temperature, age_limit=age_limit
-    )
+    text = SCENE.format(shadow=shadow, species=species, gas=gas, temperature=temperature, age_limit=age_limit)
     file = tmp_path / "run.toml"
     file.write_text(text, encoding="utf-8")
     return build_scene(load_run(file))
@@ -115,8 +113,6 @@ def alone(work, launches):
         kept = math.exp(-flight[HAZARDS] - flight[HAZARDS + 1])
         ends.append((ending, flight[TIME], *flight[PLACE : PLACE + 3], kept))
     return np.array(ends)
-
-
 
 
 @pytest.mark.parametrize(
@@ -160,9 +156,7 @@ def test_residence_time_is_that_of_flights_alone(tmp_path):
 def test_more_pushing_lines_than_lanes_look_up_at_once(tmp_path):
     for n, shift in enumerate((0.0, 0.3, 0.7)):
         rows = "\n".join(f"{v + shift},{0.3 + 0.02 * n + 0.01 * v}" for v in range(-20, 21, 4 - n))
-        (tmp_path / f"g{n}.csv").write_text(
-            f"radial velocity in km/s,g in 1/s\n{rows}\n", encoding="utf-8"
-        )
+        (tmp_path / f"g{n}.csv").write_text(f"radial velocity in km/s,g in 1/s\n{rows}\n", encoding="utf-8")
     gas = 'mass = "23 u"\n' + UNEVEN_LINES.format()
     scene = scene_of(tmp_path, species="Invented", gas=gas)
     work, launches, tally, _ = traced(scene, 200)
@@ -170,7 +164,9 @@ def test_more_pushing_lines_than_lanes_look_up_at_once(tmp_path):
     ends = alone(work, launches)
     assert tally.life[0] == pytest.approx(ends[:, 1].sum(), rel=1e-6)
     dark = work.world.light.conditions._replace(push_tables=np.zeros(3))
-    calm = alone(work._replace(world=work.world._replace(light=work.world.light._replace(conditions=dark))), launches)
+    calm = alone(
+        work._replace(world=work.world._replace(light=work.world.light._replace(conditions=dark))), launches
+    )
     assert abs(calm[:, 1].sum() / ends[:, 1].sum() - 1.0) > 1e-3
 
 
