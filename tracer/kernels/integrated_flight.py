@@ -134,7 +134,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
             h = left
         flight[TRIALS] += 1.0
         growth, end_slopes, error, quartic = trial_step(
-            rates_beside, sky, tables, zone, _bodies(sky.forces, curve, h), h, place[:3], place[3:], slopes
+            sky, tables, zone, _bodies(sky.forces, curve, h), h, place[:3], place[3:], slopes
         )
         squared = step_error(error, scales)
         change = step_change(squared)

@@ -5,10 +5,19 @@ import math
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
 from tracer.kernels.compiling import inlined, kernel
-from tracer.kernels.crossing import GROUND, OUTER
-from tracer.kernels.dense_output import CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at, set_component
+from tracer.kernels.crossing import (
+    ANTUMBRA_EDGE,
+    GROUND,
+    HALVINGS,
+    OUTER,
+    PENUMBRA_EDGE,
+    SHARP,
+    UMBRA_EDGE,
+    height,
+)
+from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
-from tracer.kernels.lane_step import lane_place, lane_rates
+from tracer.kernels.lane_step import LANDS, lane_place, lane_rates
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.orbit import ORDER, body_in_series, body_on_orbit, keep_body
 from tracer.kernels.shadow import PENUMBRA, shadow_behind, zone_at, zone_beyond
@@ -53,6 +62,9 @@ def look_closer(lanes, lane, sky, tables, curve):
     if lanes[row.ACCEPTED + lane] == 0.0:
         lanes[row.STANDING + lane] = UNRESOLVED
         return
+    if lanes[row.FLAGGED + lane] == LANDS:
+        _land(lanes, lane, sky.forces.radius)
+        return
     zone = int(lanes[row.ZONE + lane])
     start = lane_place(lanes, row.START, lane)
     end = lane_place(lanes, row.END, lane)
@@ -60,7 +72,7 @@ def look_closer(lanes, lane, sky, tables, curve):
     shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, 0.0))
     end_shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, h))
     near = one.surfaces_near(sky, shadow, end_shadow, zone, start, end)
-    if near[0] or near[1] or near[2]:
+    if near[0] or near[1] or (near[2] and _edge_met((shadow, end_shadow), sky.forces, zone, start, end)):
         _draw_curve(lanes, lane, curve)
         surface, part = one.first_surface(sky, zone, curve, near, start, end)
         if part <= 1.0:
@@ -70,6 +82,103 @@ def look_closer(lanes, lane, sky, tables, curve):
         lanes[row.STANDING + lane] = AGED
     elif lanes[row.TRIALS + lane] >= one.MOST_TRIALS:
         lanes[row.STANDING + lane] = UNRESOLVED
+
+
+@inlined
+def _edge_met(shadows, forces, zone, start, end):
+    """Return False where a step that ends above ground passes or nears no edge of its zone: see `first_crossing`.
+
+    `shadows` are those at the step's start and end.
+    """
+    for edge in (PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
+        if zone == PENUMBRA or edge in (PENUMBRA_EDGE, zone):
+            above, rate = height(shadows[1], forces.outer_radius, edge, zone, end)
+            if above < 0.0:
+                return True
+            if rate > 0.0 and height(shadows[0], forces.outer_radius, edge, zone, start)[1] < 0.0:
+                return True
+    return False
+
+
+@inlined
+def _land(lanes, lane, radius):
+    """Cut a step that starts well above ground and ends below it where it passes the ground.
+
+    Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`. It starts
+    where the cubic passes that has the same values and slopes at the ends, and stops as soon as its next error, which
+    goes with the square of the last change, is small enough.
+    """
+    h = lanes[row.LENGTH + lane]
+    x = _polynomial(lanes, lane, h, 0)
+    y = _polynomial(lanes, lane, h, row.Y)
+    z = _polynomial(lanes, lane, h, row.Z)
+    goal = radius * radius
+    left, right = 0.0, 1.0
+    part = _passing(lanes, lane, h, goal)
+    for _ in range(HALVINGS):
+        px, dx = _value_and_slope(x, part)
+        py, dy = _value_and_slope(y, part)
+        pz, dz = _value_and_slope(z, part)
+        f = px * px + py * py + pz * pz - goal
+        if f > 0.0:
+            left = part
+        else:
+            right = part
+        change = -0.5 * f / (px * dx + py * dy + pz * dz)
+        part += change
+        if (dx * dx + dy * dy + dz * dz) * (change * change) <= 0.1 * SHARP * goal:
+            break
+        if not left < part < right:
+            part = 0.5 * (left + right)
+    part = min(part, 1.0)
+    lanes[row.STANDING + lane] = LANDED
+    lanes[row.FLOWN + lane] = part
+    for axis in range(0, 3 * WIDTH, WIDTH):
+        lanes[row.END + axis + lane] = _value_and_slope(_polynomial(lanes, lane, h, axis), part)[0]
+        at = row.VELOCITY + axis
+        lanes[row.END + at + lane] = _value_and_slope(_polynomial(lanes, lane, h, at), part)[0]
+
+
+@inlined
+def _passing(lanes, lane, h, goal):
+    """Return about where a step's square of the distance from the centre falls to `goal`, between 0 and 1."""
+    x, y, z, vx, vy, vz = lane_place(lanes, row.START, lane)
+    end_x, end_y, end_z, end_vx, end_vy, end_vz = lane_place(lanes, row.END, lane)
+    above = x * x + y * y + z * z - goal
+    below = end_x * end_x + end_y * end_y + end_z * end_z - goal
+    fall = 2.0 * h * (x * vx + y * vy + z * vz)
+    bend = below - above - fall
+    rest = 2.0 * h * (end_x * end_vx + end_y * end_vy + end_z * end_vz) - fall - 2.0 * bend
+    part = above / (above - below)
+    for _ in range(3):
+        # The cubic is above + part (fall + part inner).
+        inner = bend + (part - 1.0) * rest
+        slope = fall + part * (2.0 * inner + part * rest)
+        part = min(1.0, max(0.0, part - (above + part * (fall + part * inner)) / slope))
+    return part
+
+
+@inlined
+def _polynomial(lanes, lane, h, component):
+    """Return the five coefficients of `dense_output` of place or velocity, `component` its row within a state."""
+    at = component + lane
+    growth = lanes[row.GROWTH + at]
+    bend = h * lanes[row.START + row.VELOCITY + at] - growth
+    rest = growth - h * lanes[row.SEVENTH + at] - bend
+    return lanes[row.START + at], growth, bend, rest, lanes[row.QUARTIC + at]
+
+
+@inlined
+def _value_and_slope(coefficients, part):
+    """Return the value at `part` of a step, and its derivative with respect to it."""
+    start, growth, bend, rest, quartic = coefficients
+    left = 1.0 - part
+    inner = rest + left * quartic
+    middle = bend + part * inner
+    outer = growth + left * middle
+    slope = inner - part * quartic
+    slope = left * slope - middle
+    return start + part * outer, outer + part * slope
 
 
 @inlined
@@ -108,12 +217,13 @@ def _draw_curve(lanes, lane, curve):
     for i in range(ORDER + 1):
         curve[SERIES + i] = lanes[row.SERIES + i * WIDTH + lane]
     for i in range(6):
-        at = i * WIDTH + lane
-        first = lanes[row.START + row.VELOCITY + at]
-        last = lanes[row.SEVENTH + at]
-        set_component(
-            curve, i, lanes[row.START + at], lanes[row.GROWTH + at], h, first, last, lanes[row.QUARTIC + at]
-        )
+        start, growth, bend, rest, quartic = _polynomial(lanes, lane, h, i * WIDTH)
+        k = COEFFICIENTS + 5 * i
+        curve[k] = start
+        curve[k + 1] = growth
+        curve[k + 2] = bend
+        curve[k + 3] = rest
+        curve[k + 4] = quartic
 
 
 @inlined

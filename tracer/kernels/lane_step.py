@@ -49,6 +49,7 @@ from tracer.kernels.lanes import (
     LIT,
     NEARNESS,
     OTHER,
+    OTHER_ERROR,
     PARTIAL,
     PER_ALLOWED,
     QUARTIC,
@@ -90,6 +91,12 @@ from tracer.kernels.step_control import far_out, step_change
 MOST_GRIDS = 2
 """Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
 
+LANDS, DOUBTFUL = 1.0, 2.0
+"""Flags of a step: it starts well above ground, ends below it and meets nothing else; it wants to be looked at."""
+
+ALOFT = 1.0 + 1e-6
+"""Square of the least distance from the centre, in radii, that is well above ground."""
+
 COUNTING = 6755399441055744.0
 """1.5 2^52: the sum of it and a small number holds that number, rounded to a whole one, in its last bits."""
 
@@ -103,14 +110,16 @@ def try_steps(lanes, sky, tables):
     numbers = _numbers(sky, tables)
     apart = prepare_apart(lanes, sky, tables)
     _choose_lengths(lanes, sky.forces)
+    # Not a literal, for each of which numba would compile what it is passed to.
+    stage = np.int64(0)
     if apart:
-        look_apart(lanes, 0, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2 = second(v, h, a)
         _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, 1, second(p, h, v), v2))
     if apart:
-        look_apart(lanes, 1, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -119,7 +128,7 @@ def try_steps(lanes, sky, tables):
             lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3)
         )
     if apart:
-        look_apart(lanes, 2, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -128,7 +137,7 @@ def try_steps(lanes, sky, tables):
         p4 = fourth(p, h, v, v2, v3)
         _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, 3, p4, v4))
     if apart:
-        look_apart(lanes, 3, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -138,7 +147,7 @@ def try_steps(lanes, sky, tables):
         p5 = fifth(p, h, v, v2, v3, v4)
         _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, 4, p5, v5))
     if apart:
-        look_apart(lanes, 4, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -149,7 +158,7 @@ def try_steps(lanes, sky, tables):
         p6 = sixth(p, h, v, v2, v3, v4, v5)
         _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, 5, p6, v6))
     if apart:
-        look_apart(lanes, 5, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -178,8 +187,7 @@ def try_steps(lanes, sky, tables):
 def lane_rates(sky, tables, zone, body, position, velocity):
     """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone` of `body`.
 
-    As lanes do. Light is relative to full light at `light_distance`; other losses are those that go neither with it nor
-    are constant.
+    As lanes do. Light is relative to full light at `light_distance`; other losses neither go with it nor are constant.
     """
     x, y, z = position
     lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
@@ -227,9 +235,9 @@ def lane_place(lanes, row, lane):
 
 @kernel
 def look_apart(lanes, stage, sky, tables):
-    """Set the light and the push of the next stage in lanes that see part of the Sun or are pushed by many lines.
+    """Set the light and the push of a stage in lanes that see part of the Sun or are pushed by many lines.
 
-    `stage` counts from 0, the second. Its place is known before its rates are.
+    `stage` counts from 0, the second; its place is known before its rates are. Returns the next one's number.
     """
     forces = sky.forces
     for lane in range(WIDTH):
@@ -244,6 +252,7 @@ def look_apart(lanes, stage, sky, tables):
         if tables[0] > MOST_GRIDS:
             v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
             lanes[EXTRA + lane] = extra_push(body, tables, (x, y, z), v)
+    return stage + 1
 
 
 @inlined
@@ -392,6 +401,10 @@ def _judge(lanes, sky):
     """Weigh the error of every step, and set the length of the next one."""
     forces, losses, _ = sky
     per_light = losses.ionizing + losses.other_sunlight
+    if losses.other_lit > 0.0 or losses.other_distance > 0.0:
+        for lane in range(WIDTH):
+            h = lane_value(lanes, LENGTH + lane)
+            set_lane_value(lanes, OTHER_ERROR + lane, _integrate(lanes, lane, h, OTHER, STAGE_OTHER))
     for lane in range(WIDTH):
         h, _, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -402,8 +415,7 @@ def _judge(lanes, sky):
         _set_vector(lanes, QUARTIC + lane, quartic(h, v, v3, v4, v5, v6, v7))
         _set_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
         light_error = _integrate(lanes, lane, h, LIGHT, STAGE_LIGHT)
-        other_error = _integrate(lanes, lane, h, OTHER, STAGE_OTHER)
-        of_hazard = fused(per_light, light_error, other_error)
+        of_hazard = fused(per_light, light_error, lane_value(lanes, OTHER_ERROR + lane))
         per_r = lane_value(lanes, START + NEARNESS + lane)
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
         squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_r)) * (
@@ -461,13 +473,15 @@ def _flag(lanes, sky):
         end_above, end_rate = _cone(shadow, there, lit, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))
-        met = (end_r2 < lowest) | dips | (end_r2 > highest) | turns | edge
+        other = (end_r2 > highest) | turns | edge
+        met = (end_r2 < lowest) | dips | other
         accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
         too_short = not (lane_value(lanes, STEP + lane) > SHORTEST_STEP * lane_value(lanes, TIME + lane))
         stuck = (lane_value(lanes, TRIALS + lane) >= MOST_TRIALS) | ((not accepted) & too_short)
-        ends = accepted & (met | (lane_value(lanes, LAST + lane) > 0.0))
-        flagged = (stuck | ends) & (lane_value(lanes, STANDING + lane) == FLYING)
-        set_lane_value(lanes, FLAGGED + lane, 1.0 if flagged else 0.0)
+        last = lane_value(lanes, LAST + lane) > 0.0
+        flagged = (stuck | (accepted & (met | last))) & (lane_value(lanes, STANDING + lane) == FLYING)
+        lands = accepted & (end_r2 < lowest) & (r2 > ALOFT * lowest) & (not other)
+        set_lane_value(lanes, FLAGGED + lane, (LANDS if lands else DOUBTFUL) if flagged else 0.0)
 
 
 @inlined

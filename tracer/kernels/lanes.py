@@ -66,6 +66,8 @@ _ROWS = (
     # coefficients of the same.
     ("GROWTH", STAGE_ROWS),
     ("QUARTIC", STAGE_ROWS),
+    # The error of the other losses; stays 0, as do their growth and quartic coefficient, where they don't vary.
+    ("OTHER_ERROR", 1),
     # The sample: an even random number; place; distance from the centre; atoms; light received; radial velocity from
     # the Sun; the cells, counted with fractions.
     ("DRAWN", 1),
@@ -122,6 +124,7 @@ SIXTH = _FIRST["SIXTH"]
 SEVENTH = _FIRST["SEVENTH"]
 GROWTH = _FIRST["GROWTH"]
 QUARTIC = _FIRST["QUARTIC"]
+OTHER_ERROR = _FIRST["OTHER_ERROR"]
 DRAWN = _FIRST["DRAWN"]
 SAMPLE = _FIRST["SAMPLE"]
 SAMPLE_R = _FIRST["SAMPLE_R"]
@@ -144,5 +147,6 @@ def new_lanes() -> np.ndarray:
     """Return lanes without flights, their numbers such as no formula stumbles over."""
     lanes = np.ones(LANES_SIZE)
     lanes[STANDING : STANDING + WIDTH] = VACANT
-    lanes[EXTRA : EXTRA + WIDTH] = 0.0
+    for first in (EXTRA, GROWTH + STAGE_OTHER, QUARTIC + STAGE_OTHER, OTHER_ERROR):
+        lanes[first : first + WIDTH] = 0.0
     return lanes
