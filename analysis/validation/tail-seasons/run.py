@@ -11,6 +11,8 @@ from tracer.engine.tracing import run
 
 FOLDER = Path(__file__).parent
 OUTBOUND, INBOUND = 110.0, 250.0
+TEMPERATURE = 3000
+"""Of the release round the orbit [K]: at 1,200 K next to nothing reaches 120 radii at perihelion and aphelion."""
 RUN = """
 title = "tail"
 [body]
@@ -60,8 +62,8 @@ def tail(anomaly, motion, temperature, particles):
 
 def main() -> None:
     parser = argparse.ArgumentParser(description=__doc__)
-    parser.add_argument("--particles", type=int, default=8000, help="in each of 20 batches")
-    parser.add_argument("--step", type=float, default=30.0, help="of true anomaly round the orbit [deg]")
+    parser.add_argument("--particles", type=int, default=6000, help="in each of 20 batches")
+    parser.add_argument("--step", type=float, default=20.0, help="of true anomaly round the orbit [deg]")
     arguments = parser.parse_args()
     for temperature in (1200, 3000):
         for motion in ("stationary", "moving"):
@@ -75,7 +77,7 @@ def main() -> None:
                 )
     anomalies = np.unique(np.append(np.arange(0.0, 360.0, arguments.step), [OUTBOUND, INBOUND]))
     table = {
-        motion: np.array([tail(a, motion, 1200, arguments.particles) for a in anomalies])
+        motion: np.array([tail(a, motion, TEMPERATURE, arguments.particles) for a in anomalies])
         for motion in ("stationary", "moving")
     }
     print("true anomaly   brightness [R]: stationary, moving     column [1e10 m-2]: stationary, moving")
@@ -103,7 +105,7 @@ def draw(anomalies, table) -> None:
         axis.grid(alpha=0.3)
     axes[0].legend()
     axes[0].set_title(
-        "Sodium 110 to 130 radii behind Mercury, 30 radii wide, $10^{24}$ s$^{-1}$", fontsize=10
+        "Sodium 110 to 130 radii behind Mercury, 30 radii wide, 3,000 K, $10^{24}$ s$^{-1}$", fontsize=10
     )
     axes[1].set(xlabel="true anomaly [deg], outbound up to 180", xlim=(-5, 365))
     figure.savefig(FOLDER / "seasons.png", dpi=130)
