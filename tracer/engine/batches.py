@@ -8,12 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tracer.engine.kernel_world import kernel_world
-from tracer.engine.launching import draw_launches
+from tracer.engine.launching import draw_launches, make_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
 from tracer.kernels.resume import ENDED, STEPS, new_resume
 from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
+from tracer.physics.release.even_numbers import EvenNumbers
 from tracer.tally.buffer import BufferLayout, make_layout, tally_views
 
 SLICE_SECONDS = 0.1
@@ -47,13 +48,17 @@ class BatchResult(NamedTuple):
 
 
 class Work(NamedTuple):
-    """All that a worker needs to trace any batch of a run."""
+    """All that a worker needs to trace any batch of a run.
+
+    `stratified` False draws independent launches, which only measures what the strata gain.
+    """
 
     scene: Scene
     world: World
     layout: BufferLayout
     seed: int
     particles: int
+    stratified: bool = True
 
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
@@ -86,11 +91,12 @@ def trace_batch(
     release = work.scene.releases[task.release]
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    weight = release.rate / work.particles
+    even_numbers = EvenNumbers(rng, work.stratified)
     flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
     for first in range(0, work.particles, BLOCK):
         count = min(BLOCK, work.particles - first)
-        launches = draw_launches(work.scene, release, count, rng, weight)
+        weights = np.full(count, release.rate / work.particles)
+        launches = make_launches(work.scene, release, even_numbers.draw(count), weights)
         resume = new_resume(len(work.scene.lines))
         while (atoms_before := int(resume.counters[ENDED])) < count:
             begin = thread_time()
