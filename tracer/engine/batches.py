@@ -15,6 +15,7 @@ from tracer.kernels.resume import ENDED, STEPS, new_resume
 from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
 from tracer.physics.release.even_numbers import EvenNumbers
+from tracer.physics.release.strata import Strata, draw, one_stratum
 from tracer.tally.buffer import BufferLayout, make_layout, tally_views
 
 SLICE_SECONDS = 0.1
@@ -50,7 +51,8 @@ class BatchResult(NamedTuple):
 class Work(NamedTuple):
     """All that a worker needs to trace any batch of a run.
 
-    `stratified` False draws independent launches, which only measures what the strata gain.
+    `strata` holds each release's; without them a batch is one stratum. `stratified` False draws independent launches
+    instead, which only measures what the strata gain.
     """
 
     scene: Scene
@@ -58,6 +60,7 @@ class Work(NamedTuple):
     layout: BufferLayout
     seed: int
     particles: int
+    strata: tuple[Strata, ...] = ()
     stratified: bool = True
 
 
@@ -91,12 +94,13 @@ def trace_batch(
     release = work.scene.releases[task.release]
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    even_numbers = EvenNumbers(rng, work.stratified)
+    supply = EvenNumbers(rng, work.stratified)
+    strata = work.strata[task.release] if work.strata else one_stratum(work.particles)
     flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
     for first in range(0, work.particles, BLOCK):
         count = min(BLOCK, work.particles - first)
-        weights = np.full(count, release.rate / work.particles)
-        launches = make_launches(work.scene, release, even_numbers.draw(count), weights)
+        u, shares = draw(strata, supply, first, count)
+        launches = make_launches(work.scene, release, u, release.rate * shares)
         resume = new_resume(len(work.scene.lines))
         while (atoms_before := int(resume.counters[ENDED])) < count:
             begin = thread_time()

@@ -8,6 +8,7 @@ from tracer.kernels.launches import Launches
 from tracer.kernels.launching import velocities
 from tracer.kernels.temperature import temperatures
 from tracer.physics.release.even_numbers import AZIMUTH, PLACE, SPEED, TURN, ZENITH, EvenNumbers
+from tracer.physics.release.strata import draw, one_stratum
 
 Floats = NDArray[np.float64]
 
@@ -16,7 +17,8 @@ def draw_launches(
     scene: Scene, release: Release, count: int, rng: np.random.Generator, weight: float
 ) -> Launches:
     """Return `count` launches of `release`, `weight` [s-1] each, stratified over place, speed and direction."""
-    return make_launches(scene, release, EvenNumbers(rng).draw(count), np.full(count, weight))
+    u, _ = draw(one_stratum(count), EvenNumbers(rng), 0, count)
+    return make_launches(scene, release, u, np.full(count, weight))
 
 
 def make_launches(scene: Scene, release: Release, u: Floats, weights: Floats) -> Launches:

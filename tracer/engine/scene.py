@@ -61,7 +61,7 @@ class Scene(NamedTuple):
 
     `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body,
     `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it; `outer_radius` [m] from the centre,
-    `age_limit` [s].
+    `age_limit` [s]; `emphasis` says which launches are sampled densely, "even" or "far".
     """
 
     body: BodyConstants
@@ -76,6 +76,7 @@ class Scene(NamedTuple):
     age_limit: float
     grid: Grid
     planes: tuple[ImagePlane, ...]
+    emphasis: str
 
     @property
     def lines(self) -> tuple[VelocityTable, ...]:
@@ -134,6 +135,7 @@ def build_scene(spec: RunSpec) -> Scene:
         age_limit=si(spec.domain.age_limit),
         grid=_grid(spec, spec.grid, body.radius),
         planes=tuple(_plane(spec, i, image, body.radius) for i, image in enumerate(spec.image, 1)),
+        emphasis=spec.ensemble.emphasis,
     )
 
 

@@ -11,7 +11,7 @@ COUNT = 4096
 
 
 def points(seed: int, count: int = COUNT, stratified: bool = True) -> np.ndarray:
-    return EvenNumbers(np.random.default_rng(seed), stratified).draw(count)
+    return EvenNumbers(np.random.default_rng(seed), stratified).points(np.arange(count))
 
 
 @pytest.mark.parametrize("place", [0, 1, 777])
@@ -56,16 +56,17 @@ def test_supplies_do_not_know_of_each_other():
 
 
 def test_points_do_not_depend_on_the_portions_in_which_they_are_drawn():
-    one, other = (EvenNumbers(np.random.default_rng(7)) for _ in range(2))
-    whole = one.draw(600)
-    parts = np.concatenate([other.draw(200), other.draw(1), other.draw(399)])
-    assert np.array_equal(parts, whole)
+    supply = EvenNumbers(np.random.default_rng(7))
+    whole = supply.points(np.arange(600))
+    parts = [supply.points(np.arange(*ends)) for ends in ((400, 600), (0, 1), (1, 400))]
+    assert np.array_equal(np.concatenate([parts[1], parts[2], parts[0]]), whole)
+    jumping = np.array([7, 8, 9, 400, 3, 401])
+    assert np.array_equal(supply.points(jumping), whole[jumping])
     assert np.all((whole >= 0.0) & (whole < 1.0))
 
 
 def test_unscrambled_sequence_is_scipys():
     # scipy.stats.qmc.Sobol, which takes its direction numbers from the same table.
-    digits = np.empty((5000, DIMENSIONS), np.uint64)
-    sobol_digits(direction_numbers(), np.zeros(DIMENSIONS, np.uint64), 0, digits)
+    digits = sobol_digits(direction_numbers(), np.zeros(DIMENSIONS, np.uint64), np.arange(5000))
     expected = qmc.Sobol(DIMENSIONS, scramble=False, bits=BITS).random_base2(13)[:5000]
     np.testing.assert_array_equal(digits * 2.0**-BITS, expected)

@@ -1,5 +1,7 @@
 """The even numbers from which launches are made: five each, for place, turn about its axis, speed, and direction."""
 
+from functools import cache
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -20,7 +22,7 @@ DIMENSIONS = len(POLYNOMIALS)
 
 
 class EvenNumbers:
-    """An endless supply of points even in the unit cube, stratified in all coordinates together.
+    """Points even in the unit cube, stratified in all coordinates together.
 
     A Sobol sequence (Sobol 1967, USSR Comput. Math. Math. Phys. 7, 86), scrambled by random matrices and a random
     shift of its digits (Matousek 1998, J. Complexity 14, 527): each point alone is even in the cube, so that a mean
@@ -37,20 +39,20 @@ class EvenNumbers:
     def __init__(self, rng: np.random.Generator, stratified: bool = True) -> None:
         self._rng = rng
         self._stratified = stratified
-        self._drawn = 0
         self._shift = rng.integers(2**BITS, size=DIMENSIONS, dtype=np.uint64)
         self._directions = _scrambled(direction_numbers(), rng)
 
-    def draw(self, count: int) -> Floats:
-        """Return the next `count` points, (count, DIMENSIONS), each coordinate in [0, 1)."""
+    def points(self, numbers: NDArray[np.int64]) -> Floats:
+        """Return the points of these `numbers`, (n,) from 0, as (n, DIMENSIONS), each coordinate in [0, 1).
+
+        Best stratified are runs of 2^k points that begin at a multiple of 2^k.
+        """
         if not self._stratified:
-            return self._rng.random((count, DIMENSIONS))
-        digits = np.empty((count, DIMENSIONS), np.uint64)
-        sobol_digits(self._directions, self._shift, self._drawn, digits)
-        self._drawn += count
-        return np.asarray(digits * 2.0**-BITS)
+            return self._rng.random((len(numbers), DIMENSIONS))
+        return np.asarray(sobol_digits(self._directions, self._shift, numbers) * 2.0**-BITS)
 
 
+@cache
 def direction_numbers() -> Digits:
     """Return the direction numbers (DIMENSIONS, BITS), scaled by 2^BITS.
 
