@@ -1,6 +1,7 @@
 """`tracer check`: the resolved scene, without running it."""
 
 from pathlib import Path
+from types import MappingProxyType
 from typing import Any
 
 import typer
@@ -17,6 +18,13 @@ from tracer.engine.scene import build_scene
 from tracer.engine.tracing import available_processors
 
 DAY = 86400.0
+EMPHASIS = MappingProxyType(
+    {
+        "even": "even: launches as often as they happen",
+        "far": "far: half of the launches even, half to those that a pilot finds to reach far or escape; bounces as "
+        "they happen",
+    }
+)
 MEGABYTE = 1e6
 
 
@@ -66,6 +74,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
             ("particles", _particles(spec, figures)),
+            ("emphasis", EMPHASIS[figures.emphasis]),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
@@ -113,8 +122,15 @@ def _print_release(release: ReleasePreview) -> None:
         ("median hop time, gravity alone", _figure(release.hop_time, "s")),
         ("median hop range, gravity alone", _figure(release.hop_range, "km", 1e3)),
         ("cross the outer radius", f"{100 * release.crossing_fraction:.3g} % of first flights"),
+        ("rarest launches told apart", _rarest(release.rarest_launch)),
     ]
     print_rows([(name, text) for name, text in rows if text])
+
+
+def _rarest(share: float | None) -> str:
+    if share is None:
+        return ""
+    return "none: speed decides nothing" if share == 1.0 else f"the fastest {share:.2g} of all"
 
 
 def _figure(value: float | None, unit: str, size: float = 1.0) -> str:

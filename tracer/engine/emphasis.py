@@ -7,7 +7,6 @@ finds, the weights are exact: it decides how good the sampling is, never what co
 """
 
 from math import ceil, log
-from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,7 +22,7 @@ from tracer.kernels.tracing import trace_slice
 from tracer.physics.release.boxes import Sample, halved, importance
 from tracer.physics.release.even_numbers import DIMENSIONS, PLACE, SPEED, TURN, EvenNumbers
 from tracer.physics.release.strata import Boxes, Strata, one_stratum, shared_out
-from tracer.physics.retention import escape_speed
+from tracer.physics.thermal import escape_speed
 from tracer.tally.axes import Grid, altitude_edges, latitude_edges, local_time_edges
 from tracer.tally.buffer import tally_views
 
@@ -62,7 +61,7 @@ def far_strata(scene: Scene, release: Release, particles: int) -> Strata:
     """Return strata for `particles` launches a batch, finer and fuller where atoms reach far."""
     most = min(MOST_STRATA, particles // LAUNCHES_PER_STRATUM)
     edges = speed_edges(rarest_launch(scene, release), most)
-    if len(edges) < 3 and most < 2:
+    if most < 2:
         return one_stratum(particles)
     boxes = _speed_boxes(edges)
     sample = fly_pilot(scene, release, boxes)
@@ -77,17 +76,17 @@ def rarest_launch(scene: Scene, release: Release) -> float:
     The speed is that at the warmest place, where it matters; the share is 1 where slower atoms reach no less far.
     """
     escape = escape_speed(scene.body.gm, scene.body.radius)
-    share, kelvin = 1.0, _warmest(scene, release)
+    kelvin = _warmest(scene, release)
+    if _speed(scene, release, RAREST, kelvin) == _speed(scene, release, 1.0, kelvin):
+        return 1.0
+    share = 1.0
     while share > RAREST and _speed(scene, release, share, kelvin) < escape:
         share /= SPEED_STEP
-    if _speed(scene, release, share, kelvin) == _speed(scene, release, 1.0, kelvin):
-        return 1.0
     return share
 
 
 def _speed(scene: Scene, release: Release, share: float, kelvin: Floats) -> float:
-    # Half-way into the smallest number: a law's slowest speed, not the limit that it may not have.
-    return float(release.speed.speeds(np.array([max(1e-9, 1.0 - share)]), kelvin, scene.mass)[0])
+    return float(release.speed.speeds(np.array([1.0 - share]), kelvin, scene.mass)[0])
 
 
 def _warmest(scene: Scene, release: Release) -> Floats:
@@ -109,11 +108,6 @@ def _speed_boxes(edges: Floats) -> Boxes:
     low, width = np.zeros((len(edges) - 1, DIMENSIONS)), np.ones((len(edges) - 1, DIMENSIONS))
     low[:, SPEED], width[:, SPEED] = edges[1:], edges[:-1] - edges[1:]
     return Boxes(low, width)
-
-
-class _Pilot(NamedTuple):
-    work: Work
-    buffer: Floats
 
 
 def fly_pilot(scene: Scene, release: Release, boxes: Boxes) -> Sample:
@@ -146,4 +140,6 @@ def _fly_alone(work: Work, launch: Launches, rng: np.random.Generator) -> tuple[
     tally = tally_views(work.layout, np.zeros(work.layout.size))
     resume = new_resume(len(work.scene.lines))
     flights = trace_slice(work.world, launch, resume, tally, rng, PILOT_FLIGHTS)
-    return np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED]), flights + float(resume.counters[STEPS])
+    return np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED]), flights + float(
+        resume.counters[STEPS]
+    )

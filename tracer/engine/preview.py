@@ -7,6 +7,7 @@ import numpy as np
 
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.batches import make_work
+from tracer.engine.emphasis import rarest_launch
 from tracer.engine.launching import draw_launches, ground_velocities
 from tracer.engine.memory import GIGABYTE, available_memory, sizes
 from tracer.engine.notes import scene_notes
@@ -46,7 +47,8 @@ class ReleasePreview(NamedTuple):
     the jeans parameter and the scale height are those of that temperature; `launch_speed` [m s-1] is the mean of the
     trial launches; medians of `hop_time` [s] and `hop_range` [m] over the
     trial launches that land, None where none does; `crossing_fraction` of the trial launches cross the outer radius.
-    Trial launches fly under gravity alone.
+    Trial launches fly under gravity alone. `rarest_launch` is the share of the fastest launches that emphasis "far"
+    tells apart, None with emphasis "even".
     """
 
     name: str
@@ -61,6 +63,7 @@ class ReleasePreview(NamedTuple):
     hop_time: float | None
     hop_range: float | None
     crossing_fraction: float
+    rarest_launch: float | None
 
 
 class SunPreview(NamedTuple):
@@ -107,6 +110,7 @@ class Preview(NamedTuple):
     particles: int
     batches: int
     seed: int
+    emphasis: str
     memory: int
     product_size: int
     notes: tuple[str, ...]
@@ -136,6 +140,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
         batches=spec.ensemble.most_batches,
         seed=spec.ensemble.seed,
+        emphasis=scene.emphasis,
         memory=memory,
         product_size=product_size,
         notes=(*scene_notes(spec, scene), *_outflow_notes(releases), *_memory_notes(memory)),
@@ -179,6 +184,7 @@ def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
         hop_time=float(np.median(durations[landed])) if landed.any() else None,
         hop_range=float(np.median(arcs[landed])) * scene.body.radius if landed.any() else None,
         crossing_fraction=float(np.mean(endings == CROSSED)),
+        rarest_launch=None if scene.emphasis == "even" else rarest_launch(scene, release),
     )
 
 

@@ -43,6 +43,7 @@ def hashed(small_run_file):
         "image[1].look_from=south",
         "image[1].pixels=[8, 7]",
         "image[1].name=tail",
+        "ensemble.emphasis=far",
     ],
 )
 def test_hash_changes_with_what_decides_the_product(hashed, change):
@@ -63,7 +64,7 @@ def test_hash_changes_with_what_decides_the_product(hashed, change):
         "release[1].direction.law=cosine",
     ],
 )
-def test_hash_stays_with_title_ensemble_and_spelling(hashed, change):
+def test_hash_stays_with_title_number_of_particles_and_spelling(hashed, change):
     assert hashed(change) == hashed()
 
 

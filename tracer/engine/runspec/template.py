@@ -56,6 +56,7 @@ pixels = [128, 128]
 particles_per_batch = 2_000          # per release; the more, the smaller the error bars
 batches = 20                         # at least 2; error bars come from the scatter between batches
 seed = 20310601
+emphasis = "even"                    # or "far": more launches that reach high, escape or make a tail
 replicates = 20                      # groups of batches kept for the errors of sums; 0 keeps none
 """
 

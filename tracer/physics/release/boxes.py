@@ -33,8 +33,11 @@ class _Leaf(NamedTuple):
     low: Floats
     width: Floats
     flights: NDArray[np.int64]
+    mean: float
+    """Mean importance."""
+
     expected: float
-    """Mean importance, drawn a little towards that of the box it was cut from."""
+    """The same, drawn a little towards that of the box it was cut from: no flight of few may be bad luck."""
 
     error: float
     """Probability times the root of importance times cost: what the best sampling spends on the box."""
@@ -112,17 +115,16 @@ def _halves(sample: Sample, boxes: Boxes, leaf: _Leaf, axis: int) -> tuple[_Leaf
     middle = (upper[axis] - boxes.low[box, axis]) / boxes.width[box, axis]
     above = sample.points[leaf.flights, axis] >= middle
     return (
-        _leaf(sample, leaf.low, width, leaf.flights[~above], leaf.expected),
-        _leaf(sample, upper, width, leaf.flights[above], leaf.expected),
+        _leaf(sample, leaf.low, width, leaf.flights[~above], leaf.mean),
+        _leaf(sample, upper, width, leaf.flights[above], leaf.mean),
     )
 
 
-def _leaf(
-    sample: Sample, low: Floats, width: Floats, flights: NDArray[np.int64], before: float
-) -> _Leaf:
-    expected = (float(sample.importance[flights].sum()) + before) / (len(flights) + 1)
-    error = float(np.prod(width)) * np.sqrt(expected * _mean_cost(sample, flights))
-    return _Leaf(low, width, flights, expected, error)
+def _leaf(sample: Sample, low: Floats, width: Floats, flights: NDArray[np.int64], before: float) -> _Leaf:
+    total, count = float(sample.importance[flights].sum()), len(flights)
+    mean = total / max(1, count)
+    error = float(np.prod(width)) * np.sqrt(mean * _mean_cost(sample, flights))
+    return _Leaf(low, width, flights, mean, (total + before) / (count + 1), error)
 
 
 def _mean_cost(sample: Sample, flights: NDArray[np.int64]) -> float:

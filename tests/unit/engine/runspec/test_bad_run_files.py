@@ -168,7 +168,8 @@ def test_type(old: str, new: str, message: str) -> None:
         (
             "batches = 20",
             "threads = 2",
-            "ensemble.threads: unknown key; allowed here: particles_per_batch, batches, seed, replicates, stop",
+            "ensemble.threads: unknown key; allowed here: particles_per_batch, batches, seed, replicates, emphasis, "
+            "stop",
         ),
         (
             "[ensemble]",
