@@ -9,7 +9,7 @@ from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
 from tracer.engine.scene import Scene
 from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
 from tracer.kernels.bounce import Surface
-from tracer.kernels.cells import Cells, Images
+from tracer.kernels.cells import Cells, Images, make_cells
 from tracer.kernels.motion import Losses
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
@@ -89,7 +89,7 @@ def _typed(law: SurfaceTemperature) -> SurfaceTemperature:
 def _cells(grid: Grid) -> Cells:
     altitudes = grid.altitude_edges
     layers = len(altitudes) - 1
-    return Cells(
+    return make_cells(
         radius=float(grid.body_radius),
         radii=grid.body_radius + altitudes,
         first_altitude=float(altitudes[1]),

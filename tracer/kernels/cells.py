@@ -1,18 +1,11 @@
 """Which grid cell or image pixel a position lies in."""
 
-import math
 from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.cell_tables import CellTables, column_of, layer_of, make_tables, row_of
 from tracer.kernels.compiling import inlined, kernel
-from tracer.kernels.first_guess import (
-    ANGLE_ERROR,
-    ARCSINE_ERROR,
-    rough_angle,
-    rough_arcsine,
-    rough_logarithm,
-)
 
 
 class Cells(NamedTuple):
@@ -28,55 +21,38 @@ class Cells(NamedTuple):
     cells_per_log: float
     latitude_cells: int
     local_time_cells: int
+    tables: CellTables
+
+
+def make_cells(
+    radius: float,
+    radii: np.ndarray,
+    first_altitude: float,
+    cells_per_log: float,
+    latitude_cells: int,
+    local_time_cells: int,
+) -> Cells:
+    """Return the `Cells` with these numbers and the tables for them."""
+    tables = make_tables(radii, first_altitude, latitude_cells, local_time_cells)
+    return Cells(radius, radii, first_altitude, cells_per_log, latitude_cells, local_time_cells, tables)
 
 
 @inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
-    last = cells.radii.shape[0] - 2
-    if r >= cells.radii[last + 1]:
-        return -1
-    altitude = r - cells.radius
-    if altitude < cells.first_altitude:
-        return 0
-    guess = 1 + int(rough_logarithm(altitude / cells.first_altitude) * cells.cells_per_log)
-    guess = min(last, max(0, guess))
-    # The edges themselves decide.
-    while r < cells.radii[guess]:
-        guess -= 1
-    while r >= cells.radii[guess + 1]:
-        guess += 1
-    return guess
+    return layer_of(cells.tables, cells.radii, cells.first_altitude, r)
 
 
 @inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
-    number = cells.latitude_cells
-    place = (rough_arcsine(sine) / math.pi + 0.5) * number
-    if not _clear_of_edges(place, ARCSINE_ERROR / math.pi * number):
-        angle = math.asin(min(1.0, max(-1.0, sine)))
-        place = (angle / math.pi + 0.5) * number
-    return min(number - 1, max(0, int(place)))
+    return row_of(cells.tables, sine)
 
 
 @inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
-    number = cells.local_time_cells
-    place = (0.5 + rough_angle(x, y) / (2.0 * math.pi)) * number
-    if not _clear_of_edges(place, ANGLE_ERROR / (2.0 * math.pi) * number):
-        place = (0.5 + math.atan2(y, x) / (2.0 * math.pi)) * number
-    cell = int(place)
-    # atan2 gives +pi and -pi at midnight: both are the first cell.
-    return 0 if cell >= number else cell
-
-
-@inlined
-def _clear_of_edges(place, margin):
-    """Return True where `place`, in cells, is further than `margin` from the edges of its cell; False if it is NaN."""
-    part = place - math.floor(place)
-    return margin < part < 1.0 - margin
+    return column_of(cells.tables, x, y)
 
 
 class Images(NamedTuple):

@@ -4,15 +4,14 @@ import math
 
 import numpy as np
 
-from tracer.fate import Fate
-from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
+from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.integrated_flight import PLACE, TIME, advance, start_flight
 from tracer.kernels.launches import Launches
 from tracer.kernels.resume import AGE, ENDED, RELEASED, STEPS, UNDER_WAY, Resume
-from tracer.kernels.scoring import Tally, mean_survival_time
+from tracer.kernels.scoring import Tally
 from tracer.kernels.step_scoring import book_step, score_step
 from tracer.kernels.world import World
 
@@ -59,7 +58,7 @@ def trace_arcs(world, launches, resume, tally, rng, most_flights):
     while flights < most_flights and resume.counters[ENDED] < launches.weights.shape[0]:
         _begin(world, launches, resume, tally)
         alive = take_off(resume.atom, tally)
-        end = _fly_arc(world, resume, tally, alive, rng)
+        end = fly_arc(world, tally, resume.atom, alive, resume.shine, rng)
         _finish(world, resume, tally, alive, end, rng)
         flights += 1
     return flights
@@ -77,21 +76,6 @@ def _finish(world, resume, tally, alive, end, rng):
     come_down(world, resume.atom, tally, alive, end, rng)
     if resume.atom[UNDER_WAY] == 0.0:
         resume.counters[ENDED] += 1
-
-
-@merged
-def _fly_arc(world, resume, tally, alive, rng):
-    """Return (ending, survival, time, position, velocity) of one flight on a closed-form arc, and count it."""
-    atom = resume.atom
-    motion = world.motion
-    arc = launch_arc(motion, atom[0], atom[1], atom[2], atom[3], atom[4], atom[5])
-    ending, s_end = arc_end(motion, arc, motion.age_limit - atom[AGE])
-    score_arc(world, tally, arc, s_end, alive, resume.shine, rng)
-    t, x, y, z, vx, vy, vz = arc_state(motion, arc, s_end)
-    kept = math.exp(-motion.hazard * t)
-    tally.life[0] += alive * mean_survival_time(motion.hazard, t)
-    tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
-    return ending, kept, t, x, y, z, vx, vy, vz
 
 
 @kernel

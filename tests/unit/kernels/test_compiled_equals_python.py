@@ -54,7 +54,7 @@ def test_turned_axes():
 
 def grid() -> cells.Cells:
     altitudes = np.concatenate(([0.0], np.geomspace(1e4, 5e6, 12)))
-    return cells.Cells(
+    return cells.make_cells(
         RADIUS, RADIUS + altitudes, 1e4, 11.0 / np.log(5e6 / 1e4), latitude_cells=7, local_time_cells=9
     )
 
