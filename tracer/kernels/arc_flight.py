@@ -14,8 +14,12 @@ from tracer.kernels.resume import AGE
 from tracer.kernels.scoring import mean_survival_time, score_sample
 from tracer.kernels.universal import anomaly_at_time, time_at
 
-SAMPLES_PER_FLIGHT = 6
-"""Strata of a flight, one sample each: more gain less than the time they cost."""
+LEAST_SAMPLES = 3
+SAMPLES_PER_ANGLE = 4.0
+"""Samples of a hop, and more for each radian of w s between launch and landing: the higher, the more cells it meets."""
+
+FAR_SAMPLES = 16
+"""Samples of a flight that is no closed hop."""
 
 LEAST_BINDING = 1e-3
 """Binding energy in units of gm/(2 r0) from which on a hop is closed in w s: nearer to the parabola digits are lost."""
@@ -122,21 +126,9 @@ def hop_end(motion, arc, hop):
 
 @inlined
 def short_sine(x):
-    """Return sin x to 1e-11 for |x| < 1.6, by its series."""
+    """Return sin x to 1e-13 for |x| < 0.15, by its series."""
     q = x * x
-    return x * (
-        1.0
-        - q
-        * (
-            1.0 / 6.0
-            - q
-            * (
-                1.0 / 120.0
-                - q
-                * (1.0 / 5040.0 - q * (1.0 / 362880.0 - q * (1.0 / 39916800.0 - q * (1.0 / 6227020800.0))))
-            )
-        )
-    )
+    return x * (1.0 - q * (1.0 / 6.0 - q * (1.0 / 120.0 - q * (1.0 / 5040.0))))
 
 
 @merged
@@ -148,7 +140,8 @@ def score_hop(world, tally, arc, hop, weight, shine, rng):
     motion = world.motion
     _t, w, angle, _g1, _g2 = hop
     per_w, per_beta = 1.0 / w, 1.0 / arc.beta
-    step = angle / SAMPLES_PER_FLIGHT
+    samples = LEAST_SAMPLES + int(SAMPLES_PER_ANGLE * angle)
+    step = angle / samples
     phase = rng.random() * step
     half = short_sine(0.5 * phase)
     sine, versine = 2.0 * half * math.sqrt(1.0 - half * half), 2.0 * half * half
@@ -157,7 +150,7 @@ def score_hop(world, tally, arc, hop, weight, shine, rng):
     radial, swing = arc.eta * per_w, arc.zeta * per_beta
     fall, along, rest = arc.gm * per_beta / arc.r0, arc.r0 * per_w, arc.eta * per_beta
     lasting = weight * step * per_w
-    for _ in range(SAMPLES_PER_FLIGHT):
+    for _ in range(samples):
         r = arc.r0 + radial * sine + swing * versine
         f = 1.0 - fall * versine
         g = along * sine + rest * versine
@@ -184,8 +177,8 @@ def score_arc(world, tally, arc, s_end, weight, shine, rng):
     times r ds. Even strata of s, not of time, put more of the samples near the body, where cells are small.
     """
     motion = world.motion
-    width = s_end / SAMPLES_PER_FLIGHT
-    for k in range(SAMPLES_PER_FLIGHT):
+    width = s_end / FAR_SAMPLES
+    for k in range(FAR_SAMPLES):
         t, r, x, y, z = position_at(arc, (k + rng.random()) * width)
         x, y = turned(x, y, motion.frame_rate * t)
         content = weight * r * width
