@@ -53,6 +53,10 @@ _QUANTITY = re.compile(
 _SCALED_UNIT = re.compile(r"(?!1\s*/)[0-9.+-]")
 """A unit that begins with a number of its own, such as `3 km`; `1/s` is none."""
 
+_PURE = astropy.units.dimensionless_unscaled
+_NO_UNIT = ("", "1")
+_FILE_WORDS: Mapping[str, str] = MappingProxyType({"kelvin": "K", "kelvins": "K", "percent": "%"})
+
 
 @dataclass(frozen=True)
 class Quantity:
@@ -136,6 +140,18 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
     raise ValueError(f"{quoted(quantity.unit)} is not a unit of any dimension in use")
 
 
+def conversion_factor(name: str, wanted: str) -> float | None:
+    """Return by how much a number in unit `name` is multiplied to be in unit `wanted`, None where it cannot be.
+
+    Beside the notation of `astropy.units` the words that netCDF files use for kelvin and for pure numbers are known.
+    Temperatures that count from another zero, such as degrees Celsius, are no multiples of a kelvin.
+    """
+    given, target = (_file_unit(word.strip()) for word in (name, wanted))
+    if given is None or target is None or not given.is_equivalent(target):
+        return None
+    return float(given.to(target))
+
+
 def quoted(value: object) -> str:
     """Return `value` as a run file would show it, on one printable line of at most 60 characters."""
     if isinstance(value, Mapping):
@@ -173,6 +189,10 @@ def _unit(name: str) -> Any:
             return None
     # Logarithmic and structured units are no factors, so they have no SI value by multiplication.
     return unit if isinstance(unit, astropy.units.UnitBase) else None
+
+
+def _file_unit(name: str) -> Any:
+    return _PURE if name in _NO_UNIT else _unit(_FILE_WORDS.get(name, name))
 
 
 def _is_number(value: object) -> bool:
