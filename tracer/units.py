@@ -1,7 +1,8 @@
 """Quantities with units as a user writes them, and their values in SI.
 
 Angles are the one exception to SI: the project's words latitude, zenith angle and azimuth are in degrees, so
-angles stay in degrees. The extra unit `radii` is the radius of the body at hand.
+angles stay in degrees. An energy may be given per mole and is then that of one atom. The extra unit `radii` is
+the radius of the body at hand.
 """
 
 import json
@@ -14,6 +15,8 @@ from types import MappingProxyType
 from typing import Any, NamedTuple
 
 import astropy.units
+
+from tracer.constants import AVOGADRO
 
 RADII = "radii"
 
@@ -43,6 +46,8 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "acceleration": Dimension("acceleration", "m s-2", "0.05 m s-2"),
         "magnetic field": Dimension("magnetic field", "T", "195 nT"),
         "number density": Dimension("number density", "m-3", "50 cm-3"),
+        "area": Dimension("area", "m2", "1e-20 cm2"),
+        "photon flux": Dimension("photon flux", "m-2 s-1", "2e14 cm-2 s-1"),
     }
 )
 
@@ -53,6 +58,8 @@ _QUANTITY = re.compile(
 _SCALED_UNIT = re.compile(r"(?!1\s*/)[0-9.+-]")
 """A unit that begins with a number of its own, such as `3 km`; `1/s` is none."""
 
+_MOLAR_ENERGY = astropy.units.Unit("J mol-1")
+_MOLE = astropy.units.Unit(astropy.units.mol / AVOGADRO)
 _PURE = astropy.units.dimensionless_unscaled
 _NO_UNIT = ("", "1")
 _FILE_WORDS: Mapping[str, str] = MappingProxyType({"kelvin": "K", "kelvins": "K", "percent": "%"})
@@ -188,7 +195,9 @@ def _unit(name: str) -> Any:
         except (ValueError, TypeError, ArithmeticError):
             return None
     # Logarithmic and structured units are no factors, so they have no SI value by multiplication.
-    return unit if isinstance(unit, astropy.units.UnitBase) else None
+    if not isinstance(unit, astropy.units.UnitBase):
+        return None
+    return unit * _MOLE if unit.is_equivalent(_MOLAR_ENERGY) else unit
 
 
 def _file_unit(name: str) -> Any:

@@ -21,12 +21,16 @@ from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
         ("1e24 s-1", "rate", 1e24),
         ("60 1/h", "rate", 1.0 / 60.0),
         ("2 eV", "energy", 2 * 1.602176634e-19),  # SI 2019, exact
+        ("28 kJ/mol", "energy", 28e3 / 6.02214076e23),  # of one atom; Avogadro constant exact (SI 2019)
+        ("0.3 MJ mol-1", "energy", 3e5 / 6.02214076e23),
         ("23 u", "mass", 23 * ATOMIC_MASS),  # CODATA 2022
         ("1 yr", "time", 365.25 * 86400),  # Julian year, IAU
         ("9_500 km3 s-2", "gravitational parameter", 9.5e12),
         ("5 cm s-2", "acceleration", 0.05),
         ("195 nT", "magnetic field", 1.95e-7),
         ("50 cm-3", "number density", 5e7),
+        ("1e-20 cm2", "area", 1e-24),
+        ("2e14 cm-2 s-1", "photon flux", 2e18),
     ],
 )
 def test_value_in_si_is_the_written_one(text: str, dimension: str, value: float) -> None:

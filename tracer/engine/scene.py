@@ -7,6 +7,13 @@ import numpy as np
 
 from tracer.catalogue.load import gases
 from tracer.engine.body_constants import BodyConstants, resolve_body
+from tracer.engine.ground import (
+    ColdTraps,
+    Desorption,
+    ground_files,
+    resolve_cold_traps,
+    resolve_desorption,
+)
 from tracer.engine.laws import direction_law, place_law, speed_law
 from tracer.engine.refusal import refuse
 from tracer.engine.runspec.grid import GridTable
@@ -60,7 +67,8 @@ class Scene(NamedTuple):
     """All that decides the physics and the cells of a run, in SI units.
 
     `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body,
-    `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it; `outer_radius` [m] from the centre,
+    `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it, `desorption` where adsorbed atoms are
+    kept for good, `cold_traps` where there are none; `outer_radius` [m] from the centre,
     `age_limit` [s].
     """
 
@@ -72,6 +80,8 @@ class Scene(NamedTuple):
     surface_temperature: SurfaceTemperature | None
     sticking: float
     accommodation: float
+    desorption: Desorption | None
+    cold_traps: ColdTraps | None
     outer_radius: float
     age_limit: float
     grid: Grid
@@ -118,9 +128,10 @@ def build_scene(spec: RunSpec) -> Scene:
     body = resolve_body(spec)
     _refuse_colliding_images(spec)
     temperature = spec.surface.temperature
+    sun = resolve_sunlight(spec, body)
     return Scene(
         body=body,
-        sun=resolve_sunlight(spec, body),
+        sun=sun,
         mass=_mass(spec),
         losses=tuple(
             Loss(loss.name, si(loss.rate), loss.scaling == "inverse-square", loss.where == "sunlight")
@@ -130,6 +141,8 @@ def build_scene(spec: RunSpec) -> Scene:
         surface_temperature=None if temperature is None else _surface_temperature(temperature),
         sticking=spec.surface.sticking,
         accommodation=spec.surface.accommodation,
+        desorption=resolve_desorption(spec, sun),
+        cold_traps=resolve_cold_traps(spec),
         outer_radius=_outer_radius(spec, body),
         age_limit=si(spec.domain.age_limit),
         grid=_grid(spec, spec.grid, body.radius),
@@ -141,7 +154,7 @@ def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
     """Return the files that the run file refers to, in its order."""
     tables = (entry.speed for entry in spec.release)
     names = [table.file for table in tables if isinstance(table, TabulatedSpeed)]
-    return tuple(spec.folder / name for name in [*names, *g_files(spec)])
+    return tuple(spec.folder / name for name in [*names, *g_files(spec), *ground_files(spec)])
 
 
 def _refuse_colliding_images(spec: RunSpec) -> None:

@@ -99,10 +99,17 @@ ROWS = (
         "s-1 sr-1",
         "rate of escape per solid angle, by the place of crossing on the outer sphere",
     ),
+    Variable("adsorbed_column", _GROUND, "m-2", "column of atoms at rest on the ground", optional=True),
     Variable("ionization_rate", _CELLS, "m-3 s-1", "ions made by sunlight per volume and time"),
     Variable("ledger", (RELEASE, FATE), "s-1", "particle budget"),
+    Variable(
+        "roulette_balance",
+        (RELEASE,),
+        "s-1",
+        "what roulette added to the particle budget: nothing but for chance",
+    ),
     Variable("mean_flights", (RELEASE,), "1", "launches per released atom"),
-    Variable("mean_life", (RELEASE,), "s", "mean time from release to any end"),
+    Variable("mean_life", (RELEASE,), "s", "mean time from release to any end, time at rest included"),
     Variable(
         "surface_temperature",
         (LATITUDE, LOCAL_TIME),

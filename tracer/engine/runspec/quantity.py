@@ -77,6 +77,10 @@ Latitude = Annotated[Quantity, Measured("angle", Interval(at_least=-90.0, at_mos
 Rate = Annotated[Quantity, Measured("rate", Interval(above=0.0, at_most=1e35))]
 """Replicates are kept in single precision, which ends at 3e38."""
 LossRate = Annotated[Quantity, Measured("rate", NOT_NEGATIVE)]
+Frequency = Annotated[Quantity, Measured("rate", POSITIVE)]
+Area = Annotated[Quantity, Measured("area", POSITIVE)]
+PhotonFlux = Annotated[Quantity, Measured("photon flux", POSITIVE)]
+PolarAngle = Annotated[Quantity, Measured("angle", Interval(at_least=0.0, at_most=90.0))]
 Energy = Annotated[Quantity, Measured("energy", POSITIVE)]
 Mass = Annotated[Quantity, Measured("mass", POSITIVE)]
 Duration = Annotated[Quantity, Measured("time", Interval(above=0.0, at_most=1e18))]

@@ -81,7 +81,7 @@ class RunSpec(Table):
             *_colliding_images(self),
             *_missing_temperature(self),
             *_buried_outer_radius(self),
-            *(dead_without_sun(self.gas) if self.sun is None else ()),
+            *(dead_without_sun(self.gas, self.surface) if self.sun is None else ()),
         ):
             raise problem
         return self
@@ -115,6 +115,8 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     for number, release in enumerate(spec.release, 1):
         if isinstance(release.speed, MaxwellFlux | MaxwellGas) and release.speed.temperature == "surface":
             yield conflict("surface.temperature", f"missing; release[{number}].speed takes it; {example}")
+    if spec.surface.adsorbed == "desorbed":
+        yield conflict("surface.temperature", f"missing; adsorbed atoms leave again by its heat; {example}")
     lands = spec.body.gm is None or spec.body.gm.value > 0.0
     if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
         yield conflict("surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}")
