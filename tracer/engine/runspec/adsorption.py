@@ -9,9 +9,7 @@ from tracer.engine.runspec.text import FilePath, Line
 
 
 class PhotonDesorptionTable(Table):
-    """Desorption by sunlight: cross section times photon flux, by day in proportion to the cosine of the solar zenith
-    angle.
-    """
+    """Desorption by sunlight: cross section times photon flux times the cosine of the solar zenith angle, by day."""
 
     cross_section: Area = Field(description="Cross section of one adsorbed atom.")
     photon_flux: PhotonFlux = Field(
