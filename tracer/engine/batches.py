@@ -11,7 +11,8 @@ from tracer.engine.kernel_world import kernel_world
 from tracer.engine.launching import draw_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
-from tracer.kernels.tracing import ATOM, STEPS, new_resume, trace_slice
+from tracer.kernels.resume import ENDED, STEPS, new_resume
+from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
 from tracer.tally.buffer import BufferLayout, make_layout, tally_views
 
@@ -89,15 +90,15 @@ def trace_batch(
     flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
     for first in range(0, work.particles, BLOCK):
         count = min(BLOCK, work.particles - first)
-        launches = draw_launches(work.scene, release, count, rng)
+        launches = draw_launches(work.scene, release, count, rng, weight)
         resume = new_resume(len(work.scene.lines))
-        while (atoms_before := int(resume.counters[ATOM])) < count:
+        while (atoms_before := int(resume.counters[ENDED])) < count:
             begin = thread_time()
-            made = trace_slice(work.world, *launches, weight, resume, tally, rng, budget)
+            made = trace_slice(work.world, launches, resume, tally, rng, budget)
             spent = thread_time() - begin
             flights, seconds = flights + made, seconds + spent
             budget = next_budget(budget, spent)
-            tell(int(resume.counters[ATOM]) - atoms_before, made)
+            tell(int(resume.counters[ENDED]) - atoms_before, made)
             if stopped():
                 raise Interrupted("interrupted")
         steps += int(resume.counters[STEPS])
@@ -113,6 +114,6 @@ def next_budget(budget: int, spent: float) -> int:
 def compile_kernels(work: Work) -> None:
     """Compile or load what `trace_batch` calls, without flying an atom, so that workers start together."""
     rng = np.random.default_rng(0)
-    launches = draw_launches(work.scene, work.scene.releases[0], 1, rng)
+    launches = draw_launches(work.scene, work.scene.releases[0], 1, rng, 1.0)
     tally = tally_views(work.layout, np.zeros(work.layout.size))
-    trace_slice(work.world, *launches, 1.0, new_resume(len(work.scene.lines)), tally, rng, 0)
+    trace_slice(work.world, launches, new_resume(len(work.scene.lines)), tally, rng, 0)

@@ -1,33 +1,31 @@
 """Draw the launches of one batch from a release's laws."""
 
-from typing import NamedTuple
-
 import numpy as np
 from numpy.typing import NDArray
 
 from tracer.engine.scene import Release, Scene
+from tracer.kernels.launches import Launches
 from tracer.kernels.launching import velocities
 from tracer.kernels.temperature import temperatures
 
 Floats = NDArray[np.float64]
 
 
-class Launches(NamedTuple):
-    """Places (n, 3) as unit vectors and velocities (n, 3) [m s-1] relative to the ground, Sun-fixed axes."""
+def draw_launches(
+    scene: Scene, release: Release, count: int, rng: np.random.Generator, weight: float
+) -> Launches:
+    """Return `count` launches of `release`, `weight` [s-1] each.
 
-    positions: Floats
-    velocities: Floats
-
-
-def draw_launches(scene: Scene, release: Release, count: int, rng: np.random.Generator) -> Launches:
-    """Return `count` launches of `release`; place, speed, zenith angle and azimuth take five even numbers each."""
+    Place, speed, zenith angle and azimuth take five even numbers each.
+    """
     u = rng.random((count, 5))
     positions = np.ascontiguousarray(release.place.places(u[:, 0:2]))
     law = scene.surface_temperature
     kelvin = np.full(count, np.nan) if law is None else temperatures(law, positions)
     speeds = release.speed.speeds(u[:, 2], kelvin, scene.mass)
     cosines = release.direction.zenith_cosines(u[:, 3])
-    return Launches(positions, velocities(positions, speeds, cosines, 2.0 * np.pi * u[:, 4]))
+    flights = velocities(positions, speeds, cosines, 2.0 * np.pi * u[:, 4])
+    return Launches(positions, flights, np.full(count, weight))
 
 
 def ground_velocities(scene: Scene, positions: Floats) -> Floats:

@@ -8,8 +8,9 @@ from numpy.typing import NDArray
 
 import tracer
 from tracer.engine.batches import Work, make_work
-from tracer.engine.launching import Launches, draw_launches
+from tracer.engine.launching import draw_launches
 from tracer.engine.scene import build_scene
+from tracer.kernels.launches import Launches
 from tracer.kernels.step_control import DEFAULT_TOLERANCE, FIRST_STEP, STEP_SHARE
 
 Floats = NDArray[np.float64]
@@ -32,7 +33,7 @@ def make_case(count: int) -> Case:
     spec = tracer.load_run(HERE / "case.toml")
     work = make_work(build_scene(spec), SEED, count)
     gravity = make_work(build_scene(spec.model_copy(update={"sun": None})), SEED, count)
-    launches = draw_launches(work.scene, work.scene.releases[0], count, np.random.default_rng(SEED))
+    launches = draw_launches(work.scene, work.scene.releases[0], count, np.random.default_rng(SEED), 1.0)
     places = work.scene.body.radius * launches.positions
     spin = work.scene.ground_spin
     turned = spin * np.column_stack([-places[:, 1], places[:, 0], np.zeros(count)])

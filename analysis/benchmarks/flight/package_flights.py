@@ -7,7 +7,6 @@ import numpy as np
 from case import Case, Floats
 
 from tracer.engine.batches import Work
-from tracer.engine.launching import Launches
 from tracer.kernels.endings import FLYING
 from tracer.kernels.integrated_flight import (
     HAZARDS,
@@ -19,7 +18,9 @@ from tracer.kernels.integrated_flight import (
     new_flight,
     start_flight,
 )
-from tracer.kernels.tracing import ATOM, STEPS, new_resume, trace_slice
+from tracer.kernels.launches import Launches
+from tracer.kernels.resume import ENDED, STEPS, new_resume
+from tracer.kernels.tracing import trace_slice
 from tracer.tally.buffer import tally_views
 
 
@@ -68,7 +69,7 @@ def traced(work: Work, launches: Launches) -> tuple[float, int]:
     count = len(launches.positions)
     rng = np.random.default_rng(1)
     begin = thread_time()
-    trace_slice(work.world, *launches, 1.0, resume, tally, rng, count)
+    trace_slice(work.world, launches, resume, tally, rng, count)
     spent = thread_time() - begin
-    assert resume.counters[ATOM] == count
+    assert resume.counters[ENDED] == count
     return spent, int(resume.counters[STEPS])

@@ -11,7 +11,8 @@ from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
-from tracer.kernels.tracing import ALOFT, ATOM, new_resume, trace_slice
+from tracer.kernels.resume import ENDED, UNDER_WAY, new_resume
+from tracer.kernels.tracing import trace_slice
 from tracer.tally.buffer import tally_views
 from tracer.tally.statistics import BatchStatistics
 
@@ -83,16 +84,16 @@ def _sliced(spec, budget: int) -> tuple[np.ndarray, int, int]:
     work = make_work(build_scene(spec), 20310601, 120)
     rng = np.random.default_rng(5)
     release = work.scene.releases[0]
-    launches = draw_launches(work.scene, release, work.particles, rng)
+    launches = draw_launches(work.scene, release, work.particles, rng, 1.0)
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
     resume = new_resume(0)
     flights = stops_aloft = 0
-    while resume.counters[ATOM] < work.particles:
-        made = trace_slice(work.world, *launches, 1.0, resume, tally, rng, budget)
+    while resume.counters[ENDED] < work.particles:
+        made = trace_slice(work.world, launches, resume, tally, rng, budget)
         assert 0 < made <= budget
         flights += made
-        stops_aloft += int(resume.counters[ALOFT] == 1)
+        stops_aloft += int(resume.atom[UNDER_WAY])
     return buffer, flights, stops_aloft
 
 

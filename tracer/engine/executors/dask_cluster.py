@@ -150,6 +150,14 @@ def _refuse_foreign_workers(client: Any, where: str) -> None:
             raise InputError(f"--cluster {where}: worker {worker} is refused: {reason}")
 
 
+def _end_at_foreign_workers(client: Any, joined: list[str]) -> None:
+    """Raise ForeignWorker where one that joined late could never help: waiting for its first batch may take long."""
+    answers: Mapping[str, Any] = client.run(worker_fingerprint, workers=joined, on_error="return")
+    for worker, answer in answers.items():
+        if reason := _why_foreign(answer):
+            raise ForeignWorker(f"worker {worker} has joined and is refused: {reason}")
+
+
 def _why_foreign(answer: Any) -> str:
     try:
         theirs = Fingerprint(**answer)
@@ -300,7 +308,10 @@ class _Census:
         if self._known:
             for address in self._known.keys() - present.keys():
                 self._note("worker lost", f"worker {address} is lost; its batches run again", worker=address)
-            for address in present.keys() - self._known.keys():
+            joined = sorted(present.keys() - self._known.keys())
+            for address in joined:
                 self._note("worker joined", f"worker {address} has joined", worker=address)
+            if joined:
+                _end_at_foreign_workers(self._client, joined)
         self._known = present
         self._workers = sum(present.values())

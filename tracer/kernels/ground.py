@@ -1,0 +1,94 @@
+"""What happens to an atom at the ground, and what each end of a life leaves in the tallies."""
+
+import math
+
+from tracer.fate import Fate
+from tracer.kernels.bounce import rebound
+from tracer.kernels.compiling import merged
+from tracer.kernels.endings import AGED, CROSSED, LANDED
+from tracer.kernels.resume import AGE, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
+from tracer.kernels.scoring import ground_cell
+
+
+@merged
+def release(world, launches, i, atom, tally):
+    """Make `atom` number `i` of `launches` and launch it."""
+    nx, ny, nz = launches.positions[i, 0], launches.positions[i, 1], launches.positions[i, 2]
+    row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
+    tally.released[row, column] += launches.weights[i]
+    atom[WEIGHT] = launches.weights[i]
+    atom[SURVIVAL] = 1.0
+    atom[AGE] = 0.0
+    atom[HOME_ROW] = row
+    atom[HOME_COLUMN] = column
+    atom[UNDER_WAY] = 1.0
+    v = launches.velocities
+    _launch(world, atom, nx, ny, nz, v[i, 0], v[i, 1], v[i, 2])
+
+
+@merged
+def take_off(atom, tally):
+    """Count a launch and return the weight [s-1] that flies."""
+    alive = atom[WEIGHT] * atom[SURVIVAL]
+    tally.launches[0] += alive
+    return alive
+
+
+@merged
+def come_down(world, atom, tally, alive, end, rng):
+    """Enter the end of a flight, `end` = (ending, survival, time [s], position, velocity), that `alive` [s-1] began.
+
+    The atom is launched again, or its life ends and `atom[UNDER_WAY]` is 0.
+    """
+    ending, kept, t, x, y, z, vx, vy, vz = end
+    alive *= kept
+    atom[SURVIVAL] *= kept
+    atom[AGE] += t
+    if ending == LANDED:
+        _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng)
+    else:
+        _end_aloft(world, atom, tally, ending, alive, x, y, z)
+
+
+@merged
+def _launch(world, atom, nx, ny, nz, vx, vy, vz):
+    """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
+    radius = world.motion.radius
+    spin = world.surface.spin
+    atom[0] = radius * nx
+    atom[1] = radius * ny
+    atom[2] = radius * nz
+    atom[3] = vx - spin * atom[1]
+    atom[4] = vy + spin * atom[0]
+    atom[5] = vz
+
+
+@merged
+def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
+    r = math.sqrt(x * x + y * y + z * z)
+    nx, ny, nz = x / r, y / r, z / r
+    row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
+    tally.returned[row, column] += alive
+    if rng.random() < world.surface.sticking:
+        tally.captured[row, column] += alive
+        tally.ledger[Fate.CAPTURED] += alive
+        atom[UNDER_WAY] = 0.0
+        return
+    ux = vx + world.surface.spin * y
+    uy = vy - world.surface.spin * x
+    out = rebound(rng, world.surface, nx, ny, nz, ux * ux + uy * uy + vz * vz)
+    _launch(world, atom, nx, ny, nz, out[0], out[1], out[2])
+
+
+@merged
+def _end_aloft(world, atom, tally, ending, alive, x, y, z):
+    if ending == CROSSED:
+        tally.ledger[Fate.ESCAPED] += alive
+        tally.escaped[int(atom[HOME_ROW]), int(atom[HOME_COLUMN])] += alive
+        row, column = ground_cell(world.cells, x, y, z, math.sqrt(x * x + y * y + z * z))
+        tally.escaped_by_direction[row, column] += alive
+    elif ending == AGED:
+        tally.ledger[Fate.AGE_LIMIT] += alive
+    else:
+        tally.ledger[Fate.UNRESOLVED] += alive
+    atom[UNDER_WAY] = 0.0
