@@ -12,6 +12,7 @@ from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
 from tracer.kernels.motion import Losses
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
+from tracer.kernels.surface_map import SurfaceMap
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 from tracer.kernels.world import Light, Motion, World
 from tracer.physics.lines import line_tables, push_tables
@@ -83,7 +84,8 @@ _NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), False, "none", (), Fals
 
 
 def _typed(law: SurfaceTemperature) -> SurfaceTemperature:
-    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night))
+    table = SurfaceMap(*(np.ascontiguousarray(part, dtype=np.float64) for part in law.table))
+    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night), table)
 
 
 def _cells(grid: Grid) -> Cells:

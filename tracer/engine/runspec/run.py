@@ -17,7 +17,7 @@ from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.spectral_line import SpectralLineTable
 from tracer.engine.runspec.speed import MaxwellFlux, MaxwellGas
 from tracer.engine.runspec.sun import SunTable
-from tracer.engine.runspec.sunless import dead_without_sun
+from tracer.engine.runspec.sunless import dead_without_sun, unheated_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
 from tracer.engine.runspec.table import Table, conflict
 from tracer.engine.runspec.text import Line
@@ -81,7 +81,7 @@ class RunSpec(Table):
             *_colliding_images(self),
             *_missing_temperature(self),
             *_buried_outer_radius(self),
-            *(dead_without_sun(self.gas) if self.sun is None else ()),
+            *(_without_sun(self) if self.sun is None else ()),
         ):
             raise problem
         return self
@@ -106,6 +106,11 @@ def _colliding_images(spec: RunSpec) -> Iterator[Exception]:
                 f'"{image.name}" becomes {names[0]} in the product, which collides with image[{first}]',
             )
         kept.update(dict.fromkeys(names, number))
+
+
+def _without_sun(spec: RunSpec) -> Iterator[Exception]:
+    yield from dead_without_sun(spec.gas)
+    yield from unheated_without_sun(spec.surface)
 
 
 def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
