@@ -12,6 +12,7 @@ from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
 from tracer.kernels.motion import Losses
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.surface_map import SurfaceMap
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 from tracer.kernels.world import Light, Motion, World
@@ -36,7 +37,7 @@ def kernel_world(scene: Scene) -> World:
         Surface(
             # Nothing bounces and nothing takes the ground's temperature where none is given.
             temperature=_typed(scene.surface_temperature or SurfaceTemperature(UNIFORM, np.nan, np.nan)),
-            sticking=float(scene.sticking),
+            sticking=Sticking(*map(float, scene.sticking)),
             accommodation=float(scene.accommodation),
             speed_squared_per_kelvin=2.0 * BOLTZMANN / scene.mass,
             spin=float(scene.ground_spin),

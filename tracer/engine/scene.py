@@ -16,9 +16,11 @@ from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
+from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.temperature import TemperatureMap
 from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
 from tracer.engine.surface_temperature import surface_temperature
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import SurfaceTemperature
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
@@ -74,7 +76,7 @@ class Scene(NamedTuple):
     losses: tuple[Loss, ...]
     releases: tuple[Release, ...]
     surface_temperature: SurfaceTemperature | None
-    sticking: float
+    sticking: Sticking
     accommodation: float
     outer_radius: float
     age_limit: float
@@ -132,7 +134,7 @@ def build_scene(spec: RunSpec) -> Scene:
         ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
         surface_temperature=surface_temperature(spec, sun),
-        sticking=spec.surface.sticking,
+        sticking=_sticking(spec.surface.sticking),
         accommodation=spec.surface.accommodation,
         outer_radius=_outer_radius(spec, body),
         age_limit=si(spec.domain.age_limit),
@@ -181,6 +183,12 @@ def _release(spec: RunSpec, number: int, entry: ReleaseTable, radius: float) -> 
         direction_law(entry.direction),
         place_law(spec, f"{key}.place", entry.place, radius),
     )
+
+
+def _sticking(given: float | ExponentialSticking) -> Sticking:
+    if isinstance(given, ExponentialSticking):
+        return Sticking(given.value, si(given.at), si(given.e_folding))
+    return Sticking(given, 0.0, np.inf)
 
 
 def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:

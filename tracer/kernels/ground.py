@@ -3,7 +3,7 @@
 import math
 
 from tracer.fate import Fate
-from tracer.kernels.bounce import rebound
+from tracer.kernels.bounce import rebound, sticking_at
 from tracer.kernels.compiling import merged
 from tracer.kernels.endings import AGED, CROSSED, LANDED
 from tracer.kernels.resume import AGE, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
@@ -69,7 +69,7 @@ def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
     nx, ny, nz = x / r, y / r, z / r
     row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
     tally.returned[row, column] += alive
-    if rng.random() < world.surface.sticking:
+    if rng.random() < sticking_at(world.surface, nx, ny, nz):
         tally.captured[row, column] += alive
         tally.ledger[Fate.CAPTURED] += alive
         atom[UNDER_WAY] = 0.0

@@ -16,6 +16,7 @@ from tracer.engine.runspec.order import is_below
 from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.spectral_line import SpectralLineTable
 from tracer.engine.runspec.speed import MaxwellFlux, MaxwellGas
+from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.runspec.sunless import dead_without_sun, unheated_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
@@ -120,8 +121,13 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     for number, release in enumerate(spec.release, 1):
         if isinstance(release.speed, MaxwellFlux | MaxwellGas) and release.speed.temperature == "surface":
             yield conflict("surface.temperature", f"missing; release[{number}].speed takes it; {example}")
+    sticking = spec.surface.sticking
     lands = spec.body.gm is None or spec.body.gm.value > 0.0
-    if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
+    if isinstance(sticking, ExponentialSticking):
+        yield conflict(
+            "surface.temperature", f'missing; surface.sticking "{sticking.law}" takes it; {example}'
+        )
+    elif lands and sticking < 1.0 and spec.surface.accommodation > 0.0:
         yield conflict("surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}")
 
 

@@ -5,6 +5,7 @@ from typing import Literal
 from pydantic import Field
 
 from tracer.engine.runspec.number import Fraction
+from tracer.engine.runspec.sticking import StickingLaw
 from tracer.engine.runspec.table import Table
 from tracer.engine.runspec.temperature import TemperatureLaw
 
@@ -14,10 +15,10 @@ class SurfaceTable(Table):
 
     temperature: TemperatureLaw | None = Field(
         None,
-        description="Temperature of the surface. Required where atoms bounce (`sticking` below 1) or where a "
-        'release takes `temperature = "surface"`.',
+        description="Temperature of the surface. Required where atoms bounce (`sticking` below 1), where `sticking` is "
+        'a law, or where a release takes `temperature = "surface"`.',
     )
-    sticking: Fraction = Field(
+    sticking: StickingLaw = Field(
         0.0, description="Probability that a landing atom is adsorbed; the others bounce."
     )
     adsorbed: Literal["captured"] = Field(
