@@ -16,6 +16,7 @@ from tracer.kernels.motion import Losses
 from tracer.kernels.quantiles import quantile_nodes
 from tracer.kernels.roulette import WEIGHTED
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.surface_map import SurfaceMap
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 from tracer.kernels.traps import MAPPED, NOWHERE, POLEWARD, Traps
@@ -41,7 +42,7 @@ def kernel_world(scene: Scene) -> World:
         Surface(
             # Nothing bounces and nothing takes the ground's temperature where none is given.
             temperature=_typed(scene.surface_temperature or SurfaceTemperature(UNIFORM, np.nan, np.nan)),
-            sticking=float(scene.sticking),
+            sticking=Sticking(*map(float, scene.sticking)),
             accommodation=float(scene.accommodation),
             speed_squared_per_kelvin=2.0 * BOLTZMANN / scene.mass,
             spin=float(scene.ground_spin),
@@ -125,7 +126,8 @@ _NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), False, "none", (), Fals
 
 
 def _typed(law: SurfaceTemperature) -> SurfaceTemperature:
-    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night))
+    table = SurfaceMap(*(np.ascontiguousarray(part, dtype=np.float64) for part in law.table))
+    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night), table)
 
 
 def _cells(grid: Grid) -> Cells:

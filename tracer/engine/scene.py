@@ -18,19 +18,25 @@ from tracer.engine.laws import direction_law, place_law, speed_law
 from tracer.engine.refusal import refuse
 from tracer.engine.runspec.grid import GridTable
 from tracer.engine.runspec.image import ImageTable, product_name
+from tracer.engine.runspec.place import ReleaseMap
 from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
-from tracer.engine.runspec.temperature import TemperatureLaw, UniformTemperature
+from tracer.engine.runspec.sticking import ExponentialSticking
+from tracer.engine.runspec.temperature import TemperatureMap
 from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
-from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
+from tracer.engine.surface_temperature import surface_temperature
+from tracer.kernels.sticking import Sticking
+from tracer.kernels.temperature import SurfaceTemperature
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
 from tracer.product.layout import variable_names
 from tracer.tally.axes import Grid, ImagePlane, make_grid, make_image_plane, viewer_direction
 from tracer.units import si
+
+_BY_FILE = TabulatedSpeed | ReleaseMap | TemperatureMap
 
 FARTHEST = 1e8
 """Largest outer radius in radii: beyond it an arc's end loses the digits that landing and escape promise."""
@@ -78,7 +84,7 @@ class Scene(NamedTuple):
     losses: tuple[Loss, ...]
     releases: tuple[Release, ...]
     surface_temperature: SurfaceTemperature | None
-    sticking: float
+    sticking: Sticking
     accommodation: float
     desorption: Desorption | None
     cold_traps: ColdTraps | None
@@ -127,7 +133,6 @@ def build_scene(spec: RunSpec) -> Scene:
     """
     body = resolve_body(spec)
     _refuse_colliding_images(spec)
-    temperature = spec.surface.temperature
     sun = resolve_sunlight(spec, body)
     return Scene(
         body=body,
@@ -138,8 +143,8 @@ def build_scene(spec: RunSpec) -> Scene:
             for loss in spec.gas.loss
         ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
-        surface_temperature=None if temperature is None else _surface_temperature(temperature),
-        sticking=spec.surface.sticking,
+        surface_temperature=surface_temperature(spec, sun),
+        sticking=_sticking(spec.surface.sticking),
         accommodation=spec.surface.accommodation,
         desorption=resolve_desorption(spec, sun),
         cold_traps=resolve_cold_traps(spec),
@@ -152,8 +157,8 @@ def build_scene(spec: RunSpec) -> Scene:
 
 def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
     """Return the files that the run file refers to, in its order."""
-    tables = (entry.speed for entry in spec.release)
-    names = [table.file for table in tables if isinstance(table, TabulatedSpeed)]
+    laws = [law for entry in spec.release for law in (entry.speed, entry.place)]
+    names = [law.file for law in (*laws, spec.surface.temperature) if isinstance(law, _BY_FILE)]
     return tuple(spec.folder / name for name in [*names, *g_files(spec), *ground_files(spec)])
 
 
@@ -192,10 +197,10 @@ def _release(spec: RunSpec, number: int, entry: ReleaseTable, radius: float) -> 
     )
 
 
-def _surface_temperature(law: TemperatureLaw) -> SurfaceTemperature:
-    if isinstance(law, UniformTemperature):
-        return SurfaceTemperature(UNIFORM, si(law.value), si(law.value))
-    return SurfaceTemperature(QUARTER_POWER, si(law.subsolar), si(law.night))
+def _sticking(given: float | ExponentialSticking) -> Sticking:
+    if isinstance(given, ExponentialSticking):
+        return Sticking(given.value, si(given.at), si(given.e_folding))
+    return Sticking(given, 0.0, np.inf)
 
 
 def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:

@@ -5,7 +5,7 @@ import math
 from tracer.fate import Fate
 from tracer.kernels.adsorption import desorbed, spread_along, stay
 from tracer.kernels.arc_flight import turned
-from tracer.kernels.bounce import rebound
+from tracer.kernels.bounce import rebound, sticking_at
 from tracer.kernels.compiling import merged
 from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED
 from tracer.kernels.resume import AGE, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
@@ -72,7 +72,7 @@ def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
     row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
     tally.returned[row, column] += alive
     kept = world.traps.where != NOWHERE and trapped(world.traps, nx, ny, nz, rng)
-    adsorbed = not kept and rng.random() < world.surface.sticking
+    adsorbed = not kept and rng.random() < sticking_at(world.surface, nx, ny, nz)
     if kept or (adsorbed and not world.adsorption.desorbs):
         tally.captured[row, column] += alive
         tally.ledger[Fate.CAPTURED] += alive

@@ -1,7 +1,7 @@
 """How long the ground holds an atom, where the atom is meanwhile, and how it leaves."""
 
 from itertools import pairwise
-from math import cos, exp, inf, log, pi, sqrt
+from math import cos, exp, inf, log, nan, pi, sqrt
 
 import numpy as np
 import pytest
@@ -21,6 +21,7 @@ from tracer.kernels.adsorption import (
 )
 from tracer.kernels.bounce import Surface
 from tracer.kernels.quantiles import drawn_quantile, quantile_nodes
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
@@ -187,7 +188,7 @@ def test_table_of_quantiles_draws_the_law(law):
 
 def test_atoms_leave_with_the_temperature_of_the_ground():
     per_kelvin, rng = 416.0, np.random.default_rng(9)
-    surface = Surface(SurfaceTemperature(UNIFORM, 150.0, 150.0), 1.0, 1.0, per_kelvin, SPIN)
+    surface = Surface(SurfaceTemperature(UNIFORM, 150.0, 150.0), Sticking(1.0, nan, inf), 1.0, per_kelvin, SPIN)
     table = MaxwellFlux(None).speeds(
         quantile_nodes(), np.ones(len(quantile_nodes())), 2.0 * BOLTZMANN / per_kelvin
     )

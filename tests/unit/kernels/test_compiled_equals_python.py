@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from tracer.kernels import arc, arc_flight, bounce, cells, scoring, temperature, universal
+from tracer.kernels import arc, arc_flight, bounce, cells, scoring, sticking, temperature, universal
 
 RNG = np.random.default_rng(71)
 GM, RADIUS = 4902.8e9, 1737.4e3
@@ -80,7 +80,11 @@ def test_ground_temperature_and_survival():
 
 def test_rebounds_draw_the_same_random_numbers():
     surface = bounce.Surface(
-        temperature.SurfaceTemperature(temperature.UNIFORM, 300.0, 300.0), 0.0, 0.5, 4000.0, 0.0
+        temperature.SurfaceTemperature(temperature.UNIFORM, 300.0, 300.0),
+        sticking.Sticking(0.0, 0.0, np.inf),
+        0.5,
+        4000.0,
+        0.0,
     )
     compiled, plain = np.random.default_rng(5), np.random.default_rng(5)
     for _ in range(20):

@@ -7,6 +7,7 @@ import pytest
 from scipy.stats import gamma, kstest, uniform
 
 from tracer.kernels.bounce import Surface, direction_about, rebound, tangents, thermal_speed_squared
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 
 COUNT = 20_000
@@ -21,7 +22,7 @@ GROUND = np.array([0.48, -0.6, 0.64])
 def surface(accommodation: float) -> Surface:
     return Surface(
         SurfaceTemperature(UNIFORM, KELVIN, KELVIN),
-        sticking=0.0,
+        sticking=Sticking(0.0, 0.0, np.inf),
         accommodation=accommodation,
         speed_squared_per_kelvin=PER_KELVIN,
         spin=0.0,

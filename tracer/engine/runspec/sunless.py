@@ -1,18 +1,19 @@
-"""What a gas cannot have without [sun]: settings that would have no effect are refused."""
+"""What gas and ground cannot have without [sun]: settings that would have no effect are refused."""
 
 from collections.abc import Iterator
 
 from tracer.engine.runspec.gas import GasTable
 from tracer.engine.runspec.surface import SurfaceTable
 from tracer.engine.runspec.table import conflict
+from tracer.engine.runspec.temperature import EquilibriumTemperature
 from tracer.units import Quantity
 
 _NO_LIGHT = "needs [sun]; without it there is no light"
 _NO_DISTANCE = "needs [sun]; without it there is no distance from the Sun"
 
 
-def dead_without_sun(gas: GasTable, surface: SurfaceTable) -> Iterator[Exception]:
-    """Yield a conflict for each setting of `[gas]` and `[surface]` that only sunlight could bring to life."""
+def dead_without_sun(gas: GasTable) -> Iterator[Exception]:
+    """Yield a conflict for each setting of `[gas]` that only sunlight could bring to life."""
     rate, push = gas.photoionization_rate, gas.radiation_acceleration
     if rate is not None and rate.value != 0.0:
         yield conflict("gas.photoionization_rate", f'"{rate}" {_NO_LIGHT}; must be left out or "0 s-1"')
@@ -27,5 +28,12 @@ def dead_without_sun(gas: GasTable, surface: SurfaceTable) -> Iterator[Exception
             )
         if loss.where == "sunlight":
             yield conflict(f"gas.loss[{number}].where", f'"{loss.where}" {_NO_LIGHT}; must be "everywhere"')
+
+
+def unheated_without_sun(surface: SurfaceTable) -> Iterator[Exception]:
+    """Yield a conflict where the ground's temperature follows from sunlight, or sunlight frees what it holds."""
+    law = surface.temperature
+    if isinstance(law, EquilibriumTemperature):
+        yield conflict("surface.temperature", f'"{law.law}" {_NO_DISTANCE}')
     if surface.desorption is not None and surface.desorption.photon is not None:
         yield conflict("surface.desorption.photon", _NO_LIGHT)

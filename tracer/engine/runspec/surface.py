@@ -6,6 +6,7 @@ from pydantic import Field, model_validator
 
 from tracer.engine.runspec.adsorption import ColdTrapsTable, DesorptionTable
 from tracer.engine.runspec.number import Fraction
+from tracer.engine.runspec.sticking import StickingLaw
 from tracer.engine.runspec.table import Table, conflict
 from tracer.engine.runspec.temperature import TemperatureLaw
 
@@ -15,10 +16,10 @@ class SurfaceTable(Table):
 
     temperature: TemperatureLaw | None = Field(
         None,
-        description="Temperature of the surface. Required where atoms bounce (`sticking` below 1) or where a "
-        'release takes `temperature = "surface"`.',
+        description="Temperature of the surface. Required where atoms bounce (`sticking` below 1), where `sticking` is "
+        'a law, or where a release takes `temperature = "surface"`.',
     )
-    sticking: Fraction = Field(
+    sticking: StickingLaw = Field(
         0.0, description="Probability that a landing atom is adsorbed; the others bounce."
     )
     adsorbed: Literal["captured", "desorbed"] = Field(
