@@ -6,6 +6,7 @@ from typing import Any
 import typer
 
 from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.durations import duration
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
@@ -16,6 +17,7 @@ from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
 from tracer.engine.tracing import available_processors
 
+HOUR = 3600.0
 DAY = 86400.0
 MEGABYTE = 1e6
 
@@ -65,6 +67,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
+            *_residence_rows(figures),
             ("particles", _particles(spec, figures)),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
@@ -88,6 +91,24 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
         ("lines with g", ", ".join(sun.lines) or "none"),
         ("lines without g", ", ".join(sun.lines_without_g) or "none"),
     ]
+
+
+def _residence_rows(figures: Preview) -> list[tuple[str, str]]:
+    rows = [
+        (
+            f"residence at {one.place}",
+            f"{_long_time(one.residence_time)} at {one.temperature:.5g} K",
+        )
+        for one in figures.residence
+    ]
+    if figures.photon_desorption_rate is not None:
+        rows.append(("photon desorption", f"{figures.photon_desorption_rate:.4g} s-1 under the Sun overhead"))
+    return rows
+
+
+def _long_time(seconds: float) -> str:
+    """Return a time in seconds, and in what people think in where it is long."""
+    return f"{seconds:.4g} s" + (f" ({duration(seconds)})" if seconds >= HOUR else "")
 
 
 def _particles(spec: RunSpec, figures: Preview) -> str:

@@ -20,6 +20,8 @@ def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
             f"{scene.outer_radius / scene.body.radius:.4g} radii: cells out there stay empty, and the cell that the "
             "outer radius cuts shows too little"
         )
+    if scene.desorption is not None and spec.surface.sticking == 0.0:
+        yield "sticking is 0: nothing is adsorbed, and surface.desorption has no effect"
     if scene.sun is not None:
         yield from _sun_notes(spec, scene.sun)
 

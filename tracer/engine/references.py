@@ -11,6 +11,8 @@ SOLAR_LINES = (
     "Brault, J. & Neckel, H. (1987) and Neckel, H. (1999), Solar Physics 184, 421: solar flux in the lines"
 )
 PHOTO_RATES = "Huebner, W. F., Keady, J. J. & Lyon, S. P. (1992), Astrophys. Space Sci. 195, 1"
+RESIDENCE = "Frenkel, J. (1924), Z. Physik 26, 117: residence times of adsorbed atoms"
+ROULETTE = "Kahn, H. & Harris, T. E. (1951), Natl. Bur. Stand. Appl. Math. Ser. 12, 27: roulette"
 KEPLER = "Danby, J. M. A. (1988), Fundamentals of Celestial Mechanics, section 6.9"
 
 
@@ -23,3 +25,7 @@ def scene_references(scene: Scene) -> Iterator[str]:
         yield SOLAR_LINES
     if scene.sun is not None and scene.sun.photo.total:
         yield PHOTO_RATES
+    if scene.desorption is not None:
+        yield RESIDENCE
+    if scene.losses or (scene.sun is not None and scene.sun.photo.total):
+        yield ROULETTE

@@ -188,7 +188,9 @@ def test_table_of_quantiles_draws_the_law(law):
 
 def test_atoms_leave_with_the_temperature_of_the_ground():
     per_kelvin, rng = 416.0, np.random.default_rng(9)
-    surface = Surface(SurfaceTemperature(UNIFORM, 150.0, 150.0), Sticking(1.0, nan, inf), 1.0, per_kelvin, SPIN)
+    surface = Surface(
+        SurfaceTemperature(UNIFORM, 150.0, 150.0), Sticking(1.0, nan, inf), 1.0, per_kelvin, SPIN
+    )
     table = MaxwellFlux(None).speeds(
         quantile_nodes(), np.ones(len(quantile_nodes())), 2.0 * BOLTZMANN / per_kelvin
     )
