@@ -133,7 +133,7 @@ def build_scene(spec: RunSpec) -> Scene:
             for loss in spec.gas.loss
         ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
-        surface_temperature=surface_temperature(spec, sun),
+        surface_temperature=surface_temperature(spec, body, sun),
         sticking=_sticking(spec.surface.sticking),
         accommodation=spec.surface.accommodation,
         outer_radius=_outer_radius(spec, body),
