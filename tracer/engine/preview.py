@@ -14,6 +14,7 @@ from tracer.engine.planning import make_plan
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g
+from tracer.engine.surface_preview import SurfacePreview, preview_surface
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
@@ -93,6 +94,7 @@ class Preview(NamedTuple):
     species: str
     propagator: str
     sun: SunPreview | None
+    surface: SurfacePreview
     radius: float
     gm: float
     surface_gravity: float
@@ -122,6 +124,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         species=spec.gas.species,
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
+        surface=preview_surface(spec, scene),
         radius=body.radius,
         gm=body.gm,
         surface_gravity=surface_gravity(body.gm, body.radius),
