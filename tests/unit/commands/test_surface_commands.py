@@ -62,7 +62,7 @@ def test_check_gives_people_and_machines_the_range_of_the_ground(capsys):
     assert exit_code("check", "ground.toml") == 0
     out = capsys.readouterr().out
     assert "200 to 370 K anywhere" in out
-    assert "0.322 on the warmest to 0.6005 on the coldest ground" in out
+    assert "0.3221 on the warmest to 0.6006 on the coldest ground" in out
 
 
 @pytest.mark.parametrize("command", [("check",), ("run",)])
