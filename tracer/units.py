@@ -45,6 +45,10 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "gravitational parameter": Dimension("gravitational parameter", "m3 s-2", "9500 km3 s-2"),
         "acceleration": Dimension("acceleration", "m s-2", "0.05 m s-2"),
         "magnetic field": Dimension("magnetic field", "T", "195 nT"),
+        "thermal inertia": Dimension("thermal inertia", "J m-2 K-1 s-1/2", "50 J m-2 K-1 s-1/2"),
+        "thermal conductivity": Dimension("thermal conductivity", "W m-1 K-1", "0.01 W m-1 K-1"),
+        "mass density": Dimension("mass density", "kg m-3", "1500 kg m-3"),
+        "heat capacity": Dimension("specific heat capacity", "J kg-1 K-1", "600 J kg-1 K-1"),
         "number density": Dimension("number density", "m-3", "50 cm-3"),
         "area": Dimension("area", "m2", "1e-20 cm2"),
         "photon flux": Dimension("photon flux", "m-2 s-1", "2e14 cm-2 s-1"),
@@ -57,6 +61,8 @@ _QUANTITY = re.compile(
 )
 _SCALED_UNIT = re.compile(r"(?!1\s*/)[0-9.+-]")
 """A unit that begins with a number of its own, such as `3 km`; `1/s` is none."""
+_BROKEN_POWER = re.compile(r"(?<=[A-Za-z^])(-?[0-9]+(?:/[0-9]+|\.[0-9]+))")
+"""A power such as that of `s-1/2`, which `astropy.units` reads in brackets alone."""
 
 _MOLAR_ENERGY = astropy.units.Unit("J mol-1")
 _MOLE = astropy.units.Unit(astropy.units.mol / AVOGADRO)
@@ -142,8 +148,8 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
         return quantity.value * radius
     unit = _unit(quantity.unit)
     for dimension in DIMENSIONS.values():
-        if unit is not None and unit.is_equivalent(dimension.unit):
-            return float(unit.to(dimension.unit, quantity.value))
+        if unit is not None and unit.is_equivalent(wanted := _unit(dimension.unit)):
+            return float(unit.to(wanted, quantity.value))
     raise ValueError(f"{quoted(quantity.unit)} is not a unit of any dimension in use")
 
 
@@ -180,7 +186,7 @@ def _refuse_unit(name: str, wanted: Dimension, subject: str, hint: str) -> None:
     unit = _unit(name)
     if unit is None:
         raise ValueError(f"{subject} is not a known unit; {hint}")
-    if not unit.is_equivalent(wanted.unit):
+    if not unit.is_equivalent(_unit(wanted.unit)):
         raise ValueError(f"{subject} is not a unit of {wanted.word}; {hint}")
 
 
@@ -191,7 +197,7 @@ def _unit(name: str) -> Any:
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         try:
-            unit = astropy.units.Unit(name)
+            unit = astropy.units.Unit(_BROKEN_POWER.sub(r"(\1)", name))
         except (ValueError, TypeError, ArithmeticError):
             return None
     # Logarithmic and structured units are no factors, so they have no SI value by multiplication.

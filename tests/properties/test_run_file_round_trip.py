@@ -83,8 +83,19 @@ SURFACE_TEMPERATURES = st.one_of(
     st.just("hurley-2015"),
     law("map", file=LINES, variable=LINES),
 )
-SUNLIT_TEMPERATURES = law(
-    "equilibrium", albedo=st.floats(0.0, 1.0), emissivity=st.floats(1e-3, 1.0), night=TEMPERATURES
+HEAT = table({"thermal_inertia": quantities(1e-3, 1e5, "J m-2 K-1 s-1/2", "W m-2 K-1 s(1/2)")}) | table(
+    {
+        "conductivity": quantities(1e-6, 1e3, "W m-1 K-1"),
+        "density": quantities(1.0, 1e4, "kg m-3", "g / l"),
+        "heat_capacity": quantities(1.0, 1e4, "J kg-1 K-1"),
+    }
+)
+EMISSIVITIES = st.floats(1e-3, 1.0)
+SUNLIT_TEMPERATURES = st.one_of(
+    law("equilibrium", albedo=st.floats(0.0, 1.0), emissivity=EMISSIVITIES, night=TEMPERATURES),
+    st.tuples(law("conduction", albedo=st.floats(0.0, 0.99), emissivity=EMISSIVITIES), HEAT).map(
+        lambda drawn: drawn[0] | drawn[1]
+    ),
 )
 STICKINGS = st.floats(0.0, 1.0) | law(
     "exponential", at=TEMPERATURES, value=st.floats(0.0, 1.0), e_folding=TEMPERATURES

@@ -7,7 +7,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from tracer.constants import ASTRONOMICAL_UNIT, ATOMIC_MASS
-from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
+from tracer.units import DIMENSIONS, Quantity, conversion_factor, parse, quoted, si
 
 
 @pytest.mark.parametrize(
@@ -31,10 +31,40 @@ from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
         ("50 cm-3", "number density", 5e7),
         ("1e-20 cm2", "area", 1e-24),
         ("2e14 cm-2 s-1", "photon flux", 2e18),
+        ("0.01 W m-1 K-1", "thermal conductivity", 0.01),
+        ("1.5 g cm-3", "mass density", 1500.0),
+        ("0.6 J g-1 K-1", "heat capacity", 600.0),
+        # The trade's spelling, with its power out of brackets, and others.
+        ("50 J m-2 K-1 s-1/2", "thermal inertia", 50.0),
+        ("50 J m-2 K-1 s(-1/2)", "thermal inertia", 50.0),
+        ("50 J m-2 K-1 s-0.5", "thermal inertia", 50.0),
+        ("50 W m-2 K-1 s1/2", "thermal inertia", 50.0),
+        ("50 mJ cm-2 K-1 s^-1/2", "thermal inertia", 500.0),
     ],
 )
 def test_value_in_si_is_the_written_one(text: str, dimension: str, value: float) -> None:
     assert si(parse(text, dimension)) == pytest.approx(value, rel=1e-14)
+
+
+@pytest.mark.parametrize(
+    ("name", "wanted", "factor"),
+    [
+        ("K", "K", 1.0),
+        ("kelvin", "K", 1.0),
+        ("mK", "K", 1e-3),
+        ("1", "1", 1.0),
+        ("", "1", 1.0),
+        ("percent", "1", 0.01),
+        # Degrees Celsius count from another zero, and the rest is of another kind or nothing at all.
+        ("deg_C", "K", None),
+        ("degC", "K", None),
+        ("m", "K", None),
+        ("K", "1", None),
+        ("nothing", "K", None),
+    ],
+)
+def test_factor_between_the_units_of_files(name: str, wanted: str, factor: float | None) -> None:
+    assert conversion_factor(name, wanted) == (None if factor is None else pytest.approx(factor, rel=1e-15))
 
 
 def test_angles_stay_in_degrees() -> None:

@@ -15,11 +15,13 @@ from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
 from tracer.engine.runspec.load import load_run
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
+from tracer.engine.surface_preview import SurfacePreview
 from tracer.engine.tracing import available_processors
 
 HOUR = 3600.0
 DAY = 86400.0
 MEGABYTE = 1e6
+_INSIDE = ("sun", "surface")
 
 
 def command(
@@ -42,11 +44,15 @@ def command(
 
 
 def _flat(figures: Preview) -> dict[str, Any]:
-    """Return the figures with those of the Sun beside the others; null where there is no Sun."""
+    """Return the figures with those of Sun and ground beside the others; null where there is no Sun."""
     sun: dict[str, Any] = dict.fromkeys(SunPreview._fields)
     if figures.sun is not None:
         sun = figures.sun._asdict()
-    return {**{key: value for key, value in figures._asdict().items() if key != "sun"}, **sun}
+    return {
+        **{key: value for key, value in figures._asdict().items() if key not in _INSIDE},
+        **sun,
+        **figures.surface._asdict(),
+    }
 
 
 def _print_scene(spec: RunSpec, figures: Preview) -> None:
@@ -64,6 +70,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
                 "rotation period",
                 "the ground does not turn" if rotation is None else f"{rotation / DAY:.6g} d sidereal",
             ),
+            *_surface_rows(figures.surface),
             ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
@@ -83,6 +90,7 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
     life = "no photo-loss" if sun.photo_lifetime is None else f"{sun.photo_lifetime:.4g} s in full sunlight"
     anomaly = "" if sun.true_anomaly is None else f"{sun.true_anomaly:.6g} deg"
     return [
+        *([("epoch", sun.epoch)] if sun.epoch is not None else []),
         ("true anomaly", anomaly or "not given: the distance is"),
         ("distance from the Sun", f"{sun.distance / ASTRONOMICAL_UNIT:.6g} au"),
         ("radial velocity", f"{sun.radial_velocity / 1e3:.5g} km/s, positive away from the Sun"),
@@ -109,6 +117,22 @@ def _residence_rows(figures: Preview) -> list[tuple[str, str]]:
 def _long_time(seconds: float) -> str:
     """Return a time in seconds, and in what people think in where it is long."""
     return f"{seconds:.4g} s" + (f" ({duration(seconds)})" if seconds >= HOUR else "")
+
+
+def _surface_rows(surface: SurfacePreview) -> list[tuple[str, str]]:
+    day = surface.solar_day
+    rows = [] if day is None else [("mean solar day", f"{day / DAY:.6g} d")]
+    kelvin = "not given, and nothing needs it"
+    if surface.temperature_law is not None:
+        kelvin = (
+            f"{surface.temperature_law}: {surface.noon_temperature:.5g} K at noon and "
+            f"{surface.midnight_temperature:.5g} K at midnight on the equator, "
+            f"{surface.lowest_temperature:.5g} to {surface.highest_temperature:.5g} K anywhere"
+        )
+    sticking = f"{surface.lowest_sticking:.4g}"
+    if surface.highest_sticking != surface.lowest_sticking:
+        sticking += f" on the warmest to {surface.highest_sticking:.4g} on the coldest ground"
+    return [*rows, ("surface temperature", kelvin), ("sticking", sticking)]
 
 
 def _particles(spec: RunSpec, figures: Preview) -> str:

@@ -72,7 +72,7 @@ def read_map(spec: RunSpec, key: str, file: str, variable: str, kind: MapKind) -
             return _read(dataset, variable, kind)
     except InputError as error:
         raise refuse(spec, f"{key}.variable", variable, f"of {file}: {error}") from None
-    except (OSError, RuntimeError, ValueError, AttributeError, IndexError) as error:
+    except (OSError, RuntimeError, ValueError, TypeError, AttributeError, IndexError) as error:
         reason = str(getattr(error, "strerror", None) or error or type(error).__name__).splitlines()[0]
         raise refuse(spec, f"{key}.file", file, f"cannot be read as netCDF: {reason}") from None
 

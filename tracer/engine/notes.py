@@ -5,8 +5,12 @@ from collections.abc import Iterator
 from tracer.catalogue.load import bodies
 from tracer.engine.body_constants import overridden_constants
 from tracer.engine.runspec.run import RunSpec
+from tracer.engine.runspec.temperature import Hurley2015
 from tracer.engine.scene import Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
+
+FITTED_BODY = "Moon"
+"""Whose observed temperatures `hurley-2015` describes."""
 
 
 def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
@@ -22,6 +26,8 @@ def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
         )
     if scene.desorption is not None and spec.surface.sticking == 0.0:
         yield "sticking is 0: nothing is adsorbed, and surface.desorption has no effect"
+    if isinstance(spec.surface.temperature, Hurley2015) and spec.body.name != FITTED_BODY:
+        yield f"the temperature law hurley-2015 was fitted to the {FITTED_BODY}, not to {spec.body.name}"
     if scene.sun is not None:
         yield from _sun_notes(spec, scene.sun)
 
@@ -35,10 +41,16 @@ def _sun_notes(spec: RunSpec, sun: Sunlight) -> Iterator[str]:
         yield from _photo_notes(spec.gas.species, sun)
     host = bodies()[spec.body.name].host if spec.body.name in bodies() else None
     if host is not None and host.orbit is not None:
-        yield (
-            f"{spec.body.name} has the distance and velocity of {host.name} from the Sun; its own motion about "
-            f"{host.name}, and the gravity and shadow of {host.name}, are left out"
-        )
+        if spec.sun is not None and spec.sun.epoch is not None:
+            stands = (
+                f"stands at its own distance from the Sun and turns about it with {host.name}; the gravity"
+            )
+        else:
+            stands = (
+                f"has the distance and velocity of {host.name} from the Sun; its own motion about {host.name}, "
+                "and the gravity"
+            )
+        yield f"{spec.body.name} {stands} and shadow of {host.name}, are left out"
 
 
 def _photo_notes(species: str, sun: Sunlight) -> Iterator[str]:

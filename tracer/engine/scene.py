@@ -143,7 +143,7 @@ def build_scene(spec: RunSpec) -> Scene:
             for loss in spec.gas.loss
         ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
-        surface_temperature=surface_temperature(spec, sun),
+        surface_temperature=surface_temperature(spec, body, sun),
         sticking=_sticking(spec.surface.sticking),
         accommodation=spec.surface.accommodation,
         desorption=resolve_desorption(spec, sun),

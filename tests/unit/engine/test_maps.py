@@ -2,6 +2,7 @@
 
 from pathlib import Path
 
+import netCDF4
 import numpy as np
 import pytest
 import xarray as xr
@@ -275,6 +276,18 @@ def test_files_that_cannot_be_read(tmp_path):
     whole = (tmp_path / "whole.nc").read_bytes()
     (tmp_path / "cut.nc").write_bytes(whole[: len(whole) // 3])
     assert message("cut.nc").startswith('"cut.nc" cannot be read as netCDF: ')
+
+
+def test_lists_of_uneven_length_are_no_map(tmp_path):
+    good_map().to_netcdf(tmp_path / "map.nc")
+    with netCDF4.Dataset(tmp_path / "map.nc", "a") as file:
+        lists = file.createVLType(np.float64, "list")
+        variable = file.createVariable("lists", lists, ("latitude", "local_time"))
+        variable[0, 0] = np.ones(3)
+    spec = parse_run(RUN, tmp_path / "run.toml")
+    with pytest.raises(InputError) as caught:
+        read_map(spec, "surface.temperature", "map.nc", "lists", FLUX_MAP)
+    assert len(str(caught.value).splitlines()) == 1
 
 
 def test_text_is_no_map(tmp_path):

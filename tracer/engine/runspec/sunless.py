@@ -5,7 +5,7 @@ from collections.abc import Iterator
 from tracer.engine.runspec.gas import GasTable
 from tracer.engine.runspec.surface import SurfaceTable
 from tracer.engine.runspec.table import conflict
-from tracer.engine.runspec.temperature import EquilibriumTemperature
+from tracer.engine.runspec.temperature import Conduction, EquilibriumTemperature
 from tracer.units import Quantity
 
 _NO_LIGHT = "needs [sun]; without it there is no light"
@@ -33,7 +33,7 @@ def dead_without_sun(gas: GasTable) -> Iterator[Exception]:
 def unheated_without_sun(surface: SurfaceTable) -> Iterator[Exception]:
     """Yield a conflict where the ground's temperature follows from sunlight, or sunlight frees what it holds."""
     law = surface.temperature
-    if isinstance(law, EquilibriumTemperature):
+    if isinstance(law, EquilibriumTemperature | Conduction):
         yield conflict("surface.temperature", f'"{law.law}" {_NO_DISTANCE}')
     if surface.desorption is not None and surface.desorption.photon is not None:
         yield conflict("surface.desorption.photon", _NO_LIGHT)

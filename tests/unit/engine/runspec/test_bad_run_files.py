@@ -271,7 +271,7 @@ def test_conflict(old: str, new: str, message: str) -> None:
             '"quarter-power"',
             '"linear"',
             'surface.temperature.law: "linear" is not a law; must be one of "uniform", "quarter-power", '
-            '"equilibrium", "hurley-2015", "map"',
+            '"equilibrium", "hurley-2015", "map", "conduction"',
         ),
         (
             'look_from = "north"',
