@@ -3,7 +3,7 @@
 import math
 from typing import NamedTuple
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.sticking import Sticking, sticking_probability
 from tracer.kernels.temperature import SurfaceTemperature, temperature
 
@@ -64,7 +64,7 @@ def direction_about(nx, ny, nz, cosine, azimuth):
     )
 
 
-@kernel
+@inlined
 def rebound(rng, surface, nx, ny, nz, incoming_speed_squared):
     """Return the velocity [m s-1], relative to the ground, of an atom that bounces at unit vector (nx, ny, nz).
 

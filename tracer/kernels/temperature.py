@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.compiling import allocating_kernel, kernel
+from tracer.kernels.compiling import allocating_kernel, inlined, kernel
 from tracer.kernels.surface_map import SurfaceMap, interpolated
 
 UNIFORM = 0
@@ -32,7 +32,7 @@ class SurfaceTemperature(NamedTuple):
     table: SurfaceMap = NO_TABLE
 
 
-@kernel
+@inlined
 def temperature(law, x, y, z):
     """Return the temperature [K] at unit vector (x, y, z); +x is the direction to the Sun."""
     if law.law >= MAP:
