@@ -241,7 +241,7 @@ def test_a_rule_that_is_none_is_refused(small_light_run_file, rule, message):
 
 
 def test_a_rule_may_ask_for_atoms_at_rest_where_there_are_any(small_run_file):
-    rule = stop("adsorbed_column", "latitude = [\"-90 deg\", \"0 deg\"]", error=0.5)
+    rule = stop("adsorbed_column", 'latitude = ["-90 deg", "0 deg"]', error=0.5)
     with pytest.raises(InputError, match=r'"adsorbed_column" is not tallied here'):
         run(load_run(small_run_file, [*SMALL, rule]), workers=1)
     held = 'surface.desorption={ energy = "0.2 eV", attempt_frequency = "1e13 s-1" }'
