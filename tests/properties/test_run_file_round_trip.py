@@ -172,18 +172,36 @@ def gases(light: dict[str, Any], loss: dict[str, Any]) -> SearchStrategy[dict[st
     return table({"species": LINES}, {"mass": quantities(0.0, 300.0, "u", "Da"), "loss": losses, **light})
 
 
-def grounds(temperatures: SearchStrategy[Any]) -> SearchStrategy[dict[str, Any]]:
-    optional = {"sticking": STICKINGS, "accommodation": st.floats(0.0, 1.0)}
-    return table({"temperature": temperatures}, optional)
+TRAPS = st.one_of(
+    table({"poleward_of": quantities(0.0, 90.0, "deg")}), table({"file": LINES, "variable": LINES})
+)
+PHOTON = table(
+    {
+        "cross_section": quantities(0.0, 1.0, "cm2", "m2"),
+        "photon_flux": quantities(0.0, 1e16, "cm-2 s-1"),
+        "speed": SPEEDS,
+    }
+)
+BOND = {
+    "energy": quantities(0.0, 9.0, "eV", "kJ/mol"),
+    "attempt_frequency": quantities(0.0, 1e15, "s-1", "THz"),
+}
+
+
+def grounds(temperatures: SearchStrategy[Any], light: dict[str, Any]) -> SearchStrategy[dict[str, Any]]:
+    required = {"temperature": temperatures}
+    optional = {"sticking": STICKINGS, "accommodation": st.floats(0.0, 1.0), "cold_traps": TRAPS}
+    held = {"adsorbed": st.just("desorbed"), "desorption": table(BOND, light)}
+    return st.one_of(table(required, optional), table({**required, **held}, optional))
 
 
 SKIES = st.one_of(
-    table({"gas": gases(SWITCHED_OFF, {}), "surface": grounds(SURFACE_TEMPERATURES)}),
+    table({"gas": gases(SWITCHED_OFF, {}), "surface": grounds(SURFACE_TEMPERATURES, {})}),
     table(
         {
             "sun": SUNS,
             "gas": gases(LIT, LIT_LOSS),
-            "surface": grounds(SURFACE_TEMPERATURES | SUNLIT_TEMPERATURES),
+            "surface": grounds(SURFACE_TEMPERATURES | SUNLIT_TEMPERATURES, {"photon": PHOTON}),
         }
     ),
 )
@@ -259,6 +277,14 @@ def test_spoilt_run_file_is_refused_on_one_line_in_our_words(data: st.DataObject
     tables["sun"] = {"true_anomaly": "60 deg", "tide": True, "shadow": "none"}
     tables["gas"]["radiation_acceleration"] = "lines"
     tables["surface"]["sticking"] = {"law": "exponential", "at": "9 K", "value": 0.5, "e_folding": "9 K"}
+    tables["surface"]["adsorbed"] = "desorbed"
+    photon = {
+        "cross_section": "1 cm2",
+        "photon_flux": "1 m-2 s-1",
+        "speed": {"law": "single", "speed": "1 m/s"},
+    }
+    tables["surface"]["desorption"] = {"energy": "1 eV", "attempt_frequency": "1 s-1", "photon": photon}
+    tables["surface"]["cold_traps"] = {"poleward_of": "80 deg"}
     tables["gas"]["line"] = [{"name": "a", "wavelength": "285 nm", "g": {"file": "g.csv"}}]
     _spoil(data, tables)
     try:

@@ -20,7 +20,9 @@ speed = { law = "maxwell-flux", temperature = "surface" }
 def test_an_atom_under_way_counts_by_its_age():
     told: list[tuple[float, int]] = []
     work = make_work(build_scene(parse_run(RUN, "harrow.toml")), 1, 2)
-    result = trace_batch(work, Task(0, 0), lambda atoms, flights: told.append((atoms, flights)), lambda: False)
+    result = trace_batch(
+        work, Task(0, 0), lambda atoms, flights: told.append((atoms, flights)), lambda: False
+    )
     assert result.flights > 20 * FIRST_SLICE_FLIGHTS
     assert sum(flights for _, flights in told) == result.flights
     assert abs(sum(atoms for atoms, _ in told) - 2.0) < 1e-9
