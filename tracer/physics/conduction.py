@@ -32,7 +32,10 @@ LATITUDES = 180
 """Cells of the map, of 1 deg; the two hemispheres are alike."""
 
 STEPS = 240
-"""Time steps a turn, which are the map's cells in local time, of 0.1 h."""
+"""Time steps a turn, whose ends are the map's local times, 0.1 h apart.
+
+A multiple of 4, so that sunrise and sunset end a step: within one, the bend of the light would cost a digit there.
+"""
 
 FIRST_LAYER, GROWTH, DEEPEST = 0.005, 1.04, 10.0
 """Spacing of the depths [skin depths] at the surface, its growth, and the depth where no heat flows."""
@@ -88,15 +91,16 @@ def conduction_map(ground: Ground, distance: float, rate: float) -> SurfaceMap:
     theta = thermal_parameter(ground, subsolar, rate)
     northern = reduced_temperatures(min(max(theta, SMALLEST_THETA), LARGEST_THETA))
     if rate < 0.0:
-        northern = northern[:, ::-1]
+        # Midnight stays where it is.
+        northern = np.roll(northern[:, ::-1], 1, axis=1)
     step = 180.0 / LATITUDES
     latitudes = step * (np.arange(LATITUDES) + 0.5) - 90.0
     return SurfaceMap(latitudes, local_times(), subsolar * np.concatenate((northern[::-1], northern)))
 
 
 def local_times() -> Floats:
-    """Return the middles of the time steps as local times [h], (STEPS,)."""
-    return HOURS_A_TURN * (np.arange(STEPS) + 0.5) / STEPS
+    """Return the ends of the time steps as local times [h], (STEPS,), from midnight on."""
+    return HOURS_A_TURN * np.arange(STEPS) / STEPS
 
 
 @lru_cache(maxsize=8)
@@ -116,9 +120,14 @@ def reduced_temperatures(theta: float) -> Floats:
 
 
 def overhead_light() -> Floats:
-    """Return the mean of max(0, cos of the solar zenith angle) over each time step on the equator, (STEPS,)."""
-    edges = np.linspace(-np.pi, np.pi, STEPS + 1)
-    return np.diff(np.sin(np.clip(edges, -0.5 * np.pi, 0.5 * np.pi))) / (2.0 * np.pi / STEPS)
+    """Return max(0, cos of the solar zenith angle) on the equator at the ends of the time steps, (STEPS,).
+
+    Scaled by the few parts in 1e5 that make the steps' mean the day's, 1/pi.
+    """
+    light = np.maximum(0.0, np.cos((local_times() - 12.0) * np.pi / 12.0))
+    # Rounding must not light the horizon.
+    light[light < 1e-12] = 0.0
+    return np.asarray(light / (np.pi * light.mean()))
 
 
 def response_weights(theta: float) -> Floats:

@@ -115,18 +115,15 @@ def test_steady_state_is_that_of_a_general_solver_marched_in_time():
         rtol=1e-6,
         atol=1e-8,
     )
-    error = np.abs(found / march.y[0] - 1.0)
-    # The Sun rises within a step, which sees the step's mean of the light: 1.1 % there, 0.4 % at most elsewhere.
-    sunrise = (local_times() > 6.0) & (local_times() < 6.2)
-    assert sunrise.sum() == 2
-    assert error[~sunrise].max() < 5e-3
-    assert error[sunrise].max() < 0.015
+    # Just after sunrise, where the temperature bends, 0.4 %; elsewhere a tenth of that.
+    np.testing.assert_allclose(found, march.y[0], rtol=5e-3)
 
 
 def test_sun_that_moves_the_other_way_mirrors_the_day():
     forth = conduction_map(LUNAR_SOIL, ASTRONOMICAL_UNIT, LUNAR_RATE)
     back = conduction_map(LUNAR_SOIL, ASTRONOMICAL_UNIT, -LUNAR_RATE)
-    np.testing.assert_array_equal(back.values, forth.values[:, ::-1])
+    np.testing.assert_array_equal(back.values[:, 1:], forth.values[:, :0:-1])
+    np.testing.assert_array_equal(back.values[:, 0], forth.values[:, 0])
     assert interpolated(forth, *direction(0.0, 18.5)) > interpolated(forth, *direction(0.0, 5.5)) + 20.0
 
 
@@ -163,4 +160,6 @@ def test_extreme_ground_is_at_the_limits():
 
 def test_light_of_the_steps_sums_to_the_days():
     assert overhead_light().mean() == pytest.approx(1.0 / np.pi, rel=1e-13)
-    assert overhead_light().max() == pytest.approx(1.0, abs=2e-4)
+    assert overhead_light().max() == pytest.approx(1.0, abs=1e-4)
+    lit = (local_times() > 6.0) & (local_times() < 18.0)
+    assert np.all((overhead_light() > 0.0) == lit)
