@@ -3,6 +3,9 @@
 BOLTZMANN = 1.380649e-23
 """Boltzmann constant k [J K-1]; exact (SI 2019)."""
 
+AVOGADRO = 6.02214076e23
+"""Avogadro constant [mol-1]; exact (SI 2019)."""
+
 ATOMIC_MASS = 1.66053906892e-27
 """Atomic mass constant u [kg]; CODATA 2022, relative uncertainty 3.1e-10."""
 

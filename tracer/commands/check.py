@@ -7,6 +7,7 @@ from typing import Any
 import typer
 
 from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.durations import duration
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
@@ -15,8 +16,10 @@ from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
 from tracer.engine.runspec.load import load_run
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
+from tracer.engine.surface_preview import SurfacePreview
 from tracer.engine.tracing import available_processors
 
+HOUR = 3600.0
 DAY = 86400.0
 EMPHASIS = MappingProxyType(
     {
@@ -26,6 +29,7 @@ EMPHASIS = MappingProxyType(
     }
 )
 MEGABYTE = 1e6
+_INSIDE = ("sun", "surface")
 
 
 def command(
@@ -48,11 +52,15 @@ def command(
 
 
 def _flat(figures: Preview) -> dict[str, Any]:
-    """Return the figures with those of the Sun beside the others; null where there is no Sun."""
+    """Return the figures with those of Sun and ground beside the others; null where there is no Sun."""
     sun: dict[str, Any] = dict.fromkeys(SunPreview._fields)
     if figures.sun is not None:
         sun = figures.sun._asdict()
-    return {**{key: value for key, value in figures._asdict().items() if key != "sun"}, **sun}
+    return {
+        **{key: value for key, value in figures._asdict().items() if key not in _INSIDE},
+        **sun,
+        **figures.surface._asdict(),
+    }
 
 
 def _print_scene(spec: RunSpec, figures: Preview) -> None:
@@ -70,9 +78,11 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
                 "rotation period",
                 "the ground does not turn" if rotation is None else f"{rotation / DAY:.6g} d sidereal",
             ),
+            *_surface_rows(figures.surface),
             ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
+            *_residence_rows(figures),
             ("particles", _particles(spec, figures)),
             ("emphasis", EMPHASIS[figures.emphasis]),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
@@ -98,6 +108,40 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
         ("lines with g", ", ".join(sun.lines) or "none"),
         ("lines without g", ", ".join(sun.lines_without_g) or "none"),
     ]
+
+
+def _residence_rows(figures: Preview) -> list[tuple[str, str]]:
+    rows = [
+        (
+            f"residence at {one.place}",
+            f"{_long_time(one.residence_time)} at {one.temperature:.5g} K",
+        )
+        for one in figures.residence
+    ]
+    if figures.photon_desorption_rate is not None:
+        rows.append(("photon desorption", f"{figures.photon_desorption_rate:.4g} s-1 under the Sun overhead"))
+    return rows
+
+
+def _long_time(seconds: float) -> str:
+    """Return a time in seconds, and in what people think in where it is long."""
+    return f"{seconds:.4g} s" + (f" ({duration(seconds)})" if seconds >= HOUR else "")
+
+
+def _surface_rows(surface: SurfacePreview) -> list[tuple[str, str]]:
+    day = surface.solar_day
+    rows = [] if day is None else [("mean solar day", f"{day / DAY:.6g} d")]
+    kelvin = "not given, and nothing needs it"
+    if surface.temperature_law is not None:
+        kelvin = (
+            f"{surface.temperature_law}: {surface.noon_temperature:.5g} K at noon and "
+            f"{surface.midnight_temperature:.5g} K at midnight on the equator, "
+            f"{surface.lowest_temperature:.5g} to {surface.highest_temperature:.5g} K anywhere"
+        )
+    sticking = f"{surface.lowest_sticking:.4g}"
+    if surface.highest_sticking != surface.lowest_sticking:
+        sticking += f" on the warmest to {surface.highest_sticking:.4g} on the coldest ground"
+    return [*rows, ("surface temperature", kelvin), ("sticking", sticking)]
 
 
 def _particles(spec: RunSpec, figures: Preview) -> str:

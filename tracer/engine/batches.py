@@ -11,7 +11,7 @@ from tracer.engine.kernel_world import kernel_world
 from tracer.engine.launching import draw_launches, make_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
-from tracer.kernels.resume import ENDED, STEPS, new_resume
+from tracer.kernels.resume import AGE, ENDED, STEPS, UNDER_WAY, Resume, new_resume
 from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
 from tracer.physics.release.even_numbers import EvenNumbers
@@ -66,12 +66,12 @@ class Work(NamedTuple):
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
-    layout = make_layout(scene.grid, scene.planes, len(scene.lines))
+    layout = make_layout(scene.grid, scene.planes, len(scene.lines), scene.desorption is not None)
     return Work(scene, kernel_world(scene), layout, seed, particles)
 
 
 def trace_batch(
-    work: Work, task: Task, tell: Callable[[int, int], None], stopped: Callable[[], bool]
+    work: Work, task: Task, tell: Callable[[float, int], None], stopped: Callable[[], bool]
 ) -> BatchResult:
     """Trace one batch in slices.
 
@@ -80,7 +80,8 @@ def trace_batch(
     work, task
         What to trace. Random numbers depend on seed, release and batch alone.
     tell : callable
-        Called after each slice with the number of atoms and of flights it has finished.
+        Called after each slice with how many atoms and flights it has finished; an atom under way counts by its age
+        over the age limit, so that a life of many slices shows.
     stopped : callable
         Asked after each slice; where it says True the batch is given up.
 
@@ -102,17 +103,24 @@ def trace_batch(
         u, shares = draw(strata, supply, first, count)
         launches = make_launches(work.scene, release, u, release.rate * shares)
         resume = new_resume(len(work.scene.lines))
-        while (atoms_before := int(resume.counters[ENDED])) < count:
+        followed = 0.0
+        while resume.counters[ENDED] < count:
             begin = thread_time()
             made = trace_slice(work.world, launches, resume, tally, rng, budget)
             spent = thread_time() - begin
             flights, seconds = flights + made, seconds + spent
             budget = next_budget(budget, spent)
-            tell(int(resume.counters[ENDED]) - atoms_before, made)
+            before, followed = followed, _followed(resume, work.scene.age_limit)
+            tell(followed - before, made)
             if stopped():
                 raise Interrupted("interrupted")
         steps += int(resume.counters[STEPS])
     return BatchResult(buffer, flights, steps, seconds)
+
+
+def _followed(resume: Resume, age_limit: float) -> float:
+    """Return the atoms followed so far: those that have ended, and of one under way the share of its longest life."""
+    return float(resume.counters[ENDED] + resume.atom[UNDER_WAY] * resume.atom[AGE] / age_limit)
 
 
 def next_budget(budget: int, spent: float) -> int:

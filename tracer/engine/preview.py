@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.constants import ASTRONOMICAL_UNIT
+from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
 from tracer.engine.batches import make_work
 from tracer.engine.emphasis import rarest_launch
 from tracer.engine.launching import draw_launches, ground_velocities
@@ -16,6 +16,7 @@ from tracer.engine.runspec.moment import moment_text
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g, true_anomaly
+from tracer.engine.surface_preview import SurfacePreview, preview_surface
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
@@ -35,6 +36,14 @@ from tracer.physics.thermal import (
 
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
+
+EQUATOR = {
+    "noon": (1.0, 0.0, 0.0),
+    "dusk": (0.0, 1.0, 0.0),
+    "midnight": (-1.0, 0.0, 0.0),
+    "dawn": (0.0, -1.0, 0.0),
+}
+"""Unit vectors of the places whose residence times are shown."""
 
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
@@ -87,16 +96,30 @@ class SunPreview(NamedTuple):
     lines_without_g: tuple[str, ...]
 
 
+class ResidencePreview(NamedTuple):
+    """How long the ground holds an atom at one place of the equator: `temperature` [K], `residence_time` [s].
+
+    That is exp(E/kT)/frequency, as if the place kept its temperature; infinite where no number can hold it.
+    """
+
+    place: str
+    temperature: float
+    residence_time: float
+
+
 class Preview(NamedTuple):
     """The resolved scene in SI units; `memory` and `product_size` [bytes] are what to expect at the most.
 
-    `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that act everywhere alike.
+    `residence` is empty where adsorbed atoms are kept for good; `photon_desorption_rate` [s-1] that of sunlight from
+    overhead, None where it frees none. `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that
+    act everywhere alike.
     """
 
     body: str
     species: str
     propagator: str
     sun: SunPreview | None
+    surface: SurfacePreview
     radius: float
     gm: float
     surface_gravity: float
@@ -107,6 +130,8 @@ class Preview(NamedTuple):
     age_limit: float
     mass: float
     loss_rate: float
+    residence: tuple[ResidencePreview, ...]
+    photon_desorption_rate: float | None
     releases: tuple[ReleasePreview, ...]
     particles: int
     batches: int
@@ -127,6 +152,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         species=spec.gas.species,
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
+        surface=preview_surface(spec, scene),
         radius=body.radius,
         gm=body.gm,
         surface_gravity=surface_gravity(body.gm, body.radius),
@@ -137,6 +163,8 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         age_limit=scene.age_limit,
         mass=scene.mass,
         loss_rate=scene.constant_hazard,
+        residence=tuple(_preview_residence(scene)),
+        photon_desorption_rate=_photon_desorption_rate(scene),
         releases=releases,
         particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
         batches=spec.ensemble.most_batches,
@@ -165,6 +193,23 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
         lines=tuple(line.name for line in sun.lines),
         lines_without_g=lines_without_g(spec),
     )
+
+
+def _preview_residence(scene: Scene) -> Iterator[ResidencePreview]:
+    law, kelvins = scene.desorption, scene.surface_temperature
+    if law is None or kelvins is None:
+        return
+    for place, at in EQUATOR.items():
+        kelvin = float(temperatures(kelvins, np.array([at]))[0])
+        with np.errstate(over="ignore"):
+            time = float(np.exp(law.energy / (BOLTZMANN * kelvin)) / law.attempt_frequency)
+        yield ResidencePreview(place, kelvin, time)
+
+
+def _photon_desorption_rate(scene: Scene) -> float | None:
+    if scene.desorption is None or scene.desorption.photon is None:
+        return None
+    return scene.desorption.photon.rate
 
 
 def _preview_release(scene: Scene, release: Release) -> ReleasePreview:

@@ -133,7 +133,8 @@ def _arrived(
 
 def _status(plan: Plan, folder: Folder, workers: int, counter: Counter) -> Status:
     return Status(
-        atoms=counter.atoms,
+        # Parts of atoms add up to rounding.
+        atoms=round(counter.atoms, 6),
         atoms_expected=folder.tasks * plan.work.particles,
         flights=counter.flights,
         batches=folder.batches,

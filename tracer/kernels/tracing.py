@@ -6,11 +6,12 @@ import numpy as np
 
 from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
-from tracer.kernels.endings import FLYING
+from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.integrated_flight import PLACE, TIME, advance, start_flight
 from tracer.kernels.launches import Launches
-from tracer.kernels.resume import AGE, ENDED, RELEASED, STEPS, UNDER_WAY, Resume
+from tracer.kernels.resume import AGE, ENDED, RELEASED, STEPS, SURVIVAL, UNDER_WAY, Resume
+from tracer.kernels.roulette import play_roulette
 from tracer.kernels.scoring import Tally
 from tracer.kernels.step_scoring import book_step, score_step
 from tracer.kernels.world import World
@@ -102,6 +103,7 @@ def _fly_integrated(world, resume, tally, alive, rng):
     tolerance = light.tolerance * _care(atom)
     start_flight(flight, light.conditions, tolerance, atom[0], atom[1], atom[2], atom[3], atom[4], atom[5])
     time_left = world.motion.age_limit - atom[AGE]
+    least = world.roulette.aloft / atom[SURVIVAL]
     kept = 1.0
     standing = FLYING
     while standing == FLYING:
@@ -109,6 +111,10 @@ def _fly_integrated(world, resume, tally, alive, rng):
         resume.counters[STEPS] += 1
         score_step(world, tally, curve, alive, kept, resume.shine, rng)
         kept = book_step(tally, curve, alive, kept)
+        if standing == FLYING:
+            kept = play_roulette(world.roulette.gain, tally, alive, kept, least, rng)
+            if kept == 0.0:
+                standing = DROPPED
     return (
         standing,
         kept,

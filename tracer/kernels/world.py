@@ -4,9 +4,12 @@ from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.adsorption import Adsorption
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
 from tracer.kernels.motion import Conditions
+from tracer.kernels.roulette import Roulette
+from tracer.kernels.traps import Traps
 
 
 class Motion(NamedTuple):
@@ -33,10 +36,13 @@ class Light(NamedTuple):
 
 
 class World(NamedTuple):
-    """Motion, ground and where to count; flights are integrated under `light` if `integrated`, else arcs."""
+    """Motion, ground, roulette and where to count; flights are integrated under `light` if `integrated`, else arcs."""
 
     motion: Motion
     surface: Surface
+    adsorption: Adsorption
+    traps: Traps
+    roulette: Roulette
     cells: Cells
     images: Images
     light: Light

@@ -68,8 +68,11 @@ def product_fields(
     yield ProductField("capture_flux", tally.captured, per_area)
     yield ProductField("escape_flux", tally.escaped, per_area)
     yield ProductField("escape_rate_by_direction", tally.escaped_by_direction, per_solid_angle)
+    if tally.adsorbed.size:
+        yield ProductField("adsorbed_column", tally.adsorbed, per_area)
     yield ProductField("ionization_rate", tally.ionized, per_volume)
     yield ProductField("ledger", tally.ledger, one)
+    yield ProductField("roulette_balance", tally.roulette[0], one)
     yield ProductField("mean_flights", tally.launches[0], per_atom)
     yield ProductField("mean_life", tally.life[0], per_atom)
 

@@ -65,6 +65,8 @@ class Whole:
 
 
 Fraction = Annotated[float, Real(Interval(at_least=0.0, at_most=1.0))]
+Albedo = Annotated[float, Real(Interval(at_least=0.0, below=1.0))]
+Emissivity = Annotated[float, Real(Interval(above=0.0, at_most=1.0))]
 Exponent = Annotated[float, Real(Interval(at_least=0.0))]
 Eccentricity = Annotated[float, Real(Interval(at_least=0.0, below=1.0))]
 LocalTime = Annotated[float, Real(Interval(at_least=0.0, below=24.0), "number of hours")]
