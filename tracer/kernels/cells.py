@@ -1,11 +1,13 @@
 """Which grid cell or image pixel a position lies in."""
 
+import math
 from typing import NamedTuple
 
 import numpy as np
 
 from tracer.kernels.cell_tables import CellTables, column_of, layer_of, make_tables, row_of
 from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.first_guess import ANGLE_ERROR, ARCSINE_ERROR
 
 
 class Cells(NamedTuple):
@@ -44,15 +46,59 @@ def altitude_cell(cells, r):
 
 
 @inlined
+def close_layer(cells, r, guess):
+    """Return the altitude cell of `r` [m], -1 above the grid's top, by a rough `guess` of cells above the first."""
+    last = cells.radii.shape[0] - 2
+    if r >= cells.radii[last + 1]:
+        return -1
+    if r - cells.radius < cells.first_altitude:
+        return 0
+    layer = min(last, max(0, 1 + int(guess)))
+    # The edges themselves decide.
+    while r < cells.radii[layer]:
+        layer -= 1
+    while r >= cells.radii[layer + 1]:
+        layer += 1
+    return layer
+
+
+@inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
     return row_of(cells.tables, sine)
 
 
 @inlined
+def row_at(cells, place, sine):
+    """Return the latitude cell of sin(latitude) = `sine` by its rough `place` in cells."""
+    number = cells.latitude_cells
+    if not _clear_of_edges(place, ARCSINE_ERROR / math.pi * number):
+        place = (math.asin(min(1.0, max(-1.0, sine))) / math.pi + 0.5) * number
+    return min(number - 1, max(0, int(place)))
+
+
+@inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
     return column_of(cells.tables, x, y)
+
+
+@inlined
+def column_at(cells, place, x, y):
+    """Return the local-time cell of (x, y) by its rough `place` in cells."""
+    number = cells.local_time_cells
+    if not _clear_of_edges(place, ANGLE_ERROR / (2.0 * math.pi) * number):
+        place = (0.5 + math.atan2(y, x) / (2.0 * math.pi)) * number
+    cell = int(place)
+    # atan2 gives +pi and -pi at midnight: both are the first cell.
+    return 0 if cell >= number else cell
+
+
+@inlined
+def _clear_of_edges(place, margin):
+    """Return True where `place`, in cells, is further than `margin` from the edges of its cell; False if it is NaN."""
+    part = place - math.floor(place)
+    return margin < part < 1.0 - margin
 
 
 class Images(NamedTuple):

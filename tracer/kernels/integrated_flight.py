@@ -44,7 +44,7 @@ from tracer.kernels.shadow import (
     zone_at,
     zone_beyond,
 )
-from tracer.kernels.step_control import error_scales, first_step, step_change, step_error
+from tracer.kernels.step_control import error_scales, first_step, inverse_root, step_change, step_error
 
 TIME = 0
 PLACE = 1
@@ -78,16 +78,14 @@ def start_flight(flight, conditions, tolerance, x, y, z, vx, vy, vz):
     flight[HAZARDS] = 0.0
     flight[HAZARDS + 1] = 0.0
     zone = zone_at(conditions.sky.shadow, x, y, z)
-    _set_slopes(
-        flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz))
-    )
+    set_slopes(flight, rates_of_change(conditions.sky, conditions.push_tables, zone, (x, y, z), (vx, vy, vz)))
     climb = (x * vx + y * vy + z * vz) / r
     flight[STEP] = first_step(conditions.sky.forces, tolerance, r, climb, speed)
     flight[OPEN_STEP] = flight[STEP]
     flight[ZONE] = zone
     flight[TRIALS] = 0.0
     if zone == PENUMBRA:
-        flight[STEP] = EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight))
+        flight[STEP] = EDGE_PART * crossing_time(conditions.sky.shadow, place_of(flight))
 
 
 @inlined
@@ -100,21 +98,23 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     """
     sky, tables = conditions.sky, conditions.push_tables
     zone = int(flight[ZONE])
-    place = _place(flight)
+    place = place_of(flight)
     slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
     scales = error_scales(tolerance, sky.forces.gm, r, speed_squared)
-    h = min(flight[STEP], _longest_step(r, speed_squared, slopes[0]))
+    h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     if zone == PENUMBRA:
-        h = min(h, _longest_step_in_penumbra(sky.shadow, place))
+        h = min(h, longest_step_in_penumbra(sky.shadow, place))
     left = time_limit - flight[TIME]
     while True:
         last = h >= left
         if last:
             h = left
         flight[TRIALS] += 1.0
-        growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place[:3], place[3:], slopes)
+        growth, end_slopes, error, quartic = trial_step(
+            rates_of_change, sky, tables, zone, h, place[:3], place[3:], slopes
+        )
         squared = step_error(error, scales)
         change = step_change(squared)
         if squared <= 1.0:
@@ -125,16 +125,16 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     _store(curve, flight, h, place, slopes, growth, end_slopes, quartic)
     end = _moved(place, growth)
     flight[STEP] = h * change
-    near = _surfaces_near(sky, zone, place, end)
+    near = surfaces_near(sky, zone, place, end)
     if near[0] or near[1] or near[2]:
-        surface, part = _first_surface(sky, zone, curve, near, place, end)
+        surface, part = first_surface(sky, zone, curve, near, place, end)
         if part <= 1.0:
             return _cut(flight, curve, conditions, zone, surface, part)
     flight[TIME] += h
     _set_place(flight, end)
     flight[HAZARDS] += growth[2][0]
     flight[HAZARDS + 1] += growth[2][1]
-    _set_slopes(flight, end_slopes)
+    set_slopes(flight, end_slopes)
     if last:
         return AGED
     return FLYING if flight[TRIALS] < MOST_TRIALS else UNRESOLVED
@@ -160,7 +160,7 @@ def new_curve() -> np.ndarray:
 
 
 @merged
-def _place(flight):
+def place_of(flight):
     return (
         flight[PLACE],
         flight[PLACE + 1],
@@ -200,7 +200,7 @@ def _slopes(flight):
 
 
 @merged
-def _set_slopes(flight, slopes):
+def set_slopes(flight, slopes):
     flight[SLOPES] = slopes[0][0]
     flight[SLOPES + 1] = slopes[0][1]
     flight[SLOPES + 2] = slopes[0][2]
@@ -236,7 +236,7 @@ def _give_up(flight, curve):
 
 
 @merged
-def _surfaces_near(sky, zone, start, end):
+def surfaces_near(sky, zone, start, end):
     """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge)."""
     forces = sky.forces
     r0 = start[0] * start[0] + start[1] * start[1] + start[2] * start[2]
@@ -252,7 +252,7 @@ def _surfaces_near(sky, zone, start, end):
 
 
 @merged
-def _first_surface(sky, zone, curve, near, start, end):
+def first_surface(sky, zone, curve, near, start, end):
     """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
     first, part, reach = 0, NEVER, 1.0
     for surface in (GROUND, OUTER, PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
@@ -308,33 +308,33 @@ def _cut(flight, curve, conditions, zone, surface, part):
     beyond = zone_beyond(conditions.sky.shadow, zone, surface)
     flight[ZONE] = beyond
     sky, tables = conditions.sky, conditions.push_tables
-    _set_slopes(flight, rates_of_change(sky, tables, beyond, place[:3], place[3:]))
+    set_slopes(flight, rates_of_change(sky, tables, beyond, place[:3], place[3:]))
     if beyond == PENUMBRA:
         flight[OPEN_STEP] = flight[STEP]
-        flight[STEP] = min(flight[STEP], EDGE_PART * _crossing_time(conditions.sky.shadow, _place(flight)))
+        flight[STEP] = min(flight[STEP], EDGE_PART * crossing_time(conditions.sky.shadow, place_of(flight)))
     else:
         flight[STEP] = max(flight[STEP], flight[OPEN_STEP])
     return FLYING
 
 
-@merged
-def _longest_step(r, speed_squared, acceleration):
-    """Return the time [s] in which an atom can come about as far as it is from the centre.
+@inlined
+def longest_step(per_r, speed_squared, acceleration):
+    """Return the time [s], to a hundredth, in which an atom can come about as far as it is from the centre.
 
     A way without gravity has no error to bound its steps, and could pass the body twice in one.
     """
     pull = abs(acceleration[0]) + abs(acceleration[1]) + abs(acceleration[2])
-    return r / math.sqrt(speed_squared + pull * r)
+    return inverse_root(max(per_r * (speed_squared * per_r + pull), 1e-300))
 
 
 @kernel
-def _longest_step_in_penumbra(shadow, place):
+def longest_step_in_penumbra(shadow, place):
     """Return a step [s] that goes just over the nearest edge, where the light has no second derivative."""
-    return max(OVERSHOOT * time_to_edge(shadow, place), LEAST_EDGE_PART * _crossing_time(shadow, place))
+    return max(OVERSHOOT * time_to_edge(shadow, place), LEAST_EDGE_PART * crossing_time(shadow, place))
 
 
 @kernel
-def _crossing_time(shadow, place):
+def crossing_time(shadow, place):
     x, y, z, vx, vy, vz = place
     rho = math.sqrt(y * y + z * z)
     width = umbra_height(shadow, x, rho) - penumbra_height(shadow, x, rho)

@@ -3,7 +3,7 @@
 All tables lie in one flat float64 array, because an array in the innermost loop costs time for each one: the
 number of lines; four numbers for each line (first velocity [m s-1], steps per velocity [s m-1], last step,
 entry of its first knot); then for each knot the straight line to the next one (level at the last), as its value at
-step 0 and its rise for each step.
+step 0 and its rise for each step; at the end two zeros, the straight line of no line.
 """
 
 import numpy as np
@@ -61,4 +61,4 @@ def flat_tables(first_velocities, velocity_steps, values) -> np.ndarray:
         rise = np.append(np.diff(value), 0.0)
         knots.append(np.column_stack([value - np.arange(len(value)) * rise, rise]).ravel())
         entry += 2 * len(value)
-    return np.concatenate([[len(values)], headings, *knots]).astype(np.float64)
+    return np.concatenate([[len(values)], headings, *knots, [0.0, 0.0]]).astype(np.float64)

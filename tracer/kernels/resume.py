@@ -10,6 +10,7 @@ from typing import NamedTuple
 import numpy as np
 
 from tracer.kernels.integrated_flight import new_curve, new_flight
+from tracer.kernels.lanes import WIDTH, new_lanes
 
 RELEASED = 0
 """Counter of the atoms that have been released; the next one's number."""
@@ -20,7 +21,10 @@ ENDED = 1
 STEPS = 2
 """Counter of integration steps."""
 
-COUNTERS = 3
+CURSOR = 3
+"""Lane at which the next slice goes on."""
+
+COUNTERS = 4
 
 WEIGHT = 6
 SURVIVAL = 7
@@ -34,12 +38,14 @@ ATOM_SIZE = 12
 class Resume(NamedTuple):
     """What a slice leaves for the next, and room to work in.
 
-    `counters` int64 (COUNTERS,), `atom` (ATOM_SIZE,); `flight`, `curve` serve the flight under way, `shine` (line,)
-    its samples.
+    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `flight`,
+    `curve` serve a flight that goes on by itself, `shine` (line,) a sample.
     """
 
     counters: np.ndarray
     atom: np.ndarray
+    atoms: np.ndarray
+    lanes: np.ndarray
     flight: np.ndarray
     curve: np.ndarray
     shine: np.ndarray
@@ -48,5 +54,11 @@ class Resume(NamedTuple):
 def new_resume(lines: int) -> Resume:
     """Return the start of a batch of atoms with `lines` emission lines."""
     return Resume(
-        np.zeros(COUNTERS, np.int64), np.zeros(ATOM_SIZE), new_flight(), new_curve(), np.zeros(lines)
+        np.zeros(COUNTERS, np.int64),
+        np.zeros(ATOM_SIZE),
+        np.zeros((WIDTH, ATOM_SIZE)),
+        new_lanes(),
+        new_flight(),
+        new_curve(),
+        np.zeros(lines),
     )

@@ -55,15 +55,27 @@ def score_sample(tally, cells, images, x, y, z, r, content, ionizing, shine):
     layer = altitude_cell(cells, r)
     if layer >= 0:
         row, column = ground_cell(cells, x, y, z, r)
-        tally.content[layer, row, column] += content
-        shrink = cells.radius / r
-        tally.column_content[row, column] += content * shrink * shrink
-        if ionizing > 0.0:
-            tally.ionized[layer, row, column] += content * ionizing
-        for line in range(shine.shape[0]):
-            tally.emission[line, layer, row, column] += content * shine[line]
+        count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine)
+    count_in_images(tally, images, cells.radius, x, y, z, content, shine)
+
+
+@merged
+def count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine):
+    """Count `content` atoms at distance `r` [m] in a cell of the grid and in the column that it belongs to."""
+    tally.content[layer, row, column] += content
+    shrink = cells.radius / r
+    tally.column_content[row, column] += content * shrink * shrink
+    if ionizing > 0.0:
+        tally.ionized[layer, row, column] += content * ionizing
+    for line in range(shine.shape[0]):
+        tally.emission[line, layer, row, column] += content * shine[line]
+
+
+@merged
+def count_in_images(tally, images, radius, x, y, z, content, shine):
+    """Count `content` atoms at (x, y, z) [m] in all images."""
     for i in range(images.first.shape[0]):
-        pixel = image_pixel(images, i, cells.radius, x, y, z)
+        pixel = image_pixel(images, i, radius, x, y, z)
         if pixel >= 0:
             tally.image_content[pixel] += content
             for line in range(shine.shape[0]):

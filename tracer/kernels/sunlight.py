@@ -14,18 +14,22 @@ def visible_fraction(x, y, z, distance, radius, sun_radius):
     discs is exact to the square of the Sun's angular radius, beside the ground and behind the umbra's tip
     alike.
     """
-    r2 = x * x + y * y + z * z
-    s2 = (distance - x) * (distance - x) + y * y + z * z
-    sin_body = min(1.0, radius / math.sqrt(r2))
-    cos_body = math.sqrt(1.0 - sin_body * sin_body)
-    across = distance * math.sqrt(y * y + z * z)
+    rho2 = y * y + z * z
+    r2 = x * x + rho2
+    sx = distance - x
+    s2 = sx * sx + rho2
+    s = math.sqrt(s2)
+    # Sine and cosine of the body's angular radius, times r, and of the separation of the centres, times r s.
+    low = radius if r2 > radius * radius else math.sqrt(r2)
+    horizon = math.sqrt(max(0.0, r2 - radius * radius))
+    across = distance * math.sqrt(rho2)
     along = r2 - x * distance
-    separation = math.atan2(across, along)
-    cos_separation = along / math.sqrt(across * across + along * along)
-    limb = 2.0 * math.tan(0.5 * (separation - math.asin(sin_body)))
-    curvature = (cos_separation + cos_body) / (2.0 * sin_body)
-    disc = 2.0 * math.tan(0.5 * math.asin(sun_radius / math.sqrt(s2)))
-    return 1.0 - covered_fraction(limb / disc, curvature * disc)
+    sun_cosine = math.sqrt(s2 - sun_radius * sun_radius)
+    # Radii and gap on the projection are tangents of half angles, sine / (1 + cosine); in units of the Sun's radius.
+    per_disc = (s + sun_cosine) / sun_radius
+    limb = per_disc * (across * horizon - along * low) / (r2 * s + (along * horizon + across * low))
+    curvature = (along + horizon * s) / (low * s * per_disc)
+    return 1.0 - covered_fraction(limb, curvature)
 
 
 @kernel
@@ -55,7 +59,14 @@ def covered_fraction(limb, curvature):
 def _bulge(half, curvature, cosine):
     """Return the area between a chord of half length `half` and its arc, which meets it at the angle of `cosine`."""
     sine = curvature * half
-    angle = math.atan2(sine, cosine)
+    if abs(sine) < 0.03 and cosine > 0.0:
+        s2 = sine * sine
+        # The arcsine's series; its next term is 1e-17 of the angle.
+        angle = sine * (
+            1.0 + s2 * (1.0 / 6.0 + s2 * (3.0 / 40.0 + s2 * (5.0 / 112.0 + s2 * (35.0 / 1152.0))))
+        )
+    else:
+        angle = math.atan2(sine, cosine)
     if abs(angle) > 0.2:
         return (angle - sine * cosine) / (curvature * curvature)
     # Series of angle - sin(angle) cos(angle) over sin(angle)^2: a nearly straight edge would lose all digits.

@@ -8,12 +8,29 @@ from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
-from tracer.kernels.integrated_flight import PLACE, TIME, advance, start_flight
+from tracer.kernels.lane_flight import launch_in_lane, look_closer
+from tracer.kernels.lane_sample import sample_steps
+from tracer.kernels.lane_scoring import score_lanes
+from tracer.kernels.lane_step import try_steps
+from tracer.kernels.lanes import (
+    ACCEPTED,
+    ALIVE,
+    DRAWN,
+    FLAGGED,
+    KEPT,
+    STANDING,
+    START,
+    TIME,
+    VACANT,
+    VELOCITY,
+    WIDTH,
+    Y,
+    Z,
+)
 from tracer.kernels.launches import Launches
-from tracer.kernels.resume import AGE, ENDED, RELEASED, STEPS, SURVIVAL, UNDER_WAY, Resume
+from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, SURVIVAL, UNDER_WAY, Resume
 from tracer.kernels.roulette import play_roulette
 from tracer.kernels.scoring import Tally
-from tracer.kernels.step_scoring import book_step, score_step
 from tracer.kernels.world import World
 
 GRAZING = 0.02
@@ -41,15 +58,95 @@ def trace_slice(
 
 @kernel
 def trace_integrated(world, launches, resume, tally, rng, most_flights):
-    """Do what `trace_slice` says with integrated flights; apart from arcs, so that a run compiles one of the two."""
+    """Do what `trace_slice` says with integrated flights; apart from arcs, so that a run compiles one of the two.
+
+    The flights go side by side, a step each in turn. Where one ends, the atom's next flight or the next atom's first
+    takes its lane. A slice may stop amid that, never amid the steps: what the random numbers are drawn for does not
+    depend on where slices end.
+    """
     flights = 0
+    lanes = resume.lanes
+    conditions = world.light.conditions
+    sky, tables = conditions.sky, conditions.push_tables
     while flights < most_flights and resume.counters[ENDED] < launches.weights.shape[0]:
-        _begin(world, launches, resume, tally)
-        alive = take_off(resume.atom, tally)
-        end = _fly_integrated(world, resume, tally, alive, rng)
-        _finish(world, resume, tally, alive, end, rng)
-        flights += 1
+        for lane in range(resume.counters[CURSOR], WIDTH):
+            resume.counters[CURSOR] = lane
+            if lanes[STANDING + lane] == FLYING:
+                continue
+            if lanes[STANDING + lane] != VACANT:
+                if flights == most_flights:
+                    return flights
+                _end_flight(world, resume, tally, lane, rng)
+                flights += 1
+            _begin_flight(world, launches, resume, tally, lane)
+        resume.counters[CURSOR] = 0
+        try_steps(lanes, sky, tables)
+        for lane in range(WIDTH):
+            if lanes[FLAGGED + lane] > 0.0:
+                look_closer(lanes, lane, sky, tables, resume.curve)
+            if lanes[ACCEPTED + lane] > 0.0:
+                resume.counters[STEPS] += 1
+                lanes[DRAWN + lane] = rng.random()
+        sample_steps(lanes, sky, world.cells)
+        score_lanes(world, tally, lanes, resume.shine)
+        _drop_what_is_lost(world, resume, tally, rng)
     return flights
+
+
+@merged
+def _drop_what_is_lost(world, resume, tally, rng):
+    """Play roulette with flights of which hardly anything is left: they would go on for nothing."""
+    lanes = resume.lanes
+    for lane in range(WIDTH):
+        survival = resume.atoms[lane, SURVIVAL]
+        if lanes[KEPT + lane] * survival < world.roulette.aloft and lanes[STANDING + lane] == FLYING:
+            least = world.roulette.aloft / survival
+            gain, alive = world.roulette.gain, lanes[ALIVE + lane]
+            lanes[KEPT + lane] = play_roulette(gain, tally, alive, lanes[KEPT + lane], least, rng)
+            if lanes[KEPT + lane] == 0.0:
+                lanes[STANDING + lane] = DROPPED
+
+
+@merged
+def _begin_flight(world, launches, resume, tally, lane):
+    """Launch the lane's atom again, or a new one, or leave the lane vacant if there are no more."""
+    atom, lanes = resume.atoms[lane], resume.lanes
+    if atom[UNDER_WAY] == 0.0:
+        if resume.counters[RELEASED] == launches.weights.shape[0]:
+            lanes[STANDING + lane] = VACANT
+            return
+        release(world, launches, resume.counters[RELEASED], atom, tally)
+        resume.counters[RELEASED] += 1
+    lanes[ALIVE + lane] = take_off(atom, tally)
+    light = world.light
+    launch_in_lane(
+        lanes,
+        lane,
+        light.conditions,
+        light.tolerance * _care(atom),
+        world.motion.age_limit - atom[AGE],
+        (atom[0], atom[1], atom[2], atom[3], atom[4], atom[5]),
+    )
+
+
+@merged
+def _end_flight(world, resume, tally, lane, rng):
+    lanes = resume.lanes
+    end = (
+        int(lanes[STANDING + lane]),
+        lanes[KEPT + lane],
+        lanes[TIME + lane],
+        lanes[START + lane],
+        lanes[START + Y + lane],
+        lanes[START + Z + lane],
+        lanes[START + VELOCITY + lane],
+        lanes[START + VELOCITY + Y + lane],
+        lanes[START + VELOCITY + Z + lane],
+    )
+    atom = resume.atoms[lane]
+    come_down(world, atom, tally, lanes[ALIVE + lane], end, rng)
+    if atom[UNDER_WAY] == 0.0:
+        resume.counters[ENDED] += 1
 
 
 @kernel
@@ -93,36 +190,3 @@ def _care(atom):
         return 1.0
     angle = climb / (GRAZING * r * speed)
     return max(angle * angle, LEAST_CARE)
-
-
-@merged
-def _fly_integrated(world, resume, tally, alive, rng):
-    """Return (ending, survival, time, position, velocity) of one integrated flight, and count it step by step."""
-    atom, flight, curve = resume.atom, resume.flight, resume.curve
-    light = world.light
-    tolerance = light.tolerance * _care(atom)
-    start_flight(flight, light.conditions, tolerance, atom[0], atom[1], atom[2], atom[3], atom[4], atom[5])
-    time_left = world.motion.age_limit - atom[AGE]
-    least = world.roulette.aloft / atom[SURVIVAL]
-    kept = 1.0
-    standing = FLYING
-    while standing == FLYING:
-        standing = advance(flight, curve, light.conditions, tolerance, time_left)
-        resume.counters[STEPS] += 1
-        score_step(world, tally, curve, alive, kept, resume.shine, rng)
-        kept = book_step(tally, curve, alive, kept)
-        if standing == FLYING:
-            kept = play_roulette(world.roulette.gain, tally, alive, kept, least, rng)
-            if kept == 0.0:
-                standing = DROPPED
-    return (
-        standing,
-        kept,
-        flight[TIME],
-        flight[PLACE],
-        flight[PLACE + 1],
-        flight[PLACE + 2],
-        flight[PLACE + 3],
-        flight[PLACE + 4],
-        flight[PLACE + 5],
-    )

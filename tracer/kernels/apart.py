@@ -1,0 +1,88 @@
+"""Lanes and tables, with the promise that the one never overlap the other.
+
+A loop that reads tables at places that it computes and writes to lanes can only be turned into vector operations if
+the compiler knows that no write changes what is read. Numba has no way to say so for an array, LLVM has.
+"""
+
+from llvmlite import ir
+from numba.core import types
+from numba.extending import intrinsic, overload
+
+LANES = "lanes"
+TABLES = "tables"
+
+
+def lane_value(lanes, index):
+    """Return `lanes[index]`; `index` >= 0."""
+    return lanes[index]
+
+
+def set_lane_value(lanes, index, value):
+    """Set `lanes[index]`; `index` >= 0."""
+    lanes[index] = value
+
+
+def table_entry(tables, index):
+    """Return `tables[index]`; `index` >= 0."""
+    return tables[index]
+
+
+def _promise(access, own, other):
+    """Mark a load or store as one to `own`, which doesn't overlap `other`."""
+    module = access.module
+    domain = module.add_metadata([ir.MetaDataString(module, "tracer.kernels.apart")])
+
+    def scopes(name):
+        return module.add_metadata([module.add_metadata([ir.MetaDataString(module, name), domain])])
+
+    access.set_metadata("alias.scope", scopes(own))
+    access.set_metadata("noalias", scopes(other))
+    return access
+
+
+def _pointer(context, builder, array_type, array, index):
+    data = context.make_array(array_type)(context, builder, array).data
+    return builder.gep(data, [index], inbounds=True)
+
+
+def _loading(own, other):
+    def generate(context, builder, signature, arguments):
+        return _promise(builder.load(_pointer(context, builder, signature.args[0], *arguments)), own, other)
+
+    return generate
+
+
+@intrinsic
+def _load_lane(typing_context, lanes, index):
+    return types.float64(lanes, types.intp), _loading(LANES, TABLES)
+
+
+@intrinsic
+def _load_table(typing_context, tables, index):
+    return types.float64(tables, types.intp), _loading(TABLES, LANES)
+
+
+@intrinsic
+def _store_lane(typing_context, lanes, index, value):
+    def generate(context, builder, signature, arguments):
+        array, at, number = arguments
+        place = _pointer(context, builder, signature.args[0], array, at)
+        _promise(builder.store(number, place), LANES, TABLES)
+        return context.get_dummy_value()
+
+    return types.void(lanes, types.intp, types.float64), generate
+
+
+@overload(lane_value)
+def _compiled_lane_value(lanes, index):
+    return lambda lanes, index: _load_lane(lanes, index)
+
+
+@overload(set_lane_value)
+def _compiled_set_lane_value(lanes, index, value):
+    return lambda lanes, index, value: _store_lane(lanes, index, value)
+
+
+@overload(table_entry)
+def _compiled_table_entry(tables, index):
+    return lambda tables, index: _load_table(tables, index)

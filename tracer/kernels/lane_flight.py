@@ -1,0 +1,204 @@
+"""One lane at a time: where a flight begins, what its step meets, and the parts that it flies by itself."""
+
+import math
+
+from tracer.kernels import integrated_flight as one
+from tracer.kernels import lanes as row
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.crossing import (
+    ANTUMBRA_EDGE,
+    GROUND,
+    HALVINGS,
+    OUTER,
+    PENUMBRA_EDGE,
+    SHARP,
+    UMBRA_EDGE,
+    height,
+)
+from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, START, place_at
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
+from tracer.kernels.lane_step import LANDS, lane_place, lane_rates
+from tracer.kernels.lanes import WIDTH
+from tracer.kernels.shadow import PENUMBRA, zone_at, zone_beyond
+from tracer.kernels.step_control import STEP_SHARE, first_step
+
+
+@kernel
+def launch_in_lane(lanes, lane, conditions, tolerance, time_limit, place):
+    """Launch an atom at `place` (x, y, z [m], vx, vy, vz [m s-1]), to fly with `tolerance` for `time_limit` [s].
+
+    What `integrated_flight.start_flight` does.
+    """
+    sky, tables = conditions.sky, conditions.push_tables
+    x, y, z, vx, vy, vz = place
+    zone = zone_at(sky.shadow, x, y, z)
+    r = math.sqrt(x * x + y * y + z * z)
+    speed = math.sqrt(vx * vx + vy * vy + vz * vz)
+    step = first_step(sky.forces, tolerance, r, (x * vx + y * vy + z * vz) / r, speed)
+    lanes[row.OPEN_STEP + lane] = step
+    lanes[row.STEP + lane] = step
+    if zone == PENUMBRA:
+        lanes[row.STEP + lane] = one.EDGE_PART * one.crossing_time(sky.shadow, place)
+    for i in range(6):
+        lanes[row.START + i * WIDTH + lane] = place[i]
+    _set_rates(lanes, row.START, lane, sky, tables, zone, place)
+    allowed = STEP_SHARE * tolerance
+    lanes[row.PER_ALLOWED + lane] = 1.0 / (allowed * allowed)
+    lanes[row.TIME_LIMIT + lane] = time_limit
+    lanes[row.TIME + lane] = 0.0
+    lanes[row.ZONE + lane] = zone
+    lanes[row.TRIALS + lane] = 0.0
+    lanes[row.KEPT + lane] = 1.0
+    lanes[row.STANDING + lane] = FLYING
+
+
+@kernel
+def look_closer(lanes, lane, sky, tables, curve):
+    """Decide what a flagged step met: cut it there, end the flight, or let it pass."""
+    if lanes[row.ACCEPTED + lane] == 0.0:
+        lanes[row.STANDING + lane] = UNRESOLVED
+        return
+    if lanes[row.FLAGGED + lane] == LANDS:
+        _land(lanes, lane, sky.forces.radius)
+        return
+    zone = int(lanes[row.ZONE + lane])
+    start = lane_place(lanes, row.START, lane)
+    end = lane_place(lanes, row.END, lane)
+    near = one.surfaces_near(sky, zone, start, end)
+    if near[0] or near[1] or (near[2] and _edge_met(sky, zone, start, end)):
+        _draw_curve(lanes, lane, curve)
+        surface, part = one.first_surface(sky, zone, curve, near, start, end)
+        if part <= 1.0:
+            _cut(lanes, lane, sky, tables, curve, zone, surface, part)
+            return
+    if lanes[row.LAST + lane] > 0.0:
+        lanes[row.STANDING + lane] = AGED
+    elif lanes[row.TRIALS + lane] >= one.MOST_TRIALS:
+        lanes[row.STANDING + lane] = UNRESOLVED
+
+
+@inlined
+def _edge_met(sky, zone, start, end):
+    """Return False where a step that ends above ground passes or nears no edge of its zone: see `first_crossing`."""
+    for edge in (PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
+        if zone == PENUMBRA or edge == PENUMBRA_EDGE or edge == zone:
+            above, rate = height(sky.shadow, sky.forces.outer_radius, edge, zone, end)
+            if above < 0.0:
+                return True
+            if rate > 0.0 and height(sky.shadow, sky.forces.outer_radius, edge, zone, start)[1] < 0.0:
+                return True
+    return False
+
+
+@inlined
+def _land(lanes, lane, radius):
+    """Cut a step that starts well above ground and ends below it where it passes the ground.
+
+    Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`.
+    """
+    h = lanes[row.LENGTH + lane]
+    x = _polynomial(lanes, lane, h, 0)
+    y = _polynomial(lanes, lane, h, row.Y)
+    z = _polynomial(lanes, lane, h, row.Z)
+    goal = radius * radius
+    above = x[0] * x[0] + y[0] * y[0] + z[0] * z[0] - goal
+    end_x, end_y, end_z = x[0] + x[1], y[0] + y[1], z[0] + z[1]
+    below = goal - (end_x * end_x + end_y * end_y + end_z * end_z)
+    left, right = 0.0, 1.0
+    part = above / (above + below)
+    for _ in range(HALVINGS):
+        px, dx = _value_and_slope(x, part)
+        py, dy = _value_and_slope(y, part)
+        pz, dz = _value_and_slope(z, part)
+        f = px * px + py * py + pz * pz - goal
+        if abs(f) <= 2.0 * SHARP * goal:
+            break
+        if f > 0.0:
+            left = part
+        else:
+            right = part
+        part -= 0.5 * f / (px * dx + py * dy + pz * dz)
+        if not left < part < right:
+            part = 0.5 * (left + right)
+    lanes[row.STANDING + lane] = LANDED
+    lanes[row.FLOWN + lane] = part
+    for axis in range(0, 3 * WIDTH, WIDTH):
+        lanes[row.END + axis + lane] = _value_and_slope(_polynomial(lanes, lane, h, axis), part)[0]
+        at = row.VELOCITY + axis
+        lanes[row.END + at + lane] = _value_and_slope(_polynomial(lanes, lane, h, at), part)[0]
+
+
+@inlined
+def _polynomial(lanes, lane, h, component):
+    """Return the five coefficients of `dense_output` of place or velocity, `component` its row within a state."""
+    at = component + lane
+    growth = lanes[row.GROWTH + at]
+    bend = h * lanes[row.START + row.VELOCITY + at] - growth
+    rest = growth - h * lanes[row.SEVENTH + at] - bend
+    return lanes[row.START + at], growth, bend, rest, lanes[row.QUARTIC + at]
+
+
+@inlined
+def _value_and_slope(coefficients, part):
+    """Return the value at `part` of a step, and its derivative with respect to it."""
+    start, growth, bend, rest, quartic = coefficients
+    left = 1.0 - part
+    inner = rest + left * quartic
+    middle = bend + part * inner
+    outer = growth + left * middle
+    slope = inner - part * quartic
+    slope = left * slope - middle
+    return start + part * outer, outer + part * slope
+
+
+@inlined
+def _cut(lanes, lane, sky, tables, curve, zone, surface, part):
+    """End a lane's step at `part` of its curve, at `surface`."""
+    place = place_at(curve, part)
+    lanes[row.FLOWN + lane] = part
+    for i in range(6):
+        lanes[row.END + i * WIDTH + lane] = place[i]
+    if surface == GROUND:
+        lanes[row.STANDING + lane] = LANDED
+        return
+    if surface == OUTER:
+        lanes[row.STANDING + lane] = CROSSED
+        return
+    beyond = zone_beyond(sky.shadow, zone, surface)
+    lanes[row.ZONE + lane] = beyond
+    step = lanes[row.STEP + lane]
+    if beyond == PENUMBRA:
+        lanes[row.OPEN_STEP + lane] = step
+        lanes[row.STEP + lane] = min(step, one.EDGE_PART * one.crossing_time(sky.shadow, place))
+    else:
+        lanes[row.STEP + lane] = max(step, lanes[row.OPEN_STEP + lane])
+    _set_rates(lanes, row.END, lane, sky, tables, beyond, place)
+
+
+@inlined
+def _draw_curve(lanes, lane, curve):
+    h = lanes[row.LENGTH + lane]
+    curve[START] = lanes[row.TIME + lane]
+    curve[LENGTH] = h
+    curve[FLOWN] = 1.0
+    curve[CURVE_ZONE] = lanes[row.ZONE + lane]
+    for i in range(6):
+        start, growth, bend, rest, quartic = _polynomial(lanes, lane, h, i * WIDTH)
+        k = COEFFICIENTS + 5 * i
+        curve[k] = start
+        curve[k + 1] = growth
+        curve[k + 2] = bend
+        curve[k + 3] = rest
+        curve[k + 4] = quartic
+
+
+@inlined
+def _set_rates(lanes, first, lane, sky, tables, zone, place):
+    """Set what a state holds beside its place."""
+    acceleration, light, other, nearness = lane_rates(sky, tables, zone, place[:3], place[3:])
+    lanes[first + row.ACCELERATION + lane] = acceleration[0]
+    lanes[first + row.ACCELERATION + row.Y + lane] = acceleration[1]
+    lanes[first + row.ACCELERATION + row.Z + lane] = acceleration[2]
+    lanes[first + row.LIGHT + lane] = light
+    lanes[first + row.OTHER + lane] = other
+    lanes[first + row.NEARNESS + lane] = nearness

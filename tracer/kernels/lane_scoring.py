@@ -1,0 +1,55 @@
+"""What the samples of all lanes leave in the cells, and their steps in the particle budget."""
+
+from tracer.fate import Fate
+from tracer.kernels.cells import close_layer, column_at, row_at
+from tracer.kernels.compiling import merged
+from tracer.kernels.lanes import (
+    ACCEPTED,
+    COLUMN,
+    CONTENT,
+    IONIZED,
+    LAYER,
+    LIFE,
+    LOST,
+    PARTIAL,
+    RECEDING,
+    RECEIVED,
+    ROW,
+    SAMPLE,
+    SAMPLE_R,
+    WIDTH,
+    Y,
+    Z,
+)
+from tracer.kernels.lines import beyond_tables, line_value
+from tracer.kernels.scoring import count_in_cell, count_in_images
+from tracer.kernels.shadow import PENUMBRA, lit_fraction
+
+
+@merged
+def score_lanes(world, tally, lanes, shine):
+    """Count the sample of every lane that made a step; `shine` (line,) is room for each line's photons."""
+    tables, sky = world.light.line_tables, world.light.conditions.sky
+    cells = world.cells
+    for lane in range(WIDTH):
+        if lanes[ACCEPTED + lane] == 0.0:
+            continue
+        tally.life[0] += lanes[LIFE + lane]
+        tally.ledger[Fate.IONIZED] += lanes[IONIZED + lane]
+        tally.ledger[Fate.OTHER_LOSS] += lanes[LOST + lane] - lanes[IONIZED + lane]
+        x, y, z = lanes[SAMPLE + lane], lanes[SAMPLE + Y + lane], lanes[SAMPLE + Z + lane]
+        content, received = lanes[CONTENT + lane], lanes[RECEIVED + lane]
+        if lanes[PARTIAL + lane] > 0.0:
+            received *= lit_fraction(sky.shadow, PENUMBRA, x, y, z, sky.forces.distance)
+        for line in range(shine.shape[0]):
+            shine[line] = received * line_value(tables, line, lanes[RECEDING + lane])
+        if beyond_tables(tables, lanes[RECEDING + lane]):
+            tally.beyond[0] += content
+        r = lanes[SAMPLE_R + lane]
+        layer = close_layer(cells, r, lanes[LAYER + lane])
+        if layer >= 0:
+            row = row_at(cells, lanes[ROW + lane], z / r)
+            column = column_at(cells, lanes[COLUMN + lane], x, y)
+            count_in_cell(tally, cells, layer, row, column, r, content, received * sky.losses.ionizing, shine)
+        if world.images.first.shape[0] > 0:
+            count_in_images(tally, world.images, cells.radius, x, y, z, content, shine)

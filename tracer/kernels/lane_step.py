@@ -1,0 +1,480 @@
+"""One trial step in every lane at once: `dormand_prince.trial_step`, stage by stage.
+
+A loop for each stage rather than one for all: while one group of lanes waits for its stage's last number, the processor
+is at work on the next group.
+"""
+
+import math
+
+import numpy as np
+
+from tracer.kernels.apart import lane_value, set_lane_value, table_entry
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.dormand_prince import (
+    TABLEAU,
+    error_row,
+    fifth,
+    fourth,
+    quartic,
+    quartic_row,
+    second,
+    sixth,
+    solution,
+    solution_row,
+    third,
+)
+from tracer.kernels.endings import FLYING
+from tracer.kernels.fused import fused
+from tracer.kernels.integrated_flight import (
+    MOST_TRIALS,
+    SHORTEST_STEP,
+    longest_step,
+    longest_step_in_penumbra,
+)
+from tracer.kernels.lanes import (
+    ACCELERATION,
+    ACCEPTED,
+    CHANGE,
+    END,
+    EXTRA,
+    FIFTH,
+    FLAGGED,
+    FLOWN,
+    FOURTH,
+    GROWTH,
+    LAST,
+    LENGTH,
+    LIGHT,
+    LIT,
+    NEARNESS,
+    OTHER,
+    OTHER_ERROR,
+    PARTIAL,
+    PER_ALLOWED,
+    QUARTIC,
+    SECOND,
+    SEVENTH,
+    SIXTH,
+    STAGE_ACCELERATION,
+    STAGE_LIGHT,
+    STAGE_OTHER,
+    STAGE_ROWS,
+    STANDING,
+    START,
+    STEP,
+    THIRD,
+    TIME,
+    TIME_LIMIT,
+    TRIALS,
+    VELOCITY,
+    WIDTH,
+    ZONE,
+    Y,
+    Z,
+)
+from tracer.kernels.lines import HEADING, HEADING_SIZE, line_value
+from tracer.kernels.motion import radial_velocity
+from tracer.kernels.shadow import ANTUMBRA, NO_SHADOW, PENUMBRA, lit_fraction
+from tracer.kernels.shadow import LIT as FULL_LIGHT
+from tracer.kernels.step_control import step_change
+
+MOST_GRIDS = 2
+"""Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
+
+LANDS, DOUBTFUL = 1.0, 2.0
+"""Flags of a step: it starts well above ground, ends below it and meets nothing else; it wants to be looked at."""
+
+ALOFT = 1.0 + 1e-6
+"""Square of the least distance from the centre, in radii, that is well above ground."""
+
+COUNTING = 6755399441055744.0
+"""1.5 2^52: the sum of it and a small number holds that number, rounded to a whole one, in its last bits."""
+
+
+@kernel
+def try_steps(lanes, sky, tables):
+    """Try the next step in every lane, say whether it is accepted, and flag what needs a closer look.
+
+    Lanes without a flight make a step of no length.
+    """
+    numbers = _numbers(sky, tables)
+    apart = prepare_apart(lanes, sky, tables)
+    _choose_lengths(lanes)
+    if apart:
+        look_apart(lanes, 0, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v2 = second(v, h, a)
+        _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, second(p, h, v), v2))
+    if apart:
+        look_apart(lanes, 1, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v2, a2 = _stage(lanes, SECOND + lane)
+        v3 = third(v, h, a, a2)
+        _set_stage(lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, third(p, h, v, v2), v3))
+    if apart:
+        look_apart(lanes, 2, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v2, a2 = _stage(lanes, SECOND + lane)
+        v3, a3 = _stage(lanes, THIRD + lane)
+        v4 = fourth(v, h, a, a2, a3)
+        p4 = fourth(p, h, v, v2, v3)
+        _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, p4, v4))
+    if apart:
+        look_apart(lanes, 3, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v2, a2 = _stage(lanes, SECOND + lane)
+        v3, a3 = _stage(lanes, THIRD + lane)
+        v4, a4 = _stage(lanes, FOURTH + lane)
+        v5 = fifth(v, h, a, a2, a3, a4)
+        p5 = fifth(p, h, v, v2, v3, v4)
+        _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, p5, v5))
+    if apart:
+        look_apart(lanes, 4, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v2, a2 = _stage(lanes, SECOND + lane)
+        v3, a3 = _stage(lanes, THIRD + lane)
+        v4, a4 = _stage(lanes, FOURTH + lane)
+        v5, a5 = _stage(lanes, FIFTH + lane)
+        v6 = sixth(v, h, a, a2, a3, a4, a5)
+        p6 = sixth(p, h, v, v2, v3, v4, v5)
+        _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, p6, v6))
+    if apart:
+        look_apart(lanes, 5, sky, tables)
+    for lane in range(WIDTH):
+        h, p, v, a = _begin(lanes, lane)
+        v3, a3 = _stage(lanes, THIRD + lane)
+        v4, a4 = _stage(lanes, FOURTH + lane)
+        v5, a5 = _stage(lanes, FIFTH + lane)
+        v6, a6 = _stage(lanes, SIXTH + lane)
+        moved = solution(h, v, v3, v4, v5, v6)
+        turned = solution(h, a, a3, a4, a5, a6)
+        v7 = (v[0] + turned[0], v[1] + turned[1], v[2] + turned[2])
+        p7 = (p[0] + moved[0], p[1] + moved[1], p[2] + moved[2])
+        rates = _rates_at(lanes, lane, numbers, tables, p7, v7)
+        _set_stage(lanes, SEVENTH + lane, v7, rates)
+        _set_vector(lanes, GROWTH + lane, moved)
+        _set_vector(lanes, GROWTH + VELOCITY + lane, turned)
+        _set_vector(lanes, END + lane, p7)
+        _set_vector(lanes, END + VELOCITY + lane, v7)
+        _set_vector(lanes, END + ACCELERATION + lane, rates[0])
+        set_lane_value(lanes, END + LIGHT + lane, rates[1])
+        set_lane_value(lanes, END + OTHER + lane, rates[2])
+        set_lane_value(lanes, END + NEARNESS + lane, rates[3])
+    _judge(lanes, sky)
+    _flag(lanes, sky)
+
+
+@kernel
+def lane_rates(sky, tables, zone, position, velocity):
+    """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone`, as lanes do.
+
+    Light is relative to full light at `light_distance`; other losses are those that go neither with it nor are constant.
+    """
+    forces = sky.forces
+    x, y, z = position
+    lit = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+    extra = extra_push(forces, tables, position, velocity)
+    return _rates(_numbers(sky, tables), tables, lit, extra, position, velocity)
+
+
+@kernel
+def extra_push(forces, tables, position, velocity):
+    """Return the acceleration [m s-2] at 1 au by lines beyond the first `MOST_GRIDS` tables."""
+    x, y, z = position
+    receding = radial_velocity(forces, x, y, z, velocity[0], velocity[1], velocity[2])
+    push = 0.0
+    for line in range(MOST_GRIDS, int(tables[0])):
+        push += line_value(tables, line, receding)
+    return push
+
+
+@kernel
+def prepare_apart(lanes, sky, tables):
+    """Say whether any lane needs `look_apart`, mark those in part of the light and limit their steps."""
+    apart = tables[0] > MOST_GRIDS
+    for lane in range(WIDTH):
+        zone = lanes[ZONE + lane]
+        lanes[PARTIAL + lane] = 0.0
+        if (zone == PENUMBRA or zone == ANTUMBRA) and lanes[STANDING + lane] == FLYING:
+            apart = True
+            lanes[PARTIAL + lane] = 1.0
+            if zone == PENUMBRA:
+                longest = longest_step_in_penumbra(sky.shadow, lane_place(lanes, START, lane))
+                lanes[STEP + lane] = min(lanes[STEP + lane], longest)
+    return apart
+
+
+@inlined
+def lane_place(lanes, row, lane):
+    """Return (x, y, z, vx, vy, vz) of the state whose x is at `row`."""
+    x, y, z = lanes[row + lane], lanes[row + Y + lane], lanes[row + Z + lane]
+    at = row + VELOCITY + lane
+    return x, y, z, lanes[at], lanes[at + Y], lanes[at + Z]
+
+
+@kernel
+def look_apart(lanes, stage, sky, tables):
+    """Set the light and the push of the next stage in lanes that see part of the Sun or are pushed by many lines.
+
+    `stage` counts from 0, the second. Its place is known before its rates are.
+    """
+    forces = sky.forces
+    for lane in range(WIDTH):
+        partial = lanes[PARTIAL + lane] > 0.0
+        if not partial and tables[0] <= MOST_GRIDS:
+            continue
+        x, y, z = _moved(lanes, stage, lane, START, START + VELOCITY, 0)
+        if partial:
+            zone = int(lanes[ZONE + lane])
+            lanes[LIT + lane] = lit_fraction(sky.shadow, zone, x, y, z, forces.distance)
+        if tables[0] > MOST_GRIDS:
+            v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
+            lanes[EXTRA + lane] = extra_push(forces, tables, (x, y, z), v)
+
+
+@inlined
+def _moved(lanes, stage, lane, start, slope, later):
+    """Return the vector at row `start` moved to a stage by slopes at row `slope` and, in the stages, `later`."""
+    h = lanes[LENGTH + lane]
+    dx = TABLEAU[stage, 0] * lanes[slope + lane]
+    dy = TABLEAU[stage, 0] * lanes[slope + Y + lane]
+    dz = TABLEAU[stage, 0] * lanes[slope + Z + lane]
+    for k in range(1, stage + 1):
+        at = SECOND + (k - 1) * STAGE_ROWS * WIDTH + later + lane
+        dx += TABLEAU[stage, k] * lanes[at]
+        dy += TABLEAU[stage, k] * lanes[at + Y]
+        dz += TABLEAU[stage, k] * lanes[at + Z]
+    return (
+        lanes[start + lane] + h * dx,
+        lanes[start + Y + lane] + h * dy,
+        lanes[start + Z + lane] + h * dz,
+    )
+
+
+@inlined
+def _numbers(sky, tables):
+    return sky, _grid(tables, 0), _grid(tables, 1)
+
+
+@inlined
+def _grid(tables, line):
+    """Return (first velocity, steps per velocity, last step, entry) of a line's table, that of no line if none."""
+    if line < int(tables[0]):
+        heading = HEADING + HEADING_SIZE * line
+        return tables[heading], tables[heading + 1], tables[heading + 2], np.int64(tables[heading + 3])
+    return 0.0, 0.0, 0.0, np.int64(tables.shape[0] - 2)
+
+
+@inlined
+def _pushed(tables, grid, velocity):
+    """Return what `lines.line_value` does, in operations that several lanes can share."""
+    first, per_velocity, last, entry = grid
+    step = (velocity - first) * per_velocity
+    step = step if step > 0.0 else 0.0
+    step = last if step > last else step
+    # Rounded to the knot before, or at a knot to either: the straight lines that meet there agree.
+    counted = np.float64((step - 0.5) + COUNTING).view(np.int64) - np.float64(COUNTING).view(np.int64)
+    knot = entry + 2 * counted
+    return fused(step, table_entry(tables, knot + 1), table_entry(tables, knot))
+
+
+@inlined
+def _rates_at(lanes, lane, numbers, tables, position, velocity):
+    lit, extra = lane_value(lanes, LIT + lane), lane_value(lanes, EXTRA + lane)
+    return _rates(numbers, tables, lit, extra, position, velocity)
+
+
+@inlined
+def _rates(numbers, tables, lit, extra, position, velocity):
+    """Return what `lane_rates` does where the part `lit` of the Sun is seen and the lines left out push by `extra`."""
+    sky, one_grid, other_grid = numbers
+    forces, losses, _ = sky
+    x, y, z = position
+    vx, vy, vz = velocity
+    w = forces.turning
+    r2 = fused(x, x, fused(y, y, z * z))
+    sx = forces.distance - x
+    s2 = fused(sx, sx, fused(y, y, z * z))
+    r3 = r2 * math.sqrt(r2)
+    # One division for both distances.
+    inverse = 1.0 / (r3 * s2)
+    per_s2 = r3 * inverse
+    per_r3 = s2 * inverse
+    pull = forces.gm * per_r3
+    per_s = math.sqrt(s2) * per_s2
+    ux, uy, uz = sx * per_s, y * per_s, z * per_s
+    dilution = (forces.light_distance * forces.light_distance) * per_s2
+    light = lit * dilution
+    receding = fused(uy, vy, fused(uz, vz, -(ux * (vx - forces.radial_velocity))))
+    push = _pushed(tables, one_grid, receding) + _pushed(tables, other_grid, receding)
+    sunward = fused(forces.tide_gm, per_s2, -(light * ((forces.push + extra) + push)))
+    stay = w * w - pull
+    level = forces.tide_gm / (forces.distance * forces.distance)
+    acceleration = (
+        fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level))),
+        fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy))),
+        -fused(pull, z, sunward * uz),
+    )
+    return acceleration, light, fused(lit, losses.other_lit, dilution * losses.other_distance), r2 * per_r3
+
+
+@inlined
+def _begin(lanes, lane):
+    """Return the step's length and place, velocity and acceleration at its start."""
+    return (
+        lane_value(lanes, LENGTH + lane),
+        _vector(lanes, START + lane),
+        _vector(lanes, START + VELOCITY + lane),
+        _vector(lanes, START + ACCELERATION + lane),
+    )
+
+
+@inlined
+def _vector(lanes, row):
+    return lane_value(lanes, row), lane_value(lanes, row + Y), lane_value(lanes, row + Z)
+
+
+@inlined
+def _set_vector(lanes, row, vector):
+    set_lane_value(lanes, row, vector[0])
+    set_lane_value(lanes, row + Y, vector[1])
+    set_lane_value(lanes, row + Z, vector[2])
+
+
+@inlined
+def _stage(lanes, row):
+    """Return velocity and acceleration of the stage whose vx is at `row`."""
+    return _vector(lanes, row), _vector(lanes, row + STAGE_ACCELERATION)
+
+
+@inlined
+def _set_stage(lanes, row, velocity, rates):
+    _set_vector(lanes, row, velocity)
+    _set_vector(lanes, row + STAGE_ACCELERATION, rates[0])
+    set_lane_value(lanes, row + STAGE_LIGHT, rates[1])
+    set_lane_value(lanes, row + STAGE_OTHER, rates[2])
+
+
+@inlined
+def _choose_lengths(lanes):
+    for lane in range(WIDTH):
+        _, _, v, a = _begin(lanes, lane)
+        per_r = lane_value(lanes, START + NEARNESS + lane)
+        longest = longest_step(per_r, v[0] * v[0] + v[1] * v[1] + v[2] * v[2], a)
+        h = min(lane_value(lanes, STEP + lane), longest)
+        left = lane_value(lanes, TIME_LIMIT + lane) - lane_value(lanes, TIME + lane)
+        last = h >= left
+        h = left if last else h
+        set_lane_value(lanes, LENGTH + lane, h if lane_value(lanes, STANDING + lane) == FLYING else 0.0)
+        set_lane_value(lanes, LAST + lane, 1.0 if last else 0.0)
+        set_lane_value(lanes, LIT + lane, 1.0 if lane_value(lanes, ZONE + lane) == FULL_LIGHT else 0.0)
+
+
+@inlined
+def _judge(lanes, sky):
+    """Weigh the error of every step, and set the length of the next one."""
+    forces, losses, _ = sky
+    per_light = losses.ionizing + losses.other_sunlight
+    if losses.other_lit > 0.0 or losses.other_distance > 0.0:
+        for lane in range(WIDTH):
+            h = lane_value(lanes, LENGTH + lane)
+            set_lane_value(lanes, OTHER_ERROR + lane, _integrate(lanes, lane, h, OTHER, STAGE_OTHER))
+    for lane in range(WIDTH):
+        h, _, v, a = _begin(lanes, lane)
+        v3, a3 = _stage(lanes, THIRD + lane)
+        v4, a4 = _stage(lanes, FOURTH + lane)
+        v5, a5 = _stage(lanes, FIFTH + lane)
+        v6, a6 = _stage(lanes, SIXTH + lane)
+        v7, a7 = _stage(lanes, SEVENTH + lane)
+        _set_vector(lanes, QUARTIC + lane, quartic(h, v, v3, v4, v5, v6, v7))
+        _set_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
+        light_error = _integrate(lanes, lane, h, LIGHT, STAGE_LIGHT)
+        of_hazard = fused(per_light, light_error, lane_value(lanes, OTHER_ERROR + lane))
+        per_r = lane_value(lanes, START + NEARNESS + lane)
+        v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
+        squared = lane_value(lanes, PER_ALLOWED + lane) * (
+            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_r * per_r)
+            + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v_squared)
+            + of_hazard * of_hazard
+        )
+        accepted = squared <= 1.0
+        change = step_change(squared)
+        flown = 1.0 if accepted & (lane_value(lanes, STANDING + lane) == FLYING) else 0.0
+        set_lane_value(lanes, CHANGE + lane, change)
+        set_lane_value(lanes, STEP + lane, h * (change if accepted else min(change, 1.0)))
+        set_lane_value(lanes, TRIALS + lane, lane_value(lanes, TRIALS + lane) + 1.0)
+        set_lane_value(lanes, ACCEPTED + lane, flown)
+        set_lane_value(lanes, FLOWN + lane, flown)
+
+
+@inlined
+def _integrate(lanes, lane, h, rate, later):
+    """Set growth and quartic of the integral of what is at `rate` in a state, `later` in a stage; return its error."""
+    k1 = lane_value(lanes, START + rate + lane)
+    k3, k4 = lane_value(lanes, THIRD + later + lane), lane_value(lanes, FOURTH + later + lane)
+    k5, k6 = lane_value(lanes, FIFTH + later + lane), lane_value(lanes, SIXTH + later + lane)
+    k7 = lane_value(lanes, SEVENTH + later + lane)
+    set_lane_value(lanes, GROWTH + later + lane, solution_row(h, k1, k3, k4, k5, k6))
+    set_lane_value(lanes, QUARTIC + later + lane, quartic_row(h, k1, k3, k4, k5, k6, k7))
+    return error_row(h, k1, k3, k4, k5, k6, k7)
+
+
+@inlined
+def _flag(lanes, sky):
+    """Flag lanes whose step may have met a surface, is the last one, or is stuck."""
+    forces, _, shadow = sky
+    lowest = forces.radius * forces.radius
+    highest = forces.outer_radius * forces.outer_radius
+    edges = shadow.kind != NO_SHADOW
+    for lane in range(WIDTH):
+        x, y, z = _vector(lanes, START + lane)
+        vx, vy, vz = _vector(lanes, START + VELOCITY + lane)
+        end_x, end_y, end_z = _vector(lanes, END + lane)
+        end_vx, end_vy, end_vz = _vector(lanes, END + VELOCITY + lane)
+        r2 = x * x + y * y + z * z
+        end_r2 = end_x * end_x + end_y * end_y + end_z * end_z
+        climb = x * vx + y * vy + z * vz
+        end_climb = end_x * end_vx + end_y * end_vy + end_z * end_vz
+        dips = (climb < 0.0) & (end_climb > 0.0)
+        turns = (climb > 0.0) & (end_climb < 0.0) & (4.0 * max(r2, end_r2) > highest)
+        # The surface that bounds full light or umbra, see `shadow`: passed, or neared and then left.
+        lit = lane_value(lanes, ZONE + lane) == FULL_LIGHT
+        sign = 1.0 if lit else -1.0
+        sine = shadow.penumbra_sine if lit else -shadow.umbra_sine
+        cosine = shadow.penumbra_cosine if lit else shadow.umbra_cosine
+        above, rate = _cone(shadow.radius, sine, cosine, x, y, z, vx, vy, vz)
+        end_above, end_rate = _cone(shadow.radius, sine, cosine, end_x, end_y, end_z, end_vx, end_vy, end_vz)
+        neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
+        edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))
+        other = (end_r2 > highest) | turns | edge
+        met = (end_r2 < lowest) | dips | other
+        accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
+        too_short = not (lane_value(lanes, STEP + lane) > SHORTEST_STEP * lane_value(lanes, TIME + lane))
+        stuck = (lane_value(lanes, TRIALS + lane) >= MOST_TRIALS) | ((not accepted) & too_short)
+        last = lane_value(lanes, LAST + lane) > 0.0
+        flagged = (stuck | (accepted & (met | last))) & (lane_value(lanes, STANDING + lane) == FLYING)
+        lands = accepted & (end_r2 < lowest) & (r2 > ALOFT * lowest) & (not other)
+        set_lane_value(lanes, FLAGGED + lane, (LANDS if lands else DOUBTFUL) if flagged else 0.0)
+
+
+@inlined
+def _cone(radius, sine, cosine, x, y, z, vx, vy, vz):
+    """Return the height [m] over a cone that touches the body, or over its base, and a number with its rate's sign."""
+    rho = math.sqrt(y * y + z * z)
+    cone = fused(rho, cosine, fused(x, sine, -radius))
+    base = fused(-radius, sine, x)
+    rate = fused(y * vy + z * vz, cosine, (vx * sine) * rho)
+    return max(cone, base), rate if cone > base else vx
+
+
+@inlined
+def _squared_error(h, k1, k3, k4, k5, k6, k7):
+    ex = error_row(h, k1[0], k3[0], k4[0], k5[0], k6[0], k7[0])
+    ey = error_row(h, k1[1], k3[1], k4[1], k5[1], k6[1], k7[1])
+    ez = error_row(h, k1[2], k3[2], k4[2], k5[2], k6[2], k7[2])
+    return fused(ex, ex, fused(ey, ey, ez * ez))
