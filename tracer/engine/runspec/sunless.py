@@ -3,7 +3,7 @@
 from collections.abc import Iterator
 
 from tracer.engine.runspec.gas import GasTable
-from tracer.engine.runspec.table import conflict
+from tracer.inputs.table import conflict
 from tracer.units import Quantity
 
 _NO_LIGHT = "needs [sun]; without it there is no light"

@@ -4,9 +4,9 @@ from typing import Literal
 
 from pydantic import Field
 
-from tracer.engine.runspec.number import Fraction
-from tracer.engine.runspec.table import Table
 from tracer.engine.runspec.temperature import TemperatureLaw
+from tracer.inputs.number import Fraction
+from tracer.inputs.table import Table
 
 
 class SurfaceTable(Table):

@@ -4,8 +4,8 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from tracer.engine.runspec.quantity import Temperature
-from tracer.engine.runspec.table import NAMED_LAW, Table
+from tracer.inputs.quantity import Temperature
+from tracer.inputs.table import NAMED_LAW, Table
 
 
 class UniformTemperature(Table):

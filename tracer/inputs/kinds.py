@@ -5,7 +5,7 @@ from typing import Any, Literal, get_args, get_origin
 
 from pydantic.fields import FieldInfo
 
-from tracer.engine.runspec.table import Table
+from tracer.inputs.table import Table
 from tracer.units import quoted
 
 
@@ -38,7 +38,7 @@ def kind(field: FieldInfo) -> str:
 
 
 def example(field: FieldInfo) -> str:
-    """Return a value that the field takes, as the run file shows it; empty where the kind says enough."""
+    """Return a value that the field takes, as the file shows it; empty where the kind says enough."""
     return next((str(item.example()) for item in field.metadata if hasattr(item, "example")), "")
 
 
