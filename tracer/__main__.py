@@ -43,6 +43,11 @@ COMMANDS = (
         "Add up column, brightness and optical depth along lines of sight.",
         "tracer.commands.sightlines",
     ),
+    Entry(
+        "plan",
+        "Plan a spectrometer observation along a path: counts, SNR, keep-outs.",
+        "tracer.commands.plan",
+    ),
     Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
 )
 

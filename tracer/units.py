@@ -43,6 +43,7 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "acceleration": Dimension("acceleration", "m s-2", "0.05 m s-2"),
         "magnetic field": Dimension("magnetic field", "T", "195 nT"),
         "number density": Dimension("number density", "m-3", "50 cm-3"),
+        "area": Dimension("area", "m2", "20 cm2"),
     }
 )
 

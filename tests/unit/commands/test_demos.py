@@ -8,7 +8,8 @@ import pytest
 
 import tracer
 
-DEMOS = sorted((Path(__file__).parents[3] / "runs").glob("*.toml"))
+RUNS = Path(__file__).parents[3] / "runs"
+DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith("-plan"))
 FEWER = (
     "ensemble.particles_per_batch=10",
     "ensemble.batches=3",
