@@ -19,6 +19,8 @@ Floats = NDArray[np.float64]
 KILOMETRE = 1e3
 INERTIAL = "J2000"
 MOST_EXPOSURES = 1_000_000
+CLOCK = 1e-3
+"""Seconds by which the last exposure may begin late: dynamical time, in which steps are taken, is not quite UTC."""
 
 
 class SpiceStates(NamedTuple):
@@ -85,7 +87,7 @@ def _states(spice: Any, plan: PlanSpec, path: SpicePath) -> SpiceStates:
             f'{plan.file}: observer.stop: "{path.stop}" is before start "{path.start}"; must be later'
         )
     step = si(path.step)
-    count = math.floor((stop - start) / step * (1.0 + 1e-12)) + 1
+    count = math.floor((stop - start + CLOCK) / step) + 1
     if count > MOST_EXPOSURES:
         raise InputError(
             f'{plan.file}: observer.step: "{path.step}" makes {count} exposures; at most {MOST_EXPOSURES} are allowed'
