@@ -123,12 +123,12 @@ def test_kernels_give_the_positions_of_the_table_to_a_metre(folder, product):
     normal = list(map(float, TILT.apply([0.0, 0.0, 1.0])))
     frame = f'frame = "inertial"\ninertial_frame = "J2000"\norbit_normal = {normal}'
     by_table = f'law = "table"\nfile = "path.csv"\n{frame}'
-    # LANTERN_AXES are J2000 with its axes renamed: (a, b, c) there is (b, c, a) here.
+    # The columns of the frame kernel are the axes of LANTERN_AXES in J2000: (a, b, c) there is (c, a, b) here.
     tables = [
         plan_observation(
             product, parse_plan(PLAN.format(observer=observer, direction=direction), folder / "plan.toml")
         )
-        for observer, direction in ((KERNELS, [3.0, 1.0, 2.0]), (by_table, [1.0, 2.0, 3.0]))
+        for observer, direction in ((KERNELS, [2.0, 3.0, 1.0]), (by_table, [1.0, 2.0, 3.0]))
     ]
     assert [len(table) for table in tables] == [COUNT, COUNT]
     assert list(tables[0]["time"][[0, -1]]) == ["2031-06-01T00:00:00.000", "2031-06-01T01:00:00.000"]
