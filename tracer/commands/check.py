@@ -80,6 +80,7 @@ def _sun_rows(sun: SunPreview | None) -> list[tuple[str, str]]:
     life = "no photo-loss" if sun.photo_lifetime is None else f"{sun.photo_lifetime:.4g} s in full sunlight"
     anomaly = "" if sun.true_anomaly is None else f"{sun.true_anomaly:.6g} deg"
     return [
+        *([("epoch", sun.epoch)] if sun.epoch is not None else []),
         ("true anomaly", anomaly or "not given: the distance is"),
         ("distance from the Sun", f"{sun.distance / ASTRONOMICAL_UNIT:.6g} au"),
         ("radial velocity", f"{sun.radial_velocity / 1e3:.5g} km/s, positive away from the Sun"),

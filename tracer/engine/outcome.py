@@ -12,8 +12,10 @@ from numpy.typing import NDArray
 from tracer.engine.folding import Folder
 from tracer.engine.planning import Plan
 from tracer.engine.references import scene_references
+from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.writing import run_file_text
 from tracer.engine.scene import Scene
+from tracer.engine.sunlight import true_anomaly
 from tracer.engine.tasks import BatchRange
 from tracer.errors import TracerError
 from tracer.fate import Fate
@@ -157,7 +159,7 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
         "wall_seconds": costs.wall_seconds,
         "workers": costs.workers,
         "body_radius": plan.scene.body.radius,
-        **_sun_attributes(plan.scene, folder),
+        **_sun_attributes(plan.spec, plan.scene, folder),
         **_stop_attributes(plan, folder),
         "complete": 1,
     }
@@ -178,13 +180,15 @@ def _stop_attributes(plan: Plan, folder: Folder) -> dict[str, Any]:
     return {"stop_reached": int(folder.reached), "stop_relative_error": folder.relative_error()}
 
 
-def _sun_attributes(scene: Scene, folder: Folder) -> dict[str, Any]:
+def _sun_attributes(spec: RunSpec, scene: Scene, folder: Folder) -> dict[str, Any]:
     """Return where the body stood in sunlight, and the share of survival time beyond the end of a line's table."""
     if scene.sun is None:
         return {}
     station = scene.sun.station
+    anomaly = true_anomaly(spec)
     tallies = [tally_views(folder.layout, one.mean) for one in folder.statistics]
     return {
+        **({} if anomaly is None else {"true_anomaly": anomaly}),
         "sun_distance": station.distance,
         "sun_radial_velocity": station.radial_velocity,
         "orbital_rate": station.orbital_rate,

@@ -11,9 +11,10 @@ from tracer.engine.launching import draw_launches, ground_velocities
 from tracer.engine.memory import GIGABYTE, available_memory, sizes
 from tracer.engine.notes import scene_notes
 from tracer.engine.planning import make_plan
+from tracer.engine.runspec.moment import moment_text
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
-from tracer.engine.sunlight import Sunlight, lines_without_g
+from tracer.engine.sunlight import Sunlight, lines_without_g, true_anomaly
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
@@ -30,7 +31,6 @@ from tracer.physics.thermal import (
     scale_height,
     surface_gravity,
 )
-from tracer.units import si
 
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
@@ -66,12 +66,13 @@ class ReleasePreview(NamedTuple):
 class SunPreview(NamedTuple):
     """The body in sunlight.
 
-    `true_anomaly` [deg], None where the run file gives the distance; `distance` [m], heliocentric `radial_velocity`
-    and `orbital_rate` [rad s-1] of the body; `radiation_acceleration` [m s-2] of an atom at rest on the body, and its
-    ratio to the surface gravity, None without gravity; `photo_lifetime` [s] of an atom in full sunlight there, None
-    where sunlight destroys none.
+    `epoch` in UTC, None where the run file gives none; `true_anomaly` [deg], None where it gives the distance;
+    `distance` [m], heliocentric `radial_velocity` and `orbital_rate` [rad s-1] of the body; `radiation_acceleration`
+    [m s-2] of an atom at rest on the body, and its ratio to the surface gravity, None without gravity; `photo_lifetime`
+    [s] of an atom in full sunlight there, None where sunlight destroys none.
     """
 
+    epoch: str | None
     true_anomaly: float | None
     distance: float
     radial_velocity: float
@@ -147,9 +148,9 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
     pushing = sun.lines if sun.lines_push else ()
     push = dilution * (sun.push + float(line_acceleration(pushing, scene.mass, sun.station.radial_velocity)))
     gravity = surface_gravity(scene.body.gm, scene.body.radius)
-    anomaly = None if spec.sun is None else spec.sun.true_anomaly
     return SunPreview(
-        true_anomaly=None if anomaly is None else si(anomaly),
+        epoch=None if spec.sun is None or spec.sun.epoch is None else moment_text(spec.sun.epoch),
+        true_anomaly=true_anomaly(spec),
         distance=sun.station.distance,
         radial_velocity=sun.station.radial_velocity,
         orbital_rate=sun.station.orbital_rate,

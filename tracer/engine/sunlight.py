@@ -1,18 +1,22 @@
 """The Sun's part of a scene: where the body stands, what pushes, what shines and what destroys."""
 
 from collections.abc import Iterator
+from datetime import datetime
 from typing import NamedTuple
 
 import numpy as np
 
 from tracer.catalogue.lines import lines_of
+from tracer.catalogue.load import bodies
 from tracer.engine.body_constants import BodyConstants
 from tracer.engine.refusal import refuse
+from tracer.engine.runspec.moment import moment_text
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.spectral_line import GTable, SpectralLineTable
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.two_columns import read_two_columns
 from tracer.errors import InputError
+from tracer.physics.ephemeris import KNOWN, Sighting, sighting
 from tracer.physics.lines import VelocityTable, catalogue_table, constant_table, table_of
 from tracer.physics.orbit import Station, station_at_distance, station_at_true_anomaly
 from tracer.physics.photo_losses import PhotoLoss, photo_loss
@@ -81,6 +85,8 @@ def replaced_lines(spec: RunSpec) -> tuple[str, ...]:
 
 def _station(spec: RunSpec, sun: SunTable, body: BodyConstants) -> Station:
     orbit = body.heliocentric_orbit
+    if sun.epoch is not None:
+        return sighting_at_epoch(spec, sun.epoch).station
     if sun.true_anomaly is not None:
         if orbit is None:
             raise refuse(
@@ -93,6 +99,42 @@ def _station(spec: RunSpec, sun: SunTable, body: BodyConstants) -> Station:
         return station_at_distance(orbit, si(sun.distance), velocity)
     except ValueError as error:
         raise refuse(spec, "sun.distance", sun.distance, str(error)) from None
+
+
+def true_anomaly(spec: RunSpec) -> float | None:
+    """Return where the body stands on its orbit about the Sun [deg], None where the run file gives the distance."""
+    if spec.sun is None:
+        return None
+    if spec.sun.epoch is not None:
+        return sighting_at_epoch(spec, spec.sun.epoch).true_anomaly
+    return None if spec.sun.true_anomaly is None else si(spec.sun.true_anomaly)
+
+
+def sighting_at_epoch(spec: RunSpec, epoch: datetime) -> Sighting:
+    """Return where the ephemeris has the run file's body.
+
+    Raises
+    ------
+    InputError
+        The body is none that the ephemeris knows, or the run file gives it an orbit of its own.
+    """
+    known = [name for name in bodies() if name in KNOWN]
+    if spec.body.name not in known:
+        raise refuse(
+            spec,
+            "sun.epoch",
+            moment_text(epoch),
+            f"the ephemeris knows {' and '.join(known)} of the catalogue, not {spec.body.name}; give "
+            "sun.true_anomaly or sun.distance",
+        )
+    if spec.body.orbit is not None:
+        raise refuse(
+            spec,
+            "sun.epoch",
+            moment_text(epoch),
+            f"is for {spec.body.name} on its own orbit; leave out body.orbit, or give sun.true_anomaly",
+        )
+    return sighting(spec.body.name, epoch)
 
 
 def _lines(spec: RunSpec) -> tuple[VelocityTable, ...]:

@@ -28,7 +28,7 @@ class Gas(NamedTuple):
     """The gas of a product.
 
     `radius` [m] of the body; `sun_distance` [m], None where the product knows none, with `sun_radial_velocity` [m s-1]
-    of the body; `contents` holds the number
+    and `true_anomaly` [deg] of the body; `contents` holds the number
     densities of the `releases`, then the emission rates of the first line by release, of the second, ...;
     `replicate_batches` (G,) says how many batches count into each replicate. `traced_radius` [m]: atoms were followed
     up to there.
@@ -39,6 +39,7 @@ class Gas(NamedTuple):
     radius: float
     sun_distance: float | None
     sun_radial_velocity: float
+    true_anomaly: float | None
     traced_radius: float
     releases: tuple[str, ...]
     lines: tuple[str, ...]
@@ -95,6 +96,7 @@ def gas_of(ds: xr.Dataset, lines: Sequence[str] | None = None, errors: bool = Tr
         radius=radius,
         sun_distance=distance,
         sun_radial_velocity=float(ds.attrs.get("sun_radial_velocity", 0.0)),
+        true_anomaly=float(ds.attrs["true_anomaly"]) if "true_anomaly" in ds.attrs else None,
         traced_radius=max(float(radii[-1]), facts.outer_radius or 0.0),
         releases=tuple(str(name) for name in ds["release_name"].values),
         lines=chosen,

@@ -26,14 +26,13 @@ class RunFacts(NamedTuple):
     """Facts from a run file; what it does not tell is None, empty, or NaN in `doppler_speeds`.
 
     `mass` [kg] of an atom; `doppler_speeds` [m s-1] of the releases by name; `shadow` is the run file's word, None
-    without a Sun; `true_anomaly` [deg], `orbit` about the Sun and `outer_radius` [m] of the traced space.
+    without a Sun; `orbit` about the Sun and `outer_radius` [m] of the traced space.
     """
 
     species: str
     mass: float | None
     doppler_speeds: dict[str, float]
     shadow: str | None
-    true_anomaly: float | None
     orbit: Orbit | None
     outer_radius: float | None
 
@@ -64,7 +63,6 @@ def run_facts(text: str, radius: float, ground_temperature: float | None) -> Run
         mass=mass,
         doppler_speeds=speeds,
         shadow=str(sun.get("shadow", "penumbra")) if sun else None,
-        true_anomaly=_value(sun, "true_anomaly", "angle", radius),
         orbit=orbit,
         outer_radius=hill if outer is None else outer,
     )

@@ -14,7 +14,7 @@ def true_anomalies(gas: Gas, distances: Floats | None, count: int) -> Floats:
     Parameters
     ----------
     gas : Gas
-        Of a product: what its run file says holds for the whole path where the path does not tell the distance.
+        Of a product: its own holds for the whole path where the path does not tell the distance.
     distances : ndarray, shape (count,), optional
         Of the body from the Sun [m], in the order of time: cos f = (a (1 - e^2)/d - 1)/e, outbound where they grow.
 
@@ -24,8 +24,8 @@ def true_anomalies(gas: Gas, distances: Floats | None, count: int) -> Floats:
         In [0, 360); NaN where neither orbit nor true anomaly is known, or the orbit never reaches the distance.
     """
     orbit = gas.facts.orbit
-    if distances is None and gas.facts.true_anomaly is not None:
-        return np.full(count, gas.facts.true_anomaly % 360.0)
+    if distances is None and gas.true_anomaly is not None:
+        return np.full(count, gas.true_anomaly % 360.0)
     if distances is None and gas.sun_distance is not None:
         distances = np.full(count, gas.sun_distance)
     if orbit is None or distances is None or orbit.eccentricity == 0.0:

@@ -1,27 +1,25 @@
 """Products of one scene put together, as one run would have made them; nothing is held but a chunk at a time."""
 
 import hashlib
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from itertools import pairwise
 from typing import Any, NamedTuple
 
 import numpy as np
 import xarray as xr
 from numpy.typing import NDArray
-from xarray.backends import BackendArray
-from xarray.core import indexing
 
 from tracer.errors import InputError
 from tracer.product.assembling import with_label_indexes, without_label_indexes
 from tracer.product.batch_ranges import SeedRange, parse_ranges, ranges_text
 from tracer.product.checksum import data_checksum
 from tracer.product.layout import REPLICATE, REPLICATES, STANDARD_ERROR
+from tracer.product.lazy import Key, lazy_variable
 from tracer.product.provenance import global_attributes
 from tracer.product.run_file import differing_keys, replicates_wanted
 from tracer.product.slabs import slabs
 from tracer.tally.combining import Part, Replicates, batches_of, combined_error, combined_mean, regrouped
 
-Key = tuple[int | slice, ...]
 SUMMED = ("flights", "integration_steps", "kernel_seconds", "wall_seconds")
 BEYOND = "share_beyond_line_tables"
 GROUPS = "replicate_batches"
@@ -156,20 +154,6 @@ def _groups(ds: xr.Dataset) -> tuple[int, ...]:
     return tuple(int(count) for count in np.atleast_1d(ds.attrs.get(GROUPS, ())))
 
 
-class _Computed(BackendArray):
-    """An array whose values are computed when they are read."""
-
-    def __init__(
-        self, shape: tuple[int, ...], dtype: np.dtype[Any], read: Callable[[Key], NDArray[Any]]
-    ) -> None:
-        self.shape = shape
-        self.dtype = dtype
-        self._read = read
-
-    def __getitem__(self, key: indexing.ExplicitIndexer) -> Any:
-        return indexing.explicit_indexing_adapter(key, self.shape, indexing.IndexingSupport.BASIC, self._read)
-
-
 def _merged(
     name: str, stored: Sequence[xr.Dataset], shares: Sequence[Share], parts: list[list[Part]]
 ) -> xr.Variable:
@@ -202,8 +186,7 @@ def _merged(
     else:
         _check_equal(name, variables, shares)
         return first
-    lazy = indexing.LazilyIndexedArray(_Computed(shape, first.dtype, read))
-    return xr.Variable(first.dims, lazy, first.attrs)
+    return lazy_variable(first.dims, shape, first.dtype, read, first.attrs)
 
 
 def _read_replicates(

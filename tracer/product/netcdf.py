@@ -1,5 +1,7 @@
 """A Dataset into a netCDF-4 file, one chunk at a time: what is not in memory stays out of it."""
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
 
@@ -9,9 +11,23 @@ import xarray as xr
 
 from tracer.product.checksum import TEXT_KINDS, ProductDigest
 from tracer.product.layout import BOUNDS
-from tracer.product.slabs import chunk_shape
+from tracer.product.slabs import CHUNK_BYTES, chunk_shape
 
 COMPRESSION = {"zlib": True, "complevel": 1, "shuffle": True}
+
+CACHE_BYTES = 2 * CHUNK_BYTES
+"""What the library may keep of a variable: chunks are passed one after the other, and a file has many variables."""
+
+
+@contextmanager
+def small_caches() -> Iterator[None]:
+    """Let files that are opened meanwhile keep `CACHE_BYTES` of each variable instead of the library's 64 MB."""
+    usual = netCDF4.get_chunk_cache()
+    netCDF4.set_chunk_cache(size=CACHE_BYTES)
+    try:
+        yield
+    finally:
+        netCDF4.set_chunk_cache(*usual)
 
 
 def write_netcdf(ds: xr.Dataset, path: Path) -> str:
@@ -46,7 +62,11 @@ def _define(file: Any, name: str, variable: xr.Variable, ds: xr.Dataset) -> Any:
     text = variable.dtype.kind in TEXT_KINDS
     options: dict[str, Any] = {}
     if not text and variable.ndim:
-        options = {**COMPRESSION, "chunksizes": chunk_shape(variable.shape, variable.dtype.itemsize)}
+        options = {
+            **COMPRESSION,
+            "chunksizes": chunk_shape(variable.shape, variable.dtype.itemsize),
+            "chunk_cache": CACHE_BYTES,
+        }
     bare = name in ds.coords or name.endswith(BOUNDS)
     fill = np.nan if variable.dtype.kind == "f" and not bare else None
     kind = str if text else variable.dtype.newbyteorder("=")

@@ -13,6 +13,7 @@ from tracer.errors import InputError
 from tracer.product.assembling import with_label_indexes
 from tracer.product.inspecting import why_suspicious
 from tracer.product.layout import why_no_product
+from tracer.product.netcdf import small_caches
 from tracer.product.writing import COMPLETE
 
 SIGNATURE = b"\x89HDF\r\n\x1a\n"
@@ -49,7 +50,8 @@ def open_product(path: str | os.PathLike[str]) -> xr.Dataset:
         if reason:
             raise InputError(f"{name}: {reason}")
         # A mean life in seconds stays a number: nothing in a product is a date.
-        ds = xr.open_dataset(Path(path), engine="netcdf4", decode_times=False)
+        with small_caches():
+            ds = xr.open_dataset(Path(path), engine="netcdf4", decode_times=False)
     except (OSError, RuntimeError, ValueError, KeyError, AttributeError) as error:
         raise InputError(
             f"{name}: is damaged or cut short and cannot be read ({_first_line(error)})"

@@ -1,20 +1,30 @@
 """[sun]: where the body stands in sunlight, and what the Sun does."""
 
+from datetime import datetime
 from typing import Any, Literal
 
 from pydantic import Field, model_validator
 
+from tracer.engine.runspec.moment import Epoch, moment_text
 from tracer.inputs.number import Fraction
 from tracer.inputs.quantity import Angle, Length, RadialVelocity
 from tracer.inputs.table import Table, conflict
 from tracer.units import Quantity
+
+PLACES = ("true_anomaly", "epoch", "distance")
+"""The keys of which one says where the body stands."""
 
 
 class SunTable(Table):
     """The Sun; left out there is no light, no tide and no turning frame, and +x still points to it."""
 
     true_anomaly: Angle | None = Field(
-        None, description="Where the body stands on its orbit; either this or `distance` is needed."
+        None, description="Where the body stands on its orbit; one of this, `epoch` and `distance` is needed."
+    )
+    epoch: Epoch | None = Field(
+        None,
+        description="The moment: a planet of the catalogue or the Moon stands where the ephemeris has it, in place of "
+        "`true_anomaly`.",
     )
     distance: Length | None = Field(
         None, description="Distance of the body from the Sun, in place of `true_anomaly`."
@@ -45,18 +55,26 @@ class SunTable(Table):
 
     @model_validator(mode="after")
     def _stands_in_one_place(self) -> "SunTable":
-        if self.true_anomaly is None and self.distance is None:
+        given = [key for key in PLACES if getattr(self, key) is not None]
+        if not given:
             raise conflict(
-                "true_anomaly", 'missing; either this or distance is needed; write for example "60 deg"'
+                "true_anomaly",
+                'missing; one of true_anomaly, epoch and distance is needed; write for example "60 deg"',
             )
-        if self.true_anomaly is not None and self.distance is not None:
+        if len(given) > 1:
+            first, second = given[0], given[1]
+            texts = {key: _text(getattr(self, key)) for key in (first, second)}
             raise conflict(
-                "distance",
-                f'"{self.distance}" stands beside true_anomaly "{self.true_anomaly}"; must be one of the two',
+                second,
+                f'"{texts[second]}" stands beside {first} "{texts[first]}"; must be one of the two',
             )
-        if self.true_anomaly is not None and self.radial_velocity is not None:
+        if self.distance is None and self.radial_velocity is not None:
             raise conflict(
                 "radial_velocity",
-                f'"{self.radial_velocity}" needs distance; with true_anomaly it follows from the orbit',
+                f'"{self.radial_velocity}" needs distance; with {given[0]} it follows from the orbit',
             )
         return self
+
+
+def _text(value: Quantity | datetime) -> str:
+    return moment_text(value) if isinstance(value, datetime) else str(value)

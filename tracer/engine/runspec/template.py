@@ -11,7 +11,8 @@ rotation_period = "60 d"             # sidereal, positive where prograde
 orbit = { semi_major_axis = "0.42 au", eccentricity = 0.18 }
 
 # [sun]                              # light, tide and turning frame; left out: gravity alone
-# true_anomaly = "60 deg"            # on the orbit; or distance = "0.4 au" with radial_velocity = "8 km/s"
+# true_anomaly = "60 deg"            # on the orbit; or epoch = "2031-06-10T00:00:00Z" (Mercury, Moon),
+#                                    # or distance = "0.4 au" with radial_velocity = "8 km/s"
 # tide = true                        # the Sun's tide on the atoms
 # motion = "stationary"              # the body's distance and velocity stay while atoms fly
 # shadow = "penumbra"                # or "cylinder" or "none"

@@ -99,7 +99,10 @@ def test_light_may_be_switched_off_where_there_is_none() -> None:
 @pytest.mark.parametrize(
     ("sun", "message"),
     [
-        ("", 'true_anomaly: missing; either this or distance is needed; write for example "60 deg"'),
+        (
+            "",
+            'true_anomaly: missing; one of true_anomaly, epoch and distance is needed; write for example "60 deg"',
+        ),
         (
             'true_anomaly = "60 deg", distance = "0.4 au"',
             'distance: "0.4 au" stands beside true_anomaly "60 deg"; must be one of the two',
