@@ -54,7 +54,8 @@ def _kind(annotation: Any, metadata: tuple[Any, ...] = ()) -> str:
     if get_origin(annotation) is Literal:
         return " or ".join(quoted(word) for word in arguments)
     if get_origin(annotation) is tuple and not is_list_of_tables(annotation):
-        return f"list of {len(arguments)}, each a {_kind(arguments[0])}"
+        length = "" if arguments[-1] is Ellipsis else f" of {len(arguments)}"
+        return f"list{length}, each a {_kind(arguments[0])}"
     tables = tables_in(annotation)
     if is_list_of_tables(annotation):
         return "list of tables"

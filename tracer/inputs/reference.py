@@ -79,6 +79,8 @@ def _default(field: FieldInfo) -> str:
         return "none"
     if isinstance(default, Table):
         return f"`{default.model_dump()['law']}`" if "law" in type(default).model_fields else "as below"
+    if isinstance(default, tuple):
+        return f"`{list(default)}`"
     return f"`{quoted(default if isinstance(default, int | float) else str(default))}`"
 
 

@@ -2,6 +2,7 @@
 
 import sys
 from collections.abc import Callable
+from itertools import pairwise
 from math import exp, gamma, pi, sqrt
 
 import numpy as np
@@ -43,7 +44,7 @@ def shell_means(density: Callable[[float], float], radii: np.ndarray) -> np.ndar
     """Return means over the shells' volumes."""
     contents = [
         quad(lambda r: density(r) * r * r, low, high, epsabs=0.0, epsrel=1e-11, limit=200)[0]
-        for low, high in zip(radii[:-1], radii[1:], strict=True)
+        for low, high in pairwise(radii)
     ]
     return np.array(contents) / (np.diff(radii**3) / 3.0)
 
