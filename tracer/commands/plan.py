@@ -12,14 +12,14 @@ from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.constants import ASTRONOMICAL_UNIT
-from tracer.observe.gas import Gas, gas_of
+from tracer.observe.gas import Gas, gas_of, without_the_rest
 from tracer.observe.plan import CAUTION, check_lines, lines_of, observation_of
 from tracer.observe.plan_summary import PlanSummary, summarize
 from tracer.observe.planspec.observer import TablePath
 from tracer.observe.planspec.plan import PlanSpec, load_plan
 from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
 from tracer.product.lock import output_lock
-from tracer.product.reading import open_product
+from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
 
 ELSEWHERE = 0.01
@@ -67,8 +67,10 @@ def command(
     if output is not None:
         refuse_inputs(output, [product, plan, *_inputs(spec)])
         ending = check_table_file("--output", output, overwrite)
-    with open_product(product) as ds:
-        check_lines(spec, ds)
+    with open_product(product) as stored:
+        check_lines(spec, stored)
+        ds = without_the_rest(stored)
+        load_all(ds, product)
         with about(product):
             gas = gas_of(ds, lines_of(spec))
     made = observation_of(gas, spec)

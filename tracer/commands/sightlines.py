@@ -9,12 +9,12 @@ from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
-from tracer.observe.gas import gas_of
+from tracer.observe.gas import gas_of, without_the_rest
 from tracer.observe.sightlines import CAUTION, Options, sightlines_of
 from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
 from tracer.observe.tables import read_table
 from tracer.product.lock import output_lock
-from tracer.product.reading import open_product
+from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
 from tracer.units import parse, quoted, si
 
@@ -79,8 +79,11 @@ def command(
         refuse_inputs(output, [product, rays])
         ending = check_table_file("--output", output, overwrite)
     table = read_table(rays)
-    with open_product(product) as ds, about(product):
-        gas = gas_of(ds, line, errors=not no_errors)
+    with open_product(product) as stored:
+        ds = without_the_rest(stored, errors=not no_errors)
+        load_all(ds, product)
+        with about(product):
+            gas = gas_of(ds, line, errors=not no_errors)
     with about(rays):
         made = sightlines_of(gas, table, Options(by_release, speed))
     if output is None:

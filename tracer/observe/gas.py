@@ -112,6 +112,13 @@ def gas_of(ds: xr.Dataset, lines: Sequence[str] | None = None, errors: bool = Tr
     )
 
 
+def without_the_rest(ds: xr.Dataset, errors: bool = True) -> xr.Dataset:
+    """Return a product with only what `gas_of` reads of it, so that nothing else need come into memory."""
+    needed = {DENSITY, EMISSION, "surface_temperature", "cell_area", *(axis + BOUNDS for axis in CELLS)}
+    needed |= {name + REPLICATES for name in (DENSITY, EMISSION)} if errors else set()
+    return ds.drop_vars([name for name in ds.data_vars if str(name) not in needed])
+
+
 def _chosen_lines(wanted: Sequence[str] | None, known: tuple[str, ...]) -> tuple[str, ...]:
     if wanted is None:
         return known
@@ -189,7 +196,7 @@ def _check_replicates(parts: Sequence[tuple[str, xr.Dataset]]) -> None:
             raise InputError(
                 f"there are no {name}{REPLICATES}, at least {LEAST_REPLICATES} of which are needed: errors of lines of "
                 "sight come from replicates alone, since cells of one flight are correlated. Run again with "
-                "ensemble.replicates = 20, or do without errors (--no-errors)"
+                "ensemble.replicates = 20; without errors, tracer sightlines --no-errors does"
             )
 
 

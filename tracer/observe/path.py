@@ -12,7 +12,7 @@ from tracer.observe.planspec.plan import PlanSpec
 from tracer.observe.ray_table import KILOMETRE, LARGEST, OBSERVER, refuse_inside
 from tracer.observe.sights import Floats, dot, length, unit
 from tracer.observe.spice_path import spice_states
-from tracer.observe.tables import check_times, numbers, read_table
+from tracer.observe.tables import check_times, column_values, numbers, read_table
 
 SUN = ("sun_x_km", "sun_y_km", "sun_z_km")
 
@@ -44,7 +44,7 @@ def observer_path(plan: PlanSpec, radius: float) -> ObserverPath:
         states = spice_states(plan, plan.observer)
         to_fixed = sun_fixed_axes(states.suns, states.normals)
         places = _turned(to_fixed, states.observers)
-        refuse_inside(places, radius, "of the path", "the observer")
+        refuse_inside(places, radius, f"positions from the kernels of {plan.file}", "the observer")
         return ObserverPath(states.times, places, to_fixed @ states.from_frame, length(states.suns), None)
     name = str(plan.folder / plan.observer.file)
     table = read_table(name)
@@ -59,7 +59,7 @@ def _from_table(table: Table, given: TablePath, radius: float) -> ObserverPath:
         raise InputError(f"column time: missing; the table has {', '.join(table.colnames)}")
     check_times(table, strictly=True)
     places = _vectors(table, OBSERVER)
-    refuse_inside(places, radius, ", ".join(OBSERVER), "the observer")
+    refuse_inside(places, radius, f"columns {', '.join(OBSERVER)}", "the observer")
     turns, distances = np.broadcast_to(np.eye(3), (len(table), 3, 3)), None
     if given.orbit_normal is not None:
         suns = _vectors(table, SUN)
@@ -69,7 +69,7 @@ def _from_table(table: Table, given: TablePath, radius: float) -> ObserverPath:
             raise InputError(f"row {row + 1}, columns {', '.join(SUN)}: the Sun is inside the body")
         turns = sun_fixed_axes(suns, np.broadcast_to(np.array(given.orbit_normal), suns.shape))
         places = _turned(turns, places)
-    return ObserverPath(np.asarray(table["time"]), places, turns, distances, table)
+    return ObserverPath(column_values(table["time"]), places, turns, distances, table)
 
 
 def sun_fixed_axes(suns: Floats, normals: Floats) -> Floats:

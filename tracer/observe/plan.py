@@ -14,6 +14,7 @@ from tracer.observe.field_light import Light, field_light
 from tracer.observe.gas import Gas, gas_of
 from tracer.observe.limits import limit_flags
 from tracer.observe.path import ObserverPath, observer_path
+from tracer.observe.planspec.observer import TablePath
 from tracer.observe.planspec.plan import PlanSpec
 from tracer.observe.planspec.spectrometer import SpectrometerTable
 from tracer.observe.pointing import Attitude, attitude, field_samples
@@ -73,6 +74,13 @@ def plan_observation(ds: xr.Dataset, plan: PlanSpec) -> Table:
     return observation_of(gas_of(ds, lines_of(plan)), plan)
 
 
+def _path_frame(plan: PlanSpec) -> str:
+    """Return the name of the frame in which the plan gives directions."""
+    if isinstance(plan.observer, TablePath):
+        return plan.observer.inertial_frame or "Sun-fixed"
+    return plan.observer.frame
+
+
 def lines_of(plan: PlanSpec) -> list[str]:
     """Return the names of the lines in the spectrometer's band."""
     return [line.name for line in plan.spectrometer.line]
@@ -97,6 +105,7 @@ def observation_of(gas: Gas, plan: PlanSpec) -> Table:
         "product_title": gas.title,
         "product_scene_hash": gas.scene,
         "frame": "Sun-fixed",
+        "path_frame": _path_frame(plan),
         "caution": CAUTION,
     }
     return table

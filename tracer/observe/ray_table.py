@@ -41,7 +41,7 @@ def sights_of(table: Table, radius: float) -> Sights:
         )
     check_times(table, strictly=False)
     observers = KILOMETRE * np.stack([numbers(table, name, -LARGEST, LARGEST) for name in OBSERVER], axis=1)
-    refuse_inside(observers, radius, ", ".join(OBSERVER), "the observer")
+    refuse_inside(observers, radius, f"columns {', '.join(OBSERVER)}", "the observer")
     if has_columns(table, TANGENT):
         return _through_tangents(table, observers, radius)
     if not has_columns(table, LOOK):
@@ -60,7 +60,7 @@ def refuse_inside(places: Floats, radius: float, columns: str, what: str) -> Non
     if inside.any():
         row = int(np.argmax(inside))
         raise InputError(
-            f"row {row + 1}, columns {columns}: {what} is inside the body, {-height[row] / KILOMETRE:g} km below the "
+            f"row {row + 1}, {columns}: {what} is inside the body, {-height[row] / KILOMETRE:g} km below the "
             f"ground; must be at least {radius / KILOMETRE:g} km from the centre"
         )
 
@@ -82,7 +82,7 @@ def _through_tangents(table: Table, observers: Floats, radius: float) -> Sights:
         f"columns {', '.join(TANGENT)}: the tangent point lies straight below or above the observer, which gives no "
         "direction",
     )
-    refuse_inside(sights.start, radius, ", ".join(TANGENT), "the start of the ray")
+    refuse_inside(sights.start, radius, f"columns {', '.join(TANGENT)}", "the start of the ray")
     return sights
 
 

@@ -25,7 +25,7 @@ def standard_error(replicates: Floats, batches: Floats) -> Floats:
     groups, total = len(batches), float(np.sum(batches))
     if groups < 2:
         return np.full(replicates.shape[:-1], np.nan)
-    # By the largest, whose square fits: columns of cgs size squared would still, sums of replicates in rays might not.
+    # Squares of numbers of any size: relative to the largest they stay within a float's range.
     scale = np.max(np.abs(replicates), axis=-1, keepdims=True)
     scale = np.where(scale > 0.0, scale, 1.0)
     scaled = replicates / scale

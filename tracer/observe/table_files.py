@@ -7,11 +7,10 @@ from pathlib import Path
 from typing import Any
 
 import netCDF4
-import numpy as np
 from astropy.table import Table
-from astropy.time import Time
 
 from tracer.errors import InputError
+from tracer.observe.tables import column_values
 from tracer.product.writing import check_output
 from tracer.units import quoted
 
@@ -60,7 +59,7 @@ def csv_text(table: Table) -> str:
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
     writer.writerow(table.colnames)
-    writer.writerows(zip(*(_plain(table[name]).tolist() for name in table.colnames), strict=True))
+    writer.writerows(zip(*(column_values(table[name]).tolist() for name in table.colnames), strict=True))
     return text.getvalue()
 
 
@@ -73,7 +72,7 @@ def unit_of(name: str) -> str | None:
 
 
 def _ecsv(table: Table) -> str:
-    plain = Table({name: _plain(table[name]) for name in table.colnames}, meta=table.meta)
+    plain = Table({name: column_values(table[name]) for name in table.colnames}, meta=table.meta)
     for name in plain.colnames:
         if plain[name].dtype.kind == "f":
             plain[name].unit = unit_of(name)
@@ -84,22 +83,12 @@ def _ecsv(table: Table) -> str:
     return "\n".join(header) + "\n" + csv_text(table)
 
 
-def _plain(column: Any) -> np.ndarray[Any, Any]:
-    """Return a column as an array of numbers, truth values or texts."""
-    if isinstance(column, Time):
-        return np.asarray(column.isot)
-    if np.ma.isMaskedArray(column):
-        return np.asarray(column.filled(np.nan if column.dtype.kind == "f" else column.fill_value))
-    array = np.asarray(column)
-    return array.astype(str) if array.dtype.kind in "OS" else array
-
-
 def _netcdf(table: Table, row: str) -> bytes:
     file = netCDF4.Dataset("table.nc", "w", format="NETCDF4", memory=1)
     file.createDimension(row, len(table))
     file.setncatts({"Conventions": "CF-1.11", **{key: str(value) for key, value in table.meta.items()}})
     for name in table.colnames:
-        values = _plain(table[name])
+        values = column_values(table[name])
         text = values.dtype.kind == "U"
         kind: Any = str if text else "i1" if values.dtype.kind == "b" else values.dtype
         options: dict[str, Any] = {} if text else {"zlib": True, "complevel": 1, "shuffle": True}

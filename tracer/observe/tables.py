@@ -144,6 +144,16 @@ def times(table: Table) -> Floats:
     return np.asarray((moments - moments[0]).sec, dtype=np.float64)
 
 
+def column_values(column: Any) -> NDArray[Any]:
+    """Return a column as an array of numbers, truth values or texts; times as ISO 8601 writes them."""
+    if isinstance(column, Time):
+        return np.asarray(column.isot)
+    if np.ma.isMaskedArray(column):
+        return np.asarray(column.filled(np.nan if column.dtype.kind == "f" else column.fill_value))
+    array = np.asarray(column)
+    return array.astype(str) if array.dtype.kind in "OS" else array
+
+
 def _moment(text: str | list[str]) -> Any:
     # Without leap seconds: which years will have them is not known, and only the order counts here.
     return Time(text, scale="tt")

@@ -37,6 +37,14 @@ def test_demo_closes_its_budget(products, demo):
         assert (ds.ledger.sel(fate="unresolved") == 0.0).all()
 
 
+def test_lantern_plans_its_observation_of_harrow(products):
+    with tracer.open_product(products["harrow-sodium-perihelion"]) as ds:
+        table = tracer.plan_observation(ds, tracer.load_plan(RUNS / "lantern-plan.toml"))
+    assert len(table) == 91
+    assert (table["snr"] > 0.0).all()
+    assert 0 < table["do_not_command"].sum() < 10
+
+
 @pytest.mark.parametrize("demo", [demo.stem for demo in DEMOS])
 def test_demo_product_follows_the_cf_conventions(products, demo):
     checker = [

@@ -175,6 +175,25 @@ def test_bad_table_ends_with_2_row_and_column(folder, capsys, old, new, message)
     assert not (folder / "out.csv").exists()
 
 
+def test_damaged_product_is_one_message(folder, capsys):
+    content = bytearray((folder / "small.nc").read_bytes())
+    content[len(content) // 3 : len(content) // 3 * 2] = bytes(len(content) // 3)
+    (folder / "small.nc").write_bytes(content)
+    assert ending_of("small.nc", "rays.csv") == 2
+    assert capsys.readouterr().err.startswith("tracer: small.nc: is damaged")
+
+
+@pytest.mark.parametrize(
+    "text", ["", "a,b\n", "\x00\x01", "observer_x_km,look_x\n1,2,3\n", "a\n1\n", '"\n', ",\n,\n"]
+)
+def test_what_is_no_table_of_rays_ends_with_2(folder, capsys, text):
+    (folder / "rays.csv").write_text(text, encoding="utf-8")
+    assert ending_of("small.nc", "rays.csv") == 2
+    error = capsys.readouterr().err
+    assert error.startswith("tracer: rays.csv: ")
+    assert error.count("\n") == 1
+
+
 def test_existing_table_is_kept(folder, capsys):
     (folder / "out.csv").write_text("precious", encoding="utf-8")
     assert ending_of("small.nc", "rays.csv", "-o", "out.csv") == 2

@@ -167,6 +167,7 @@ def test_inertial_path_gives_what_the_sun_fixed_one_gives(planned, tmp_path):
     table = planned(text, "\n".join([head, *rows]))
     expected = planned(PLAN.replace(LIMB, FIXED))
     np.testing.assert_allclose(vectors(table, "observer"), vectors(expected, "observer"), atol=1e-6)
+    assert (table.meta["path_frame"], expected.meta["path_frame"]) == ("ICRF", "Sun-fixed")
     for name in ("column_m2", "snr", "sun_angle_deg", "phase_angle_deg", "sun_distance_au"):
         np.testing.assert_allclose(table[name], expected[name], rtol=1e-9)
 

@@ -98,6 +98,12 @@ def test_umbra_without_a_known_distance_is_a_cylinder(filled):
     assert table["column_lit_m2"][0] == pytest.approx(1e8 * (chord - 2.0 * RADIUS), rel=1e-12)
 
 
+def test_single_cell_is_a_grid_too(filled):
+    ds = filled(make_grid(RADIUS, 1e5, 4e6, 1, 1, 1), np.full((1, 1, 1, 1), 1e8))
+    table = sightlines(ds, one_ray((9e3, 0.0, 3e3), **look(-1.0, 0.0, 0.0)))
+    assert table["column_m2"][0] == pytest.approx(2e8 * np.sqrt(6e6**2 - 3e6**2), rel=1e-12)
+
+
 def test_share_outside_is_that_of_the_path_through_traced_space(filled):
     run_file = '[domain]\nouter_radius = "10 radii"\n'
     ds = filled(GRID, np.full((1, 6, 4, 6), 1e8), run_file=run_file)
