@@ -60,8 +60,12 @@ def command(
 ) -> None:
     """Say what a spectrometer would count of a product's gas along its path, exposure by exposure.
 
-    A planning aid: flight rules and the instrument team's limits come first. Rows inside the plan's keep-outs of Sun
-    or body are marked do_not_command and must not be commanded. snr_standard_error is that of the Monte Carlo alone.
+    Each row is judged at the beginning of its exposure; snr_standard_error is
+    that of the Monte Carlo alone.
+
+    A planning aid: flight rules and the instrument team's limits come first.
+    Rows inside the plan's keep-outs of Sun or body are marked do_not_command
+    and must not be commanded.
     """
     spec = load_plan(plan)
     if output is not None:

@@ -69,10 +69,15 @@ def command(
 ) -> None:
     """Add up column density, brightness and optical depth along lines of sight through a product.
 
-    column_lit_m2 is the part outside the body's umbra. Outside the product's grid no gas is counted: outside_share is
-    the part of the path through the traced space (up to the run's outer radius) that lies there. thick marks an
-    optical depth above 0.3, where brightness is too high: light is scattered once only. Flight rules and the
-    instrument team's limits come first.
+    column_lit_m2 is the part outside the body's umbra.
+
+    Outside the product's grid no gas is counted; outside_share is the part of
+    the path through the traced space (up to the run's outer radius) out there.
+
+    thick marks an optical depth above 0.3: light is scattered once only, so
+    that true brightness is lower.
+
+    A planning aid: flight rules and the instrument team's limits come first.
     """
     speed = _speed(doppler_speed)
     if output is not None:

@@ -23,8 +23,8 @@ Floats = NDArray[np.float64]
 Columns = dict[str, NDArray[Any]]
 
 CAUTION = (
-    "A planning aid: flight rules, keep-out angles and the instrument team's limits come first. Number density, light "
-    "and errors are the product's; outside its grid no gas is counted."
+    "A planning aid: flight rules, keep-out angles and the instrument team's limits come first. Outside the product's "
+    "grid no gas is counted."
 )
 _NOT_IN_A_NAME = re.compile(r"[^A-Za-z0-9_]")
 

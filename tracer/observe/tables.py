@@ -1,5 +1,6 @@
 """Tables that a user hands in: CSV or ECSV files, columns checked, rows counted from 1."""
 
+import csv
 import math
 import os
 from collections.abc import Sequence
@@ -25,7 +26,7 @@ UNITS = {"_km": "km", "_deg": "deg", "_h": "h", "_s": "s", "_m": "m"}
 
 
 def read_table(path: str | os.PathLike[str]) -> Table:
-    """Read a CSV or ECSV file with at least one row.
+    """Read a CSV or ECSV file with at least one row; lines of a CSV file that begin with `#` are comments.
 
     Raises
     ------
@@ -45,17 +46,31 @@ def read_table(path: str | os.PathLike[str]) -> Table:
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(f"{name}: cannot be read: {reason}") from None
-    try:
-        # A single column has no delimiter that could be guessed, and a comma is what the ending promises.
-        table = Table.read(
-            text.splitlines(), format=form, **({"guess": False} if form == "ascii.csv" else {})
-        )
-    except Exception as error:
-        reason = " ".join(str(error).split())[:200] or type(error).__name__
-        raise InputError(f"{name}: is not a table of columns: {reason}") from None
+    table = _parsed(text.splitlines(), form, name)
     if not len(table):
         raise InputError(f"{name}: has no rows")
     return table
+
+
+def _parsed(lines: list[str], form: str, name: str) -> Table:
+    options = {}
+    if form == FORMATS[".csv"]:
+        lines = [line for line in lines if not line.startswith("#")]
+        _refuse_repeated_columns(lines, name)
+        # A single column has no delimiter that could be guessed, and a comma is what the ending promises.
+        options = {"guess": False}
+    try:
+        return Table.read(lines, format=form, **options)
+    except Exception as error:
+        reason = " ".join(str(error).split())[:200] or type(error).__name__
+        raise InputError(f"{name}: is not a table of columns: {reason}") from None
+
+
+def _refuse_repeated_columns(lines: list[str], name: str) -> None:
+    heads = [head.strip() for head in next(csv.reader(lines[:1]), [])]
+    twice = next((head for head in heads if heads.count(head) > 1), None)
+    if twice is not None:
+        raise InputError(f"{name}: column {twice or quoted(twice)}: stands there twice")
 
 
 def has_columns(table: Table, names: Sequence[str]) -> bool:

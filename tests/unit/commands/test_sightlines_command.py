@@ -175,6 +175,16 @@ def test_bad_table_ends_with_2_row_and_column(folder, capsys, old, new, message)
     assert not (folder / "out.csv").exists()
 
 
+def test_columns_that_stand_there_twice_are_refused_and_comments_are_not(folder, capsys):
+    twice = RAYS.replace(",what", ",look_x").replace("over the pole", "1").replace("from dusk", "2")
+    (folder / "rays.csv").write_text(twice.replace("to the Sun", "3"), encoding="utf-8")
+    assert ending_of("small.nc", "rays.csv") == 2
+    assert capsys.readouterr().err == "tracer: rays.csv: column look_x: stands there twice\n"
+    (folder / "rays.csv").write_text("# seen by nobody\n" + RAYS.replace(",", ", "), encoding="utf-8")
+    assert ending_of("small.nc", "rays.csv") == 0
+    assert len(capsys.readouterr().out.splitlines()) == 4
+
+
 def test_damaged_product_is_one_message(folder, capsys):
     content = bytearray((folder / "small.nc").read_bytes())
     content[len(content) // 3 : len(content) // 3 * 2] = bytes(len(content) // 3)
