@@ -18,9 +18,11 @@ from tracer.observe.plan_summary import PlanSummary, summarize
 from tracer.observe.planspec.observer import TablePath
 from tracer.observe.planspec.plan import PlanSpec, load_plan
 from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
+from tracer.observe.tables import times
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
+from tracer.units import si
 
 ELSEWHERE = 0.01
 """Relative difference of distances from the Sun that is worth a word."""
@@ -85,7 +87,7 @@ def command(
         with output_lock(output):
             save_bytes(table_bytes(made, ending, "exposure"), output, overwrite)
     counts = _counts(summary, spec.spectrometer.wanted_snr)
-    for line in (*counts, *_windows(made, summary), *_notes(gas, made), CAUTION):
+    for line in (*counts, *_windows(made, summary), *_notes(spec, gas, made), CAUTION):
         typer.echo(line, err=output is None)
     if output is not None:
         typer.echo(output)
@@ -124,7 +126,10 @@ def _windows(made: Table, summary: PlanSummary) -> Iterator[str]:
         )
 
 
-def _notes(gas: Gas, made: Table) -> Iterator[str]:
+def _notes(spec: PlanSpec, gas: Gas, made: Table) -> Iterator[str]:
+    exposure, steps = si(spec.spectrometer.exposure), np.diff(times(made))
+    if steps.size and steps.min() < exposure:
+        yield f"exposures of {exposure:g} s overlap: rows are as little as {steps.min():g} s apart"
     if gas.sun_distance is None:
         return
     product, path = gas.sun_distance / ASTRONOMICAL_UNIT, made["sun_distance_au"]

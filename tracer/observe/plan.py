@@ -31,6 +31,7 @@ from tracer.observe.signal import count_rate, exposure_for, signal_to_noise, sig
 from tracer.observe.spread import standard_error
 from tracer.observe.tables import numbers, read_table
 from tracer.observe.true_anomaly import true_anomalies
+from tracer.product.provenance import DISTRIBUTION, package_version
 from tracer.units import si
 
 Columns = dict[str, NDArray[Any]]
@@ -102,6 +103,7 @@ def observation_of(gas: Gas, plan: PlanSpec) -> Table:
     table = Table(made)
     table.meta = {
         "title": plan.title,
+        "source": f"{DISTRIBUTION} {package_version()}",
         "product_title": gas.title,
         "product_scene_hash": gas.scene,
         "frame": "Sun-fixed",

@@ -17,6 +17,7 @@ from tracer.observe.optical_depth import THICK, optical_depth
 from tracer.observe.ray_table import KILOMETRE, sights_of
 from tracer.observe.sights import Geometry, Sights, geometry, share_outside
 from tracer.observe.spread import standard_error
+from tracer.product.provenance import DISTRIBUTION, package_version
 from tracer.units import quoted
 
 Floats = NDArray[np.float64]
@@ -200,6 +201,7 @@ def _joined(table: Table, made: Columns, gas: Gas) -> Table:
             joined[name] = values
     joined.meta = {
         **table.meta,
+        "source": f"{DISTRIBUTION} {package_version()}",
         "product_title": gas.title,
         "product_scene_hash": gas.scene,
         "frame": "Sun-fixed",

@@ -115,7 +115,7 @@ def vectors(table: Table, names: Sequence[str]) -> Floats:
 def check_times(table: Table, strictly: bool) -> None:
     """Refuse a column `time` that does not rise, or that rises not `strictly`; without one nothing is checked.
 
-    Times are numbers, or dates as ISO 8601 writes them.
+    Times are numbers of seconds, or dates as ISO 8601 writes them.
 
     Raises
     ------

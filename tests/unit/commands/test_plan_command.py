@@ -94,6 +94,23 @@ def test_existing_table_is_kept(folder, capsys):
     assert (folder / "out.csv").read_text(encoding="utf-8") == "precious"
 
 
+def test_netcdf_table_follows_the_cf_conventions(folder):
+    assert ending_of("small.nc", "lantern-plan.toml", "-o", "out.nc") == 0
+    checker = str(Path(sys.executable).with_name("compliance-checker"))
+    done = subprocess.run(
+        [checker, "--test=cf:1.11", "--criteria", "lenient", "out.nc"], capture_output=True, text=True
+    )
+    assert done.returncode == 0, done.stdout
+    assert "All tests passed!" in done.stdout
+
+
+def test_overlapping_exposures_get_a_word(folder, capsys):
+    text = (folder / "lantern-plan.toml").read_text(encoding="utf-8")
+    (folder / "lantern-plan.toml").write_text(text.replace('"2 s"', '"5 min"'), encoding="utf-8")
+    assert ending_of("small.nc", "lantern-plan.toml", "-o", "out.csv") == 0
+    assert "exposures of 300 s overlap: rows are as little as 240 s apart" in capsys.readouterr().out
+
+
 def test_product_far_from_where_the_path_is_gets_a_word(folder, capsys):
     lines = (folder / "lantern-path.csv").read_text(encoding="utf-8").splitlines()
     rows = [lines[0] + ",sun_x_km,sun_y_km,sun_z_km", *(line + ",6e7,0,0" for line in lines[1:])]

@@ -15,7 +15,7 @@ class TablePath(Table):
 
     law: Literal["table"] = "table"
     file: FilePath = Field(
-        description="The table; `time` is a number or a date, and rises. One exposure begins at each row."
+        description="The table; `time` is a number of seconds or a date, and rises. One exposure begins at each row."
     )
     frame: Literal["sun-fixed", "inertial"] = Field(
         "sun-fixed",
