@@ -94,9 +94,9 @@ def _states(spice: Any, plan: PlanSpec, path: SpicePath) -> SpiceStates:
         )
     seconds = start + step * np.arange(count)
     bodies: dict[str, Floats] = {}
-    for target, origin in ((path.observer, path.body), (path.body, path.sun)):
+    for target, origin in ((path.observer, path.target), (path.target, path.sun)):
         bodies[target] = np.array([spice.spkezr(target, et, INERTIAL, "NONE", origin)[0] for et in seconds])
-    from_sun = bodies[path.body]
+    from_sun = bodies[path.target]
     return SpiceStates(
         times=np.array([spice.et2utc(et, "ISOC", 3) for et in seconds]),
         observers=KILOMETRE * bodies[path.observer][:, :3],

@@ -26,7 +26,7 @@ throughput = 0.1
 SPICE = """law = "spice"
 kernels = ["a.bsp"]
 observer = "LANTERN"
-body = "HARROW"
+target = "HARROW"
 start = "2031-06-01"
 stop = "2031-06-02"
 step = "60 s"

@@ -62,7 +62,7 @@ throughput = 0.1
 KERNELS = """law = "spice"
 kernels = ["leapseconds.tls", "frames.tf", "lantern.bsp"]
 observer = "LANTERN"
-body = "HARROW"
+target = "HARROW"
 frame = "LANTERN_AXES"
 start = "2031-06-01T00:00:00"
 stop = "2031-06-01T01:00:00"

@@ -52,7 +52,7 @@ class SpicePath(Table):
         description="Kernel files: an SPK with observer, body and Sun, a leapseconds kernel, frames as needed."
     )
     observer: Line = Field(description="Name or number of the observer in the kernels.")
-    body: Line = Field(description="Name or number of the body in the kernels.")
+    target: Line = Field(description="Name or number of the body in the kernels, the one of the product.")
     sun: Line = Field("SUN", description="Name or number of the Sun in the kernels.")
     frame: Line = Field(
         "J2000", description="Frame of the directions in `[pointing]`, by its name in the kernels."
