@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from tracer.errors import InputError
 from tracer.observe.sightlines import sightlines
 from tracer.tally.axes import make_grid
 
@@ -91,6 +92,13 @@ def test_error_is_the_scatter_of_the_replicates_along_the_ray(filled):
         centre = (values * batches).sum() / 6.0
         error = np.sqrt((batches * (values - centre) ** 2).sum() / (4.0 * 6.0)) * CHORD
         assert table[f"column_standard_error_m2{ending}"][0] == pytest.approx(error, rel=1e-5)
+
+
+def test_lines_whose_columns_would_have_one_name_are_refused(filled):
+    emission = np.ones((2, 1, *SHAPE))
+    ds = filled(GRID, np.ones((1, *SHAPE)), emission, lines=("na d2", "na-d2"))
+    with pytest.raises(InputError, match='line "na-d2" and line "na d2" would have the same columns, _na_d2'):
+        sightlines(ds, RAYS)
 
 
 def test_releases_add_up(filled):

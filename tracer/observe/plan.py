@@ -19,7 +19,7 @@ from tracer.observe.planspec.plan import PlanSpec
 from tracer.observe.planspec.spectrometer import SpectrometerTable
 from tracer.observe.pointing import Attitude, attitude, field_samples
 from tracer.observe.ray_table import KILOMETRE
-from tracer.observe.sightlines import geometry_columns, line_label
+from tracer.observe.sightlines import column_labels, geometry_columns
 from tracer.observe.sights import (
     Floats,
     Sights,
@@ -165,12 +165,11 @@ def _counts(plan: PlanSpec, gas: Gas, path: ObserverPath, stand: Attitude, light
     solid_angle = float(field_samples(instrument.field_of_view).solid_angles.sum())
     throughput = {line.name: line.throughput for line in instrument.line}
     signal, replicates = np.zeros(len(path.places)), np.zeros(light.column_replicates.shape)
-    for i, name in enumerate(gas.lines):
-        label = line_label(name)
+    for label, i in column_labels(gas.lines, "line").items():
         columns[f"brightness_{label}_rayleigh"] = light.brightness[:, i]
         error = standard_error(light.brightness_replicates[:, i], batches)
         columns[f"brightness_{label}_standard_error_rayleigh"] = error
-        chain = (si(instrument.collecting_area), solid_angle, throughput[name])
+        chain = (si(instrument.collecting_area), solid_angle, throughput[gas.lines[i]])
         signal += count_rate(light.brightness[:, i], *chain)
         replicates += count_rate(light.brightness_replicates[:, i], *chain)
     other = _other_rate(plan, angle_between(stand.look, _suns(gas, path)))

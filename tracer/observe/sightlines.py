@@ -118,8 +118,8 @@ def geometry_columns(gas: Gas, sights: Sights) -> Columns:
 
 def light_columns(gas: Gas, sights: Sights, options: Options) -> Columns:
     """Return the columns of gas and light of the sights, in the units of their names."""
-    labels = _labels(gas.releases, "release") if options.by_release else {}
-    line_labels = _labels(gas.lines, "line")
+    labels = column_labels(gas.releases, "release") if options.by_release else {}
+    line_labels = column_labels(gas.lines, "line")
     made: Columns = {}
     for place, some in blocks(sights):
         for name, values in _block(gas, some, options, labels, line_labels).items():
@@ -168,8 +168,14 @@ def _block(
     return made
 
 
-def _labels(names: Sequence[str], what: str) -> dict[str, int]:
-    """Return the numbers of `names` by what stands for them in the names of columns."""
+def column_labels(names: Sequence[str], what: str) -> dict[str, int]:
+    """Return the numbers of `names` by what stands for them in the names of columns; `what` they are, for messages.
+
+    Raises
+    ------
+    InputError
+        Two names that become the same.
+    """
     labels: dict[str, int] = {}
     for number, name in enumerate(names):
         label = _NOT_IN_A_NAME.sub("_", name)
@@ -180,11 +186,6 @@ def _labels(names: Sequence[str], what: str) -> dict[str, int]:
             )
         labels[label] = number
     return labels
-
-
-def line_label(name: str) -> str:
-    """Return what stands for a line in the names of columns."""
-    return _NOT_IN_A_NAME.sub("_", name)
 
 
 def _joined(table: Table, made: Columns, gas: Gas) -> Table:

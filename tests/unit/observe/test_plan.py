@@ -229,6 +229,24 @@ def test_other_counts_are_dark_background_and_scattered_sunlight(planned, tmp_pa
     np.testing.assert_array_equal(table["saturated"], table["counts"] + table["other_counts"] > 4000.0)
 
 
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        ("sun_angle_deg,rate_per_s\n10,5\n10,4\n", "stray.csv: row 2, column sun_angle_deg: 10 is not above"),
+        ("sun_angle_deg,rate_per_s\n10,-5\n", "stray.csv: row 1, column rate_per_s: -5 is not allowed"),
+        (
+            "sun_angle_deg,rate\n10,5\n",
+            "stray.csv: column rate_per_s: missing; the table has sun_angle_deg, rate",
+        ),
+    ],
+)
+def test_bad_tables_of_scattered_sunlight_are_refused(planned, tmp_path, text, message):
+    (tmp_path / "stray.csv").write_text(text, encoding="utf-8")
+    with pytest.raises(InputError) as refused:
+        planned(PLAN.replace("sun_keep_out", 'scattered_sunlight = { file = "stray.csv" }\nsun_keep_out'))
+    assert message in str(refused.value)
+
+
 def test_true_anomaly_is_that_of_the_distance_on_the_way_in(planned):
     table = planned()
     p = 0.42 * (1.0 - 0.18**2)
