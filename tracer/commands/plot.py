@@ -110,9 +110,11 @@ def command(
             raise InputError(f"{product}: {error}") from None
         save_bytes(figure_bytes(figure, ending, dpi), output, overwrite)
     typer.echo(output)
-    # A budget is the last thing to look at; before it, it is the likely next.
+    # A budget is the last thing to look at; before it, it is the likely next, and after an image its lines of sight.
     if what is What.LEDGER:
         name_next("summary", product)
+    elif what is What.IMAGE:
+        name_next("sightlines", product, "RAYS.csv")
     else:
         name_next("plot", product, "--what", What.LEDGER, "-o", "ledger.png")
 

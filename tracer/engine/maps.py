@@ -10,10 +10,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tracer.engine.refusal import refuse
-from tracer.engine.runspec.interval import Interval
-from tracer.engine.runspec.number import MOST_CELLS
 from tracer.engine.runspec.run import RunSpec
 from tracer.errors import InputError
+from tracer.inputs.interval import Interval
+from tracer.inputs.number import MOST_CELLS
 from tracer.kernels.surface_map import SurfaceMap
 from tracer.units import conversion_factor, quoted
 

@@ -6,14 +6,12 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.constants import RAYLEIGH
 from tracer.kernels.scoring import Tally
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_solid_angle, cell_volume
 from tracer.tally.buffer import plane_shape, plane_size
 
 Floats = NDArray[np.float64]
-
-RAYLEIGH = 1e10
-"""Photons m-2 s-1 in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""
 
 
 class ProductField(NamedTuple):

@@ -8,7 +8,8 @@ import pytest
 
 import tracer
 
-DEMOS = sorted((Path(__file__).parents[3] / "runs").glob("*.toml"))
+RUNS = Path(__file__).parents[3] / "runs"
+DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith("-plan"))
 FEWER = (
     "ensemble.particles_per_batch=10",
     "ensemble.batches=3",
@@ -35,6 +36,14 @@ def test_demo_closes_its_budget(products, demo):
         released = (ds.release_flux * ds.cell_area).sum(("latitude", "local_time"))
         assert (abs((ds.ledger.sum("fate") - ds.roulette_balance) / released - 1.0) < 1e-9).all()
         assert (ds.ledger.sel(fate="unresolved") == 0.0).all()
+
+
+def test_lantern_plans_its_observation_of_harrow(products):
+    with tracer.open_product(products["harrow-sodium-perihelion"]) as ds:
+        table = tracer.plan_observation(ds, tracer.load_plan(RUNS / "lantern-plan.toml"))
+    assert len(table) == 91
+    assert (table["snr"] > 0.0).all()
+    assert 0 < table["do_not_command"].sum() < 10
 
 
 @pytest.mark.parametrize("demo", [demo.stem for demo in DEMOS])

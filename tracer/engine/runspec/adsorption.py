@@ -2,10 +2,10 @@
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.quantity import Area, Energy, Frequency, PhotonFlux, PolarAngle
 from tracer.engine.runspec.speed import SpeedLaw
-from tracer.engine.runspec.table import Table, conflict
-from tracer.engine.runspec.text import FilePath, Line
+from tracer.inputs.quantity import Area, Energy, Frequency, PhotonFlux, PolarAngle
+from tracer.inputs.table import Table, conflict
+from tracer.inputs.text import FilePath, Line
 
 
 class PhotonDesorptionTable(Table):

@@ -4,9 +4,9 @@ from typing import Literal
 
 from pydantic import Field
 
-from tracer.engine.runspec.number import Count, CountOrNone, SeveralOf
 from tracer.engine.runspec.stop import StopTable
-from tracer.engine.runspec.table import Table
+from tracer.inputs.number import Count, CountOrNone, SeveralOf
+from tracer.inputs.table import Table
 
 
 class EnsembleTable(Table):

@@ -4,12 +4,12 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import Exponent, LocalTime
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.quantity import Latitude, LengthOrRadii
 from tracer.engine.runspec.sky import PlaceDirection
-from tracer.engine.runspec.table import NAMED_LAW, Table, conflict
-from tracer.engine.runspec.text import FilePath, Line
+from tracer.inputs.number import Exponent, LocalTime
+from tracer.inputs.quantity import Latitude, LengthOrRadii
+from tracer.inputs.table import NAMED_LAW, Table, conflict
+from tracer.inputs.text import FilePath, Line
 
 
 class Uniform(Table):

@@ -20,8 +20,8 @@ from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.runspec.sunless import dead_without_sun, unheated_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
-from tracer.engine.runspec.table import Table, conflict
-from tracer.engine.runspec.text import Line
+from tracer.inputs.table import Table, conflict
+from tracer.inputs.text import Line
 
 _COMPANIONS = ("", "_standard_error", "_replicates")
 """Endings of the variables that the product keeps for each image."""

@@ -6,10 +6,10 @@ from typing import Annotated, Any, Literal
 from pydantic import Field, GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from tracer.engine.runspec.interval import Interval
-from tracer.engine.runspec.number import Fraction, Real
-from tracer.engine.runspec.quantity import Temperature
-from tracer.engine.runspec.table import Table
+from tracer.inputs.interval import Interval
+from tracer.inputs.number import Fraction, Real
+from tracer.inputs.quantity import Temperature
+from tracer.inputs.table import Table
 from tracer.units import quoted
 
 

@@ -4,8 +4,8 @@ from collections.abc import Iterator
 
 from tracer.engine.runspec.gas import GasTable
 from tracer.engine.runspec.surface import SurfaceTable
-from tracer.engine.runspec.table import conflict
 from tracer.engine.runspec.temperature import Conduction, EquilibriumTemperature
+from tracer.inputs.table import conflict
 from tracer.units import Quantity
 
 _NO_LIGHT = "needs [sun]; without it there is no light"

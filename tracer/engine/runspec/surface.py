@@ -5,10 +5,10 @@ from typing import Literal
 from pydantic import Field, model_validator
 
 from tracer.engine.runspec.adsorption import ColdTrapsTable, DesorptionTable
-from tracer.engine.runspec.number import Fraction
 from tracer.engine.runspec.sticking import StickingLaw
-from tracer.engine.runspec.table import Table, conflict
 from tracer.engine.runspec.temperature import TemperatureLaw
+from tracer.inputs.number import Fraction
+from tracer.inputs.table import Table, conflict
 
 
 class SurfaceTable(Table):

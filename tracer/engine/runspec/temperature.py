@@ -4,8 +4,8 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import Albedo, Emissivity, Fraction
-from tracer.engine.runspec.quantity import (
+from tracer.inputs.number import Albedo, Emissivity, Fraction
+from tracer.inputs.quantity import (
     Conductivity,
     HeatCapacity,
     Length,
@@ -13,8 +13,8 @@ from tracer.engine.runspec.quantity import (
     Temperature,
     ThermalInertia,
 )
-from tracer.engine.runspec.table import NAMED_LAW, Table, conflict
-from tracer.engine.runspec.text import FilePath, Line
+from tracer.inputs.table import NAMED_LAW, Table, conflict
+from tracer.inputs.text import FilePath, Line
 
 
 class UniformTemperature(Table):

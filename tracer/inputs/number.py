@@ -7,7 +7,7 @@ from typing import Annotated, Any
 from pydantic import GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from tracer.engine.runspec.interval import EVERYTHING, Interval
+from tracer.inputs.interval import EVERYTHING, Interval
 from tracer.units import quoted
 
 LARGEST_INTEGER = 2**63 - 1

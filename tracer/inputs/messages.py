@@ -9,8 +9,8 @@ from pydantic import ValidationError
 from pydantic.fields import FieldInfo
 from pydantic_core import ErrorDetails
 
-from tracer.engine.runspec.kinds import example, kind, law_name, tables_in
-from tracer.engine.runspec.table import Table
+from tracer.inputs.kinds import example, kind, law_name, tables_in
+from tracer.inputs.table import Table
 from tracer.units import quoted
 
 _BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
@@ -20,7 +20,7 @@ _UNKNOWN, _OTHER, _MISSING = range(3)
 
 
 class Place(NamedTuple):
-    """Where in the run file an error lies."""
+    """Where in the file an error lies."""
 
     key: str
     """Path as the user would write it, lists counted from 1."""

@@ -1,4 +1,4 @@
-"""What all tables of the run file have in common, and how a law is told by its name."""
+"""What all tables of an input file have in common, and how a law is told by its name."""
 
 from typing import Any
 

@@ -6,7 +6,7 @@ from typing import Annotated, Any, Literal
 from pydantic import GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from tracer.engine.runspec.interval import EVERYTHING, Interval
+from tracer.inputs.interval import EVERYTHING, Interval
 from tracer.units import DIMENSIONS, RADII, Quantity, parse, quoted, si
 
 
@@ -46,7 +46,7 @@ class Measured:
         return f"quantity of {wanted.word}{radii} {self.range_words()}".rstrip() + self._or_words()
 
     def example(self) -> str:
-        """A value of the dimension, as the run file shows it."""
+        """A value of the dimension, as the file shows it."""
         return quoted(DIMENSIONS[self.dimension].example)
 
     def range_words(self) -> str:

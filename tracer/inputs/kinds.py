@@ -5,7 +5,7 @@ from typing import Any, Literal, get_args, get_origin
 
 from pydantic.fields import FieldInfo
 
-from tracer.engine.runspec.table import Table
+from tracer.inputs.table import Table
 from tracer.units import quoted
 
 
@@ -38,7 +38,7 @@ def kind(field: FieldInfo) -> str:
 
 
 def example(field: FieldInfo) -> str:
-    """Return a value that the field takes, as the run file shows it; empty where the kind says enough."""
+    """Return a value that the field takes, as the file shows it; empty where the kind says enough."""
     return next((str(item.example()) for item in field.metadata if hasattr(item, "example")), "")
 
 
@@ -54,7 +54,8 @@ def _kind(annotation: Any, metadata: tuple[Any, ...] = ()) -> str:
     if get_origin(annotation) is Literal:
         return " or ".join(quoted(word) for word in arguments)
     if get_origin(annotation) is tuple and not is_list_of_tables(annotation):
-        return f"list of {len(arguments)}, each a {_kind(arguments[0])}"
+        length = "" if arguments[-1] is Ellipsis else f" of {len(arguments)}"
+        return f"list{length}, each a {_kind(arguments[0])}"
     tables = tables_in(annotation)
     if is_list_of_tables(annotation):
         return "list of tables"
