@@ -250,7 +250,13 @@ def test_defaults_are_written_out() -> None:
     assert "sun" not in written
     assert written["domain"] == {"age_limit": "1 yr"}
     assert written["grid"].keys() == {"altitude", "latitude_cells", "local_time_cells"}
-    assert written["ensemble"].keys() == {"particles_per_batch", "batches", "seed", "replicates"}
+    assert written["ensemble"].keys() == {
+        "particles_per_batch",
+        "batches",
+        "seed",
+        "replicates",
+        "emphasis",
+    }
 
 
 SPOILT = st.one_of(

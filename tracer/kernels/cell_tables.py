@@ -106,7 +106,8 @@ def layer_of(tables, radii, first_altitude, r):
     altitude = r - radii[0]
     if altitude < first_altitude:
         return 0
-    bits = np.float64(altitude / first_altitude).view(np.int64)
+    # The product may round into the entry above: `make_tables` leaves room for that.
+    bits = np.float64(altitude * (1.0 / first_altitude)).view(np.int64)
     entry = (bits >> (MANTISSA - LOG_DIGITS)) - (ONE << LOG_DIGITS)
     layer = int(tables.layers[min(entry, tables.layers.shape[0] - 1)])
     while r >= radii[layer + 1]:

@@ -14,7 +14,7 @@ import numpy as np
 import tracer
 
 ROOT = Path(__file__).parents[3]
-RUN_FILES = {"arcs": "harrow-helium.toml", "integrated": "mercury-sodium.toml"}
+RUN_FILES = {"arcs": "moon-sodium-gravity.toml", "integrated": "mercury-sodium.toml"}
 BATCHES = 20
 MOST_DEVIATION = 0.10
 LEAST_SPEED_UP = 1.85
@@ -56,21 +56,29 @@ def releases(name: str) -> int:
 
 
 def growth(kind: str, name: str, largest: float) -> bool:
-    """Print time and memory against particles from 1e4 on; return whether they grow as they should."""
+    """Print time and memory against particles from 1e4 on; return whether they grow as they should.
+
+    The straight line goes from a run of one particle a batch, whose time is that of the batches themselves, to the
+    largest run.
+    """
     share = BATCHES * releases(name)
-    fixed = min(run(name, 1, "--workers", "1").seconds for _ in range(3))
-    print(f"\n{kind} ({name}), one worker: {fixed:.3g} s for {BATCHES} batches of nearly nothing")
-    print(f"{'particles':>12s} {'seconds':>9s} {'us each, without the fixed part':>33s} {'memory MB':>10s}")
-    rates, memories = [], []
-    for particles in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5):
-        per_batch = round(particles / share)
-        tries = [run(name, per_batch, "--workers", "1") for _ in range(3 if particles < 1e6 else 1)]
-        seconds = min(one.seconds for one in tries)
-        rates.append((seconds - fixed) / (per_batch * share))
-        memories.append(tries[0].memory)
-        print(f"{per_batch * share:12,d} {seconds:9.3f} {rates[-1] * 1e6:33.4f} {memories[-1]:10.0f}")
-    linear = max(rates) / min(rates) - 1.0
+    counts = [1, *(round(n / share) for n in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5))]
+    runs = []
+    for count in counts:
+        tries = [run(name, count, "--workers", "1") for _ in range(3 if count * share < 1e6 else 1)]
+        runs.append(min(tries))
+    fixed, last = runs[0].seconds, runs[-1].seconds
+    slope = (last - fixed) / (counts[-1] - counts[0])
+    print(f"\n{kind} ({name}), one worker, {BATCHES} batches of each of {releases(name)} releases")
+    print(f"{'particles':>12s} {'seconds':>9s} {'over the line':>14s} {'memory MB':>10s}")
+    deviations = []
+    for count, one in zip(counts, runs, strict=True):
+        deviations.append(one.seconds / (fixed + slope * (count - counts[0])) - 1.0)
+        print(f"{count * share:12,d} {one.seconds:9.3f} {100 * deviations[-1]:+12.1f} % {one.memory:10.0f}")
+    linear = max(map(abs, deviations))
+    memories = [one.memory for one in runs[1:]]
     flat = max(memories) / min(memories) - 1.0
+    print(f"{slope / releases(name) / BATCHES * 1e6:.3g} microseconds a particle")
     print(
         f"time is linear within {100 * linear:.1f} %, memory flat within {100 * flat:.1f} % (both asked: 10 %)"
     )
