@@ -10,6 +10,7 @@ import numpy as np
 
 from tracer.kernels.compiling import inlined
 from tracer.kernels.fused import fused
+from tracer.kernels.motion import rates_of_change
 
 TABLEAU = np.array(
     (
@@ -142,31 +143,31 @@ def quartic(h, k1, k3, k4, k5, k6, k7):
 
 
 @inlined
-def trial_step(rates, sky, tables, zone, h, p, v, slopes):
+def trial_step(sky, tables, zone, h, p, v, slopes):
     """Try one step of `h` [s] within shadow `zone` from position `p` [m] and velocity `v` [m s-1] with their `slopes`.
 
-    `rates` is `rates_of_change` or a function like it, `slopes` are acceleration and loss rates as it returns them. Returns (growth, end slopes, error,
+    `slopes` are acceleration and loss rates as `rates_of_change` returns them. Returns (growth, end slopes, error,
     quartic): the growth of position, velocity and both hazards; the slopes at the end, which are the next step's
     first; the squared errors of position, velocity and hazard; the fourth-order coefficients of the dense output.
     """
     a1, l1 = slopes
     v2 = second(v, h, a1)
-    a2, _ = rates(sky, tables, zone, second(p, h, v), v2)
+    a2, _ = rates_of_change(sky, tables, zone, second(p, h, v), v2)
     v3 = third(v, h, a1, a2)
-    a3, l3 = rates(sky, tables, zone, third(p, h, v, v2), v3)
+    a3, l3 = rates_of_change(sky, tables, zone, third(p, h, v, v2), v3)
     v4 = fourth(v, h, a1, a2, a3)
-    a4, l4 = rates(sky, tables, zone, fourth(p, h, v, v2, v3), v4)
+    a4, l4 = rates_of_change(sky, tables, zone, fourth(p, h, v, v2, v3), v4)
     v5 = fifth(v, h, a1, a2, a3, a4)
-    a5, l5 = rates(sky, tables, zone, fifth(p, h, v, v2, v3, v4), v5)
+    a5, l5 = rates_of_change(sky, tables, zone, fifth(p, h, v, v2, v3, v4), v5)
     v6 = sixth(v, h, a1, a2, a3, a4, a5)
-    a6, l6 = rates(sky, tables, zone, sixth(p, h, v, v2, v3, v4, v5), v6)
+    a6, l6 = rates_of_change(sky, tables, zone, sixth(p, h, v, v2, v3, v4, v5), v6)
     growth = (
         solution(h, v, v3, v4, v5, v6),
         solution(h, a1, a3, a4, a5, a6),
         _hazards(h, l1, l3, l4, l5, l6),
     )
     v7 = _sum(v, growth[1])
-    a7, l7 = rates(sky, tables, zone, _sum(p, growth[0]), v7)
+    a7, l7 = rates_of_change(sky, tables, zone, _sum(p, growth[0]), v7)
     error = (
         _square(_error(h, v, v3, v4, v5, v6, v7)),
         _square(_error(h, a1, a3, a4, a5, a6, a7)),

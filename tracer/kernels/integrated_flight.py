@@ -112,9 +112,7 @@ def advance(flight, curve, conditions, tolerance, time_limit):
         if last:
             h = left
         flight[TRIALS] += 1.0
-        growth, end_slopes, error, quartic = trial_step(
-            rates_of_change, sky, tables, zone, h, place[:3], place[3:], slopes
-        )
+        growth, end_slopes, error, quartic = trial_step(sky, tables, zone, h, place[:3], place[3:], slopes)
         squared = step_error(error, scales)
         change = step_change(squared)
         if squared <= 1.0:

@@ -81,7 +81,7 @@ def look_closer(lanes, lane, sky, tables, curve):
 def _edge_met(sky, zone, start, end):
     """Return False where a step that ends above ground passes or nears no edge of its zone: see `first_crossing`."""
     for edge in (PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
-        if zone == PENUMBRA or edge == PENUMBRA_EDGE or edge == zone:
+        if zone == PENUMBRA or edge in (PENUMBRA_EDGE, zone):
             above, rate = height(sky.shadow, sky.forces.outer_radius, edge, zone, end)
             if above < 0.0:
                 return True
@@ -94,38 +94,58 @@ def _edge_met(sky, zone, start, end):
 def _land(lanes, lane, radius):
     """Cut a step that starts well above ground and ends below it where it passes the ground.
 
-    Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`.
+    Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`. It starts
+    where the cubic passes that has the same values and slopes at the ends, and stops as soon as its next error, which
+    goes with the square of the last change, is small enough.
     """
     h = lanes[row.LENGTH + lane]
     x = _polynomial(lanes, lane, h, 0)
     y = _polynomial(lanes, lane, h, row.Y)
     z = _polynomial(lanes, lane, h, row.Z)
     goal = radius * radius
-    above = x[0] * x[0] + y[0] * y[0] + z[0] * z[0] - goal
-    end_x, end_y, end_z = x[0] + x[1], y[0] + y[1], z[0] + z[1]
-    below = goal - (end_x * end_x + end_y * end_y + end_z * end_z)
     left, right = 0.0, 1.0
-    part = above / (above + below)
+    part = _passing(lanes, lane, h, goal)
     for _ in range(HALVINGS):
         px, dx = _value_and_slope(x, part)
         py, dy = _value_and_slope(y, part)
         pz, dz = _value_and_slope(z, part)
         f = px * px + py * py + pz * pz - goal
-        if abs(f) <= 2.0 * SHARP * goal:
-            break
         if f > 0.0:
             left = part
         else:
             right = part
-        part -= 0.5 * f / (px * dx + py * dy + pz * dz)
+        change = -0.5 * f / (px * dx + py * dy + pz * dz)
+        part += change
+        if (dx * dx + dy * dy + dz * dz) * (change * change) <= 0.1 * SHARP * goal:
+            break
         if not left < part < right:
             part = 0.5 * (left + right)
+    part = min(part, 1.0)
     lanes[row.STANDING + lane] = LANDED
     lanes[row.FLOWN + lane] = part
     for axis in range(0, 3 * WIDTH, WIDTH):
         lanes[row.END + axis + lane] = _value_and_slope(_polynomial(lanes, lane, h, axis), part)[0]
         at = row.VELOCITY + axis
         lanes[row.END + at + lane] = _value_and_slope(_polynomial(lanes, lane, h, at), part)[0]
+
+
+@inlined
+def _passing(lanes, lane, h, goal):
+    """Return about where a step's square of the distance from the centre falls to `goal`, between 0 and 1."""
+    x, y, z, vx, vy, vz = lane_place(lanes, row.START, lane)
+    end_x, end_y, end_z, end_vx, end_vy, end_vz = lane_place(lanes, row.END, lane)
+    above = x * x + y * y + z * z - goal
+    below = end_x * end_x + end_y * end_y + end_z * end_z - goal
+    fall = 2.0 * h * (x * vx + y * vy + z * vz)
+    bend = below - above - fall
+    rest = 2.0 * h * (end_x * end_vx + end_y * end_vy + end_z * end_vz) - fall - 2.0 * bend
+    part = above / (above - below)
+    for _ in range(3):
+        # The cubic is above + part (fall + part inner).
+        inner = bend + (part - 1.0) * rest
+        slope = fall + part * (2.0 * inner + part * rest)
+        part = min(1.0, max(0.0, part - (above + part * (fall + part * inner)) / slope))
+    return part
 
 
 @inlined

@@ -79,7 +79,7 @@ def survival(u):
 
 @kernel
 def sample_steps(lanes, sky, cells):
-    """Take the sample at the part DRAWN of the flown step in every lane, book what the step takes, and go on from its end."""
+    """Sample the flown step of every lane at its part DRAWN, book what the step takes, and go on from its end."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
     per_light = losses.ionizing + losses.other_sunlight

@@ -100,21 +100,23 @@ def try_steps(lanes, sky, tables):
     numbers = _numbers(sky, tables)
     apart = prepare_apart(lanes, sky, tables)
     _choose_lengths(lanes)
+    # Not a literal, for each of which numba would compile what it is passed to.
+    stage = np.int64(0)
     if apart:
-        look_apart(lanes, 0, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2 = second(v, h, a)
         _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, second(p, h, v), v2))
     if apart:
-        look_apart(lanes, 1, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3 = third(v, h, a, a2)
         _set_stage(lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, third(p, h, v, v2), v3))
     if apart:
-        look_apart(lanes, 2, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -123,7 +125,7 @@ def try_steps(lanes, sky, tables):
         p4 = fourth(p, h, v, v2, v3)
         _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, p4, v4))
     if apart:
-        look_apart(lanes, 3, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -133,7 +135,7 @@ def try_steps(lanes, sky, tables):
         p5 = fifth(p, h, v, v2, v3, v4)
         _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, p5, v5))
     if apart:
-        look_apart(lanes, 4, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -144,7 +146,7 @@ def try_steps(lanes, sky, tables):
         p6 = sixth(p, h, v, v2, v3, v4, v5)
         _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, p6, v6))
     if apart:
-        look_apart(lanes, 5, sky, tables)
+        stage = look_apart(lanes, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -173,7 +175,7 @@ def try_steps(lanes, sky, tables):
 def lane_rates(sky, tables, zone, position, velocity):
     """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone`, as lanes do.
 
-    Light is relative to full light at `light_distance`; other losses are those that go neither with it nor are constant.
+    Light is relative to full light at `light_distance`; other losses neither go with it nor are constant.
     """
     forces = sky.forces
     x, y, z = position
@@ -200,7 +202,7 @@ def prepare_apart(lanes, sky, tables):
     for lane in range(WIDTH):
         zone = lanes[ZONE + lane]
         lanes[PARTIAL + lane] = 0.0
-        if (zone == PENUMBRA or zone == ANTUMBRA) and lanes[STANDING + lane] == FLYING:
+        if zone in (PENUMBRA, ANTUMBRA) and lanes[STANDING + lane] == FLYING:
             apart = True
             lanes[PARTIAL + lane] = 1.0
             if zone == PENUMBRA:
@@ -219,9 +221,9 @@ def lane_place(lanes, row, lane):
 
 @kernel
 def look_apart(lanes, stage, sky, tables):
-    """Set the light and the push of the next stage in lanes that see part of the Sun or are pushed by many lines.
+    """Set the light and the push of a stage in lanes that see part of the Sun or are pushed by many lines.
 
-    `stage` counts from 0, the second. Its place is known before its rates are.
+    `stage` counts from 0, the second; its place is known before its rates are. Returns the next one's number.
     """
     forces = sky.forces
     for lane in range(WIDTH):
@@ -235,6 +237,7 @@ def look_apart(lanes, stage, sky, tables):
         if tables[0] > MOST_GRIDS:
             v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
             lanes[EXTRA + lane] = extra_push(forces, tables, (x, y, z), v)
+    return stage + 1
 
 
 @inlined
@@ -447,7 +450,7 @@ def _flag(lanes, sky):
         sign = 1.0 if lit else -1.0
         sine = shadow.penumbra_sine if lit else -shadow.umbra_sine
         cosine = shadow.penumbra_cosine if lit else shadow.umbra_cosine
-        above, rate = _cone(shadow.radius, sine, cosine, x, y, z, vx, vy, vz)
+        _, rate = _cone(shadow.radius, sine, cosine, x, y, z, vx, vy, vz)
         end_above, end_rate = _cone(shadow.radius, sine, cosine, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))

@@ -9,7 +9,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.integrated_flight import new_curve, new_flight
+from tracer.kernels.integrated_flight import new_curve
 from tracer.kernels.lanes import WIDTH, new_lanes
 
 RELEASED = 0
@@ -38,15 +38,14 @@ ATOM_SIZE = 12
 class Resume(NamedTuple):
     """What a slice leaves for the next, and room to work in.
 
-    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `flight`,
-    `curve` serve a flight that goes on by itself, `shine` (line,) a sample.
+    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `curve`
+    serves a step that is looked at closely, `shine` (line,) a sample.
     """
 
     counters: np.ndarray
     atom: np.ndarray
     atoms: np.ndarray
     lanes: np.ndarray
-    flight: np.ndarray
     curve: np.ndarray
     shine: np.ndarray
 
@@ -58,7 +57,6 @@ def new_resume(lines: int) -> Resume:
         np.zeros(ATOM_SIZE),
         np.zeros((WIDTH, ATOM_SIZE)),
         new_lanes(),
-        new_flight(),
         new_curve(),
         np.zeros(lines),
     )

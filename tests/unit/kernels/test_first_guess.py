@@ -4,9 +4,9 @@ import math
 
 import numpy as np
 import pytest
+from tracer.kernels.decay import SHORT, decay
 
 from tracer.kernels.cells import altitude_cell, latitude_cell, local_time_cell, make_cells
-from tracer.kernels.decay import SHORT, decay
 from tracer.kernels.first_guess import (
     ANGLE_ERROR,
     ARCSINE_ERROR,
