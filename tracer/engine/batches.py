@@ -120,7 +120,10 @@ def trace_batch(
 
 def _followed(resume: Resume, age_limit: float) -> float:
     """Return the atoms followed so far: those that have ended, and of one under way the share of its longest life."""
-    return float(resume.counters[ENDED] + resume.atom[UNDER_WAY] * resume.atom[AGE] / age_limit)
+    ages = (
+        resume.atom[UNDER_WAY] * resume.atom[AGE] + (resume.atoms[:, UNDER_WAY] * resume.atoms[:, AGE]).sum()
+    )
+    return float(resume.counters[ENDED] + ages / age_limit)
 
 
 def next_budget(budget: int, spent: float) -> int:

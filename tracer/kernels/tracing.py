@@ -18,6 +18,7 @@ from tracer.kernels.lanes import (
     DRAWN,
     FLAGGED,
     KEPT,
+    LEAST,
     STANDING,
     START,
     TIME,
@@ -72,7 +73,10 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
         for lane in range(resume.counters[CURSOR], WIDTH):
             resume.counters[CURSOR] = lane
             if lanes[STANDING + lane] == FLYING:
-                continue
+                if lanes[KEPT + lane] >= lanes[LEAST + lane]:
+                    continue
+                if _survives_roulette(world, tally, lanes, lane, rng):
+                    continue
             if lanes[STANDING + lane] != VACANT:
                 if flights == most_flights:
                     return flights
@@ -89,22 +93,19 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                 lanes[DRAWN + lane] = rng.random()
         sample_steps(lanes, sky, world.cells)
         score_lanes(world, tally, lanes, resume.shine)
-        _drop_what_is_lost(world, resume, tally, rng)
     return flights
 
 
 @merged
-def _drop_what_is_lost(world, resume, tally, rng):
-    """Play roulette with flights of which hardly anything is left: they would go on for nothing."""
-    lanes = resume.lanes
-    for lane in range(WIDTH):
-        survival = resume.atoms[lane, SURVIVAL]
-        if lanes[KEPT + lane] * survival < world.roulette.aloft and lanes[STANDING + lane] == FLYING:
-            least = world.roulette.aloft / survival
-            gain, alive = world.roulette.gain, lanes[ALIVE + lane]
-            lanes[KEPT + lane] = play_roulette(gain, tally, alive, lanes[KEPT + lane], least, rng)
-            if lanes[KEPT + lane] == 0.0:
-                lanes[STANDING + lane] = DROPPED
+def _survives_roulette(world, tally, lanes, lane, rng):
+    """Play roulette with a flight of which little is left, and return True where it goes on."""
+    lanes[KEPT + lane] = play_roulette(
+        world.roulette.gain, tally, lanes[ALIVE + lane], lanes[KEPT + lane], lanes[LEAST + lane], rng
+    )
+    if lanes[KEPT + lane] > 0.0:
+        return True
+    lanes[STANDING + lane] = DROPPED
+    return False
 
 
 @merged
@@ -118,6 +119,7 @@ def _begin_flight(world, launches, resume, tally, lane):
         release(world, launches, resume.counters[RELEASED], atom, tally)
         resume.counters[RELEASED] += 1
     lanes[ALIVE + lane] = take_off(atom, tally)
+    lanes[LEAST + lane] = world.roulette.aloft / atom[SURVIVAL]
     light = world.light
     launch_in_lane(
         lanes,

@@ -4,7 +4,6 @@ import math
 
 import numpy as np
 import pytest
-from tracer.kernels.decay import SHORT, decay
 
 from tracer.kernels.cells import altitude_cell, latitude_cell, local_time_cell, make_cells
 from tracer.kernels.first_guess import (
@@ -80,11 +79,6 @@ def test_a_place_on_the_axis_has_a_cell():
     assert latitude_cell(cells, 1.0) == 35
     assert latitude_cell(cells, -1.0) == 0
     assert local_time_cell(cells, 0.0, 0.0) == 24
-
-
-def test_decay_is_the_exponential_on_both_sides_of_its_switch():
-    for u in np.concatenate([[0.0, SHORT], np.geomspace(1e-18, 20.0, 2_001)]):
-        assert decay(u) == pytest.approx(math.exp(-u), rel=3e-16)
 
 
 def test_what_is_not_a_number_has_a_cell_inside_the_grid():
