@@ -50,7 +50,7 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "mass density": Dimension("mass density", "kg m-3", "1500 kg m-3"),
         "heat capacity": Dimension("specific heat capacity", "J kg-1 K-1", "600 J kg-1 K-1"),
         "number density": Dimension("number density", "m-3", "50 cm-3"),
-        "area": Dimension("area", "m2", "1e-20 cm2"),
+        "area": Dimension("area", "m2", "20 cm2"),
         "photon flux": Dimension("photon flux", "m-2 s-1", "2e14 cm-2 s-1"),
     }
 )
