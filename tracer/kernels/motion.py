@@ -54,7 +54,7 @@ class Sky(NamedTuple):
 
 
 class Conditions(NamedTuple):
-    """All that governs a flight; `push_tables` (see `lines`) hold each line's acceleration [m s-2] at 1 au."""
+    """All that governs a flight; `push_tables` (see `lines`) sum up to the lines' acceleration [m s-2] at 1 au."""
 
     sky: Sky
     push_tables: np.ndarray

@@ -87,12 +87,24 @@ def table_value(table: VelocityTable, velocity: npt.ArrayLike) -> Floats:
 
 def line_tables(tables: Sequence[VelocityTable]) -> Floats:
     """Return the g of `tables` at 1 au [s-1] as kernels take them."""
-    return _packed(tables, [1.0] * len(tables))
+    return flat_tables(
+        [table.first_velocity for table in tables],
+        [table.velocity_step for table in tables],
+        [table.g for table in tables],
+    )
 
 
 def push_tables(tables: Sequence[VelocityTable], mass: float) -> Floats:
-    """Return the acceleration [m s-2] at 1 au that each line gives an atom of `mass` [kg], as kernels take it."""
-    return _packed(tables, [PLANCK / (mass * table.wavelength) for table in tables])
+    """Return the acceleration [m s-2] at 1 au that all lines give an atom of `mass` [kg], as kernels take it.
+
+    Lines whose knots are the same share a table: only the sum of all tables has a meaning.
+    """
+    shared: dict[tuple[float, float, int], Floats] = {}
+    for table in tables:
+        knots = (table.first_velocity, table.velocity_step, table.g.size)
+        push = table.g * (PLANCK / (mass * table.wavelength))
+        shared[knots] = shared[knots] + push if knots in shared else push
+    return flat_tables([knots[0] for knots in shared], [knots[1] for knots in shared], list(shared.values()))
 
 
 def line_acceleration(tables: Sequence[VelocityTable], mass: float, velocity: npt.ArrayLike) -> Floats:
@@ -101,14 +113,6 @@ def line_acceleration(tables: Sequence[VelocityTable], mass: float, velocity: np
     for table in tables:
         total = total + table_value(table, velocity) * PLANCK / (mass * table.wavelength)
     return total
-
-
-def _packed(tables: Sequence[VelocityTable], factors: Sequence[float]) -> Floats:
-    return flat_tables(
-        [table.first_velocity for table in tables],
-        [table.velocity_step for table in tables],
-        [table.g * factor for table, factor in zip(tables, factors, strict=True)],
-    )
 
 
 def _bridged(name: str, residual: ResidualFlux) -> Floats:

@@ -4,10 +4,11 @@ import numpy as np
 import pytest
 
 from tracer.catalogue.lines import lines
-from tracer.kernels.lines import line_value
+from tracer.kernels.lines import line_value, sum_of_lines
 from tracer.physics.lines import (
     catalogue_table,
     constant_table,
+    line_acceleration,
     line_tables,
     push_tables,
     table_of,
@@ -73,6 +74,16 @@ def test_push_is_the_photons_momentum():
     mass = 3.8e-26
     packed = push_tables([constant_table("mine", 500e-9, 2.0)], mass)
     assert line_value(packed, 0, 1e4) == pytest.approx(2.0 * 6.62607015e-34 / (mass * 500e-9), rel=1e-12)
+
+
+def test_lines_with_the_same_knots_push_by_one_table():
+    mass = 6.5e-26
+    tables = [table("ca2_k"), table("ca2_h"), constant_table("mine", 500e-9, 2.0)]
+    packed = push_tables(tables, mass)
+    assert packed[0] == 2.0
+    for velocity in (-30e3, -1234.5, 0.0, 7e3, 30e3):
+        expected = line_acceleration(tables, mass, velocity)
+        assert sum_of_lines(packed, velocity) == pytest.approx(float(expected), rel=1e-12)
 
 
 def test_uneven_table_of_the_user_is_met_at_its_knots():
