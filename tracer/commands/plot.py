@@ -10,25 +10,12 @@ from tracer.commands.figure_file import ENDINGS, check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
-from tracer.plots.density import density
-from tracer.plots.image import image
-from tracer.plots.ledger import ledger
+from tracer.plots.figures import FIGURES, Choice, What
 from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
-from tracer.plots.style import Width
-from tracer.plots.vertical_column import vertical_column
 from tracer.product.layout import REPLICATES
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
-
-
-class What(StrEnum):
-    """The figures."""
-
-    COLUMN = "column"
-    DENSITY = "density"
-    IMAGE = "image"
-    LEDGER = "ledger"
 
 
 class WidthName(StrEnum):
@@ -38,8 +25,8 @@ class WidthName(StrEnum):
     FULL = "full"
 
 
-FIGURES = {What.COLUMN: vertical_column, What.DENSITY: density, What.LEDGER: ledger}
-"""Figures that take no more than a product, a release and a width."""
+HELP = " ".join(f"{what}: {drawing.help}." for what, drawing in FIGURES.items())
+OF_IMAGES = " and ".join(what for what, drawing in FIGURES.items() if drawing.of_image)
 
 
 def command(
@@ -47,8 +34,7 @@ def command(
     what: Annotated[
         What,
         typer.Option(
-            help="column: above the ground, over latitude and local time. density: in the equatorial and the "
-            "noon-midnight plane. image: as a viewer sees it. ledger: the particle budget.",
+            help=HELP,
             show_default=False,
         ),
     ],
@@ -75,7 +61,7 @@ def command(
         str | None,
         typer.Option(
             metavar="NAME",
-            help="Draw the image in the brightness of this line; otherwise in column density.",
+            help="Draw image or tail in the brightness of this line; otherwise in column density.",
             show_default=False,
         ),
     ] = None,
@@ -93,30 +79,27 @@ def command(
 ) -> None:
     """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
     for option, value in (("--image", image_name), ("--line", line)):
-        if value is not None and what is not What.IMAGE:
-            raise InputError(f"{option}: goes with --what image alone, not with --what {what}")
+        if value is not None and not FIGURES[what].of_image:
+            raise InputError(f"{option}: goes with --what {OF_IMAGES}, not with --what {what}")
     refuse_inputs(output, [product])
     ending = check_figure_file("--output", output, overwrite)
-    chosen: Width = "column" if width is WidthName.COLUMN else "full"
+    choice = Choice(release, image_name, line, "column" if width is WidthName.COLUMN else "full")
     with output_lock(output), open_product(product) as stored:
-        ds = stored.drop_vars([name for name in stored.data_vars if _is_spared(str(name))])
+        ds = stored.drop_vars([name for name in map(str, stored.data_vars) if _is_spared(name, what)])
         load_all(ds, product)
         try:
-            if what is What.IMAGE:
-                figure = image(ds, image_name, line, release, chosen)
-            else:
-                figure = FIGURES[what](ds, release, chosen)
+            figure = FIGURES[what].draw(ds, choice)
         except InputError as error:
             raise InputError(f"{product}: {error}") from None
         save_bytes(figure_bytes(figure, ending, dpi), output, overwrite)
     typer.echo(output)
-    # A budget is the last thing to look at; before it, it is the likely next.
-    if what is What.LEDGER:
-        name_next("summary", product)
-    else:
-        name_next("plot", product, "--what", What.LEDGER, "-o", "ledger.png")
+    name_next("report", product, "-o", "report.html")
 
 
-def _is_spared(name: str) -> bool:
-    """Return whether a variable needs not be read: replicates, most of a product, serve the planes of density alone."""
-    return name.endswith(REPLICATES) and name != "number_density" + REPLICATES
+def _is_spared(name: str, what: What) -> bool:
+    """Return whether a variable needs not be read: replicates, most of a product, where no use is made of them."""
+    if not name.endswith(REPLICATES):
+        return False
+    if what is What.TAIL:
+        return not name.startswith(("column_", "brightness_"))
+    return what not in (What.DENSITY, What.PROFILE) or name != "number_density" + REPLICATES

@@ -30,7 +30,7 @@ def test_figure_is_written_in_the_kind_of_its_ending_and_always_the_same(folder,
     assert ending_of(*words) == 0
     shown = capsys.readouterr()
     assert shown.out == f"{name}\n"
-    assert shown.err == "Next: tracer plot small.nc --what ledger -o ledger.png\n"
+    assert shown.err == "Next: tracer report small.nc -o report.html\n"
     first = (folder / name).read_bytes()
     assert first.startswith(start)
     assert ending_of(*words, "--overwrite") == 0
@@ -61,11 +61,11 @@ def test_existing_file_is_kept(folder, capsys):
         ),
         (
             ["-o", "a.png", "--what", "density", "--line", "na_d2"],
-            "--line: goes with --what image alone, not with --what density",
+            "--line: goes with --what image and tail, not with --what density",
         ),
         (
             ["-o", "a.png", "--what", "ledger", "--image", "tail"],
-            "--image: goes with --what image alone, not with --what ledger",
+            "--image: goes with --what image and tail, not with --what ledger",
         ),
         (
             ["-o", "a.png", "--what", "image", "--image", "tale"],
