@@ -5,13 +5,15 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE
 from tracer.commands.figure_file import ENDINGS, check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
 from tracer.plots.figures import FIGURES, Choice, What
+from tracer.plots.plan_table import read_plan
 from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
+from tracer.plots.timeline import timeline
 from tracer.product.layout import REPLICATES
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
@@ -25,12 +27,21 @@ class WidthName(StrEnum):
     FULL = "full"
 
 
-HELP = " ".join(f"{what}: {drawing.help}." for what, drawing in FIGURES.items())
+HELP = " ".join(
+    [*(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()), f"{What.PLAN}: a plan in time."]
+)
 OF_IMAGES = " and ".join(what for what, drawing in FIGURES.items() if drawing.of_image)
 
 
 def command(
-    product: PRODUCT_FILE,
+    product: Annotated[
+        str,
+        typer.Argument(
+            metavar="PRODUCT.nc",
+            help="A product of `tracer run`; for --what plan the table that `tracer plan` wrote.",
+            show_default=False,
+        ),
+    ],
     what: Annotated[
         What,
         typer.Option(
@@ -77,23 +88,42 @@ def command(
     dpi: Annotated[int, typer.Option(min=50, max=1200, help="Pixels per inch.")] = DOTS_PER_INCH,
     overwrite: OVERWRITE = False,
 ) -> None:
-    """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
-    for option, value in (("--image", image_name), ("--line", line)):
-        if value is not None and not FIGURES[what].of_image:
-            raise InputError(f"{option}: goes with --what {OF_IMAGES}, not with --what {what}")
+    """Draw one figure of a product, or of a plan, ready for a paper, as PNG, PDF or SVG."""
+    for option, value, goes, words in (
+        ("--image", image_name, _of_image(what), OF_IMAGES),
+        ("--line", line, _of_image(what), OF_IMAGES),
+        ("--release", release, what is not What.PLAN, "figures of a product"),
+    ):
+        if value is not None and not goes:
+            raise InputError(f"{option}: goes with --what {words}, not with --what {what}")
     refuse_inputs(output, [product])
     ending = check_figure_file("--output", output, overwrite)
     choice = Choice(release, image_name, line, "column" if width is WidthName.COLUMN else "full")
-    with output_lock(output), open_product(product) as stored:
+    with output_lock(output):
+        if what is What.PLAN:
+            content = figure_bytes(timeline(read_plan(product), choice.width), ending, dpi)
+        else:
+            content = _of_product(product, what, choice, ending, dpi)
+        save_bytes(content, output, overwrite)
+    typer.echo(output)
+    if what is What.PLAN:
+        name_next("report", "PRODUCT.nc", product, "-o", "report.html")
+    else:
+        name_next("report", product, "-o", "report.html")
+
+
+def _of_image(what: What) -> bool:
+    return what in FIGURES and FIGURES[what].of_image
+
+
+def _of_product(product: str, what: What, choice: Choice, ending: str, dpi: int) -> bytes:
+    with open_product(product) as stored:
         ds = stored.drop_vars([name for name in map(str, stored.data_vars) if _is_spared(name, what)])
         load_all(ds, product)
         try:
-            figure = FIGURES[what].draw(ds, choice)
+            return figure_bytes(FIGURES[what].draw(ds, choice), ending, dpi)
         except InputError as error:
             raise InputError(f"{product}: {error}") from None
-        save_bytes(figure_bytes(figure, ending, dpi), output, overwrite)
-    typer.echo(output)
-    name_next("report", product, "-o", "report.html")
 
 
 def _is_spared(name: str, what: What) -> bool:

@@ -27,7 +27,7 @@ from tracer.plots.tail import tail
 
 
 class What(StrEnum):
-    """The figures of a product."""
+    """The figures of a product, and that of a plan."""
 
     COLUMN = "column"
     DENSITY = "density"
@@ -40,6 +40,7 @@ class What(StrEnum):
     CAPTURE_MAP = "capture-map"
     ESCAPE_MAP = "escape-map"
     ESCAPE_DIRECTIONS = "escape-directions"
+    PLAN = "plan"
 
 
 class Choice(NamedTuple):
@@ -86,3 +87,4 @@ FIGURES: dict[What, Drawing] = {
     What.ESCAPE_MAP: Drawing("where those that escape came from", partial(_map, ESCAPING)),
     What.ESCAPE_DIRECTIONS: Drawing("where they cross the outer sphere", partial(_map, DIRECTIONS)),
 }
+"""Figures of a product: all but that of a plan."""

@@ -26,7 +26,7 @@ from tracer.plots.sums import NO_REPLICATES, has_replicates, summed
 from tracer.plots.words import framed_figure
 from tracer.product.layout import image_dimensions
 
-LEFT, RIGHT, TOP, BOTTOM, LEGEND_GAP = 15.5, 4.0, 7.0, 10.0, 1.0
+LEFT, RIGHT, TOP, BOTTOM, LEGEND_GAP = 16.5, 4.0, 7.0, 10.0, 1.0
 HEIGHTS: dict[Width, float] = {"column": 58.0, "full": 80.0}
 """Distances [mm] round the panel, and its height."""
 HALF_WIDTH = 1.0

@@ -6,6 +6,7 @@ import sys
 import pytest
 
 from tracer.__main__ import main
+from tracer.plots.figures import FIGURES, What
 from tracer.product.writing import save_product
 
 
@@ -68,6 +69,10 @@ def test_existing_file_is_kept(folder, capsys):
             "--image: goes with --what image and tail, not with --what ledger",
         ),
         (
+            ["-o", "a.png", "--what", "plan", "--release", "sputtering"],
+            "--release: goes with --what figures of a product, not with --what plan",
+        ),
+        (
             ["-o", "a.png", "--what", "image", "--image", "tale"],
             'small.nc: there is no image "tale"; allowed: "tail_from_north"',
         ),
@@ -112,3 +117,21 @@ def test_command_leaves_windows_and_kernels_alone():
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout == "[]\n"
+
+
+PLAN = "time,tangent_altitude_km,brightness_na_d2_rayleigh,snr,do_not_command\n1,20,1e4,30,False\n2,30,1e3,8,True\n"
+
+
+def test_plan_is_drawn_without_a_product(folder, capsys):
+    (folder / "plan.csv").write_text(PLAN, encoding="utf-8")
+    assert ending_of("plan.csv", "--what", "plan", "--dpi", "50", "-o", "plan.svg") == 0
+    shown = capsys.readouterr()
+    assert shown.out == "plan.svg\n"
+    assert shown.err == "Next: tracer report PRODUCT.nc plan.csv -o report.html\n"
+    assert "not to be commanded" in (folder / "plan.svg").read_text(encoding="utf-8")
+
+
+def test_every_figure_of_a_product_is_drawn(folder, capsys):
+    for what in FIGURES:
+        assert ending_of("small.nc", "--what", what, "--dpi", "50", "-o", f"{what}.png") == 0
+    assert len(capsys.readouterr().out.split()) == len(FIGURES) == len(What) - 1
