@@ -9,16 +9,7 @@ import xarray as xr
 from matplotlib.figure import Figure
 
 from tracer.plots.density import density
-from tracer.plots.ground_map import (
-    CAPTURED,
-    COLUMN,
-    DIRECTIONS,
-    ESCAPING,
-    RELEASED,
-    RETURNED,
-    GroundMap,
-    ground_map,
-)
+from tracer.plots.ground_map import MAPS, GroundMap, ground_map
 from tracer.plots.image import image
 from tracer.plots.ledger import ledger
 from tracer.plots.profile import profile
@@ -75,16 +66,18 @@ def _of_image(function: Callable[..., Figure], product: xr.Dataset, choice: Choi
 
 
 FIGURES: dict[What, Drawing] = {
-    What.COLUMN: Drawing("above the ground, over latitude and local time", partial(_map, COLUMN)),
+    What.COLUMN: Drawing("above the ground, over latitude and local time", partial(_map, MAPS[What.COLUMN])),
     What.DENSITY: Drawing("in the equatorial and the noon-midnight plane", partial(_plain, density)),
     What.IMAGE: Drawing("as a viewer sees it, with contours of error", partial(_of_image, image), True),
     What.LEDGER: Drawing("the particle budget", partial(_plain, ledger)),
     What.PROFILE: Drawing("density against altitude by day and by night", partial(_plain, profile)),
     What.TAIL: Drawing("along the tail axis of an image", partial(_of_image, tail), True),
-    What.RELEASE_MAP: Drawing("where new atoms leave the ground", partial(_map, RELEASED)),
-    What.RETURN_MAP: Drawing("where atoms land", partial(_map, RETURNED)),
-    What.CAPTURE_MAP: Drawing("where the ground keeps them", partial(_map, CAPTURED)),
-    What.ESCAPE_MAP: Drawing("where those that escape came from", partial(_map, ESCAPING)),
-    What.ESCAPE_DIRECTIONS: Drawing("where they cross the outer sphere", partial(_map, DIRECTIONS)),
+    What.RELEASE_MAP: Drawing("where new atoms leave the ground", partial(_map, MAPS[What.RELEASE_MAP])),
+    What.RETURN_MAP: Drawing("where atoms land", partial(_map, MAPS[What.RETURN_MAP])),
+    What.CAPTURE_MAP: Drawing("where the ground keeps them", partial(_map, MAPS[What.CAPTURE_MAP])),
+    What.ESCAPE_MAP: Drawing("where those that escape came from", partial(_map, MAPS[What.ESCAPE_MAP])),
+    What.ESCAPE_DIRECTIONS: Drawing(
+        "where they cross the outer sphere", partial(_map, MAPS[What.ESCAPE_DIRECTIONS])
+    ),
 }
 """Figures of a product: all but that of a plan."""

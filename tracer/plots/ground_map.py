@@ -53,6 +53,8 @@ class GroundMap(NamedTuple):
     """Of the colour bar, with the unit."""
     factor: float
     """Of the unit."""
+    unit: str
+    """In plain text."""
     colours: str
     nothing: str = "no atom counted"
     """What it means that a cell has no value."""
@@ -64,6 +66,7 @@ COLUMN = GroundMap(
     "Column density above the ground",
     "Column density (cm$^{-2}$)",
     PER_SQUARE_CENTIMETRE,
+    "cm-2",
     COLUMN_COLOURS,
 )
 RELEASED = GroundMap(
@@ -71,6 +74,7 @@ RELEASED = GroundMap(
     "Flux of new atoms from the ground",
     f"Release flux {FLUX}",
     PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
     FLUX_COLOURS,
     "no atom released",
 )
@@ -79,6 +83,7 @@ RETURNED = GroundMap(
     "Flux of atoms that land, every landing counted",
     f"Return flux {FLUX}",
     PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
     FLUX_COLOURS,
     "no landing counted",
 )
@@ -87,6 +92,7 @@ CAPTURED = GroundMap(
     "Flux of atoms that the ground keeps for good",
     f"Capture flux {FLUX}",
     PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
     FLUX_COLOURS,
     "no capture counted",
 )
@@ -95,6 +101,7 @@ ESCAPING = GroundMap(
     "Flux of atoms that escape in the end, by the place of their first release",
     f"Escape flux {FLUX}",
     PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
     FLUX_COLOURS,
     "no escape counted",
 )
@@ -103,9 +110,19 @@ DIRECTIONS = GroundMap(
     "Rate of escape by the place of crossing on the outer sphere",
     "Escape rate (s$^{-1}$ sr$^{-1}$)",
     1.0,
+    "s-1 sr-1",
     FLUX_COLOURS,
     "no escape counted",
 )
+MAPS = {
+    "column": COLUMN,
+    "release-map": RELEASED,
+    "return-map": RETURNED,
+    "capture-map": CAPTURED,
+    "escape-map": ESCAPING,
+    "escape-directions": DIRECTIONS,
+}
+"""All maps by the word that asks for them."""
 
 
 def ground_map(
