@@ -123,7 +123,9 @@ def _from_netcdf(name: str) -> PlanTable:
 def _plain(column: Any) -> NDArray[Any]:
     """Return a table's column as an array; texts that are all True or False as truth values."""
     if np.ma.isMaskedArray(column):
-        column = column.filled(np.nan if column.dtype.kind == "f" else "")
+        # A gap among whole numbers: they become numbers that can have one.
+        numbers = column.dtype.kind in "iuf"
+        column = column.astype(np.float64).filled(np.nan) if numbers else column.filled("")
     array = np.asarray(column)
     if array.dtype.kind not in "OSU":
         return array

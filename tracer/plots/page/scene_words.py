@@ -35,12 +35,12 @@ def scene_words(product: xr.Dataset) -> Iterator[tuple[str, str]]:
     yield "Sunlight", _sunlight(run, product.attrs)
     for entry in entries(run, "release"):
         yield (
-            f"Release \N{LEFT DOUBLE QUOTATION MARK}{_shown(entry.get('name'))}\N{RIGHT DOUBLE QUOTATION MARK}",
+            f"Release \N{LEFT DOUBLE QUOTATION MARK}{entry.get('name')}\N{RIGHT DOUBLE QUOTATION MARK}",
             _release(run, entry, radius),
         )
     for loss in entries(table(run, "gas"), "loss"):
         yield (
-            f"Loss \N{LEFT DOUBLE QUOTATION MARK}{_shown(loss.get('name'))}\N{RIGHT DOUBLE QUOTATION MARK}",
+            f"Loss \N{LEFT DOUBLE QUOTATION MARK}{loss.get('name')}\N{RIGHT DOUBLE QUOTATION MARK}",
             _loss(loss),
         )
     yield "Surface", _surface(run)
@@ -171,7 +171,8 @@ def _ensemble(attributes: Mapping[Any, Any]) -> str:
     batches, particles, flights = (
         _shown(attributes.get(key, "?")) for key in ("batches", "particles_per_batch", "flights")
     )
-    return f"{batches} batches of {particles} particles for each release, {flights} flights, seed {attributes.get('seed', '?')}."
+    seed = attributes.get("seed", "?")
+    return f"{batches} batches of {particles} particles for each release, {flights} flights, seed {seed}."
 
 
 SPEEDS: dict[str, Callable[[Table], str]] = {
