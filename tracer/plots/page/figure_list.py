@@ -42,7 +42,7 @@ def product_figures(product: xr.Dataset) -> Iterator[PageFigure]:
         yield from _image_figures(product, name)
     yield _figure(product, What.COLUMN, "Column density above the ground", _map_words(product, COLUMN))
     for word, what in MAPS.items():
-        if word is not What.COLUMN:
+        if word != What.COLUMN:
             yield _figure(product, What(word), what.words, _map_words(product, what))
 
 

@@ -9,6 +9,7 @@ import subprocess
 import sys
 import time
 from collections.abc import Callable, Iterator
+from itertools import islice
 from pathlib import Path
 from typing import Any
 
@@ -17,6 +18,7 @@ import xarray as xr
 
 from tracer.plots.page import document
 from tracer.plots.page.document import report_page
+from tracer.plots.page.figure_list import product_figures
 from tracer.plots.plan_table import read_plan
 
 HOSTILE = '<script>document.title = "broken"</script>"><img src=x onerror="document.title=1">'
@@ -43,16 +45,18 @@ for end, number in zip(ends, (3, 4)):
 os.execv(sys.argv[3], sys.argv[3:])
 """
 SECONDS = 20.0
+SHOWN = 4
 
 
 @pytest.fixture(scope="session")
 def page(small_light_product: xr.Dataset, tmp_path_factory: pytest.TempPathFactory) -> str:
-    """Return the page of a product in sunlight with a plan, title and texts hostile, figures of few pixels."""
+    """Return the page of a product in sunlight with a plan: texts hostile, few figures of few pixels."""
     plan = tmp_path_factory.mktemp("plan") / "plan.csv"
     plan.write_text(HEADS + PLAN, encoding="utf-8")
     product = small_light_product.assign_attrs(title=HOSTILE, git_commit=f"</pre>{HOSTILE}\x00")
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(document, "DOTS_PER_INCH", 50)
+        patch.setattr(document, "product_figures", lambda ds: islice(product_figures(ds), SHOWN))
         return report_page(product, "a & b.nc", read_plan(plan), "plan.csv")
 
 
