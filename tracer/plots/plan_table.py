@@ -124,8 +124,8 @@ def _plain(column: Any) -> NDArray[Any]:
     """Return a table's column as an array; texts that are all True or False as truth values."""
     if np.ma.isMaskedArray(column):
         # A gap among whole numbers: they become numbers that can have one.
-        numbers = column.dtype.kind in "iuf"
-        column = column.astype(np.float64).filled(np.nan) if numbers else column.filled("")
+        numbers: Any = column.astype(np.float64) if column.dtype.kind in "iuf" else None
+        column = column.filled("") if numbers is None else numbers.filled(np.nan)
     array = np.asarray(column)
     if array.dtype.kind not in "OSU":
         return array

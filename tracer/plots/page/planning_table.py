@@ -11,9 +11,9 @@ from tracer.plots.reading_units import KILORAYLEIGH
 
 MOST_ROWS = 5000
 """Rows beyond which a table is no longer handy; the plan's file has them all."""
-WORDS = ("Flags", "Command")
-"""Columns of words."""
-PLUS_MINUS = "\N{NO-BREAK SPACE}\N{PLUS-MINUS SIGN}\N{NO-BREAK SPACE}"
+WORDS = ("Command", "Flags")
+"""Columns of words, before all figures: what must not be commanded is seen first."""
+PLUS_MINUS = " \N{PLUS-MINUS SIGN}\N{NO-BREAK SPACE}"
 
 
 class Column(NamedTuple):
@@ -28,7 +28,7 @@ class Column(NamedTuple):
 def planning_table(plan: PlanTable) -> Markup:
     """Return the tools and the table: time, geometry, brightness, signal, flags, and whether it may be commanded."""
     columns = [column for column in _columns(plan) if column.name in plan.columns]
-    heads = ["Time", *(column.head for column in columns), *WORDS]
+    heads = ["Time", *WORDS, *(column.head for column in columns)]
     head = element("tr", [_head(one) for one in heads])
     rows = [_row(plan, columns, row) for row in range(min(plan.rows, MOST_ROWS))]
     caption = "Exposures; those in a keep-out are marked and must not be commanded"
@@ -44,17 +44,17 @@ def planning_table(plan: PlanTable) -> Markup:
     region = element(
         "div",
         table,
-        class_="scroll",
+        class_="scroll tall",
         tabindex="0",
         role="region",
-        aria_label="Planning table, scrolls sideways",
+        aria_label="Planning table, scrolls by itself",
     )
     return Markup(_tools(plan) + region)
 
 
 def _head(words: str) -> Markup:
     kind = "words" if words in WORDS else False
-    return element("th", element("button", words, type="button"), scope="col", class_=kind)
+    return element("th", element("button", words, type="button"), scope="col", class_=kind, data_head=words)
 
 
 def _tools(plan: PlanTable) -> Markup:
@@ -96,9 +96,9 @@ def _row(plan: PlanTable, columns: list[Column], row: int) -> Markup:
     return element(
         "tr",
         element("th", str(plan.columns["time"][row]), scope="row"),
-        (_cell(plan, column, row) for column in columns),
-        element("td", ", ".join(flags) or "none", class_="words"),
         element("td", command, class_="words"),
+        element("td", ", ".join(flags) or "none", class_="words"),
+        (_cell(plan, column, row) for column in columns),
         class_="forbidden" if forbidden else False,
     )
 

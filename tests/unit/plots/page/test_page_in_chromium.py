@@ -115,5 +115,7 @@ def test_page_prints(shown):
     browser.ask("Emulation.setEmulatedMedia", media="print")
     hidden = "['nav', '.tools', '#viewer'].every(s => getComputedStyle(document.querySelector(s)).display === 'none')"
     assert browser.run(hidden)
-    assert browser.run("getComputedStyle(document.querySelector('pre')).maxHeight") == "none"
+    for cut in ("pre", ".tall"):
+        assert browser.run(f"getComputedStyle(document.querySelector('{cut}')).maxHeight") == "none"
+        assert browser.run(f"getComputedStyle(document.querySelector('{cut}')).overflowY") == "visible"
     browser.ask("Emulation.setEmulatedMedia", media="")
