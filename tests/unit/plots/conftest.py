@@ -1,5 +1,6 @@
 """Invented products for figures: any number of releases, any size of values, cells never hit or poorly known."""
 
+import os
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -106,3 +107,9 @@ def make_plan(tmp_path) -> Callable[..., Path]:
         return path
 
     return make
+
+
+@pytest.fixture
+def update_looks() -> bool:
+    """Return whether the stored looks of figures are to be written anew: with UPDATE_LOOKS=1 in the environment."""
+    return os.environ.get("UPDATE_LOOKS") == "1"
