@@ -238,9 +238,12 @@ def _viewer() -> Markup:
 
 
 def _provenance(product: xr.Dataset, name: str, plan: PlanTable | None, plan_name: str) -> Sequence[Content]:
-    rows = [("product", name), *([("plan", plan_name)] if plan is not None else []), *_attributes(product)]
+    rows = [("product", name)]
+    if plan is not None:
+        rows.append(("plan", " ".join(filter(None, [plan_name, plan.notes.get("source")]))))
+    rows += [*_attributes(product), *_versions()]
     return [
-        definitions((key, element("span", text, class_="hash")) for key, text in [*rows, *_versions()]),
+        definitions((key, element("span", text, class_="hash")) for key, text in rows),
         element("h3", "Run file, with all defaults written out"),
         element("pre", str(product.attrs.get("run_file", "not stored")), tabindex="0", aria_label="Run file"),
     ]
