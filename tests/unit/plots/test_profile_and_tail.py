@@ -1,15 +1,12 @@
 """Altitude profiles and tail profiles: what is averaged over what, with which error, beside which curve."""
 
-from itertools import pairwise
-from math import exp, pi, sqrt
+from math import pi, sqrt
 
 import numpy as np
 import pytest
-from scipy.integrate import quad
 
 from tracer.constants import ATOMIC_MASS, BOLTZMANN
 from tracer.errors import InputError
-from tracer.physics.chamberlain import density_ratio
 from tracer.plots.profile import profile
 from tracer.plots.sky import sky_of
 from tracer.plots.tail import strip_of, tail
@@ -60,33 +57,6 @@ def test_band_is_the_spread_of_the_replicates_by_their_batches(make_product):
     reach = band.get_paths()[0].get_extents()
     assert reach.x0 == pytest.approx(2.0 - sqrt(0.5))
     assert reach.x1 == pytest.approx(2.0 + sqrt(0.5))
-
-
-@pytest.mark.parametrize(
-    ("radii", "ballistic", "escaping"),
-    [
-        (1.1, 0.59231, 6.035e-3),
-        (1.5, 0.14573, 3.017e-3),
-        (2.0, 0.047686, 1.752e-3),
-        (3.0, 0.011803, 8.494e-4),
-        (5.0, 0.0024294, 3.478e-4),
-    ],
-)
-def test_chamberlains_density_is_that_of_the_phase_space(radii, ballistic, escaping):
-    # lambda_c = 5, after Chamberlain 1963, Planet. Space Sci. 11, 901: own quadrature, five digits.
-    assert density_ratio(5.0, radii) == pytest.approx(ballistic + escaping, rel=5e-5)
-    lam = 5.0 / radii
-
-    def share(w):
-        # A Maxwellian at the ground, followed along energy and angular momentum; bound atoms pass twice.
-        reach = min(1.0, (1.0 + 5.0 * (1.0 - 1.0 / radii) / (w * w)) / radii**2)
-        passes = 2.0 if w * w < lam else 1.0
-        return passes * 2.0 * pi * (1.0 - sqrt(1.0 - reach)) * w * w * exp(-w * w)
-
-    kink = sqrt(5.0 * (1.0 - 1.0 / radii) / (radii**2 - 1.0))
-    ends = sorted({0.0, min(kink, sqrt(lam)), sqrt(lam), 30.0})
-    total = sum(quad(share, low, high, limit=400)[0] for low, high in pairwise(ends))
-    assert density_ratio(5.0, radii) == pytest.approx(exp(lam - 5.0) * pi**-1.5 * total, rel=1e-7)
 
 
 def test_curve_of_a_thermal_release_has_its_jeans_parameter_and_ground_density(make_product):

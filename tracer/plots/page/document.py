@@ -88,7 +88,7 @@ def report_page(product: xr.Dataset, name: str, plan: PlanTable | None = None, p
     links = [("cautions", "Cautions"), *((one.name, one.heading) for one in sections)]
     body = element(
         "body",
-        element("a", "Skip to the scene", class_="skip", href="#scene"),
+        element("a", "Skip the contents", class_="skip", href="#cautions"),
         element("header", element("h1", title), element("p", _lead(product), class_="lead")),
         element(
             "nav",
