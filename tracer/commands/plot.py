@@ -45,6 +45,7 @@ def command(
     what: Annotated[
         What,
         typer.Option(
+            metavar="FIGURE",
             help=HELP,
             show_default=False,
         ),

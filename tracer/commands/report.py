@@ -25,7 +25,7 @@ def command(
     plan: Annotated[
         str | None,
         typer.Argument(
-            metavar="[PLAN-OUT]",
+            metavar="PLAN-OUT",
             help="The table that `tracer plan` wrote: .ecsv, .csv or .nc.",
             show_default=False,
         ),

@@ -126,7 +126,7 @@ def _loss(loss: Table) -> str:
         "at 1 au, falling with the square of the distance" if loss.get("scaling") == "inverse-square" else ""
     )
     where = "in sunlight" if loss.get("where") == "sunlight" else "everywhere"
-    return f"{' '.join(filter(None, [str(loss.get('rate', '?')), scaling]))}, {where}."
+    return f"{' '.join(filter(None, [_shown(loss.get('rate', '?')), scaling]))}, {where}."
 
 
 def _surface(run: Table) -> str:
