@@ -34,8 +34,9 @@ def make_product() -> Callable[..., xr.Dataset]:
         views: dict[str, Any] = VIEWS,
         radius: float = RADIUS,
         title: str = "Sodium over Harrow",
+        top: float = 4.0,
     ) -> xr.Dataset:
-        grid = make_grid(radius, 0.01 * radius, 4.0 * radius, *CELLS.values())
+        grid = make_grid(radius, 0.01 * radius, top * radius, *CELLS.values())
         planes = [
             make_image_plane(
                 name,

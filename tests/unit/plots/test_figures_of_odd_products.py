@@ -148,3 +148,9 @@ def test_layer_that_was_never_hit_is_a_gap(make_product):
 )
 def test_plan_is_drawn_without_a_warning_and_readable(make_plan, plan, width):
     assert_readable(drawn(timeline(read_plan(make_plan(**plan)), width)))
+
+
+@pytest.mark.parametrize("width", ["column", "full"])
+@pytest.mark.parametrize("top", [0.3, 8.0, 120.0])
+def test_planes_of_any_size_are_readable(make_product, top, width):
+    assert_readable(drawn(density(make_product(top=top), width=width)))
