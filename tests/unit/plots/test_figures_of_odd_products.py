@@ -142,15 +142,20 @@ def test_layer_that_was_never_hit_is_a_gap(make_product):
     assert np.isnan(values).tolist() == [False, False, True, False]
 
 
-@pytest.mark.parametrize("width", ["column", "full"])
-@pytest.mark.parametrize(
-    "plan", [{}, {"rows": 1, "forbidden": ()}, {"brightness": 0.0}, {"brightness": 1e200}]
-)
+ODD_PLANS = [
+    ({}, "full"),
+    ({}, "column"),
+    ({"rows": 1, "forbidden": ()}, "column"),
+    ({"brightness": 0.0}, "column"),
+    ({"brightness": 1e200}, "column"),
+]
+
+
+@pytest.mark.parametrize(("plan", "width"), ODD_PLANS)
 def test_plan_is_drawn_without_a_warning_and_readable(make_plan, plan, width):
     assert_readable(drawn(timeline(read_plan(make_plan(**plan)), width)))
 
 
-@pytest.mark.parametrize("width", ["column", "full"])
-@pytest.mark.parametrize("top", [0.3, 8.0, 120.0])
+@pytest.mark.parametrize(("top", "width"), [(0.3, "column"), (8.0, "column"), (8.0, "full"), (120.0, "full")])
 def test_planes_of_any_size_are_readable(make_product, top, width):
     assert_readable(drawn(density(make_product(top=top), width=width)))
