@@ -49,6 +49,7 @@ COMMANDS = (
         "tracer.commands.plan",
     ),
     Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
+    Entry("report", "Write one page about a product, to hand round.", "tracer.commands.report"),
 )
 
 EPILOG = (

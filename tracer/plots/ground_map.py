@@ -1,6 +1,6 @@
-"""Figure: column density above the ground, over latitude and local time."""
+"""Figures over latitude and local time: column density, and fluxes from and to the ground."""
 
-from typing import Literal
+from typing import Literal, NamedTuple
 
 import numpy as np
 import xarray as xr
@@ -18,6 +18,7 @@ from tracer.plots.significance import note, say_nothing
 from tracer.plots.style import (
     COLUMN_COLOURS,
     DAY_COLOUR,
+    FLUX_COLOURS,
     NIGHT_COLOUR,
     SMALL_SIZE,
     WIDTHS,
@@ -42,13 +43,99 @@ LOCAL_TIMES: tuple[tuple[float, str, Literal["left", "center", "right"]], ...] =
 """Words above the strip, and which part of them stands at their local time."""
 
 
-def vertical_column(product: xr.Dataset, release: str | None = None, width: Width = "full") -> Figure:
-    """Return the column density above the ground [cm-2] over latitude and local time, in logarithmic colours.
+class GroundMap(NamedTuple):
+    """What a map over the ground shows."""
+
+    variable: str
+    words: str
+    """What it is, for the title."""
+    label: str
+    """Of the colour bar, with the unit."""
+    factor: float
+    """Of the unit."""
+    unit: str
+    """In plain text."""
+    colours: str
+    nothing: str = "no atom counted"
+    """What it means that a cell has no value."""
+
+
+FLUX = "(cm$^{-2}$ s$^{-1}$)"
+COLUMN = GroundMap(
+    "vertical_column",
+    "Column density above the ground",
+    "Column density (cm$^{-2}$)",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2",
+    COLUMN_COLOURS,
+)
+RELEASED = GroundMap(
+    "release_flux",
+    "Flux of new atoms from the ground",
+    f"Release flux {FLUX}",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
+    FLUX_COLOURS,
+    "no atom released",
+)
+RETURNED = GroundMap(
+    "return_flux",
+    "Flux of atoms that land, every landing counted",
+    f"Return flux {FLUX}",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
+    FLUX_COLOURS,
+    "no landing counted",
+)
+CAPTURED = GroundMap(
+    "capture_flux",
+    "Flux of atoms that the ground keeps for good",
+    f"Capture flux {FLUX}",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
+    FLUX_COLOURS,
+    "no capture counted",
+)
+ESCAPING = GroundMap(
+    "escape_flux",
+    "Flux of atoms that escape in the end, by the place of their first release",
+    f"Escape flux {FLUX}",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2 s-1",
+    FLUX_COLOURS,
+    "no escape counted",
+)
+DIRECTIONS = GroundMap(
+    "escape_rate_by_direction",
+    "Rate of escape by the place of crossing on the outer sphere",
+    "Escape rate (s$^{-1}$ sr$^{-1}$)",
+    1.0,
+    "s-1 sr-1",
+    FLUX_COLOURS,
+    "no escape counted",
+)
+MAPS = {
+    "column": COLUMN,
+    "release-map": RELEASED,
+    "return-map": RETURNED,
+    "capture-map": CAPTURED,
+    "escape-map": ESCAPING,
+    "escape-directions": DIRECTIONS,
+}
+"""All maps by the word that asks for them."""
+
+
+def ground_map(
+    product: xr.Dataset, what: GroundMap, release: str | None = None, width: Width = "full"
+) -> Figure:
+    """Return a map over latitude and local time in logarithmic colours.
 
     Parameters
     ----------
     product : xarray.Dataset
         As `open_product` gives it.
+    what : GroundMap
+        `COLUMN`, `RELEASED`, `RETURNED`, `CAPTURED`, `ESCAPING` or `DIRECTIONS`.
     release : str, optional
         Name of the release to draw; the sum over all if absent.
     width : "column" or "full"
@@ -60,7 +147,7 @@ def vertical_column(product: xr.Dataset, release: str | None = None, width: Widt
         Where the product has no such release.
     """
     names = releases(product, release)
-    field = variable(product, "vertical_column", names, PER_SQUARE_CENTIMETRE)
+    field = variable(product, what.variable, names, what.factor)
     hours, latitudes = edges(product, LOCAL_TIME), edges(product, LATITUDE)
     across = WIDTHS[width] - LEFT - RIGHT
     height = across * np.ptp(latitudes) / (TURN * DEGREES_PER_HOUR)
@@ -69,25 +156,31 @@ def vertical_column(product: xr.Dataset, release: str | None = None, width: Widt
             width,
             TOP + height + ROOM_BELOW,
             str(product.attrs.get("title", "")),
-            f"Column density above the ground, {released_words(names)}",
-            note([field], names),
+            f"{what.words}, {released_words(names)}",
+            note([field], names, what.nothing),
         )
         panel = Box(LEFT, box.bottom + ROOM_BELOW, across, height)
-        axes = axes_in(figure, panel)
-        _draw(axes, hours, latitudes, field)
+        _draw(axes_in(figure, panel), hours, latitudes, field, what.colours)
         _draw_day_and_night(axes_in(figure, panel._replace(bottom=panel.bottom + height, height=STRIP)))
         bar = axes_in(figure, bar_below(panel))
-        draw_colour_bar(bar, colour_span([field]), COLUMN_COLOURS, "Column density (cm$^{-2}$)", [field])
+        draw_colour_bar(bar, colour_span([field]), what.colours, what.label, [field])
     return figure
 
 
-def _draw(axes: Axes, hours: NDArray[np.float64], latitudes: NDArray[np.float64], field: Field) -> None:
+def vertical_column(product: xr.Dataset, release: str | None = None, width: Width = "full") -> Figure:
+    """Return the column density above the ground [cm-2]; arguments and errors as those of `ground_map`."""
+    return ground_map(product, COLUMN, release, width)
+
+
+def _draw(
+    axes: Axes, hours: NDArray[np.float64], latitudes: NDArray[np.float64], field: Field, colours: str
+) -> None:
     span = colour_span([field])
     if span is None:
         say_nothing(axes)
     else:
         value = np.ma.masked_where(~field.hit, field.value)
-        axes.pcolormesh(hours, latitudes, value, norm=log_norm(span), cmap=COLUMN_COLOURS, rasterized=True)
+        axes.pcolormesh(hours, latitudes, value, norm=log_norm(span), cmap=colours, rasterized=True)
     hatch_rectangles(axes, hours, latitudes, ~field.significant)
     for terminator in (DAWN, DUSK):
         axes.axvline(terminator, color="white", linewidth=1.4, zorder=2.5)
