@@ -2,7 +2,10 @@
 
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
+import numpy as np
+import numpy.typing as npt
 import pytest
 import xarray as xr
 
@@ -10,7 +13,16 @@ from tracer.engine.batches import compile_kernels, make_work
 from tracer.engine.runspec.load import load_run, parse_run
 from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
+from tracer.fate import FATE_LABELS
 from tracer.kernels.integrated_flight import fly, new_curve, new_flight, start_flight
+from tracer.observe.gas import gas_of
+from tracer.observe.integration import integrals_along
+from tracer.observe.sights import Sights
+from tracer.product.assembling import assemble
+from tracer.product.layout import layout
+from tracer.product.provenance import global_attributes
+from tracer.tally.axes import Grid
+from tracer.tally.field import FieldStatistics
 
 SMALL_RUN = """
 title = "Sodium over Harrow, small"
@@ -100,6 +112,9 @@ def pytest_sessionstart(session: pytest.Session) -> None:
     conditions = work.world.light.conditions
     start_flight(flight, conditions, 1e-6, scene.body.radius, 0.0, 0.0, 1000.0, 0.0, 0.0)
     fly(flight, curve, conditions, 1e-6, 1.0)
+    looks = Sights(np.array([[5.0, 0.0, 0.0]]), np.array([[-1.0, 0.0, 0.0]]))
+    grid = Grid(1.0, np.array([0.0, 1.0]), np.array([-90.0, 0.0, 90.0]), np.array([0.0, 12.0, 24.0]))
+    integrals_along(gas_of(_filled(grid, np.ones((1, 1, 2, 2)))), looks)
 
 
 @pytest.fixture(scope="session")
@@ -141,3 +156,40 @@ def traced() -> Callable[[str], xr.Dataset]:
         return known[text]
 
     return trace
+
+
+@pytest.fixture(scope="session")
+def filled() -> Callable[..., xr.Dataset]:
+    """Return a function that makes a product with given cells, in which nothing but gas and light is not zero."""
+    return _filled
+
+
+def _filled(
+    grid: Grid,
+    density: npt.ArrayLike,
+    emission: npt.ArrayLike | None = None,
+    replicates: npt.ArrayLike | None = None,
+    emission_replicates: npt.ArrayLike | None = None,
+    lines: tuple[str, ...] = ("na_d2",),
+    **attributes: Any,
+) -> xr.Dataset:
+    density = np.asarray(density, dtype=np.float64)
+    cells = (len(grid.altitude_edges) - 1, len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
+    releases, count = density.shape[0], 2 if replicates is None else len(np.asarray(replicates))
+    known = {"number_density": (density, replicates), "emission_rate": (emission, emission_replicates)}
+    names = lines if emission is not None else ()
+    sizes = dict(zip(("altitude", "latitude", "local_time"), cells, strict=True))
+    sizes |= {"release": releases, "fate": len(FATE_LABELS), "line": len(names)}
+    fields = {}
+    for name, row in layout((), bool(names)).items():
+        if row.tallied:
+            mean, groups = known.get(name, (None, None))
+            shape = tuple(sizes[axis] for axis in row.dimensions)
+            mean = np.zeros(shape) if mean is None else np.broadcast_to(mean, shape)
+            if groups is None:
+                groups = np.broadcast_to(mean, (count, *shape)) if row.replicated else None
+            fields[name] = FieldStatistics(
+                mean, np.zeros(shape), None if groups is None else np.asarray(groups)
+            )
+    attributes = {**global_attributes("Filled", "test"), "body_radius": grid.body_radius, **attributes}
+    return assemble(grid, (), [f"release {i}" for i in range(releases)], fields, {}, attributes, names)

@@ -1,7 +1,7 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
-`load_run`, `run`, `open_product` and `save_product` are loaded when they are first asked for, so that
-`import tracer` costs nothing.
+`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan` and `plan_observation`,
+are loaded when they are first asked for, so that `import tracer` costs nothing.
 """
 
 from importlib import import_module
@@ -10,16 +10,31 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from tracer.engine.runspec.load import load_run
     from tracer.engine.tracing import run
+    from tracer.observe.plan import plan_observation
+    from tracer.observe.planspec.plan import load_plan
+    from tracer.observe.sightlines import sightlines
     from tracer.product.reading import open_product
     from tracer.product.writing import save_product
 
-__all__ = ["__version__", "load_run", "open_product", "run", "save_product"]
+__all__ = [
+    "__version__",
+    "load_plan",
+    "load_run",
+    "open_product",
+    "plan_observation",
+    "run",
+    "save_product",
+    "sightlines",
+]
 
 _HOMES = {
+    "load_plan": "tracer.observe.planspec.plan",
     "load_run": "tracer.engine.runspec.load",
     "open_product": "tracer.product.reading",
+    "plan_observation": "tracer.observe.plan",
     "run": "tracer.engine.tracing",
     "save_product": "tracer.product.writing",
+    "sightlines": "tracer.observe.sightlines",
 }
 
 

@@ -38,7 +38,18 @@ COMMANDS = (
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
     Entry("merge", "Merge products of one scene, made with other seeds or batches.", "tracer.commands.merge"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),
+    Entry(
+        "sightlines",
+        "Add up column, brightness and optical depth along lines of sight.",
+        "tracer.commands.sightlines",
+    ),
+    Entry(
+        "plan",
+        "Plan a spectrometer observation along a path: counts, SNR, keep-outs.",
+        "tracer.commands.plan",
+    ),
     Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
+    Entry("report", "Write one page about a product, to hand round.", "tracer.commands.report"),
 )
 
 EPILOG = (

@@ -3,6 +3,9 @@
 BOLTZMANN = 1.380649e-23
 """Boltzmann constant k [J K-1]; exact (SI 2019)."""
 
+AVOGADRO = 6.02214076e23
+"""Avogadro constant [mol-1]; exact (SI 2019)."""
+
 ATOMIC_MASS = 1.66053906892e-27
 """Atomic mass constant u [kg]; CODATA 2022, relative uncertainty 3.1e-10."""
 
@@ -35,3 +38,9 @@ JULIAN_YEAR = 365.25 * 86400.0
 
 SOLAR_SYSTEM_AGE = 4.567e9 * JULIAN_YEAR
 """Age of the Solar System [s]: its oldest solids, 4567.3 +- 0.2 Myr (Connelly et al. 2012, Science 338; memory)."""
+
+CLASSICAL_ELECTRON_RADIUS = 2.8179403205e-15
+"""Classical electron radius e^2/(4 pi eps0 m_e c^2) [m]; CODATA 2022 (memory), relative uncertainty 4.7e-10."""
+
+RAYLEIGH = 1e10
+"""Photons m-2 s-1 in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""

@@ -1,7 +1,8 @@
 """Quantities with units as a user writes them, and their values in SI.
 
 Angles are the one exception to SI: the project's words latitude, zenith angle and azimuth are in degrees, so
-angles stay in degrees. The extra unit `radii` is the radius of the body at hand.
+angles stay in degrees. An energy may be given per mole and is then that of one atom. The extra unit `radii` is
+the radius of the body at hand.
 """
 
 import json
@@ -14,6 +15,8 @@ from types import MappingProxyType
 from typing import Any, NamedTuple
 
 import astropy.units
+
+from tracer.constants import AVOGADRO
 
 RADII = "radii"
 
@@ -42,7 +45,13 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "gravitational parameter": Dimension("gravitational parameter", "m3 s-2", "9500 km3 s-2"),
         "acceleration": Dimension("acceleration", "m s-2", "0.05 m s-2"),
         "magnetic field": Dimension("magnetic field", "T", "195 nT"),
+        "thermal inertia": Dimension("thermal inertia", "J m-2 K-1 s-1/2", "50 J m-2 K-1 s-1/2"),
+        "thermal conductivity": Dimension("thermal conductivity", "W m-1 K-1", "0.01 W m-1 K-1"),
+        "mass density": Dimension("mass density", "kg m-3", "1500 kg m-3"),
+        "heat capacity": Dimension("specific heat capacity", "J kg-1 K-1", "600 J kg-1 K-1"),
         "number density": Dimension("number density", "m-3", "50 cm-3"),
+        "area": Dimension("area", "m2", "20 cm2"),
+        "photon flux": Dimension("photon flux", "m-2 s-1", "2e14 cm-2 s-1"),
     }
 )
 
@@ -52,6 +61,14 @@ _QUANTITY = re.compile(
 )
 _SCALED_UNIT = re.compile(r"(?!1\s*/)[0-9.+-]")
 """A unit that begins with a number of its own, such as `3 km`; `1/s` is none."""
+_BROKEN_POWER = re.compile(r"(?<=[A-Za-z^])(-?[0-9]+(?:/[0-9]+|\.[0-9]+))")
+"""A power such as that of `s-1/2`, which `astropy.units` reads in brackets alone."""
+
+_MOLAR_ENERGY = astropy.units.Unit("J mol-1")
+_MOLE = astropy.units.Unit(astropy.units.mol / AVOGADRO)
+_PURE = astropy.units.dimensionless_unscaled
+_NO_UNIT = ("", "1")
+_FILE_WORDS: Mapping[str, str] = MappingProxyType({"kelvin": "K", "kelvins": "K", "percent": "%"})
 
 
 @dataclass(frozen=True)
@@ -131,9 +148,21 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
         return quantity.value * radius
     unit = _unit(quantity.unit)
     for dimension in DIMENSIONS.values():
-        if unit is not None and unit.is_equivalent(dimension.unit):
-            return float(unit.to(dimension.unit, quantity.value))
+        if unit is not None and unit.is_equivalent(wanted := _unit(dimension.unit)):
+            return float(unit.to(wanted, quantity.value))
     raise ValueError(f"{quoted(quantity.unit)} is not a unit of any dimension in use")
+
+
+def conversion_factor(name: str, wanted: str) -> float | None:
+    """Return by how much a number in unit `name` is multiplied to be in unit `wanted`, None where it cannot be.
+
+    Beside the notation of `astropy.units` the words that netCDF files use for kelvin and for pure numbers are known.
+    Temperatures that count from another zero, such as degrees Celsius, are no multiples of a kelvin.
+    """
+    given, target = (_file_unit(word.strip()) for word in (name, wanted))
+    if given is None or target is None or not given.is_equivalent(target):
+        return None
+    return float(given.to(target))
 
 
 def quoted(value: object) -> str:
@@ -157,7 +186,7 @@ def _refuse_unit(name: str, wanted: Dimension, subject: str, hint: str) -> None:
     unit = _unit(name)
     if unit is None:
         raise ValueError(f"{subject} is not a known unit; {hint}")
-    if not unit.is_equivalent(wanted.unit):
+    if not unit.is_equivalent(_unit(wanted.unit)):
         raise ValueError(f"{subject} is not a unit of {wanted.word}; {hint}")
 
 
@@ -168,11 +197,17 @@ def _unit(name: str) -> Any:
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         try:
-            unit = astropy.units.Unit(name)
+            unit = astropy.units.Unit(_BROKEN_POWER.sub(r"(\1)", name))
         except (ValueError, TypeError, ArithmeticError):
             return None
     # Logarithmic and structured units are no factors, so they have no SI value by multiplication.
-    return unit if isinstance(unit, astropy.units.UnitBase) else None
+    if not isinstance(unit, astropy.units.UnitBase):
+        return None
+    return unit * _MOLE if unit.is_equivalent(_MOLAR_ENERGY) else unit
+
+
+def _file_unit(name: str) -> Any:
+    return _PURE if name in _NO_UNIT else _unit(_FILE_WORDS.get(name, name))
 
 
 def _is_number(value: object) -> bool:

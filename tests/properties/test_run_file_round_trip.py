@@ -74,9 +74,31 @@ PLACES = st.one_of(
     law("cosine-power", toward=POINTS | st.sampled_from(["sun", "dawn"]), power=POWERS),
     law("patch", latitude=LATITUDES, local_time=LOCAL_TIMES, radius=LENGTHS),
     law("band", latitude=rising(-90, 90, "deg")),
+    law("map", file=LINES, variable=LINES),
 )
 SURFACE_TEMPERATURES = st.one_of(
-    law("uniform", value=TEMPERATURES), law("quarter-power", subsolar=TEMPERATURES, night=TEMPERATURES)
+    law("uniform", value=TEMPERATURES),
+    law("quarter-power", subsolar=TEMPERATURES, night=TEMPERATURES),
+    law("hurley-2015"),
+    st.just("hurley-2015"),
+    law("map", file=LINES, variable=LINES),
+)
+HEAT = table({"thermal_inertia": quantities(1e-3, 1e5, "J m-2 K-1 s-1/2", "W m-2 K-1 s(1/2)")}) | table(
+    {
+        "conductivity": quantities(1e-6, 1e3, "W m-1 K-1"),
+        "density": quantities(1.0, 1e4, "kg m-3", "g / l"),
+        "heat_capacity": quantities(1.0, 1e4, "J kg-1 K-1"),
+    }
+)
+EMISSIVITIES = st.floats(1e-3, 1.0)
+SUNLIT_TEMPERATURES = st.one_of(
+    law("equilibrium", albedo=st.floats(0.0, 1.0), emissivity=EMISSIVITIES, night=TEMPERATURES),
+    st.tuples(law("conduction", albedo=st.floats(0.0, 0.99), emissivity=EMISSIVITIES), HEAT).map(
+        lambda drawn: drawn[0] | drawn[1]
+    ),
+)
+STICKINGS = st.floats(0.0, 1.0) | law(
+    "exponential", at=TEMPERATURES, value=st.floats(0.0, 1.0), e_folding=TEMPERATURES
 )
 RELEASES = st.lists(
     table({"name": LINES, "rate": RATES, "speed": SPEEDS}, {"direction": DIRECTIONS, "place": PLACES}),
@@ -150,15 +172,45 @@ def gases(light: dict[str, Any], loss: dict[str, Any]) -> SearchStrategy[dict[st
     return table({"species": LINES}, {"mass": quantities(0.0, 300.0, "u", "Da"), "loss": losses, **light})
 
 
-SKIES = st.one_of(table({"gas": gases(SWITCHED_OFF, {})}), table({"sun": SUNS, "gas": gases(LIT, LIT_LOSS)}))
+TRAPS = st.one_of(
+    table({"poleward_of": quantities(0.0, 90.0, "deg")}), table({"file": LINES, "variable": LINES})
+)
+PHOTON = table(
+    {
+        "cross_section": quantities(0.0, 1.0, "cm2", "m2"),
+        "photon_flux": quantities(0.0, 1e16, "cm-2 s-1"),
+        "speed": SPEEDS,
+    }
+)
+BOND = {
+    "energy": quantities(0.0, 9.0, "eV", "kJ/mol"),
+    "attempt_frequency": quantities(0.0, 1e15, "s-1", "THz"),
+}
+
+
+def grounds(temperatures: SearchStrategy[Any], light: dict[str, Any]) -> SearchStrategy[dict[str, Any]]:
+    required = {"temperature": temperatures}
+    optional = {"sticking": STICKINGS, "accommodation": st.floats(0.0, 1.0), "cold_traps": TRAPS}
+    held = {"adsorbed": st.just("desorbed"), "desorption": table(BOND, light)}
+    return st.one_of(table(required, optional), table({**required, **held}, optional))
+
+
+SKIES = st.one_of(
+    table({"gas": gases(SWITCHED_OFF, {}), "surface": grounds(SURFACE_TEMPERATURES, {})}),
+    table(
+        {
+            "sun": SUNS,
+            "gas": gases(LIT, LIT_LOSS),
+            "surface": grounds(SURFACE_TEMPERATURES | SUNLIT_TEMPERATURES, {"photon": PHOTON}),
+        }
+    ),
+)
 WHOLE = st.integers(0, 2**63 - 1)
 
 
 @st.composite
 def run_files(draw: DrawFn) -> dict[str, Any]:
     required = {"title": LINES, "body": BODIES, "release": RELEASES}
-    fraction = st.floats(0.0, 1.0)
-    surface = table({"temperature": SURFACE_TEMPERATURES}, {"sticking": fraction, "accommodation": fraction})
     altitude = table({"first_cell": quantities(0.0, 9.0, "km"), "top": quantities(0.01, 9.0, "Mm", "radii")})
     optional = {
         "domain": table(
@@ -168,7 +220,7 @@ def run_files(draw: DrawFn) -> dict[str, Any]:
         "image": IMAGES,
         "ensemble": table({}, {"batches": st.integers(2, 10**6), "seed": WHOLE, "replicates": WHOLE}),
     }
-    return {**draw(table({**required, "surface": surface}, optional)), **draw(SKIES)}
+    return {**draw(table(required, optional)), **draw(SKIES)}
 
 
 @settings(max_examples=200, deadline=None)
@@ -198,7 +250,13 @@ def test_defaults_are_written_out() -> None:
     assert "sun" not in written
     assert written["domain"] == {"age_limit": "1 yr"}
     assert written["grid"].keys() == {"altitude", "latitude_cells", "local_time_cells"}
-    assert written["ensemble"].keys() == {"particles_per_batch", "batches", "seed", "replicates"}
+    assert written["ensemble"].keys() == {
+        "particles_per_batch",
+        "batches",
+        "seed",
+        "replicates",
+        "emphasis",
+    }
 
 
 SPOILT = st.one_of(
@@ -224,6 +282,15 @@ def test_spoilt_run_file_is_refused_on_one_line_in_our_words(data: st.DataObject
     tables["release"][0]["place"] = {"law": "cosine-power", "power": 1, "toward": "sun"}
     tables["sun"] = {"true_anomaly": "60 deg", "tide": True, "shadow": "none"}
     tables["gas"]["radiation_acceleration"] = "lines"
+    tables["surface"]["sticking"] = {"law": "exponential", "at": "9 K", "value": 0.5, "e_folding": "9 K"}
+    tables["surface"]["adsorbed"] = "desorbed"
+    photon = {
+        "cross_section": "1 cm2",
+        "photon_flux": "1 m-2 s-1",
+        "speed": {"law": "single", "speed": "1 m/s"},
+    }
+    tables["surface"]["desorption"] = {"energy": "1 eV", "attempt_frequency": "1 s-1", "photon": photon}
+    tables["surface"]["cold_traps"] = {"poleward_of": "80 deg"}
     tables["gas"]["line"] = [{"name": "a", "wavelength": "285 nm", "g": {"file": "g.csv"}}]
     _spoil(data, tables)
     try:

@@ -7,7 +7,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from tracer.constants import ASTRONOMICAL_UNIT, ATOMIC_MASS
-from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
+from tracer.units import DIMENSIONS, Quantity, conversion_factor, parse, quoted, si
 
 
 @pytest.mark.parametrize(
@@ -21,16 +21,50 @@ from tracer.units import DIMENSIONS, Quantity, parse, quoted, si
         ("1e24 s-1", "rate", 1e24),
         ("60 1/h", "rate", 1.0 / 60.0),
         ("2 eV", "energy", 2 * 1.602176634e-19),  # SI 2019, exact
+        ("28 kJ/mol", "energy", 28e3 / 6.02214076e23),  # of one atom; Avogadro constant exact (SI 2019)
+        ("0.3 MJ mol-1", "energy", 3e5 / 6.02214076e23),
         ("23 u", "mass", 23 * ATOMIC_MASS),  # CODATA 2022
         ("1 yr", "time", 365.25 * 86400),  # Julian year, IAU
         ("9_500 km3 s-2", "gravitational parameter", 9.5e12),
         ("5 cm s-2", "acceleration", 0.05),
         ("195 nT", "magnetic field", 1.95e-7),
         ("50 cm-3", "number density", 5e7),
+        ("1e-20 cm2", "area", 1e-24),
+        ("2e14 cm-2 s-1", "photon flux", 2e18),
+        ("0.01 W m-1 K-1", "thermal conductivity", 0.01),
+        ("1.5 g cm-3", "mass density", 1500.0),
+        ("0.6 J g-1 K-1", "heat capacity", 600.0),
+        # The trade's spelling, with its power out of brackets, and others.
+        ("50 J m-2 K-1 s-1/2", "thermal inertia", 50.0),
+        ("50 J m-2 K-1 s(-1/2)", "thermal inertia", 50.0),
+        ("50 J m-2 K-1 s-0.5", "thermal inertia", 50.0),
+        ("50 W m-2 K-1 s1/2", "thermal inertia", 50.0),
+        ("50 mJ cm-2 K-1 s^-1/2", "thermal inertia", 500.0),
     ],
 )
 def test_value_in_si_is_the_written_one(text: str, dimension: str, value: float) -> None:
     assert si(parse(text, dimension)) == pytest.approx(value, rel=1e-14)
+
+
+@pytest.mark.parametrize(
+    ("name", "wanted", "factor"),
+    [
+        ("K", "K", 1.0),
+        ("kelvin", "K", 1.0),
+        ("mK", "K", 1e-3),
+        ("1", "1", 1.0),
+        ("", "1", 1.0),
+        ("percent", "1", 0.01),
+        # Degrees Celsius count from another zero, and the rest is of another kind or nothing at all.
+        ("deg_C", "K", None),
+        ("degC", "K", None),
+        ("m", "K", None),
+        ("K", "1", None),
+        ("nothing", "K", None),
+    ],
+)
+def test_factor_between_the_units_of_files(name: str, wanted: str, factor: float | None) -> None:
+    assert conversion_factor(name, wanted) == (None if factor is None else pytest.approx(factor, rel=1e-15))
 
 
 def test_angles_stay_in_degrees() -> None:

@@ -17,11 +17,15 @@ PLAIN_WORDS = {
 }
 
 
+ROULETTE_WORDS = "dropped by roulette on balance, by chance"
+
+
 def print_budget(product: xr.Dataset) -> None:
     """Print each release's budget: what share of its atoms ends how, with one standard error."""
     for name in product["release_name"].values:
         one = product.sel(release=name)
-        rate = float(one["ledger"].sum())
+        balance = float(one["roulette_balance"])
+        rate = float(one["ledger"].sum()) - balance
         typer.echo(f"release {str(name)!r}: {rate:.4g} atoms per second, of which")
         rows = []
         for fate in product["fate_name"].values:
@@ -29,6 +33,9 @@ def print_budget(product: xr.Dataset) -> None:
             if share > 0.0:
                 error = float(one["ledger_standard_error"].sel(fate=fate)) / rate
                 rows.append((f"{100 * share:9.4f} %", _error(error), PLAIN_WORDS[str(fate)]))
+        if balance != 0.0:
+            error = float(one["roulette_balance_standard_error"]) / rate
+            rows.append((f"{-100 * balance / rate:9.4f} %", _error(error), ROULETTE_WORDS))
         print_rows(rows)
         life, flights = float(one["mean_life"]), float(one["mean_flights"])
         typer.echo(f"  mean life {life:.4g} s on {flights:.4g} flights")

@@ -1,11 +1,13 @@
 """`tracer check`: the resolved scene, without running it."""
 
 from pathlib import Path
+from types import MappingProxyType
 from typing import Any
 
 import typer
 
 from tracer.commands.arguments import JSON, RUN_FILE, SETTINGS
+from tracer.commands.durations import duration
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
@@ -14,11 +16,20 @@ from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
 from tracer.engine.runspec.load import load_run
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
+from tracer.engine.surface_preview import SurfacePreview
 from tracer.engine.tracing import available_processors
 
-DAY = 86400.0
 HOUR = 3600.0
+DAY = 86400.0
+EMPHASIS = MappingProxyType(
+    {
+        "even": "even: launches as often as they happen",
+        "far": "far: half of the launches even, half to those that a pilot finds to reach far or escape; bounces as "
+        "they happen",
+    }
+)
 MEGABYTE = 1e6
+_INSIDE = ("sun", "surface")
 
 
 def command(
@@ -41,11 +52,15 @@ def command(
 
 
 def _flat(figures: Preview) -> dict[str, Any]:
-    """Return the figures with those of the Sun beside the others; null where there is no Sun."""
+    """Return the figures with those of Sun and ground beside the others; null where there is no Sun."""
     sun: dict[str, Any] = dict.fromkeys(SunPreview._fields)
     if figures.sun is not None:
         sun = figures.sun._asdict()
-    return {**{key: value for key, value in figures._asdict().items() if key != "sun"}, **sun}
+    return {
+        **{key: value for key, value in figures._asdict().items() if key not in _INSIDE},
+        **sun,
+        **figures.surface._asdict(),
+    }
 
 
 def _print_scene(spec: RunSpec, figures: Preview) -> None:
@@ -63,10 +78,13 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
                 "rotation period",
                 "the ground does not turn" if rotation is None else f"{rotation / DAY:.6g} d sidereal",
             ),
+            *_surface_rows(figures.surface),
             ("outer radius", _outer_radius(figures)),
             ("age limit", f"{figures.age_limit / DAY:.6g} d"),
             ("constant losses in flight", f"{figures.loss_rate:.4g} s-1" if figures.loss_rate else "none"),
+            *_residence_rows(figures),
             ("particles", _particles(spec, figures)),
+            ("emphasis", EMPHASIS[figures.emphasis]),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
@@ -99,6 +117,40 @@ def _motion(sun: SunPreview) -> str:
     return f"moving: fluxes count in the last {sun.event_window / HOUR:.4g} h before the stated position"
 
 
+def _residence_rows(figures: Preview) -> list[tuple[str, str]]:
+    rows = [
+        (
+            f"residence at {one.place}",
+            f"{_long_time(one.residence_time)} at {one.temperature:.5g} K",
+        )
+        for one in figures.residence
+    ]
+    if figures.photon_desorption_rate is not None:
+        rows.append(("photon desorption", f"{figures.photon_desorption_rate:.4g} s-1 under the Sun overhead"))
+    return rows
+
+
+def _long_time(seconds: float) -> str:
+    """Return a time in seconds, and in what people think in where it is long."""
+    return f"{seconds:.4g} s" + (f" ({duration(seconds)})" if seconds >= HOUR else "")
+
+
+def _surface_rows(surface: SurfacePreview) -> list[tuple[str, str]]:
+    day = surface.solar_day
+    rows = [] if day is None else [("mean solar day", f"{day / DAY:.6g} d")]
+    kelvin = "not given, and nothing needs it"
+    if surface.temperature_law is not None:
+        kelvin = (
+            f"{surface.temperature_law}: {surface.noon_temperature:.5g} K at noon and "
+            f"{surface.midnight_temperature:.5g} K at midnight on the equator, "
+            f"{surface.lowest_temperature:.5g} to {surface.highest_temperature:.5g} K anywhere"
+        )
+    sticking = f"{surface.lowest_sticking:.4g}"
+    if surface.highest_sticking != surface.lowest_sticking:
+        sticking += f" on the warmest to {surface.highest_sticking:.4g} on the coldest ground"
+    return [*rows, ("surface temperature", kelvin), ("sticking", sticking)]
+
+
 def _particles(spec: RunSpec, figures: Preview) -> str:
     limit = "" if spec.ensemble.stop is None else "at most "
     return f"{limit}{figures.particles:,} in {limit}{figures.batches} batches, seed {figures.seed}"
@@ -122,8 +174,15 @@ def _print_release(release: ReleasePreview) -> None:
         ("median hop time, gravity alone", _figure(release.hop_time, "s")),
         ("median hop range, gravity alone", _figure(release.hop_range, "km", 1e3)),
         ("cross the outer radius", f"{100 * release.crossing_fraction:.3g} % of first flights"),
+        ("rarest launches told apart", _rarest(release.rarest_launch)),
     ]
     print_rows([(name, text) for name, text in rows if text])
+
+
+def _rarest(share: float | None) -> str:
+    if share is None:
+        return ""
+    return "none: speed decides nothing" if share == 1.0 else f"the fastest {share:.2g} of all"
 
 
 def _figure(value: float | None, unit: str, size: float = 1.0) -> str:

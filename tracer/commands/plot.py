@@ -5,30 +5,19 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE
 from tracer.commands.figure_file import ENDINGS, check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
-from tracer.plots.density import density
-from tracer.plots.image import image
-from tracer.plots.ledger import ledger
+from tracer.plots.figures import FIGURES, Choice, What
+from tracer.plots.plan_table import read_plan
 from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
-from tracer.plots.style import Width
-from tracer.plots.vertical_column import vertical_column
+from tracer.plots.timeline import timeline
 from tracer.product.layout import REPLICATES
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
-
-
-class What(StrEnum):
-    """The figures."""
-
-    COLUMN = "column"
-    DENSITY = "density"
-    IMAGE = "image"
-    LEDGER = "ledger"
 
 
 class WidthName(StrEnum):
@@ -38,17 +27,26 @@ class WidthName(StrEnum):
     FULL = "full"
 
 
-FIGURES = {What.COLUMN: vertical_column, What.DENSITY: density, What.LEDGER: ledger}
-"""Figures that take no more than a product, a release and a width."""
+HELP = " ".join(
+    [*(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()), f"{What.PLAN}: a plan in time."]
+)
+OF_IMAGES = " and ".join(what for what, drawing in FIGURES.items() if drawing.of_image)
 
 
 def command(
-    product: PRODUCT_FILE,
+    product: Annotated[
+        str,
+        typer.Argument(
+            metavar="PRODUCT.nc",
+            help="A product of `tracer run`; for --what plan the table that `tracer plan` wrote.",
+            show_default=False,
+        ),
+    ],
     what: Annotated[
         What,
         typer.Option(
-            help="column: above the ground, over latitude and local time. density: in the equatorial and the "
-            "noon-midnight plane. image: as a viewer sees it. ledger: the particle budget.",
+            metavar="FIGURE",
+            help=HELP,
             show_default=False,
         ),
     ],
@@ -75,7 +73,7 @@ def command(
         str | None,
         typer.Option(
             metavar="NAME",
-            help="Draw the image in the brightness of this line; otherwise in column density.",
+            help="Draw image or tail in the brightness of this line; otherwise in column density.",
             show_default=False,
         ),
     ] = None,
@@ -91,32 +89,48 @@ def command(
     dpi: Annotated[int, typer.Option(min=50, max=1200, help="Pixels per inch.")] = DOTS_PER_INCH,
     overwrite: OVERWRITE = False,
 ) -> None:
-    """Draw one figure of a product, ready for a paper, as PNG, PDF or SVG."""
-    for option, value in (("--image", image_name), ("--line", line)):
-        if value is not None and what is not What.IMAGE:
-            raise InputError(f"{option}: goes with --what image alone, not with --what {what}")
+    """Draw one figure of a product, or of a plan, ready for a paper, as PNG, PDF or SVG."""
+    for option, value, goes, words in (
+        ("--image", image_name, _of_image(what), OF_IMAGES),
+        ("--line", line, _of_image(what), OF_IMAGES),
+        ("--release", release, what is not What.PLAN, "figures of a product"),
+    ):
+        if value is not None and not goes:
+            raise InputError(f"{option}: goes with --what {words}, not with --what {what}")
     refuse_inputs(output, [product])
     ending = check_figure_file("--output", output, overwrite)
-    chosen: Width = "column" if width is WidthName.COLUMN else "full"
-    with output_lock(output), open_product(product) as stored:
-        ds = stored.drop_vars([name for name in stored.data_vars if _is_spared(str(name))])
+    choice = Choice(release, image_name, line, "column" if width is WidthName.COLUMN else "full")
+    with output_lock(output):
+        if what is What.PLAN:
+            content = figure_bytes(timeline(read_plan(product), choice.width), ending, dpi)
+        else:
+            content = _of_product(product, what, choice, ending, dpi)
+        save_bytes(content, output, overwrite)
+    typer.echo(output)
+    if what is What.PLAN:
+        name_next("report", "PRODUCT.nc", product, "-o", "report.html")
+    else:
+        name_next("report", product, "-o", "report.html")
+
+
+def _of_image(what: What) -> bool:
+    return what in FIGURES and FIGURES[what].of_image
+
+
+def _of_product(product: str, what: What, choice: Choice, ending: str, dpi: int) -> bytes:
+    with open_product(product) as stored:
+        ds = stored.drop_vars([name for name in map(str, stored.data_vars) if _is_spared(name, what)])
         load_all(ds, product)
         try:
-            if what is What.IMAGE:
-                figure = image(ds, image_name, line, release, chosen)
-            else:
-                figure = FIGURES[what](ds, release, chosen)
+            return figure_bytes(FIGURES[what].draw(ds, choice), ending, dpi)
         except InputError as error:
             raise InputError(f"{product}: {error}") from None
-        save_bytes(figure_bytes(figure, ending, dpi), output, overwrite)
-    typer.echo(output)
-    # A budget is the last thing to look at; before it, it is the likely next.
-    if what is What.LEDGER:
-        name_next("summary", product)
-    else:
-        name_next("plot", product, "--what", What.LEDGER, "-o", "ledger.png")
 
 
-def _is_spared(name: str) -> bool:
-    """Return whether a variable needs not be read: replicates, most of a product, serve the planes of density alone."""
-    return name.endswith(REPLICATES) and name != "number_density" + REPLICATES
+def _is_spared(name: str, what: What) -> bool:
+    """Return whether a variable needs not be read: replicates, most of a product, where no use is made of them."""
+    if not name.endswith(REPLICATES):
+        return False
+    if what is What.TAIL:
+        return not name.startswith(("column_", "brightness_"))
+    return what not in (What.DENSITY, What.PROFILE) or name != "number_density" + REPLICATES

@@ -49,11 +49,16 @@ def _plain_lines() -> Watcher:
             return
         last = now
         share = status.atoms / status.atoms_expected
-        remaining = (now - begin) * (1.0 - share) / share if share > 0.0 else float("nan")
-        text = f"{100 * share:.0f} %, {_figures(status, now - begin)}, about {remaining:.0f} s to go"
+        left = f", about {(now - begin) * (1.0 - share) / share:.0f} s to go" if share > 0.0 else ""
+        text = f"{_percent(100 * share)} %, {_figures(status, now - begin)}{left}"
         print(text, file=sys.stderr, flush=True)
 
     return show
+
+
+def _percent(value: float) -> str:
+    """Return a percentage in whole numbers, below ten with a digit more, so that slow work is seen to move."""
+    return f"{value:.1f}" if value < 10.0 else f"{value:.0f}"
 
 
 def _figures(status: Status, seconds: float) -> str:

@@ -2,8 +2,8 @@
 
 from typing import NamedTuple
 
-from tracer.engine.runspec.interval import Interval
 from tracer.errors import InputError
+from tracer.inputs.interval import Interval
 from tracer.units import Quantity, parse, quoted, si
 
 

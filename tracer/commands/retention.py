@@ -25,8 +25,8 @@ from tracer.commands.retention_bodies import (
 from tracer.commands.retention_report import BodyReport, Wind, body_report
 from tracer.commands.retention_text import print_legend, print_report
 from tracer.constants import SOLAR_SYSTEM_AGE
-from tracer.engine.runspec.interval import Interval
 from tracer.errors import InputError
+from tracer.inputs.interval import Interval
 from tracer.physics.retention import SIX_TIMES, kept_jeans_parameter
 from tracer.physics.thermal import escape_speed, most_probable_speed, rms_speed
 from tracer.plots.retention_field import BodyPoint, GasLimit, retention_field

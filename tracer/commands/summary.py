@@ -67,6 +67,8 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
                     strict=True,
                 )
             ),
+            "roulette_balance": float(one["roulette_balance"]),
+            "roulette_balance_standard_error": float(one["roulette_balance_standard_error"]),
             "mean_flights": float(one["mean_flights"]),
             "mean_life": float(one["mean_life"]),
         }

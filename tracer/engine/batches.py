@@ -8,12 +8,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tracer.engine.kernel_world import kernel_world, world_of_release
-from tracer.engine.launching import draw_launches
+from tracer.engine.launching import draw_launches, make_launches
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
-from tracer.kernels.resume import ENDED, STEPS, new_resume
+from tracer.kernels.resume import AGE, ENDED, STEPS, UNDER_WAY, Resume, new_resume
 from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
+from tracer.physics.release.even_numbers import EvenNumbers
+from tracer.physics.release.strata import Strata, draw, one_stratum
 from tracer.tally.buffer import BufferLayout, make_layout, tally_views
 
 SLICE_SECONDS = 0.1
@@ -47,23 +49,29 @@ class BatchResult(NamedTuple):
 
 
 class Work(NamedTuple):
-    """All that a worker needs to trace any batch of a run."""
+    """All that a worker needs to trace any batch of a run.
+
+    `strata` holds each release's; without them a batch is one stratum. `stratified` False draws independent launches
+    instead, which only measures what the strata gain.
+    """
 
     scene: Scene
     world: World
     layout: BufferLayout
     seed: int
     particles: int
+    strata: tuple[Strata, ...] = ()
+    stratified: bool = True
 
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
-    layout = make_layout(scene.grid, scene.planes, len(scene.lines))
+    layout = make_layout(scene.grid, scene.planes, len(scene.lines), scene.desorption is not None)
     return Work(scene, kernel_world(scene), layout, seed, particles)
 
 
 def trace_batch(
-    work: Work, task: Task, tell: Callable[[int, int], None], stopped: Callable[[], bool]
+    work: Work, task: Task, tell: Callable[[float, int], None], stopped: Callable[[], bool]
 ) -> BatchResult:
     """Trace one batch in slices.
 
@@ -72,7 +80,8 @@ def trace_batch(
     work, task
         What to trace. Random numbers depend on seed, release and batch alone.
     tell : callable
-        Called after each slice with the number of atoms and of flights it has finished.
+        Called after each slice with how many atoms and flights it has finished; an atom under way counts by its age
+        over the age limit, so that a life of many slices shows.
     stopped : callable
         Asked after each slice; where it says True the batch is given up.
 
@@ -86,24 +95,41 @@ def trace_batch(
     release = work.scene.releases[task.release]
     buffer = np.zeros(work.layout.size)
     tally = tally_views(work.layout, buffer)
-    weight = release.rate / work.particles
     world = world_of_release(work.world, release)
+    supply = EvenNumbers(rng, work.stratified)
+    strata = work.strata[task.release] if work.strata else one_stratum(work.particles)
     flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
     for first in range(0, work.particles, BLOCK):
         count = min(BLOCK, work.particles - first)
-        launches = draw_launches(work.scene, release, count, rng, weight)
+        u, shares = draw(strata, supply, first, count)
+        launches = make_launches(work.scene, release, u, release.rate * shares)
         resume = new_resume(len(work.scene.lines))
-        while (atoms_before := int(resume.counters[ENDED])) < count:
+        followed = 0.0
+        while resume.counters[ENDED] < count:
             begin = thread_time()
             made = trace_slice(world, launches, resume, tally, rng, budget)
             spent = thread_time() - begin
             flights, seconds = flights + made, seconds + spent
             budget = next_budget(budget, spent)
-            tell(int(resume.counters[ENDED]) - atoms_before, made)
+            before, followed = followed, _followed(resume, work.scene)
+            tell(followed - before, made)
             if stopped():
                 raise Interrupted("interrupted")
         steps += int(resume.counters[STEPS])
     return BatchResult(buffer, flights, steps, seconds)
+
+
+def _followed(resume: Resume, scene: Scene) -> float:
+    """Return the atoms followed so far: those that have ended, and of one under way the share of its longest life.
+
+    About a moving body an atom flies several times, and no share is counted.
+    """
+    if scene.event_window is not None:
+        return float(resume.counters[ENDED])
+    ages = (
+        resume.atom[UNDER_WAY] * resume.atom[AGE] + (resume.atoms[:, UNDER_WAY] * resume.atoms[:, AGE]).sum()
+    )
+    return float(resume.counters[ENDED] + ages / scene.age_limit)
 
 
 def next_budget(budget: int, spent: float) -> int:

@@ -1,18 +1,25 @@
 """From a scene to the NamedTuples of floats and arrays that kernels take."""
 
 from collections.abc import Sequence
-from math import log
+from math import log, nan
 
 import numpy as np
 
 from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
+from tracer.engine.ground import ColdTraps
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
+from tracer.kernels.adsorption import Adsorption
 from tracer.kernels.bounce import Surface
-from tracer.kernels.cells import Cells, Images
+from tracer.kernels.cells import Cells, Images, make_cells
 from tracer.kernels.motion import Losses
+from tracer.kernels.quantiles import quantile_nodes
+from tracer.kernels.roulette import WEIGHTED
 from tracer.kernels.step_control import DEFAULT_TOLERANCE
+from tracer.kernels.sticking import Sticking
+from tracer.kernels.surface_map import SurfaceMap
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
+from tracer.kernels.traps import MAPPED, NOWHERE, POLEWARD, Traps
 from tracer.kernels.world import Light, Motion, Snapshot, World
 from tracer.physics.lines import line_tables, push_tables
 from tracer.physics.orbit import Station
@@ -35,11 +42,14 @@ def kernel_world(scene: Scene) -> World:
         Surface(
             # Nothing bounces and nothing takes the ground's temperature where none is given.
             temperature=_typed(scene.surface_temperature or SurfaceTemperature(UNIFORM, np.nan, np.nan)),
-            sticking=float(scene.sticking),
+            sticking=Sticking(*map(float, scene.sticking)),
             accommodation=float(scene.accommodation),
             speed_squared_per_kelvin=2.0 * BOLTZMANN / scene.mass,
             spin=float(scene.ground_spin),
         ),
+        _adsorption(scene),
+        _traps(scene.cold_traps),
+        WEIGHTED,
         _cells(scene.grid),
         _images(scene.planes),
         _light(scene),
@@ -63,6 +73,39 @@ def _snapshot(scene: Scene) -> Snapshot | None:
         ground_turns=float(scene.body.rotation_period is not None),
         follows_distance=0.0,
     )
+
+
+def _adsorption(scene: Scene) -> Adsorption:
+    """Return what holds adsorbed atoms; those kept for good never ask for its numbers."""
+    law = scene.desorption
+    if law is None:
+        return Adsorption(False, nan, nan, 0.0, np.zeros(2), False)
+    speeds, thermal = np.zeros(2), False
+    if law.photon is not None:
+        u = quantile_nodes()
+        # The speeds of a law that takes the ground's temperature go with its root; other laws do not look at it.
+        speeds, warmer = (
+            law.photon.speed.speeds(u, np.full(len(u), kelvin), scene.mass) for kelvin in (1.0, 4.0)
+        )
+        thermal = not np.array_equal(speeds, warmer)
+    return Adsorption(
+        desorbs=True,
+        binding_kelvin=float(law.energy / BOLTZMANN),
+        log_frequency=log(law.attempt_frequency),
+        photon_rate=0.0 if law.photon is None else float(law.photon.rate),
+        photon_speeds=np.ascontiguousarray(speeds),
+        photon_speeds_are_thermal=thermal,
+    )
+
+
+def _traps(traps: ColdTraps | None) -> Traps:
+    nothing = SurfaceMap(np.zeros(2), np.zeros(2), np.zeros((2, 2)))
+    if traps is None:
+        return Traps(NOWHERE, 2.0, nothing)
+    if traps.probability is not None:
+        return Traps(MAPPED, 2.0, traps.probability)
+    assert traps.least_sine is not None
+    return Traps(POLEWARD, float(traps.least_sine), nothing)
 
 
 def _light(scene: Scene) -> Light:
@@ -102,13 +145,14 @@ _NO_SUN = Sunlight(Station(ASTRONOMICAL_UNIT, 0.0, 0.0), None, False, "none", ()
 
 
 def _typed(law: SurfaceTemperature) -> SurfaceTemperature:
-    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night))
+    table = SurfaceMap(*(np.ascontiguousarray(part, dtype=np.float64) for part in law.table))
+    return SurfaceTemperature(int(law.law), float(law.subsolar), float(law.night), table)
 
 
 def _cells(grid: Grid) -> Cells:
     altitudes = grid.altitude_edges
     layers = len(altitudes) - 1
-    return Cells(
+    return make_cells(
         radius=float(grid.body_radius),
         radii=grid.body_radius + altitudes,
         first_altitude=float(altitudes[1]),

@@ -7,6 +7,8 @@ from tracer.engine.scene import Release, Scene
 from tracer.kernels.launches import Launches
 from tracer.kernels.launching import velocities
 from tracer.kernels.temperature import temperatures
+from tracer.physics.release.even_numbers import AZIMUTH, PLACE, SPEED, TURN, ZENITH, EvenNumbers
+from tracer.physics.release.strata import draw, one_stratum
 
 Floats = NDArray[np.float64]
 
@@ -14,18 +16,20 @@ Floats = NDArray[np.float64]
 def draw_launches(
     scene: Scene, release: Release, count: int, rng: np.random.Generator, weight: float
 ) -> Launches:
-    """Return `count` launches of `release`, `weight` [s-1] each.
+    """Return `count` launches of `release`, `weight` [s-1] each, stratified over place, speed and direction."""
+    u, _ = draw(one_stratum(count), EvenNumbers(rng), 0, count)
+    return make_launches(scene, release, u, np.full(count, weight))
 
-    Place, speed, zenith angle and azimuth take five even numbers each.
-    """
-    u = rng.random((count, 5))
-    positions = np.ascontiguousarray(release.place.places(u[:, 0:2]))
+
+def make_launches(scene: Scene, release: Release, u: Floats, weights: Floats) -> Launches:
+    """Return the launches of `release` that even numbers `u` (n, 5) make, with `weights` (n,) [s-1]."""
+    positions = np.ascontiguousarray(release.place.places(u[:, [PLACE, TURN]]))
     law = scene.surface_temperature
-    kelvin = np.full(count, np.nan) if law is None else temperatures(law, positions)
-    speeds = release.speed.speeds(u[:, 2], kelvin, scene.mass)
-    cosines = release.direction.zenith_cosines(u[:, 3])
-    flights = velocities(positions, speeds, cosines, 2.0 * np.pi * u[:, 4])
-    return Launches(positions, flights, np.full(count, weight))
+    kelvin = np.full(len(u), np.nan) if law is None else temperatures(law, positions)
+    speeds = release.speed.speeds(u[:, SPEED], kelvin, scene.mass)
+    cosines = release.direction.zenith_cosines(u[:, ZENITH])
+    flights = velocities(positions, speeds, cosines, 2.0 * np.pi * u[:, AZIMUTH])
+    return Launches(positions, flights, weights)
 
 
 def ground_velocities(scene: Scene, positions: Floats) -> Floats:

@@ -6,6 +6,7 @@ from typing import Any
 
 import numpy as np
 
+from tracer.engine.maps import FLUX_MAP, read_map
 from tracer.engine.refusal import refuse
 from tracer.engine.runspec import direction as direction_tables
 from tracer.engine.runspec import place as place_tables
@@ -20,6 +21,7 @@ from tracer.physics.release.direction.normal import Normal
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
 from tracer.physics.release.place.band import Band
 from tracer.physics.release.place.cosine_power import CosinePower
+from tracer.physics.release.place.flux_map import FluxMap, flux_map
 from tracer.physics.release.place.patch import Patch
 from tracer.physics.release.place.uniform import Uniform
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
@@ -77,6 +79,18 @@ def _table(spec: RunSpec, key: str, table: speed_tables.TabulatedSpeed) -> Table
     return Table(speed, pdf)
 
 
+def _release_map(spec: RunSpec, key: str, table: place_tables.ReleaseMap, radius: float) -> FluxMap:
+    found = read_map(spec, key, table.file, table.variable, FLUX_MAP)
+    if not found.values.any():
+        raise refuse(
+            spec,
+            f"{key}.variable",
+            table.variable,
+            f"of {table.file}: is 0 everywhere; must be above 0 somewhere",
+        )
+    return flux_map(found)
+
+
 _SPEED: Mapping[type, Callable[[RunSpec, str, Any], SpeedLaw]] = MappingProxyType(
     {
         speed_tables.MaxwellFlux: lambda _spec, _key, t: MaxwellFlux(_kelvin(t.temperature)),
@@ -101,5 +115,6 @@ _PLACE: Mapping[type, Callable[[RunSpec, str, Any, float], PlaceLaw]] = MappingP
         place_tables.CosinePower: lambda _spec, _key, t, _radius: CosinePower(_toward(t.toward), t.power),
         place_tables.Patch: _patch,
         place_tables.Band: lambda _spec, _key, t, _radius: Band(si(t.latitude[0]), si(t.latitude[1])),
+        place_tables.ReleaseMap: _release_map,
     }
 )

@@ -5,8 +5,12 @@ from collections.abc import Iterator
 from tracer.catalogue.load import bodies
 from tracer.engine.body_constants import overridden_constants
 from tracer.engine.runspec.run import RunSpec
+from tracer.engine.runspec.temperature import Hurley2015
 from tracer.engine.scene import Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g, replaced_lines
+
+FITTED_BODY = "Moon"
+"""Whose observed temperatures `hurley-2015` describes."""
 
 
 def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
@@ -20,6 +24,10 @@ def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
             f"{scene.outer_radius / scene.body.radius:.4g} radii: cells out there stay empty, and the cell that the "
             "outer radius cuts shows too little"
         )
+    if scene.desorption is not None and spec.surface.sticking == 0.0:
+        yield "sticking is 0: nothing is adsorbed, and surface.desorption has no effect"
+    if isinstance(spec.surface.temperature, Hurley2015) and spec.body.name != FITTED_BODY:
+        yield f"the temperature law hurley-2015 was fitted to the {FITTED_BODY}, not to {spec.body.name}"
     if scene.sun is not None:
         yield from _sun_notes(spec, scene.sun)
 

@@ -52,7 +52,7 @@ def make_product(plan: Plan, folder: Folder, costs: Costs) -> xr.Dataset:
     """
     scene = plan.scene
     fields = _fields(scene, folder)
-    _check_budget(scene, fields["ledger"].mean)
+    _check_budget(scene, fields["ledger"].mean, fields["roulette_balance"].mean)
     product = assemble(
         scene.grid,
         scene.planes,
@@ -115,13 +115,14 @@ def _place(field: ProductField, number: int) -> tuple[slice | int | EllipsisType
     return (*(slice(None),) * int(field.by_line), number, ...)
 
 
-def _check_budget(scene: Scene, ledger: NDArray[np.float64]) -> None:
-    for release, fates in zip(scene.releases, ledger, strict=True):
-        gap = budget_gap(release.rate, fates)
+def _check_budget(scene: Scene, ledger: Numbers, roulette: Numbers) -> None:
+    for release, fates, balance in zip(scene.releases, ledger, roulette, strict=True):
+        gap = budget_gap(release.rate, fates, float(balance))
         if not gap <= CLOSURE:
             raise TracerError(
                 f"the particle budget of release {release.name!r} does not close: the fates sum to {fates.sum():.12g} "
-                f"of {release.rate:.12g} atoms per second. This is a fault of the program, not of the run file"
+                f"of {release.rate + balance:.12g} atoms per second. "
+                "This is a fault of the program, not of the run file"
             )
         if fates[Fate.UNRESOLVED] != 0.0:
             raise TracerError(

@@ -5,8 +5,9 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.constants import ASTRONOMICAL_UNIT
+from tracer.constants import ASTRONOMICAL_UNIT, BOLTZMANN
 from tracer.engine.batches import make_work
+from tracer.engine.emphasis import rarest_launch
 from tracer.engine.launching import draw_launches, ground_velocities
 from tracer.engine.memory import GIGABYTE, available_memory, sizes
 from tracer.engine.notes import scene_notes
@@ -15,6 +16,7 @@ from tracer.engine.runspec.moment import moment_text
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import Sunlight, lines_without_g, true_anomaly
+from tracer.engine.surface_preview import SurfacePreview, preview_surface
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
 from tracer.kernels.temperature import temperatures
@@ -35,6 +37,14 @@ from tracer.physics.thermal import (
 TRIAL_LAUNCHES = 20_000
 TRIAL_SEED = 1
 
+EQUATOR = {
+    "noon": (1.0, 0.0, 0.0),
+    "dusk": (0.0, 1.0, 0.0),
+    "midnight": (-1.0, 0.0, 0.0),
+    "dawn": (0.0, -1.0, 0.0),
+}
+"""Unit vectors of the places whose residence times are shown."""
+
 ARCS = "closed-form Kepler arcs"
 INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
 
@@ -46,7 +56,8 @@ class ReleasePreview(NamedTuple):
     the jeans parameter and the scale height are those of that temperature; `launch_speed` [m s-1] is the mean of the
     trial launches; medians of `hop_time` [s] and `hop_range` [m] over the
     trial launches that land, None where none does; `crossing_fraction` of the trial launches cross the outer radius.
-    Trial launches fly under gravity alone.
+    Trial launches fly under gravity alone. `rarest_launch` is the share of the fastest launches that emphasis "far"
+    tells apart, None with emphasis "even".
     """
 
     name: str
@@ -61,6 +72,7 @@ class ReleasePreview(NamedTuple):
     hop_time: float | None
     hop_range: float | None
     crossing_fraction: float
+    rarest_launch: float | None
 
 
 class SunPreview(NamedTuple):
@@ -87,16 +99,30 @@ class SunPreview(NamedTuple):
     lines_without_g: tuple[str, ...]
 
 
+class ResidencePreview(NamedTuple):
+    """How long the ground holds an atom at one place of the equator: `temperature` [K], `residence_time` [s].
+
+    That is exp(E/kT)/frequency, as if the place kept its temperature; infinite where no number can hold it.
+    """
+
+    place: str
+    temperature: float
+    residence_time: float
+
+
 class Preview(NamedTuple):
     """The resolved scene in SI units; `memory` and `product_size` [bytes] are what to expect at the most.
 
-    `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that act everywhere alike.
+    `residence` is empty where adsorbed atoms are kept for good; `photon_desorption_rate` [s-1] that of sunlight from
+    overhead, None where it frees none. `sun` is None where there is no Sun; `loss_rate` [s-1] is that of losses that
+    act everywhere alike.
     """
 
     body: str
     species: str
     propagator: str
     sun: SunPreview | None
+    surface: SurfacePreview
     radius: float
     gm: float
     surface_gravity: float
@@ -107,10 +133,13 @@ class Preview(NamedTuple):
     age_limit: float
     mass: float
     loss_rate: float
+    residence: tuple[ResidencePreview, ...]
+    photon_desorption_rate: float | None
     releases: tuple[ReleasePreview, ...]
     particles: int
     batches: int
     seed: int
+    emphasis: str
     memory: int
     product_size: int
     notes: tuple[str, ...]
@@ -126,6 +155,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         species=spec.gas.species,
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
+        surface=preview_surface(spec, scene),
         radius=body.radius,
         gm=body.gm,
         surface_gravity=surface_gravity(body.gm, body.radius),
@@ -136,10 +166,13 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         age_limit=scene.age_limit,
         mass=scene.mass,
         loss_rate=scene.constant_hazard,
+        residence=tuple(_preview_residence(scene)),
+        photon_desorption_rate=_photon_desorption_rate(scene),
         releases=releases,
         particles=spec.ensemble.particles_per_batch * spec.ensemble.most_batches * len(releases),
         batches=spec.ensemble.most_batches,
         seed=spec.ensemble.seed,
+        emphasis=scene.emphasis,
         memory=memory,
         product_size=product_size,
         notes=(*scene_notes(spec, scene), *_outflow_notes(releases), *_memory_notes(memory)),
@@ -167,6 +200,23 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
     )
 
 
+def _preview_residence(scene: Scene) -> Iterator[ResidencePreview]:
+    law, kelvins = scene.desorption, scene.surface_temperature
+    if law is None or kelvins is None:
+        return
+    for place, at in EQUATOR.items():
+        kelvin = float(temperatures(kelvins, np.array([at]))[0])
+        with np.errstate(over="ignore"):
+            time = float(np.exp(law.energy / (BOLTZMANN * kelvin)) / law.attempt_frequency)
+        yield ResidencePreview(place, kelvin, time)
+
+
+def _photon_desorption_rate(scene: Scene) -> float | None:
+    if scene.desorption is None or scene.desorption.photon is None:
+        return None
+    return scene.desorption.photon.rate
+
+
 def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
     launches = draw_launches(scene, release, TRIAL_LAUNCHES, np.random.default_rng(TRIAL_SEED), 1.0)
     motion = make_work(scene, 0, 1).world.motion
@@ -185,6 +235,7 @@ def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
         hop_time=float(np.median(durations[landed])) if landed.any() else None,
         hop_range=float(np.median(arcs[landed])) * scene.body.radius if landed.any() else None,
         crossing_fraction=float(np.mean(endings == CROSSED)),
+        rarest_launch=None if scene.emphasis == "even" else rarest_launch(scene, release),
     )
 
 

@@ -7,11 +7,11 @@ from typing import NamedTuple, Protocol
 class Status(NamedTuple):
     """How far a run has come.
 
-    `atoms` of `atoms_expected` have been followed to their end, on `flights` launches; `batches` of
+    `atoms` of `atoms_expected` have been followed, those under way in part, on `flights` launches; `batches` of
     `batches_expected` are folded; `relative_error` is None before two batches.
     """
 
-    atoms: int
+    atoms: float
     atoms_expected: int
     flights: int
     batches: int
@@ -45,12 +45,12 @@ def no_note(event: str, text: str, **facts: float | str | None) -> None:
 class Counter:
     """Atoms and flights so far, added up over the workers' threads."""
 
-    def __init__(self, atoms: int = 0, flights: int = 0) -> None:
+    def __init__(self, atoms: float = 0.0, flights: int = 0) -> None:
         self._lock = Lock()
         self.atoms = atoms
         self.flights = flights
 
-    def add(self, atoms: int, flights: int) -> None:
+    def add(self, atoms: float, flights: int) -> None:
         """Count what a slice has finished."""
         with self._lock:
             self.atoms += atoms

@@ -7,23 +7,36 @@ import numpy as np
 
 from tracer.catalogue.load import gases
 from tracer.engine.body_constants import BodyConstants, resolve_body
+from tracer.engine.ground import (
+    ColdTraps,
+    Desorption,
+    ground_files,
+    resolve_cold_traps,
+    resolve_desorption,
+)
 from tracer.engine.laws import direction_law, place_law, speed_law
 from tracer.engine.refusal import refuse
 from tracer.engine.runspec.grid import GridTable
 from tracer.engine.runspec.image import ImageTable, product_name
+from tracer.engine.runspec.place import ReleaseMap
 from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
-from tracer.engine.runspec.temperature import TemperatureLaw, UniformTemperature
+from tracer.engine.runspec.sticking import ExponentialSticking
+from tracer.engine.runspec.temperature import TemperatureMap
 from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
-from tracer.kernels.temperature import QUARTER_POWER, UNIFORM, SurfaceTemperature
+from tracer.engine.surface_temperature import surface_temperature
+from tracer.kernels.sticking import Sticking
+from tracer.kernels.temperature import SurfaceTemperature
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
 from tracer.product.layout import variable_names
 from tracer.tally.axes import Grid, ImagePlane, make_grid, make_image_plane, viewer_direction
 from tracer.units import si
+
+_BY_FILE = TabulatedSpeed | ReleaseMap | TemperatureMap
 
 FARTHEST = 1e8
 """Largest outer radius in radii: beyond it an arc's end loses the digits that landing and escape promise."""
@@ -65,8 +78,9 @@ class Scene(NamedTuple):
     """All that decides the physics and the cells of a run, in SI units.
 
     `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body,
-    `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it; `outer_radius` [m] from the centre,
-    `age_limit` [s].
+    `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it, `desorption` where adsorbed atoms are
+    kept for good, `cold_traps` where there are none; `outer_radius` [m] from the centre, `age_limit` [s]; `emphasis`
+    says which launches are sampled densely, "even" or "far".
     """
 
     body: BodyConstants
@@ -75,12 +89,15 @@ class Scene(NamedTuple):
     losses: tuple[Loss, ...]
     releases: tuple[Release, ...]
     surface_temperature: SurfaceTemperature | None
-    sticking: float
+    sticking: Sticking
     accommodation: float
+    desorption: Desorption | None
+    cold_traps: ColdTraps | None
     outer_radius: float
     age_limit: float
     grid: Grid
     planes: tuple[ImagePlane, ...]
+    emphasis: str
 
     @property
     def lines(self) -> tuple[VelocityTable, ...]:
@@ -134,31 +151,47 @@ def build_scene(spec: RunSpec) -> Scene:
     """
     body = resolve_body(spec)
     _refuse_colliding_images(spec)
-    temperature = spec.surface.temperature
+    _refuse_rest_on_uneven_ground(spec)
+    sun = resolve_sunlight(spec, body)
     return Scene(
         body=body,
-        sun=resolve_sunlight(spec, body),
+        sun=sun,
         mass=_mass(spec),
         losses=tuple(
             Loss(loss.name, si(loss.rate), loss.scaling == "inverse-square", loss.where == "sunlight")
             for loss in spec.gas.loss
         ),
         releases=tuple(_release(spec, i, entry, body.radius) for i, entry in enumerate(spec.release, 1)),
-        surface_temperature=None if temperature is None else _surface_temperature(temperature),
-        sticking=spec.surface.sticking,
+        surface_temperature=surface_temperature(spec, body, sun),
+        sticking=_sticking(spec.surface.sticking),
         accommodation=spec.surface.accommodation,
+        desorption=resolve_desorption(spec, sun),
+        cold_traps=resolve_cold_traps(spec),
         outer_radius=_outer_radius(spec, body),
         age_limit=si(spec.domain.age_limit),
         grid=_grid(spec, spec.grid, body.radius),
         planes=tuple(_plane(spec, i, image, body.radius) for i, image in enumerate(spec.image, 1)),
+        emphasis=spec.ensemble.emphasis,
     )
 
 
 def referenced_files(spec: RunSpec) -> tuple[Path, ...]:
     """Return the files that the run file refers to, in its order."""
-    tables = (entry.speed for entry in spec.release)
-    names = [table.file for table in tables if isinstance(table, TabulatedSpeed)]
-    return tuple(spec.folder / name for name in [*names, *g_files(spec)])
+    laws = [law for entry in spec.release for law in (entry.speed, entry.place)]
+    names = [law.file for law in (*laws, spec.surface.temperature) if isinstance(law, _BY_FILE)]
+    return tuple(spec.folder / name for name in [*names, *g_files(spec), *ground_files(spec)])
+
+
+def _refuse_rest_on_uneven_ground(spec: RunSpec) -> None:
+    """Refuse atoms at rest on a body that moves: how long they stay is known for ground that turns evenly."""
+    if spec.sun is not None and spec.sun.motion == "moving" and spec.surface.adsorbed == "desorbed":
+        raise refuse(
+            spec,
+            "sun.motion",
+            spec.sun.motion,
+            'stands beside surface.adsorbed "desorbed": the ground of a moving body turns unevenly under the Sun, and '
+            'how long atoms rest on it is not known; must be "stationary", or surface.adsorbed "captured"',
+        )
 
 
 def _refuse_colliding_images(spec: RunSpec) -> None:
@@ -210,10 +243,10 @@ def _follows_distance(spec: RunSpec, key: str, entry: ReleaseTable) -> bool:
     return True
 
 
-def _surface_temperature(law: TemperatureLaw) -> SurfaceTemperature:
-    if isinstance(law, UniformTemperature):
-        return SurfaceTemperature(UNIFORM, si(law.value), si(law.value))
-    return SurfaceTemperature(QUARTER_POWER, si(law.subsolar), si(law.night))
+def _sticking(given: float | ExponentialSticking) -> Sticking:
+    if isinstance(given, ExponentialSticking):
+        return Sticking(given.value, si(given.at), si(given.e_folding))
+    return Sticking(given, 0.0, np.inf)
 
 
 def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:

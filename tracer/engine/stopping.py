@@ -15,6 +15,7 @@ from tracer.engine.runspec.run import RunSpec
 from tracer.engine.runspec.stop import RegionTable, StopTable
 from tracer.engine.scene import Scene
 from tracer.product.layout import (
+    ADSORBED_COLUMN,
     ALTITUDE,
     HORIZONTAL,
     IMAGE,
@@ -103,6 +104,8 @@ def _variable(spec: RunSpec, scene: Scene, stop: StopTable) -> Variable:
     rows = layout([plane.name for plane in scene.planes], bool(scene.lines))
     cells = (LATITUDE, *(axis for plane in scene.planes for axis in _image_axes(plane.name)))
     known = {name: row for name, row in rows.items() if row.tallied and set(row.dimensions) & set(cells)}
+    if scene.desorption is None:
+        del known[ADSORBED_COLUMN]
     if stop.variable not in known:
         raise refuse(
             spec, "ensemble.stop.variable", stop.variable, f"is not tallied here; one of {', '.join(known)}"

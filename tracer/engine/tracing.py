@@ -7,6 +7,7 @@ import xarray as xr
 
 from tracer.engine.batches import BatchResult, Task, compile_kernels
 from tracer.engine.checkpoint_slots import Checkpoints
+from tracer.engine.emphasis import with_emphasis
 from tracer.engine.executors.seam import MapBatches, Tick
 from tracer.engine.executors.threads import map_batches
 from tracer.engine.folding import Folder
@@ -70,6 +71,7 @@ def run(
         raise InputError(f"workers: {workers} is too few; at least 1")
     plan = make_plan(spec, build_scene(spec), batches)
     refuse_what_does_not_fit(plan, workers)
+    plan = plan._replace(work=with_emphasis(plan.work))
     compile_kernels(plan.work)
     folder = plan.new_folder()
     checkpoints = Checkpoints(None) if checkpoints is None else checkpoints
@@ -131,7 +133,8 @@ def _arrived(
 
 def _status(plan: Plan, folder: Folder, workers: int, counter: Counter) -> Status:
     return Status(
-        atoms=counter.atoms,
+        # Parts of atoms add up to rounding.
+        atoms=round(counter.atoms, 6),
         atoms_expected=folder.tasks * plan.work.particles,
         flights=counter.flights,
         batches=folder.batches,

@@ -3,23 +3,32 @@
 import math
 from typing import NamedTuple
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.sticking import Sticking, sticking_probability
 from tracer.kernels.temperature import SurfaceTemperature, temperature
 
 
 class Surface(NamedTuple):
     """What the ground does to a returning atom.
 
-    `sticking` is the probability of capture, `accommodation` the share of its energy that it exchanges with the
+    `sticking` says how likely capture is, `accommodation` the share of its energy that it exchanges with the
     ground, `speed_squared_per_kelvin` = 2 k/m [m2 s-2 K-1], `spin` the ground's angular rate in the Sun-fixed frame
     [rad s-1] about +z.
     """
 
     temperature: SurfaceTemperature
-    sticking: float
+    sticking: Sticking
     accommodation: float
     speed_squared_per_kelvin: float
     spin: float
+
+
+@kernel
+def sticking_at(surface, nx, ny, nz):
+    """Return the probability that an atom that lands at unit vector (nx, ny, nz) is adsorbed."""
+    if surface.sticking.e_folding == math.inf:
+        return surface.sticking.value
+    return sticking_probability(surface.sticking, temperature(surface.temperature, nx, ny, nz))
 
 
 @kernel
@@ -55,7 +64,7 @@ def direction_about(nx, ny, nz, cosine, azimuth):
     )
 
 
-@kernel
+@inlined
 def rebound(rng, surface, nx, ny, nz, incoming_speed_squared):
     """Return the velocity [m s-1], relative to the ground, of an atom that bounces at unit vector (nx, ny, nz).
 

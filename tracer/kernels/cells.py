@@ -5,14 +5,9 @@ from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.cell_tables import CellTables, column_of, layer_of, make_tables, row_of
 from tracer.kernels.compiling import inlined, kernel
-from tracer.kernels.first_guess import (
-    ANGLE_ERROR,
-    ARCSINE_ERROR,
-    rough_angle,
-    rough_arcsine,
-    rough_logarithm,
-)
+from tracer.kernels.first_guess import ANGLE_ERROR, ARCSINE_ERROR
 
 
 class Cells(NamedTuple):
@@ -28,14 +23,26 @@ class Cells(NamedTuple):
     cells_per_log: float
     latitude_cells: int
     local_time_cells: int
+    tables: CellTables
+
+
+def make_cells(
+    radius: float,
+    radii: np.ndarray,
+    first_altitude: float,
+    cells_per_log: float,
+    latitude_cells: int,
+    local_time_cells: int,
+) -> Cells:
+    """Return the `Cells` with these numbers and the tables for them."""
+    tables = make_tables(radii, first_altitude, latitude_cells, local_time_cells)
+    return Cells(radius, radii, first_altitude, cells_per_log, latitude_cells, local_time_cells, tables)
 
 
 @inlined
 def altitude_cell(cells, r):
     """Return the altitude cell of distance `r` [m] from the centre, -1 above the grid's top."""
-    return close_layer(
-        cells, r, rough_logarithm((r - cells.radius) / cells.first_altitude) * cells.cells_per_log
-    )
+    return layer_of(cells.tables, cells.radii, cells.first_altitude, r)
 
 
 @inlined
@@ -58,7 +65,7 @@ def close_layer(cells, r, guess):
 @inlined
 def latitude_cell(cells, sine):
     """Return the latitude cell, counted from the south pole, of a place with sin(latitude) = `sine`."""
-    return row_at(cells, (rough_arcsine(sine) / math.pi + 0.5) * cells.latitude_cells, sine)
+    return row_of(cells.tables, sine)
 
 
 @inlined
@@ -73,7 +80,7 @@ def row_at(cells, place, sine):
 @inlined
 def local_time_cell(cells, x, y):
     """Return the local-time cell, counted from midnight, of a place at (x, y) in the Sun-fixed frame."""
-    return column_at(cells, (0.5 + rough_angle(x, y) / (2.0 * math.pi)) * cells.local_time_cells, x, y)
+    return column_of(cells.tables, x, y)
 
 
 @inlined

@@ -5,3 +5,5 @@ LANDED = 0
 CROSSED = 1
 AGED = 2
 UNRESOLVED = 3
+DROPPED = 4
+"""Its weight had become negligible, and roulette ended it."""

@@ -6,12 +6,16 @@ from numba.core import types
 from numba.extending import overload
 
 from tracer.fate import Fate
-from tracer.kernels.bounce import rebound
+from tracer.kernels.adsorption import desorbed, spread_along, stay
+from tracer.kernels.arc_flight import turned
+from tracer.kernels.bounce import rebound, sticking_at
 from tracer.kernels.compiling import INLINED, inlined, merged
-from tracer.kernels.endings import AGED, CROSSED, LANDED
+from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED
 from tracer.kernels.orbit import field_type, orbit_state, turning_at
 from tracer.kernels.resume import AGE, CLOCK, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
+from tracer.kernels.roulette import play_roulette
 from tracer.kernels.scoring import ground_cell
+from tracer.kernels.traps import NOWHERE, trapped
 
 
 @inlined
@@ -47,7 +51,7 @@ def release(world, launches, i, atom, tally):
     atom[HOME_COLUMN] = column
     atom[UNDER_WAY] = 1.0
     v = launches.velocities
-    _launch(world, atom, nx, ny, nz, v[i, 0], v[i, 1], v[i, 2])
+    _launch(world.motion.radius, ground_spin(world, atom), atom, nx, ny, nz, v[i, 0], v[i, 1], v[i, 2])
 
 
 @merged
@@ -75,10 +79,8 @@ def come_down(world, atom, tally, alive, end, rng):
 
 
 @merged
-def _launch(world, atom, nx, ny, nz, vx, vy, vz):
+def _launch(radius, spin, atom, nx, ny, nz, vx, vy, vz):
     """Put an atom at the ground under unit vector n with velocity v relative to the ground, which turns."""
-    radius = world.motion.radius
-    spin = ground_spin(world, atom)
     atom[0] = radius * nx
     atom[1] = radius * ny
     atom[2] = radius * nz
@@ -93,16 +95,47 @@ def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
     nx, ny, nz = x / r, y / r, z / r
     row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
     tally.returned[row, column] += alive
-    if rng.random() < world.surface.sticking:
+    kept = world.traps.where != NOWHERE and trapped(world.traps, nx, ny, nz, rng)
+    adsorbed = not kept and rng.random() < sticking_at(world.surface, nx, ny, nz)
+    if kept or (adsorbed and not world.adsorption.desorbs):
         tally.captured[row, column] += alive
         tally.ledger[Fate.CAPTURED] += alive
         atom[UNDER_WAY] = 0.0
+        return
+    atom[SURVIVAL] = play_roulette(
+        world.roulette.gain, tally, atom[WEIGHT], atom[SURVIVAL], world.roulette.on_ground, rng
+    )
+    if atom[SURVIVAL] == 0.0:
+        atom[UNDER_WAY] = 0.0
+        return
+    if adsorbed:
+        _rest(world, atom, tally, row, nx, ny, nz, rng)
         return
     spin = ground_spin(world, atom)
     ux = vx + spin * y
     uy = vy - spin * x
     out = rebound(rng, world.surface, nx, ny, nz, ux * ux + uy * uy + vz * vz)
-    _launch(world, atom, nx, ny, nz, out[0], out[1], out[2])
+    _launch(world.motion.radius, spin, atom, nx, ny, nz, out[0], out[1], out[2])
+
+
+@merged
+def _rest(world, atom, tally, row, nx, ny, nz, rng):
+    """Keep an adsorbed atom until it leaves or its time is up: at rest nothing but age takes from it."""
+    surface = world.surface
+    alive = atom[WEIGHT] * atom[SURVIVAL]
+    limit = world.motion.age_limit - atom[AGE]
+    time, by_light = stay(surface.temperature, world.adsorption, surface.spin, (nx, ny, nz), limit, rng)
+    way = surface.spin * time
+    spread_along(tally.adsorbed[row], math.atan2(ny, nx), way, alive * time)
+    tally.life[0] += alive * time
+    atom[AGE] += time
+    if time >= limit:
+        tally.ledger[Fate.AGE_LIMIT] += alive
+        atom[UNDER_WAY] = 0.0
+        return
+    mx, my = turned(nx, ny, -way)
+    out = desorbed(rng, surface, world.adsorption, mx, my, nz, by_light)
+    _launch(world.motion.radius, surface.spin, atom, mx, my, nz, out[0], out[1], out[2])
 
 
 @merged
@@ -114,6 +147,6 @@ def _end_aloft(world, atom, tally, ending, alive, x, y, z):
         tally.escaped_by_direction[row, column] += alive
     elif ending == AGED:
         tally.ledger[Fate.AGE_LIMIT] += alive
-    else:
+    elif ending != DROPPED:
         tally.ledger[Fate.UNRESOLVED] += alive
     atom[UNDER_WAY] = 0.0

@@ -43,6 +43,8 @@ _ROWS = (
     ("PER_ALLOWED", 1),
     ("ALIVE", 1),
     ("KEPT", 1),
+    # The part below which roulette is played.
+    ("LEAST", 1),
     # The step that was tried: its length [s]; 1 where only part of the Sun is seen; the part that is; the push of lines
     # beyond the first tables [m s-2]; 1 where age ends it, where it is accepted, where it needs a closer look; the
     # factor to the next; the part of it that is flown.
@@ -107,6 +109,7 @@ STANDING = _FIRST["STANDING"]
 PER_ALLOWED = _FIRST["PER_ALLOWED"]
 ALIVE = _FIRST["ALIVE"]
 KEPT = _FIRST["KEPT"]
+LEAST = _FIRST["LEAST"]
 LENGTH = _FIRST["LENGTH"]
 PARTIAL = _FIRST["PARTIAL"]
 LIT = _FIRST["LIT"]

@@ -16,8 +16,10 @@ class Tally(NamedTuple):
     scaled by (R/r)^2; `image_content` is flat over all image planes. `emission` (line, altitude, latitude,
     local_time) and `image_emission` (line, pixel) hold samples times scattered photons a second, `ionized` (altitude,
     latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time), `ledger` (fate) and
-    `launches` hold weights, `life` weight times survival time, `beyond` samples beyond the end of a line's table. Where
-    the body moves, `aloft` holds all samples, and `older` weight times survival time behind the limit of age.
+    `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without cells where no atom
+    rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond` samples beyond the end
+    of a line's table. Where the body moves, `aloft` holds all samples, and `older` weight times survival time behind
+    the limit of age.
     """
 
     content: np.ndarray
@@ -31,8 +33,10 @@ class Tally(NamedTuple):
     captured: np.ndarray
     escaped: np.ndarray
     escaped_by_direction: np.ndarray
+    adsorbed: np.ndarray
     ledger: np.ndarray
     launches: np.ndarray
+    roulette: np.ndarray
     beyond: np.ndarray
     life: np.ndarray
     aloft: np.ndarray

@@ -101,7 +101,7 @@ def trace_snapshot(
 
 def books_of(tally: Tally) -> tuple[Tally, Tally, Tally]:
     """Return the tallies that ends of flights are entered in: of the cohort, of events in the window, of no account."""
-    numbers = ("ledger", "launches", "life")
+    numbers = ("ledger", "launches", "roulette", "life")
     fluxes = ("returned", "captured", "escaped", "escaped_by_direction")
     kept = {"released", *numbers, *fluxes}
     scrap = Tally(

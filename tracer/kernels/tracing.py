@@ -1,13 +1,10 @@
 """Many atoms, each from its release to its end, in slices that stop and go on."""
 
-import math
-
 import numpy as np
 
-from tracer.fate import Fate
-from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc, score_arc
+from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
-from tracer.kernels.endings import FLYING
+from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.lane_flight import launch_in_lane, look_closer
 from tracer.kernels.lane_sample import sample_steps
@@ -19,6 +16,7 @@ from tracer.kernels.lanes import (
     DRAWN,
     FLAGGED,
     KEPT,
+    LEAST,
     STANDING,
     START,
     TIME,
@@ -29,8 +27,9 @@ from tracer.kernels.lanes import (
     Z,
 )
 from tracer.kernels.launches import Launches
-from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, UNDER_WAY, Resume
-from tracer.kernels.scoring import Tally, mean_survival_time
+from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, SURVIVAL, UNDER_WAY, Resume
+from tracer.kernels.roulette import play_roulette
+from tracer.kernels.scoring import Tally
 from tracer.kernels.snapshot import trace_snapshot
 from tracer.kernels.step_control import care
 from tracer.kernels.world import World
@@ -72,7 +71,10 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
         for lane in range(resume.counters[CURSOR], WIDTH):
             resume.counters[CURSOR] = lane
             if lanes[STANDING + lane] == FLYING:
-                continue
+                if lanes[KEPT + lane] >= lanes[LEAST + lane]:
+                    continue
+                if _survives_roulette(world, tally, lanes, lane, rng):
+                    continue
             if lanes[STANDING + lane] != VACANT:
                 if flights == most_flights:
                     return flights
@@ -93,6 +95,18 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
 
 
 @merged
+def _survives_roulette(world, tally, lanes, lane, rng):
+    """Play roulette with a flight of which little is left, and return True where it goes on."""
+    lanes[KEPT + lane] = play_roulette(
+        world.roulette.gain, tally, lanes[ALIVE + lane], lanes[KEPT + lane], lanes[LEAST + lane], rng
+    )
+    if lanes[KEPT + lane] > 0.0:
+        return True
+    lanes[STANDING + lane] = DROPPED
+    return False
+
+
+@merged
 def _begin_flight(world, launches, resume, tally, lane):
     """Launch the lane's atom again, or a new one, or leave the lane vacant if there are no more."""
     atom, lanes = resume.atoms[lane], resume.lanes
@@ -103,6 +117,7 @@ def _begin_flight(world, launches, resume, tally, lane):
         release(world, launches, resume.counters[RELEASED], atom, tally)
         resume.counters[RELEASED] += 1
     lanes[ALIVE + lane] = take_off(atom, tally)
+    lanes[LEAST + lane] = world.roulette.aloft / atom[SURVIVAL]
     light = world.light
     launch_in_lane(
         lanes,
@@ -142,7 +157,7 @@ def trace_arcs(world, launches, resume, tally, rng, most_flights):
     while flights < most_flights and resume.counters[ENDED] < launches.weights.shape[0]:
         _begin(world, launches, resume, tally)
         alive = take_off(resume.atom, tally)
-        end = _fly_arc(world, resume, tally, alive, rng)
+        end = fly_arc(world, tally, resume.atom, alive, resume.shine, rng)
         _finish(world, resume, tally, alive, end, rng)
         flights += 1
     return flights
@@ -160,18 +175,3 @@ def _finish(world, resume, tally, alive, end, rng):
     come_down(world, resume.atom, tally, alive, end, rng)
     if resume.atom[UNDER_WAY] == 0.0:
         resume.counters[ENDED] += 1
-
-
-@merged
-def _fly_arc(world, resume, tally, alive, rng):
-    """Return (ending, survival, time, position, velocity) of one flight on a closed-form arc, and count it."""
-    atom = resume.atom
-    motion = world.motion
-    arc = launch_arc(motion, atom[0], atom[1], atom[2], atom[3], atom[4], atom[5])
-    ending, s_end = arc_end(motion, arc, motion.age_limit - atom[AGE])
-    score_arc(world, tally, arc, s_end, alive, resume.shine, rng)
-    t, x, y, z, vx, vy, vz = arc_state(motion, arc, s_end)
-    kept = math.exp(-motion.hazard * t)
-    tally.life[0] += alive * mean_survival_time(motion.hazard, t)
-    tally.ledger[Fate.OTHER_LOSS] += alive - alive * kept
-    return ending, kept, t, x, y, z, vx, vy, vz

@@ -4,9 +4,12 @@ from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.adsorption import Adsorption
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images
 from tracer.kernels.motion import Conditions
+from tracer.kernels.roulette import Roulette
+from tracer.kernels.traps import Traps
 
 
 class Motion(NamedTuple):
@@ -46,13 +49,16 @@ class Snapshot(NamedTuple):
 
 
 class World(NamedTuple):
-    """Motion, ground and where to count; flights are integrated under `light` if `integrated`, else arcs.
+    """Motion, ground, roulette and where to count; flights are integrated under `light` if `integrated`, else arcs.
 
     `snapshot` is None where the body stands still.
     """
 
     motion: Motion
     surface: Surface
+    adsorption: Adsorption
+    traps: Traps
+    roulette: Roulette
     cells: Cells
     images: Images
     light: Light

@@ -21,6 +21,11 @@ def hill_radius(orbit: Orbit, gm: float, host_gm: float) -> float:
     return orbit.semi_major_axis * (1.0 - orbit.eccentricity) * math.cbrt(gm / (3.0 * host_gm))
 
 
+def mean_motion(orbit: Orbit) -> float:
+    """Return n = sqrt(GM_sun / a^3) [rad s-1], the mean angular rate on a heliocentric orbit (Kepler's third law)."""
+    return math.sqrt(GM_SUN / orbit.semi_major_axis**3)
+
+
 def angular_momentum(orbit: Orbit) -> float:
     """Return h = sqrt(GM_sun a (1 - e^2)) [m2 s-1] of a heliocentric orbit, per unit mass."""
     return math.sqrt(GM_SUN * orbit.semi_major_axis * (1.0 - orbit.eccentricity**2))

@@ -15,7 +15,10 @@ EXACT = 1e-7
 
 
 class Budget(NamedTuple):
-    """Rates by release and fate [s-1] with their standard errors, NaN where none is known; shape (R, F)."""
+    """Rates by release and fate [s-1] with their standard errors, NaN where none is known; shape (R, F).
+
+    `balance` (R,) is what roulette added by chance.
+    """
 
     names: list[str]
     """Releases, and behind several of them their sum."""
@@ -23,6 +26,12 @@ class Budget(NamedTuple):
     """Fates that any atom met."""
     rate: NDArray[np.float64]
     error: NDArray[np.float64]
+    balance: NDArray[np.float64]
+
+    @property
+    def released(self) -> NDArray[np.float64]:
+        """New atoms a second by release [s-1]."""
+        return np.asarray(self.rate.sum(axis=1) - self.balance)
 
 
 class FateLook(NamedTuple):
@@ -55,16 +64,19 @@ def budget_of(product: xr.Dataset, names: list[str]) -> Budget:
 
     Releases are independent: the variances of their rates add.
     """
-    chosen = product[["ledger", "ledger" + STANDARD_ERROR]].sel(release=names).transpose(RELEASE, FATE)
+    variables = ["ledger", "ledger" + STANDARD_ERROR, "roulette_balance"]
+    chosen = product[variables].sel(release=names).transpose(RELEASE, FATE)
+    balance = chosen["roulette_balance"].values
     rate, error = chosen["ledger"].values, chosen["ledger" + STANDARD_ERROR].values
     if len(names) > 1:
         names = [*names, ALL]
         rate = np.vstack([rate, rate.sum(axis=0)])
+        balance = np.append(balance, balance.sum())
         # `hypot` neither over- nor underflows where squares would.
         error = np.vstack([error, np.hypot.reduce(np.nan_to_num(error), axis=0)])
     met = np.flatnonzero((rate > 0.0).any(axis=0))
     fates = [str(product["fate_name"].values[fate]) for fate in met]
-    return Budget(names, fates, rate[:, met], error[:, met])
+    return Budget(names, fates, rate[:, met], error[:, met], balance)
 
 
 def share_words(share: float, error: float, letters: float) -> str:

@@ -6,11 +6,12 @@ import xarray as xr
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Circle
+from matplotlib.ticker import MaxNLocator
 
 from tracer.plots.body import Vector, draw_body, mark_sun
 from tracer.plots.colour_scale import ROOM_BELOW, Span, bar_below, colour_span, draw_colour_bar
 from tracer.plots.field import released_words, releases
-from tracer.plots.lengths import body_radius, kilometres_across, kilometres_up
+from tracer.plots.lengths import MOST_STEPS, STEPS, body_radius, kilometres_across, kilometres_up
 from tracer.plots.planes import PlaneCells, draw_cells, equatorial, noon_midnight
 from tracer.plots.reading_units import PER_CUBIC_CENTIMETRE
 from tracer.plots.significance import note, say_nothing
@@ -116,6 +117,8 @@ def _lay_out(width: Width, title: str, subtitle: str, caption: str) -> tuple[Fig
 def _draw_panel(axes: Axes, plane: PlaneCells, view: View, span: Span | None, radius: float) -> None:
     top = float(plane.radii[-1])
     axes.set(xlim=(-ROOM * top, ROOM * top), ylim=(-ROOM * top, ROOM * top), aspect="equal")
+    for axis in (axes.xaxis, axes.yaxis):
+        axis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS))
     draw_cells(axes, plane, span, NUMBER_DENSITY_COLOURS)
     axes.add_patch(Circle((0.0, 0.0), top, fill=False, edgecolor="0.4", linewidth=0.4))
     draw_body(axes, view.toward_viewer, view.up, view.right)

@@ -75,6 +75,7 @@ def ledger(product: xr.Dataset, release: str | None = None, width: Width = "full
     budget = budget_of(product, releases(product, release))
     caption = ERROR_WORDS + (SUM_WORDS if budget.names[-1] == ALL else "")
     with styled():
+        caption += _roulette_words(budget)
         figure, panels = _lay_out(width, str(product.attrs.get("title", "")), caption, budget)
         for axes, draw in zip(panels, (_draw_shares, _draw_rates), strict=True):
             draw(axes, budget)
@@ -82,6 +83,15 @@ def ledger(product: xr.Dataset, release: str | None = None, width: Width = "full
             if not budget.fates:
                 say_nothing(axes, 0.5)
     return figure
+
+
+def _roulette_words(budget: Budget) -> str:
+    """Return what roulette did to the sum of the last row, empty where nothing."""
+    balance, released = float(budget.balance[-1]), float(budget.released[-1])
+    if balance == 0.0 or not released > 0.0:
+        return ""
+    added = f"{100.0 * balance / released:+.2g}".replace("-", "−")
+    return f" Roulette with atoms of small weight added {added} % to the released, by chance."
 
 
 def _lay_out(width: Width, title: str, caption: str, budget: Budget) -> tuple[Figure, list[Axes]]:
@@ -189,7 +199,7 @@ def _name_rows(axes: Axes, budget: Budget, named: bool) -> None:
     axes.tick_params(axis="y", length=0.0)
     lines = 2 if rows <= FEW_RELEASES else 1
     labels = []
-    for name, rate in zip(budget.names, budget.rate.sum(axis=1).tolist(), strict=True):
+    for name, rate in zip(budget.names, budget.released.tolist(), strict=True):
         words = [plain(line) for line in broken(name, LEFT - 2.0, SMALL_SIZE, lines)]
         labels.append("\n".join([*words, f"{scientific(rate)} s$^{{-1}}$"] if lines > 1 else words))
     axes.set_yticklabels(labels if named else [])

@@ -44,7 +44,7 @@ def kilometre_unit(extent: float) -> tuple[float, str]:
 def kilometres_across(axes: Axes, radius: float) -> None:
     """Add kilometres along the top of axes whose horizontal is in body radii of `radius` [m]."""
     unit, name = kilometre_unit(radius * max(map(abs, axes.get_xlim())))
-    top = axes.secondary_xaxis("top", functions=_scaling(radius / unit))
+    top = axes.secondary_xaxis("top", functions=scaling(radius / unit))
     top.xaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS))
     top.set_xlabel(name, loc="right")
 
@@ -52,10 +52,11 @@ def kilometres_across(axes: Axes, radius: float) -> None:
 def kilometres_up(axes: Axes, radius: float) -> None:
     """Add kilometres along the right side of axes whose vertical is in body radii of `radius` [m]."""
     unit, name = kilometre_unit(radius * max(map(abs, axes.get_ylim())))
-    side = axes.secondary_yaxis("right", functions=_scaling(radius / unit))
+    side = axes.secondary_yaxis("right", functions=scaling(radius / unit))
     side.yaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS))
     side.set_ylabel(name, loc="top")
 
 
-def _scaling(factor: float) -> tuple[Scaling, Scaling]:
+def scaling(factor: float) -> tuple[Scaling, Scaling]:
+    """Return the way from one axis to another, whose numbers are `factor` times as large, and the way back."""
     return lambda x: np.asarray(x) * factor, lambda x: np.asarray(x) / factor

@@ -20,7 +20,12 @@ MILLIMETRES_PER_POINT = 25.4 / 72.0
 TITLE_SIZE, TEXT_SIZE, SMALL_SIZE = 8.0, 7.0, 6.0
 """Sizes of letters [pt]."""
 
-NUMBER_DENSITY_COLOURS, COLUMN_COLOURS, BRIGHTNESS_COLOURS = "cividis", "viridis", "inferno"
+NUMBER_DENSITY_COLOURS, COLUMN_COLOURS, BRIGHTNESS_COLOURS, FLUX_COLOURS = (
+    "cividis",
+    "viridis",
+    "inferno",
+    "magma",
+)
 """Perceptually uniform colour maps, rising in lightness, so that they survive colour blindness and grey print."""
 
 HATCH, HATCH_COLOUR = "////", "0.62"

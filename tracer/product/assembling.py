@@ -52,7 +52,7 @@ def assemble(
     release_names : sequence of str
         Names along the `release` dimension.
     fields : mapping of str to FieldStatistics
-        Every tallied variable of `layout(images)` by name, in its unit and dimensions.
+        Every tallied variable of `layout(images)` by name, in its unit and dimensions; optional ones may be missing.
     plain : mapping of str to ndarray
         Variables without errors that the grid does not give: `surface_temperature` [K], shape (L, H).
     attributes : mapping
@@ -75,7 +75,7 @@ def assemble(
     sizes |= {dimension: len(labels) for dimension, labels in names.items()}
     variables: dict[str, Entry] = {}
     for name, row in table.items():
-        if row.tallied:
+        if row.tallied and name in fields:
             variables |= _tallied(row, fields[name], images.get(row.image or ""))
         elif name in values:
             variables[name] = (row.dimensions, values[name], _attributes(row))
@@ -191,9 +191,9 @@ def _check_names(
     if twice:
         raise ValueError(f"images of the product: their names collide in {twice}")
     tallied = {name for name, row in table.items() if row.tallied}
-    needed = {name for name, row in table.items() if not row.tallied and not row.optional}
+    needed = {name for name, row in table.items() if not row.optional}
     unknown = (fields.keys() - tallied) | (values.keys() - (table.keys() - tallied))
-    missing = (tallied - fields.keys()) | (needed - values.keys())
+    missing = needed - fields.keys() - values.keys()
     if unknown or missing:
         raise ValueError(f"fields of the product: missing {sorted(missing)}, unknown {sorted(unknown)}")
 

@@ -17,6 +17,9 @@ RELEASE, FATE, LINE = "release", "fate", "line"
 ALTITUDE, LATITUDE, LOCAL_TIME = "altitude", "latitude", "local_time"
 REPLICATE, EDGE = "replicate", "bounds"
 
+ADSORBED_COLUMN = "adsorbed_column"
+"""The one tallied variable that only runs have whose ground holds atoms for a while."""
+
 IMAGE = "<image>"
 """Stands for an image's product name in the rows below."""
 HORIZONTAL, VERTICAL = IMAGE + "_horizontal", IMAGE + "_vertical"
@@ -99,10 +102,17 @@ ROWS = (
         "s-1 sr-1",
         "rate of escape per solid angle, by the place of crossing on the outer sphere",
     ),
+    Variable(ADSORBED_COLUMN, _GROUND, "m-2", "column of atoms at rest on the ground", optional=True),
     Variable("ionization_rate", _CELLS, "m-3 s-1", "ions made by sunlight per volume and time"),
     Variable("ledger", (RELEASE, FATE), "s-1", "particle budget"),
+    Variable(
+        "roulette_balance",
+        (RELEASE,),
+        "s-1",
+        "what roulette added to the particle budget: nothing but for chance",
+    ),
     Variable("mean_flights", (RELEASE,), "1", "launches per released atom"),
-    Variable("mean_life", (RELEASE,), "s", "mean time from release to any end"),
+    Variable("mean_life", (RELEASE,), "s", "mean time from release to any end, time at rest included"),
     Variable(
         "surface_temperature",
         (LATITUDE, LOCAL_TIME),

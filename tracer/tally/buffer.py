@@ -26,10 +26,12 @@ class BufferLayout(NamedTuple):
         return sum(prod(shape) for shape in self.shapes)
 
 
-def make_layout(grid: Grid, planes: Sequence[ImagePlane], lines: int) -> BufferLayout:
+def make_layout(
+    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False
+) -> BufferLayout:
     """Return the layout for a grid, image planes and a number of emission lines.
 
-    What is kept by replicate comes first.
+    Atoms at rest are counted where the ground is `adsorbing`. What is kept by replicate comes first.
     """
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
@@ -37,8 +39,9 @@ def make_layout(grid: Grid, planes: Sequence[ImagePlane], lines: int) -> BufferL
     cells = (altitudes, *ground)
     kept = (cells, ground, (pixels,), (lines, *cells), (lines, pixels))
     fluxes = (ground,) * 5
-    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,))
-    return BufferLayout((*kept, cells, *fluxes, *numbers), sum(prod(shape) for shape in kept))
+    at_rest = ground if adsorbing else (0, 0)
+    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,))
+    return BufferLayout((*kept, cells, *fluxes, at_rest, *numbers), sum(prod(shape) for shape in kept))
 
 
 def plane_shape(plane: ImagePlane) -> tuple[int, int]:

@@ -6,14 +6,12 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.constants import RAYLEIGH
 from tracer.kernels.scoring import Tally
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_solid_angle, cell_volume
 from tracer.tally.buffer import plane_shape, plane_size
 
 Floats = NDArray[np.float64]
-
-RAYLEIGH = 1e10
-"""Photons m-2 s-1 in a rayleigh (Hunten, Roach & Chamberlain 1956, J. Atmos. Terr. Phys. 8, 345: memory)."""
 
 
 class ProductField(NamedTuple):
@@ -68,8 +66,11 @@ def product_fields(
     yield ProductField("capture_flux", tally.captured, per_area)
     yield ProductField("escape_flux", tally.escaped, per_area)
     yield ProductField("escape_rate_by_direction", tally.escaped_by_direction, per_solid_angle)
+    if tally.adsorbed.size:
+        yield ProductField("adsorbed_column", tally.adsorbed, per_area)
     yield ProductField("ionization_rate", tally.ionized, per_volume)
     yield ProductField("ledger", tally.ledger, one)
+    yield ProductField("roulette_balance", tally.roulette[0], one)
     yield ProductField("mean_flights", tally.launches[0], per_atom)
     yield ProductField("mean_life", tally.life[0], per_atom)
 

@@ -26,7 +26,7 @@ speed = {{ law = "maxwell-flux", temperature = "{kelvin!r} K" }}
 [surface]
 sticking = 1.0
 [domain]
-age_limit = "1000 yr"
+age_limit = "1e9 yr"
 {outer}
 [grid]
 altitude = {{ first_cell = "100 km", top = "1 radii", cells = 1 }}

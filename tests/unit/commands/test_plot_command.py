@@ -6,6 +6,7 @@ import sys
 import pytest
 
 from tracer.__main__ import main
+from tracer.plots.figures import FIGURES, What
 from tracer.product.writing import save_product
 
 
@@ -30,7 +31,7 @@ def test_figure_is_written_in_the_kind_of_its_ending_and_always_the_same(folder,
     assert ending_of(*words) == 0
     shown = capsys.readouterr()
     assert shown.out == f"{name}\n"
-    assert shown.err == "Next: tracer plot small.nc --what ledger -o ledger.png\n"
+    assert shown.err == "Next: tracer report small.nc -o report.html\n"
     first = (folder / name).read_bytes()
     assert first.startswith(start)
     assert ending_of(*words, "--overwrite") == 0
@@ -61,11 +62,15 @@ def test_existing_file_is_kept(folder, capsys):
         ),
         (
             ["-o", "a.png", "--what", "density", "--line", "na_d2"],
-            "--line: goes with --what image alone, not with --what density",
+            "--line: goes with --what image and tail, not with --what density",
         ),
         (
             ["-o", "a.png", "--what", "ledger", "--image", "tail"],
-            "--image: goes with --what image alone, not with --what ledger",
+            "--image: goes with --what image and tail, not with --what ledger",
+        ),
+        (
+            ["-o", "a.png", "--what", "plan", "--release", "sputtering"],
+            "--release: goes with --what figures of a product, not with --what plan",
         ),
         (
             ["-o", "a.png", "--what", "image", "--image", "tale"],
@@ -112,3 +117,26 @@ def test_command_leaves_windows_and_kernels_alone():
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout == "[]\n"
+
+
+PLAN = "time,tangent_altitude_km,brightness_na_d2_rayleigh,snr,do_not_command\n1,20,1e4,30,False\n2,30,1e3,8,True\n"
+
+
+def test_plan_is_drawn_without_a_product(folder, capsys):
+    (folder / "plan.csv").write_text(PLAN, encoding="utf-8")
+    assert ending_of("plan.csv", "--what", "plan", "--dpi", "50", "-o", "plan.svg") == 0
+    shown = capsys.readouterr()
+    assert shown.out == "plan.svg\n"
+    assert shown.err == "Next: tracer report PRODUCT.nc plan.csv -o report.html\n"
+    assert "not to be commanded" in (folder / "plan.svg").read_text(encoding="utf-8")
+
+
+@pytest.mark.parametrize("what", ["profile", "tail", "return-map"])
+def test_figure_is_drawn_with_no_more_of_the_product_than_it_needs(folder, capsys, what):
+    words = ["small.nc", "--what", what, "--width", "column", "--dpi", "50", "-o", "a.png"]
+    assert ending_of(*words) == 0
+    assert capsys.readouterr().out == "a.png\n"
+
+
+def test_every_word_but_that_of_a_plan_has_its_figure():
+    assert [*FIGURES, What.PLAN] == list(What)

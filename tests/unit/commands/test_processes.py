@@ -28,8 +28,16 @@ speed = { law = "maxwell-flux", temperature = "surface" }
 
 @contextmanager
 def started(command: list[str], folder: Path) -> Iterator[subprocess.Popen[str]]:
-    """Yield a running process, and see to it that it does not outlive the test."""
-    with subprocess.Popen(command, cwd=folder, stderr=subprocess.PIPE, text=True) as process:
+    """Yield a running process, and see to it that it does not outlive the test.
+
+    Ctrl-C reaches it even where the tests themselves run in the background of a shell, which has it ignored.
+    """
+    before = signal.signal(signal.SIGINT, signal.default_int_handler)
+    try:
+        process = subprocess.Popen(command, cwd=folder, stderr=subprocess.PIPE, text=True)
+    finally:
+        signal.signal(signal.SIGINT, before)
+    with process:
         try:
             yield process
         finally:

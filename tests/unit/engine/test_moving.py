@@ -131,3 +131,12 @@ def test_a_flight_starts_at_the_stated_position():
         at_first = [np.interp(1000.0, way[:, 0], way[:, column]) for way in ways.values()]
         assert at_first[0] == pytest.approx(at_first[1], abs=1e-3 * 2.44e6)
     assert abs(ways["moving"][-1, 0] / ways["stationary"][-1, 0] - 1.0) > 1e-3
+
+
+def test_atoms_do_not_rest_on_ground_that_turns_unevenly():
+    text = RUN.replace(
+        "sticking = 0.5 }",
+        'sticking = 0.5, adsorbed = "desorbed", desorption = { energy = "1.85 eV", attempt_frequency = "1e13 s-1" } }',
+    )
+    assert refusal(text).startswith('sun.motion: "moving" stands beside surface.adsorbed "desorbed"')
+    assert build_scene(parse_run(text, "moving.toml", ['sun.motion="stationary"'])).sun.orbit is None

@@ -58,3 +58,13 @@ def test_grid_beyond_the_outer_radius_is_noted():
     assert any("lies beyond the outer radius" in note for note in notes)
     whole = parse_run(FAST_ROTATOR, "top.toml")
     assert not any("outer radius" in note for note in preview(whole, build_scene(whole), 1).notes)
+
+
+def test_check_says_how_rare_the_launches_are_that_emphasis_far_tells_apart():
+    spec = parse_run(FAST_ROTATOR, "top.toml")
+    even = preview(spec, build_scene(spec), 1)
+    assert (even.emphasis, even.releases[0].rarest_launch) == ("even", None)
+    spec = parse_run(FAST_ROTATOR.replace("batches = 10", 'batches = 10, emphasis = "far"'), "top.toml")
+    far = preview(spec, build_scene(spec), 1)
+    # lambda = GM m/(kTR) is 2.12: (1 + lambda) exp(-lambda) = 0.37 are faster than escape: the next power is 1/4.
+    assert (far.emphasis, far.releases[0].rarest_launch) == ("far", 0.25)

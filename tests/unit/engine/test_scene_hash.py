@@ -43,6 +43,7 @@ def hashed(small_run_file):
         "image[1].look_from=south",
         "image[1].pixels=[8, 7]",
         "image[1].name=tail",
+        "ensemble.emphasis=far",
     ],
 )
 def test_hash_changes_with_what_decides_the_product(hashed, change):
@@ -63,7 +64,7 @@ def test_hash_changes_with_what_decides_the_product(hashed, change):
         "release[1].direction.law=cosine",
     ],
 )
-def test_hash_stays_with_title_ensemble_and_spelling(hashed, change):
+def test_hash_stays_with_title_number_of_particles_and_spelling(hashed, change):
     assert hashed(change) == hashed()
 
 
@@ -99,3 +100,29 @@ def test_run_hash_takes_in_scene_seed_and_particles():
     assert run_hash("abc", 1, 20) == first
     others = {run_hash("abd", 1, 20), run_hash("abc", 2, 20), run_hash("abc", 1, 21), run_hash("abc", 12, 0)}
     assert len(others | {first}) == 5
+
+
+def test_hash_sees_every_byte_of_a_map(small_run_file, small_product, tmp_path):
+    run_file, ground = tmp_path / "run.toml", tmp_path / "ground.nc"
+    text = small_run_file.read_text(encoding="utf-8")
+    law = '{ law = "quarter-power", subsolar = "600 K", night = "110 K" }'
+    place = '{ law = "band", latitude = ["30 deg", "60 deg"] }'
+    assert law in text
+    assert place in text
+    text = text.replace(law, '{ law = "map", file = "ground.nc", variable = "surface_temperature" }')
+    text = text.replace(place, '{ law = "map", file = "ground.nc", variable = "surface_temperature" }')
+    run_file.write_text(text, encoding="utf-8")
+
+    def found(title: str) -> str:
+        ground.unlink(missing_ok=True)
+        maps = small_product[["surface_temperature"]].drop_vars(
+            ["release_name", "fate_name"], errors="ignore"
+        )
+        maps.assign_attrs(title=title).to_netcdf(ground)
+        spec = load_run(run_file)
+        assert [path.name for path in referenced_files(spec)] == ["ground.nc", "ground.nc"]
+        return scene_hash(build_scene(spec), referenced_files(spec))
+
+    first = found("one")
+    assert found("two") != first
+    assert found("one") == first

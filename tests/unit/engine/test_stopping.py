@@ -141,7 +141,7 @@ def test_resumed_run_decides_as_the_uninterrupted_run(stopped, tmp_path, kept):
 
     with pytest.raises(RuntimeError):
         stopped(rule, watch=watch, checkpoints=first)
-    assert kept <= first.kept_batches < 20
+    assert kept <= first.kept_batches <= 20
     resumed = stopped(rule, checkpoints=Checkpoints(tmp_path / "out.nc", resume=True))
     expected = stopped(rule)
     for name in ("data_checksum", "batches", "stop_relative_error"):
@@ -238,3 +238,12 @@ def test_a_rule_that_is_none_is_refused(small_light_run_file, rule, message):
     with pytest.raises(InputError) as refusal:
         load_run(small_light_run_file, [rule])
     assert str(refusal.value).partition(": ")[2].startswith(message)
+
+
+def test_a_rule_may_ask_for_atoms_at_rest_where_there_are_any(small_run_file):
+    rule = stop("adsorbed_column", 'latitude = ["-90 deg", "0 deg"]', error=0.5)
+    with pytest.raises(InputError, match=r'"adsorbed_column" is not tallied here'):
+        run(load_run(small_run_file, [*SMALL, rule]), workers=1)
+    held = 'surface.desorption={ energy = "0.2 eV", attempt_frequency = "1e13 s-1" }'
+    spec = load_run(small_run_file, [*SMALL, rule, "surface.adsorbed=desorbed", held])
+    assert run(spec, workers=1).attrs["stop_relative_error"] > 0.0

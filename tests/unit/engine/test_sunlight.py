@@ -312,5 +312,5 @@ def test_batch_in_sunlight_does_not_depend_on_its_slices(small_light_spec, monke
     assert np.array_equal(whole.buffer, sliced.buffer)
     assert whole.steps == sliced.steps
     assert sum(flights for _, flights in told) == whole.flights
-    # Short slices do stop between an atom's bounces.
-    assert any(atoms == 0 for atoms, _ in told) or budget == 50
+    # Short slices do stop between an atom's bounces: it counts in part.
+    assert any(0.0 < atoms < 0.5 for atoms, _ in told) or budget == 50

@@ -17,8 +17,8 @@ SOURCES = Path(code_cache.__file__).parents[2]
 PROBE = """
 import sys
 import numpy as np
-from tracer.kernels.cells import Cells, latitude_cell
-some = Cells(1.0, np.array([1.0, 2.0]), 0.5, 0.0, 4, 4)
+from tracer.kernels.cells import latitude_cell, make_cells
+some = make_cells(1.0, np.array([1.0, 2.0]), 0.5, 0.0, 4, 4)
 print(latitude_cell(some, 0.1), sum(latitude_cell.stats.cache_hits.values()))
 """
 """Prints the result of one small kernel and how many of its compilations came from the cache."""
@@ -139,9 +139,9 @@ def test_entries_of_other_sources_are_stale(cache_home):
     shutil.copytree(SOURCES / "tracer", edited / "tracer", ignore=shutil.ignore_patterns("__pycache__"))
     cells = edited / "tracer" / "kernels" / "cells.py"
     text = cells.read_text(encoding="utf-8")
-    old = "return min(number - 1, max(0, int(place)))"
+    old = "return row_of(cells.tables, sine)"
     assert old in text
-    cells.write_text(text.replace(old, "return min(number - 1, 1 + max(0, int(place)))"))
+    cells.write_text(text.replace(old, "return 1 + row_of(cells.tables, sine)"))
     assert probe(cache_home, edited) == ("3", 0)
     folders = [path for path in folder.parent.iterdir() if path.is_dir()]
     assert len(folders) == 2

@@ -3,7 +3,17 @@
 import numpy as np
 import pytest
 
-from tracer.kernels import arc, arc_flight, bounce, cells, scoring, temperature, universal
+from tracer.kernels import (
+    adsorption,
+    arc,
+    arc_flight,
+    bounce,
+    cells,
+    scoring,
+    sticking,
+    temperature,
+    universal,
+)
 
 RNG = np.random.default_rng(71)
 GM, RADIUS = 4902.8e9, 1737.4e3
@@ -54,7 +64,7 @@ def test_turned_axes():
 
 def grid() -> cells.Cells:
     altitudes = np.concatenate(([0.0], np.geomspace(1e4, 5e6, 12)))
-    return cells.Cells(
+    return cells.make_cells(
         RADIUS, RADIUS + altitudes, 1e4, 11.0 / np.log(5e6 / 1e4), latitude_cells=7, local_time_cells=9
     )
 
@@ -80,10 +90,28 @@ def test_ground_temperature_and_survival():
 
 def test_rebounds_draw_the_same_random_numbers():
     surface = bounce.Surface(
-        temperature.SurfaceTemperature(temperature.UNIFORM, 300.0, 300.0), 0.0, 0.5, 4000.0, 0.0
+        temperature.SurfaceTemperature(temperature.UNIFORM, 300.0, 300.0),
+        sticking.Sticking(0.0, 0.0, np.inf),
+        0.5,
+        4000.0,
+        0.0,
     )
     compiled, plain = np.random.default_rng(5), np.random.default_rng(5)
     for _ in range(20):
         one = bounce.rebound(compiled, surface, 0.6, 0.0, 0.8, 1e6)
         other = bounce.rebound.py_func(plain, surface, 0.6, 0.0, 0.8, 1e6)
         np.testing.assert_allclose(one, other, rtol=1e-12)
+
+
+def test_residence_and_what_it_leaves():
+    law = temperature.SurfaceTemperature(temperature.QUARTER_POWER, 390.0, 95.0)
+    held = adsorption.Adsorption(True, 3400.0, np.log(1e13), 0.0, np.zeros(2), False)
+    for angle in (1.0, 2.0, -2.0, -1.6):
+        place = (float(np.cos(angle)), float(np.sin(angle)), 0.0)
+        for spin in (2.5e-6, -2.5e-6, 0.0):
+            assert_same(adsorption.residence, law, held, spin, place, 1.3, 1e8)
+            assert_same(adsorption.photon_residence, 1e-6, spin, place, 1.3, 1e8)
+    compiled, plain = np.zeros(7), np.zeros(7)
+    adsorption.spread_along(compiled, -1.0, 9.0, 3.0)
+    adsorption.spread_along.py_func(plain, -1.0, 9.0, 3.0)
+    np.testing.assert_allclose(compiled, plain, rtol=1e-13)

@@ -7,6 +7,7 @@ import pytest
 from scipy.stats import gamma, kstest, uniform
 
 from tracer.kernels.bounce import Surface, direction_about, rebound, tangents, thermal_speed_squared
+from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 
 COUNT = 20_000
@@ -21,7 +22,7 @@ GROUND = np.array([0.48, -0.6, 0.64])
 def surface(accommodation: float) -> Surface:
     return Surface(
         SurfaceTemperature(UNIFORM, KELVIN, KELVIN),
-        sticking=0.0,
+        sticking=Sticking(0.0, 0.0, np.inf),
         accommodation=accommodation,
         speed_squared_per_kelvin=PER_KELVIN,
         spin=0.0,
@@ -64,20 +65,44 @@ def test_part_accommodation_mixes_the_energies():
     assert kstest(thermal, gamma(2.0).cdf).pvalue > FALSE_ALARM
 
 
-def test_stationary_spread_of_energy_is_that_of_the_mixing():
-    # Repeated bounces: variance alpha/(2 - alpha) of thermal, 2 (kT)^2; mean 2 kT. An autoregressive chain of 20,000
-    # with alpha 0.5 has a third of its length in independent members.
-    rng, ground, speed_squared = np.random.default_rng(13), surface(0.5), 0.0
+def energy_chain(accommodation: float, start: float = 2.0) -> np.ndarray:
+    """Return the energies in units of kT of one atom that bounces COUNT times, the first 50 dropped."""
+    rng, ground, speed_squared = (
+        np.random.default_rng(13),
+        surface(accommodation),
+        start * PER_KELVIN * KELVIN,
+    )
     chain = np.empty(COUNT)
     for i in range(COUNT):
         out = rebound(rng, ground, *GROUND, speed_squared)
         speed_squared = out[0] ** 2 + out[1] ** 2 + out[2] ** 2
         chain[i] = speed_squared / (PER_KELVIN * KELVIN)
-    chain = chain[50:]
-    variance = 0.5 / 1.5 * 2.0
-    independent = COUNT / 3.0
+    return chain[50:]
+
+
+@pytest.mark.parametrize("accommodation", [0.2, 0.5, 0.8, 1.0])
+def test_stationary_spread_of_energy_is_that_of_the_mixing(accommodation):
+    # Repeated bounces: variance alpha/(2 - alpha) of thermal, 2 (kT)^2; mean 2 kT. Of an autoregressive chain the share
+    # alpha/(2 - alpha) counts as independent members.
+    chain = energy_chain(accommodation)
+    share = accommodation / (2.0 - accommodation)
+    variance, independent = 2.0 * share, COUNT * share
     assert abs(chain.mean() - 2.0) < 4.0 * sqrt(variance / independent)
-    assert abs(chain.var() - variance) < 4.0 * variance * sqrt(4.0 / independent)
+    # The fourth moment of a gamma distribution of shape 2 makes its variance scatter by sqrt(5/n) of itself.
+    assert abs(chain.var() - variance) < 4.0 * variance * sqrt(5.0 / independent)
+
+
+@pytest.mark.parametrize("accommodation", [0.3, 0.9, 1.0])
+def test_energy_before_and_after_a_bounce_hang_together_by_what_is_kept(accommodation):
+    # Correlation 1 - alpha: none at full accommodation. Four standard errors, false alarm 6e-5.
+    chain = energy_chain(accommodation)
+    found = np.corrcoef(chain[:-1], chain[1:])[0, 1]
+    assert abs(found - (1.0 - accommodation)) < 4.0 / sqrt(COUNT)
+
+
+def test_energy_is_kept_bounce_after_bounce_without_accommodation():
+    np.testing.assert_allclose(energy_chain(0.0, 3.7), 3.7, rtol=1e-11)
+    np.testing.assert_allclose(np.diff(energy_chain(0.0, 3.7)), 0.0, atol=3.7e-12)
 
 
 @pytest.mark.parametrize("accommodation", [0.0, 1.0])

@@ -5,11 +5,11 @@ from math import exp, sqrt
 import numpy as np
 import pytest
 from scipy.integrate import quad
-from scipy.special import gammainc
+from scipy.special import gammainc, gammaincinv
 from scipy.stats import gamma, kstest, maxwell, rv_histogram
 
 from tracer.constants import ATOMIC_MASS, BOLTZMANN
-from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
+from tracer.physics.release.speed.maxwell_flux import MaxwellFlux, energies
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
 from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
 from tracer.physics.release.speed.single import Single
@@ -44,6 +44,15 @@ def test_maxwell_flux_energies_are_gamma_of_shape_two():
     assert kstest(energies, gamma(2.0).cdf).pvalue > FALSE_ALARM
     # Mean energy 2kT, variance 2 (kT)^2: four standard errors, false alarm 6e-5.
     assert abs(energies.mean() - 2.0) < 4.0 * sqrt(2.0 / COUNT)
+
+
+def test_maxwell_flux_quantiles_are_scipys():
+    # scipy.special.gammaincinv: the inverse of the gamma distribution of shape 2.
+    u = np.concatenate(
+        (np.geomspace(1e-14, 0.1, 300), np.linspace(0.1, 0.9, 99), 1.0 - np.geomspace(0.1, 1e-14, 300))
+    )
+    np.testing.assert_allclose(energies(u), gammaincinv(2.0, u), rtol=1e-12)
+    assert np.all(np.isfinite(energies(np.array([0.0, np.nextafter(1.0, 0.0)]))))
 
 
 def test_maxwell_gas_speeds_are_scipys_maxwell():

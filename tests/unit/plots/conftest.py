@@ -1,6 +1,8 @@
 """Invented products for figures: any number of releases, any size of values, cells never hit or poorly known."""
 
+import os
 from collections.abc import Callable
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -32,8 +34,9 @@ def make_product() -> Callable[..., xr.Dataset]:
         views: dict[str, Any] = VIEWS,
         radius: float = RADIUS,
         title: str = "Sodium over Harrow",
+        top: float = 4.0,
     ) -> xr.Dataset:
-        grid = make_grid(radius, 0.01 * radius, 4.0 * radius, *CELLS.values())
+        grid = make_grid(radius, 0.01 * radius, top * radius, *CELLS.values())
         planes = [
             make_image_plane(
                 name,
@@ -79,3 +82,35 @@ def empty() -> Callable[[xr.Dataset], xr.Dataset]:
         return nothing
 
     return emptied
+
+
+PLAN_COLUMNS = (
+    "time,tangent_altitude_km,sun_angle_deg,phase_angle_deg,brightness_na_d2_rayleigh,"
+    "brightness_na_d2_standard_error_rayleigh,snr,snr_standard_error,sun_keep_out,saturated,do_not_command,command"
+)
+
+
+@pytest.fixture
+def make_plan(tmp_path) -> Callable[..., Path]:
+    """Return a function that writes what `tracer plan` writes as CSV: rows a minute apart, some in the keep-out."""
+
+    def make(rows: int = 6, forbidden: tuple[int, ...] = (4, 5), brightness: float = 2e5) -> Path:
+        lines = [PLAN_COLUMNS]
+        for row in range(rows):
+            inside = row in forbidden
+            command = "NOT to be commanded: Sun inside its keep-out" if inside else "only after flight rules"
+            lines.append(
+                f"2031-06-01T00:{row:02d}:00,{20 + 10 * row},{50 - 5 * row},{40 + row},{brightness * (row + 1)!r},"
+                f"{0.1 * brightness!r},{30 + row},1.5,{inside},{row == 0},{inside},{command}"
+            )
+        path = tmp_path / "plan.csv"
+        path.write_text("\n".join(lines) + "\n", encoding="utf-8")
+        return path
+
+    return make
+
+
+@pytest.fixture
+def update_looks() -> bool:
+    """Return whether the stored looks of figures are to be written anew: with UPDATE_LOOKS=1 in the environment."""
+    return os.environ.get("UPDATE_LOOKS") == "1"

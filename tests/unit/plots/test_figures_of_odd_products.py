@@ -1,22 +1,40 @@
 """Figures of odd products: drawn without a warning (warnings are errors here), and every text readable."""
 
+import numpy as np
 import pytest
 from matplotlib.text import Text
 
+from tracer.plots.curves import BAND
 from tracer.plots.density import density
+from tracer.plots.ground_map import (
+    CAPTURED,
+    DIRECTIONS,
+    ESCAPING,
+    RELEASED,
+    RETURNED,
+    ground_map,
+    vertical_column,
+)
 from tracer.plots.image import image
 from tracer.plots.ledger import ledger
+from tracer.plots.plan_table import read_plan
+from tracer.plots.profile import profile
 from tracer.plots.saving import figure_bytes
 from tracer.plots.significance import NOTHING
 from tracer.plots.style import styled
-from tracer.plots.vertical_column import vertical_column
+from tracer.plots.tail import tail
+from tracer.plots.timeline import timeline
 
 
-def tail(product, release=None, width="full"):
+def image_from_north(product, release=None, width="full"):
     return image(product, "tail_from_north", None, release, width)
 
 
-FIGURES = (density, tail, vertical_column, ledger)
+def along_tail(product, release=None, width="full"):
+    return tail(product, "tail_from_north", None, release, width)
+
+
+FIGURES = (density, image_from_north, vertical_column, ledger, profile, along_tail)
 ODD = {
     "tiny values": {"size": 1e-300},
     "huge values": {"size": 1e300},
@@ -74,7 +92,7 @@ def test_figure_is_readable_at_full_width(make_product, figure):
     assert one.get_size_inches()[0] * 25.4 == pytest.approx(180.0)
 
 
-@pytest.mark.parametrize("figure", [vertical_column, ledger])
+@pytest.mark.parametrize("figure", [vertical_column, ledger, profile, along_tail])
 def test_many_releases_and_a_long_title_are_readable(make_product, figure):
     many = tuple(f"release number {number}" for number in range(15))
     title = "What a long title, worth $5 or $6, " * 8
@@ -99,3 +117,45 @@ def test_a_single_cell_that_was_hit_has_a_colour_scale(make_product, empty):
     figure = drawn(vertical_column(product, width="column"))
     low, high = figure.axes[-1].get_xlim()
     assert low <= 5.0 <= high
+
+
+@pytest.mark.parametrize("what", [RELEASED, RETURNED, CAPTURED, ESCAPING, DIRECTIONS])
+def test_map_is_readable_in_a_column_and_says_where_nothing_was_counted(make_product, empty, what):
+    product = make_product()
+    assert_readable(drawn(ground_map(product, what, width="column")))
+    one = drawn(ground_map(empty(product), what, width="column"))
+    assert NOTHING in [words for words, _ in shown_texts(one)]
+
+
+@pytest.mark.parametrize("figure", [profile, along_tail])
+def test_curves_without_replicates_say_why_they_have_no_bands(make_product, figure):
+    one = figure(make_product(replicates=0))
+    assert not [band for axes in one.axes for band in axes.collections if band.get_gid() == BAND]
+    assert "No error bands" in " ".join(text.get_text() for text in one.texts)
+
+
+def test_layer_that_was_never_hit_is_a_gap(make_product):
+    product = make_product()
+    product.number_density.values[:, 2] = 0.0
+    product.number_density_replicates.values[:, :, 2] = 0.0
+    values = profile(product).axes[0].patches[0].get_data().values
+    assert np.isnan(values).tolist() == [False, False, True, False]
+
+
+ODD_PLANS = [
+    ({}, "full"),
+    ({}, "column"),
+    ({"rows": 1, "forbidden": ()}, "column"),
+    ({"brightness": 0.0}, "column"),
+    ({"brightness": 1e200}, "column"),
+]
+
+
+@pytest.mark.parametrize(("plan", "width"), ODD_PLANS)
+def test_plan_is_drawn_without_a_warning_and_readable(make_plan, plan, width):
+    assert_readable(drawn(timeline(read_plan(make_plan(**plan)), width)))
+
+
+@pytest.mark.parametrize(("top", "width"), [(0.3, "column"), (8.0, "column"), (8.0, "full"), (120.0, "full")])
+def test_planes_of_any_size_are_readable(make_product, top, width):
+    assert_readable(drawn(density(make_product(top=top), width=width)))

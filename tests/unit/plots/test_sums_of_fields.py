@@ -105,3 +105,15 @@ def test_rates_are_written_with_their_power_of_ten():
     assert scientific(2e24) == r"$2\times10^{24}$"
     assert scientific(2.5e-3) == r"$2.5\times10^{-3}$"
     assert scientific(0.0) == "0"
+
+
+def test_budget_counts_what_was_released_without_what_roulette_added(make_product):
+    product = make_product(releases=("a", "b"))
+    product.roulette_balance.values[:] = [3e8, -1e8]
+    budget = budget_of(product, ["a", "b"])
+    released = product.ledger.sum("fate").values - [3e8, -1e8]
+    np.testing.assert_allclose(budget.released, [*released, released.sum()], rtol=1e-14)
+    words = " ".join(text.get_text() for text in ledger(product).texts).replace("\n", " ")
+    assert f"{100.0 * 2e8 / released.sum():+.2g} %" in words
+    product.roulette_balance.values[:] = 0.0
+    assert "oulette" not in " ".join(text.get_text() for text in ledger(product).texts)

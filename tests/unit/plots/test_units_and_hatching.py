@@ -6,9 +6,9 @@ from matplotlib.collections import QuadMesh
 
 from tracer.errors import InputError
 from tracer.plots.density import density
+from tracer.plots.ground_map import vertical_column
 from tracer.plots.hatching import HATCHED, runs
 from tracer.plots.image import image
-from tracer.plots.vertical_column import vertical_column
 
 # 1 m-3 = 1e-6 cm-3, 1 m-2 = 1e-4 cm-2, 1 R = 1e-3 kR
 UNITS = [

@@ -13,7 +13,7 @@ from tracer.engine.batches import BatchResult, Task, Work
 POLL_SECONDS = 0.1
 """How long a wait may last before Ctrl-C is looked for."""
 
-Tell = Callable[[int, int], None]
+Tell = Callable[[float, int], None]
 Tick = Callable[[], None]
 MapBatches = Callable[
     [Work, Sequence[Task], int, Tell, Tick],

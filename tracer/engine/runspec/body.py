@@ -2,10 +2,10 @@
 
 from pydantic import Field
 
-from tracer.engine.runspec.number import Eccentricity
-from tracer.engine.runspec.quantity import GravitationalParameter, Length, RotationPeriod
-from tracer.engine.runspec.table import Table
-from tracer.engine.runspec.text import Line
+from tracer.inputs.number import Eccentricity
+from tracer.inputs.quantity import GravitationalParameter, Length, RotationPeriod
+from tracer.inputs.table import Table
+from tracer.inputs.text import Line
 
 
 class OrbitTable(Table):

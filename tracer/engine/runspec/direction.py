@@ -4,8 +4,8 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from tracer.engine.runspec.number import Exponent
-from tracer.engine.runspec.table import NAMED_LAW, Table
+from tracer.inputs.number import Exponent
+from tracer.inputs.table import NAMED_LAW, Table
 
 
 class Cosine(Table):

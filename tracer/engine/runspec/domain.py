@@ -2,8 +2,8 @@
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.quantity import Duration, LengthOrRadii
-from tracer.engine.runspec.table import Table, conflict
+from tracer.inputs.quantity import Duration, LengthOrRadii
+from tracer.inputs.table import Table, conflict
 from tracer.units import RADII, Quantity
 
 

@@ -4,10 +4,10 @@ from typing import Literal
 
 from pydantic import Field
 
-from tracer.engine.runspec.quantity import AccelerationOrWord, LossRate, Mass
 from tracer.engine.runspec.spectral_line import SpectralLineTable
-from tracer.engine.runspec.table import Table
-from tracer.engine.runspec.text import Line
+from tracer.inputs.quantity import AccelerationOrWord, LossRate, Mass
+from tracer.inputs.table import Table
+from tracer.inputs.text import Line
 
 
 class LossTable(Table):

@@ -2,10 +2,10 @@
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import Cells
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.quantity import LengthOrRadii
-from tracer.engine.runspec.table import Table, conflict
+from tracer.inputs.number import Cells
+from tracer.inputs.quantity import LengthOrRadii
+from tracer.inputs.table import Table, conflict
 from tracer.units import Quantity
 
 

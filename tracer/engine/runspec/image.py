@@ -4,12 +4,12 @@ import re
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import Cells
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.quantity import SkyOffset
 from tracer.engine.runspec.sky import ViewerDirection
-from tracer.engine.runspec.table import Table, conflict
-from tracer.engine.runspec.text import Line
+from tracer.inputs.number import Cells
+from tracer.inputs.quantity import SkyOffset
+from tracer.inputs.table import Table, conflict
+from tracer.inputs.text import Line
 
 
 class ImageTable(Table):

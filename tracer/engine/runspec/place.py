@@ -4,11 +4,12 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import Exponent, LocalTime
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.quantity import Latitude, LengthOrRadii
 from tracer.engine.runspec.sky import PlaceDirection
-from tracer.engine.runspec.table import NAMED_LAW, Table, conflict
+from tracer.inputs.number import Exponent, LocalTime
+from tracer.inputs.quantity import Latitude, LengthOrRadii
+from tracer.inputs.table import NAMED_LAW, Table, conflict
+from tracer.inputs.text import FilePath, Line
 
 
 class Uniform(Table):
@@ -50,4 +51,18 @@ class Band(Table):
         return self
 
 
-PlaceLaw = Annotated[Uniform | CosinePower | Patch | Band, Field(discriminator="law"), NAMED_LAW]
+class ReleaseMap(Table):
+    """A map of your own: the same flux from all ground of a cell."""
+
+    law: Literal["map"] = "map"
+    file: FilePath = Field(
+        description="netCDF file with the coordinates `latitude` [deg] and `local_time` [h], the middles of cells that "
+        "cover the sphere."
+    )
+    variable: Line = Field(
+        description="Its variable over `latitude` and `local_time`, the flux per area; only ratios count, so in any "
+        "unit."
+    )
+
+
+PlaceLaw = Annotated[Uniform | CosinePower | Patch | Band | ReleaseMap, Field(discriminator="law"), NAMED_LAW]

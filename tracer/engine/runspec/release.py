@@ -6,10 +6,10 @@ from pydantic import Field
 
 from tracer.engine.runspec.direction import Cosine, DirectionLaw
 from tracer.engine.runspec.place import PlaceLaw, Uniform
-from tracer.engine.runspec.quantity import Rate
 from tracer.engine.runspec.speed import SpeedLaw
-from tracer.engine.runspec.table import Table
-from tracer.engine.runspec.text import Line
+from tracer.inputs.quantity import Rate
+from tracer.inputs.table import Table
+from tracer.inputs.text import Line
 
 
 class ReleaseTable(Table):

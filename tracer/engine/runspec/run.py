@@ -16,11 +16,12 @@ from tracer.engine.runspec.order import is_below
 from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.spectral_line import SpectralLineTable
 from tracer.engine.runspec.speed import MaxwellFlux, MaxwellGas
+from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.sun import SunTable
-from tracer.engine.runspec.sunless import dead_without_sun
+from tracer.engine.runspec.sunless import dead_without_sun, unheated_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
-from tracer.engine.runspec.table import Table, conflict
-from tracer.engine.runspec.text import Line
+from tracer.inputs.table import Table, conflict
+from tracer.inputs.text import Line
 
 _COMPANIONS = ("", "_standard_error", "_replicates")
 """Endings of the variables that the product keeps for each image."""
@@ -81,7 +82,7 @@ class RunSpec(Table):
             *_colliding_images(self),
             *_missing_temperature(self),
             *_buried_outer_radius(self),
-            *(dead_without_sun(self.gas) if self.sun is None else ()),
+            *(_without_sun(self) if self.sun is None else ()),
         ):
             raise problem
         return self
@@ -108,6 +109,11 @@ def _colliding_images(spec: RunSpec) -> Iterator[Exception]:
         kept.update(dict.fromkeys(names, number))
 
 
+def _without_sun(spec: RunSpec) -> Iterator[Exception]:
+    yield from dead_without_sun(spec.gas)
+    yield from unheated_without_sun(spec.surface)
+
+
 def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     if spec.surface.temperature is not None:
         return
@@ -115,8 +121,15 @@ def _missing_temperature(spec: RunSpec) -> Iterator[Exception]:
     for number, release in enumerate(spec.release, 1):
         if isinstance(release.speed, MaxwellFlux | MaxwellGas) and release.speed.temperature == "surface":
             yield conflict("surface.temperature", f"missing; release[{number}].speed takes it; {example}")
+    if spec.surface.adsorbed == "desorbed":
+        yield conflict("surface.temperature", f"missing; adsorbed atoms leave again by its heat; {example}")
+    sticking = spec.surface.sticking
     lands = spec.body.gm is None or spec.body.gm.value > 0.0
-    if lands and spec.surface.sticking < 1.0 and spec.surface.accommodation > 0.0:
+    if isinstance(sticking, ExponentialSticking):
+        yield conflict(
+            "surface.temperature", f'missing; surface.sticking "{sticking.law}" takes it; {example}'
+        )
+    elif lands and sticking < 1.0 and spec.surface.accommodation > 0.0:
         yield conflict("surface.temperature", f"missing; atoms bounce where sticking is below 1; {example}")
 
 

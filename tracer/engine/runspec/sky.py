@@ -6,9 +6,9 @@ from typing import Annotated, Any, Literal
 from pydantic import Field, GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from tracer.engine.runspec.number import LocalTime
-from tracer.engine.runspec.quantity import Latitude
-from tracer.engine.runspec.table import Table
+from tracer.inputs.number import LocalTime
+from tracer.inputs.quantity import Latitude
+from tracer.inputs.table import Table
 from tracer.units import quoted
 
 

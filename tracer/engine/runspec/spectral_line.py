@@ -6,9 +6,9 @@ from typing import Annotated, Any
 from pydantic import Field, GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from tracer.engine.runspec.quantity import NOT_NEGATIVE, Measured, Wavelength
-from tracer.engine.runspec.table import Table
-from tracer.engine.runspec.text import FilePath, Line
+from tracer.inputs.quantity import NOT_NEGATIVE, Measured, Wavelength
+from tracer.inputs.table import Table
+from tracer.inputs.text import FilePath, Line
 from tracer.units import Quantity
 
 

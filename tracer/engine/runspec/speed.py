@@ -4,9 +4,9 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.quantity import Energy, Speed, TemperatureOrSurface
-from tracer.engine.runspec.table import NAMED_LAW, Table, conflict
-from tracer.engine.runspec.text import FilePath
+from tracer.inputs.quantity import Energy, Speed, TemperatureOrSurface
+from tracer.inputs.table import NAMED_LAW, Table, conflict
+from tracer.inputs.text import FilePath
 from tracer.units import si
 
 

@@ -2,11 +2,11 @@
 
 from pydantic import Field, model_validator
 
-from tracer.engine.runspec.number import HourOfDay, RelativeError, SeveralOf
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.quantity import AltitudeEnd, Latitude, SkyOffset
-from tracer.engine.runspec.table import Table, conflict
-from tracer.engine.runspec.text import Line
+from tracer.inputs.number import HourOfDay, RelativeError, SeveralOf
+from tracer.inputs.quantity import AltitudeEnd, Latitude, SkyOffset
+from tracer.inputs.table import Table, conflict
+from tracer.inputs.text import Line
 
 
 class RegionTable(Table):

@@ -6,9 +6,9 @@ from typing import Any, Literal
 from pydantic import Field, model_validator
 
 from tracer.engine.runspec.moment import Epoch, moment_text
-from tracer.engine.runspec.number import Fraction
-from tracer.engine.runspec.quantity import Angle, Length, RadialVelocity
-from tracer.engine.runspec.table import Table, conflict
+from tracer.inputs.number import Fraction
+from tracer.inputs.quantity import Angle, Length, RadialVelocity
+from tracer.inputs.table import Table, conflict
 from tracer.units import Quantity
 
 PLACES = ("true_anomaly", "epoch", "distance")

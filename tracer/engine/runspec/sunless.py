@@ -1,9 +1,11 @@
-"""What a gas cannot have without [sun]: settings that would have no effect are refused."""
+"""What gas and ground cannot have without [sun]: settings that would have no effect are refused."""
 
 from collections.abc import Iterator
 
 from tracer.engine.runspec.gas import GasTable
-from tracer.engine.runspec.table import conflict
+from tracer.engine.runspec.surface import SurfaceTable
+from tracer.engine.runspec.temperature import Conduction, EquilibriumTemperature
+from tracer.inputs.table import conflict
 from tracer.units import Quantity
 
 _NO_LIGHT = "needs [sun]; without it there is no light"
@@ -26,3 +28,12 @@ def dead_without_sun(gas: GasTable) -> Iterator[Exception]:
             )
         if loss.where == "sunlight":
             yield conflict(f"gas.loss[{number}].where", f'"{loss.where}" {_NO_LIGHT}; must be "everywhere"')
+
+
+def unheated_without_sun(surface: SurfaceTable) -> Iterator[Exception]:
+    """Yield a conflict where the ground's temperature follows from sunlight, or sunlight frees what it holds."""
+    law = surface.temperature
+    if isinstance(law, EquilibriumTemperature | Conduction):
+        yield conflict("surface.temperature", f'"{law.law}" {_NO_DISTANCE}')
+    if surface.desorption is not None and surface.desorption.photon is not None:
+        yield conflict("surface.desorption.photon", _NO_LIGHT)

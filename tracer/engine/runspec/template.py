@@ -34,8 +34,11 @@ place = { law = "uniform" }
 
 [surface]
 temperature = { law = "quarter-power", subsolar = "600 K", night = "110 K" }
-sticking = 0.0                       # probability that a landing atom is captured; the others bounce
+sticking = 0.0                       # probability that a landing atom is adsorbed; the others bounce
 accommodation = 1.0                  # energy accommodation of atoms that bounce
+# adsorbed = "desorbed"              # leaves again after exp(E/kT)/frequency; left out: captured for good
+# desorption = { energy = "0.1 eV", attempt_frequency = "1e13 s-1" }
+# cold_traps = { poleward_of = "85 deg" }    # what lands there is captured
 
 [domain]
 outer_radius = "40 radii"            # crossing it outwards is escape; left out: the Hill radius
@@ -57,6 +60,7 @@ pixels = [128, 128]
 particles_per_batch = 2_000          # per release; the more, the smaller the error bars
 batches = 20                         # at least 2; error bars come from the scatter between batches
 seed = 20310601
+emphasis = "even"                    # or "far": more launches that reach high, escape or make a tail
 replicates = 20                      # groups of batches kept for the errors of sums; 0 keeps none
 """
 

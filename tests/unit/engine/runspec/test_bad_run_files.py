@@ -137,6 +137,41 @@ def test_range(old: str, new: str, message: str) -> None:
     ("old", "new", "message"),
     [
         (
+            'law = "quarter-power", subsolar = "600 K", night = "110 K"',
+            'law = "equilibrium", albedo = 1.1, night = "110 K"',
+            "surface.temperature.albedo: 1.1 is out of range; must be a number from 0 to 1",
+        ),
+        (
+            'law = "quarter-power", subsolar = "600 K", night = "110 K"',
+            'law = "equilibrium", albedo = 0.1, emissivity = 0, night = "110 K"',
+            "surface.temperature.emissivity: 0 is out of range; must be a number above 0 and at most 1",
+        ),
+        ('"110 K"', '"-1 K"', 'surface.temperature.night: "-1 K" is out of range; must be above 0 K'),
+        (
+            "sticking = 0.5",
+            "sticking = 0.5\naccommodation = 1.2",
+            "surface.accommodation: 1.2 is out of range; must be a number from 0 to 1",
+        ),
+        (
+            'law = "quarter-power", subsolar = "600 K", night = "110 K"',
+            'law = "equilibrium", albedo = 0.1, night = "110 K"',
+            'surface.temperature: "equilibrium" needs [sun]; without it there is no distance from the Sun',
+        ),
+        (
+            '"band", latitude = ["-30 deg", "30 deg"]',
+            '"map", file = "flux.nc"',
+            "release[2].place.variable: missing; must be text",
+        ),
+    ],
+)
+def test_surface_that_cannot_be(old: str, new: str, message: str) -> None:
+    check(old, new, message)
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "message"),
+    [
+        (
             "sticking = 0.5",
             "sticking = true",
             "surface.sticking: true is not a number; must be a number from 0 to 1",
@@ -168,7 +203,8 @@ def test_type(old: str, new: str, message: str) -> None:
         (
             "batches = 20",
             "threads = 2",
-            "ensemble.threads: unknown key; allowed here: particles_per_batch, batches, seed, replicates, stop",
+            "ensemble.threads: unknown key; allowed here: particles_per_batch, batches, seed, replicates, emphasis, "
+            "stop",
         ),
         (
             "[ensemble]",
@@ -234,8 +270,9 @@ def test_conflict(old: str, new: str, message: str) -> None:
         ),
         (
             '"quarter-power"',
-            '"conduction"',
-            'surface.temperature.law: "conduction" is not a law; must be one of "uniform", "quarter-power"',
+            '"linear"',
+            'surface.temperature.law: "linear" is not a law; must be one of "uniform", "quarter-power", '
+            '"equilibrium", "hurley-2015", "map", "conduction"',
         ),
         (
             'look_from = "north"',

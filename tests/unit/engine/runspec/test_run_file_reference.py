@@ -7,11 +7,11 @@ from typing import Any, get_args
 
 from pydantic.fields import FieldInfo
 
-from tracer.engine.runspec.kinds import tables_in
-from tracer.engine.runspec.quantity import Measured
 from tracer.engine.runspec.reference import BEGIN, END, reference
 from tracer.engine.runspec.run import RunSpec
-from tracer.engine.runspec.table import Table
+from tracer.inputs.kinds import tables_in
+from tracer.inputs.quantity import Measured
+from tracer.inputs.table import Table
 from tracer.units import DIMENSIONS
 
 README = Path(__file__).parents[4] / "runs" / "README.md"

@@ -26,3 +26,10 @@ def test_template_explains_its_keys() -> None:
     lines = run_file_template("x").splitlines()
     assert sum("#" in line for line in lines) > 10
     assert max(map(len, lines)) <= 110
+
+
+def test_template_shows_ground_that_lets_atoms_go_and_traps_others() -> None:
+    ground = parse_run(run_file_template("x").replace("\n# ", "\n"), "new.toml").surface
+    assert ground.adsorbed == "desorbed"
+    assert ground.desorption is not None
+    assert ground.cold_traps is not None

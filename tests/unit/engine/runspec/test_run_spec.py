@@ -11,6 +11,7 @@ from tracer.engine.runspec.image import product_name
 from tracer.engine.runspec.load import load_run, parse_run
 from tracer.engine.runspec.place import Uniform
 from tracer.engine.runspec.sky import SkyPoint
+from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.errors import InputError
 from tracer.units import Quantity
 
@@ -157,3 +158,50 @@ def test_specs_that_differ_in_one_key_differ() -> None:
 )
 def test_image_names_in_the_product(name: str, product: str) -> None:
     assert product_name(name) == product
+
+
+def test_sticking_is_a_number_or_a_law() -> None:
+    law = 'surface.sticking={ law = "exponential", at = "250 K", value = 0.5, e_folding = "272.8 K" }'
+    sticking = parse_run(SHORTEST, "moon.toml", [law]).surface.sticking
+    assert isinstance(sticking, ExponentialSticking)
+    assert (sticking.value, str(sticking.at), str(sticking.e_folding)) == (0.5, "250 K", "272.8 K")
+
+
+@pytest.mark.parametrize(
+    ("sticking", "message"),
+    [
+        (
+            '"exponential"',
+            'surface.sticking: "exponential" is not a number; must be a number from 0 to 1 or { law = "exponential", '
+            'at = "250 K", value = 0.5, e_folding = "272.8 K" }',
+        ),
+        ("-0.1", "surface.sticking: -0.1 is out of range; must be a number from 0 to 1"),
+        ('{ law = "linear" }', 'surface.sticking.law: "linear" is not allowed; must be "exponential"'),
+        (
+            '{ law = "exponential", at = "250 K", value = 1.5, e_folding = "272.8 K" }',
+            "surface.sticking.value: 1.5 is out of range; must be a number from 0 to 1",
+        ),
+        (
+            '{ law = "exponential", at = "250 K", value = 0.5, e_folding = "-272.8 K" }',
+            'surface.sticking.e_folding: "-272.8 K" is out of range; must be above 0 K',
+        ),
+        (
+            '{ law = "exponential", at = "250 K", value = 0.5, efolding = "272.8 K" }',
+            "surface.sticking.efolding: unknown key; did you mean e_folding?",
+        ),
+        ('{ value = 0.5, at = "250 K", e_folding = "1 K" }', "surface.sticking.law: missing; must be"),
+    ],
+)
+def test_sticking_that_cannot_be(sticking: str, message: str) -> None:
+    with pytest.raises(InputError) as caught:
+        parse_run(SHORTEST, "moon.toml", [f"surface.sticking={sticking}"])
+    assert str(caught.value).startswith(f"moon.toml: {message}")
+
+
+def test_sticking_by_temperature_needs_one() -> None:
+    law = 'sticking = { law = "exponential", at = "250 K", value = 0.5, e_folding = "272.8 K" }'
+    with pytest.raises(InputError) as caught:
+        parse_run(SHORTEST.replace('temperature = { law = "uniform", value = "250 K" }', law), "moon.toml")
+    assert str(caught.value).startswith(
+        'moon.toml: surface.temperature: missing; surface.sticking "exponential" takes it; '
+    )

@@ -14,8 +14,8 @@ def around_axis(axis: tuple[float, float, float], cosine: Floats, turn: Floats) 
     second = np.cross(n, first)
     sine = np.sqrt(np.maximum(0.0, 1.0 - cosine * cosine))
     azimuth = 2.0 * np.pi * turn
-    return np.asarray(
-        cosine[:, np.newaxis] * n
-        + (sine * np.cos(azimuth))[:, np.newaxis] * first
-        + (sine * np.sin(azimuth))[:, np.newaxis] * second
-    )
+    along, across = sine * np.cos(azimuth), sine * np.sin(azimuth)
+    places = np.empty((len(cosine), 3))
+    for k in range(3):
+        places[:, k] = cosine * n[k] + along * first[k] + across * second[k]
+    return places

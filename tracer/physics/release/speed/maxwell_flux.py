@@ -3,10 +3,15 @@
 from typing import NamedTuple
 
 import numpy as np
-from scipy.special import gammaincinv
 
 from tracer.constants import BOLTZMANN
 from tracer.physics.release.laws import Floats
+
+NEWTON_STEPS = 3
+"""From the first guess, at most 1.2 % off, three steps reach rounding."""
+
+SERIES_LIMIT = 1e-3
+"""Square root of twice the exponent below which the series is used: Newton's difference would cancel."""
 
 
 class MaxwellFlux(NamedTuple):
@@ -21,4 +26,21 @@ class MaxwellFlux(NamedTuple):
     def speeds(self, u: Floats, surface_temperature: Floats, mass: float) -> Floats:
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
-        return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * gammaincinv(2.0, u)))
+        return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * energies(u)))
+
+
+def energies(u: Floats) -> Floats:
+    """Return the energies x [kT], (n,), at the quantiles `u`, (n,): 1 - u = (1 + x) exp(-x), to 1e-12.
+
+    With y = -ln(1 - u) this is x - ln(1 + x) = y, of which small x is s + s^2/3 + s^3/36 - s^4/270, s^2 = 2 y.
+    """
+    y = -np.log1p(-u)
+    s = np.sqrt(2.0 * y)
+    x = y + np.log1p(s + (2.0 / 3.0) * y)
+    series = s * (1.0 + s * (1.0 / 3.0 + s * (1.0 / 36.0 - s / 270.0)))
+    small = s < SERIES_LIMIT
+    x[small] = SERIES_LIMIT
+    for _ in range(NEWTON_STEPS):
+        x -= (x - np.log1p(x) - y) * (1.0 + x) / x
+    x[small] = series[small]
+    return np.asarray(x)

@@ -1,0 +1,143 @@
+"""Seconds and memory against particles, two workers against one, and what a cluster of local processes costs."""
+
+import argparse
+import os
+import platform
+import sys
+import tempfile
+from importlib.util import find_spec
+from pathlib import Path
+from typing import NamedTuple
+
+import numpy as np
+
+import tracer
+
+ROOT = Path(__file__).parents[3]
+RUN_FILES = {"arcs": "moon-sodium-gravity.toml", "integrated": "mercury-sodium.toml"}
+BATCHES = 20
+MOST_DEVIATION = 0.10
+LEAST_SPEED_UP = 1.85
+MOST_CLUSTER_OVERHEAD = 0.05
+
+
+class Run(NamedTuple):
+    """Wall and kernel `seconds` of a run by its product, and the largest memory [MB] of its process."""
+
+    seconds: float
+    kernel: float
+    memory: float
+
+
+def run(name: str, particles: int, *options: str) -> Run:
+    """Run `tracer run` with so many particles a release and batch."""
+    with tempfile.TemporaryDirectory() as folder:
+        output = Path(folder) / "product.nc"
+        words = [sys.executable, "-m", "tracer", "run", str(ROOT / "runs" / name), "-o", str(output)]
+        for setting in (f"ensemble.batches={BATCHES}", f"ensemble.particles_per_batch={particles}"):
+            words += ["--set", setting]
+        pid = os.fork()
+        if pid == 0:
+            os.chdir(ROOT)
+            silence = os.open(os.devnull, os.O_WRONLY)
+            os.dup2(silence, 1)
+            os.dup2(silence, 2)
+            os.execv(sys.executable, [*words, *options])
+        _, status, usage = os.wait4(pid, 0)
+        if status:
+            raise SystemExit(f"{' '.join(words)} ended with status {status}")
+        with tracer.open_product(output) as product:
+            return Run(product.attrs["wall_seconds"], product.attrs["kernel_seconds"], usage.ru_maxrss / 1e3)
+
+
+def releases(name: str) -> int:
+    """Return the number of releases of a run file: each has as many particles."""
+    return len(tracer.load_run(ROOT / "runs" / name).release)
+
+
+def growth(kind: str, name: str, largest: float) -> bool:
+    """Print time and memory against particles from 1e4 on; return whether they grow as they should.
+
+    The straight line goes from a run of one particle a batch, whose time is that of the batches themselves, to the
+    largest run.
+    """
+    share = BATCHES * releases(name)
+    counts = [1, *(round(n / share) for n in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5))]
+    runs = []
+    for count in counts:
+        tries = [run(name, count, "--workers", "1") for _ in range(3 if count * share < 1e6 else 1)]
+        runs.append(min(tries))
+    fixed, last = runs[0].seconds, runs[-1].seconds
+    slope = (last - fixed) / (counts[-1] - counts[0])
+    print(f"\n{kind} ({name}), one worker, {BATCHES} batches of each of {releases(name)} releases")
+    print(f"{'particles':>12s} {'seconds':>9s} {'over the line':>14s} {'memory MB':>10s}")
+    deviations = []
+    for count, one in zip(counts, runs, strict=True):
+        deviations.append(one.seconds / (fixed + slope * (count - counts[0])) - 1.0)
+        print(f"{count * share:12,d} {one.seconds:9.3f} {100 * deviations[-1]:+12.1f} % {one.memory:10.0f}")
+    linear = max(map(abs, deviations))
+    memories = [one.memory for one in runs[1:]]
+    flat = max(memories) / min(memories) - 1.0
+    print(f"{slope / releases(name) / BATCHES * 1e6:.3g} microseconds a particle")
+    print(
+        f"time is linear within {100 * linear:.1f} %, memory flat within {100 * flat:.1f} % (both asked: 10 %)"
+    )
+    return linear <= MOST_DEVIATION and flat <= MOST_DEVIATION
+
+
+def speed_up(kind: str, name: str, seconds: float, rounds: int) -> bool:
+    """Print two workers over one, as threads and as processes, with batches of about `seconds` each."""
+    share = BATCHES * releases(name)
+    probe = run(name, 20_000, "--workers", "1")
+    particles = max(1, int(20_000 * seconds * share / probe.kernel))
+    ways = {"1 thread": ("--workers", "1"), "2 threads": ("--workers", "2")}
+    if find_spec("distributed"):
+        ways |= {"1 process": ("--cluster", "local:1"), "2 processes": ("--cluster", "local:2")}
+    best = dict.fromkeys(ways, np.inf)
+    for _ in range(rounds):
+        for way, options in ways.items():
+            best[way] = min(best[way], run(name, particles, *options).seconds)
+    print(f"\n{kind} ({name}), {share} batches of {particles} particles, about {seconds:g} s each")
+    print(", ".join(f"{way}: {spent:.2f} s" for way, spent in best.items()))
+    threads = best["1 thread"] / best["2 threads"]
+    print(f"two threads over one: {threads:.3f} (asked: {LEAST_SPEED_UP})")
+    fine = threads >= LEAST_SPEED_UP
+    if "2 processes" in best:
+        processes = best["1 process"] / best["2 processes"]
+        overhead = best["2 processes"] / best["2 threads"] - 1.0
+        print(f"two processes over one: {processes:.3f} (asked: {LEAST_SPEED_UP})")
+        print(f"processes over threads, two of each: {100 * overhead:+.1f} % (asked: at most 5 %)")
+        fine = fine and processes >= LEAST_SPEED_UP and overhead <= MOST_CLUSTER_OVERHEAD
+    return fine
+
+
+def main() -> int:
+    """Print all; 1 where something asked for is missed."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument(
+        "--particles", type=float, default=1e7, help="largest number of particles (default 1e7)"
+    )
+    parser.add_argument(
+        "--batch-seconds", type=float, default=1.0, help="length of a batch for the speed-up (1)"
+    )
+    parser.add_argument(
+        "--rounds", type=int, default=3, help="repeats of the speed-up; the fastest counts (3)"
+    )
+    arguments = parser.parse_args()
+    print(
+        "machine:",
+        platform.processor() or platform.machine(),
+        platform.platform(),
+        f"{os.cpu_count()} processors",
+    )
+    print("load of the machine:", Path("/proc/loadavg").read_text(encoding="ascii").strip())
+    fine = [growth(kind, name, arguments.particles) for kind, name in RUN_FILES.items()]
+    fine += [
+        speed_up(kind, name, arguments.batch_seconds, arguments.rounds) for kind, name in RUN_FILES.items()
+    ]
+    print("\nall reached" if all(fine) else "\nsomething is missed")
+    return int(not all(fine))
+
+
+if __name__ == "__main__":
+    sys.exit(main())

@@ -1,0 +1,242 @@
+"""What a page says: escaped, cautions first, the scene in words, and nothing fetched."""
+
+import re
+from html import unescape
+from html.parser import HTMLParser
+
+import numpy as np
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from tracer.plots.ground_map import MAPS
+from tracer.plots.page.cautions import left_out, plan_cautions, watch
+from tracer.plots.page.figure_list import product_figures
+from tracer.plots.page.markup import element, escaped
+from tracer.plots.page.reading import duration, number, percent, quantity, raised
+from tracer.plots.page.scene_words import scene_words
+from tracer.plots.plan_table import PlanTable
+
+RUN = """
+[body]
+name = "Harrow"
+radius = "1800 km"
+gm = "9500 km3 s-2"
+rotation_period = "60 d"
+[sun]
+true_anomaly = "60 deg"
+tide = false
+[gas]
+species = "Na"
+[[gas.loss]]
+name = "charge exchange"
+rate = "1e-7 s-1"
+scaling = "inverse-square"
+where = "everywhere"
+[[release]]
+name = "impact vapour"
+rate = "2e24 s-1"
+speed = { law = "maxwell-flux", temperature = "9000 K" }
+direction = { law = "cosine", power = 2.0 }
+place = { law = "band", latitude = ["30 deg", "60 deg"] }
+[surface]
+sticking = { law = "step", below = "200 K" }
+temperature = { law = "uniform", value = "300 K" }
+[domain]
+outer_radius = "40 radii"
+age_limit = "30 d"
+"""
+
+
+class Reader(HTMLParser):
+    """Collects what a browser would see."""
+
+    def __init__(self, text):
+        super().__init__(convert_charrefs=True)
+        self.words, self.tags, self.addresses = [], [], []
+        self.feed(text)
+        self.close()
+
+    def handle_starttag(self, tag, attributes):
+        self.tags.append(tag)
+        self.addresses += [value for name, value in attributes if name in ("href", "src", "srcset")]
+
+    def handle_data(self, data):
+        self.words.append(data)
+
+
+@given(st.text(st.characters(exclude_categories=("Cs", "Cc"))))
+@settings(max_examples=100, deadline=None)
+def test_any_text_comes_back_as_text(text):
+    read = Reader(element("p", text, title=text))
+    assert "".join(read.words) == text
+    assert read.tags == ["p"]
+
+
+def test_characters_that_html_forbids_are_replaced():
+    assert escaped("a\x00\x1bb\n") == "a\N{REPLACEMENT CHARACTER}\N{REPLACEMENT CHARACTER}b\n"
+
+
+def test_page_fetches_nothing(page):
+    addresses = Reader(page).addresses
+    assert len(addresses) > 10
+    assert all(address.startswith(("#", "data:image/png;base64,")) for address in addresses)
+    assert not re.search(r"@import|url\(", page)
+    assert "default-src 'none'" in unescape(page)
+
+
+def test_links_within_the_page_have_their_ends(page):
+    wanted = {address[1:] for address in Reader(page).addresses if address.startswith("#")}
+    assert wanted <= set(re.findall(r'id="([a-z0-9_-]+)"', page))
+
+
+def test_cautions_come_before_everything_else(page):
+    words = " ".join(Reader(page).words)
+    rising = (
+        "A planning aid, not a flight product. Flight rules",
+        "1 of 4 planned",
+        "Body and gas",
+        "What becomes of the released atoms",
+        "Atoms never meet",
+    )
+    places = [words.index(text) for text in rising]
+    assert places == sorted(places)
+    assert "NOT to be commanded: Sun inside its keep-out" in words
+
+
+def test_run_file_hashes_and_file_names_are_told(page, small_light_product):
+    words = " ".join(Reader(page).words)
+    for key in ("scene_hash", "run_hash", "data_checksum", "source"):
+        assert str(small_light_product.attrs[key]) in words
+    assert small_light_product.attrs["run_file"].strip() in words
+    assert "a & b.nc" in words
+
+
+def test_scene_is_told_in_words(make_product):
+    product = make_product().assign_attrs(
+        run_file=RUN,
+        sun_distance=5.6e10,
+        sun_radial_velocity=-7283.0,
+        true_anomaly=300.0,
+        batches=np.int64(20),
+    )
+    told = dict(scene_words(product))
+    # sqrt(2 x 9.5e12/1.8e6) = 3.249 km/s, 9.5e12/1.8e6^2 = 2.932 m s-2, 5.6e10 m = 0.3743 au
+    assert "radius 1800 km" in told["Body and gas"]
+    assert (
+        "2.932 m s\N{SUPERSCRIPT MINUS}\N{SUPERSCRIPT TWO}, escape speed 3.249 km/s" in told["Body and gas"]
+    )
+    assert (
+        "0.3743 au from the Sun at a true anomaly of 300 deg and approaches it at 7.283 km/s"
+        in told["Sunlight"]
+    )
+    assert "tide is switched off" in told["Sunlight"]
+    (release,) = [text for name, text in told.items() if "impact vapour" in name]
+    assert (
+        "cosine to the power 2; places: latitudes 30\N{NO-BREAK SPACE}deg to 60\N{NO-BREAK SPACE}deg"
+        in release
+    )
+    (loss,) = [text for name, text in told.items() if "charge exchange" in name]
+    assert loss.endswith("at 1 au, falling with the square of the distance, everywhere.")
+    # A law that has no words of its own is shown by its keys.
+    assert "by the law law step, below 200\N{NO-BREAK SPACE}K" in told["Surface"]
+    assert "20 batches" in told["Sample"]
+
+
+@pytest.mark.parametrize(
+    "text", ["", "no TOML [", 'release = 5\nsun = "x"\ngas = []', "[sun]\nsolar_activity = 'much'"]
+)
+def test_run_file_of_any_content_raises_nothing(make_product, text):
+    product = make_product().assign_attrs(run_file=text, sun_distance="far", flights="many")
+    assert list(scene_words(product))
+    assert list(left_out(product))
+    list(watch(product))
+
+
+def test_what_limits_a_product_is_said(make_product):
+    product = make_product(replicates=0).assign_attrs(
+        run_file=RUN, stop_reached=0, share_beyond_line_tables=np.array([0.0, 0.02])
+    )
+    product.number_density.values[0, 0] = 0.0
+    words = " ".join(watch(product))
+    for part in (
+        "were given up by the propagator",
+        "outlived the age limit",
+        "no replicates",
+        "before it reached",
+        "jeans parameter of 1.6",
+    ):
+        assert part in words
+    assert "25\N{NO-BREAK SPACE}% of the cells of number density say nothing" in words
+    assert "Up to 2\N{NO-BREAK SPACE}% of the time" in words
+
+
+def test_scene_without_the_sun_leaves_out_sunlight(make_product):
+    with_sun, without = (
+        " ".join(left_out(make_product().assign_attrs(run_file=text)))
+        for text in (RUN, RUN.replace("[sun]", "[moon]"))
+    )
+    assert "single scattering" in with_sun
+    assert "single scattering" not in without
+    assert "There is no Sun in this scene" in without
+
+
+@pytest.mark.parametrize(
+    ("scene", "words"),
+    [
+        ("abc", ""),
+        ("xyz", "made from another scene"),
+        (None, "does not tell from which product"),
+    ],
+)
+def test_plan_of_another_product_is_told(make_product, scene, words):
+    notes = {} if scene is None else {"product_scene_hash": scene}
+    plan = PlanTable({"time": np.arange(2.0), "do_not_command": np.array([True, False])}, notes)
+    told = list(plan_cautions(make_product().assign_attrs(scene_hash="abc"), plan))
+    assert told[0].startswith("1 of 2 planned exposures lie inside a keep-out")
+    assert words in " ".join(told)
+    assert len(told) == (3 if words else 2)
+
+
+def test_every_figure_has_a_heading_and_an_alternative(make_product, empty):
+    product = make_product()
+    figures = list(product_figures(product))
+    # Three of all; of four images column and brightness, of three a tail; six maps.
+    assert len(figures) == 3 + 2 * 4 + 3 + len(MAPS)
+    assert len({one.name for one in figures}) == len(figures)
+    assert all(len(one.alternative) > 30 and one.heading for one in figures)
+    assert "Nothing was counted" in " ".join(one.alternative for one in product_figures(empty(product)))
+
+
+def test_largest_cell_of_a_map_is_named(make_product):
+    product = make_product()
+    product.return_flux.values[0, 3, 1] = 9e11
+    (words,) = [one.alternative for one in product_figures(product) if one.name == "figure-return-map"]
+    gap = "\N{NO-BREAK SPACE}"
+    assert f"9{gap}\N{MULTIPLICATION SIGN}{gap}10⁷ cm⁻² s⁻¹, at latitude 67.5 deg and local time 6 h" in words
+
+
+@pytest.mark.parametrize(
+    ("value", "text"),
+    [
+        (0.0, "0"),
+        (1800.0, "1800"),
+        (12345.6, "12,350"),
+        (2e24, "2 × 10²⁴"),
+        (2.34567e-7, "2.346 × 10⁻⁷"),
+        (-1e6, "-1 × 10⁶"),
+        (float("inf"), "inf"),
+    ],
+)
+def test_numbers_read_well(value, text):
+    assert number(value).replace("\N{NO-BREAK SPACE}", " ") == text
+
+
+def test_quantities_durations_and_shares_read_well():
+    plain = {ord("\N{NO-BREAK SPACE}"): " "}
+    assert quantity("2e24 s-1").translate(plain) == "2 × 10²⁴ s⁻¹"
+    assert quantity("2031-06-01T00:00:00") == "2031-06-01T00:00:00"
+    assert raised("km3 s-2") == "km³ s⁻²"
+    assert duration(5400.0).translate(plain) == "1.5 h"
+    assert percent(0.527412, 0.000781).translate(plain) == "52.741 ± 0.078 %"
+    assert percent(1.0, 1e-12).translate(plain) == "100 %"

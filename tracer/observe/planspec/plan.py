@@ -1,0 +1,90 @@
+"""A plan file as a whole, read and checked."""
+
+import os
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+from pydantic import Field, PrivateAttr, ValidationError
+
+from tracer.errors import InputError
+from tracer.inputs.messages import validation_message
+from tracer.inputs.reference import reference_of
+from tracer.inputs.table import Table
+from tracer.inputs.text import Line
+from tracer.inputs.toml import file_text, tables
+from tracer.observe.planspec.observer import ObserverPath
+from tracer.observe.planspec.pointing import Pointing
+from tracer.observe.planspec.spectrometer import SpectrometerTable
+
+BEGIN = "<!-- plan reference: made from the package, do not edit -->"
+END = "<!-- end of plan reference -->"
+
+_PREFACE = """\
+## Plan-file reference
+
+A plan file is TOML with the rules of run files: quantities are texts with their unit, `radii` means
+the radius of the product's body, paths are relative to the plan file, keys that stand in no table
+below are refused.
+"""
+
+
+class PlanSpec(Table):
+    """A plan file as the user wrote it, checked, with the defaults filled in."""
+
+    title: Line = Field(description="Title of the plan, carried into its table.")
+    observer: ObserverPath = Field(description="Where the observer is at what times.")
+    pointing: Pointing = Field(description="Where the instrument looks.")
+    spectrometer: SpectrometerTable = Field(description="The instrument.")
+
+    _file: str = PrivateAttr(default="plan file")
+    _folder: Path = PrivateAttr(default=Path())
+
+    @property
+    def folder(self) -> Path:
+        """The plan file's folder, where its relative paths begin; the current folder without a file."""
+        return self._folder
+
+    @property
+    def file(self) -> str:
+        """The plan file's name as it was asked for, which begins every message about it."""
+        return self._file
+
+    def model_post_init(self, context: Any, /) -> None:
+        """Take the name of the file from the validation's context."""
+        if isinstance(context, Mapping) and "file" in context:
+            self._file = context["file"]
+            self._folder = Path(self._file).absolute().parent
+
+
+def load_plan(path: str | os.PathLike[str]) -> PlanSpec:
+    """Read a plan file.
+
+    Raises
+    ------
+    InputError
+        The file cannot be read or used; the message says file, key, value and what is allowed.
+    """
+    name = os.fspath(path)
+    return parse_plan(file_text(name, "plan file"), name)
+
+
+def parse_plan(text: str, file: str | os.PathLike[str]) -> PlanSpec:
+    """Check the text of a plan file; `file` names it in messages, and relative paths begin in its folder.
+
+    Raises
+    ------
+    InputError
+        The text is no TOML or cannot be used.
+    """
+    name = os.fspath(file)
+    given = tables(text, name)
+    try:
+        return PlanSpec.model_validate(given, context={"file": name})
+    except ValidationError as error:
+        raise InputError(f"{name}: {validation_message(error, PlanSpec, given)}") from None
+
+
+def plan_reference() -> str:
+    """Return the reference of plan files as Markdown."""
+    return reference_of(PlanSpec, _PREFACE)
