@@ -55,7 +55,7 @@ _ROWS = (
     ("FLAGGED", 1),
     ("CHANGE", 1),
     ("FLOWN", 1),
-    # Lanes that are looked at one by one in each stage, as many as there are.
+    # Lanes that are looked at one by one, in each stage or after it, as many as there are.
     ("APART", 1),
     # Its stages: velocity, acceleration, light and other losses.
     ("SECOND", STAGE_ROWS),
