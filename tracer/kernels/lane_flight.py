@@ -58,12 +58,9 @@ def launch_in_lane(lanes, lane, conditions, tolerance, clock, time_limit, place)
 
 @kernel
 def look_closer(lanes, lane, sky, tables, curve):
-    """Decide what a flagged step met: cut it there, end the flight, or let it pass."""
+    """Decide what a doubtful step met: cut it there, end the flight, or let it pass."""
     if lanes[row.ACCEPTED + lane] == 0.0:
         lanes[row.STANDING + lane] = UNRESOLVED
-        return
-    if lanes[row.FLAGGED + lane] == LANDS:
-        _land(lanes, lane, sky.forces.radius)
         return
     zone = int(lanes[row.ZONE + lane])
     start = lane_place(lanes, row.START, lane)
@@ -100,36 +97,41 @@ def _edge_met(shadows, forces, zone, start, end):
     return False
 
 
+@kernel
+def land_lanes(lanes, radius):
+    """Cut the steps that are flagged as landing where they pass the ground.
+
+    The lanes are listed first, so that the processor can be at work on several landings at a time: it would guess wrong
+    which of all lanes land, and drop what it had begun.
+    """
+    count = 0
+    for lane in range(WIDTH):
+        lanes[row.APART + count] = lane
+        count += 1 if lanes[row.FLAGGED + lane] == LANDS else 0
+    for i in range(count):
+        _land(lanes, int(lanes[row.APART + i]), radius)
+
+
 @inlined
 def _land(lanes, lane, radius):
     """Cut a step that starts well above ground and ends below it where it passes the ground.
 
     Newton's method for the square of the distance from the centre, in a bracket; as sharp as `crossing`. It starts
-    where the cubic passes that has the same values and slopes at the ends, and stops as soon as its next error, which
-    goes with the square of the last change, is small enough.
+    where the cubic passes that has the same values and slopes at the ends. Two steps of it, and more until the next
+    error, which goes with the square of the last change, is small enough: seldom.
     """
     h = lanes[row.LENGTH + lane]
-    x = _polynomial(lanes, lane, h, 0)
-    y = _polynomial(lanes, lane, h, row.Y)
-    z = _polynomial(lanes, lane, h, row.Z)
+    way = (
+        _polynomial(lanes, lane, h, 0),
+        _polynomial(lanes, lane, h, row.Y),
+        _polynomial(lanes, lane, h, row.Z),
+    )
     goal = radius * radius
-    left, right = 0.0, 1.0
-    part = _passing(lanes, lane, h, goal)
+    part, left, right, _ = _nearer(way, goal, _passing(lanes, lane, h, goal), 0.0, 1.0)
     for _ in range(HALVINGS):
-        px, dx = _value_and_slope(x, part)
-        py, dy = _value_and_slope(y, part)
-        pz, dz = _value_and_slope(z, part)
-        f = px * px + py * py + pz * pz - goal
-        if f > 0.0:
-            left = part
-        else:
-            right = part
-        change = -0.5 * f / (px * dx + py * dy + pz * dz)
-        part += change
-        if (dx * dx + dy * dy + dz * dz) * (change * change) <= 0.1 * SHARP * goal:
+        part, left, right, miss = _nearer(way, goal, part, left, right)
+        if miss <= 0.1 * SHARP * goal:
             break
-        if not left < part < right:
-            part = 0.5 * (left + right)
     part = min(part, 1.0)
     lanes[row.STANDING + lane] = LANDED
     lanes[row.FLOWN + lane] = part
@@ -137,6 +139,21 @@ def _land(lanes, lane, radius):
         lanes[row.END + axis + lane] = _value_and_slope(_polynomial(lanes, lane, h, axis), part)[0]
         at = row.VELOCITY + axis
         lanes[row.END + at + lane] = _value_and_slope(_polynomial(lanes, lane, h, at), part)[0]
+
+
+@inlined
+def _nearer(way, goal, part, left, right):
+    """Return a part of the `way` nearer to where its square is `goal`, the bracket, and the change's square [m2]."""
+    px, dx = _value_and_slope(way[0], part)
+    py, dy = _value_and_slope(way[1], part)
+    pz, dz = _value_and_slope(way[2], part)
+    f = px * px + py * py + pz * pz - goal
+    left, right = (part, right) if f > 0.0 else (left, part)
+    change = -0.5 * f / (px * dx + py * dy + pz * dz)
+    miss = (dx * dx + dy * dy + dz * dz) * (change * change)
+    part += change
+    lost = not (left < part < right) and miss > 0.1 * SHARP * goal
+    return 0.5 * (left + right) if lost else part, left, right, miss
 
 
 @inlined

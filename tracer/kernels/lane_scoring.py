@@ -3,8 +3,10 @@
 from tracer.fate import Fate
 from tracer.kernels.cells import close_layer, column_at, row_at
 from tracer.kernels.compiling import merged
+from tracer.kernels.foresight import fetch_early
 from tracer.kernels.lanes import (
     ACCEPTED,
+    CELL,
     COLUMN,
     CONTENT,
     IONIZED,
@@ -29,6 +31,7 @@ from tracer.kernels.shadow import PENUMBRA, lit_fraction
 @merged
 def score_lanes(world, tally, lanes, shine):
     """Count the sample of every lane that made a step; `shine` (line,) is room for each line's photons."""
+    _find_cells(world, tally, lanes, shine.shape[0])
     tables, sky = world.light.line_tables, world.light.conditions.sky
     cells = world.cells
     for lane in range(WIDTH):
@@ -45,11 +48,33 @@ def score_lanes(world, tally, lanes, shine):
             shine[line] = received * line_value(tables, line, lanes[RECEDING + lane])
         if beyond_tables(tables, lanes[RECEDING + lane]):
             tally.beyond[0] += content
-        r = lanes[SAMPLE_R + lane]
-        layer = close_layer(cells, r, lanes[LAYER + lane])
+        layer = int(lanes[CELL + lane])
         if layer >= 0:
-            row = row_at(cells, lanes[ROW + lane], z / r)
-            column = column_at(cells, lanes[COLUMN + lane], x, y)
+            row, column = int(lanes[CELL + Y + lane]), int(lanes[CELL + Z + lane])
+            r = lanes[SAMPLE_R + lane]
             count_in_cell(tally, cells, layer, row, column, r, content, received * sky.losses.ionizing, shine)
         if world.images.first.shape[0] > 0:
             count_in_images(tally, world.images, cells.radius, x, y, z, content, shine)
+
+
+@merged
+def _find_cells(world, tally, lanes, lines):
+    """Set the cell of every lane's sample, and have what will be added to in it fetched."""
+    cells, ionizing = world.cells, world.light.conditions.sky.losses.ionizing
+    for lane in range(WIDTH):
+        if lanes[ACCEPTED + lane] == 0.0:
+            continue
+        r = lanes[SAMPLE_R + lane]
+        layer = close_layer(cells, r, lanes[LAYER + lane])
+        lanes[CELL + lane] = layer
+        if layer >= 0:
+            x, y, z = lanes[SAMPLE + lane], lanes[SAMPLE + Y + lane], lanes[SAMPLE + Z + lane]
+            row = row_at(cells, lanes[ROW + lane], z / r)
+            column = column_at(cells, lanes[COLUMN + lane], x, y)
+            lanes[CELL + Y + lane] = row
+            lanes[CELL + Z + lane] = column
+            fetch_early(tally.content, (layer, row, column))
+            if ionizing > 0.0:
+                fetch_early(tally.ionized, (layer, row, column))
+            for line in range(lines):
+                fetch_early(tally.emission, (line, layer, row, column))

@@ -35,6 +35,7 @@ from tracer.kernels.integrated_flight import (
 from tracer.kernels.lanes import (
     ACCELERATION,
     ACCEPTED,
+    APART,
     CHANGE,
     END,
     EXTRA,
@@ -112,14 +113,14 @@ def try_steps(lanes, sky, tables):
     _choose_lengths(lanes, sky.forces)
     # Not a literal, for each of which numba would compile what it is passed to.
     stage = np.int64(0)
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2 = second(v, h, a)
         _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, 1, second(p, h, v), v2))
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -127,8 +128,8 @@ def try_steps(lanes, sky, tables):
         _set_stage(
             lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3)
         )
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -136,8 +137,8 @@ def try_steps(lanes, sky, tables):
         v4 = fourth(v, h, a, a2, a3)
         p4 = fourth(p, h, v, v2, v3)
         _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, 3, p4, v4))
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -146,8 +147,8 @@ def try_steps(lanes, sky, tables):
         v5 = fifth(v, h, a, a2, a3, a4)
         p5 = fifth(p, h, v, v2, v3, v4)
         _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, 4, p5, v5))
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -157,8 +158,8 @@ def try_steps(lanes, sky, tables):
         v6 = sixth(v, h, a, a2, a3, a4, a5)
         p6 = sixth(p, h, v, v2, v3, v4, v5)
         _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, 5, p6, v6))
-    if apart:
-        stage = look_apart(lanes, stage, sky, tables)
+    if apart > 0:
+        stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -208,20 +209,22 @@ def extra_push(body, tables, position, velocity):
 
 @kernel
 def prepare_apart(lanes, sky, tables):
-    """Say whether any lane needs `look_apart`, mark those in part of the light and limit their steps."""
-    apart = tables[0] > MOST_GRIDS
+    """List the lanes that need `look_apart` and return their number.
+
+    Those in part of the light are marked, and their steps limited.
+    """
+    apart = 0
     for lane in range(WIDTH):
         zone = lanes[ZONE + lane]
-        lanes[PARTIAL + lane] = 0.0
-        if zone in (PENUMBRA, ANTUMBRA) and lanes[STANDING + lane] == FLYING:
-            apart = True
-            lanes[PARTIAL + lane] = 1.0
-            if zone == PENUMBRA:
-                shadow = shadow_behind(
-                    sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0)
-                )
-                longest = longest_step_in_penumbra(shadow, lane_place(lanes, START, lane))
-                lanes[STEP + lane] = min(lanes[STEP + lane], longest)
+        partial = zone in (PENUMBRA, ANTUMBRA) and lanes[STANDING + lane] == FLYING
+        lanes[PARTIAL + lane] = 1.0 if partial else 0.0
+        if partial and zone == PENUMBRA:
+            shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0))
+            longest = longest_step_in_penumbra(shadow, lane_place(lanes, START, lane))
+            lanes[STEP + lane] = min(lanes[STEP + lane], longest)
+        if partial or tables[0] > MOST_GRIDS:
+            lanes[APART + apart] = lane
+            apart += 1
     return apart
 
 
@@ -234,16 +237,16 @@ def lane_place(lanes, row, lane):
 
 
 @kernel
-def look_apart(lanes, stage, sky, tables):
-    """Set the light and the push of a stage in lanes that see part of the Sun or are pushed by many lines.
+def look_apart(lanes, apart, stage, sky, tables):
+    """Set the light and the push of a stage in the first `apart` listed lanes.
 
-    `stage` counts from 0, the second; its place is known before its rates are. Returns the next one's number.
+    They see part of the Sun or are pushed by many lines. `stage` counts from 0, the second; its place is known before
+    its rates are. Returns the next one's number.
     """
     forces = sky.forces
-    for lane in range(WIDTH):
+    for i in range(apart):
+        lane = int(lanes[APART + i])
         partial = lanes[PARTIAL + lane] > 0.0
-        if not partial and tables[0] <= MOST_GRIDS:
-            continue
         body = body_in_series(forces, lanes, SERIES + lane, WIDTH, NODES[stage + 1] * lanes[LENGTH + lane])
         x, y, z = _moved(lanes, stage, lane, START, START + VELOCITY, 0)
         if partial:

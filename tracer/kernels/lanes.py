@@ -57,6 +57,8 @@ _ROWS = (
     ("FLAGGED", 1),
     ("CHANGE", 1),
     ("FLOWN", 1),
+    # Lanes that are looked at one by one, in each stage or after it, as many as there are.
+    ("APART", 1),
     # Its stages: velocity, acceleration, light and other losses.
     ("SECOND", STAGE_ROWS),
     ("THIRD", STAGE_ROWS),
@@ -81,6 +83,8 @@ _ROWS = (
     ("LAYER", 1),
     ("ROW", 1),
     ("COLUMN", 1),
+    # The cell's numbers; the first is -1 above the grid.
+    ("CELL", 3),
     # What the flown part leaves in the budget: what is lost and how much of that is ionised [s-1], survival times time.
     ("LOST", 1),
     ("IONIZED", 1),
@@ -119,6 +123,7 @@ ACCEPTED = _FIRST["ACCEPTED"]
 FLAGGED = _FIRST["FLAGGED"]
 CHANGE = _FIRST["CHANGE"]
 FLOWN = _FIRST["FLOWN"]
+APART = _FIRST["APART"]
 SECOND = _FIRST["SECOND"]
 THIRD = _FIRST["THIRD"]
 FOURTH = _FIRST["FOURTH"]
@@ -137,6 +142,7 @@ RECEDING = _FIRST["RECEDING"]
 LAYER = _FIRST["LAYER"]
 ROW = _FIRST["ROW"]
 COLUMN = _FIRST["COLUMN"]
+CELL = _FIRST["CELL"]
 LOST = _FIRST["LOST"]
 IONIZED = _FIRST["IONIZED"]
 LIFE = _FIRST["LIFE"]

@@ -6,10 +6,10 @@ from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
-from tracer.kernels.lane_flight import launch_in_lane, look_closer
+from tracer.kernels.lane_flight import land_lanes, launch_in_lane, look_closer
 from tracer.kernels.lane_sample import sample_steps
 from tracer.kernels.lane_scoring import score_lanes
-from tracer.kernels.lane_step import try_steps
+from tracer.kernels.lane_step import DOUBTFUL, try_steps
 from tracer.kernels.lanes import (
     ACCEPTED,
     ALIVE,
@@ -83,8 +83,9 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
             _begin_flight(world, launches, resume, tally, lane)
         resume.counters[CURSOR] = 0
         try_steps(lanes, sky, tables)
+        land_lanes(lanes, sky.forces.radius)
         for lane in range(WIDTH):
-            if lanes[FLAGGED + lane] > 0.0:
+            if lanes[FLAGGED + lane] == DOUBTFUL:
                 look_closer(lanes, lane, sky, tables, resume.curve)
             if lanes[ACCEPTED + lane] > 0.0:
                 resume.counters[STEPS] += 1

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from tracer.kernels.shadow import ANTUMBRA, LIT, PENUMBRA, UMBRA, lit_fraction, zone_at
-from tracer.kernels.sunlight import covered_fraction, visible_fraction
+from tracer.kernels.sunlight import GENTLE, covered_fraction, visible_fraction
 from tracer.physics.sunlight import shadow_of
 
 RADIUS = 2439.4e3
@@ -71,6 +71,26 @@ def test_noon_is_lit_and_midnight_is_dark():
 @pytest.mark.parametrize("curvature", [1e-12, 1e-4, 0.05, -0.05])
 def test_nearly_straight_edge_covers_half_of_the_disc(curvature):
     assert covered_fraction(0.0, curvature) == pytest.approx(0.5 - 0.106 * curvature, abs=2e-4)
+
+
+@pytest.mark.parametrize("curvature", [0.0999, 0.03, -0.03, -0.0999])
+def test_gentle_edge_covers_two_segments_to_the_last_digits(curvature):
+    # The area of a lens, chord against either arc, in the extended precision of numpy.
+    limb = np.linspace(-0.999, 0.999, 201).astype(np.longdouble)
+    k = np.longdouble(curvature)
+    chord = (limb + k * (1.0 + limb * limb) / 2) / (1 + k * limb)
+    half = np.sqrt(1 - chord * chord)
+    sliver = (np.arcsin(k * half) - k * half * np.sqrt(1 - (k * half) ** 2)) / (k * k)
+    covered = (np.arccos(chord) - chord * half + sliver) / np.longdouble(math.pi)
+    own = [covered_fraction(float(at), curvature) for at in limb]
+    np.testing.assert_allclose(own, covered.astype(float), rtol=1e-12)
+
+
+@pytest.mark.parametrize("limb", [-0.9, -0.2, 0.0, 0.4, 0.97])
+def test_gentle_edge_goes_over_into_a_bent_one(limb):
+    for curvature in (GENTLE, -GENTLE):
+        inside, outside = (covered_fraction(limb, curvature * (1.0 + side * 1e-12)) for side in (-1.0, 1.0))
+        assert inside == pytest.approx(outside, rel=1e-11)
 
 
 def test_zones_agree_with_the_visible_fraction():
