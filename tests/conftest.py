@@ -1,5 +1,7 @@
 """Small products that many tests share, and one way to trace a run file's text once a session."""
 
+import subprocess
+import sys
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -99,11 +101,22 @@ SMALL_LIGHT_RUN = SMALL_RUN.replace("\n[gas]", SUN + "\n[gas]").replace(
     'rate = "1e-5 s-1"\n', 'rate = "1e-5 s-1"\n' + LIGHT
 )
 
+MOVING_RUN = SMALL_LIGHT_RUN.replace(
+    'distance = "0.35 au"\nradial_velocity = "8 km/s"', 'true_anomaly = "60 deg"\nmotion = "moving"'
+).replace('rotation_period = "60 d"', 'orbit = { semi_major_axis = "0.4 au", eccentricity = 0.2 }')
+
+WARM_KERNELS = str(Path(__file__).with_name("warm_kernels.py"))
+
 
 def pytest_sessionstart(session: pytest.Session) -> None:
     """Compile the kernels once, into the cache that all test processes share, before these processes start."""
     if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):
         return
+    # The kernels of bodies that move are compiled beside the others, which would take as long again after them.
+    beside = subprocess.Popen([sys.executable, WARM_KERNELS], stdin=subprocess.PIPE, text=True)
+    assert beside.stdin
+    beside.stdin.write(MOVING_RUN)
+    beside.stdin.close()
     for text in (SMALL_RUN, SMALL_LIGHT_RUN):
         scene = build_scene(parse_run(text, "run file"))
         work = make_work(scene, 1, 1)
@@ -115,6 +128,7 @@ def pytest_sessionstart(session: pytest.Session) -> None:
     looks = Sights(np.array([[5.0, 0.0, 0.0]]), np.array([[-1.0, 0.0, 0.0]]))
     grid = Grid(1.0, np.array([0.0, 1.0]), np.array([-90.0, 0.0, 90.0]), np.array([0.0, 12.0, 24.0]))
     integrals_along(gas_of(_filled(grid, np.ones((1, 1, 2, 2)))), looks)
+    assert beside.wait() == 0
 
 
 @pytest.fixture(scope="session")

@@ -199,9 +199,11 @@ def lane_rates(sky, tables, zone, body, position, velocity):
 @kernel
 def extra_push(body, tables, position, velocity):
     """Return the acceleration [m s-2] at 1 au by lines beyond the first `MOST_GRIDS` tables."""
+    push = 0.0
+    if int(tables[0]) <= MOST_GRIDS:
+        return push
     x, y, z = position
     receding = radial_velocity(body, x, y, z, velocity[0], velocity[1], velocity[2])
-    push = 0.0
     for line in range(MOST_GRIDS, int(tables[0])):
         push += line_value(tables, line, receding)
     return push

@@ -31,6 +31,9 @@ GRAZING = 0.02
 LEAST_CARE = 1e-5
 """Smallest part of the tolerance: below it rounding decides anyway."""
 
+DEFAULT_ROOT = (STEP_SHARE * DEFAULT_TOLERANCE) ** (1.0 / 6.0)
+"""What a first step is proportional to at the default tolerance: a power at each launch takes time."""
+
 ROOT_BITS = 5.06766e18 / 2.0**32
 """Of all offsets between the upper bits of a number and of its inverse tenth root the one with the least error."""
 
@@ -117,7 +120,10 @@ def first_step(forces, tolerance, distance, climb, speed):
     """
     pull = forces.gm / (distance * distance)
     dynamical_time = distance / max(speed, math.sqrt(pull * distance), 1e-300)
-    step = FIRST_STEP * (STEP_SHARE * tolerance) ** (1.0 / 6.0) * dynamical_time
+    root = DEFAULT_ROOT
+    if tolerance != DEFAULT_TOLERANCE:
+        root = (STEP_SHARE * tolerance) ** (1.0 / 6.0)
+    step = FIRST_STEP * root * dynamical_time
     fall = pull - (speed * speed - climb * climb) / distance
     if climb > 0.0 and fall > 0.0:
         step = min(step, 2.2 * climb / fall)
