@@ -33,6 +33,9 @@ SIDES = {
     "tailward": (-1.0, 0.0, 0.0),
 }
 
+STRAIGHT_OVER = 1e-9
+"""Sine of an angle that is rounding: the observer stands over the middle of a side."""
+
 
 class Attitude(NamedTuple):
     """N attitudes in the Sun-fixed frame: unit vectors (N, 3) along the look, the field's height and its width."""
@@ -80,7 +83,10 @@ def _limb(plan: PlanSpec, given: TangentAltitude | AltitudeScan, places: Floats,
     distance, rho = length(places), radius + altitudes
     out = unit(places)
     aside = np.broadcast_to(np.array(SIDES[given.side]), places.shape)
-    aside = unit(aside - dot(aside, out)[:, None] * out)
+    aside = aside - dot(aside, out)[:, None] * out
+    # What rounding leaves of nothing has no direction.
+    aside[length(aside) < STRAIGHT_OVER] = 0.0
+    aside = unit(aside)
     for wrong, reason in (
         (distance <= rho, "is not above that tangent altitude"),
         (length(aside) == 0.0, f"stands straight over the {given.side} side, which has no limb for him"),

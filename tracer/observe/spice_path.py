@@ -93,17 +93,30 @@ def _states(spice: Any, plan: PlanSpec, path: SpicePath) -> SpiceStates:
             f'{plan.file}: observer.step: "{path.step}" makes {count} exposures; at most {MOST_EXPOSURES} are allowed'
         )
     seconds = start + step * np.arange(count)
-    bodies: dict[str, Floats] = {}
-    for target, origin in ((path.observer, path.target), (path.target, path.sun)):
-        bodies[target] = np.array([spice.spkezr(target, et, INERTIAL, "NONE", origin)[0] for et in seconds])
-    from_sun = bodies[path.target]
+
+    def states(target: str, origin: str) -> Floats:
+        return np.array([spice.spkezr(target, et, INERTIAL, "NONE", origin)[0] for et in seconds])
+
+    observers, from_sun = states(path.observer, path.target), states(path.target, path.sun)
+    orbiting = from_sun if path.host is None else states(path.host, path.sun)
+    normals = np.cross(orbiting[:, :3], orbiting[:, 3:])
+    _refuse_turning_normals(plan, path, normals)
     return SpiceStates(
         times=np.array([spice.et2utc(et, "ISOC", 3) for et in seconds]),
-        observers=KILOMETRE * bodies[path.observer][:, :3],
+        observers=KILOMETRE * observers[:, :3],
         suns=-KILOMETRE * from_sun[:, :3],
-        normals=np.cross(from_sun[:, :3], from_sun[:, 3:]),
+        normals=normals,
         from_frame=np.array([spice.pxform(path.frame, INERTIAL, et) for et in seconds]),
     )
+
+
+def _refuse_turning_normals(plan: PlanSpec, path: SpicePath, normals: Floats) -> None:
+    """Refuse an orbit whose north swings round: that of a moon that is faster about its host than the host."""
+    if np.any(np.einsum("ni,ni->n", normals, np.broadcast_to(normals[0], normals.shape)) <= 0.0):
+        raise InputError(
+            f"{plan.file}: observer.target: the way of {path.target} about the Sun turns back on itself, as that of a "
+            "moon may; name the planet that it goes about as observer.host"
+        )
 
 
 def _words(error: Exception) -> str:

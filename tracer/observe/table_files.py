@@ -84,6 +84,7 @@ def _ecsv(table: Table) -> str:
 
 
 def _netcdf(table: Table, row: str) -> bytes:
+    _refuse_equal_names(table)
     file = netCDF4.Dataset("table.nc", "w", format="NETCDF4", memory=1)
     file.createDimension(row, len(table))
     file.setncatts({"Conventions": "CF-1.11", **{key: str(value) for key, value in table.meta.items()}})
@@ -96,9 +97,19 @@ def _netcdf(table: Table, row: str) -> bytes:
         stored.long_name = _words(name)
         unit = unit_of(name)
         if values.dtype.kind == "f":
-            stored.units = CF_UNITS.get(unit, unit) if unit else "1"
+            stored.units = "s" if name == "time" else CF_UNITS.get(unit, unit) if unit else "1"
         stored[:] = values.astype(object) if text else values.astype(kind)
     return bytes(file.close())
+
+
+def _refuse_equal_names(table: Table) -> None:
+    taken: dict[str, str] = {}
+    for name in table.colnames:
+        first = taken.setdefault(_NOT_IN_NETCDF.sub("_", name), name)
+        if first != name:
+            raise InputError(
+                f"columns {first} and {name}: have one name, {_NOT_IN_NETCDF.sub('_', name)}, in netCDF; rename one"
+            )
 
 
 def _words(name: str) -> str:

@@ -164,7 +164,10 @@ def column_values(column: Any) -> NDArray[Any]:
     if isinstance(column, Time):
         return np.asarray(column.isot)
     if np.ma.isMaskedArray(column):
-        return np.asarray(column.filled(np.nan if column.dtype.kind == "f" else column.fill_value))
+        # A missing entry stays one: no number stands for it, and in texts nothing does.
+        if column.dtype.kind in "iuf":
+            return np.ma.filled(np.ma.asarray(column, dtype=np.float64), np.nan)
+        return np.asarray(["" if entry is np.ma.masked else str(entry) for entry in column])
     array = np.asarray(column)
     return array.astype(str) if array.dtype.kind in "OS" else array
 

@@ -34,6 +34,7 @@ def true_anomalies(gas: Gas, distances: Floats | None, count: int) -> Floats:
     cosine = (a * (1.0 - e * e) / distances - 1.0) / e
     angle = np.degrees(np.arccos(np.where(np.abs(cosine) <= 1.0 + 1e-9, np.clip(cosine, -1.0, 1.0), np.nan)))
     outbound = np.full(len(distances), gas.sun_radial_velocity >= 0.0)
-    if len(distances) > 1 and np.ptp(distances) > 0.0:
+    # A distance that stays the same but for rounding says nothing about the sense.
+    if len(distances) > 1 and np.ptp(distances) > 1e-9 * np.max(distances):
         outbound = np.gradient(distances) >= 0.0
     return np.asarray(np.where(outbound, angle, (360.0 - angle) % 360.0))

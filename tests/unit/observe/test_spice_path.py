@@ -7,6 +7,7 @@ from scipy.spatial.transform import Rotation
 from tracer.errors import InputError
 from tracer.observe.plan import plan_observation
 from tracer.observe.planspec.plan import parse_plan
+from tracer.observe.spice_path import _refuse_turning_normals, spice_states
 from tracer.tally.axes import make_grid
 
 spiceypy = pytest.importorskip("spiceypy", reason="spiceypy, the extra spice, is not installed")
@@ -192,3 +193,19 @@ def test_quaternions_need_a_table(folder, product):
     )
     with pytest.raises(InputError, match=r'pointing\.law: "table" needs observer.law = "table"'):
         plan_observation(product, parse_plan(text, folder / "plan.toml"))
+
+
+def test_north_of_a_moon_is_that_of_its_hosts_orbit(folder):
+    moon = KERNELS.replace('"LANTERN"', '"HARROW"').replace(
+        'target = "HARROW"', 'target = "LANTERN"\nhost = "HARROW"'
+    )
+    plan = parse_plan(PLAN.format(observer=moon, direction=[0, 0, 1]), folder / "plan.toml")
+    normals = spice_states(plan, plan.observer).normals
+    north = normals / np.linalg.norm(normals, axis=1)[:, None]
+    np.testing.assert_allclose(north, np.tile(TILT.apply([0.0, 0.0, 1.0]), (COUNT, 1)), rtol=0.0, atol=1e-9)
+
+
+def test_a_way_that_turns_back_on_itself_has_no_north(folder):
+    plan = parse_plan(PLAN.format(observer=KERNELS, direction=[0, 0, 1]), folder / "plan.toml")
+    with pytest.raises(InputError, match=r"name the planet that it goes about as observer\.host"):
+        _refuse_turning_normals(plan, plan.observer, np.array([[0.0, 0.1, 1.0], [0.0, 0.1, -1.0]]))

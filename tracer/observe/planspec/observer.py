@@ -53,6 +53,10 @@ class SpicePath(Table):
     )
     observer: Line = Field(description="Name or number of the observer in the kernels.")
     target: Line = Field(description="Name or number of the body in the kernels, the one of the product.")
+    host: Line | None = Field(
+        None,
+        description="Name or number of the planet that a moon goes about: north is that of its orbit about the Sun.",
+    )
     sun: Line = Field("SUN", description="Name or number of the Sun in the kernels.")
     frame: Line = Field(
         "J2000", description="Frame of the directions in `[pointing]`, by its name in the kernels."
