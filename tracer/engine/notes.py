@@ -42,15 +42,15 @@ def _sun_notes(spec: RunSpec, sun: Sunlight) -> Iterator[str]:
     host = bodies()[spec.body.name].host if spec.body.name in bodies() else None
     if host is not None and host.orbit is not None:
         if spec.sun is not None and spec.sun.epoch is not None:
-            stands = (
-                f"stands at its own distance from the Sun and turns about it with {host.name}; the gravity"
+            yield (
+                f"{spec.body.name} stands at its own distance from the Sun and turns about it with {host.name}; "
+                f"the gravity and shadow of {host.name} are left out"
             )
         else:
-            stands = (
-                f"has the distance and velocity of {host.name} from the Sun; its own motion about {host.name}, "
-                "and the gravity"
+            yield (
+                f"{spec.body.name} has the distance and velocity of {host.name} from the Sun; its own motion about "
+                f"{host.name}, and the gravity and shadow of {host.name}, are left out"
             )
-        yield f"{spec.body.name} {stands} and shadow of {host.name}, are left out"
 
 
 def _photo_notes(species: str, sun: Sunlight) -> Iterator[str]:

@@ -238,7 +238,7 @@ def _follows_distance(spec: RunSpec, key: str, entry: ReleaseTable) -> bool:
             spec,
             key,
             entry.rate_scaling,
-            'needs sun.motion = "moving"; without it the distance from the Sun does not change',
+            'needs sun.motion = "moving"; without it the distance from the Sun does not change, and "constant" says so',
         )
     return True
 

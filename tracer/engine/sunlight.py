@@ -7,7 +7,8 @@ from typing import NamedTuple
 import numpy as np
 
 from tracer.catalogue.lines import lines_of
-from tracer.catalogue.load import bodies
+from tracer.catalogue.load import bodies, hosts
+from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.engine.body_constants import BodyConstants
 from tracer.engine.refusal import refuse
 from tracer.engine.runspec.moment import moment_text
@@ -64,9 +65,12 @@ def resolve_sunlight(spec: RunSpec, body: BodyConstants) -> Sunlight | None:
     lines = _lines(spec)
     lines_push, push = _push(spec, bool(lines))
     station = _station(spec, spec.sun, body)
+    orbit = _orbit(spec, spec.sun, body, station)
+    nearest = station.distance if orbit is None else orbit.semi_major_axis * (1.0 - orbit.eccentricity)
+    _refuse_inside_the_sun(spec, body, nearest)
     return Sunlight(
         station=station,
-        orbit=_orbit(spec, spec.sun, body, station),
+        orbit=orbit,
         tide=spec.sun.tide,
         shadow=spec.sun.shadow,
         lines=lines,
@@ -119,6 +123,22 @@ def _orbit(spec: RunSpec, sun: SunTable, body: BodyConstants, station: Station) 
             "follows; give sun.true_anomaly",
         )
     return orbit_through(station)
+
+
+def _refuse_inside_the_sun(spec: RunSpec, body: BodyConstants, nearest: float) -> None:
+    """Refuse a body that stands, or on its way comes, so near that the spheres touch: no cone is a shadow then."""
+    least = hosts()["Sun"].radius + body.radius
+    if nearest > least:
+        return
+    assert spec.sun is not None
+    key = "sun.distance" if spec.sun.distance is not None else "body.orbit"
+    raise refuse(
+        spec,
+        key,
+        None,
+        f"brings the body to {nearest / ASTRONOMICAL_UNIT:.4g} au from the Sun's centre, inside the Sun; must stay "
+        f"above {least / ASTRONOMICAL_UNIT:.4g} au",
+    )
 
 
 def true_anomaly(spec: RunSpec) -> float | None:

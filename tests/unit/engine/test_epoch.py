@@ -100,6 +100,8 @@ def test_bodies_without_an_ephemeris_are_refused(changes, message):
         ("sun.epoch=2001-13-01", "no moment"),
         ("sun.epoch=5", "no moment"),
         ("sun.epoch=1899-01-01", "is out of range; must be from 1960-01-01 to 2100-01-01"),
+        ("sun.epoch=0001-01-01T00:00:00+14:00", "is out of range; must be from 1960-01-01 to 2100-01-01"),
+        ("sun.epoch=9999-12-31T23:00:00-14:00", "is out of range; must be from 1960-01-01 to 2100-01-01"),
         ("sun.true_anomaly=5 deg", 'sun.epoch: "2001-05-26T00:00:00Z" stands beside true_anomaly "5 deg"'),
         ("sun.distance=0.4 au", 'sun.distance: "0.4 au" stands beside epoch "2001-05-26T00:00:00Z"'),
         ("sun.radial_velocity=4 km/s", "with epoch it follows from the orbit"),

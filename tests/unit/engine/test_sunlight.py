@@ -314,3 +314,29 @@ def test_batch_in_sunlight_does_not_depend_on_its_slices(small_light_spec, monke
     assert sum(flights for _, flights in told) == whole.flights
     # Short slices do stop between an atom's bounces: it counts in part.
     assert any(0.0 < atoms < 0.5 for atoms, _ in told) or budget == 50
+
+
+@pytest.mark.parametrize(
+    ("changes", "key"),
+    [
+        (["sun.distance=0.004 au"], "sun.distance"),
+        (
+            ['body.orbit={ semi_major_axis = "0.01 au", eccentricity = 0.6 }', "sun.true_anomaly=0 deg"],
+            "body.orbit",
+        ),
+        (
+            [
+                'body.orbit={ semi_major_axis = "0.01 au", eccentricity = 0.6 }',
+                "sun.true_anomaly=110 deg",
+                "sun.motion=moving",
+            ],
+            "body.orbit",
+        ),
+    ],
+)
+def test_a_body_inside_the_sun_is_refused(changes, key):
+    if key == "sun.distance":
+        changes = ['body={ name = "Ball", radius = "1000 km", gm = "3000 km3 s-2" }', NEAR, *changes]
+    message = refusal(*changes)
+    assert message.startswith(f"{key}: brings the body to ")
+    assert "inside the Sun; must stay above 0.0046" in message

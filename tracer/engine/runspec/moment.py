@@ -29,11 +29,15 @@ class Moment:
     def read(self, given: object) -> datetime:
         """Return the moment in UTC; ValueError says what is allowed."""
         moment = _moment(given)
-        moment = moment.replace(tzinfo=UTC) if moment.tzinfo is None else moment.astimezone(UTC)
+        far = ValueError(
+            f"{quoted(str(given))} is out of range; must be from {FIRST:%Y-%m-%d} to {LAST:%Y-%m-%d}"
+        )
+        try:
+            moment = moment.replace(tzinfo=UTC) if moment.tzinfo is None else moment.astimezone(UTC)
+        except OverflowError:
+            raise far from None
         if not FIRST <= moment <= LAST:
-            raise ValueError(
-                f"{quoted(str(given))} is out of range; must be from {FIRST:%Y-%m-%d} to {LAST:%Y-%m-%d}"
-            )
+            raise far
         return moment
 
     def kind(self) -> str:
