@@ -22,7 +22,7 @@ from tracer.kernels.temperature import (
 )
 from tracer.physics.conduction import Ground, conduction_map
 from tracer.physics.equilibrium import equilibrium_temperature
-from tracer.physics.orbit import mean_motion
+from tracer.physics.orbit import mean_motion, mean_sunlight_distance
 from tracer.units import si
 
 KEY = "surface.temperature"
@@ -69,6 +69,15 @@ def synodic_rate(body: BodyConstants, sun: Sunlight) -> float | None:
     )
 
 
+def mean_distance(body: BodyConstants, sun: Sunlight) -> float:
+    """Return the distance [m] at which steady sunlight is that of the heliocentric orbit in the mean over time.
+
+    Where there is no orbit it is the distance of `sun`.
+    """
+    orbit = body.heliocentric_orbit
+    return sun.station.distance if orbit is None else mean_sunlight_distance(orbit)
+
+
 def _equilibrium(setting: Setting, table: tables.EquilibriumTemperature) -> SurfaceTemperature:
     assert setting.sun is not None
     subsolar = equilibrium_temperature(table.albedo, table.emissivity, setting.sun.station.distance)
@@ -99,7 +108,7 @@ def _conduction(setting: Setting, table: tables.Conduction) -> SurfaceTemperatur
             'needs ground that turns under the Sun; must be for example "equilibrium"',
         )
     ground = Ground(_thermal_inertia(table), table.albedo, table.emissivity)
-    distance = setting.sun.station.distance if table.distance is None else si(table.distance)
+    distance = mean_distance(setting.body, setting.sun) if table.distance is None else si(table.distance)
     return SurfaceTemperature(CONDUCTION, NONE, NONE, conduction_map(ground, distance, rate))
 
 

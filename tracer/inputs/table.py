@@ -1,8 +1,10 @@
 """What all tables of an input file have in common, and how a law is told by its name."""
 
+from collections.abc import Mapping
+from pathlib import Path
 from typing import Any
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, model_validator
+from pydantic import BaseModel, BeforeValidator, ConfigDict, PrivateAttr, model_validator
 from pydantic_core import PydanticCustomError
 
 
@@ -17,6 +19,29 @@ class Table(BaseModel):
         if not isinstance(given, dict):
             return given
         return {key: tuple(value) if isinstance(value, list) else value for key, value in given.items()}
+
+
+class FileTable(Table):
+    """An input file as a whole, which knows its name: `file` begins every message about it."""
+
+    _file: str = PrivateAttr(default="input file")
+    _folder: Path = PrivateAttr(default=Path())
+
+    @property
+    def folder(self) -> Path:
+        """The file's folder, where its relative paths begin; the current folder without a file."""
+        return self._folder
+
+    @property
+    def file(self) -> str:
+        """The file's name as it was asked for."""
+        return self._file
+
+    def model_post_init(self, context: Any, /) -> None:
+        """Take the name of the file from the validation's context."""
+        if isinstance(context, Mapping) and "file" in context:
+            self._file = context["file"]
+            self._folder = Path(self._file).absolute().parent
 
 
 def _law_by_its_name(given: Any) -> Any:

@@ -4,7 +4,7 @@ import math
 
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
@@ -17,7 +17,7 @@ from tracer.kernels.crossing import (
 )
 from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
-from tracer.kernels.lane_step import LANDS, lane_place, lane_rates
+from tracer.kernels.lane_step import DOUBTFUL, LANDS, lane_place, lane_rates, try_steps
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.orbit import ORDER, body_in_series, body_on_orbit, keep_body
 from tracer.kernels.shadow import PENUMBRA, shadow_behind, zone_at, zone_beyond
@@ -54,6 +54,27 @@ def launch_in_lane(lanes, lane, conditions, tolerance, clock, time_limit, place)
     lanes[row.TRIALS + lane] = 0.0
     lanes[row.KEPT + lane] = 1.0
     lanes[row.STANDING + lane] = FLYING
+
+
+@inlined
+def end_in_lane(lanes, lane):
+    """Return (ending, survival, time [s], position, velocity) of a flight, as `ground.come_down` takes it."""
+    return (
+        int(lanes[row.STANDING + lane]),
+        lanes[row.KEPT + lane],
+        lanes[row.TIME + lane],
+        *lane_place(lanes, row.START, lane),
+    )
+
+
+@merged
+def step_lanes(lanes, sky, tables, curve):
+    """Make a step in every lane, and cut or end what landed or met another surface."""
+    try_steps(lanes, sky, tables)
+    land_lanes(lanes, sky.forces.radius)
+    for lane in range(WIDTH):
+        if lanes[row.FLAGGED + lane] == DOUBTFUL:
+            look_closer(lanes, lane, sky, tables, curve)
 
 
 @kernel

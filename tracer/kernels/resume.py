@@ -5,7 +5,7 @@ frame; its weight [s-1]; the part of it that survives; its age [s]; the row and 
 1 where it is under way, 0 where the room is free; and what `snapshot` needs beside that: when it was released [s] after
 the stated position of a moving body; as what it flies; the number of its launch; how many visits that launch gets and
 how many it has had; its limit of age [s]; the age [s] that its cohort's atom reached, the time [s] that it survived,
-and the steps that it made.
+the steps that it made, and the mean time [s] that the cohort had survived by then.
 """
 
 from typing import NamedTuple
@@ -44,7 +44,8 @@ LIMIT = 17
 SPAN = 18
 SURVIVED = 19
 STEPS_MADE = 20
-ATOM_SIZE = 21
+MEAN = 21
+ATOM_SIZE = 22
 
 
 class Resume(NamedTuple):

@@ -17,20 +17,17 @@ from tracer.fate import Fate
 from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.endings import AGED, FLYING, UNRESOLVED
 from tracer.kernels.ground import come_down, release, take_off
-from tracer.kernels.lane_flight import launch_in_lane, look_closer
+from tracer.kernels.lane_flight import end_in_lane, launch_in_lane, step_lanes
 from tracer.kernels.lane_sample import book_steps
-from tracer.kernels.lane_step import try_steps
 from tracer.kernels.lanes import (
     ACCEPTED,
     ALIVE,
-    FLAGGED,
     IONIZED,
     KEPT,
     LIFE,
     LOST,
     STANDING,
     START,
-    TIME,
     VACANT,
     VELOCITY,
     WIDTH,
@@ -48,6 +45,7 @@ from tracer.kernels.resume import (
     CURSOR,
     ENDED,
     LIMIT,
+    MEAN,
     NUMBER,
     RELEASED,
     ROLE,
@@ -134,10 +132,7 @@ def trace_visits(world, launches, resume, tally, cohort, events, scrap, rng, mos
                 flights += 1
             _begin_flight(world, launches, resume, cohort, scrap, lane, rng)
         resume.counters[CURSOR] = 0
-        try_steps(lanes, sky, tables)
-        for lane in range(WIDTH):
-            if lanes[FLAGGED + lane] > 0.0:
-                look_closer(lanes, lane, sky, tables, resume.curve)
+        step_lanes(lanes, sky, tables, resume.curve)
         book_steps(lanes, sky)
         for lane in range(WIDTH):
             if lanes[ACCEPTED + lane] > 0.0:
@@ -202,7 +197,7 @@ def _release_cohort(world, launches, atom, number, cohort):
 def _release_visit(world, launches, atom, cohort, scrap, rng):
     """Release the same atom earlier, by an age drawn from one of as many even parts of the mixture as it has visits."""
     share = (atom[VISITED] + rng.random()) / atom[VISITS]
-    ends = _ends_of_ages(world, atom[SPAN], atom[SURVIVED], cohort.life[0] / _ended(cohort))
+    ends = _ends_of_ages(world, atom[SPAN], atom[SURVIVED], atom[MEAN])
     age = _age_drawn(ends, share)
     orbit = world.light.conditions.sky.forces.orbit
     distance, _ = orbit_state(orbit, -age)
@@ -262,7 +257,7 @@ def _density_of_ages(ends, age):
 @merged
 def _end_flight(world, resume, tally, cohort, events, scrap, lane, rng):
     atom, lanes = resume.atoms[lane], resume.lanes
-    end = _end_of_lane(lanes, lane)
+    end = end_in_lane(lanes, lane)
     alive, role = lanes[ALIVE + lane], atom[ROLE]
     book = cohort if role == COHORT else scrap
     if role == VISIT:
@@ -283,25 +278,11 @@ def _end_flight(world, resume, tally, cohort, events, scrap, lane, rng):
     if role == COHORT and end[0] == AGED:
         _fly_on(world, atom, end)
     elif role != VISIT and atom[UNDER_WAY] == 0.0:
+        # Kept, since the even parts of the mixture make up one whole only if it stays the same from visit to visit.
+        atom[MEAN] = cohort.life[0] / _ended(cohort)
         atom[VISITS] = min(max(math.floor(VISITS_PER_STEP * atom[STEPS_MADE]), FEWEST_VISITS), MOST_VISITS)
     if atom[UNDER_WAY] == 0.0 and atom[VISITED] == atom[VISITS]:
         resume.counters[ENDED] += 1
-
-
-@inlined
-def _end_of_lane(lanes, lane):
-    """Return (ending, survival, time [s], position, velocity) of a flight, as `ground.come_down` takes it."""
-    return (
-        int(lanes[STANDING + lane]),
-        lanes[KEPT + lane],
-        lanes[TIME + lane],
-        lanes[START + lane],
-        lanes[START + Y + lane],
-        lanes[START + Z + lane],
-        lanes[START + VELOCITY + lane],
-        lanes[START + VELOCITY + Y + lane],
-        lanes[START + VELOCITY + Z + lane],
-    )
 
 
 @merged

@@ -6,25 +6,18 @@ from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
-from tracer.kernels.lane_flight import land_lanes, launch_in_lane, look_closer
+from tracer.kernels.lane_flight import end_in_lane, launch_in_lane, step_lanes
 from tracer.kernels.lane_sample import sample_steps
 from tracer.kernels.lane_scoring import score_lanes
-from tracer.kernels.lane_step import DOUBTFUL, try_steps
 from tracer.kernels.lanes import (
     ACCEPTED,
     ALIVE,
     DRAWN,
-    FLAGGED,
     KEPT,
     LEAST,
     STANDING,
-    START,
-    TIME,
     VACANT,
-    VELOCITY,
     WIDTH,
-    Y,
-    Z,
 )
 from tracer.kernels.launches import Launches
 from tracer.kernels.resume import AGE, CURSOR, ENDED, RELEASED, STEPS, SURVIVAL, UNDER_WAY, Resume
@@ -82,11 +75,8 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                 flights += 1
             _begin_flight(world, launches, resume, tally, lane)
         resume.counters[CURSOR] = 0
-        try_steps(lanes, sky, tables)
-        land_lanes(lanes, sky.forces.radius)
+        step_lanes(lanes, sky, tables, resume.curve)
         for lane in range(WIDTH):
-            if lanes[FLAGGED + lane] == DOUBTFUL:
-                look_closer(lanes, lane, sky, tables, resume.curve)
             if lanes[ACCEPTED + lane] > 0.0:
                 resume.counters[STEPS] += 1
                 lanes[DRAWN + lane] = rng.random()
@@ -134,19 +124,8 @@ def _begin_flight(world, launches, resume, tally, lane):
 @merged
 def _end_flight(world, resume, tally, lane, rng):
     lanes = resume.lanes
-    end = (
-        int(lanes[STANDING + lane]),
-        lanes[KEPT + lane],
-        lanes[TIME + lane],
-        lanes[START + lane],
-        lanes[START + Y + lane],
-        lanes[START + Z + lane],
-        lanes[START + VELOCITY + lane],
-        lanes[START + VELOCITY + Y + lane],
-        lanes[START + VELOCITY + Z + lane],
-    )
     atom = resume.atoms[lane]
-    come_down(world, atom, tally, lanes[ALIVE + lane], end, rng)
+    come_down(world, atom, tally, lanes[ALIVE + lane], end_in_lane(lanes, lane), rng)
     if atom[UNDER_WAY] == 0.0:
         resume.counters[ENDED] += 1
 

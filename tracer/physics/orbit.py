@@ -26,6 +26,14 @@ def mean_motion(orbit: Orbit) -> float:
     return math.sqrt(GM_SUN / orbit.semi_major_axis**3)
 
 
+def mean_sunlight_distance(orbit: Orbit) -> float:
+    """Return a (1 - e^2)^(1/4) [m], where 1/d^2 is that of a heliocentric orbit in the mean over time.
+
+    The mean of 1/d^2 over time is that of Omega/h over a turn: 2 pi/(P h) = 1/(a^2 sqrt(1 - e^2)) (two-body motion).
+    """
+    return orbit.semi_major_axis * math.sqrt(math.sqrt(1.0 - orbit.eccentricity**2))
+
+
 def angular_momentum(orbit: Orbit) -> float:
     """Return h = sqrt(GM_sun a (1 - e^2)) [m2 s-1] of a heliocentric orbit, per unit mass."""
     return math.sqrt(GM_SUN * orbit.semi_major_axis * (1.0 - orbit.eccentricity**2))

@@ -99,13 +99,13 @@ def test_equilibrium_takes_the_distance_of_the_sun():
     [
         # A circle at the Sun's distance where there is no orbit: Kepler's third law in years and au.
         ((), 0.35, 1.0 / 60.0 - 1.0 / (365.25690 * 0.35**1.5)),
-        # The orbit's mean motion, at the distance where the body stands.
+        # The orbit's mean motion, at the distance of its mean sunlight: 1/(a^2 sqrt(1 - e^2)), two-body motion.
         (
             (
                 'body.orbit={ semi_major_axis = "0.42 au", eccentricity = 0.18 }',
                 'sun={ true_anomaly = "0 deg" }',
             ),
-            0.42 * 0.82,
+            0.42 * (1.0 - 0.18**2) ** 0.25,
             1.0 / 60.0 - 1.0 / (365.25690 * 0.42**1.5),
         ),
         # Slower than its orbit: the Sun moves the other way.
@@ -113,7 +113,7 @@ def test_equilibrium_takes_the_distance_of_the_sun():
         (("body.rotation_period=-60 d",), 0.35, -1.0 / 60.0 - 1.0 / (365.25690 * 0.35**1.5)),
     ],
 )
-def test_conduction_takes_the_mean_rate_under_the_sun_and_its_distance(changes, distance_au, rate):
+def test_conduction_takes_the_mean_rate_under_the_sun_and_its_mean_distance(changes, distance_au, rate):
     found = scene(CONDUCTING, *changes)
     assert found.surface_temperature.law == CONDUCTION
     assert synodic_rate(found.body, found.sun) == pytest.approx(2.0 * np.pi * rate / DAY, rel=1e-6)

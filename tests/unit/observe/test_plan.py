@@ -18,6 +18,7 @@ from tracer.observe.planspec.spectrometer import FieldOfView
 from tracer.observe.pointing import Attitude, directions, field_samples, rotations
 from tracer.observe.sightlines import sightlines
 from tracer.observe.sights import unit
+from tracer.observe.true_anomaly import true_anomalies
 from tracer.tally.axes import make_grid
 
 RADIUS = 1.8e6
@@ -253,6 +254,20 @@ def test_true_anomaly_is_that_of_the_distance_on_the_way_in(planned):
     anomaly = 360.0 - math.degrees(math.acos((p / 0.35 - 1.0) / 0.18))
     np.testing.assert_allclose(table["true_anomaly_deg"], anomaly, rtol=1e-9)
     np.testing.assert_allclose(table["sun_distance_au"], 0.35)
+
+
+def test_a_distance_that_stays_but_for_rounding_does_not_turn_the_orbit_round(product):
+    # The body comes in, and a distance read back from vectors wavers in its last digits.
+    wavering = 0.35 * AU * (1.0 + 2e-16 * np.array([0.0, 1.0, -1.0, 2.0, 0.0, 1.0]))
+    found = true_anomalies(gas_of(product), wavering, 6)
+    assert np.all(found > 180.0)
+    np.testing.assert_allclose(found, found[0], rtol=1e-9)
+
+
+def test_an_observer_over_the_middle_of_a_side_has_no_limb_there_whatever_rounding_leaves(planned):
+    path = PATH.splitlines()[0] + "\n0,1e-13,-5000,2e-13\n"
+    with pytest.raises(InputError, match="stands straight over the dawn side, which has no limb for him"):
+        planned(path=path)
 
 
 def test_rows_inside_a_keep_out_are_marked_as_not_to_be_commanded(planned):

@@ -2,11 +2,18 @@
 
 import math
 
+import numpy as np
 import pytest
 
 from tracer.catalogue.load import bodies, hosts
+from tracer.catalogue.records import Orbit
 from tracer.constants import ASTRONOMICAL_UNIT, GM_SUN
-from tracer.physics.orbit import hill_radius, station_at_distance, station_at_true_anomaly
+from tracer.physics.orbit import (
+    hill_radius,
+    mean_sunlight_distance,
+    station_at_distance,
+    station_at_true_anomaly,
+)
 
 ORBIT = bodies()["Mercury"].orbit
 A, E = ORBIT.semi_major_axis, ORBIT.eccentricity
@@ -51,3 +58,11 @@ def test_distance_off_the_orbit_is_refused(distance):
 def test_hill_radius_of_mercury():
     # Computed for this project from a (1 - e) (m/3M)^(1/3): 175,297 km.
     assert hill_radius(ORBIT, 2.2031868e13, hosts()["Sun"].gm) == pytest.approx(175297e3, rel=1e-4)
+
+
+@pytest.mark.parametrize("eccentricity", [0.0, 0.2056, 0.8])
+def test_mean_sunlight_is_that_over_a_turn(eccentricity):
+    # The mean over time by quadrature over the eccentric anomaly E: dt ~ 1 - e cos E, d = a (1 - e cos E).
+    nearness = 1.0 - eccentricity * np.cos(2.0 * np.pi * np.arange(4096) / 4096)
+    mean = np.mean(nearness / nearness**2)
+    assert mean_sunlight_distance(Orbit(7e10, eccentricity)) == pytest.approx(7e10 / np.sqrt(mean), rel=1e-12)

@@ -1,8 +1,6 @@
 """The whole run file."""
 
-from collections.abc import Iterable, Iterator, Mapping
-from pathlib import Path
-from typing import Any
+from collections.abc import Iterable, Iterator
 
 from pydantic import Field, PrivateAttr, model_validator
 
@@ -20,14 +18,14 @@ from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.runspec.sunless import dead_without_sun, unheated_without_sun
 from tracer.engine.runspec.surface import SurfaceTable
-from tracer.inputs.table import Table, conflict
+from tracer.inputs.table import FileTable, conflict
 from tracer.inputs.text import Line
 
 _COMPANIONS = ("", "_standard_error", "_replicates")
 """Endings of the variables that the product keeps for each image."""
 
 
-class RunSpec(Table):
+class RunSpec(FileTable):
     """A run file as the user wrote it, checked, with the defaults filled in.
 
     Values keep their units. Two are equal where all keys are, wherever their files lie.
@@ -45,23 +43,6 @@ class RunSpec(Table):
     ensemble: EnsembleTable = Field(EnsembleTable(), description="Number of particles, batches and seed.")
 
     _file: str = PrivateAttr(default="run file")
-    _folder: Path = PrivateAttr(default=Path())
-
-    @property
-    def folder(self) -> Path:
-        """The run file's folder, where its relative paths begin; the current folder without a file."""
-        return self._folder
-
-    @property
-    def file(self) -> str:
-        """The run file's name as it was asked for, which begins every message about it."""
-        return self._file
-
-    def model_post_init(self, context: Any, /) -> None:
-        """Take the name of the file from the validation's context."""
-        if isinstance(context, Mapping) and "file" in context:
-            self._file = context["file"]
-            self._folder = Path(self._file).absolute().parent
 
     def __eq__(self, other: object) -> bool:
         """Whether all keys are equal; file and folder are no keys."""

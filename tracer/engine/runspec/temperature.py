@@ -76,8 +76,8 @@ class Conduction(Table):
     emissivity: Emissivity = Field(0.95, description="Thermal emissivity.")
     distance: Length | None = Field(
         None,
-        description="Distance from the Sun at which the ground is lit. Default: that of `[sun]`, which the law needs, "
-        "as it needs a rotation period.",
+        description="Distance from the Sun at which the ground is lit. Default: where sunlight is that of "
+        "the orbit in the mean over time, without an orbit that of `[sun]`; needed are `[sun]` and a rotation period.",
     )
 
     @model_validator(mode="after")

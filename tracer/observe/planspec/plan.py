@@ -1,16 +1,13 @@
 """A plan file as a whole, read and checked."""
 
 import os
-from collections.abc import Mapping
-from pathlib import Path
-from typing import Any
 
 from pydantic import Field, PrivateAttr, ValidationError
 
 from tracer.errors import InputError
 from tracer.inputs.messages import validation_message
 from tracer.inputs.reference import reference_of
-from tracer.inputs.table import Table
+from tracer.inputs.table import FileTable
 from tracer.inputs.text import Line
 from tracer.inputs.toml import file_text, tables
 from tracer.observe.planspec.observer import ObserverPath
@@ -29,7 +26,7 @@ below are refused.
 """
 
 
-class PlanSpec(Table):
+class PlanSpec(FileTable):
     """A plan file as the user wrote it, checked, with the defaults filled in."""
 
     title: Line = Field(description="Title of the plan, carried into its table.")
@@ -38,23 +35,6 @@ class PlanSpec(Table):
     spectrometer: SpectrometerTable = Field(description="The instrument.")
 
     _file: str = PrivateAttr(default="plan file")
-    _folder: Path = PrivateAttr(default=Path())
-
-    @property
-    def folder(self) -> Path:
-        """The plan file's folder, where its relative paths begin; the current folder without a file."""
-        return self._folder
-
-    @property
-    def file(self) -> str:
-        """The plan file's name as it was asked for, which begins every message about it."""
-        return self._file
-
-    def model_post_init(self, context: Any, /) -> None:
-        """Take the name of the file from the validation's context."""
-        if isinstance(context, Mapping) and "file" in context:
-            self._file = context["file"]
-            self._folder = Path(self._file).absolute().parent
 
 
 def load_plan(path: str | os.PathLike[str]) -> PlanSpec:
