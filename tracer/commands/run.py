@@ -164,6 +164,7 @@ def _trace_and_save(
                 executor.workers,
                 watch,
                 executor.map_batches,
+                prepare=executor.prepare,
                 batches=job.plan.batches if job.share else None,
                 checkpoints=checkpoints,
                 note=note,

@@ -33,6 +33,12 @@ PILOT_SEED = 20310601
 PILOT_FLIGHTS = 1_000
 """Flights after which a pilot's atom is given up: what it still does is no news of its launch."""
 
+PILOT_BUDGET = 200_000
+"""Flights after which a pilot ends early: a few seconds. A number of flights, so that it ends everywhere alike."""
+
+LEAST_PILOT_ROUNDS = 32
+"""Atoms from each box that are flown at any rate: fewer would not tell how often the rare ones matter."""
+
 SHELLS = 8
 NEAREST_SHELL = 0.25
 """Altitude [radii] where far begins."""
@@ -111,7 +117,11 @@ def _speed_boxes(edges: Floats) -> Boxes:
 
 
 def fly_pilot(scene: Scene, release: Release, boxes: Boxes) -> Sample:
-    """Return what atoms from all `boxes` leave far out and what they cost, as many from each box."""
+    """Return what atoms from all `boxes` leave far out and what they cost, as many from each box.
+
+    They fly in rounds of one from each box, and no more rounds begin once `PILOT_BUDGET` flights are spent: gas that
+    bounces a thousand times would take a minute, and forgets its launch anyway.
+    """
     each = PILOT_ATOMS // len(boxes.low)
     box = np.repeat(np.arange(len(boxes.low)), each)
     rng = np.random.default_rng(PILOT_SEED)
@@ -123,9 +133,16 @@ def fly_pilot(scene: Scene, release: Release, boxes: Boxes) -> Sample:
     work = make_work(scene._replace(grid=_shells(scene), planes=()), PILOT_SEED, 1)
     scores = np.empty((len(box), SHELLS + 1))
     costs = np.empty(len(box))
-    for i in range(len(box)):
-        scores[i], costs[i] = _fly_alone(work, Launches(*(array[i : i + 1] for array in launches)), rng)
-    return Sample(box, points, importance(scores, boxes.probabilities[box] / each), costs)
+    flown, spent = 0, 0
+    while flown < each and (flown < LEAST_PILOT_ROUNDS or spent < PILOT_BUDGET):
+        for i in range(flown, len(box), each):
+            launch = Launches(*(array[i : i + 1] for array in launches))
+            scores[i], costs[i], flights = _fly_alone(work, launch, rng)
+            spent += flights
+        flown += 1
+    done = np.flatnonzero(np.arange(len(box)) % each < flown)
+    box, scores = box[done], scores[done]
+    return Sample(box, points[done], importance(scores, boxes.probabilities[box] / flown), costs[done])
 
 
 def _shells(scene: Scene) -> Grid:
@@ -135,11 +152,10 @@ def _shells(scene: Scene) -> Grid:
     return Grid(radius, altitude_edges(first, top, SHELLS + 1), latitude_edges(1), local_time_edges(1))
 
 
-def _fly_alone(work: Work, launch: Launches, rng: np.random.Generator) -> tuple[Floats, float]:
-    """Return what one atom leaves in the far shells and in escape, (SHELLS + 1,), and its cost in steps."""
+def _fly_alone(work: Work, launch: Launches, rng: np.random.Generator) -> tuple[Floats, float, int]:
+    """Return what one atom leaves in the far shells and in escape, (SHELLS + 1,), its cost in steps, and its flights."""
     tally = tally_views(work.layout, np.zeros(work.layout.size))
     resume = new_resume(len(work.scene.lines))
     flights = trace_slice(work.world, launch, resume, tally, rng, PILOT_FLIGHTS)
-    return np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED]), flights + float(
-        resume.counters[STEPS]
-    )
+    left = np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED])
+    return left, flights + float(resume.counters[STEPS]), flights

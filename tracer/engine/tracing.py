@@ -8,7 +8,7 @@ import xarray as xr
 from tracer.engine.batches import BatchResult, Task, compile_kernels
 from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.emphasis import with_emphasis
-from tracer.engine.executors.seam import MapBatches, Tick
+from tracer.engine.executors.seam import MapBatches, Prepare, Tick, nothing_to_prepare
 from tracer.engine.executors.threads import map_batches
 from tracer.engine.folding import Folder
 from tracer.engine.interruption import deferred_interrupts
@@ -28,6 +28,7 @@ def run(
     watch: Watcher | None = None,
     executor: MapBatches = map_batches,
     *,
+    prepare: Prepare = nothing_to_prepare,
     batches: BatchRange | None = None,
     checkpoints: Checkpoints | None = None,
     note: Note = no_note,
@@ -45,6 +46,8 @@ def run(
         Told of the progress now and then; nothing is shown without it.
     executor : callable
         Where batches run, see `tracer.engine.executors`.
+    prepare : callable, optional
+        Has the executor's workers load what batches call, before the clock starts.
     batches : BatchRange, optional
         A share of the run: these batches alone. `tracer merge` puts shares together.
     checkpoints : Checkpoints, optional
@@ -73,6 +76,7 @@ def run(
     refuse_what_does_not_fit(plan, workers)
     plan = plan._replace(work=with_emphasis(plan.work))
     compile_kernels(plan.work)
+    prepare(plan.work)
     folder = plan.new_folder()
     checkpoints = Checkpoints(None) if checkpoints is None else checkpoints
     checkpoints.begin(plan.identity(), folder)

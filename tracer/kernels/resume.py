@@ -63,13 +63,28 @@ class Resume(NamedTuple):
     shine: np.ndarray
 
 
+MARGIN = 16
+"""Unused numbers, 128 bytes, before and behind each array of a `Resume`.
+
+A step writes to all of them. Two arrays of two threads in one cache line, or in the pair of lines that is fetched
+together, would make the processors wait for each other at every write.
+"""
+
+
 def new_resume(lines: int) -> Resume:
     """Return the start of a batch of atoms with `lines` emission lines."""
     return Resume(
-        np.zeros(COUNTERS, np.int64),
-        np.zeros(ATOM_SIZE),
-        np.zeros((WIDTH, ATOM_SIZE)),
-        new_lanes(),
-        new_curve(),
-        np.zeros(lines),
+        _with_margins(np.zeros(COUNTERS, np.int64)),
+        _with_margins(np.zeros(ATOM_SIZE)),
+        _with_margins(np.zeros(WIDTH * ATOM_SIZE)).reshape(WIDTH, ATOM_SIZE),
+        _with_margins(new_lanes()),
+        _with_margins(new_curve()),
+        _with_margins(np.zeros(lines)),
     )
+
+
+def _with_margins(array):
+    """Return a copy of a flat `array` within memory of which nobody else uses the neighbourhood."""
+    room = np.zeros(len(array) + 2 * MARGIN, array.dtype)
+    room[MARGIN : MARGIN + len(array)] = array
+    return room[MARGIN : MARGIN + len(array)]

@@ -6,7 +6,7 @@ from typing import NamedTuple
 
 from tracer.engine.executors import threads
 from tracer.engine.executors.dask_cluster import connected
-from tracer.engine.executors.seam import MapBatches
+from tracer.engine.executors.seam import MapBatches, Prepare, nothing_to_prepare
 from tracer.engine.progress import Note
 from tracer.errors import InputError
 
@@ -16,6 +16,7 @@ class Executor(NamedTuple):
 
     map_batches: MapBatches
     workers: int | None
+    prepare: Prepare
 
 
 @contextmanager
@@ -28,9 +29,9 @@ def chosen_executor(cluster: str | None, workers: int | None, note: Note) -> Ite
         Both a cluster and threads are asked for, or the cluster cannot be had.
     """
     if cluster is None:
-        yield Executor(threads.map_batches, workers)
+        yield Executor(threads.map_batches, workers, nothing_to_prepare)
         return
     if workers is not None:
         raise InputError("--workers: is for threads; the workers of a --cluster are its own")
     with connected(cluster, note) as connection:
-        yield Executor(connection.map_batches, connection.workers)
+        yield Executor(connection.map_batches, connection.workers, connection.prepare)

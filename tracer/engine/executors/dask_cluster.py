@@ -19,7 +19,7 @@ from typing import Any, NamedTuple
 from uuid import uuid4
 
 from tracer.engine.batches import BatchResult, Task, Work, compile_kernels, trace_batch
-from tracer.engine.executors.seam import POLL_SECONDS, MapBatches, Queue, Tell, Tick, window
+from tracer.engine.executors.seam import POLL_SECONDS, MapBatches, Prepare, Queue, Tell, Tick, window
 from tracer.engine.fingerprint import Fingerprint, difference, fingerprint
 from tracer.engine.progress import Note
 from tracer.errors import InputError, TracerError
@@ -47,6 +47,7 @@ class Connection(NamedTuple):
 
     map_batches: MapBatches
     workers: int
+    prepare: Prepare
 
 
 @contextmanager
@@ -83,7 +84,9 @@ def connected(where: str, note: Note) -> Iterator[Connection]:
         dashboard = str(client.dashboard_link) if served else None
         words = f"{workers} workers; dashboard: {dashboard or 'none'}"
         note("cluster", words, workers=workers, dashboard=dashboard)
-        yield Connection(partial(_map_batches, distributed, client, note), workers)
+        yield Connection(
+            partial(_map_batches, distributed, client, note), workers, partial(_load_kernels, client)
+        )
 
 
 def _libraries() -> Any:
@@ -172,6 +175,16 @@ def worker_fingerprint() -> dict[str, str]:
     return fingerprint()._asdict()
 
 
+def _load_kernels(client: Any, work: Work) -> None:
+    """Have every worker load or compile what batches call; one that fails says why with its first batch."""
+    client.run(load_kernels, work, on_error="ignore")
+
+
+async def load_kernels(work: Work) -> None:
+    """Compile or load beside the worker's own loop, which must answer its scheduler meanwhile."""
+    await asyncio.to_thread(compile_kernels, work)
+
+
 def trace_on_worker(work: Work, task: Task, client: Fingerprint, key: str) -> BatchResult:
     """Trace one batch on a worker, which may have come late and unseen.
 
@@ -182,7 +195,7 @@ def trace_on_worker(work: Work, task: Task, client: Fingerprint, key: str) -> Ba
     """
     if changed := difference(fingerprint(), client):
         raise ForeignWorker(f"a worker has joined that has {changed}")
-    # Compiling counts among no batch's costs.
+    # Compiling counts among no batch's costs; only workers that came late still have to.
     compile_kernels(work)
     return trace_batch(work, task, lambda _atoms, _flights: None, partial(_is_cancelled, key))
 

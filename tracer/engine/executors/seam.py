@@ -4,6 +4,8 @@
 in which they finish. `tell` is called, from any thread, with the atoms and flights that were finished; `tick` now and
 then from the caller's thread, whose exceptions end the work. When the generator is closed, what is under way is given
 up.
+
+`prepare(work)` is called once before the clock starts: workers elsewhere load what batches call.
 """
 
 from collections.abc import Callable, Generator, Iterator, Sequence
@@ -15,10 +17,15 @@ POLL_SECONDS = 0.1
 
 Tell = Callable[[float, int], None]
 Tick = Callable[[], None]
+Prepare = Callable[[Work], None]
 MapBatches = Callable[
     [Work, Sequence[Task], int, Tell, Tick],
     Generator[tuple[Task, BatchResult], None, None],
 ]
+
+
+def nothing_to_prepare(work: Work) -> None:
+    """Do nothing: threads find in this process what batches call."""
 
 
 def window(workers: int, releases: int) -> int:
