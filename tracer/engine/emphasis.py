@@ -153,7 +153,7 @@ def _shells(scene: Scene) -> Grid:
 
 
 def _fly_alone(work: Work, launch: Launches, rng: np.random.Generator) -> tuple[Floats, float, int]:
-    """Return what one atom leaves in the far shells and in escape, (SHELLS + 1,), its cost in steps, and its flights."""
+    """Return what one atom leaves in far shells and in escape, (SHELLS + 1,), its cost in steps, its flights."""
     tally = tally_views(work.layout, np.zeros(work.layout.size))
     resume = new_resume(len(work.scene.lines))
     flights = trace_slice(work.world, launch, resume, tally, rng, PILOT_FLIGHTS)

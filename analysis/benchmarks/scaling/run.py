@@ -68,7 +68,9 @@ def growth(kind: str, name: str, largest: float) -> bool:
     counts = [1, *(round(n / share) for n in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5))]
     runs = []
     for count in counts:
-        tries = [run(name, count, "--workers", "1", alone=True) for _ in range(3 if count * share < 1e6 else 1)]
+        tries = [
+            run(name, count, "--workers", "1", alone=True) for _ in range(3 if count * share < 1e6 else 1)
+        ]
         runs.append(min(tries))
     fixed, last = runs[0].seconds, runs[-1].seconds
     slope = (last - fixed) / (counts[-1] - counts[0])

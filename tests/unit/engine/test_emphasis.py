@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from tracer.engine import emphasis
 from tracer.engine.batches import make_work
 from tracer.engine.emphasis import (
     EVEN_SHARE,
@@ -58,6 +59,17 @@ def test_few_particles_have_few_strata_and_one_has_one(scene):
         strata = far_strata(scene, scene.releases[0], particles)
         assert strata.counts.sum() == particles
         assert len(strata.counts) <= max(1, particles // LAUNCHES_PER_STRATUM)
+
+
+def test_pilot_ends_at_its_budget_with_as_many_atoms_from_each_box(scene, monkeypatch):
+    edges = speed_edges(rarest_launch(scene, scene.releases[0]), 16)
+    boxes = emphasis._speed_boxes(edges)
+    whole = emphasis.fly_pilot(scene, scene.releases[0], boxes)
+    monkeypatch.setattr(emphasis, "PILOT_BUDGET", 1)
+    short = emphasis.fly_pilot(scene, scene.releases[0], boxes)
+    assert np.all(np.bincount(short.box) == emphasis.LEAST_PILOT_ROUNDS)
+    assert np.all(np.bincount(whole.box) > 2 * emphasis.LEAST_PILOT_ROUNDS)
+    assert {tuple(point) for point in short.points} <= {tuple(point) for point in whole.points}
 
 
 @pytest.mark.parametrize(
