@@ -48,7 +48,7 @@ look_from = {look_from}
 horizontal = ["{left} radii", "{right} radii"]
 vertical = ["{low} radii", "{high} radii"]
 pixels = [{columns}, {rows}]
-velocity = {{ from = "-2 km/s", to = "2 km/s", bins = 16 }}
+velocity = {{ from = "-4 km/s", to = "4 km/s", bins = 32 }}
 """
 
 JET = """speed = { law = "single", speed = "1 km/s" }
@@ -147,7 +147,7 @@ def test_the_turning_of_the_frame_is_no_velocity(traced, how):
     # A pixel is 100 s long, in which the velocity changes by 2 m/s; some hundred samples lie in each.
     np.testing.assert_allclose(found, expected, atol=0.5)
     seeming = expected + OMEGA * x[beyond]
-    assert (seeming - found)[-1] > 60.0
+    assert (seeming - found).max() > 60.0
 
 
 TEMPERATURE, MASS, OUTER = 1000.0, 18.0, 60.0
@@ -247,10 +247,10 @@ def test_errors_of_moments_are_the_scatter_between_replicates(free):
 def test_the_bins_have_the_moments_that_are_kept_beside_them(free):
     wide = free.isel(release=0, north_horizontal=22, north_vertical=22)
     v, bins = free.north_velocity.values, wide.column_by_velocity_north.values
-    assert wide.column_outside_velocity_north.item() < 0.02 * wide.column_north.item()
+    assert wide.column_outside_velocity_north.item() < 1e-3 * wide.column_north.item()
     mean = (v * bins).sum() / bins.sum()
     step = v[1] - v[0]
-    assert abs(mean - wide.mean_velocity_north.item()) < 0.3 * step
+    assert abs(mean - wide.mean_velocity_north.item()) < 0.1 * step
     # A bin of width h adds about h^2/12 to the variance (Sheppard 1898).
     width = sqrt((v * v * bins).sum() / bins.sum() - mean * mean - step * step / 12.0)
-    assert width == pytest.approx(wide.velocity_width_north.item(), rel=0.06)
+    assert width == pytest.approx(wide.velocity_width_north.item(), rel=0.03)
