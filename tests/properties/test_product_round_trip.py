@@ -31,9 +31,10 @@ def products(draw):
     grid = make_grid(draw(st.floats(1e2, 1e8)), 1e3, 1e7, draw(cells), draw(cells), draw(cells))
     toward = direction(draw(st.floats(-90, 90)), draw(st.floats(0, 24)))
     pixels = (draw(cells), draw(cells))
+    velocity = draw(st.none() | st.just((-1e3, 2e3, 3)))
     titles = draw(st.lists(names, max_size=2))
     planes = [
-        make_image_plane(f"image_{number}", title, toward, (-1e6, 2e6), (0.0, 1e6), pixels)
+        make_image_plane(f"image_{number}", title, toward, (-1e6, 2e6), (0.0, 1e6), pixels, velocity)
         for number, title in enumerate(titles)
     ]
     sizes = {"release": len(releases), "fate": len(FATE_LABELS)}
@@ -41,10 +42,12 @@ def products(draw):
     sizes |= {"local_time": len(grid.local_time_edges) - 1}
     for plane in planes:
         sizes |= {f"{plane.name}_horizontal": pixels[0], f"{plane.name}_vertical": pixels[1]}
+        sizes |= {f"{plane.name}_velocity": 3}
     random = np.random.default_rng(draw(st.integers(0, 2**32)))
     replicates = draw(st.integers(0, 2))
     fields = {}
-    for name, row in layout(plane.name for plane in planes).items():
+    images = [plane.name for plane in planes]
+    for name, row in layout(images, velocities=images if velocity else ()).items():
         shape = tuple(sizes[axis] for axis in row.dimensions)
         mean, error = random.choice([*SPECIAL, *random.normal(size=5)], (2, *shape))
         kept = random.normal(size=(replicates, *shape)) if replicates else None

@@ -107,6 +107,14 @@ RELEASES = st.lists(
     unique_by=lambda release: release["name"],
 )
 VIEWERS = POINTS | st.sampled_from(["north", "south", "dawn", "dusk", "sun", "midnight"])
+
+
+@st.composite
+def velocities(draw: DrawFn) -> dict[str, Any]:
+    low, high = draw(rising(-40, 40, "km/s", "m/s"))
+    return {"from": low, "to": high, "bins": draw(CELLS)}
+
+
 FRAMES = rising(-40, 40, "radii", "km")
 IMAGES = st.lists(
     table(
@@ -116,7 +124,8 @@ IMAGES = st.lists(
             "horizontal": FRAMES,
             "vertical": FRAMES,
             "pixels": st.lists(CELLS, min_size=2, max_size=2),
-        }
+        },
+        {"velocity": velocities()},
     ),
     max_size=2,
     unique_by=lambda image: product_name(image["name"]),
@@ -291,6 +300,7 @@ def test_spoilt_run_file_is_refused_on_one_line_in_our_words(data: st.DataObject
     }
     tables["surface"]["desorption"] = {"energy": "1 eV", "attempt_frequency": "1 s-1", "photon": photon}
     tables["surface"]["cold_traps"] = {"poleward_of": "80 deg"}
+    tables["image"][0]["velocity"] = {"from": "-1 km/s", "to": "1 km/s", "bins": 4}
     tables["gas"]["line"] = [{"name": "a", "wavelength": "285 nm", "g": {"file": "g.csv"}}]
     _spoil(data, tables)
     try:

@@ -24,6 +24,7 @@ from tracer.engine.tasks import parse_batches
 from tracer.engine.tracing import run
 from tracer.errors import InputError, Interrupted, TracerError
 from tracer.product.lock import output_lock
+from tracer.product.outside_velocity import outside_notes
 from tracer.product.reading import open_product
 from tracer.product.writing import check_output, save_product
 
@@ -123,6 +124,8 @@ def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
         f"{attributes['flights']:,} flights in {attributes['wall_seconds']:.1f} s on {attributes['workers']} workers"
     )
     _say_how_it_stopped(product)
+    for text in outside_notes(product):
+        note("note", f"Note: {text}.")
     typer.echo(f"product: {job.path}")
     name_next(*(("merge", job.path, "...", "-o", "merged.nc") if job.share else ("summary", job.path)))
 

@@ -31,6 +31,9 @@ SHOWN = (
     "data_checksum",
 )
 
+VELOCITY_UNIT = "m s-1"
+UNKNOWN = "unknown"
+
 
 def command(product: PRODUCT_FILE, json: JSON = False) -> None:
     """Say what is in a product: scene, particle budget, errors, checksum (which is verified)."""
@@ -72,7 +75,11 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
             "mean_flights": float(one["mean_flights"]),
             "mean_life": float(one["mean_life"]),
         }
-    errors = {name: _median_relative_error(ds, name) for name in _tallied(ds)}
+    errors = {
+        name: _median_relative_error(ds, name)
+        for name in _tallied(ds)
+        if ds[name].attrs["units"] != VELOCITY_UNIT
+    }
     return {"releases": releases, "median_relative_standard_error": errors}
 
 
@@ -83,10 +90,18 @@ def _tallied(ds: xr.Dataset) -> list[str]:
 def _variable_rows(ds: xr.Dataset) -> list[tuple[str, ...]]:
     rows: list[tuple[str, ...]] = []
     for name in _tallied(ds):
-        error = _median_relative_error(ds, name)
-        precision = "never hit" if error != error else f"{100 * error:.3g} %"
-        rows.append((name, str(ds[name].attrs["units"]), " x ".join(map(str, ds[name].dims)), precision))
+        unit = str(ds[name].attrs["units"])
+        rows.append((name, unit, " x ".join(map(str, ds[name].dims)), _precision(ds, name, unit)))
     return rows
+
+
+def _precision(ds: xr.Dataset, name: str, unit: str) -> str:
+    """Return how well a variable is known: relatively, but a velocity, which may be any side of 0, as it is."""
+    if unit == VELOCITY_UNIT:
+        error = float(ds[f"{name}_standard_error"].median())
+        return UNKNOWN if error != error else f"{error:.3g} {unit}"
+    error = _median_relative_error(ds, name)
+    return "never hit" if error != error else f"{100 * error:.3g} %"
 
 
 def _median_relative_error(ds: xr.Dataset, name: str) -> float:

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from tracer.engine.batches import BatchResult, Task
 from tracer.engine.stopping import StopRule
-from tracer.tally.buffer import BufferLayout
+from tracer.tally.buffer import BufferLayout, tally_views
 from tracer.tally.statistics import BatchStatistics
 
 
@@ -119,12 +119,14 @@ class Folder:
         """Return the present relative error of the stop rule's region, else of the mean life; None if unknown."""
         if self._rule is not None:
             return self._rule.relative_error_of(self.region_by_batch())
-        # The life stands last in a buffer: the one number that stands for all content.
-        means = np.array([one.mean[-1] for one in self.statistics])
+        # The life is the one number that stands for all content.
+        means = np.array([tally_views(self.layout, one.mean).life[0] for one in self.statistics])
         batches = min(one.batches for one in self.statistics)
         if batches < 2 or not means.sum() > 0.0:
             return None
+        squares = [tally_views(self.layout, one.squared_deviation).life[0] for one in self.statistics]
         variance = sum(
-            one.squared_deviation[-1] / (one.batches * (one.batches - 1)) for one in self.statistics
+            square / (one.batches * (one.batches - 1))
+            for square, one in zip(squares, self.statistics, strict=True)
         )
         return float(np.sqrt(variance) / means.sum())

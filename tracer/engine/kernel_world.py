@@ -11,7 +11,7 @@ from tracer.engine.scene import Release, Scene
 from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
 from tracer.kernels.adsorption import Adsorption
 from tracer.kernels.bounce import Surface
-from tracer.kernels.cells import Cells, Images, make_cells
+from tracer.kernels.cells import Cells, Images, Velocities, make_cells
 from tracer.kernels.motion import Losses
 from tracer.kernels.quantiles import quantile_nodes
 from tracer.kernels.roulette import WEIGHTED
@@ -25,7 +25,7 @@ from tracer.physics.lines import line_tables, push_tables
 from tracer.physics.orbit import Station
 from tracer.physics.sunlight import conditions_of, forces_of, losses_of, shadow_of
 from tracer.tally.axes import Grid, ImagePlane
-from tracer.tally.buffer import plane_shape, plane_size
+from tracer.tally.buffer import plane_shape, plane_size, velocity_middle, velocity_sums
 
 
 def kernel_world(scene: Scene) -> World:
@@ -51,7 +51,7 @@ def kernel_world(scene: Scene) -> World:
         _traps(scene.cold_traps),
         WEIGHTED,
         _cells(scene.grid),
-        _images(scene.planes),
+        _images(scene.planes, scene.frame_rate),
         _light(scene),
         integrated=bool(scene.integrated),
         snapshot=_snapshot(scene),
@@ -162,7 +162,7 @@ def _cells(grid: Grid) -> Cells:
     )
 
 
-def _images(planes: Sequence[ImagePlane]) -> Images:
+def _images(planes: Sequence[ImagePlane], turning: float) -> Images:
     shapes = np.array([plane_shape(plane) for plane in planes], dtype=np.int64).reshape(-1, 2)
     sizes = np.array([plane_size(plane) for plane in planes], dtype=np.int64)
     low = [(plane.horizontal_edges[0], plane.vertical_edges[0]) for plane in planes]
@@ -181,8 +181,33 @@ def _images(planes: Sequence[ImagePlane]) -> Images:
         pixel=_rows(pixel, 2),
         columns=shapes[:, 1].copy(),
         rows=shapes[:, 0].copy(),
-        first=np.concatenate(([0], np.cumsum(sizes)))[: len(planes)].astype(np.int64),
+        first=_begins(sizes),
+        velocities=_velocities(planes, sizes, turning),
     )
+
+
+def _velocities(
+    planes: Sequence[ImagePlane], sizes: "np.ndarray[tuple[int], np.dtype[np.int64]]", turning: float
+) -> Velocities:
+    nothing = np.array([0.0, 1.0])
+    edges = [nothing if plane.velocity_edges is None else plane.velocity_edges for plane in planes]
+    sums = np.array([velocity_sums(plane) for plane in planes], dtype=np.int64)
+    return Velocities(
+        turning=float(turning),
+        low=np.array([one[0] for one in edges], dtype=np.float64),
+        width=np.array([(one[-1] - one[0]) / (len(one) - 1) for one in edges], dtype=np.float64),
+        middle=np.array([velocity_middle(plane) for plane in planes], dtype=np.float64),
+        bins=np.maximum(sums - 3, 0),
+        first=_begins(sizes * sums),
+        resolved=bool(sums.any()),
+    )
+
+
+def _begins(
+    sizes: "np.ndarray[tuple[int], np.dtype[np.int64]]",
+) -> "np.ndarray[tuple[int], np.dtype[np.int64]]":
+    """Return where each part begins in an array that holds parts of these sizes one after the other."""
+    return np.concatenate(([0], np.cumsum(sizes)))[: len(sizes)].astype(np.int64)
 
 
 def _rows(

@@ -28,6 +28,8 @@ def scene_notes(spec: RunSpec, scene: Scene) -> Iterator[str]:
         yield "sticking is 0: nothing is adsorbed, and surface.desorption has no effect"
     if isinstance(spec.surface.temperature, Hurley2015) and spec.body.name != FITTED_BODY:
         yield f"the temperature law hurley-2015 was fitted to the {FITTED_BODY}, not to {spec.body.name}"
+    if spec.ensemble.replicates == 0 and any(image.velocity is not None for image in spec.image):
+        yield "ensemble.replicates is 0: means and widths of velocities come without errors"
     if scene.sun is not None:
         yield from _sun_notes(spec, scene.sun)
 

@@ -17,6 +17,7 @@ from tracer.engine.runspec.writing import run_file_text
 from tracer.engine.scene import Scene
 from tracer.engine.sunlight import true_anomaly
 from tracer.engine.tasks import BatchRange
+from tracer.engine.velocity_fields import velocity_fields
 from tracer.errors import TracerError
 from tracer.fate import Fate
 from tracer.kernels.scoring import Tally
@@ -52,6 +53,7 @@ def make_product(plan: Plan, folder: Folder, costs: Costs) -> xr.Dataset:
     """
     scene = plan.scene
     fields = _fields(scene, folder)
+    fields |= velocity_fields(scene.planes, folder, fields)
     _check_budget(scene, fields["ledger"].mean, fields["roulette_balance"].mean)
     product = assemble(
         scene.grid,

@@ -196,7 +196,10 @@ def _refuse_rest_on_uneven_ground(spec: RunSpec) -> None:
 
 def _refuse_colliding_images(spec: RunSpec) -> None:
     """Refuse images whose names in the product would be those of other variables, before anything is traced."""
-    names = variable_names([product_name(image.name) for image in spec.image])
+    names = variable_names(
+        [product_name(image.name) for image in spec.image],
+        velocities=[product_name(image.name) for image in spec.image if image.velocity is not None],
+    )
     twice = sorted({name for name in names if names.count(name) > 1})
     if twice:
         raise refuse(
@@ -302,6 +305,7 @@ def _plane(spec: RunSpec, number: int, image: ImageTable, radius: float) -> Imag
                 spec, f"image[{number}].{axis}", None, f"must rise, and goes from {low:g} m to {high:g} m"
             )
         ends[axis] = (low, high)
+    velocity = image.velocity
     return make_image_plane(
         product_name(image.name),
         image.name,
@@ -309,4 +313,5 @@ def _plane(spec: RunSpec, number: int, image: ImageTable, radius: float) -> Imag
         ends["horizontal"],
         ends["vertical"],
         image.pixels,
+        None if velocity is None else (si(velocity.from_), si(velocity.to), velocity.bins),
     )

@@ -10,7 +10,7 @@ from pydantic.fields import FieldInfo
 from pydantic_core import ErrorDetails
 
 from tracer.inputs.kinds import example, kind, law_name, tables_in
-from tracer.inputs.table import Table
+from tracer.inputs.table import Table, fields_of
 from tracer.units import quoted
 
 _BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
@@ -103,14 +103,14 @@ def _locate(location: Sequence[int | str], root: type[Table]) -> Place:
             # Where a field has several laws pydantic puts the law's name into the location; it is no key.
             candidates = tuple(candidate for candidate in candidates if law_name(candidate) == step)
         else:
-            field = candidates[0].model_fields.get(step)
+            field = fields_of(candidates[0]).get(step)
             place = Place(join_key(place.key, step), place.key, candidates[0], field)
             candidates = tables_in(field.annotation) if field else ()
     return place
 
 
 def _unknown_key(place: Place, key: str) -> Problem:
-    known = list(place.table.model_fields)
+    known = list(fields_of(place.table))
     close = difflib.get_close_matches(key, known, n=1, cutoff=0.7)
     if close:
         hint = f"did you mean {close[0]}?"
@@ -141,7 +141,8 @@ def _due(place: Place, value: Any = None) -> str:
     if words == "list of tables":
         return f"a list of tables, each headed [[{place.key}]]"
     if words == "table" and isinstance(value, list | tuple):
-        return f"one table, headed [{place.key}]"
+        # No heading leads into one table of a list.
+        return "one table in braces" if "[" in place.key else f"one table, headed [{place.key}]"
     hint = f", for example {example(place.field)}" if place.field and example(place.field) else ""
     return f"{words if words.startswith(_NO_ARTICLE) else 'a ' + words}{hint}"
 

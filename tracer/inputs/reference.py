@@ -6,7 +6,7 @@ from typing import Any
 from pydantic.fields import FieldInfo
 
 from tracer.inputs.kinds import dimensions_in, is_list_of_tables, kind, law_name, tables_in
-from tracer.inputs.table import Table
+from tracer.inputs.table import Table, fields_of
 from tracer.units import DIMENSIONS, quoted
 
 
@@ -23,13 +23,13 @@ def reference_of(root: type[Table], preface: str, hidden: tuple[type[Table], ...
         Tables that are told by the words of the fields that take them.
     """
     sections = [preface, _units(root), _section("Top level", None, _top_level(root))]
-    for key, field in root.model_fields.items():
+    for key, field in fields_of(root).items():
         sections.extend(_sections(key, field, hidden))
     return "\n".join(sections)
 
 
 def _top_level(table: type[Table]) -> dict[str, FieldInfo]:
-    return {key: field for key, field in table.model_fields.items() if not tables_in(field.annotation)}
+    return {key: field for key, field in fields_of(table).items() if not tables_in(field.annotation)}
 
 
 def _sections(path: str, field: FieldInfo, hidden: tuple[type[Table], ...]) -> Iterator[str]:
@@ -40,8 +40,8 @@ def _sections(path: str, field: FieldInfo, hidden: tuple[type[Table], ...]) -> I
         return
     for table in tables:
         heading = f"`[[{path}]]`" if is_list_of_tables(field.annotation) else f"`[{path}]`"
-        yield _section(heading, table, table.model_fields)
-        for key, inner in table.model_fields.items():
+        yield _section(heading, table, fields_of(table))
+        for key, inner in fields_of(table).items():
             yield from _sections(f"{path}.{key}", inner, hidden)
 
 
@@ -55,7 +55,7 @@ def _laws(path: str, tables: list[type[Table]]) -> str:
     rows: list[tuple[str, ...]] = []
     for table in tables:
         rows.append((f"`{law_name(table)}`", "", "", "", _first_line(table)))
-        keys = {key: field for key, field in table.model_fields.items() if key != "law"}
+        keys = {key: field for key, field in fields_of(table).items() if key != "law"}
         rows.extend(("", *_row(key, field)) for key, field in keys.items())
     return f"### Laws of `{path}`\n\n" + _markdown(("law", "key", "kind", "default", "meaning"), rows)
 

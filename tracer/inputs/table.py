@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import Any
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict, PrivateAttr, model_validator
+from pydantic.fields import FieldInfo
 from pydantic_core import PydanticCustomError
 
 
@@ -42,6 +43,11 @@ class FileTable(Table):
         if isinstance(context, Mapping) and "file" in context:
             self._file = context["file"]
             self._folder = Path(self._file).absolute().parent
+
+
+def fields_of(table: type[Table]) -> dict[str, FieldInfo]:
+    """Return the fields of a table by their keys in the file; `from`, which Python reserves, is an alias."""
+    return {field.alias or name: field for name, field in table.model_fields.items()}
 
 
 def _law_by_its_name(given: Any) -> Any:

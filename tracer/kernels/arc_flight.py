@@ -156,11 +156,19 @@ def score_hop(world, tally, arc, hop, weight, shine, rng):
         g = along * sine + rest * versine
         x, y, z = f * arc.x + g * arc.vx, f * arc.y + g * arc.vy, f * arc.z + g * arc.vz
         content = lasting * r
+        t = g + arc.gm * per_beta * per_w * (phase - sine)
         if motion.hazard > 0.0 or motion.frame_rate != 0.0:
-            t = g + arc.gm * per_beta * per_w * (phase - sine)
             x, y = turned(x, y, motion.frame_rate * t)
             content *= math.exp(-motion.hazard * t)
-        score_sample(tally, world.cells, world.images, x, y, z, r, content, 0.0, shine[:0])
+        velocity = (0.0, 0.0, 0.0)
+        if world.images.velocities.resolved:
+            f_rate = -arc.gm * per_w * sine / (arc.r0 * r)
+            g_rate = 1.0 - arc.gm * per_beta * versine / r
+            vx, vy = f_rate * arc.x + g_rate * arc.vx, f_rate * arc.y + g_rate * arc.vy
+            vx, vy = turned(vx, vy, motion.frame_rate * t)
+            vz = f_rate * arc.z + g_rate * arc.vz
+            velocity = (vx + motion.frame_rate * y, vy - motion.frame_rate * x, vz)
+        score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, 0.0, shine[:0])
         cosine = 1.0 - versine
         sine, versine = (
             sine - sine * turn_versine + cosine * turn_sine,
@@ -179,10 +187,15 @@ def score_arc(world, tally, arc, s_end, weight, shine, rng):
     motion = world.motion
     width = s_end / FAR_SAMPLES
     for k in range(FAR_SAMPLES):
-        t, r, x, y, z = position_at(arc, (k + rng.random()) * width)
+        s = (k + rng.random()) * width
+        t, r, x, y, z = position_at(arc, s)
         x, y = turned(x, y, motion.frame_rate * t)
+        velocity = (0.0, 0.0, 0.0)
+        if world.images.velocities.resolved:
+            _t, _x, _y, _z, vx, vy, vz = arc_state(motion, arc, s)
+            velocity = (vx, vy, vz)
         content = weight * r * width
         if motion.hazard > 0.0:
             content *= math.exp(-motion.hazard * t)
         # Arcs are for scenes in which nothing depends on light: nothing shines, nothing is ionised.
-        score_sample(tally, world.cells, world.images, x, y, z, r, content, 0.0, shine[:0])
+        score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, 0.0, shine[:0])

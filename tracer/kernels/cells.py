@@ -101,6 +101,24 @@ def _clear_of_edges(place, margin):
     return margin < part < 1.0 - margin
 
 
+class Velocities(NamedTuple):
+    """How images are resolved by velocity away from the viewer.
+
+    The Sun-fixed frame turns at `turning` [rad s-1] about +z. Per plane `low`, `width` and `middle` [m s-1] of its bins
+    and their number, `bins`, 0 where velocities are not resolved; `first` is where its numbers begin in the flat array
+    of all planes: one after the other the pixels of every bin, those of what lies outside, and those of the two sums.
+    `resolved` tells whether any plane has bins.
+    """
+
+    turning: float
+    low: np.ndarray
+    width: np.ndarray
+    middle: np.ndarray
+    bins: np.ndarray
+    first: np.ndarray
+    resolved: bool
+
+
 class Images(NamedTuple):
     """All image planes: per plane the viewer's direction, right and up (n, 3), lower edges and pixel sizes [m].
 
@@ -115,6 +133,7 @@ class Images(NamedTuple):
     columns: np.ndarray
     rows: np.ndarray
     first: np.ndarray
+    velocities: Velocities
 
 
 @kernel
@@ -131,3 +150,22 @@ def image_pixel(images, i, radius, x, y, z):
         if n[i, 0] * x + n[i, 1] * y + n[i, 2] * z < 0.0:
             return -1
     return images.first[i] + int(row) * images.columns[i] + int(column)
+
+
+@inlined
+def recession(images, i, x, y, velocity):
+    """Return how fast [m s-1] an atom recedes from the viewer of plane `i`; (`x`, `y`) [m] and `velocity` [m s-1].
+
+    As a spectrograph sees it that moves with the body's centre: the velocity in the Sun-fixed frame, and what the
+    turning of that frame adds to it.
+    """
+    n, turning = images.toward_viewer, images.velocities.turning
+    vx, vy, vz = velocity
+    return -(n[i, 0] * (vx - turning * y) + n[i, 1] * (vy + turning * x) + n[i, 2] * vz)
+
+
+@inlined
+def velocity_bin(velocities, i, away):
+    """Return the bin of plane `i` that holds a velocity `away` [m s-1]; the number of bins where none does."""
+    place = (away - velocities.low[i]) / velocities.width[i]
+    return int(place) if 0.0 <= place < velocities.bins[i] else velocities.bins[i]

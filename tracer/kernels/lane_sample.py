@@ -32,6 +32,7 @@ from tracer.kernels.lanes import (
     ROW,
     SAMPLE,
     SAMPLE_R,
+    SAMPLE_VELOCITY,
     SERIES,
     SEVENTH,
     STAGE_ACCELERATION,
@@ -108,6 +109,9 @@ def sample_steps(lanes, sky, cells):
         set_lane_value(lanes, SAMPLE + Y + lane, y)
         set_lane_value(lanes, SAMPLE + Z + lane, z)
         set_lane_value(lanes, SAMPLE_R + lane, r)
+        set_lane_value(lanes, SAMPLE_VELOCITY + lane, vx)
+        set_lane_value(lanes, SAMPLE_VELOCITY + Y + lane, vy)
+        set_lane_value(lanes, SAMPLE_VELOCITY + Z + lane, vz)
         # What part of the Sun an atom in the penumbra sees is left to `lane_scoring`.
         seen = max(lane_value(lanes, LIT + lane), lane_value(lanes, PARTIAL + lane))
         set_lane_value(lanes, RECEIVED + lane, seen * full_light / s2)

@@ -19,6 +19,7 @@ from tracer.kernels.lanes import (
     ROW,
     SAMPLE,
     SAMPLE_R,
+    SAMPLE_VELOCITY,
     WIDTH,
     Y,
     Z,
@@ -54,7 +55,9 @@ def score_lanes(world, tally, lanes, shine):
             r = lanes[SAMPLE_R + lane]
             count_in_cell(tally, cells, layer, row, column, r, content, received * sky.losses.ionizing, shine)
         if world.images.first.shape[0] > 0:
-            count_in_images(tally, world.images, cells.radius, x, y, z, content, shine)
+            at = SAMPLE_VELOCITY + lane
+            velocity = (lanes[at], lanes[at + Y], lanes[at + Z])
+            count_in_images(tally, world.images, cells.radius, x, y, z, velocity, content, shine)
 
 
 @merged

@@ -91,6 +91,8 @@ _ROWS = (
     ("LIFE", 1),
     # Where the body moves: the series of its distance about the step's start.
     ("SERIES", ORDER + 1),
+    # The sample's velocity in the Sun-fixed frame.
+    ("SAMPLE_VELOCITY", 3),
 )
 _FIRST = dict(
     zip(
@@ -147,6 +149,7 @@ LOST = _FIRST["LOST"]
 IONIZED = _FIRST["IONIZED"]
 LIFE = _FIRST["LIFE"]
 SERIES = _FIRST["SERIES"]
+SAMPLE_VELOCITY = _FIRST["SAMPLE_VELOCITY"]
 
 VACANT = -2.0
 """Standing of a lane without a flight."""

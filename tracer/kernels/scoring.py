@@ -5,7 +5,14 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tracer.kernels.cells import altitude_cell, image_pixel, latitude_cell, local_time_cell
+from tracer.kernels.cells import (
+    altitude_cell,
+    image_pixel,
+    latitude_cell,
+    local_time_cell,
+    recession,
+    velocity_bin,
+)
 from tracer.kernels.compiling import kernel, merged
 
 
@@ -13,20 +20,23 @@ class Tally(NamedTuple):
     """Views into one batch's counts; weights are [s-1], samples weight times time [atoms].
 
     `content` (altitude, latitude, local_time) and `column_content` (latitude, local_time) hold samples, the latter
-    scaled by (R/r)^2; `image_content` is flat over all image planes. `emission` (line, altitude, latitude,
-    local_time) and `image_emission` (line, pixel) hold samples times scattered photons a second, `ionized` (altitude,
-    latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time), `ledger` (fate) and
-    `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without cells where no atom
-    rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond` samples beyond the end
-    of a line's table. Where the body moves, `aloft` holds all samples, and `older` weight times survival time behind
-    the limit of age.
+    scaled by (R/r)^2; `image_content` is flat over all image planes, `velocity_content` over what those resolved by
+    velocity keep (see `cells.Velocities`). `emission` (line, altitude, latitude, local_time), `image_emission` (line,
+    pixel) and `velocity_emission` (line, as `velocity_content`) hold samples times scattered photons a second,
+    `ionized` (altitude, latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time),
+    `ledger` (fate) and `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without
+    cells where no atom rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond`
+    samples beyond the end of a line's table. Where the body moves, `aloft` holds all samples, and `older` weight times
+    survival time behind the limit of age.
     """
 
     content: np.ndarray
     column_content: np.ndarray
     image_content: np.ndarray
+    velocity_content: np.ndarray
     emission: np.ndarray
     image_emission: np.ndarray
+    velocity_emission: np.ndarray
     ionized: np.ndarray
     released: np.ndarray
     returned: np.ndarray
@@ -50,16 +60,17 @@ def ground_cell(cells, x, y, z, r):
 
 
 @merged
-def score_sample(tally, cells, images, x, y, z, r, content, ionizing, shine):
+def score_sample(tally, cells, images, x, y, z, r, velocity, content, ionizing, shine):
     """Count `content` atoms at (x, y, z) [m] in density, vertical column, images and what sunlight does to them.
 
+    `velocity` (vx, vy, vz) [m s-1] in the Sun-fixed frame is not looked at unless an image is resolved by velocity.
     `ionizing` [s-1] is their rate of ionisation there, `shine` (line,) [s-1] the photons that each scatters.
     """
     layer = altitude_cell(cells, r)
     if layer >= 0:
         row, column = ground_cell(cells, x, y, z, r)
         count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine)
-    count_in_images(tally, images, cells.radius, x, y, z, content, shine)
+    count_in_images(tally, images, cells.radius, x, y, z, velocity, content, shine)
 
 
 @merged
@@ -75,14 +86,52 @@ def count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine)
 
 
 @merged
-def count_in_images(tally, images, radius, x, y, z, content, shine):
-    """Count `content` atoms at (x, y, z) [m] in all images."""
+def count_in_images(tally, images, radius, x, y, z, velocity, content, shine):
+    """Count `content` atoms at (x, y, z) [m] with `velocity` [m s-1] in the Sun-fixed frame in all images."""
     for i in range(images.first.shape[0]):
         pixel = image_pixel(images, i, radius, x, y, z)
         if pixel >= 0:
             tally.image_content[pixel] += content
             for line in range(shine.shape[0]):
                 tally.image_emission[line, pixel] += content * shine[line]
+            if images.velocities.bins[i] > 0:
+                away = recession(images, i, x, y, velocity)
+                pixels = images.rows[i] * images.columns[i]
+                count_velocity(
+                    tally.velocity_content,
+                    tally.velocity_emission,
+                    images.velocities,
+                    i,
+                    pixel - images.first[i],
+                    pixels,
+                    away,
+                    content,
+                    shine,
+                )
+
+
+@kernel
+def count_velocity(counts, emissions, velocities, i, pixel, pixels, away, content, shine):
+    """Count `content` atoms that recede at `away` [m s-1] in a `pixel` of plane `i`, which has so many `pixels`.
+
+    `counts` and `emissions` are the fields `velocity_content` and `velocity_emission` of a `Tally`.
+
+    Beside the bins their sums of first and second powers, from the middle of the bins, so that few digits cancel in the
+    mean and the width.
+    """
+    bins, offset = velocities.bins[i], away - velocities.middle[i]
+    first = velocities.first[i] + pixel
+    counted = first + velocity_bin(velocities, i, away) * pixels
+    linear = first + (bins + 1) * pixels
+    square = linear + pixels
+    counts[counted] += content
+    counts[linear] += content * offset
+    counts[square] += content * offset * offset
+    for line in range(shine.shape[0]):
+        photons = content * shine[line]
+        emissions[line, counted] += photons
+        emissions[line, linear] += photons * offset
+        emissions[line, square] += photons * offset * offset
 
 
 @kernel

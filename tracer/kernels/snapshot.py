@@ -301,13 +301,15 @@ def _show(world, tally, atom, lanes, lane, shine):
     sky, tables = world.light.conditions.sky, world.light.line_tables
     x, y, z = lanes[START + lane], lanes[START + Y + lane], lanes[START + Z + lane]
     at = START + VELOCITY + lane
+    velocity = (lanes[at], lanes[at + Y], lanes[at + Z])
     content = lanes[ALIVE + lane] * lanes[KEPT + lane]
     received = sunlight_received(sky, int(lanes[ZONE + lane]), sky.forces, x, y, z)
-    receding = radial_velocity(sky.forces, x, y, z, lanes[at], lanes[at + Y], lanes[at + Z])
+    receding = radial_velocity(sky.forces, x, y, z, *velocity)
     for line in range(shine.shape[0]):
         shine[line] = received * line_value(tables, line, receding)
     tally.aloft[0] += content
     if beyond_tables(tables, receding):
         tally.beyond[0] += content
     r = math.sqrt(x * x + y * y + z * z)
-    score_sample(tally, world.cells, world.images, x, y, z, r, content, received * sky.losses.ionizing, shine)
+    ionizing = received * sky.losses.ionizing
+    score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)

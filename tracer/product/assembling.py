@@ -25,6 +25,7 @@ from tracer.product.layout import (
     image_dimensions,
     layout,
     variable_names,
+    velocity_dimension,
 )
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_volume, middles
 from tracer.tally.field import FieldStatistics
@@ -66,9 +67,9 @@ def assemble(
         Where a variable is missing, unknown or of another shape.
     """
     images = {plane.name: plane for plane in planes}
-    table = layout(images, bool(line_names))
+    table = layout(images, bool(line_names), _resolved(planes))
     values = {**plain, "cell_volume": cell_volume(grid), "cell_area": cell_area(grid)}
-    _check_names(table, fields, values)
+    _check_names(table, planes, fields, values)
     names = {RELEASE: release_names, FATE: FATE_LABELS, **({LINE: line_names} if line_names else {})}
     coordinates, bounds = _axes(grid, planes, names)
     sizes = {axis: len(entry[1]) for axis, entry in coordinates.items()}
@@ -82,6 +83,11 @@ def assemble(
     _check_shapes(variables, sizes)
     known = {key: value for key, value in attributes.items() if value is not None}
     return with_label_indexes(xr.Dataset({**variables, **bounds}, coordinates, known))
+
+
+def _resolved(planes: Sequence[ImagePlane]) -> list[str]:
+    """Return the names of the images that are resolved by velocity."""
+    return [plane.name for plane in planes if plane.velocity_edges is not None]
 
 
 def with_label_indexes(ds: xr.Dataset) -> xr.Dataset:
@@ -117,6 +123,14 @@ def _axes(
             plane.horizontal_edges,
             _named(f"rightwards from the body's centre, {plane.title}", "m"),
         )
+        if plane.velocity_edges is not None:
+            edges[velocity_dimension(plane.name)] = (
+                plane.velocity_edges,
+                {
+                    **_named(f"velocity away from the viewer, {plane.title}", "m s-1"),
+                    "comment": "relative to the body's centre, in axes that do not turn with the Sun-fixed frame",
+                },
+            )
     coordinates: dict[str, Entry] = {}
     bounds: dict[str, Entry] = {}
     for axis, (ends, attributes) in edges.items():
@@ -157,7 +171,10 @@ def _attributes(row: Variable) -> dict[str, Any]:
     cells = (ALTITUDE, LATITUDE, LOCAL_TIME, *image_dimensions(row.image or ""))
     averaged = [axis for axis in row.dimensions if axis in cells]
     if row.tallied and averaged:
-        attributes["cell_methods"] = " ".join(f"{axis}:" for axis in averaged) + " mean"
+        method = "standard_deviation" if row.ratio is not None and row.name == row.ratio.width else "mean"
+        attributes["cell_methods"] = " ".join(f"{axis}:" for axis in averaged) + f" {method}"
+    if row.image is not None and (velocity := velocity_dimension(row.image)) in row.dimensions:
+        attributes["cell_methods"] += f" {velocity}: sum"
     on_the_outer_sphere = row.unit.endswith("sr-1")
     if {LATITUDE, LOCAL_TIME} <= set(row.dimensions) and not on_the_outer_sphere:
         attributes["cell_measures"] = (
@@ -184,9 +201,12 @@ def _directions(plane: ImagePlane) -> dict[str, Any]:
 
 
 def _check_names(
-    table: Mapping[str, Variable], fields: Mapping[str, FieldStatistics], values: Mapping[str, Any]
+    table: Mapping[str, Variable],
+    planes: Sequence[ImagePlane],
+    fields: Mapping[str, FieldStatistics],
+    values: Mapping[str, Any],
 ) -> None:
-    names = variable_names({row.image: row for row in table.values() if row.image})
+    names = variable_names({row.image: row for row in table.values() if row.image}, True, _resolved(planes))
     twice = sorted({name for name in names if names.count(name) > 1})
     if twice:
         raise ValueError(f"images of the product: their names collide in {twice}")

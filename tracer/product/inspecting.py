@@ -18,6 +18,8 @@ from tracer.product.layout import (
     VERTICAL,
     image_dimensions,
     layout,
+    resolved_images,
+    velocity_dimension,
 )
 
 NAME = re.compile(r"[a-z0-9_]{1,200}")
@@ -76,10 +78,12 @@ def _why_misshapen(file: Any) -> str | None:
     ending = VERTICAL.removeprefix("<image>")
     images = [name.removesuffix(ending) for name in file.dimensions if name.endswith(ending)]
     expected: dict[str, tuple[str, ...]] = {label.variable: (label.dimension,) for label in LABELS}
+    resolved = resolved_images(file.dimensions)
     axes = [ALTITUDE, LATITUDE, LOCAL_TIME, *(axis for name in images for axis in image_dimensions(name))]
+    axes += map(velocity_dimension, resolved)
     for axis in axes:
         expected |= {axis: (axis,), axis + BOUNDS: (axis, EDGE)}
-    for name, row in layout(images, lines=True).items():
+    for name, row in layout(images, True, resolved).items():
         expected |= {name: row.dimensions, name + STANDARD_ERROR: row.dimensions}
         expected[name + REPLICATES] = (REPLICATE, *row.dimensions)
     for name, dimensions in expected.items():

@@ -3,7 +3,7 @@
 A new variable is one new row of `ROWS`; a dimension with labels is one new row of `LABELS`.
 """
 
-from collections.abc import Container, Iterable, Mapping
+from collections.abc import Container, Iterable, Iterator, Mapping
 from typing import Any, NamedTuple
 
 PRODUCT_VERSION = 1
@@ -23,6 +23,8 @@ ADSORBED_COLUMN = "adsorbed_column"
 IMAGE = "<image>"
 """Stands for an image's product name in the rows below."""
 HORIZONTAL, VERTICAL = IMAGE + "_horizontal", IMAGE + "_vertical"
+VELOCITY = IMAGE + "_velocity"
+"""Dimension of an image that is resolved by velocity along the line of sight."""
 
 
 class Label(NamedTuple):
@@ -38,6 +40,14 @@ LABELS = (
     Label(FATE, "fate_name", "how a particle's life ends"),
     Label(LINE, "line_name", "name of the emission line"),
 )
+
+
+class Ratio(NamedTuple):
+    """Names of the variables that belong together as weight, mean and standard deviation."""
+
+    weight: str
+    mean: str
+    width: str
 
 
 class Variable(NamedTuple):
@@ -56,6 +66,10 @@ class Variable(NamedTuple):
     """May be missing from a product."""
     lines: bool = False
     """Only where the gas has lines with known g."""
+    velocity: bool = False
+    """Only of images that are resolved by velocity."""
+    ratio: "Ratio | None" = None
+    """Of a mean or a width: what it is the mean or width of."""
     image: str | None = None
     """Product name of the image, in a row that was written out for one."""
 
@@ -63,6 +77,10 @@ class Variable(NamedTuple):
 _GROUND = (RELEASE, LATITUDE, LOCAL_TIME)
 _CELLS = (RELEASE, ALTITUDE, LATITUDE, LOCAL_TIME)
 _PIXELS = (RELEASE, VERTICAL, HORIZONTAL)
+_BINS = (RELEASE, VELOCITY, VERTICAL, HORIZONTAL)
+
+_BY_COLUMN = Ratio("column_" + IMAGE, "mean_velocity_" + IMAGE, "velocity_width_" + IMAGE)
+_BY_BRIGHTNESS = Ratio("brightness_" + IMAGE, "line_shift_" + IMAGE, "line_width_" + IMAGE)
 
 ROWS = (
     Variable("number_density", _CELLS, "m-3", "number density", replicated=True),
@@ -74,6 +92,40 @@ ROWS = (
         replicated=True,
     ),
     Variable("column_" + IMAGE, _PIXELS, "m-2", "column density along the line of sight", replicated=True),
+    Variable(
+        "column_by_velocity_" + IMAGE,
+        _BINS,
+        "m-2",
+        "column density along the line of sight in each bin of velocity away from the viewer",
+        replicated=True,
+        velocity=True,
+    ),
+    Variable(
+        "column_outside_velocity_" + IMAGE,
+        _PIXELS,
+        "m-2",
+        "column density along the line of sight outside all bins of velocity",
+        replicated=True,
+        velocity=True,
+    ),
+    Variable(
+        _BY_COLUMN.mean,
+        _PIXELS,
+        "m s-1",
+        "mean velocity away from the viewer weighted with the column density",
+        replicated=True,
+        velocity=True,
+        ratio=_BY_COLUMN,
+    ),
+    Variable(
+        _BY_COLUMN.width,
+        _PIXELS,
+        "m s-1",
+        "standard deviation of the velocity along the line of sight weighted with the column density",
+        replicated=True,
+        velocity=True,
+        ratio=_BY_COLUMN,
+    ),
     Variable(
         "emission_rate",
         (LINE, *_CELLS),
@@ -89,6 +141,44 @@ ROWS = (
         "brightness in rayleigh along the line of sight",
         replicated=True,
         lines=True,
+    ),
+    Variable(
+        "brightness_by_velocity_" + IMAGE,
+        (LINE, *_BINS),
+        "1e10 m-2 s-1",
+        "brightness in rayleigh along the line of sight in each bin of velocity away from the viewer",
+        replicated=True,
+        lines=True,
+        velocity=True,
+    ),
+    Variable(
+        "brightness_outside_velocity_" + IMAGE,
+        (LINE, *_PIXELS),
+        "1e10 m-2 s-1",
+        "brightness in rayleigh along the line of sight outside all bins of velocity",
+        replicated=True,
+        lines=True,
+        velocity=True,
+    ),
+    Variable(
+        _BY_BRIGHTNESS.mean,
+        (LINE, *_PIXELS),
+        "m s-1",
+        "line shift: mean velocity away from the viewer weighted with the brightness",
+        replicated=True,
+        lines=True,
+        velocity=True,
+        ratio=_BY_BRIGHTNESS,
+    ),
+    Variable(
+        _BY_BRIGHTNESS.width,
+        (LINE, *_PIXELS),
+        "m s-1",
+        "line width: standard deviation of the velocity along the line of sight weighted with the brightness",
+        replicated=True,
+        lines=True,
+        velocity=True,
+        ratio=_BY_BRIGHTNESS,
     ),
     Variable("release_flux", _GROUND, "m-2 s-1", "flux of new atoms from the surface, bounces not counted"),
     Variable("return_flux", _GROUND, "m-2 s-1", "flux of landing atoms, every landing counted"),
@@ -139,7 +229,9 @@ LANDMARKS = ("ledger", "release_name", "fate_name")
 """Variables without which a file is no product."""
 
 
-def layout(images: Iterable[str] = (), lines: bool = False) -> dict[str, Variable]:
+def layout(
+    images: Iterable[str] = (), lines: bool = False, velocities: Iterable[str] = ()
+) -> dict[str, Variable]:
     """Return the product's variables by name, with every image row written out for each image.
 
     Parameters
@@ -148,20 +240,15 @@ def layout(images: Iterable[str] = (), lines: bool = False) -> dict[str, Variabl
         Product names of the images.
     lines : bool
         Whether the gas has lines.
+    velocities : iterable of str
+        Names of those images that are resolved by velocity.
 
     Returns
     -------
     dict of str to Variable
         In the order of the file; standard errors and replicates are not listed apart.
     """
-    names = tuple(images)
-    variables: dict[str, Variable] = {}
-    for row in ROWS:
-        if row.lines and not lines:
-            continue
-        for variable in [_of_image(row, name) for name in names] if IMAGE in row.name else [row]:
-            variables[variable.name] = variable
-    return variables
+    return {variable.name: variable for variable in _written_out(images, lines, velocities)}
 
 
 def has_lines(name: str) -> bool:
@@ -170,16 +257,21 @@ def has_lines(name: str) -> bool:
     return any(name == stem[0] or (len(stem) > 1 and name.startswith(stem[0])) for stem in stems)
 
 
-def variable_names(images: Iterable[str] = (), lines: bool = True) -> list[str]:
+def variable_names(
+    images: Iterable[str] = (), lines: bool = True, velocities: Iterable[str] = ()
+) -> list[str]:
     """Return every name that a product with these images may hold, coordinates and bounds included.
 
     A name that comes twice means that two images, or their errors, would collide.
     """
+    images, velocities = tuple(images), tuple(velocities)
     image_axes = [axis.replace(IMAGE, name) for name in images for axis in (VERTICAL, HORIZONTAL)]
+    image_axes += [velocity_dimension(name) for name in velocities]
     names = [label.variable for label in LABELS]
     for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes):
         names += [axis, axis + BOUNDS]
-    for variable in layout(images, lines).values():
+    # Not by the layout: in it one of two equal names would be lost.
+    for variable in _written_out(images, lines, velocities):
         names.append(variable.name)
         names += [variable.name + STANDARD_ERROR] * variable.tallied
         names += [variable.name + REPLICATES] * variable.replicated
@@ -189,6 +281,23 @@ def variable_names(images: Iterable[str] = (), lines: bool = True) -> list[str]:
 def image_dimensions(image: str) -> tuple[str, str]:
     """Return the names of an image's vertical and horizontal dimension."""
     return VERTICAL.replace(IMAGE, image), HORIZONTAL.replace(IMAGE, image)
+
+
+def ratio_names(image: str, by_line: bool) -> Ratio:
+    """Return which variables are the weight, mean and width of the velocity in an image, of its atoms or its lines."""
+    return _named_for(image, _BY_BRIGHTNESS if by_line else _BY_COLUMN)
+
+
+def velocity_dimension(image: str) -> str:
+    """Return the name of an image's dimension of velocity."""
+    return VELOCITY.replace(IMAGE, image)
+
+
+def resolved_images(dimensions: Iterable[Any]) -> list[str]:
+    """Return which images are resolved by velocity, by the dimensions of their product."""
+    known = {str(dimension) for dimension in dimensions}
+    names = [name.removesuffix(HORIZONTAL.removeprefix(IMAGE)) for name in sorted(known)]
+    return [name for name in names if velocity_dimension(name) in known]
 
 
 def why_no_product(attributes: Mapping[Any, Any], variables: Container[Any]) -> str | None:
@@ -201,9 +310,25 @@ def why_no_product(attributes: Mapping[Any, Any], variables: Container[Any]) -> 
     return None
 
 
+def _written_out(images: Iterable[str], lines: bool, velocities: Iterable[str]) -> Iterator[Variable]:
+    names, resolved = tuple(images), set(velocities)
+    for row in ROWS:
+        if row.lines and not lines:
+            continue
+        if IMAGE in row.name:
+            yield from (_of_image(row, name) for name in names if name in resolved or not row.velocity)
+        else:
+            yield row
+
+
 def _of_image(row: Variable, image: str) -> Variable:
     return row._replace(
         image=image,
         name=row.name.replace(IMAGE, image),
         dimensions=tuple(dimension.replace(IMAGE, image) for dimension in row.dimensions),
+        ratio=row.ratio and _named_for(image, row.ratio),
     )
+
+
+def _named_for(image: str, ratio: Ratio) -> Ratio:
+    return Ratio(*(name.replace(IMAGE, image) for name in ratio))

@@ -1,7 +1,7 @@
 """Products of one scene put together, as one run would have made them; nothing is held but a chunk at a time."""
 
 import hashlib
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from itertools import pairwise
 from typing import Any, NamedTuple
 
@@ -13,8 +13,9 @@ from tracer.errors import InputError
 from tracer.product.assembling import with_label_indexes, without_label_indexes
 from tracer.product.batch_ranges import SeedRange, parse_ranges, ranges_text
 from tracer.product.checksum import data_checksum
-from tracer.product.layout import REPLICATE, REPLICATES, STANDARD_ERROR
+from tracer.product.layout import REPLICATE, REPLICATES, STANDARD_ERROR, Ratio, layout, resolved_images
 from tracer.product.lazy import Key, lazy_variable
+from tracer.product.merging_ratios import merged_ratio
 from tracer.product.provenance import global_attributes
 from tracer.product.run_file import differing_keys, replicates_wanted
 from tracer.product.slabs import slabs
@@ -70,8 +71,9 @@ def merged_product(products: Sequence[tuple[str, xr.Dataset]]) -> xr.Dataset:
         _check_whole(share)
     parts = _regrouped(shares)
     stored = [without_label_indexes(share.ds) for share in shares]
+    ratios = _ratios(stored[0])
     variables = {
-        str(name): _merged(str(name), stored, shares, parts)
+        str(name): _merged(str(name), stored, shares, parts, ratios)
         for name in stored[0].variables
         if parts or not str(name).endswith(REPLICATES)
     }
@@ -155,12 +157,25 @@ def _groups(ds: xr.Dataset) -> tuple[int, ...]:
     return tuple(int(count) for count in np.atleast_1d(ds.attrs.get(GROUPS, ())))
 
 
+def _ratios(ds: xr.Dataset) -> dict[str, Ratio]:
+    """Return the variables that are ratios, with their errors and replicates, and what belongs to each."""
+    images = resolved_images(ds.dims)
+    rows = {name: row.ratio for name, row in layout(images, True, images).items() if row.ratio is not None}
+    return {name + end: ratio for name, ratio in rows.items() for end in ("", STANDARD_ERROR, REPLICATES)}
+
+
 def _merged(
-    name: str, stored: Sequence[xr.Dataset], shares: Sequence[Share], parts: list[list[Part]]
+    name: str,
+    stored: Sequence[xr.Dataset],
+    shares: Sequence[Share],
+    parts: list[list[Part]],
+    ratios: Mapping[str, Ratio],
 ) -> xr.Variable:
     variables = [ds.variables[name] for ds in stored]
     first = variables[0]
     batches = [share.batches for share in shares]
+    if name in ratios:
+        return merged_ratio(name, ratios[name], stored, batches, parts)
     base = name.removesuffix(STANDARD_ERROR)
 
     def read_all(sources: Sequence[xr.Variable], key: Key) -> list[NDArray[Any]]:

@@ -57,6 +57,8 @@ class ImagePlane(NamedTuple):
     """Rising [m] from the body's centre, shape (columns + 1,)."""
     vertical_edges: Floats
     """Rising [m] from the body's centre, shape (rows + 1,)."""
+    velocity_edges: Floats | None = None
+    """Rising [m s-1], positive away from the viewer, shape (bins + 1,); None where velocities are not resolved."""
 
 
 def altitude_edges(first_cell: float, top: float, cells: int) -> Floats:
@@ -203,6 +205,7 @@ def make_image_plane(
     horizontal: tuple[float, float],
     vertical: tuple[float, float],
     pixels: tuple[int, int],
+    velocity: tuple[float, float, int] | None = None,
 ) -> ImagePlane:
     """Return the sky plane of one `[[image]]` table.
 
@@ -216,11 +219,13 @@ def make_image_plane(
         Ends of the image [m] from the body's centre, rising.
     pixels : (int, int)
         Columns and rows.
+    velocity : (float, float, int), optional
+        Ends [m s-1], rising, and number of the bins of velocity away from the viewer.
 
     Raises
     ------
     ValueError
-        Where ends do not rise, a direction has no length, or an axis has no pixel.
+        Where ends do not rise, a direction has no length, or an axis has no pixel or bin.
     """
     n = _clean(_unit(toward_viewer))
     # x^2 + y^2, not 1 - z^2, which near the pole has no digits left.
@@ -235,15 +240,18 @@ def make_image_plane(
         _clean(_cross(up, n)),
         _even_edges("horizontal", horizontal, pixels[0]),
         _even_edges("vertical", vertical, pixels[1]),
+        None if velocity is None else _even_edges("velocity", velocity[:2], velocity[2], "bin", "m s-1"),
     )
 
 
-def _even_edges(axis: str, ends: tuple[float, float], cells: int) -> Floats:
+def _even_edges(
+    axis: str, ends: tuple[float, float], cells: int, cell: str = "pixel", unit: str = "m"
+) -> Floats:
     first, last = ends
     if cells < 1:
-        raise ValueError(f"{axis} needs at least 1 pixel, got {cells}")
+        raise ValueError(f"{axis} needs at least 1 {cell}, got {cells}")
     if not first < last:
-        raise ValueError(f"{axis} must rise, got {first} m to {last} m")
+        raise ValueError(f"{axis} must rise, got {first} {unit} to {last} {unit}")
     # Weighing both ends keeps an image that lies evenly about the centre exactly even.
     share = np.arange(cells + 1)
     return (first * (cells - share) + last * share) / cells

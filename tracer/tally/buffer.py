@@ -36,8 +36,9 @@ def make_layout(
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
     pixels = sum(plane_size(plane) for plane in planes)
+    by_velocity = sum(plane_size(plane) * velocity_sums(plane) for plane in planes)
     cells = (altitudes, *ground)
-    kept = (cells, ground, (pixels,), (lines, *cells), (lines, pixels))
+    kept = (cells, ground, (pixels,), (by_velocity,), (lines, *cells), (lines, pixels), (lines, by_velocity))
     fluxes = (ground,) * 5
     at_rest = ground if adsorbing else (0, 0)
     numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,))
@@ -52,6 +53,17 @@ def plane_shape(plane: ImagePlane) -> tuple[int, int]:
 def plane_size(plane: ImagePlane) -> int:
     """Return the number of pixels of an image plane."""
     return prod(plane_shape(plane))
+
+
+def velocity_sums(plane: ImagePlane) -> int:
+    """Return how many numbers a pixel keeps about velocity: its bins, what lies outside, and two sums of powers."""
+    return 0 if plane.velocity_edges is None else len(plane.velocity_edges) + 2
+
+
+def velocity_middle(plane: ImagePlane) -> float:
+    """Return the velocity [m s-1] from which the sums of powers count: the middle of the bins, 0 without any."""
+    edges = plane.velocity_edges
+    return 0.0 if edges is None else 0.5 * float(edges[0] + edges[-1])
 
 
 def tally_views(layout: BufferLayout, buffer: Floats) -> Tally:

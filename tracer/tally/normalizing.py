@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from tracer.constants import RAYLEIGH
 from tracer.kernels.scoring import Tally
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_solid_angle, cell_volume
-from tracer.tally.buffer import plane_shape, plane_size
+from tracer.tally.buffer import plane_shape, plane_size, velocity_sums
 
 Floats = NDArray[np.float64]
 
@@ -55,12 +55,14 @@ def product_fields(
     yield ProductField("vertical_column", tally.column_content, per_area, replicated=True)
     for plane, content, per_pixel in _images(tally.image_content, planes):
         yield ProductField(f"column_{plane}", content, per_pixel, replicated=True)
+    yield from _by_velocity("column", tally.velocity_content, planes, 1.0)
     if len(tally.emission):
         yield ProductField("emission_rate", tally.emission, per_volume, replicated=True, by_line=True)
         for plane, content, per_pixel in _images(tally.image_emission, planes):
             yield ProductField(
                 f"brightness_{plane}", content, per_pixel / RAYLEIGH, replicated=True, by_line=True
             )
+        yield from _by_velocity("brightness", tally.velocity_emission, planes, 1.0 / RAYLEIGH, by_line=True)
     yield ProductField("release_flux", tally.released, per_area)
     yield ProductField("return_flux", tally.returned, per_area)
     yield ProductField("capture_flux", tally.captured, per_area)
@@ -75,13 +77,35 @@ def product_fields(
     yield ProductField("mean_life", tally.life[0], per_atom)
 
 
+def _by_velocity(
+    what: str, contents: Floats, planes: Sequence[ImagePlane], factor: float, by_line: bool = False
+) -> Iterator[ProductField]:
+    """Yield the bins (..., bin, row, column) of each plane resolved by velocity, and what lies outside them."""
+    start = 0
+    for plane in planes:
+        bins, size = velocity_sums(plane) - 3, plane_size(plane)
+        if bins < 0:
+            continue
+        counts = contents[..., start : start + (bins + 1) * size]
+        counts = counts.reshape(*contents.shape[:-1], bins + 1, *plane_shape(plane))
+        scale = np.array(factor / _pixel_area(plane))
+        inside, outside = counts[..., :bins, :, :], counts[..., bins, :, :]
+        yield ProductField(f"{what}_by_velocity_{plane.name}", inside, scale, True, by_line)
+        yield ProductField(f"{what}_outside_velocity_{plane.name}", outside, scale, True, by_line)
+        start += (bins + 3) * size
+
+
+def _pixel_area(plane: ImagePlane) -> float:
+    """Return the area [m2] of one pixel."""
+    width = plane.horizontal_edges[1] - plane.horizontal_edges[0]
+    return float(width * (plane.vertical_edges[1] - plane.vertical_edges[0]))
+
+
 def _images(contents: Floats, planes: Sequence[ImagePlane]) -> Iterator[tuple[str, Floats, Floats]]:
     """Yield each plane's name, its pixels out of the flat `contents` (..., pixel), and one over a pixel's area."""
     start = 0
     for plane in planes:
         stop = start + plane_size(plane)
-        width = plane.horizontal_edges[1] - plane.horizontal_edges[0]
-        height = plane.vertical_edges[1] - plane.vertical_edges[0]
         pixels = contents[..., start:stop].reshape(*contents.shape[:-1], *plane_shape(plane))
-        yield plane.name, pixels, np.array(1.0 / (width * height))
+        yield plane.name, pixels, np.array(1.0 / _pixel_area(plane))
         start = stop

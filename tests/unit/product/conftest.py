@@ -23,6 +23,7 @@ SIZES = {
     "local_time": 5,
     "tail_from_north_vertical": 2,
     "tail_from_north_horizontal": 6,
+    "tail_from_north_velocity": 3,
 }
 
 
@@ -34,14 +35,15 @@ def grid():
 @pytest.fixture
 def planes():
     north = viewer_direction("north")
-    return [make_image_plane("tail_from_north", "Tail from north", north, (-9e6, 3e6), (-2e6, 2e6), (6, 2))]
+    ends = ((-9e6, 3e6), (-2e6, 2e6), (6, 2), (-3e3, 3e3, SIZES["tail_from_north_velocity"]))
+    return [make_image_plane("tail_from_north", "Tail from north", north, *ends)]
 
 
 @pytest.fixture
 def fields() -> dict[str, FieldStatistics]:
     random = np.random.default_rng(20310601)
     made = {}
-    for name, row in layout(["tail_from_north"]).items():
+    for name, row in layout(["tail_from_north"], velocities=["tail_from_north"]).items():
         shape = tuple(SIZES[axis] for axis in row.dimensions)
         mean, error = random.random(shape), random.random(shape)
         mean.flat[0], error.flat[0] = 0.0, np.nan

@@ -1,4 +1,4 @@
-from tracer.product.layout import has_lines, layout, variable_names, why_no_product
+from tracer.product.layout import has_lines, layout, resolved_images, variable_names, why_no_product
 
 GROUND = ("release", "latitude", "local_time")
 
@@ -35,6 +35,39 @@ def test_gas_with_lines_shines_by_line():
     }
     assert all(table[name].replicated for name in by_line)
     assert {name for name in table if has_lines(name)} == set(by_line)
+
+
+BINS = ("release", "tail_velocity", "tail_vertical", "tail_horizontal")
+PIXELS = ("release", "tail_vertical", "tail_horizontal")
+
+
+def test_an_image_resolved_by_velocity_has_bins_means_and_widths():
+    table = layout(["limb", "tail"], lines=True, velocities=["tail"])
+    plain = layout(["limb", "tail"], lines=True)
+    added = {name: (row.dimensions, row.unit) for name, row in table.items() if name not in plain}
+    assert added == {
+        "column_by_velocity_tail": (BINS, "m-2"),
+        "column_outside_velocity_tail": (PIXELS, "m-2"),
+        "mean_velocity_tail": (PIXELS, "m s-1"),
+        "velocity_width_tail": (PIXELS, "m s-1"),
+        "brightness_by_velocity_tail": (("line", *BINS), "1e10 m-2 s-1"),
+        "brightness_outside_velocity_tail": (("line", *PIXELS), "1e10 m-2 s-1"),
+        "line_shift_tail": (("line", *PIXELS), "m s-1"),
+        "line_width_tail": (("line", *PIXELS), "m s-1"),
+    }
+    assert {name for name in table if has_lines(name)} == {
+        name for name, row in table.items() if row.dimensions[0] == "line"
+    }
+    assert all(table[name].replicated for name in added)
+    assert resolved_images([*BINS, "limb_vertical", "limb_horizontal"]) == ["tail"]
+
+
+def test_names_of_images_collide_with_those_of_velocities():
+    names = variable_names(["tail", "by_velocity_tail"], velocities=["tail"])
+    assert "column_by_velocity_tail" in {name for name in names if names.count(name) > 1}
+    assert len(set(variable_names(["tail", "limb"], True, ["tail", "limb"]))) == len(
+        variable_names(["tail", "limb"], True, ["tail", "limb"])
+    )
 
 
 def test_fields_for_sums_over_cells_are_kept_as_replicates():

@@ -1,4 +1,4 @@
-"""[[image]]: column-density images."""
+"""[[image]]: column-density images, resolved by velocity where that is asked for."""
 
 import re
 
@@ -7,9 +7,26 @@ from pydantic import Field, model_validator
 from tracer.engine.runspec.order import is_below
 from tracer.engine.runspec.sky import ViewerDirection
 from tracer.inputs.number import Cells
-from tracer.inputs.quantity import SkyOffset
+from tracer.inputs.quantity import RadialVelocity, SkyOffset
 from tracer.inputs.table import Table, conflict
 from tracer.inputs.text import Line
+
+
+class VelocityTable(Table):
+    """Velocity along the line of sight: positive away from the viewer, relative to the body, in axes that do not turn.
+
+    What is slower or faster is not lost: it is kept apart.
+    """
+
+    from_: RadialVelocity = Field(alias="from", description="Lower end; negative towards the viewer.")
+    to: RadialVelocity = Field(description="Upper end.")
+    bins: Cells = Field(description="Equal bins between the two ends.")
+
+    @model_validator(mode="after")
+    def _rises(self) -> "VelocityTable":
+        if not is_below(self.from_, self.to):
+            raise conflict("to", f'"{self.to}" is not above from "{self.from_}"')
+        return self
 
 
 class ImageTable(Table):
@@ -27,6 +44,9 @@ class ImageTable(Table):
         "stands above a pole."
     )
     pixels: tuple[Cells, Cells] = Field(description="Pixels along `horizontal` and `vertical`.")
+    velocity: VelocityTable | None = Field(
+        None, description="Resolve the image by velocity along the line of sight; left out: do not."
+    )
 
     @model_validator(mode="after")
     def _has_an_area(self) -> "ImageTable":

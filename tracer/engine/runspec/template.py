@@ -55,6 +55,7 @@ look_from = "north"    # south, dawn, dusk, sun, midnight or { latitude = "0 deg
 horizontal = ["-8 radii", "8 radii"]
 vertical = ["-8 radii", "8 radii"]
 pixels = [128, 128]
+# velocity = { from = "-5 km/s", to = "5 km/s", bins = 50 }   # resolve it along the line of sight
 
 [ensemble]
 particles_per_batch = 2_000          # per release; the more, the smaller the error bars

@@ -19,7 +19,7 @@ def run_file_text(spec: RunSpec) -> str:
         TOML. Keys whose default is found out later (the catalogue's constants, the Hill radius) are left out
         unless they were given.
     """
-    tables = spec.model_dump(exclude_none=True)
+    tables = spec.model_dump(exclude_none=True, by_alias=True)
     if not tables["image"]:
         # An empty list would stand above the tables, where nobody looks for images.
         del tables["image"]

@@ -13,6 +13,7 @@ from tracer.plots.page.scene_words import release_jeans
 from tracer.plots.plan_table import FORBIDDEN, PlanTable
 from tracer.plots.run_text import entries, run_tables, table
 from tracer.plots.sums import has_replicates
+from tracer.product.outside_velocity import outside_notes
 
 FIRST = (
     "A planning aid, not a flight product. Flight rules, keep-out angles, detector limits and the decisions of the "
@@ -64,6 +65,8 @@ def watch(product: xr.Dataset) -> Iterator[str]:
             f"Up to {percent(beyond)} of the time in flight was at radial velocities beyond the tables of g, where "
             "the value at the end of the table stands."
         )
+    for text in outside_notes(product):
+        yield f"{text[0].upper()}{text[1:]}."
     yield from _jeans(product)
     yield from _poor_cells(product)
 

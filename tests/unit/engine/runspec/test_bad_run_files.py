@@ -218,6 +218,50 @@ def test_unknown_key(old: str, new: str, message: str) -> None:
     check(old, new, message)
 
 
+VELOCITY = "image[1].velocity"
+
+
+@pytest.mark.parametrize(
+    ("table", "message"),
+    [
+        (
+            '{ from = "-3 km/s", to = "3 km/s", bin = 6 }',
+            f"{VELOCITY}.bin: unknown key; did you mean bins?",
+        ),
+        (
+            '{ form = "-3 km/s", to = "3 km/s", bins = 6 }',
+            f"{VELOCITY}.form: unknown key; did you mean from?",
+        ),
+        (
+            '{ from_ = "-3 km/s", to = "3 km/s", bins = 6 }',
+            f"{VELOCITY}.from_: unknown key; did you mean from?",
+        ),
+        (
+            '{ to = "3 km/s", bins = 6 }',
+            f'{VELOCITY}.from: missing; must be a quantity of speed, for example "2 km/s"',
+        ),
+        (
+            '{ from = "3 km/s", to = "3000 m/s", bins = 6 }',
+            f'{VELOCITY}.to: "3000 m/s" is not above from "3 km/s"',
+        ),
+        (
+            '{ from = -3, to = "3 km/s", bins = 6 }',
+            f'{VELOCITY}.from: -3 has no unit; write for example "2 km/s"',
+        ),
+        (
+            '{ from = "-3 km/s", to = "3 km/s", bins = 0 }',
+            f"{VELOCITY}.bins: 0 is out of range; must be a whole number from 1 to 4096",
+        ),
+        (
+            '["-3 km/s", "3 km/s"]',
+            f'{VELOCITY}: ["-3 km/s", "3 km/s"] is not allowed; must be one table in braces',
+        ),
+    ],
+)
+def test_velocity_of_an_image(table: str, message: str) -> None:
+    check("pixels = [320, 128]", f"pixels = [320, 128]\nvelocity = {table}", message)
+
+
 @pytest.mark.parametrize(
     ("old", "new", "message"),
     [

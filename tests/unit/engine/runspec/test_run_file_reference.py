@@ -11,7 +11,7 @@ from tracer.engine.runspec.reference import BEGIN, END, reference
 from tracer.engine.runspec.run import RunSpec
 from tracer.inputs.kinds import tables_in
 from tracer.inputs.quantity import Measured
-from tracer.inputs.table import Table
+from tracer.inputs.table import Table, fields_of
 from tracer.units import DIMENSIONS
 
 README = Path(__file__).parents[4] / "runs" / "README.md"
@@ -57,7 +57,7 @@ def test_every_key_is_explained() -> None:
     text = reference()
     for table in _tables(RunSpec):
         assert table.__doc__
-        for key, field in table.model_fields.items():
+        for key, field in fields_of(table).items():
             if key != "law":
                 assert field.description, f"{table.__name__}.{key}"
                 assert f"`{key}`" in text or f"{key}]" in text
