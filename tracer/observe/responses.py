@@ -125,7 +125,7 @@ def evaluate_law(product: xr.Dataset, release: str | int, law: SpeedLawWords | S
     -------
     xarray.Dataset
         `vertical_column`, `column_<image>` and `brightness_<image>` as in the product, of this release alone, each with
-        `_standard_error` and `_replicates`, and with `_within_bin_bias`, which estimates to second order what is wrong
+        `_standard_error` and `_replicates`, and with `_within_bin_bias`, which estimates to second order what is too much
         because the bins have a width. The attribute `bias_over_error` of a variable is the root of the mean
         square of bias over standard error, less what scatter of the estimate itself explains. `share_beyond_bins` is
         what of the law lies beyond the last bin.
@@ -205,10 +205,11 @@ def _functional(moments: Floats, edges: Floats, escape: float, rate: float) -> _
 
 
 def _bends(second: Floats, edges: Floats, escape: float) -> Floats:
-    """Return the weights (bins,) of R0 in the leading term of what two straight lines leave out.
+    """Return the weights (bins,) of R0 in the leading term of what two straight lines have too much.
 
-    That is the sum over bins of Q w^2 c''/12: Q the second Legendre moment of the law, w the width, c'' the second
-    difference of R0, taken on one side of the escape speed alone.
+    That is minus the sum over bins of Q w^2 c''/12: Q the second Legendre moment of the law, w the width, c'' the
+    second difference of R0, taken on one side of the escape speed alone. Where a law falls steeply through a bin that
+    is up to three times what is really wrong (own quadrature).
     """
     middles, widths = 0.5 * (edges[1:] + edges[:-1]), np.diff(edges)
     weights = np.zeros(len(middles))
@@ -219,7 +220,7 @@ def _bends(second: Floats, edges: Floats, escape: float) -> Floats:
         for place in range(first, stop):
             k = min(max(place, first + 1), stop - 2)
             before, after = middles[k] - middles[k - 1], middles[k + 1] - middles[k]
-            size = second[place] * widths[place] ** 2 / 6.0 / (before + after)
+            size = -second[place] * widths[place] ** 2 / 6.0 / (before + after)
             weights[k - 1] += size / before
             weights[k] -= size * (1.0 / before + 1.0 / after)
             weights[k + 1] += size / after
@@ -266,7 +267,7 @@ def _evaluated(
         name: like(mean).assign_attrs(bias_over_error=ratio),
         name + STANDARD_ERROR: like(error, "standard error of "),
         name + REPLICATES: groups_of.copy(data=np.expand_dims(replicates, 1 + place)),
-        name + BIAS: like(bias, "second-order effect of the width of bins of launch speed on "),
+        name + BIAS: like(bias, "estimated excess, since bins of launch speed have a width, of "),
     }
 
 
