@@ -125,10 +125,10 @@ def evaluate_law(product: xr.Dataset, release: str | int, law: SpeedLawWords | S
     -------
     xarray.Dataset
         `vertical_column`, `column_<image>` and `brightness_<image>` as in the product, of this release alone, each with
-        `_standard_error` and `_replicates`, and with `_within_bin_bias`, which estimates to second order what is too much
-        because the bins have a width. The attribute `bias_over_error` of a variable is the root of the mean
-        square of bias over standard error, less what scatter of the estimate itself explains. `share_beyond_bins` is
-        what of the law lies beyond the last bin.
+        `_standard_error` and `_replicates`, and with `_within_bin_bias`, an estimate to second order of the excess
+        because the bins have a width: trust no pixel where it exceeds the error. A variable's `bias_over_error` is the
+        root of the sum of the squares of all its biases, less what their own scatter explains, over that of its errors.
+        The attribute `share_beyond_bins` is what of the law lies beyond the last bin.
 
     Raises
     ------
@@ -248,10 +248,11 @@ def _evaluated(
     ]
     replicates, biases = (np.array(one) for one in zip(*groups, strict=True))
     error, scatter = (standard_error(np.moveaxis(one, 0, -1), batches) for one in (replicates, biases))
-    known = (mean != 0.0) & (error > 0.0)
+    # Relative to the largest error squares stay within a float's range.
+    largest = float(error.max()) or 1.0
+    excess = float(np.sum((bias / largest) ** 2 - (scatter / largest) ** 2))
+    ratio = float(np.sqrt(max(0.0, excess) / max(np.sum((error / largest) ** 2), 1.0)))
     error = np.where(mean == 0.0, np.nan, error)
-    excess = (bias[known] ** 2 - scatter[known] ** 2) / error[known] ** 2
-    ratio = float(np.sqrt(max(0.0, excess.mean()))) if known.any() else np.nan
     template = product[name].isel({RELEASE: [number]})
     place = template.dims.index(RELEASE)
 

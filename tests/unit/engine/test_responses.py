@@ -132,7 +132,7 @@ def test_images_whose_responses_would_collide_are_refused(small_run_file):
     path = small_run_file.with_name("colliding.toml")
     path.write_text(text.replace("[ensemble]", other + "[ensemble]"), encoding="utf-8")
     build_scene(load_run(path))
-    with pytest.raises(InputError, match="names collide in the product: .*column_response_tail_from_north"):
+    with pytest.raises(InputError, match=r"names collide in the product: .*column_response_tail_from_north"):
         build_scene(load_run(path, [BINS]))
 
 
