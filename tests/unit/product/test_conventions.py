@@ -31,7 +31,9 @@ def test_the_conventions_are_met(saved):
 
 
 def test_the_conventions_are_met_with_responses(small_light_run_file, tmp_path):
-    product = run(load_run(small_light_run_file, ["ensemble.speed_bins=8", "ensemble.batches=3"]), workers=1)
+    product = run(
+        load_run(small_light_run_file, ["ensemble.speed_bins=8", "ensemble.replicates=0"]), workers=1
+    )
     save_product(product, tmp_path / "responses.nc")
     done = check(tmp_path / "responses.nc", "lenient")
     assert done.returncode == 0, done.stdout
