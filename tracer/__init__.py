@@ -1,7 +1,7 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
-`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan` and `plan_observation`,
-are loaded when they are first asked for, so that `import tracer` costs nothing.
+`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation` and
+`evaluate_law`, are loaded when they are first asked for, so that `import tracer` costs nothing.
 """
 
 from importlib import import_module
@@ -12,12 +12,14 @@ if TYPE_CHECKING:
     from tracer.engine.tracing import run
     from tracer.observe.plan import plan_observation
     from tracer.observe.planspec.plan import load_plan
+    from tracer.observe.responses import evaluate_law
     from tracer.observe.sightlines import sightlines
     from tracer.product.reading import open_product
     from tracer.product.writing import save_product
 
 __all__ = [
     "__version__",
+    "evaluate_law",
     "load_plan",
     "load_run",
     "open_product",
@@ -28,6 +30,7 @@ __all__ = [
 ]
 
 _HOMES = {
+    "evaluate_law": "tracer.observe.responses",
     "load_plan": "tracer.observe.planspec.plan",
     "load_run": "tracer.engine.runspec.load",
     "open_product": "tracer.product.reading",

@@ -11,6 +11,7 @@ from tracer.product.layout import (
     EDGE,
     LABELS,
     LATITUDE,
+    LAUNCH_SPEED,
     LOCAL_TIME,
     REPLICATE,
     REPLICATES,
@@ -79,11 +80,12 @@ def _why_misshapen(file: Any) -> str | None:
     images = [name.removesuffix(ending) for name in file.dimensions if name.endswith(ending)]
     expected: dict[str, tuple[str, ...]] = {label.variable: (label.dimension,) for label in LABELS}
     resolved = resolved_images(file.dimensions)
-    axes = [ALTITUDE, LATITUDE, LOCAL_TIME, *(axis for name in images for axis in image_dimensions(name))]
+    axes = [ALTITUDE, LATITUDE, LOCAL_TIME, LAUNCH_SPEED]
+    axes += [axis for name in images for axis in image_dimensions(name)]
     axes += map(velocity_dimension, resolved)
     for axis in axes:
         expected |= {axis: (axis,), axis + BOUNDS: (axis, EDGE)}
-    for name, row in layout(images, True, resolved).items():
+    for name, row in layout(images, True, resolved, speeds=True).items():
         expected |= {name: row.dimensions, name + STANDARD_ERROR: row.dimensions}
         expected[name + REPLICATES] = (REPLICATE, *row.dimensions)
     for name, dimensions in expected.items():

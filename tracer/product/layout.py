@@ -15,6 +15,7 @@ BOUNDS = "_bounds"
 
 RELEASE, FATE, LINE = "release", "fate", "line"
 ALTITUDE, LATITUDE, LOCAL_TIME = "altitude", "latitude", "local_time"
+LAUNCH_SPEED, ORDER = "launch_speed", "launch_speed_order"
 REPLICATE, EDGE = "replicate", "bounds"
 
 ADSORBED_COLUMN = "adsorbed_column"
@@ -70,6 +71,8 @@ class Variable(NamedTuple):
     """Only of images that are resolved by velocity."""
     ratio: "Ratio | None" = None
     """Of a mean or a width: what it is the mean or width of."""
+    speeds: bool = False
+    """Only where responses are kept by bins of launch speed."""
     image: str | None = None
     """Product name of the image, in a row that was written out for one."""
 
@@ -81,6 +84,9 @@ _BINS = (RELEASE, VELOCITY, VERTICAL, HORIZONTAL)
 
 _BY_COLUMN = Ratio("column_" + IMAGE, "mean_velocity_" + IMAGE, "velocity_width_" + IMAGE)
 _BY_BRIGHTNESS = Ratio("brightness_" + IMAGE, "line_shift_" + IMAGE, "line_width_" + IMAGE)
+_SPEEDS = (RELEASE, LAUNCH_SPEED, ORDER)
+
+_PER_LAUNCH = "per rate of launches into a bin of speed, by Legendre order within the bin"
 
 ROWS = (
     Variable("number_density", _CELLS, "m-3", "number density", replicated=True),
@@ -180,6 +186,31 @@ ROWS = (
         velocity=True,
         ratio=_BY_BRIGHTNESS,
     ),
+    Variable(
+        "vertical_column_response",
+        (*_SPEEDS, LATITUDE, LOCAL_TIME),
+        "s m-2",
+        f"column density above the ground {_PER_LAUNCH}",
+        replicated=True,
+        speeds=True,
+    ),
+    Variable(
+        "column_response_" + IMAGE,
+        (*_SPEEDS, VERTICAL, HORIZONTAL),
+        "s m-2",
+        f"column density along the line of sight {_PER_LAUNCH}",
+        replicated=True,
+        speeds=True,
+    ),
+    Variable(
+        "brightness_response_" + IMAGE,
+        (LINE, *_SPEEDS, VERTICAL, HORIZONTAL),
+        "1e10 m-2",
+        f"brightness in rayleigh {_PER_LAUNCH}",
+        replicated=True,
+        lines=True,
+        speeds=True,
+    ),
     Variable("release_flux", _GROUND, "m-2 s-1", "flux of new atoms from the surface, bounces not counted"),
     Variable("return_flux", _GROUND, "m-2 s-1", "flux of landing atoms, every landing counted"),
     Variable("capture_flux", _GROUND, "m-2 s-1", "flux of atoms that the surface keeps for good"),
@@ -230,7 +261,7 @@ LANDMARKS = ("ledger", "release_name", "fate_name")
 
 
 def layout(
-    images: Iterable[str] = (), lines: bool = False, velocities: Iterable[str] = ()
+    images: Iterable[str] = (), lines: bool = False, velocities: Iterable[str] = (), speeds: bool = False
 ) -> dict[str, Variable]:
     """Return the product's variables by name, with every image row written out for each image.
 
@@ -242,13 +273,15 @@ def layout(
         Whether the gas has lines.
     velocities : iterable of str
         Names of those images that are resolved by velocity.
+    speeds : bool
+        Whether responses are kept by bins of launch speed.
 
     Returns
     -------
     dict of str to Variable
         In the order of the file; standard errors and replicates are not listed apart.
     """
-    return {variable.name: variable for variable in _written_out(images, lines, velocities)}
+    return {variable.name: variable for variable in _written_out(images, lines, velocities, speeds)}
 
 
 def has_lines(name: str) -> bool:
@@ -258,7 +291,7 @@ def has_lines(name: str) -> bool:
 
 
 def variable_names(
-    images: Iterable[str] = (), lines: bool = True, velocities: Iterable[str] = ()
+    images: Iterable[str] = (), lines: bool = True, velocities: Iterable[str] = (), speeds: bool = False
 ) -> list[str]:
     """Return every name that a product with these images may hold, coordinates and bounds included.
 
@@ -268,10 +301,10 @@ def variable_names(
     image_axes = [axis.replace(IMAGE, name) for name in images for axis in (VERTICAL, HORIZONTAL)]
     image_axes += [velocity_dimension(name) for name in velocities]
     names = [label.variable for label in LABELS]
-    for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes):
+    for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes, *((LAUNCH_SPEED,) if speeds else ())):
         names += [axis, axis + BOUNDS]
     # Not by the layout: in it one of two equal names would be lost.
-    for variable in _written_out(images, lines, velocities):
+    for variable in _written_out(images, lines, velocities, speeds):
         names.append(variable.name)
         names += [variable.name + STANDARD_ERROR] * variable.tallied
         names += [variable.name + REPLICATES] * variable.replicated
@@ -310,10 +343,12 @@ def why_no_product(attributes: Mapping[Any, Any], variables: Container[Any]) -> 
     return None
 
 
-def _written_out(images: Iterable[str], lines: bool, velocities: Iterable[str]) -> Iterator[Variable]:
+def _written_out(
+    images: Iterable[str], lines: bool, velocities: Iterable[str], speeds: bool
+) -> Iterator[Variable]:
     names, resolved = tuple(images), set(velocities)
     for row in ROWS:
-        if row.lines and not lines:
+        if (row.lines and not lines) or (row.speeds and not speeds):
             continue
         if IMAGE in row.name:
             yield from (_of_image(row, name) for name in names if name in resolved or not row.velocity)
