@@ -72,7 +72,7 @@ def time_words(product: xr.Dataset) -> Iterator[tuple[str, str]]:
         return
     yield (
         "Density, columns, images, light, ions",
-        "Those at the stated position, made by atoms released whenever they had to be to be there then.",
+        "Those at the stated position, made by atoms of all ages, released while the body was on its way there.",
     )
     yield (
         "Return, capture and escape fluxes",

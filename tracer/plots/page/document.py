@@ -46,8 +46,6 @@ TOLD = (
     "kernel_seconds",
     "wall_seconds",
     "workers",
-    "motion",
-    "event_window",
     "references",
 )
 """Attributes of a product that tell where it comes from."""

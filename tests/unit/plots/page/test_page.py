@@ -170,7 +170,7 @@ def test_what_the_numbers_of_a_moving_body_mean_is_told(moving):
     assert told["Return, capture and escape fluxes"].startswith(
         "What happens in the last 5.91 h before the stated"
     )
-    assert "released whenever they had to be" in told["Density, columns, images, light, ions"]
+    assert "released while the body was on its way there" in told["Density, columns, images, light, ions"]
     assert "followed on along the orbit to their end" in told["Particle budget, mean life, flights"]
     assert told["Release rates"].startswith(
         "impact vapour, with the inverse square of the distance from the Sun."
