@@ -9,8 +9,9 @@ from tracer.commands.arguments import JSON, PRODUCT_FILE
 from tracer.commands.budget_table import print_budget
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
-from tracer.commands.tables import print_rows
+from tracer.commands.tables import print_rows, print_wrapped_rows
 from tracer.errors import InputError
+from tracer.plots.moving import motion_of, time_words
 from tracer.product.checksum import data_checksum
 from tracer.product.reading import load_all, open_product
 
@@ -26,6 +27,8 @@ SHOWN = (
     "kernel_seconds",
     "wall_seconds",
     "workers",
+    "motion",
+    "event_window",
     "scene_hash",
     "run_hash",
     "data_checksum",
@@ -47,6 +50,7 @@ def command(product: PRODUCT_FILE, json: JSON = False) -> None:
             print_json({**{key: ds.attrs[key] for key in SHOWN if key in ds.attrs}, **_figures(ds)})
             return
         print_rows([(key, _text(ds.attrs[key])) for key in SHOWN if key in ds.attrs])
+        print_wrapped_rows(list(time_words(ds)))
         print_budget(ds)
         typer.echo("variables, with the median relative standard error of their cells that were hit")
         print_rows(_variable_rows(ds))
@@ -59,7 +63,8 @@ def _text(value: Any) -> str:
 
 def _figures(ds: xr.Dataset) -> dict[str, Any]:
     releases = {}
-    for name in ds["release_name"].values:
+    motion = motion_of(ds)
+    for place, name in enumerate(ds["release_name"].values):
         one = ds.sel(release=name)
         releases[str(name)] = {
             "ledger": dict(zip(map(str, ds["fate_name"].values), one["ledger"].values.tolist(), strict=True)),
@@ -75,6 +80,8 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
             "mean_flights": float(one["mean_flights"]),
             "mean_life": float(one["mean_life"]),
         }
+        if motion is not None:
+            releases[str(name)]["share_older_than_age_limit"] = float(motion.older[place])
     errors = {
         name: _median_relative_error(ds, name)
         for name in _tallied(ds)

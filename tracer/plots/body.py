@@ -74,13 +74,14 @@ def draw_disc(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector) -> N
         axes.add_patch(patch)
 
 
-def mark_sun(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector) -> None:
-    """Mark the direction to the Sun in the upper right corner of the axes."""
+def mark_sun(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, stretch: float = 1.0) -> None:
+    """Mark the direction to the Sun in the upper right corner; the vertical is drawn `stretch` times larger."""
     if hypot(right[0], up[0]) < ON_AXIS:
         words = "Sun behind the viewer" if toward_viewer[0] > 0.0 else "Sun behind the body"
         _letters(axes, words, np.array([-3.0, -3.0]), "right", "top")
         return
-    toward_sun = sun_in_sky(up, right)
+    toward_sun = sun_in_sky(up, right) * np.array([1.0, stretch])
+    toward_sun /= hypot(*toward_sun)
     x, y = toward_sun
     # As near to the corner as neither the tip of the arrow nor the word behind its tail leaves the axes.
     middle = np.array([min(-6.0 - 8.0 * x, -10.0 + 13.0 * x), min(-6.0 - 8.0 * y, -7.0 + 10.0 * y)])

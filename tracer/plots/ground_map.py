@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
 from tracer.plots.field import Field, released_words, releases, variable
 from tracer.plots.hatching import hatch_rectangles
+from tracer.plots.moving import event_note
 from tracer.plots.planes import DEGREES_PER_HOUR, edges
 from tracer.plots.reading_units import PER_SQUARE_CENTIMETRE
 from tracer.plots.significance import note, say_nothing
@@ -157,7 +158,7 @@ def ground_map(
             TOP + height + ROOM_BELOW,
             str(product.attrs.get("title", "")),
             f"{what.words}, {released_words(names)}",
-            note([field], names, what.nothing),
+            " ".join(filter(None, [event_note(product, what.variable), note([field], names, what.nothing)])),
         )
         panel = Box(LEFT, box.bottom + ROOM_BELOW, across, height)
         _draw(axes_in(figure, panel), hours, latitudes, field, what.colours)

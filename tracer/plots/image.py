@@ -33,13 +33,15 @@ from tracer.product.layout import image_dimensions
 LEFT, RIGHT, TOP = 12.5, 12.5, 7.0
 """Distances [mm] round the panel."""
 LOWEST, HIGHEST, NARROWEST = 18.0, 120.0, 20.0
-"""Limits of the panel's height and width [mm]; an image that does not fill the panel stands in its middle."""
+"""Limits of the panel's height and width [mm]; a flatter image is stretched upwards, a narrower one stands in the
+middle."""
 ROOM_FOR_LABEL = 38.0
 """Height [mm] above which the label along the vertical fits on one line."""
 
 DISC_WORDS = (
-    "Circle: the body, its night side darkened; gas before the disc is counted, gas behind is hidden."
+    "{shape}: the body, its night side darkened; gas before the disc is counted, gas behind is hidden."
 )
+STRETCHED_WORDS = "The vertical is drawn {stretch:.2g} times larger than the horizontal."
 SUNWARD_WORDS: dict[Vector, str] = {
     (1.0, 0.0, 0.0): "toward the Sun",
     (-1.0, 0.0, 0.0): "away from the Sun",
@@ -91,24 +93,28 @@ def image(
     vertical, horizontal = image_dimensions(sky.name)
     columns, rows = (edges(product, axis) / radius for axis in (horizontal, vertical))
     lit = "no atom counted" if line is None else "no atom in sunlight counted"
+    shape = float(np.ptp(rows) / np.ptp(columns))
+    stretch = _stretch(width, shape)
     caption = [
+        STRETCHED_WORDS.format(stretch=stretch) if stretch > 1.0 else "",
         note([field], names, lit),
         contour_words(field),
-        DISC_WORDS if _has_disc(columns, rows) else "",
+        DISC_WORDS.format(shape="Ellipse" if stretch > 1.0 else "Circle") if _has_disc(columns, rows) else "",
     ]
     with styled():
         figure, panel, bar = _lay_out(
             width,
-            float(np.ptp(rows) / np.ptp(columns)),
+            stretch * shape,
             str(product.attrs.get("title", "")),
             f"{sky.title}: {what}, {released_words(names)}",
             " ".join(words for words in caption if words),
         )
         axes = axes_in(figure, panel)
+        axes.set(xlim=(columns[0], columns[-1]), ylim=(rows[0], rows[-1]), aspect=stretch)
         _draw(axes, columns, rows, field, colours)
         draw_error_contours(axes, columns, rows, field)
         draw_disc(axes, sky.toward_viewer, sky.up, sky.right)
-        mark_sun(axes, sky.toward_viewer, sky.up, sky.right)
+        mark_sun(axes, sky.toward_viewer, sky.up, sky.right, stretch)
         axes.set_xlabel(f"{_direction(sky.right, 'rightward in the sky')} (body radii)")
         between = " " if panel.height > ROOM_FOR_LABEL else "\n"
         axes.set_ylabel(f"{_direction(sky.up, 'northward in the sky')}{between}(body radii)")
@@ -118,10 +124,20 @@ def image(
     return figure
 
 
-def _lay_out(width: Width, shape: float, title: str, subtitle: str, caption: str) -> tuple[Figure, Box, Box]:
+def _stretch(width: Width, shape: float) -> float:
+    """Return by how much an image of this height over width is stretched upwards to fill the lowest panel."""
+    _, room = _left_and_room(width, shape)
+    return max(1.0, LOWEST / (room * shape))
+
+
+def _left_and_room(width: Width, shape: float) -> tuple[float, float]:
     low = shape * (WIDTHS[width] - LEFT - RIGHT) < ROOM_FOR_LABEL
     left = LEFT + (line_height(TEXT_SIZE) if low else 0.0)
-    room = WIDTHS[width] - left - RIGHT
+    return left, WIDTHS[width] - left - RIGHT
+
+
+def _lay_out(width: Width, shape: float, title: str, subtitle: str, caption: str) -> tuple[Figure, Box, Box]:
+    left, room = _left_and_room(width, shape)
     height = min(max(room * shape, LOWEST), HIGHEST)
     across = min(max(height / shape, NARROWEST), room)
     figure, box = framed_figure(width, TOP + height + ROOM_BELOW, title, subtitle, caption)
@@ -130,7 +146,6 @@ def _lay_out(width: Width, shape: float, title: str, subtitle: str, caption: str
 
 
 def _draw(axes: Axes, columns: Edges, rows: Edges, field: Field, colours: str) -> None:
-    axes.set(xlim=(columns[0], columns[-1]), ylim=(rows[0], rows[-1]), aspect="equal")
     span = colour_span([field])
     if span is None:
         say_nothing(axes)

@@ -217,3 +217,34 @@ def test_run_in_sunlight_writes_lines_and_summary_lists_them(capsys):
         figures["median_relative_standard_error"]
     )
     assert figures["releases"]["vent"]["ledger"]["ionized"] > 0.0
+
+
+def test_summary_says_what_the_numbers_of_a_moving_body_mean(capsys):
+    changes = ['sun.motion="moving"', 'release[1].rate_scaling="inverse-square"', 'domain.age_limit="1 h"']
+    settings = [word for change in changes for word in ("--set", change)]
+    assert exit_code("run", "sodium.toml", *settings) == 0
+    capsys.readouterr()
+    assert exit_code("summary", "sodium.nc") == 0
+    told = " ".join(capsys.readouterr().out.split())
+    # The window is the limit of age where that is shorter than a degree of mean anomaly.
+    assert "What happens in the last 1 h before the stated position." in told
+    assert "vent, with the inverse square of the distance from the Sun." in told
+    assert "what lies behind the limit is missing:" in told
+    assert exit_code("summary", "sodium.nc", "--json") == 0
+    figures = json.loads(capsys.readouterr().out)
+    assert figures["motion"] == "moving"
+    assert figures["event_window"] == pytest.approx(3600.0)
+    assert 0.0 < figures["releases"]["vent"]["share_older_than_age_limit"] < 1.0
+
+
+def test_summary_of_a_body_that_stands_still_tells_of_a_steady_state(capsys):
+    assert exit_code("run", "sodium.toml") == 0
+    capsys.readouterr()
+    assert exit_code("summary", "sodium.nc") == 0
+    told = " ".join(capsys.readouterr().out.split())
+    assert "The steady state: every source has released at its rate" in told
+    assert "stated position" not in told
+    assert exit_code("summary", "sodium.nc", "--json") == 0
+    figures = json.loads(capsys.readouterr().out)
+    assert figures["motion"] == "stationary"
+    assert "share_older_than_age_limit" not in figures["releases"]["vent"]

@@ -93,3 +93,29 @@ def test_image_shows_each_pixel_where_it_lies(make_product):
     radius = product.body_radius
     expected = (product.from_dawn_horizontal[6] / radius, product.from_dawn_vertical[4] / radius)
     np.testing.assert_allclose(hottest(image(product, "from_dawn").axes[0]), expected, rtol=1e-12)
+
+
+def flattened(product, factor):
+    """Return a product whose image from north is `factor` times longer."""
+    axis = "tail_from_north_horizontal"
+    longer = product.assign_coords({axis: product[axis] * factor})
+    return longer.assign({f"{axis}_bounds": longer[f"{axis}_bounds"] * factor})
+
+
+@pytest.mark.parametrize("width", ["column", "full"])
+def test_very_flat_image_is_stretched_upwards_and_says_so(make_product, width):
+    figure = image(flattened(make_product(), 50.0), "tail_from_north", width=width)
+    figure.canvas.draw()
+    axes = figure.axes[0]
+    box = axes.get_window_extent()
+    # 18 mm, and across the whole panel: 350 by 4 radii would be a line.
+    assert box.height / figure.dpi * 25.4 == pytest.approx(18.0, rel=1e-6)
+    across, up = np.ptp(axes.get_xlim()), np.ptp(axes.get_ylim())
+    stretch = (box.height / up) / (box.width / across)
+    assert stretch > 5.0
+    words = " ".join(" ".join(text.get_text() for text in figure.texts).split())
+    assert f"The vertical is drawn {stretch:.2g} times larger than the horizontal." in words
+    assert "Ellipse: the body" in words
+    plain = image(make_product(), "tail_from_north", width=width)
+    assert plain.axes[0].get_aspect() == 1.0
+    assert "larger than the horizontal" not in " ".join(text.get_text() for text in plain.texts)

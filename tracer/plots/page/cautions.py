@@ -5,14 +5,17 @@ from collections.abc import Iterator
 import numpy as np
 import xarray as xr
 
+from tracer.catalogue.load import bodies
 from tracer.physics.retention import HYDRODYNAMIC_JEANS
 from tracer.plots.budget import budget_of
 from tracer.plots.field import releases, variable
+from tracer.plots.moving import older_worth_a_caution
 from tracer.plots.page.reading import number, percent
 from tracer.plots.page.scene_words import release_jeans
 from tracer.plots.plan_table import FORBIDDEN, PlanTable
-from tracer.plots.run_text import entries, run_tables, table
+from tracer.plots.run_text import Table, entries, run_tables, table
 from tracer.plots.sums import has_replicates
+from tracer.product.layout import LINE
 from tracer.product.outside_velocity import outside_notes
 
 FIRST = (
@@ -55,6 +58,12 @@ def watch(product: xr.Dataset) -> Iterator[str]:
         yield f"{percent(shares['unresolved'])} of the atoms were given up by the propagator: use no part of this."
     if shares.get("age_limit", 0.0) > NOTABLE:
         yield f"{percent(shares['age_limit'])} of the atoms outlived the age limit: what came later is missing."
+    older = older_worth_a_caution(product)
+    if older is not None:
+        yield (
+            f"Up to {percent(older)} of the survival time lies behind the age limit: about that much of the gas at the "
+            "stated position, mostly far away, is missing."
+        )
     if not has_replicates(product, "number_density"):
         yield "There are no replicates: errors of sums over cells, fields of view and fits are not to be had."
     if product.attrs.get("stop_reached", 1) == 0:
@@ -100,17 +109,69 @@ def left_out(product: xr.Dataset) -> Iterator[str]:
         "Atoms never meet: nothing about a gas with a jeans parameter below about 3, which flows out as a whole, nor "
         "about an atmosphere thick enough to have a barometer."
     )
-    if "sun" in run:
+    yield from _of_sunlight(run, LINE in product.dims)
+    yield from _of_the_host(run)
+    yield from _of_the_ground(run)
+    yield "No charged particles, no magnetic or electric fields, no chemistry. What is ionised is gone."
+
+
+def _of_sunlight(run: Table, shines: bool) -> Iterator[str]:
+    if "sun" not in run:
+        yield "There is no Sun in this scene: no push, no tide, no light, no shadow, no loss to sunlight."
+        return
+    if shines:
         yield (
             "Sunlight is single scattering into all directions alike: no phase function, no optical depth, no "
             "hyperfine structure. A line without known g neither pushes nor shines."
         )
-        if table(run, "sun").get("motion", "stationary") == "stationary":
-            yield "The body stands still on its orbit while atoms fly: no seasons within a tail that is weeks long."
     else:
-        yield "There is no Sun in this scene: no push, no tide, no light, no shadow, no loss to sunlight."
-    yield "The gravity and shadow of a host planet, and a moon's own motion about it."
-    yield "A smooth sphere: no topography, no porosity; temperature follows a simple law of the Sun's height."
-    if table(run, "surface").get("adsorbed", "captured") == "captured":
-        yield "Atoms that stick are captured for good; none leaves again later."
-    yield "No charged particles, no magnetic or electric fields, no chemistry. What is ionised is gone."
+        yield "No line of this gas has a known g here: nothing about its brightness, and no line pushes it."
+    if table(run, "sun").get("motion", "stationary") == "stationary":
+        yield "The body stands still on its orbit while atoms fly: no seasons within a tail that is weeks long."
+    else:
+        yield (
+            "Along the orbit only distance, velocity, the turning of the frame and the rates that ask for it change: "
+            "temperatures and the laws of release stay those of the run file."
+        )
+
+
+def _of_the_host(run: Table) -> Iterator[str]:
+    body = table(run, "body")
+    known = bodies().get(str(body.get("name")))
+    if known is not None and known.host.orbit is not None:
+        host = known.host.name
+        if "sun" in run:
+            yield f"The gravity and shadow of {host}, and the body's own motion about it."
+        else:
+            yield f"The gravity of {host}, and the body's own motion about it."
+    elif known is None and "orbit" not in body:
+        yield "Should the body be a moon: the gravity and shadow of its host planet, and its own motion about it."
+
+
+TEMPERATURES = {
+    "uniform": "the ground has one temperature everywhere",
+    "map": "temperatures are those of a map, whatever the distance from the Sun",
+    "conduction": "temperatures are those of a steady rhythm of day and night under the mean motion of the Sun",
+    "hurley-2015": "temperatures are a fit of the Moon's to the Sun's height and the time of night",
+}
+
+
+def _of_the_ground(run: Table) -> Iterator[str]:
+    surface = table(run, "surface")
+    sphere = "A smooth sphere: no topography, no porosity"
+    ground = table(surface, "temperature")
+    if ground:
+        law = TEMPERATURES.get(str(ground.get("law")), "temperature follows a simple law of the Sun's height")
+        sphere += f"; {law}"
+    yield sphere + "."
+    if surface.get("sticking", 0.0) != 0.0:
+        if surface.get("adsorbed", "captured") == "captured":
+            yield "Atoms that stick are captured for good; none leaves again later."
+        else:
+            yield (
+                "Atoms at rest have one energy of desorption: no spread of it, no diffusion into the ground, no "
+                "burial; they do not cover each other's places."
+            )
+    placed = [str(table(entry, "place").get("law")) for entry in entries(run, "release")]
+    if table(surface, "cold_traps") or "map" in placed or ground.get("law") == "map":
+        yield "Cold traps and maps stand still below the Sun while the ground turns."

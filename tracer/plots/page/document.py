@@ -12,6 +12,7 @@ import xarray as xr
 
 from tracer.plots.budget import budget_of, look
 from tracer.plots.field import releases
+from tracer.plots.moving import motion_of, time_words
 from tracer.plots.page.cautions import FIRST, left_out, plan_cautions, watch
 from tracer.plots.page.figure_list import PageFigure, plan_figure, product_figures
 from tracer.plots.page.markup import Content, Markup, bullets, definitions, element, table
@@ -74,6 +75,7 @@ def report_page(product: xr.Dataset, name: str, plan: PlanTable | None = None, p
     title = str(product.attrs.get("title", "")).strip() or UNTITLED
     sections = [
         _section("scene", "Scene", definitions(scene_words(product))),
+        _section("meaning", "What the numbers mean", definitions(time_words(product))),
         _section("budget", "Particle budget", _budget(product)),
         _section("figures", "Figures", [_figure(one) for one in product_figures(product)]),
     ]
@@ -177,8 +179,11 @@ def _budget(product: xr.Dataset) -> Content:
             for rate, error in zip(budget.rate[place], budget.error[place], strict=True)
         ]
         rows.append([name, number(total), *shares, *_lives(product, name if place < len(names) else None)])
+    released = (
+        "the released atoms" if motion_of(product) is None else "the atoms released at the stated position"
+    )
     return [
-        table(heads, rows, "What becomes of the released atoms: shares with one standard error"),
+        table(heads, rows, f"What becomes of {released}: shares with one standard error"),
         element(
             "p",
             "Releases are independent: the variances of their rates add. Everything scales with the rates.",

@@ -13,6 +13,7 @@ from tracer.plots.budget import budget_of, look
 from tracer.plots.field import Field, releases, variable
 from tracer.plots.figures import FIGURES, Choice, What
 from tracer.plots.ground_map import COLUMN, MAPS, GroundMap
+from tracer.plots.moving import event_note, motion_of
 from tracer.plots.page.reading import number, percent, raised
 from tracer.plots.plan_table import FORBIDDEN, PlanTable
 from tracer.plots.reading_units import KILORAYLEIGH, PER_CUBIC_CENTIMETRE, PER_SQUARE_CENTIMETRE
@@ -109,7 +110,8 @@ def _budget_words(product: xr.Dataset) -> str:
         f"{percent(float(rate) / total)} {look(fate).words}"
         for fate, rate in zip(budget.fates, budget.rate[-1], strict=True)
     ]
-    return f"Of all released atoms: {', '.join(shares)}."
+    released = "released atoms" if motion_of(product) is None else "atoms released at the stated position"
+    return f"Of all {released}: {', '.join(shares)}."
 
 
 def _density_words(product: xr.Dataset) -> str:
@@ -137,7 +139,8 @@ def _map_words(product: xr.Dataset, what: GroundMap) -> str:
     largest = f"{number(float(field.value[row, column]), 3)} {raised(what.unit)}"
     latitude, hour = product["latitude"].values[row], product["local_time"].values[column]
     place = f"latitude {latitude:.3g} deg and local time {hour:.3g} h"
-    return f"{what.words}, over latitude and local time. Largest, {largest}, at {place}."
+    told = f"{what.words}, over latitude and local time. Largest, {largest}, at {place}."
+    return " ".join(filter(None, [told, event_note(product, what.variable)]))
 
 
 def _largest(field: Field, unit: str) -> str:

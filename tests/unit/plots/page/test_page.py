@@ -10,6 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from tracer.plots.ground_map import MAPS
+from tracer.plots.moving import time_words
 from tracer.plots.page.cautions import left_out, plan_cautions, watch
 from tracer.plots.page.figure_list import product_figures
 from tracer.plots.page.markup import element, escaped
@@ -138,9 +139,82 @@ def test_scene_is_told_in_words(make_product):
     )
     (loss,) = [text for name, text in told.items() if "charge exchange" in name]
     assert loss.endswith("at 1 au, falling with the square of the distance, everywhere.")
-    # A law that has no words of its own is shown by its keys.
-    assert "by the law law step, below 200\N{NO-BREAK SPACE}K" in told["Surface"]
+    # A law that has no words of its own is shown by its name and keys.
+    assert (
+        "is adsorbed by the law step, below 200\N{NO-BREAK SPACE}K, and then captured for good."
+        in told["Surface"]
+    )
     assert "20 batches" in told["Sample"]
+
+
+MOVING = RUN.replace('true_anomaly = "60 deg"', 'true_anomaly = "60 deg"\nmotion = "moving"').replace(
+    'rate = "2e24 s-1"\n', 'rate = "2e24 s-1"\nrate_scaling = "inverse-square"\n'
+)
+
+
+@pytest.fixture
+def moving(make_product):
+    """Return a product of a moving body, as it comes back from a file: attributes of one element are numbers."""
+    return make_product().assign_attrs(
+        run_file=MOVING, motion="moving", event_window=np.float64(21270.0), share_older_than_age_limit=0.034
+    )
+
+
+def plain(words: str) -> str:
+    return words.replace("\N{NO-BREAK SPACE}", " ")
+
+
+def test_what_the_numbers_of_a_moving_body_mean_is_told(moving):
+    told = dict(time_words(moving))
+    # 21270 s are 5.91 h.
+    assert told["Return, capture and escape fluxes"].startswith(
+        "What happens in the last 5.91 h before the stated"
+    )
+    assert "released while the body was on its way there" in told["Density, columns, images, light, ions"]
+    assert "followed on along the orbit to their end" in told["Particle budget, mean life, flights"]
+    assert told["Release rates"].startswith(
+        "impact vapour, with the inverse square of the distance from the Sun."
+    )
+    assert told["Left out by the age limit"].endswith("is missing: 3.4 %.")
+    release = dict(scene_words(moving))[
+        "Release \N{LEFT DOUBLE QUOTATION MARK}impact vapour\N{RIGHT DOUBLE QUOTATION MARK}"
+    ]
+    assert plain(release).startswith("2 × 10²⁴ s⁻¹ new atoms at the stated position; speeds:")
+    assert "this is its stated position" in dict(scene_words(moving))["Sunlight"]
+    assert "Up to 3.4 % of the survival time lies behind the age limit" in plain(" ".join(watch(moving)))
+
+
+def test_numbers_of_a_body_that_stands_still_are_those_of_a_steady_state(make_product):
+    ((name, words),) = time_words(make_product().assign_attrs(run_file=RUN, motion="stationary"))
+    assert name == "All numbers"
+    assert words.startswith("The steady state")
+
+
+def test_each_release_has_its_share_behind_the_age_limit(make_product):
+    product = make_product(releases=("one", "two")).assign_attrs(
+        motion="moving", event_window=3600.0, share_older_than_age_limit=np.array([0.001, 0.002])
+    )
+    assert dict(time_words(product))["Left out by the age limit"].endswith("0.1 % (one), 0.2 % (two).")
+    # A tenth of a per cent is no caution.
+    assert "survival time" not in " ".join(watch(product))
+
+
+@pytest.mark.parametrize("share", ["much", np.array([0.1, 0.2]), np.nan])
+def test_share_that_fits_no_release_is_not_told(moving, share):
+    product = moving.assign_attrs(share_older_than_age_limit=share)
+    assert "Left out by the age limit" not in dict(time_words(product))
+    assert "survival time" not in " ".join(watch(product))
+
+
+def test_figures_of_fluxes_say_when_their_events_happened(moving, make_product):
+    words = {one.name: one.alternative for one in product_figures(moving)}
+    for name in ("return-map", "capture-map", "escape-map", "escape-directions"):
+        assert words[f"figure-{name}"].endswith("Events of the last 5.91 h before the stated position.")
+    for name in ("release-map", "column", "density"):
+        assert "stated position" not in words[f"figure-{name}"]
+    assert "Of all atoms released at the stated position" in words["figure-ledger"]
+    still = " ".join(one.alternative for one in product_figures(make_product()))
+    assert "stated position" not in still
 
 
 @pytest.mark.parametrize(
@@ -179,6 +253,103 @@ def test_scene_without_the_sun_leaves_out_sunlight(make_product):
     assert "single scattering" in with_sun
     assert "single scattering" not in without
     assert "There is no Sun in this scene" in without
+
+
+def left_out_of(make_product, text, lines=("na_d2",)):
+    return " ".join(left_out(make_product(lines=lines).assign_attrs(run_file=text)))
+
+
+def test_what_is_left_out_fits_the_motion(make_product):
+    still, moving = (left_out_of(make_product, text) for text in (RUN, MOVING))
+    assert "stands still on its orbit" in still
+    assert "stands still on its orbit" not in moving
+    assert "the laws of release stay those of the run file" in moving
+
+
+@pytest.mark.parametrize(
+    ("body", "words", "others"),
+    [
+        ('name = "Moon"', "The gravity and shadow of Earth", "Should the body be a moon"),
+        ('name = "Europa"', "The gravity and shadow of Jupiter", "Should the body be a moon"),
+        ('name = "Mercury"', "A smooth sphere", "gravity and shadow"),
+        ('name = "Harrow"', "Should the body be a moon", "of Earth"),
+        ('name = "Harrow"\norbit = { eccentricity = 0.1 }', "A smooth sphere", "gravity and shadow"),
+    ],
+)
+def test_host_is_left_out_where_there_is_one(make_product, body, words, others):
+    told = left_out_of(make_product, RUN.replace('name = "Harrow"', body))
+    assert words in told
+    assert others not in told
+
+
+def test_what_is_left_out_fits_the_ground(make_product):
+    kept, bouncing, resting = (
+        left_out_of(make_product, RUN.replace('sticking = { law = "step", below = "200 K" }', ground))
+        for ground in ("sticking = 0.5", "sticking = 0.0", 'sticking = 0.5\nadsorbed = "desorbed"')
+    )
+    assert "captured for good" in kept
+    assert "one energy of desorption" not in kept
+    assert "captured for good" not in bouncing
+    assert "one energy of desorption" not in bouncing
+    assert "one energy of desorption" in resting
+    assert "captured for good" not in resting
+    assert "the ground has one temperature everywhere" in kept
+
+
+def test_gas_without_lines_leaves_out_its_brightness(make_product):
+    dark = left_out_of(make_product, RUN, lines=())
+    assert "nothing about its brightness" in dark
+    assert "single scattering" not in dark
+
+
+GROUND = """
+[body]
+name = "Harrow"
+[[release]]
+name = "vent"
+place = {{ law = "map", file = "vents.nc", variable = "flux" }}
+[surface]
+{}
+"""
+
+
+@pytest.mark.parametrize(
+    ("ground", "words"),
+    [
+        ("sticking = 0.0", "Every atom that returns bounces, with an energy accommodation of 1."),
+        ("sticking = 1.0", "Every atom that returns is adsorbed and then captured for good."),
+        (
+            "sticking = 0.5\naccommodation = 0.7",
+            "An atom that returns is adsorbed with probability 0.5 and then captured for good. Others bounce, with an "
+            "energy accommodation of 0.7.",
+        ),
+        (
+            'sticking = { law = "exponential", at = "250 K", value = 0.5, e_folding = "272.8 K" }',
+            "with probability 0.5 on ground of 250 K, less by a factor e for every 272.8 K above that, and then",
+        ),
+        (
+            'sticking = 1.0\nadsorbed = "desorbed"\n'
+            'desorption = { energy = "1.85 eV", attempt_frequency = "1e13 s-1" }',
+            "leaves again after its residence time, exp(E/kT)/frequency with E = 1.85 eV and a frequency of "
+            "1 × 10¹³ s⁻¹.",
+        ),
+        (
+            'cold_traps = { poleward_of = "85 deg" }',
+            "Cold traps: all ground poleward of 85 deg keeps what lands",
+        ),
+        ('temperature = { law = "hurley-2015" }', "a fit to observed temperatures of the Moon"),
+        (
+            'temperature = { law = "conduction", thermal_inertia = "50 J m-2 K-1 s-1/2", albedo = 0.1, '
+            "emissivity = 0.95 }",
+            "ground that conducts heat and radiates (thermal inertia 50",
+        ),
+    ],
+)
+def test_ground_is_told_in_words(make_product, ground, words):
+    told = dict(scene_words(make_product().assign_attrs(run_file=GROUND.format(ground))))
+    assert words in plain(told["Surface"])
+    (release,) = [text for name, text in told.items() if "vent" in name]
+    assert "places: the map flux of vents.nc." in release
 
 
 @pytest.mark.parametrize(
