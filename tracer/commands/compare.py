@@ -6,14 +6,16 @@ from pathlib import Path
 from typing import Annotated, Any
 
 import typer
+import xarray as xr
 
 from tracer.commands.arguments import JSON, OVERWRITE
 from tracer.commands.comparison_text import print_comparison
-from tracer.commands.input_guard import about, refuse_inputs
+from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import json_text, print_json
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
 from tracer.observe.fit.comparison import CAUTION, compared, needed_of
+from tracer.observe.fit.profile import Profile, read_profile
 from tracer.observe.fit.result import Comparison
 from tracer.observe.observationspec.observation import ObservationSpec, load_observation
 from tracer.plots.comparison import comparison
@@ -102,7 +104,7 @@ def figures_of(found: Comparison) -> dict[str, Any]:
         "chi_square": found.chi_square,
         "degrees_of_freedom": found.degrees_of_freedom,
         "probability": found.probability,
-        "log_likelihood": found.log_likelihood,
+        "minus_two_log_likelihood": found.minus_two_log_likelihood,
         "correlations": {
             "names": list(found.correlations.names),
             "matrix": found.correlations.matrix.tolist(),
@@ -145,15 +147,22 @@ def _check(path: str, overwrite: bool) -> None:
 
 
 def _compared(products: Sequence[str], spec: ObservationSpec) -> Comparison:
-    loaded = []
+    loaded, profile = [], read_profile(spec)
     for product in products:
         with open_product(product) as stored:
-            with about(product):
-                names = needed_of(stored, spec)
+            names = _needed(stored, product, spec, profile)
             ds = stored[names]
             load_all(ds, product)
             loaded.append((product, ds))
     return compared(loaded, spec)
+
+
+def _needed(stored: xr.Dataset, product: str, spec: ObservationSpec, profile: Profile) -> list[str]:
+    try:
+        return needed_of(stored, spec, profile)
+    except InputError as error:
+        text = str(error)
+        raise InputError(text if text.startswith(spec.file) else f"{product}: {text}") from None
 
 
 def _content(path: str, found: Comparison) -> bytes:

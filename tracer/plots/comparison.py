@@ -62,7 +62,7 @@ def comparison(found: Comparison, width: Width = "full") -> Figure:
             axes.grid(color="0.92", linewidth=0.4)
             axes.set_axisbelow(True)
         upper.tick_params(labelbottom=False)
-        lower.set_xlabel(f"Position ({_unit_words(points.position_unit)})")
+        lower.set_xlabel(f"{points.position_words} ({_unit_words(points.position_unit)})")
         draw_legend(figure, looks, width, box.bottom + legend - LEGEND_GAP)
     return figure
 

@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Sequence
+from difflib import get_close_matches
 from typing import NamedTuple
 
 import numpy as np
@@ -11,7 +12,7 @@ from scipy.special import gammaincc
 
 from tracer.errors import InputError
 from tracer.observe.fit.curves import Curve, Fixed, Lawful, Parameter
-from tracer.observe.fit.descent import lowest
+from tracer.observe.fit.descent import descend, lowest
 from tracer.observe.fit.gathering import Optics, gather, variables_for
 from tracer.observe.fit.images import image_of
 from tracer.observe.fit.likelihood import Component, Likelihood, Measured, Model, Slot, slots_of
@@ -32,7 +33,7 @@ from tracer.observe.fit.words import (
 )
 from tracer.observe.observationspec.fit import LAW_PARAMETERS, PARAMETERS, ReleaseFit, is_fitted, values
 from tracer.observe.observationspec.observation import ObservationSpec
-from tracer.units import Quantity, conversion_factor, parse, si
+from tracer.units import Quantity, conversion_factor, parse, quoted, si
 
 Floats = NDArray[np.float64]
 
@@ -40,6 +41,11 @@ CAUTION = (
     "Ranges count the profile's errors and the Monte Carlo error alone. An absolute rate hangs on g-values, "
     "photo-lifetimes and the calibration of the profile as well, which are often known to tens of per cent."
 )
+POSITION_WORDS = {
+    "downtail": "Distance from the body's centre away from the Sun, in the sky",
+    "altitude": "Tangent altitude",
+    "slit": "Position along the slit",
+}
 PASSES = 4
 """Fits after which the model's error, which follows the rates, is taken as it is."""
 SETTLED = 1e-3
@@ -90,12 +96,16 @@ def compare(products: xr.Dataset | Sequence[xr.Dataset], observation: Observatio
 def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) -> Comparison:
     """Return what `compare` does, of products with names."""
     profile = read_profile(spec)
+    for name, ds in products:
+        if "body_radius" not in ds.attrs or "release_name" not in ds:
+            raise InputError(f"{name}: is no product of tracer run")
     warnings = check_alike(products)
     sources: list[Source] = []
     how: list[str] = []
     for name, ds in products:
+        optics = _optics(spec, profile, ds)
         try:
-            found = gather(ds, name, spec.profile.line, optics_of(spec, profile, ds), wants_responses(spec))
+            found = gather(ds, name, spec.profile.line, optics, wants_responses(spec))
         except InputError as error:
             raise InputError(f"{name}: {error}") from None
         sources += found.sources
@@ -129,7 +139,7 @@ def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) 
     for _ in range(PASSES):
         likelihood.take_model_error(best)
         before = value
-        best, value = lowest(likelihood, (best,))
+        best, value = descend(likelihood, best, np.zeros(len(slots), dtype=bool))
         if abs(value - before) < SETTLED:
             break
     for _ in range(MOST_RESTARTS):
@@ -151,7 +161,7 @@ def _estimate(scan: Scan, number: int) -> Estimate:
     return Estimate(*(math.exp(end) for end in found))
 
 
-def needed_of(ds: xr.Dataset, spec: ObservationSpec) -> list[str]:
+def needed_of(ds: xr.Dataset, spec: ObservationSpec, profile: Profile) -> list[str]:
     """Return the names of the variables of a product that `compare` reads, so that nothing else need come into memory.
 
     Raises
@@ -159,12 +169,9 @@ def needed_of(ds: xr.Dataset, spec: ObservationSpec) -> list[str]:
     InputError
         No image of the view holds the profile.
     """
-    image = None
-    if "body_radius" in ds.attrs:
-        optics = optics_of(spec, read_profile(spec), ds)
-        found = image_of(ds, optics.view, optics.image, optics.track)
-        image = None if found is None else found.name
-    return variables_for(ds, spec.profile.line, image, wants_responses(spec))
+    optics = _optics(spec, profile, ds)
+    found = image_of(ds, optics.view, optics.image, optics.track)
+    return variables_for(ds, spec.profile.line, None if found is None else found.name, wants_responses(spec))
 
 
 def wants_responses(spec: ObservationSpec) -> bool:
@@ -172,20 +179,20 @@ def wants_responses(spec: ObservationSpec) -> bool:
     return any(_law_words(entry) for entry in spec.fit.release)
 
 
-def optics_of(spec: ObservationSpec, profile: Profile, ds: xr.Dataset) -> Optics:
-    """Return how a profile is seen on the body of a product; the observation file's errors name it."""
-    if "body_radius" not in ds.attrs:
-        raise InputError("has no attribute body_radius; it must be a product of tracer run")
+def _optics(spec: ObservationSpec, profile: Profile, ds: xr.Dataset) -> Optics:
+    """Return how a profile is seen on the body of a product.
+
+    Raises
+    ------
+    InputError
+        With the observation file's name and key.
+    """
     distance = None if spec.view.distance is None else si(spec.view.distance)
-    scale = Scale(float(ds.attrs["body_radius"]), distance)
+    scale = Scale(float(ds.attrs["body_radius"]), distance, spec.file)
     view = view_of(spec.view)
-    try:
-        positions = profile.position * metres_in(profile.position_unit, scale)
-        track = track_of(spec, view, scale, positions)
-        aperture, spread = aperture_of(spec.slit, scale, track.angle), spread_of(spec, scale)
-    except InputError as error:
-        text = str(error)
-        raise InputError(text if text.startswith(spec.file) else f"{spec.file}: {text}") from None
+    positions = profile.position * metres_in(profile.position_unit, scale)
+    track = track_of(spec, view, scale, positions)
+    aperture, spread = aperture_of(spec.slit, scale, track.angle), spread_of(spec, scale)
     return Optics(view, track, aperture, spread, spec.view.image)
 
 
@@ -224,10 +231,9 @@ def components_of(spec: ObservationSpec, sources: Sequence[Source]) -> list[Comp
     ):
         for name in names:
             if name not in known:
-                allowed = ", ".join(f'"{one}"' for one in known)
-                raise InputError(
-                    f'{spec.file}: {place}: "{name}" is no release of the products; allowed: {allowed}'
-                )
+                close = get_close_matches(name, known, n=1)
+                hint = f'did you mean "{close[0]}"?' if close else "allowed: " + ", ".join(map(quoted, known))
+                raise InputError(f"{spec.file}: {place}: {quoted(name)} is no release of the products; {hint}")
     entries = {one.name: (number, one) for number, one in enumerate(spec.fit.release, 1)}
     for name, (number, _) in entries.items():
         if name not in wanted:
@@ -328,7 +334,7 @@ def _result(
             ends_given = math.exp(slot.low), math.exp(slot.high)
             found = at_range(f"'{slot.name}'", estimate, *ends_given, PARAMETER_UNITS[slot.key])
             words += [found] if found else []
-    points = _points(profile, likelihood, model)
+    points = _points(spec, profile, likelihood, model)
     loud = loud_model(np.sqrt(np.diag(likelihood.model_covariance)), profile.sigma)
     background = next((e for s, e in zip(slots, fitted.ranges, strict=True) if s.component is None), None)
     free = {n: names[s.component] for n, s in enumerate(slots) if s.key is None and s.component is not None}
@@ -345,7 +351,7 @@ def _result(
         chi_square=chi_square,
         degrees_of_freedom=degrees,
         probability=probability,
-        log_likelihood=fitted.scan.value,
+        minus_two_log_likelihood=fitted.scan.value,
         correlations=correlations,
         points=points,
         statements=(
@@ -357,7 +363,7 @@ def _result(
     )
 
 
-def _points(profile: Profile, likelihood: Likelihood, model: Model) -> Points:
+def _points(spec: ObservationSpec, profile: Profile, likelihood: Likelihood, model: Model) -> Points:
     factor = 1.0 / profile.value_factor
     return Points(
         position=profile.position,
@@ -371,4 +377,5 @@ def _points(profile: Profile, likelihood: Likelihood, model: Model) -> Points:
         background=model.background * factor,
         unit=profile.value_unit,
         position_unit=profile.position_unit,
+        position_words=POSITION_WORDS[spec.profile.along],
     )

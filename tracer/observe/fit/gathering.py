@@ -104,7 +104,7 @@ def gather(ds: xr.Dataset, product: str, line: str | None, optics: Optics, respo
             tuple(warnings),
         )
     weights = smearing(image.edges, optics.track, optics.aperture, optics.spread)
-    warnings = check_smearing(image, weights, optics.aperture, optics.spread)
+    warnings = check_smearing(image, optics.track, weights, optics.aperture, optics.spread)
     name = f"{'column' if line is None else 'brightness'}_{image.name}"
     mean = _through(weights, _of_line(ds[name], line, known).transpose(RELEASE, ...).values)
     replicates = _through(

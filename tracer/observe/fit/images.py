@@ -68,7 +68,7 @@ def image_of(ds: xr.Dataset, view: View, wanted: str | None, track: Track) -> Sk
 
 
 def check_smearing(
-    image: SkyImage, weights: csr_array, aperture: Aperture | None, spread: Spread | None
+    image: SkyImage, track: Track, weights: csr_array, aperture: Aperture | None, spread: Spread | None
 ) -> list[str]:
     """Return what is to be said of an image's extent and pixels for a slit and seeing.
 
@@ -85,6 +85,10 @@ def check_smearing(
         raise InputError(f"{text}; run with a larger image")
     if most > MISSING_NAMED:
         words.append(f"{text} and counts as dark")
+    if np.ptp(track.h) < image.pixel and np.ptp(track.v) < image.pixel:
+        words.append(
+            f"image {image.name}: all points of the profile lie within one pixel; is the positions' unit right?"
+        )
     blur = max(spread.fwhm if spread else 0.0, min(aperture.length, aperture.width) if aperture else 0.0)
     if blur > 0.0 and image.pixel > COARSE_NAMED * blur:
         text = (

@@ -16,6 +16,8 @@ Floats = NDArray[np.float64]
 Truths = NDArray[np.bool_]
 
 TINY = 1e-150
+RATE = ": rate"
+"""Ending of the names of rates among the free parameters."""
 
 
 class Component(NamedTuple):
@@ -59,7 +61,9 @@ def slots_of(data: Measured, components: Sequence[Component], background: bool) 
         if one.held_rate is None:
             middle = one.curve.at(np.array([0.5 * math.log(p.low * p.high) for p in one.curve.parameters]))[0]
             largest = float(np.max(np.abs(middle)))
-            slots.append(Slot(one.name, i, None, 0.0, math.inf, size / largest if largest > 0.0 else 1.0))
+            slots.append(
+                Slot(one.name + RATE, i, None, 0.0, math.inf, size / largest if largest > 0.0 else 1.0)
+            )
     if background:
         slots.append(Slot("background", None, None, -math.inf, math.inf, size))
     for i, one in enumerate(components):

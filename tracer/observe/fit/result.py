@@ -22,9 +22,9 @@ class Estimate(NamedTuple):
 class Points(NamedTuple):
     """The profile and what the best fit makes of it, N points, values in `unit`.
 
-    `position` in `position_unit`; `sigma` of the measurement, `model_error` of the Monte Carlo; `upper` marks upper
-    limits; `residual` is (value - model) over both errors together; `parts` the releases by name, `background` what was
-    added to them.
+    `position` in `position_unit`, which counts what `position_words` say; `sigma` of the measurement, `model_error` of
+    the Monte Carlo; `upper` marks upper limits; `residual` is (value - model) over both errors together; `parts` the
+    releases by name, `background` what was added to them.
     """
 
     position: Floats
@@ -38,6 +38,7 @@ class Points(NamedTuple):
     background: Floats
     unit: str
     position_unit: str
+    position_words: str
 
 
 class Correlations(NamedTuple):
@@ -51,9 +52,9 @@ class Comparison(NamedTuple):
     """Result of a comparison.
 
     `rates` [s-1] by release; `parameters` by release and name, temperatures [K], energies [J]; `background` in the unit
-    of the points, None where it was not fitted. `chi_square` counts measured points alone; `log_likelihood` (-2 ln L
-    without constants) upper limits as well. `probability` of a chi-square as large or larger. `statements` say what the
-    fit tells and cannot tell, `warnings` what is doubtful.
+    of the points, None where it was not fitted. `chi_square` counts measured points alone; `minus_two_log_likelihood`
+    (without constants) upper limits as well. `probability` of a chi-square as large or larger. `statements` say what
+    the fit tells and cannot tell, `warnings` what is doubtful.
     """
 
     title: str
@@ -67,7 +68,7 @@ class Comparison(NamedTuple):
     chi_square: float
     degrees_of_freedom: int
     probability: float
-    log_likelihood: float
+    minus_two_log_likelihood: float
     correlations: Correlations
     points: Points
     statements: tuple[str, ...]

@@ -32,10 +32,14 @@ class View(NamedTuple):
 
 
 class Scale(NamedTuple):
-    """What turns lengths in the sky into metres: `radius` of the body, and `distance` of the observer, if known [m]."""
+    """What turns lengths in the sky into metres: `radius` of the body, and `distance` of the observer, if known [m].
+
+    `file` names the observation file in messages.
+    """
 
     radius: float
     distance: float | None
+    file: str
 
 
 class Aperture(NamedTuple):
@@ -99,9 +103,9 @@ def metres_in(unit: str, scale: Scale) -> float:
         return length
     angle = conversion_factor(unit, "rad")
     if angle is None:
-        raise InputError(f'"{unit}" is no unit of length or angle')
+        raise InputError(f'{scale.file}: "{unit}" is no unit of length or angle')
     if scale.distance is None:
-        raise InputError(f'view.distance: missing; the angle in "{unit}" needs it to become a length')
+        raise InputError(f'{scale.file}: view.distance: missing; the angle in "{unit}" needs it to become a length')
     return angle * scale.distance
 
 

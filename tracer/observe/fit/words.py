@@ -7,6 +7,7 @@ from collections.abc import Iterator, Mapping, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.observe.fit.likelihood import RATE
 from tracer.observe.fit.ranges import RISE_95, Scan
 from tracer.observe.fit.result import Correlations, Estimate
 
@@ -25,19 +26,20 @@ NEAR_SLIP = 6.0
 
 SLIPS: Mapping[str, tuple[tuple[float, str], ...]] = {
     "column": (
-        (1e4, "m-2 taken for cm-2"),
-        (1e-4, "cm-2 taken for m-2"),
-        (1e6, "a column in km-2 or a density in m-3 taken for cm-2 or cm-3"),
-        (1e-6, "m-2 taken for km-2"),
-        (1e8, "cm-2 converted to m-2 twice"),
+        (1e4, "cm-2 and m-2 mixed up"),
+        (1e-4, "cm-2 and m-2 mixed up"),
+        (1e6, "m-2 and km-2, or a density per cm3 and per m3, mixed up"),
+        (1e-6, "m-2 and km-2, or a density per cm3 and per m3, mixed up"),
+        (1e8, "cm-2 turned into m-2 twice, or the wrong way,"),
+        (1e-8, "cm-2 turned into m-2 twice, or the wrong way,"),
     ),
     "brightness": (
-        (1e3, "rayleigh taken for kilorayleigh"),
-        (1e-3, "kilorayleigh taken for rayleigh"),
-        (1e6, "rayleigh taken for megarayleigh"),
-        (1e-6, "megarayleigh taken for rayleigh"),
-        (1e10, "photons m-2 s-1 taken for rayleigh"),
-        (1e-10, "rayleigh taken for photons m-2 s-1"),
+        (1e3, "rayleigh and kilorayleigh mixed up"),
+        (1e-3, "rayleigh and kilorayleigh mixed up"),
+        (1e6, "rayleigh and megarayleigh, or photons per cm2 and rayleigh, mixed up"),
+        (1e-6, "rayleigh and megarayleigh, or photons per cm2 and rayleigh, mixed up"),
+        (1e10, "photons per m2 and rayleigh mixed up"),
+        (1e-10, "photons per m2 and rayleigh mixed up"),
     ),
 }
 """Slips of units by what they do to the values."""
@@ -54,7 +56,7 @@ def unit_slip(quantity: str, measured: Floats, sigma: Floats, model: Floats) -> 
         return None
     close = [(abs(math.log(ratio / size)), words) for size, words in SLIPS[quantity]]
     near, words = min(close)
-    guess = f"; that is what {words} does" if near < math.log(NEAR_SLIP) else ""
+    guess = f"; {words} would do that" if near < math.log(NEAR_SLIP) else ""
     return (
         f"is the unit of the values right? They are {ratio:.3g} times what the products give at their own "
         f"rates{guess}. If it is right, the rates of the run files were far off"
@@ -92,26 +94,28 @@ def told_apart(
 
     `absences` is the rise of -2 ln L without one or two of them, by their slots, which `rates` names.
     """
+    named: set[int] = set()
     spare = [number for number in rates if absences[(number,)] < RISE_95]
     for one, other in itertools.combinations(rates, 2):
         size = correlations.matrix[one, other]
         if one in spare and other in spare and absences[(one, other)] >= RISE_95:
+            named |= {one, other}
             yield (
                 f"'{rates[one]}' and '{rates[other]}' cannot be told apart by this profile: either may be absent "
                 "(95 %) while the other explains it, but not both. Their sum is known, their shares are not"
             )
         elif abs(size) > ALIKE:
             yield f"the rates of '{rates[one]}' and '{rates[other]}' hang together: correlation {size:.2f}"
-    for number in spare:
+    for number in [one for one in spare if one not in named]:
         yield f"'{rates[number]}' is not needed: the profile is explained without it (95 %)"
 
 
 def entangled_parameters(correlations: Correlations) -> Iterator[str]:
-    """Yield statements about parameters other than two rates whose correlation is large."""
+    """Yield statements about two parameters, not both of them rates, whose correlation is large."""
     names = correlations.names
     for i, j in itertools.combinations(range(len(names)), 2):
         size = correlations.matrix[i, j]
-        if ":" in names[j] and abs(size) > ALIKE:
+        if abs(size) > ALIKE and not (names[i].endswith(RATE) and names[j].endswith(RATE)):
             yield f"'{names[i]}' and '{names[j]}' hang together: correlation {size:.2f}"
 
 
