@@ -256,6 +256,7 @@ def test_defaults_are_written_out() -> None:
         "seed",
         "replicates",
         "emphasis",
+        "speed_bins",
     }
 
 

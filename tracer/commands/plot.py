@@ -14,7 +14,7 @@ from tracer.plots.figures import FIGURES, Choice, What
 from tracer.plots.plan_table import read_plan
 from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
 from tracer.plots.timeline import timeline
-from tracer.product.layout import REPLICATES
+from tracer.product.layout import LAUNCH_SPEED, REPLICATES
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
 from tracer.product.writing import save_bytes
@@ -119,7 +119,9 @@ def _of_image(what: What) -> bool:
 
 def _of_product(product: str, what: What, choice: Choice, ending: str, dpi: int) -> bytes:
     with open_product(product) as stored:
-        ds = stored.drop_vars([name for name in map(str, stored.data_vars) if _is_spared(name, what)])
+        spared = [name for name in map(str, stored.data_vars) if _is_spared(name, what)]
+        # No figure shows responses, the largest part of a product that has them.
+        ds = stored.drop_vars(spared).drop_dims(LAUNCH_SPEED, errors="ignore")
         load_all(ds, product)
         try:
             return figure_bytes(FIGURES[what].draw(ds, choice), ending, dpi)

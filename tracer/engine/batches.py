@@ -9,9 +9,12 @@ from numpy.typing import NDArray
 
 from tracer.engine.kernel_world import kernel_world, world_of_release
 from tracer.engine.launching import draw_launches, make_launches
+from tracer.engine.responses import ResponseWork, response_work, trace_responses
 from tracer.engine.scene import Scene
 from tracer.errors import Interrupted
+from tracer.kernels.launches import Launches
 from tracer.kernels.resume import AGE, ENDED, STEPS, UNDER_WAY, Resume, new_resume
+from tracer.kernels.scoring import Tally
 from tracer.kernels.tracing import trace_slice
 from tracer.kernels.world import World
 from tracer.physics.release.even_numbers import EvenNumbers
@@ -52,7 +55,7 @@ class Work(NamedTuple):
     """All that a worker needs to trace any batch of a run.
 
     `strata` holds each release's; without them a batch is one stratum. `stratified` False draws independent launches
-    instead, which only measures what the strata gain.
+    instead, which only measures what the strata gain. `responses` is None where none are kept by bins of speed.
     """
 
     scene: Scene
@@ -62,12 +65,21 @@ class Work(NamedTuple):
     particles: int
     strata: tuple[Strata, ...] = ()
     stratified: bool = True
+    responses: ResponseWork | None = None
+
+    @property
+    def launches(self) -> int:
+        """New atoms in a batch of one release, those by bins of speed as well."""
+        return self.particles + (0 if self.responses is None else self.responses.launches)
 
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
-    layout = make_layout(scene.grid, scene.planes, len(scene.lines), scene.desorption is not None)
-    return Work(scene, kernel_world(scene), layout, seed, particles)
+    layout = make_layout(
+        scene.grid, scene.planes, len(scene.lines), scene.desorption is not None, scene.speed_bins
+    )
+    responses = response_work(scene, particles)
+    return Work(scene, kernel_world(scene), layout, seed, particles, responses=responses)
 
 
 def trace_batch(
@@ -98,25 +110,46 @@ def trace_batch(
     world = world_of_release(work.world, release)
     supply = EvenNumbers(rng, work.stratified)
     strata = work.strata[task.release] if work.strata else one_stratum(work.particles)
-    flights, steps, seconds, budget = 0, 0, 0.0, FIRST_SLICE_FLIGHTS
+    slices = _Slices(work.scene, tell, stopped)
     for first in range(0, work.particles, BLOCK):
-        count = min(BLOCK, work.particles - first)
-        u, shares = draw(strata, supply, first, count)
-        launches = make_launches(work.scene, release, u, release.rate * shares)
-        resume = new_resume(len(work.scene.lines))
+        u, shares = draw(strata, supply, first, min(BLOCK, work.particles - first))
+        slices.fly(world, make_launches(work.scene, release, u, release.rate * shares), tally, rng)
+    if work.responses is not None:
+        seed = (work.seed, task.release, task.batch)
+        trace_responses(work.scene, work.responses, work.layout, buffer, seed, slices.fly)
+    return BatchResult(buffer, slices.flights, slices.steps, slices.seconds)
+
+
+class _Slices:
+    """Flies launches slice by slice and adds up what that costs."""
+
+    def __init__(self, scene: Scene, tell: Callable[[float, int], None], stopped: Callable[[], bool]) -> None:
+        self.flights = 0
+        self.steps = 0
+        self.seconds = 0.0
+        self._budget = FIRST_SLICE_FLIGHTS
+        self._scene = scene
+        self._tell = tell
+        self._stopped = stopped
+
+    def fly(self, world: World, launches: Launches, tally: Tally, rng: np.random.Generator) -> None:
+        """Trace `launches` to their ends into `tally`."""
+        resume = new_resume(len(self._scene.lines))
         followed = 0.0
-        while resume.counters[ENDED] < count:
+        while resume.counters[ENDED] < len(launches.weights):
             begin = thread_time()
-            made = trace_slice(world, launches, resume, tally, rng, budget)
+            made = trace_slice(world, launches, resume, tally, rng, self._budget)
             spent = thread_time() - begin
-            flights, seconds = flights + made, seconds + spent
-            budget = next_budget(budget, spent)
-            before, followed = followed, _followed(resume, work.scene)
-            tell(followed - before, made)
-            if stopped():
+            self.flights += made
+            self.seconds += spent
+            # A slice that ended because all atoms had says nothing of how many flights it could have made.
+            if made == self._budget or spent > SLICE_SECONDS:
+                self._budget = next_budget(made, spent)
+            before, followed = followed, _followed(resume, self._scene)
+            self._tell(followed - before, made)
+            if self._stopped():
                 raise Interrupted("interrupted")
-        steps += int(resume.counters[STEPS])
-    return BatchResult(buffer, flights, steps, seconds)
+        self.steps += int(resume.counters[STEPS])
 
 
 def _followed(resume: Resume, scene: Scene) -> float:

@@ -120,7 +120,7 @@ def fly_pilot(scene: Scene, release: Release, boxes: Boxes) -> Sample:
     u = places.copy()
     u[:, SPEED] = np.minimum(1.0 - u[:, SPEED], np.nextafter(1.0, 0.0))
     launches = make_launches(scene, release, u, np.ones(len(box)))
-    work = make_work(scene._replace(grid=_shells(scene), planes=()), PILOT_SEED, 1)
+    work = make_work(scene._replace(grid=_shells(scene), planes=(), speed_bins=0), PILOT_SEED, 1)
     scores = np.empty((len(box), SHELLS + 1))
     costs = np.empty(len(box))
     for i in range(len(box)):

@@ -61,9 +61,10 @@ def refuse_what_does_not_fit(plan: Plan, workers: int, available: int | None = N
     needed = sizes(plan, workers).memory
     there = available_memory() if available is None else available
     if there is not None and needed > there:
+        bins = "speed bins, " if plan.scene.speed_bins else ""
         raise InputError(
             f"{plan.spec.file}: the run needs about {needed / GIGABYTE:.3g} GB of memory, {there / GIGABYTE:.3g} GB is "
-            "available; ask for fewer cells, pixels, replicates or workers"
+            f"available; ask for fewer cells, pixels, {bins}replicates or workers"
         )
 
 

@@ -21,15 +21,16 @@ from tracer.errors import TracerError
 from tracer.fate import Fate
 from tracer.kernels.scoring import Tally
 from tracer.kernels.temperature import temperatures
+from tracer.physics.thermal import escape_speed
 from tracer.product.assembling import assemble
 from tracer.product.batch_ranges import ranges_text
 from tracer.product.checksum import data_checksum
 from tracer.product.provenance import global_attributes
 from tracer.tally.axes import direction, middles
 from tracer.tally.budget import CLOSURE, budget_gap
-from tracer.tally.buffer import tally_views
+from tracer.tally.buffer import response_views, tally_views
 from tracer.tally.field import FieldStatistics
-from tracer.tally.normalizing import ProductField, product_fields
+from tracer.tally.normalizing import ProductField, product_fields, response_fields
 from tracer.tally.statistics import replicate_counts
 
 Numbers = NDArray[np.float64]
@@ -61,6 +62,7 @@ def make_product(plan: Plan, folder: Folder, costs: Costs) -> xr.Dataset:
         _plain_fields(scene),
         _attributes(plan, folder, costs),
         [line.name for line in scene.lines],
+        None if plan.work.responses is None else plan.work.responses.edges,
     )
     product.attrs["data_checksum"] = data_checksum(product)
     return product
@@ -76,7 +78,10 @@ def _fields(scene: Scene, folder: Folder) -> dict[str, FieldStatistics]:
 
         def fields_of(buffer: Numbers, number: int = number) -> Iterator[ProductField]:
             views = tally_views(folder.layout, buffer)
-            return product_fields(views, scene.grid, scene.planes, scene.releases[number].rate)
+            yield from product_fields(views, scene.grid, scene.planes, scene.releases[number].rate)
+            responses = response_views(folder.layout, buffer)
+            if responses is not None:
+                yield from response_fields(responses, scene.grid, scene.planes)
 
         for field in fields_of(one.mean):
             _put(means, field, number, folder)
@@ -163,6 +168,7 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
         "body_radius": plan.scene.body.radius,
         **_sun_attributes(plan.spec, plan.scene, folder),
         **_stop_attributes(plan, folder),
+        **_response_attributes(plan.scene),
         "complete": 1,
     }
 
@@ -180,6 +186,13 @@ def _stop_attributes(plan: Plan, folder: Folder) -> dict[str, Any]:
     if plan.rule is None:
         return {}
     return {"stop_reached": int(folder.reached), "stop_relative_error": folder.relative_error()}
+
+
+def _response_attributes(scene: Scene) -> dict[str, Any]:
+    """Return what else a law of speed needs to be put together from responses; nothing where none are kept."""
+    if not scene.speed_bins:
+        return {}
+    return {"atom_mass": scene.mass, "escape_speed": escape_speed(scene.body.gm, scene.body.radius)}
 
 
 def _sun_attributes(spec: RunSpec, scene: Scene, folder: Folder) -> dict[str, Any]:

@@ -219,7 +219,7 @@ def _photon_desorption_rate(scene: Scene) -> float | None:
 
 def _preview_release(scene: Scene, release: Release) -> ReleasePreview:
     launches = draw_launches(scene, release, TRIAL_LAUNCHES, np.random.default_rng(TRIAL_SEED), 1.0)
-    motion = make_work(scene, 0, 1).world.motion
+    motion = make_work(scene._replace(speed_bins=0), 0, 1).world.motion
     endings, durations, arcs, _ = single_hops(
         motion, launches.positions, launches.velocities + ground_velocities(scene, launches.positions)
     )

@@ -80,7 +80,8 @@ class Scene(NamedTuple):
     `sun` is None where there is no Sun: no light, no tide, no turning frame. `body` holds the constants of the body,
     `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it, `desorption` where adsorbed atoms are
     kept for good, `cold_traps` where there are none; `outer_radius` [m] from the centre, `age_limit` [s]; `emphasis`
-    says which launches are sampled densely, "even" or "far".
+    says which launches are sampled densely, "even" or "far", `speed_bins` how many bins of launch speed have their
+    responses kept, 0 for none.
     """
 
     body: BodyConstants
@@ -98,6 +99,7 @@ class Scene(NamedTuple):
     grid: Grid
     planes: tuple[ImagePlane, ...]
     emphasis: str
+    speed_bins: int
 
     @property
     def lines(self) -> tuple[VelocityTable, ...]:
@@ -172,6 +174,7 @@ def build_scene(spec: RunSpec) -> Scene:
         grid=_grid(spec, spec.grid, body.radius),
         planes=tuple(_plane(spec, i, image, body.radius) for i, image in enumerate(spec.image, 1)),
         emphasis=spec.ensemble.emphasis,
+        speed_bins=spec.ensemble.speed_bins,
     )
 
 
@@ -196,7 +199,8 @@ def _refuse_rest_on_uneven_ground(spec: RunSpec) -> None:
 
 def _refuse_colliding_images(spec: RunSpec) -> None:
     """Refuse images whose names in the product would be those of other variables, before anything is traced."""
-    names = variable_names([product_name(image.name) for image in spec.image])
+    images = [product_name(image.name) for image in spec.image]
+    names = variable_names(images, speeds=spec.ensemble.speed_bins > 0)
     twice = sorted({name for name in names if names.count(name) > 1})
     if twice:
         raise refuse(

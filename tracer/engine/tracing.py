@@ -96,7 +96,7 @@ def _fold_all(
     executor: MapBatches,
     checkpoints: Checkpoints,
 ) -> None:
-    counter = Counter(folder.folded * plan.work.particles, folder.flights)
+    counter = Counter(folder.folded * plan.work.launches, folder.flights)
     with deferred_interrupts() as interrupted:
 
         def tick() -> None:
@@ -135,7 +135,7 @@ def _status(plan: Plan, folder: Folder, workers: int, counter: Counter) -> Statu
     return Status(
         # Parts of atoms add up to rounding.
         atoms=round(counter.atoms, 6),
-        atoms_expected=folder.tasks * plan.work.particles,
+        atoms_expected=folder.tasks * plan.work.launches,
         flights=counter.flights,
         batches=folder.batches,
         batches_expected=plan.batches.batches,

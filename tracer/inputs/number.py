@@ -64,6 +64,19 @@ class Whole:
         return f"whole number {self.interval.words()}".rstrip()
 
 
+@dataclass(frozen=True)
+class NoneOrWhole(Whole):
+    """Validator of a whole number that is 0 or inside the interval."""
+
+    def read(self, given: object) -> int:
+        """Return the number; ValueError says what is allowed."""
+        return 0 if given == 0 and isinstance(given, int) and given is not False else super().read(given)
+
+    def kind(self) -> str:
+        """What the field takes, for example `whole number from 8 to 256, or 0`."""
+        return f"{super().kind()}, or 0"
+
+
 Fraction = Annotated[float, Real(Interval(at_least=0.0, at_most=1.0))]
 Albedo = Annotated[float, Real(Interval(at_least=0.0, below=1.0))]
 Emissivity = Annotated[float, Real(Interval(above=0.0, at_most=1.0))]
@@ -75,4 +88,5 @@ RelativeError = Annotated[float, Real(Interval(above=0.0, below=1.0))]
 Cells = Annotated[int, Whole(Interval(at_least=1, at_most=MOST_CELLS))]
 Count = Annotated[int, Whole(Interval(at_least=1))]
 CountOrNone = Annotated[int, Whole(Interval(at_least=0))]
+SpeedBins = Annotated[int, NoneOrWhole(Interval(at_least=8, at_most=256))]
 SeveralOf = Annotated[int, Whole(Interval(at_least=2))]

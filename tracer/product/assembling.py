@@ -15,8 +15,10 @@ from tracer.product.layout import (
     FATE,
     LABELS,
     LATITUDE,
+    LAUNCH_SPEED,
     LINE,
     LOCAL_TIME,
+    ORDER,
     RELEASE,
     REPLICATE,
     REPLICATES,
@@ -27,6 +29,7 @@ from tracer.product.layout import (
     variable_names,
 )
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_volume, middles
+from tracer.tally.buffer import ORDERS
 from tracer.tally.field import FieldStatistics
 
 Entry = tuple[tuple[str, ...], NDArray[Any], dict[str, Any]]
@@ -40,6 +43,7 @@ def assemble(
     plain: Mapping[str, NDArray[np.float64]],
     attributes: Mapping[str, Any],
     line_names: Sequence[str] = (),
+    launch_speed_edges: NDArray[np.float64] | None = None,
 ) -> xr.Dataset:
     """Return a product as `open_product` gives it, before it has a file.
 
@@ -59,6 +63,8 @@ def assemble(
         Global attributes; those that are None are left out.
     line_names : sequence of str
         Names along the `line` dimension; without lines there are no line variables.
+    launch_speed_edges : ndarray, optional
+        Edges of the bins of launch speed [m s-1]; without them there are no responses.
 
     Raises
     ------
@@ -66,12 +72,13 @@ def assemble(
         Where a variable is missing, unknown or of another shape.
     """
     images = {plane.name: plane for plane in planes}
-    table = layout(images, bool(line_names))
+    speeds = launch_speed_edges is not None
+    table = layout(images, bool(line_names), speeds)
     values = {**plain, "cell_volume": cell_volume(grid), "cell_area": cell_area(grid)}
-    _check_names(table, fields, values)
+    _check_names(table, fields, values, speeds)
     names = {RELEASE: release_names, FATE: FATE_LABELS, **({LINE: line_names} if line_names else {})}
-    coordinates, bounds = _axes(grid, planes, names)
-    sizes = {axis: len(entry[1]) for axis, entry in coordinates.items()}
+    coordinates, bounds = _axes(grid, planes, names, launch_speed_edges)
+    sizes = {axis: len(entry[1]) for axis, entry in coordinates.items()} | {ORDER: ORDERS}
     sizes |= {dimension: len(labels) for dimension, labels in names.items()}
     variables: dict[str, Entry] = {}
     for name, row in table.items():
@@ -97,7 +104,10 @@ def without_label_indexes(ds: xr.Dataset) -> xr.Dataset:
 
 
 def _axes(
-    grid: Grid, planes: Sequence[ImagePlane], names: Mapping[str, Sequence[str]]
+    grid: Grid,
+    planes: Sequence[ImagePlane],
+    names: Mapping[str, Sequence[str]],
+    launch_speed_edges: NDArray[np.float64] | None,
 ) -> tuple[dict[str, Entry], dict[str, Entry]]:
     edges: dict[str, tuple[NDArray[np.float64], dict[str, Any]]] = {
         ALTITUDE: (
@@ -117,6 +127,8 @@ def _axes(
             plane.horizontal_edges,
             _named(f"rightwards from the body's centre, {plane.title}", "m"),
         )
+    if launch_speed_edges is not None:
+        edges[LAUNCH_SPEED] = launch_speed_edges, _named("speed of launch relative to the ground", "m s-1")
     coordinates: dict[str, Entry] = {}
     bounds: dict[str, Entry] = {}
     for axis, (ends, attributes) in edges.items():
@@ -184,9 +196,12 @@ def _directions(plane: ImagePlane) -> dict[str, Any]:
 
 
 def _check_names(
-    table: Mapping[str, Variable], fields: Mapping[str, FieldStatistics], values: Mapping[str, Any]
+    table: Mapping[str, Variable],
+    fields: Mapping[str, FieldStatistics],
+    values: Mapping[str, Any],
+    speeds: bool,
 ) -> None:
-    names = variable_names({row.image: row for row in table.values() if row.image})
+    names = variable_names({row.image: row for row in table.values() if row.image}, speeds=speeds)
     twice = sorted({name for name in names if names.count(name) > 1})
     if twice:
         raise ValueError(f"images of the product: their names collide in {twice}")

@@ -11,6 +11,7 @@ from tracer.product.layout import (
     EDGE,
     LABELS,
     LATITUDE,
+    LAUNCH_SPEED,
     LOCAL_TIME,
     REPLICATE,
     REPLICATES,
@@ -76,10 +77,11 @@ def _why_misshapen(file: Any) -> str | None:
     ending = VERTICAL.removeprefix("<image>")
     images = [name.removesuffix(ending) for name in file.dimensions if name.endswith(ending)]
     expected: dict[str, tuple[str, ...]] = {label.variable: (label.dimension,) for label in LABELS}
-    axes = [ALTITUDE, LATITUDE, LOCAL_TIME, *(axis for name in images for axis in image_dimensions(name))]
+    axes = [ALTITUDE, LATITUDE, LOCAL_TIME, LAUNCH_SPEED]
+    axes += [axis for name in images for axis in image_dimensions(name)]
     for axis in axes:
         expected |= {axis: (axis,), axis + BOUNDS: (axis, EDGE)}
-    for name, row in layout(images, lines=True).items():
+    for name, row in layout(images, lines=True, speeds=True).items():
         expected |= {name: row.dimensions, name + STANDARD_ERROR: row.dimensions}
         expected[name + REPLICATES] = (REPLICATE, *row.dimensions)
     for name, dimensions in expected.items():

@@ -3,7 +3,7 @@
 A new variable is one new row of `ROWS`; a dimension with labels is one new row of `LABELS`.
 """
 
-from collections.abc import Container, Iterable, Mapping
+from collections.abc import Container, Iterable, Iterator, Mapping
 from typing import Any, NamedTuple
 
 PRODUCT_VERSION = 1
@@ -15,6 +15,7 @@ BOUNDS = "_bounds"
 
 RELEASE, FATE, LINE = "release", "fate", "line"
 ALTITUDE, LATITUDE, LOCAL_TIME = "altitude", "latitude", "local_time"
+LAUNCH_SPEED, ORDER = "launch_speed", "launch_speed_order"
 REPLICATE, EDGE = "replicate", "bounds"
 
 ADSORBED_COLUMN = "adsorbed_column"
@@ -56,6 +57,8 @@ class Variable(NamedTuple):
     """May be missing from a product."""
     lines: bool = False
     """Only where the gas has lines with known g."""
+    speeds: bool = False
+    """Only where responses are kept by bins of launch speed."""
     image: str | None = None
     """Product name of the image, in a row that was written out for one."""
 
@@ -63,6 +66,9 @@ class Variable(NamedTuple):
 _GROUND = (RELEASE, LATITUDE, LOCAL_TIME)
 _CELLS = (RELEASE, ALTITUDE, LATITUDE, LOCAL_TIME)
 _PIXELS = (RELEASE, VERTICAL, HORIZONTAL)
+_SPEEDS = (RELEASE, LAUNCH_SPEED, ORDER)
+
+_PER_LAUNCH = "per rate of launches into a bin of speed, by Legendre order within the bin"
 
 ROWS = (
     Variable("number_density", _CELLS, "m-3", "number density", replicated=True),
@@ -89,6 +95,31 @@ ROWS = (
         "brightness in rayleigh along the line of sight",
         replicated=True,
         lines=True,
+    ),
+    Variable(
+        "vertical_column_response",
+        (*_SPEEDS, LATITUDE, LOCAL_TIME),
+        "s m-2",
+        f"column density above the ground {_PER_LAUNCH}",
+        replicated=True,
+        speeds=True,
+    ),
+    Variable(
+        "column_response_" + IMAGE,
+        (*_SPEEDS, VERTICAL, HORIZONTAL),
+        "s m-2",
+        f"column density along the line of sight {_PER_LAUNCH}",
+        replicated=True,
+        speeds=True,
+    ),
+    Variable(
+        "brightness_response_" + IMAGE,
+        (LINE, *_SPEEDS, VERTICAL, HORIZONTAL),
+        "1e10 m-2",
+        f"brightness in rayleigh {_PER_LAUNCH}",
+        replicated=True,
+        lines=True,
+        speeds=True,
     ),
     Variable("release_flux", _GROUND, "m-2 s-1", "flux of new atoms from the surface, bounces not counted"),
     Variable("return_flux", _GROUND, "m-2 s-1", "flux of landing atoms, every landing counted"),
@@ -139,7 +170,7 @@ LANDMARKS = ("ledger", "release_name", "fate_name")
 """Variables without which a file is no product."""
 
 
-def layout(images: Iterable[str] = (), lines: bool = False) -> dict[str, Variable]:
+def layout(images: Iterable[str] = (), lines: bool = False, speeds: bool = False) -> dict[str, Variable]:
     """Return the product's variables by name, with every image row written out for each image.
 
     Parameters
@@ -148,20 +179,23 @@ def layout(images: Iterable[str] = (), lines: bool = False) -> dict[str, Variabl
         Product names of the images.
     lines : bool
         Whether the gas has lines.
+    speeds : bool
+        Whether responses are kept by bins of launch speed.
 
     Returns
     -------
     dict of str to Variable
         In the order of the file; standard errors and replicates are not listed apart.
     """
+    return {variable.name: variable for variable in _written_out(images, lines, speeds)}
+
+
+def _written_out(images: Iterable[str], lines: bool, speeds: bool) -> Iterator[Variable]:
     names = tuple(images)
-    variables: dict[str, Variable] = {}
     for row in ROWS:
-        if row.lines and not lines:
+        if (row.lines and not lines) or (row.speeds and not speeds):
             continue
-        for variable in [_of_image(row, name) for name in names] if IMAGE in row.name else [row]:
-            variables[variable.name] = variable
-    return variables
+        yield from [_of_image(row, name) for name in names] if IMAGE in row.name else [row]
 
 
 def has_lines(name: str) -> bool:
@@ -170,16 +204,17 @@ def has_lines(name: str) -> bool:
     return any(name == stem[0] or (len(stem) > 1 and name.startswith(stem[0])) for stem in stems)
 
 
-def variable_names(images: Iterable[str] = (), lines: bool = True) -> list[str]:
+def variable_names(images: Iterable[str] = (), lines: bool = True, speeds: bool = False) -> list[str]:
     """Return every name that a product with these images may hold, coordinates and bounds included.
 
     A name that comes twice means that two images, or their errors, would collide.
     """
+    images = tuple(images)
     image_axes = [axis.replace(IMAGE, name) for name in images for axis in (VERTICAL, HORIZONTAL)]
     names = [label.variable for label in LABELS]
-    for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes):
+    for axis in (ALTITUDE, LATITUDE, LOCAL_TIME, *image_axes, *((LAUNCH_SPEED,) if speeds else ())):
         names += [axis, axis + BOUNDS]
-    for variable in layout(images, lines).values():
+    for variable in _written_out(images, lines, speeds):
         names.append(variable.name)
         names += [variable.name + STANDARD_ERROR] * variable.tallied
         names += [variable.name + REPLICATES] * variable.replicated

@@ -1,6 +1,6 @@
 """One flat array holds all that a batch counts, so that folding a batch is one operation."""
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from math import prod
 from typing import NamedTuple
 
@@ -14,22 +14,47 @@ from tracer.tally.axes import Grid, ImagePlane
 Floats = NDArray[np.float64]
 
 
+ORDERS = 2
+"""Legendre orders of a response within a bin of launch speed: 0 and 1."""
+
+
 class BufferLayout(NamedTuple):
-    """Shapes of the fields of a `Tally`, in its order, and how many leading numbers are kept by replicate."""
+    """Shapes of the fields of a `Tally`, in its order, and how many leading numbers are kept by replicate.
+
+    `responses` are the shapes of the fields of `Responses`, which stand before the others; empty without them.
+    """
 
     shapes: tuple[tuple[int, ...], ...]
     replicated_size: int
+    responses: tuple[tuple[int, ...], ...] = ()
+
+    @property
+    def response_size(self) -> int:
+        """Number of float64 numbers of the responses."""
+        return sum(prod(shape) for shape in self.responses)
 
     @property
     def size(self) -> int:
         """Number of float64 numbers in a buffer."""
-        return sum(prod(shape) for shape in self.shapes)
+        return self.response_size + sum(prod(shape) for shape in self.shapes)
+
+
+class Responses(NamedTuple):
+    """What unit rates of launches into bins of speed leave, by Legendre order of the speed within the bin.
+
+    `column_content` (bin, order, latitude, local_time), `image_content` (bin, order, pixel) and `image_emission`
+    (bin, order, line, pixel) as the fields of these names of a `Tally`, per launch and second.
+    """
+
+    column_content: Floats
+    image_content: Floats
+    image_emission: Floats
 
 
 def make_layout(
-    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False
+    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False, speed_bins: int = 0
 ) -> BufferLayout:
-    """Return the layout for a grid, image planes and a number of emission lines.
+    """Return the layout for a grid, image planes, a number of emission lines and of bins of launch speed.
 
     Atoms at rest are counted where the ground is `adsorbing`. What is kept by replicate comes first.
     """
@@ -41,7 +66,10 @@ def make_layout(
     fluxes = (ground,) * 5
     at_rest = ground if adsorbing else (0, 0)
     numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,))
-    return BufferLayout((*kept, cells, *fluxes, at_rest, *numbers), sum(prod(shape) for shape in kept))
+    bins = (speed_bins, ORDERS)
+    responses = ((*bins, *ground), (*bins, pixels), (*bins, lines, pixels)) if speed_bins else ()
+    replicated = sum(prod(shape) for shape in (*responses, *kept))
+    return BufferLayout((*kept, cells, *fluxes, at_rest, *numbers), replicated, responses)
 
 
 def plane_shape(plane: ImagePlane) -> tuple[int, int]:
@@ -56,10 +84,17 @@ def plane_size(plane: ImagePlane) -> int:
 
 def tally_views(layout: BufferLayout, buffer: Floats) -> Tally:
     """Return the `Tally` whose arrays are views into `buffer`, shape (layout.size,)."""
-    views = []
+    return Tally(*_views(buffer[layout.response_size :], layout.shapes))
+
+
+def response_views(layout: BufferLayout, buffer: Floats) -> Responses | None:
+    """Return the `Responses` whose arrays are views into `buffer`, shape (layout.size,); None where there are none."""
+    return Responses(*_views(buffer, layout.responses)) if layout.responses else None
+
+
+def _views(buffer: Floats, shapes: Iterable[tuple[int, ...]]) -> Iterator[Floats]:
     start = 0
-    for shape in layout.shapes:
+    for shape in shapes:
         stop = start + prod(shape)
-        views.append(buffer[start:stop].reshape(shape))
+        yield buffer[start:stop].reshape(shape)
         start = stop
-    return Tally(*views)

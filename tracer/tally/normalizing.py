@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from tracer.constants import RAYLEIGH
 from tracer.kernels.scoring import Tally
 from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_solid_angle, cell_volume
-from tracer.tally.buffer import plane_shape, plane_size
+from tracer.tally.buffer import Responses, plane_shape, plane_size
 
 Floats = NDArray[np.float64]
 
@@ -73,6 +73,20 @@ def product_fields(
     yield ProductField("roulette_balance", tally.roulette[0], one)
     yield ProductField("mean_flights", tally.launches[0], per_atom)
     yield ProductField("mean_life", tally.life[0], per_atom)
+
+
+def response_fields(responses: Responses, grid: Grid, planes: Sequence[ImagePlane]) -> Iterator[ProductField]:
+    """Yield the product's responses to unit rates of launches, as `product_fields` does its variables."""
+    per_area = (1.0 / cell_area(grid))[:, np.newaxis]
+    yield ProductField("vertical_column_response", responses.column_content, per_area, replicated=True)
+    for plane, content, per_pixel in _images(responses.image_content, planes):
+        yield ProductField(f"column_response_{plane}", content, per_pixel, replicated=True)
+    by_line = np.moveaxis(responses.image_emission, 2, 0)
+    if len(by_line):
+        for plane, content, per_pixel in _images(by_line, planes):
+            yield ProductField(
+                f"brightness_response_{plane}", content, per_pixel / RAYLEIGH, replicated=True, by_line=True
+            )
 
 
 def _images(contents: Floats, planes: Sequence[ImagePlane]) -> Iterator[tuple[str, Floats, Floats]]:

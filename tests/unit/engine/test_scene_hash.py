@@ -44,6 +44,7 @@ def hashed(small_run_file):
         "image[1].pixels=[8, 7]",
         "image[1].name=tail",
         "ensemble.emphasis=far",
+        "ensemble.speed_bins=8",
     ],
 )
 def test_hash_changes_with_what_decides_the_product(hashed, change):

@@ -241,7 +241,7 @@ def _map_batches(
                 if result is None:
                     submit(place, task, trial + 1)
                     continue
-                tell(work.particles, result.flights)
+                tell(work.launches, result.flights)
                 yield task, result
                 queue.finish(place)
             tick()

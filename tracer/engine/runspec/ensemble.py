@@ -5,7 +5,7 @@ from typing import Literal
 from pydantic import Field
 
 from tracer.engine.runspec.stop import StopTable
-from tracer.inputs.number import Count, CountOrNone, SeveralOf
+from tracer.inputs.number import Count, CountOrNone, SeveralOf, SpeedBins
 from tracer.inputs.table import Table
 
 
@@ -27,6 +27,13 @@ class EnsembleTable(Table):
         description='`"even"` samples launches as often as they happen; `"far"` gives half of them to those, however '
         "rare, that reach far from the ground or escape, with less weight each: densities high up, tails and escape "
         "get smaller errors, what is near the ground errors larger by up to 1.4. Bounces are not biased.",
+    )
+    speed_bins: SpeedBins = Field(
+        0,
+        description="Bins of launch speed, one edge at the escape speed, by which the responses of images and vertical "
+        "columns are kept: what an atom launched in a bin contributes. Any law of speed can then be evaluated without "
+        "tracing again. It takes as many launches again, and for each bin two numbers a pixel; 32 serve most laws, 0 "
+        "keeps none.",
     )
     stop: StopTable | None = Field(None, description="Run until good enough, instead of `batches`.")
 

@@ -20,6 +20,22 @@ class SpeedLaw(Protocol):
         ...
 
 
+class SpeedDensity(Protocol):
+    """A speed law that is the same everywhere and has a density: what responses can be put together for."""
+
+    def density(self, speeds: Floats, mass: float) -> Floats:
+        """Return the probability density [s m-1] at `speeds` [m s-1], for atoms of `mass` [kg]."""
+        ...
+
+    def share_above(self, speed: float, mass: float) -> float:
+        """Return the probability of a speed above `speed` [m s-1]."""
+        ...
+
+    def kinks(self) -> Floats:
+        """Return the speeds [m s-1], rising, at which the density is not smooth."""
+        ...
+
+
 class DirectionLaw(Protocol):
     """A distribution of launch directions about the local vertical, even in azimuth."""
 

@@ -204,7 +204,7 @@ def test_type(old: str, new: str, message: str) -> None:
             "batches = 20",
             "threads = 2",
             "ensemble.threads: unknown key; allowed here: particles_per_batch, batches, seed, replicates, emphasis, "
-            "stop",
+            "speed_bins, stop",
         ),
         (
             "[ensemble]",

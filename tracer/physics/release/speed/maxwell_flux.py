@@ -6,6 +6,7 @@ import numpy as np
 
 from tracer.constants import BOLTZMANN
 from tracer.physics.release.laws import Floats
+from tracer.physics.thermal import most_probable_speed
 
 NEWTON_STEPS = 3
 """From the first guess, at most 1.2 % off, three steps reach rounding."""
@@ -27,6 +28,28 @@ class MaxwellFlux(NamedTuple):
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
         return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * energies(u)))
+
+    def density(self, speeds: Floats, mass: float) -> Floats:
+        """Return the probability density [s m-1]; see `SpeedDensity`."""
+        most_probable = speed_scale(self.temperature, mass)
+        w = speeds / most_probable
+        return np.asarray(2.0 * w**3 * np.exp(-w * w) / most_probable)
+
+    def share_above(self, speed: float, mass: float) -> float:
+        """Return the probability (1 + x) exp(-x) of a speed above `speed` [m s-1], x = m v^2/(2kT)."""
+        x = (speed / speed_scale(self.temperature, mass)) ** 2
+        return float((1.0 + x) * np.exp(-x))
+
+    def kinks(self) -> Floats:
+        """Return no speeds; see `SpeedDensity`."""
+        return np.empty(0)
+
+
+def speed_scale(temperature: float | None, mass: float) -> float:
+    """Return sqrt(2kT/m) [m s-1] of a gas; ValueError where the law takes the ground's temperature."""
+    if temperature is None:
+        raise ValueError("a law that takes the ground's temperature has no density of its own")
+    return most_probable_speed(temperature, mass)
 
 
 def energies(u: Floats) -> Floats:

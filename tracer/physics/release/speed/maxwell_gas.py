@@ -3,10 +3,11 @@
 from typing import NamedTuple
 
 import numpy as np
-from scipy.special import gammaincinv
+from scipy.special import gammaincc, gammaincinv
 
 from tracer.constants import BOLTZMANN
 from tracer.physics.release.laws import Floats
+from tracer.physics.release.speed.maxwell_flux import speed_scale
 
 
 class MaxwellGas(NamedTuple):
@@ -21,3 +22,17 @@ class MaxwellGas(NamedTuple):
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
         return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * gammaincinv(1.5, u)))
+
+    def density(self, speeds: Floats, mass: float) -> Floats:
+        """Return the probability density [s m-1]; see `SpeedDensity`."""
+        most_probable = speed_scale(self.temperature, mass)
+        w = speeds / most_probable
+        return np.asarray(4.0 / np.sqrt(np.pi) * w * w * np.exp(-w * w) / most_probable)
+
+    def share_above(self, speed: float, mass: float) -> float:
+        """Return the probability of a speed above `speed` [m s-1]: the energy follows a gamma distribution of 3/2."""
+        return float(gammaincc(1.5, (speed / speed_scale(self.temperature, mass)) ** 2))
+
+    def kinks(self) -> Floats:
+        """Return no speeds; see `SpeedDensity`."""
+        return np.empty(0)

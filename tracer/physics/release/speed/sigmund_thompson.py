@@ -10,6 +10,9 @@ from tracer.physics.release.laws import Floats
 TABLE_POINTS = 4001
 """Points of the inverse distribution from which the Newton steps start."""
 
+LARGEST = 1e17
+"""Energy in binding energies below which the last quantile that a double can name lies, without a cut-off."""
+
 NEWTON_STEPS = 4
 """From the table's interpolation two steps reach rounding; two more cost little."""
 
@@ -31,8 +34,33 @@ class SigmundThompson(NamedTuple):
 
     def energies(self, u: Floats) -> Floats:
         """Return energies [J] at the quantiles `u` in [0, 1), (n,)."""
-        cutoff = np.inf if self.cutoff_energy is None else self.cutoff_energy / self.binding_energy
-        return self.binding_energy * _reduced_energies(u, cutoff)
+        return self.binding_energy * _reduced_energies(u, self._cutoff)
+
+    def density(self, speeds: Floats, mass: float) -> Floats:
+        """Return the probability density [s m-1]; see `SpeedDensity`."""
+        y = 0.5 * mass * speeds * speeds / self.binding_energy
+        slope = mass * speeds / self.binding_energy
+        inside = y <= self._cutoff - 1.0
+        return np.where(inside, _density(y, self._cutoff) * slope / self._total, 0.0)
+
+    def share_above(self, speed: float, mass: float) -> float:
+        """Return the probability of a speed above `speed` [m s-1]; see `SpeedDensity`."""
+        y = min(0.5 * mass * speed * speed / self.binding_energy, self._cutoff - 1.0)
+        return 1.0 - float(cumulative(np.array([y]), self._cutoff)[0]) / self._total
+
+    def kinks(self) -> Floats:
+        """Return no speeds; see `SpeedDensity`."""
+        return np.empty(0)
+
+    @property
+    def _cutoff(self) -> float:
+        """Largest energy in binding energies."""
+        return np.inf if self.cutoff_energy is None else self.cutoff_energy / self.binding_energy
+
+    @property
+    def _total(self) -> float:
+        top = np.array([min(self._cutoff - 1.0, LARGEST)])
+        return float(cumulative(top, self._cutoff)[0])
 
 
 def cumulative(y: Floats, cutoff: float) -> Floats:
@@ -55,8 +83,7 @@ def _density(y: Floats, cutoff: float) -> Floats:
 @lru_cache(maxsize=8)
 def _table(cutoff: float) -> tuple[Floats, Floats]:
     """Return (probability, y) along the distribution, dense at both ends."""
-    # Without cut-off the last quantile that a double can name lies below 1e17 binding energies.
-    top = min(cutoff - 1.0, 1e17)
+    top = min(cutoff - 1.0, LARGEST)
     y = np.concatenate(([0.0], np.geomspace(1e-9 * min(1.0, top), top, TABLE_POINTS)))
     probability = cumulative(y, cutoff)
     probability /= probability[-1]

@@ -27,3 +27,20 @@ class Table(NamedTuple):
         sum_ = start + root
         distance = np.divide(2.0 * rest, sum_, out=np.zeros_like(rest), where=sum_ > 0.0)
         return np.asarray(np.minimum(self.speed[i] + distance, self.speed[i + 1]))
+
+    def density(self, speeds: Floats, mass: float) -> Floats:
+        """Return the probability density [s m-1]; see `SpeedDensity`."""
+        return np.asarray(
+            np.interp(speeds, self.speed, self.pdf, 0.0, 0.0) / np.trapezoid(self.pdf, self.speed)
+        )
+
+    def share_above(self, speed: float, mass: float) -> float:
+        """Return the probability of a speed above `speed` [m s-1]; see `SpeedDensity`."""
+        beyond = self.speed > speed
+        v = np.concatenate(([min(max(speed, self.speed[0]), self.speed[-1])], self.speed[beyond]))
+        pdf = np.interp(v, self.speed, self.pdf)
+        return float(np.trapezoid(pdf, v) / np.trapezoid(self.pdf, self.speed))
+
+    def kinks(self) -> Floats:
+        """Return the speeds of the table."""
+        return self.speed
