@@ -233,7 +233,9 @@ def components_of(spec: ObservationSpec, sources: Sequence[Source]) -> list[Comp
             if name not in known:
                 close = get_close_matches(name, known, n=1)
                 hint = f'did you mean "{close[0]}"?' if close else "allowed: " + ", ".join(map(quoted, known))
-                raise InputError(f"{spec.file}: {place}: {quoted(name)} is no release of the products; {hint}")
+                raise InputError(
+                    f"{spec.file}: {place}: {quoted(name)} is no release of the products; {hint}"
+                )
     entries = {one.name: (number, one) for number, one in enumerate(spec.fit.release, 1)}
     for name, (number, _) in entries.items():
         if name not in wanted:

@@ -11,7 +11,7 @@ from scipy.interpolate import CubicSpline
 from tracer.errors import InputError
 from tracer.observe.fit.sources import Response
 from tracer.observe.responses import bin_moments
-from tracer.physics.release.laws import SpeedLaw
+from tracer.physics.release.laws import SpeedDensity
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
 from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
@@ -25,7 +25,7 @@ STEP = 1e-4
 SLOPE_ORDER = 3.0
 """Weight of a bin's slope beside its mean: the response is M0 + 3 M1 for moments of degree 0 and 1."""
 
-LAWS: Mapping[str, Callable[..., SpeedLaw]] = {
+LAWS: Mapping[str, Callable[..., SpeedDensity]] = {
     "maxwell-flux": lambda temperature: MaxwellFlux(temperature),
     "maxwell-gas": lambda temperature: MaxwellGas(temperature),
     "sigmund-thompson": lambda binding_energy, cutoff_energy: SigmundThompson(binding_energy, cutoff_energy),
@@ -103,10 +103,11 @@ class Lawful:
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
-        return np.einsum("bo,gbon->gn", self._weights(logs), self._response.replicates, optimize=True)
+        found = np.einsum("bo,gbon->gn", self._weights(logs), self._response.replicates, optimize=True)
+        return np.asarray(found)
 
     def _mean(self, logs: Floats) -> Floats:
-        return np.einsum("bo,bon->n", self._weights(logs), self._response.means, optimize=True)
+        return np.asarray(np.einsum("bo,bon->n", self._weights(logs), self._response.means, optimize=True))
 
     def _weights(self, logs: Floats) -> Floats:
         values = {p.key: math.exp(log) for p, log in zip(self.parameters, logs, strict=True)}

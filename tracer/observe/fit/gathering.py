@@ -16,12 +16,10 @@ from tracer.observe.fit.sky import Aperture, Spread, Track, View
 from tracer.observe.fit.smearing import smearing
 from tracer.observe.fit.sources import Response, Source
 from tracer.observe.gas import LEAST_REPLICATES, unknown_line
-from tracer.product.layout import BOUNDS, LINE, RELEASE, REPLICATE, REPLICATES
+from tracer.observe.responses import speed_edges
+from tracer.product.layout import BOUNDS, LAUNCH_SPEED, LINE, ORDER, RELEASE, REPLICATE, REPLICATES
 
 Floats = NDArray[np.float64]
-
-LAUNCH_SPEED = "launch_speed"
-ORDER = "launch_speed_order"
 
 
 class Optics(NamedTuple):
@@ -161,8 +159,7 @@ def _responses(
             f"has no {name}; law parameters are fitted from responses by launch speed: run again with "
             "ensemble.speed_bins = 32"
         )
-    bounds = np.asarray(ds[LAUNCH_SPEED + BOUNDS].values, dtype=np.float64)
-    edges = np.append(bounds[:, 0], bounds[-1, 1])
+    edges = speed_edges(ds)
     order = (RELEASE, LAUNCH_SPEED, ORDER)
     means = _through(weights, _of_line(ds[name], line, known).transpose(*order, ...).values)
     replicates = _through(

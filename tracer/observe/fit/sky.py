@@ -105,7 +105,9 @@ def metres_in(unit: str, scale: Scale) -> float:
     if angle is None:
         raise InputError(f'{scale.file}: "{unit}" is no unit of length or angle')
     if scale.distance is None:
-        raise InputError(f'{scale.file}: view.distance: missing; the angle in "{unit}" needs it to become a length')
+        raise InputError(
+            f'{scale.file}: view.distance: missing; the angle in "{unit}" needs it to become a length'
+        )
     return angle * scale.distance
 
 
