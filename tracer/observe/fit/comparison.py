@@ -103,7 +103,7 @@ def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) 
     sources: list[Source] = []
     how: list[str] = []
     for name, ds in products:
-        optics = _optics(spec, profile, ds)
+        optics = optics_for(spec, profile, ds)
         try:
             found = gather(ds, name, spec.profile.line, optics, wants_responses(spec))
         except InputError as error:
@@ -169,7 +169,7 @@ def needed_of(ds: xr.Dataset, spec: ObservationSpec, profile: Profile) -> list[s
     InputError
         No image of the view holds the profile.
     """
-    optics = _optics(spec, profile, ds)
+    optics = optics_for(spec, profile, ds)
     found = image_of(ds, optics.view, optics.image, optics.track)
     return variables_for(ds, spec.profile.line, None if found is None else found.name, wants_responses(spec))
 
@@ -179,7 +179,7 @@ def wants_responses(spec: ObservationSpec) -> bool:
     return any(_law_words(entry) for entry in spec.fit.release)
 
 
-def _optics(spec: ObservationSpec, profile: Profile, ds: xr.Dataset) -> Optics:
+def optics_for(spec: ObservationSpec, profile: Profile, ds: xr.Dataset) -> Optics:
     """Return how a profile is seen on the body of a product.
 
     Raises
