@@ -1,7 +1,8 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
-`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation` and
-`evaluate_law`, are loaded when they are first asked for, so that `import tracer` costs nothing.
+`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation`,
+`load_observation`, `compare` and `evaluate_law`, are loaded when they are first asked for, so that `import tracer` costs
+nothing.
 """
 
 from importlib import import_module
@@ -10,6 +11,8 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from tracer.engine.runspec.load import load_run
     from tracer.engine.tracing import run
+    from tracer.observe.fit.comparison import compare
+    from tracer.observe.observationspec.observation import load_observation
     from tracer.observe.plan import plan_observation
     from tracer.observe.planspec.plan import load_plan
     from tracer.observe.responses import evaluate_law
@@ -19,7 +22,9 @@ if TYPE_CHECKING:
 
 __all__ = [
     "__version__",
+    "compare",
     "evaluate_law",
+    "load_observation",
     "load_plan",
     "load_run",
     "open_product",
@@ -30,7 +35,9 @@ __all__ = [
 ]
 
 _HOMES = {
+    "compare": "tracer.observe.fit.comparison",
     "evaluate_law": "tracer.observe.responses",
+    "load_observation": "tracer.observe.observationspec.observation",
     "load_plan": "tracer.observe.planspec.plan",
     "load_run": "tracer.engine.runspec.load",
     "open_product": "tracer.product.reading",

@@ -48,6 +48,11 @@ COMMANDS = (
         "Plan a spectrometer observation along a path: counts, SNR, keep-outs.",
         "tracer.commands.plan",
     ),
+    Entry(
+        "compare",
+        "Explain a measured profile by a product's sources: rates, law parameters, how sure.",
+        "tracer.commands.compare",
+    ),
     Entry("plot", "Draw a figure of a product: density, column, image, budget.", "tracer.commands.plot"),
     Entry("report", "Write one page about a product, to hand round.", "tracer.commands.report"),
 )

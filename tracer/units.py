@@ -52,6 +52,8 @@ DIMENSIONS: Mapping[str, Dimension] = MappingProxyType(
         "number density": Dimension("number density", "m-3", "50 cm-3"),
         "area": Dimension("area", "m2", "20 cm2"),
         "photon flux": Dimension("photon flux", "m-2 s-1", "2e14 cm-2 s-1"),
+        "column density": Dimension("column density", "m-2", "1e9 cm-2"),
+        "brightness": Dimension("brightness", "R", "5 kR"),
     }
 )
 

@@ -10,7 +10,12 @@ import typer
 
 def print_json(figures: Mapping[str, Any]) -> None:
     """Print `figures` as one JSON object; what is no finite number becomes null, as JSON has no other word for it."""
-    typer.echo(json.dumps(_plain(figures), indent=2, ensure_ascii=False))
+    typer.echo(json_text(figures), nl=False)
+
+
+def json_text(figures: Mapping[str, Any]) -> str:
+    """Return `figures` as the text of one JSON object, see `print_json`."""
+    return json.dumps(_plain(figures), indent=2, ensure_ascii=False) + "\n"
 
 
 def _plain(value: Any) -> Any:

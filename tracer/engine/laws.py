@@ -12,9 +12,9 @@ from tracer.engine.runspec import direction as direction_tables
 from tracer.engine.runspec import place as place_tables
 from tracer.engine.runspec import speed as speed_tables
 from tracer.engine.runspec.run import RunSpec
-from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.speed_table import read_speed_table
 from tracer.errors import InputError
+from tracer.inputs.sky import SkyPoint
 from tracer.physics.release.direction.cosine import Cosine
 from tracer.physics.release.direction.isotropic import Isotropic
 from tracer.physics.release.direction.normal import Normal

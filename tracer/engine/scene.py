@@ -21,12 +21,12 @@ from tracer.engine.runspec.image import ImageTable, product_name
 from tracer.engine.runspec.place import ReleaseMap
 from tracer.engine.runspec.release import ReleaseTable
 from tracer.engine.runspec.run import RunSpec
-from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.speed import TabulatedSpeed
 from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.engine.runspec.temperature import TemperatureMap
 from tracer.engine.sunlight import Sunlight, g_files, resolve_sunlight
 from tracer.engine.surface_temperature import surface_temperature
+from tracer.inputs.sky import SkyPoint
 from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import SurfaceTemperature
 from tracer.physics.lines import VelocityTable

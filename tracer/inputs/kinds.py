@@ -67,7 +67,9 @@ def _kind(annotation: Any, metadata: tuple[Any, ...] = ()) -> str:
 
 
 def _dimensions(part: Any) -> Iterator[str]:
-    if hasattr(part, "dimension"):
+    if hasattr(part, "dimensions"):
+        yield from part.dimensions
+    elif hasattr(part, "dimension"):
         yield part.dimension
     elif isinstance(part, type) and issubclass(part, Table):
         yield from dimensions_in(part)

@@ -5,9 +5,9 @@ import re
 from pydantic import Field, model_validator
 
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.sky import ViewerDirection
 from tracer.inputs.number import Cells
 from tracer.inputs.quantity import RadialVelocity, SkyOffset
+from tracer.inputs.sky import ViewerDirection
 from tracer.inputs.table import Table, conflict
 from tracer.inputs.text import Line
 

@@ -5,9 +5,9 @@ from typing import Annotated, Literal
 from pydantic import Field, model_validator
 
 from tracer.engine.runspec.order import is_below
-from tracer.engine.runspec.sky import PlaceDirection
 from tracer.inputs.number import Exponent, LocalTime
 from tracer.inputs.quantity import Latitude, LengthOrRadii
+from tracer.inputs.sky import PlaceDirection
 from tracer.inputs.table import NAMED_LAW, Table, conflict
 from tracer.inputs.text import FilePath, Line
 

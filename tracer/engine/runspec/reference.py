@@ -1,8 +1,8 @@
 """The run-file reference, made from the tables themselves so that it cannot drift."""
 
 from tracer.engine.runspec.run import RunSpec
-from tracer.engine.runspec.sky import SkyPoint
 from tracer.inputs.reference import reference_of
+from tracer.inputs.sky import SkyPoint
 
 BEGIN = "<!-- reference: made from the package, do not edit -->"
 END = "<!-- end of reference -->"

@@ -10,9 +10,9 @@ from tracer.engine.runspec.direction import Cosine, Normal
 from tracer.engine.runspec.image import product_name
 from tracer.engine.runspec.load import load_run, parse_run
 from tracer.engine.runspec.place import Uniform
-from tracer.engine.runspec.sky import SkyPoint
 from tracer.engine.runspec.sticking import ExponentialSticking
 from tracer.errors import InputError
+from tracer.inputs.sky import SkyPoint
 from tracer.units import Quantity
 
 SHORTEST = """

@@ -1,0 +1,120 @@
+"""What a source makes of a profile as the parameters of its launch-speed law vary."""
+
+import math
+from collections.abc import Callable, Mapping
+from typing import NamedTuple, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.interpolate import CubicSpline
+
+from tracer.errors import InputError
+from tracer.observe.fit.sources import Response
+from tracer.observe.responses import bin_moments
+from tracer.physics.release.laws import SpeedDensity
+from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
+from tracer.physics.release.speed.maxwell_gas import MaxwellGas
+from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
+
+Floats = NDArray[np.float64]
+
+NODES = 97
+"""Values of a parameter at which a curve is computed; between them it is a cubic spline in the logarithm."""
+STEP = 1e-4
+"""Step in the logarithm of a parameter for slopes of laws with several."""
+SLOPE_ORDER = 3.0
+"""Weight of a bin's slope beside its mean: the response is M0 + 3 M1 for moments of degree 0 and 1."""
+
+LAWS: Mapping[str, Callable[..., SpeedDensity]] = {
+    "maxwell-flux": lambda temperature: MaxwellFlux(temperature),
+    "maxwell-gas": lambda temperature: MaxwellGas(temperature),
+    "sigmund-thompson": lambda binding_energy, cutoff_energy: SigmundThompson(binding_energy, cutoff_energy),
+}
+
+
+class Parameter(NamedTuple):
+    """A law's parameter that is fitted, with the ends of its range in SI units."""
+
+    key: str
+    low: float
+    high: float
+
+
+class Curve(Protocol):
+    """A source's profile for one atom per second over the logarithms of its fitted parameters, K of them."""
+
+    parameters: tuple[Parameter, ...]
+
+    def at(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return the points (N,) and their slopes (K, N) at logarithms (K,)."""
+        ...
+
+    def replicates_at(self, logs: Floats) -> Floats:
+        """Return the replicates (G, N) at logarithms (K,)."""
+        ...
+
+
+class Fixed:
+    """A profile without anything to fit but its rate."""
+
+    parameters: tuple[Parameter, ...] = ()
+
+    def __init__(self, mean: Floats, replicates: Floats) -> None:
+        self._mean, self._replicates = mean, replicates
+        self._no_slopes = np.zeros((0, len(mean)))
+
+    def at(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return what `Curve.at` does."""
+        return self._mean, self._no_slopes
+
+    def replicates_at(self, logs: Floats) -> Floats:
+        """Return what `Curve.replicates_at` does."""
+        return self._replicates
+
+
+class Lawful:
+    """A profile from responses by launch speed, for a law with some parameters held and others fitted."""
+
+    def __init__(
+        self, response: Response, law: str, held: Mapping[str, float], fitted: tuple[Parameter, ...]
+    ) -> None:
+        self.parameters = fitted
+        self._response, self._law, self._held = response, law, dict(held)
+        self._spline: CubicSpline | None = None
+        if len(fitted) == 1:
+            logs = np.linspace(math.log(fitted[0].low), math.log(fitted[0].high), NODES)
+            self._spline = CubicSpline(logs, np.array([self._mean(np.array([one])) for one in logs]))
+            self._slope = self._spline.derivative()
+        elif fitted:
+            # The ends of ranges must be covered, which shows before any fit.
+            for ends in np.array([[p.low, p.high] for p in fitted]).T:
+                self._mean(np.log(ends))
+
+    def at(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return what `Curve.at` does."""
+        if self._spline is not None:
+            return np.asarray(self._spline(logs[0])), np.asarray(self._slope(logs[0]))[np.newaxis]
+        mean = self._mean(logs)
+        slopes = np.empty((len(logs), len(mean)))
+        for k in range(len(logs)):
+            step = STEP * np.eye(len(logs))[k]
+            slopes[k] = (self._mean(logs + step) - self._mean(logs - step)) / (2.0 * STEP)
+        return mean, slopes
+
+    def replicates_at(self, logs: Floats) -> Floats:
+        """Return what `Curve.replicates_at` does."""
+        found = np.einsum("bo,gbon->gn", self._weights(logs), self._response.replicates, optimize=True)
+        return np.asarray(found)
+
+    def _mean(self, logs: Floats) -> Floats:
+        return np.asarray(np.einsum("bo,bon->n", self._weights(logs), self._response.means, optimize=True))
+
+    def _weights(self, logs: Floats) -> Floats:
+        values = {p.key: math.exp(log) for p, log in zip(self.parameters, logs, strict=True)}
+        law = LAWS[self._law](**self._held, **values)
+        try:
+            moments = bin_moments(law, self._response.edges, self._response.mass)
+        except InputError as error:
+            words = ", ".join(f"{key} {value:.6g}" for key, value in {**self._held, **values}.items())
+            raise InputError(f"{self._law} with {words}: {error}") from None
+        return np.asarray(moments * (1.0, SLOPE_ORDER))

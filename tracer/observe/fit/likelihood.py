@@ -1,0 +1,195 @@
+"""How likely a profile is for rates, background and law parameters: as squares, measured points and limits alike."""
+
+import math
+from collections.abc import Sequence
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import solve_triangular
+from scipy.special import log_ndtr
+
+from tracer.observe.fit.curves import Curve
+from tracer.observe.fit.sources import covariance
+
+Floats = NDArray[np.float64]
+Truths = NDArray[np.bool_]
+
+TINY = 1e-150
+RATE = ": rate"
+"""Ending of the names of rates among the free parameters."""
+
+
+class Component(NamedTuple):
+    """A source in the fit: its `curve`, batches by replicate (G,), the rate [s-1] at which it is held, None if free."""
+
+    name: str
+    curve: Curve
+    batches: Floats
+    held_rate: float | None
+
+
+class Slot(NamedTuple):
+    """A free parameter of the fit, as the descent sees it: within `low` and `high`.
+
+    A rate counts in `unit` [s-1], a background in `unit` of the points, and a law's parameter by its logarithm. `key`
+    is None of a rate and `component` None of the background.
+    """
+
+    name: str
+    component: int | None
+    key: str | None
+    low: float
+    high: float
+    unit: float
+
+
+class Measured(NamedTuple):
+    """N points: `value`, `sigma`, which of them are `upper` limits; `level` is the known background."""
+
+    value: Floats
+    sigma: Floats
+    upper: Truths
+    level: float
+
+
+def slots_of(data: Measured, components: Sequence[Component], background: bool) -> tuple[Slot, ...]:
+    """Return the free parameters: rates, then the background, then the laws' parameters."""
+    size = float(np.median(np.abs(data.value[~data.upper]))) or float(np.median(data.sigma))
+    slots = []
+    for i, one in enumerate(components):
+        if one.held_rate is None:
+            middle = one.curve.at(np.array([0.5 * math.log(p.low * p.high) for p in one.curve.parameters]))[0]
+            largest = float(np.max(np.abs(middle)))
+            slots.append(
+                Slot(one.name + RATE, i, None, 0.0, math.inf, size / largest if largest > 0.0 else 1.0)
+            )
+    if background:
+        slots.append(Slot("background", None, None, -math.inf, math.inf, size))
+    for i, one in enumerate(components):
+        slots += [
+            Slot(f"{one.name}: {p.key}", i, p.key, math.log(p.low), math.log(p.high), 1.0)
+            for p in one.curve.parameters
+        ]
+    return tuple(slots)
+
+
+class Model(NamedTuple):
+    """Points of the model: the parts (components, N) at their rates, the background (N,), and rates (components,)."""
+
+    parts: Floats
+    background: Floats
+    rates: Floats
+    logs: tuple[Floats, ...]
+
+    @property
+    def total(self) -> Floats:
+        """All together, (N,)."""
+        return np.asarray(self.parts.sum(axis=0) + self.background)
+
+
+class Likelihood:
+    """-2 ln L of a profile, without constants, as a sum of squares.
+
+    Measured points are Gaussian with the covariance of measurement and model together; the likelihood of an upper limit
+    is Phi((limit - model)/sigma), that of data censored at the limit (as in survival analysis: Feigelson & Nelson 1985,
+    ApJ 293, 192; memory), and its square root of -2 ln Phi stands among the residuals.
+    """
+
+    def __init__(self, data: Measured, components: Sequence[Component], slots: Sequence[Slot]) -> None:
+        self.data, self.components, self.slots = data, tuple(components), tuple(slots)
+        self.low = np.array([slot.low for slot in slots])
+        self.high = np.array([slot.high for slot in slots])
+        self._measured = ~data.upper
+        self._law_places = [
+            [n for n, slot in enumerate(slots) if slot.component == i and slot.key is not None]
+            for i in range(len(components))
+        ]
+        self._rate_places = [
+            next((n for n, slot in enumerate(slots) if slot.component == i and slot.key is None), None)
+            for i in range(len(components))
+        ]
+        self._background = next((n for n, slot in enumerate(slots) if slot.component is None), None)
+        self.take_model_error(None)
+
+    def take_model_error(self, parameters: Floats | None) -> None:
+        """Count the Monte Carlo error of the model at these parameters from now on; none at all for None."""
+        data, keep = self.data, self._measured
+        self.model_covariance = (
+            np.zeros((len(data.value),) * 2) if parameters is None else self._model_covariance(parameters)
+        )
+        whole = self.model_covariance[np.ix_(keep, keep)] + np.diag(data.sigma[keep] ** 2)
+        # Scaled by the measurement: its numbers may be of any size.
+        scale = data.sigma[keep]
+        root = np.linalg.cholesky(whole / np.outer(scale, scale))
+        self._whiten = solve_triangular(root, np.eye(len(scale)), lower=True) / scale
+        variance = data.sigma**2 + np.diag(self.model_covariance)
+        self.total_sigma = np.sqrt(variance)
+
+    def model(self, parameters: Floats) -> Model:
+        """Return the points of the model."""
+        parts, _, rates, logs = self._parts(parameters)
+        return Model(rates[:, None] * parts, np.full(parts.shape[1], self._level(parameters)), rates, logs)
+
+    def residuals(self, parameters: Floats) -> tuple[Floats, Floats]:
+        """Return residuals (M,), whose squares sum to -2 ln L, and their slopes (M, P)."""
+        parts, slopes, rates, _ = self._parts(parameters)
+        total = rates @ parts + self._level(parameters)
+        steps = np.zeros((len(self.slots), parts.shape[1]))
+        for i in range(len(self.components)):
+            place = self._rate_places[i]
+            if place is not None:
+                steps[place] = self.slots[place].unit * parts[i]
+            for k, n in enumerate(self._law_places[i]):
+                steps[n] = rates[i] * slopes[i][k]
+        if self._background is not None:
+            steps[self._background] = self.slots[self._background].unit
+        keep = self._measured
+        away = self._whiten @ (self.data.value[keep] - total[keep])
+        turned = -(self._whiten @ steps[:, keep].T)
+        if keep.all():
+            return away, turned
+        limits, tilts = self._limits(total[~keep])
+        return np.concatenate([away, limits]), np.concatenate([turned, tilts[:, None] * steps[:, ~keep].T])
+
+    def value(self, parameters: Floats) -> float:
+        """Return -2 ln L without constants."""
+        found, _ = self.residuals(parameters)
+        return float(found @ found)
+
+    def chi_square(self, parameters: Floats) -> float:
+        """Return the chi-square of the measured points alone."""
+        found = self.residuals(parameters)[0][: int(self._measured.sum())]
+        return float(found @ found)
+
+    def _limits(self, total: Floats) -> tuple[Floats, Floats]:
+        sigma = self.total_sigma[self.data.upper]
+        z = (self.data.value[self.data.upper] - total) / sigma
+        log = log_ndtr(z)
+        root = np.sqrt(np.maximum(-2.0 * log, TINY))
+        hazard = np.exp(-0.5 * z * z - log) / math.sqrt(2.0 * math.pi)
+        return root, hazard / (sigma * root)
+
+    def _level(self, parameters: Floats) -> float:
+        if self._background is None:
+            return self.data.level
+        return float(parameters[self._background] * self.slots[self._background].unit)
+
+    def _parts(self, parameters: Floats) -> tuple[Floats, list[Floats], Floats, tuple[Floats, ...]]:
+        """Return points for one atom per second (components, N), their slopes, rates, logarithms of parameters."""
+        parts = np.empty((len(self.components), len(self.data.value)))
+        slopes, rates, logs = [], np.empty(len(self.components)), []
+        for i, one in enumerate(self.components):
+            logs.append(parameters[self._law_places[i]])
+            parts[i], slope = one.curve.at(logs[-1])
+            slopes.append(slope)
+            place = self._rate_places[i]
+            rates[i] = one.held_rate if place is None else parameters[place] * self.slots[place].unit
+        return parts, slopes, rates, tuple(logs)
+
+    def _model_covariance(self, parameters: Floats) -> Floats:
+        _, _, rates, logs = self._parts(parameters)
+        whole = np.zeros((len(self.data.value),) * 2)
+        for one, rate, log in zip(self.components, rates, logs, strict=True):
+            whole += rate**2 * covariance(one.curve.replicates_at(log), one.batches)
+        return whole

@@ -1,0 +1,167 @@
+"""How far a parameter may go before the profile likelihood falls too low, and how parameters hang together."""
+
+import itertools
+import math
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from tracer.observe.fit.descent import descend
+from tracer.observe.fit.likelihood import Likelihood
+
+Floats = NDArray[np.float64]
+
+RISE_68, RISE_95 = 1.0, 3.841458820694124
+"""Rise of -2 ln L at the ends of the ranges: 68.27 and 95 % of chi-square with one degree of freedom (Wilks 1938, Ann.
+Math. Stat. 9, 60: memory)."""
+CLOSE = 2e-3
+"""How near to the rise an end lies, in its square root."""
+MOST_TRIALS = 60
+BETTER = 1e-4
+"""Fall of -2 ln L below the best that shows another, better minimum."""
+ON_EDGE = 1e-9
+FAR_STEP = 4.0
+
+
+class BetterFound(Exception):
+    """A scan met parameters that are more likely than the best known."""
+
+    def __init__(self, parameters: Floats) -> None:
+        super().__init__("a better minimum")
+        self.parameters = parameters
+
+
+class Scan(NamedTuple):
+    """What ranges are taken from: the best parameters, their -2 ln L, and their covariance (P, P)."""
+
+    likelihood: Likelihood
+    best: Floats
+    value: float
+    covariance: Floats
+
+
+def scan_of(likelihood: Likelihood, best: Floats, value: float) -> Scan:
+    """Return the scan about the best parameters; those on an edge have no covariance: NaN."""
+    _, slope = likelihood.residuals(best)
+    inside = ~on_edge(likelihood, best)
+    covariance = np.full((len(best), len(best)), np.nan)
+    normal = slope[:, inside].T @ slope[:, inside]
+    scale = np.sqrt(np.maximum(np.diag(normal), np.finfo(float).tiny))
+    covariance[np.ix_(inside, inside)] = np.linalg.pinv(
+        normal / np.outer(scale, scale), hermitian=True
+    ) / np.outer(scale, scale)
+    return Scan(likelihood, best, value, covariance)
+
+
+def on_edge(likelihood: Likelihood, parameters: Floats) -> NDArray[np.bool_]:
+    """Return which parameters lie on an edge of what is allowed."""
+    return np.asarray((parameters <= likelihood.low + ON_EDGE) | (parameters >= likelihood.high - ON_EDGE))
+
+
+def ends(scan: Scan, number: int, rise: float) -> tuple[float, float]:
+    """Return the ends of a parameter's range; one that the edge of what is allowed cuts short lies on it.
+
+    Raises
+    ------
+    BetterFound
+        With parameters that are more likely than the best known.
+    """
+    return _end(scan, number, rise, -1.0), _end(scan, number, rise, 1.0)
+
+
+def rise_at(scan: Scan, place: dict[int, float]) -> float:
+    """Return by how much -2 ln L rises where some parameters are held at a `place`, the others at their best.
+
+    Raises
+    ------
+    BetterFound
+        As `ends`.
+    """
+    start = scan.best.copy()
+    held = np.zeros(len(start), dtype=bool)
+    for number, value in place.items():
+        start[number], held[number] = value, True
+    found, value = descend(scan.likelihood, start, held)
+    if value < scan.value - BETTER:
+        raise BetterFound(found)
+    return max(0.0, value - scan.value)
+
+
+def absences(scan: Scan) -> dict[tuple[int, ...], float]:
+    """Return by how much -2 ln L rises without each release whose rate is free, and without each two of them.
+
+    Raises
+    ------
+    BetterFound
+        As `ends`.
+    """
+    rates = [
+        n for n, slot in enumerate(scan.likelihood.slots) if slot.key is None and slot.component is not None
+    ]
+    groups = [*((n,) for n in rates), *itertools.combinations(rates, 2)]
+    return {group: rise_at(scan, dict.fromkeys(group, 0.0)) for group in groups}
+
+
+def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
+    likelihood, wanted = scan.likelihood, math.sqrt(rise)
+    edge = float((likelihood.low if sign < 0.0 else likelihood.high)[number])
+    best = float(scan.best[number])
+    if sign * (edge - best) <= ON_EDGE:
+        return edge
+    spread = scan.covariance[number, number]
+    width = (
+        math.sqrt(spread)
+        if math.isfinite(spread) and spread > 0.0
+        else _first_width(likelihood, number, best)
+    )
+    inner, outer = best, math.nan
+    low_root, high_root = 0.0, math.nan
+    start, place = scan.best, best + sign * width * wanted
+    for _ in range(MOST_TRIALS):
+        place = min(place, edge) if sign > 0.0 else max(place, edge)
+        start, root = _profile(scan, number, place, start)
+        if abs(root - wanted) < CLOSE:
+            return place
+        if root < wanted:
+            if place == edge:
+                return edge
+            inner, low_root = place, root
+        else:
+            outer, high_root = place, root
+        if math.isnan(outer):
+            # sqrt(rise) runs nearly straight with the distance from the best.
+            step = (wanted / root if root > 0.0 else FAR_STEP) * (place - best)
+            place = best + sign * min(
+                max(sign * step * 1.05, 1.2 * sign * (place - best)), FAR_STEP * sign * (place - best)
+            )
+        else:
+            share = (wanted - low_root) / (high_root - low_root)
+            place = inner + min(max(share, 0.05), 0.95) * (outer - inner)
+            if abs(outer - inner) <= 1e-10 * (1.0 + abs(best)):
+                return place
+    return place
+
+
+def _first_width(likelihood: Likelihood, number: int, best: float) -> float:
+    """Return a width to begin with where no curvature tells one: what the parameter alone would have."""
+    at = np.where(np.isfinite(likelihood.low), likelihood.low, 0.0)
+    at = np.where(np.isfinite(likelihood.high), 0.5 * (at + likelihood.high), at)
+    at[number] = best
+    slope = likelihood.residuals(at)[1][:, number]
+    norm = float(np.sqrt(slope @ slope))
+    span = likelihood.high[number] - likelihood.low[number]
+    width = 1.0 / norm if norm > 0.0 else 0.1
+    return float(min(width, 0.25 * span)) if math.isfinite(span) else width
+
+
+def _profile(scan: Scan, number: int, place: float, near: Floats) -> tuple[Floats, float]:
+    """Return the parameters at their best for one of them held at `place`, and the square root of the rise."""
+    start = near.copy()
+    start[number] = place
+    held = np.zeros(len(start), dtype=bool)
+    held[number] = True
+    found, value = descend(scan.likelihood, start, held)
+    if value < scan.value - BETTER:
+        raise BetterFound(found)
+    return found, math.sqrt(max(0.0, value - scan.value))

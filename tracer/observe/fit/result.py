@@ -1,0 +1,75 @@
+"""What a comparison of products with a measured profile gives, as plain records for commands and figures."""
+
+from collections.abc import Mapping
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+
+class Estimate(NamedTuple):
+    """A fitted number with its ranges of 68.27 % and 95 %; an end that meets the edge of what is allowed lies on it."""
+
+    best: float
+    low68: float
+    high68: float
+    low95: float
+    high95: float
+
+
+class Points(NamedTuple):
+    """The profile and what the best fit makes of it, N points, values in `unit`.
+
+    `position` in `position_unit`, which counts what `position_words` say; `sigma` of the measurement, `model_error` of
+    the Monte Carlo; `upper` marks upper limits; `residual` is (value - model) over both errors together; `parts` the
+    releases by name, `background` what was added to them.
+    """
+
+    position: Floats
+    value: Floats
+    sigma: Floats
+    upper: NDArray[np.bool_]
+    model: Floats
+    model_error: Floats
+    residual: Floats
+    parts: Mapping[str, Floats]
+    background: Floats
+    unit: str
+    position_unit: str
+    position_words: str
+
+
+class Correlations(NamedTuple):
+    """Correlation `matrix` (P, P) of the free parameters `names`; NaN for one that lies on the edge of its range."""
+
+    names: tuple[str, ...]
+    matrix: Floats
+
+
+class Comparison(NamedTuple):
+    """Result of a comparison.
+
+    `rates` [s-1] by release; `parameters` by release and name, temperatures [K], energies [J]; `background` in the unit
+    of the points, None where it was not fitted. `chi_square` counts measured points alone; `minus_two_log_likelihood`
+    (without constants) upper limits as well. `probability` of a chi-square as large or larger. `statements` say what
+    the fit tells and cannot tell, `warnings` what is doubtful.
+    """
+
+    title: str
+    products: tuple[str, ...]
+    what: str
+    view: str
+    rates: Mapping[str, Estimate]
+    held_rates: Mapping[str, float]
+    parameters: Mapping[str, Mapping[str, Estimate]]
+    background: Estimate | None
+    chi_square: float
+    degrees_of_freedom: int
+    probability: float
+    minus_two_log_likelihood: float
+    correlations: Correlations
+    points: Points
+    statements: tuple[str, ...]
+    warnings: tuple[str, ...]
