@@ -1,13 +1,14 @@
 """Figures of one number a point: lines with error bars against what varies, or a map over two of it."""
 
 from collections.abc import Sequence
+from math import floor, log10
 from typing import Any, NamedTuple
 
 import numpy as np
 import xarray as xr
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.ticker import MaxNLocator
+from matplotlib.ticker import FuncFormatter, MaxNLocator
 from numpy.typing import NDArray
 
 from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
@@ -18,7 +19,7 @@ from tracer.plots.log_range import log_range
 from tracer.plots.log_ticks import set_log_ticks
 from tracer.plots.significance import HATCHED_WORDS, say_nothing
 from tracer.plots.style import SMALL_SIZE, WIDTHS, Box, Width, axes_in, styled
-from tracer.plots.swept.axes import Points, Values
+from tracer.plots.swept.axes import KEY, Points, Values
 from tracer.plots.words import broken, framed_figure, plain
 
 LEFT, RIGHT, TOP, BOTTOM, LEGEND_GAP = 16.5, 5.0, 2.0, 10.5, 1.0
@@ -31,7 +32,15 @@ LOG_FROM = 30.0
 MOST_DECADES = 6.0
 MARKERS = ("o", "s", "^", "D", "v", "P")
 ERROR_WORDS = "Error bars: one standard error of the Monte Carlo sampling of each point."
-SEED_WORDS = "All points have the same random numbers: they differ by less than their error bars say."
+SEED_WORDS = (
+    "Points share their random numbers: differences between them are usually known better than the bars say."
+)
+SEED = "ensemble.seed"
+PLAIN = (1e-3, 1e5)
+"""Numbers between these are written without powers of ten."""
+STEPS, STEPS_OF_ANGLES = (1, 2, 5, 10), (1, 1.5, 3, 4.5, 6, 9, 10)
+ARROW = 0.05
+"""Length of the arrows of lower limits, over the axis."""
 BARS: dict[str, Any] = {"elinewidth": 0.6, "capsize": 1.5, "capthick": 0.6, "markersize": 3.0}
 
 
@@ -86,13 +95,15 @@ def lines_figure(
             TOP + HEIGHTS[width] + BOTTOM + legend,
             str(sweep.attrs.get("title", "")),
             words.subtitle,
-            " ".join(text for text in (words.caption, ERROR_WORDS, SEED_WORDS, _pair_words(points)) if text),
+            " ".join(
+                text for text in (words.caption, ERROR_WORDS, _seed_words(sweep), _pair_words(points)) if text
+            ),
         )
         across = WIDTHS[width] - LEFT - RIGHT
         axes = axes_in(figure, Box(LEFT, box.bottom + legend + BOTTOM, across, HEIGHTS[width]))
         _set_axis(axes, points.along)
-        _set_numbers(axes, [line.field for line in lines])
         axes.set(xlabel=plain(points.along.label), ylabel=words.label)
+        _set_numbers(axes, [line.field for line in lines])
         axes.grid(color="0.92", linewidth=0.4)
         axes.set_axisbelow(True)
         for line in lines:
@@ -155,16 +166,17 @@ def _draw_line(axes: Axes, along: Values, line: Line) -> None:
     # Bars themselves are never dashed.
     for part in bars.lines[2]:
         part.set_linestyle("-")
-    limits = hit & line.at_least if line.at_least is not None else np.zeros_like(hit)
-    if limits.any():
-        axes.plot(
+    if line.at_least is not None and (limits := hit & line.at_least).any():
+        low, high = axes.get_ylim()
+        axes.errorbar(
             x[limits],
             field.value[limits],
-            linestyle="none",
-            marker=r"$\uparrow$",
-            markersize=8.0,
+            yerr=ARROW * (high - low),
+            lolims=True,
+            fmt="none",
             color=line.look.colour,
-            gid="lower limits",
+            elinewidth=0.6,
+            capsize=2.0,
         )
 
 
@@ -186,18 +198,28 @@ def _set_axis(axes: Axes, values: Values, across: bool = True) -> None:
     else:
         room = ROOM * (high - low or max(abs(low), 1.0))
         limits(low - room, high + room)
-        axis.set_major_locator(MaxNLocator(8))
+        steps = STEPS_OF_ANGLES if values.unit == "deg" else STEPS
+        axis.set_major_locator(MaxNLocator(8, steps=steps))
 
 
 def _set_numbers(axes: Axes, fields: Sequence[Field]) -> None:
+    """Give the vertical axis a scale on which all numbers are seen, from 0 where they are of one size."""
     hit = np.concatenate([one.value[one.hit] for one in fields])
-    high = [(one.value + np.nan_to_num(one.error))[one.hit].max(initial=0.0) for one in fields]
-    if hit.size and float(hit.max()) > LOG_FROM * float(hit.min()):
+    if not hit.size:
+        return
+    if float(hit.max()) > LOG_FROM * float(hit.min()):
         span = log_range(fields, MOST_DECADES) or (1.0, 10.0)
         axes.set(yscale="log", ylim=span)
         set_log_ticks(axes.yaxis, *span)
-    elif hit.size:
-        axes.set_ylim(0.0, max(map(float, high)) * (1.0 + ROOM))
+        if PLAIN[0] < span[0] and span[1] < PLAIN[1]:
+            axes.yaxis.set_major_formatter(FuncFormatter(lambda y, _: f"{y:g}"))
+        return
+    high = max(float((one.value + np.nan_to_num(one.error))[one.hit].max(initial=0.0)) for one in fields)
+    axes.set_ylim(0.0, high * (1.0 + 2.0 * ROOM))
+    if not PLAIN[0] < high < PLAIN[1]:
+        power = floor(log10(high))
+        axes.yaxis.set_major_formatter(FuncFormatter(lambda y, _: f"{y / 10.0**power:g}"))
+        axes.set_ylabel(axes.get_ylabel().replace("(", rf"($10^{{{power}}}$ ", 1))
 
 
 def _edges(values: Values) -> NDArray[np.float64]:
@@ -213,6 +235,11 @@ def _edges(values: Values) -> NDArray[np.float64]:
 
 def _ends(edges: NDArray[np.float64]) -> tuple[float, float]:
     return float(edges.min()), float(edges.max())
+
+
+def _seed_words(sweep: xr.Dataset) -> str:
+    swept = any(one.attrs.get(KEY) == SEED for one in sweep.variables.values())
+    return "" if swept else SEED_WORDS
 
 
 def _pair_words(points: Points) -> str:
