@@ -113,7 +113,11 @@ def command(
     """Trace a run file over lists or ranges of its values and write one product with the swept dimensions."""
     if json and not check:
         raise InputError("--json: goes with --check")
-    if point is not None and is_sweep(sweep_file):
+    if Path(sweep_file).suffix == ENDING or is_sweep(sweep_file):
+        if point is None:
+            raise InputError(
+                f"{sweep_file}: is a product, not a sweep file; --point N takes one point out of it"
+            )
         _take_out(sweep_file, point, output, overwrite)
         return
     sweep = load_sweep(sweep_file, tuple(settings or ()))

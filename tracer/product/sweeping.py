@@ -37,15 +37,39 @@ OPEN_FILES = 32
 ReadPoint = Callable[[int, str, Key], NDArray[Any]]
 
 
+class PointHead(NamedTuple):
+    """A point's product without its values: global attributes, and the shapes of its variables."""
+
+    path: Path
+    attributes: dict[str, Any]
+    shapes: dict[str, tuple[int, ...]]
+
+
+def read_head(path: Path) -> PointHead:
+    """Return the head of a point's product.
+
+    Raises
+    ------
+    InputError
+        The file cannot be read.
+    """
+    try:
+        with netCDF4.Dataset(path) as file:
+            attributes = {key: file.getncattr(key) for key in file.ncattrs()}
+            return PointHead(path, attributes, {name: one.shape for name, one in file.variables.items()})
+    except (OSError, RuntimeError) as error:
+        raise InputError(f"{path}: is damaged and cannot be read ({error})") from None
+
+
 @contextmanager
 def swept_product(
-    points: Sequence[Path], axes: Sequence[SweptAxis], attributes: Mapping[str, Any]
+    points: Sequence[PointHead], axes: Sequence[SweptAxis], attributes: Mapping[str, Any]
 ) -> Iterator[xr.Dataset]:
     """Yield the product of a sweep, lazy: each value is read from its point's file when it is asked for.
 
     Parameters
     ----------
-    points : sequence of Path
+    points : sequence of PointHead
         Products of the points, of one layout; the last swept dimension runs fastest.
     axes : sequence of SweptAxis
         What varies; their dimensions lead those of a run's variables.
@@ -58,7 +82,9 @@ def swept_product(
         A point's file is no product, or has other variables or shapes than the first.
     """
     lengths = shape_of(axes)
-    with open_product(points[0]) as first:
+    for point in points:
+        _check_shapes(points[0], point)
+    with open_product(points[0].path) as first:
         template = without_label_indexes(first)
         shared = {name: one.load() for name, one in template.variables.items() if _is_shared(name, template)}
         swept = {
@@ -67,14 +93,11 @@ def swept_product(
             if name not in shared
         }
         coordinates = {str(name): shared[name] for name in template.coords}
-    shapes = {str(name): one.shape for name, one in shared.items()}
-    shapes |= {name: one.shape for name, one in swept.items()}
-    notes = [_attributes_of(path, shapes) for path in points]
     coordinates |= {axis.variable: _axis_variable(axis) for axis in axes}
-    with _Files(points) as files:
+    with _Files([point.path for point in points]) as files:
         variables = {str(name): one for name, one in shared.items() if name not in coordinates}
         variables |= {name: _swept(name, one, lengths, files.read) for name, one in swept.items()}
-        variables |= _point_variables(notes, lengths)
+        variables |= _point_variables([point.attributes for point in points], lengths)
         named = {**attributes, DIMENSIONS: " ".join(lengths)}
         yield with_label_indexes(xr.Dataset(variables, coordinates, named))
 
@@ -177,15 +200,12 @@ def _point_variables(
     return made
 
 
-def _attributes_of(path: Path, shapes: Mapping[str, tuple[int, ...]]) -> dict[str, Any]:
-    with open_product(path) as ds:
-        stored = without_label_indexes(ds)
-        found = {str(name): variable.shape for name, variable in stored.variables.items()}
-        if found != shapes:
-            odd = sorted(name for name in found.keys() | shapes.keys() if found.get(name) != shapes.get(name))
-            words = "replicates" if all(name.endswith(REPLICATES) for name in odd) else ", ".join(odd[:3])
-            raise InputError(f"{path.name}: has another shape than the first point in {words}")
-        return dict(ds.attrs)
+def _check_shapes(first: PointHead, point: PointHead) -> None:
+    ours, theirs = first.shapes, point.shapes
+    odd = sorted(name for name in ours.keys() | theirs.keys() if ours.get(name) != theirs.get(name))
+    if odd:
+        words = "replicates" if all(name.endswith(REPLICATES) for name in odd) else ", ".join(odd[:3])
+        raise InputError(f"{point.path.name}: has another shape than the first point in {words}")
 
 
 def _plain(value: Any) -> Any:

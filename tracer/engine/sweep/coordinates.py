@@ -107,5 +107,5 @@ def _refuse_back_and_forth(subject: str, axis: Axis, values: np.ndarray[Any, Any
     if not (np.all(steps > 0.0) or np.all(steps < 0.0)):
         turn = int(np.flatnonzero(np.sign(steps) != np.sign(steps[0]))[0]) + 1
         raise InputError(
-            f'{subject}: turn back at "{axis.words[turn + 1]}"; numbers along an axis must rise or fall throughout'
+            f'{subject}: turn back at "{axis.words[turn]}"; numbers along an axis must rise or fall throughout'
         )

@@ -67,8 +67,9 @@ class Sweep(NamedTuple):
 
     @property
     def text(self) -> str:
-        """The sweep file with the run file that it names, as TOML."""
-        return tomli_w.dumps({**self.base, SWEEP: _without_absent(self.table.model_dump())})
+        """The sweep file with the run file that it names in it, as TOML."""
+        table = self.table.model_dump(exclude_unset=True, exclude={"run"})
+        return tomli_w.dumps({**self.base, SWEEP: table})
 
     def __len__(self) -> int:
         """Return the number of points."""
@@ -233,9 +234,3 @@ def _check_axes(sweep: Sweep) -> None:
         raise InputError(
             f"{subject}: {' x '.join(map(str, sweep.shape))} are {len(sweep)} points; at most {MOST_POINTS} are allowed"
         )
-
-
-def _without_absent(value: Any) -> Any:
-    if isinstance(value, dict):
-        return {key: _without_absent(one) for key, one in value.items() if one is not None}
-    return [_without_absent(one) for one in value] if isinstance(value, list | tuple) else value

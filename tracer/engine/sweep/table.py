@@ -112,10 +112,11 @@ class AxisTable(Table):
                     "labels", f"has {len(self.labels)} entries; must be as many as values, {len(self.values)}"
                 )
             return self
+        if not given:
+            raise conflict("values", _NO_VALUES)
         for key in ("first", "last", "count"):
             if getattr(self, key) is None:
-                missing = f"missing beside {sorted(given)[0]}; a range needs first, last and count"
-                raise conflict(key, missing) if given else conflict("values", _NO_VALUES)
+                raise conflict(key, f"missing beside {sorted(given)[0]}; a range needs first, last and count")
         if self.labels is not None:
             raise conflict("labels", "stands beside a range; goes with values")
         return self

@@ -1,7 +1,7 @@
 """The job of a sweep: its points one after the other, then all of them in one product."""
 
 import os
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -16,10 +16,10 @@ from tracer.engine.tracing import available_processors, run
 from tracer.errors import InputError, TracerError
 from tracer.product.lock import output_lock
 from tracer.product.provenance import global_attributes
-from tracer.product.reading import open_product, open_sweep
+from tracer.product.reading import open_sweep
 from tracer.product.replacing import remove_leftovers
 from tracer.product.sweep_layout import KIND, SWEEP, SWEEP_HASH
-from tracer.product.sweeping import swept_product
+from tracer.product.sweeping import PointHead, read_head, swept_product
 from tracer.product.writing import check_output, save_product, save_sweep
 
 SUMMED = ("flights", "integration_steps", "kernel_seconds", "wall_seconds")
@@ -205,10 +205,13 @@ def _trace_point(job: _Job, one: PreparedPoint, finished: int, watch: Watcher | 
 def _put_together(
     prepared: PreparedSweep, store: PointStore, output: str | os.PathLike[str], overwrite: bool
 ) -> None:
-    paths = [store.path(one.identity) for one in prepared.points]
-    kept = Kept(len(paths), 0, 0)
+    kept = Kept(len(prepared.points), 0, 0)
     try:
-        with swept_product(paths, prepared.axes, _attributes(prepared, paths)) as ds:
+        known = {one.identity: read_head(store.path(one.identity)) for one in prepared.points}
+        heads = [known[one.identity] for one in prepared.points]
+        # Each product counts once, however many points it stands for.
+        attributes = _attributes(prepared, list(known.values()))
+        with swept_product(heads, prepared.axes, attributes) as ds:
             save_sweep(ds, output, overwrite)
     except KeyboardInterrupt:
         raise SweepInterrupted(kept) from None
@@ -216,34 +219,23 @@ def _put_together(
         raise SweepStopped(str(error), kept, error.exit_code) from None
 
 
-def _attributes(prepared: PreparedSweep, paths: Sequence[Path]) -> dict[str, Any]:
+def _attributes(prepared: PreparedSweep, products: Sequence[PointHead]) -> dict[str, Any]:
     sweep = prepared.sweep
-    summed: dict[str, Any] = dict.fromkeys(SUMMED, 0)
-    references: list[str] = []
-    workers = 0
-    # Each product once, however many points it stands for.
-    for attributes in _attributes_of(dict.fromkeys(paths)):
-        for name in SUMMED:
-            summed[name] += attributes[name]
-        references += [text for text in str(attributes["references"]).split("; ") if text not in references]
-        workers = max(workers, int(attributes["workers"]))
+    each = [one.attributes for one in products]
+    references = [text for one in each for text in str(one["references"]).split("; ")]
     return {
-        **global_attributes(sweep.title, f"swept from {Path(sweep.file).name}", references),
+        **global_attributes(
+            sweep.title, f"swept from {Path(sweep.file).name}", list(dict.fromkeys(references))
+        ),
         KIND: SWEEP,
         "sweep_file": sweep.text,
         SWEEP_HASH: prepared.sweep_hash,
         "points": len(sweep),
-        **summed,
-        "workers": workers,
+        **{name: sum(one[name] for one in each) for name in SUMMED},
+        "workers": max(int(one["workers"]) for one in each),
         "body_radius": prepared.body_radius,
         "complete": 1,
     }
-
-
-def _attributes_of(paths: Sequence[Path] | dict[Path, None]) -> Iterator[dict[Any, Any]]:
-    for path in paths:
-        with open_product(path) as ds:
-            yield ds.attrs
 
 
 class _OverallWatch:
