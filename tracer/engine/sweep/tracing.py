@@ -175,7 +175,13 @@ def _trace_all(job: _Job) -> None:
     for done, one in enumerate(waiting):
         if watch is not None:
             watch.begin(one)
-        _trace_point(job, one, len(points) - len(waiting) + done, watch)
+        finished = len(points) - len(waiting) + done
+        try:
+            _trace_point(job, one, finished, watch)
+        except SweepInterrupted:
+            raise
+        except KeyboardInterrupt:
+            raise SweepInterrupted(Kept(finished, one.point.number, 0)) from None
 
 
 def _trace_point(job: _Job, one: PreparedPoint, finished: int, watch: Watcher | None) -> None:
@@ -186,7 +192,8 @@ def _trace_point(job: _Job, one: PreparedPoint, finished: int, watch: Watcher | 
     job.note("point", text, number=point.number, values=point.words)
 
     def kept() -> Kept:
-        return Kept(finished, point.number, checkpoints.kept_batches)
+        whole = job.store.path(one.identity).exists()
+        return Kept(finished + whole, point.number, 0 if whole else checkpoints.kept_batches)
 
     try:
         product = run(point.spec, job.workers, watch, job.executor, checkpoints=checkpoints, note=job.note)
