@@ -1,8 +1,8 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
-`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation`,
-`load_observation`, `compare` and `evaluate_law`, are loaded when they are first asked for, so that `import tracer` costs
-nothing.
+`load_run`, `run`, `open_product`, `save_product`, for sweeps `load_sweep`, `run_sweep`, `open_sweep` and `sweep_point`,
+and for observers `sightlines`, `load_plan`, `plan_observation`, `load_observation`, `compare` and `evaluate_law`, are
+loaded when they are first asked for, so that `import tracer` costs nothing.
 """
 
 from importlib import import_module
@@ -10,6 +10,8 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from tracer.engine.runspec.load import load_run
+    from tracer.engine.sweep.points import load_sweep
+    from tracer.engine.sweep.tracing import run_sweep
     from tracer.engine.tracing import run
     from tracer.observe.fit.comparison import compare
     from tracer.observe.observationspec.observation import load_observation
@@ -17,7 +19,8 @@ if TYPE_CHECKING:
     from tracer.observe.planspec.plan import load_plan
     from tracer.observe.responses import evaluate_law
     from tracer.observe.sightlines import sightlines
-    from tracer.product.reading import open_product
+    from tracer.product.reading import open_product, open_sweep
+    from tracer.product.sweeping import sweep_point
     from tracer.product.writing import save_product
 
 __all__ = [
@@ -27,11 +30,15 @@ __all__ = [
     "load_observation",
     "load_plan",
     "load_run",
+    "load_sweep",
     "open_product",
+    "open_sweep",
     "plan_observation",
     "run",
+    "run_sweep",
     "save_product",
     "sightlines",
+    "sweep_point",
 ]
 
 _HOMES = {
@@ -40,11 +47,15 @@ _HOMES = {
     "load_observation": "tracer.observe.observationspec.observation",
     "load_plan": "tracer.observe.planspec.plan",
     "load_run": "tracer.engine.runspec.load",
+    "load_sweep": "tracer.engine.sweep.points",
     "open_product": "tracer.product.reading",
+    "open_sweep": "tracer.product.reading",
     "plan_observation": "tracer.observe.plan",
     "run": "tracer.engine.tracing",
+    "run_sweep": "tracer.engine.sweep.tracing",
     "save_product": "tracer.product.writing",
     "sightlines": "tracer.observe.sightlines",
+    "sweep_point": "tracer.product.sweeping",
 }
 
 

@@ -35,6 +35,11 @@ COMMANDS = (
         "catalogue", "List the built-in bodies, gases and lines with sources.", "tracer.commands.catalogue"
     ),
     Entry("run", "Trace a run file's particles and write the product.", "tracer.commands.run"),
+    Entry(
+        "sweep",
+        "Trace a run file over lists or ranges of its values, into one product.",
+        "tracer.commands.sweep",
+    ),
     Entry("flight", "Follow one flight from a stated launch to its end.", "tracer.commands.flight"),
     Entry("merge", "Merge products of one scene, made with other seeds or batches.", "tracer.commands.merge"),
     Entry("summary", "Say what is in a product: budget, errors, checksum.", "tracer.commands.summary"),

@@ -155,6 +155,29 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
     raise ValueError(f"{quoted(quantity.unit)} is not a unit of any dimension in use")
 
 
+def si_unit(name: str) -> str:
+    """Return the unit in which `si` gives what is measured in the unit `name`.
+
+    Raises
+    ------
+    ValueError
+        As `si`.
+    """
+    unit = _unit(DIMENSIONS["length"].unit if name == RADII else name)
+    for dimension in DIMENSIONS.values():
+        if unit is not None and unit.is_equivalent(_unit(dimension.unit)):
+            return dimension.unit
+    raise ValueError(f"{quoted(name)} is not a unit of any dimension in use")
+
+
+def as_written(text: str) -> Quantity | None:
+    """Return the number and the unit of a text, whatever its unit is worth; None where it is no finite number."""
+    match = _QUANTITY.fullmatch(text)
+    if match is None or not math.isfinite(float(match[1])):
+        return None
+    return Quantity(float(match[1]), " ".join(match[2].split()))
+
+
 def conversion_factor(name: str, wanted: str) -> float | None:
     """Return by how much a number in unit `name` is multiplied to be in unit `wanted`, None where it cannot be.
 

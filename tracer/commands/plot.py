@@ -1,5 +1,6 @@
 """`tracer plot`: a figure of a product."""
 
+import math
 from enum import StrEnum
 from typing import Annotated
 
@@ -10,14 +11,17 @@ from tracer.commands.figure_file import ENDINGS, check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
-from tracer.plots.figures import FIGURES, Choice, What
+from tracer.plots.figures import FIGURES, SWEPT_FIGURES, Choice, What
 from tracer.plots.plan_table import read_plan
 from tracer.plots.saving import DOTS_PER_INCH, figure_bytes
+from tracer.plots.swept.brightness import SkyPlace
+from tracer.plots.swept.column import Place
 from tracer.plots.timeline import timeline
 from tracer.product.layout import LAUNCH_SPEED, REPLICATES
 from tracer.product.lock import output_lock
-from tracer.product.reading import load_all, open_product
+from tracer.product.reading import is_sweep, load_all, open_product, open_sweep
 from tracer.product.writing import save_bytes
+from tracer.units import quoted
 
 
 class WidthName(StrEnum):
@@ -28,9 +32,15 @@ class WidthName(StrEnum):
 
 
 HELP = " ".join(
-    [*(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()), f"{What.PLAN}: a plan in time."]
+    [
+        *(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()),
+        f"{What.PLAN}: a plan in time.",
+        "Of a sweep:",
+        *(f"{what}: {drawing.help}." for what, drawing in SWEPT_FIGURES.items()),
+    ]
 )
-OF_IMAGES = " and ".join(what for what, drawing in FIGURES.items() if drawing.of_image)
+DRAWINGS = {**FIGURES, **SWEPT_FIGURES}
+OF_IMAGES = " and ".join(what for what, drawing in DRAWINGS.items() if drawing.of_image)
 
 
 def command(
@@ -38,7 +48,7 @@ def command(
         str,
         typer.Argument(
             metavar="PRODUCT.nc",
-            help="A product of `tracer run`; for --what plan the table that `tracer plan` wrote.",
+            help="A product of `tracer run` or `tracer sweep`; for --what plan the table that `tracer plan` wrote.",
             show_default=False,
         ),
     ],
@@ -83,6 +93,38 @@ def command(
             metavar="NAME", help="Draw one release; otherwise the sum over all of them.", show_default=False
         ),
     ] = None,
+    fate: Annotated[
+        str | None,
+        typer.Option(
+            metavar="NAME", help="Of a sweep: the share of one fate, such as escaped.", show_default=False
+        ),
+    ] = None,
+    place: Annotated[
+        str | None,
+        typer.Option(
+            metavar="LATITUDE,HOUR",
+            help="Of a sweep: the place whose column is drawn, in degrees and hours of local time; by default the "
+            "means of day and night side.",
+            show_default=False,
+        ),
+    ] = None,
+    sky: Annotated[
+        str | None,
+        typer.Option(
+            metavar="RIGHT,UP",
+            help="Of a sweep: the line of sight, by its place in the image from the body's centre, in body radii; by "
+            "default the brightest of the first point.",
+            show_default=False,
+        ),
+    ] = None,
+    level: Annotated[
+        float | None,
+        typer.Option(
+            metavar="NUMBER",
+            help="Of a sweep: down to what a tail counts, in kR, or in cm-2 without --line.",
+            show_default=False,
+        ),
+    ] = None,
     width: Annotated[
         WidthName, typer.Option(help="column: 88 mm, one column of a journal. full: 180 mm, the whole page.")
     ] = WidthName.FULL,
@@ -94,30 +136,79 @@ def command(
         ("--image", image_name, _of_image(what), OF_IMAGES),
         ("--line", line, _of_image(what), OF_IMAGES),
         ("--release", release, what is not What.PLAN, "figures of a product"),
+        ("--fate", fate, what is What.SWEPT_LEDGER, What.SWEPT_LEDGER),
+        ("--place", place, what is What.SWEPT_COLUMN, What.SWEPT_COLUMN),
+        ("--sky", sky, what is What.SWEPT_BRIGHTNESS, What.SWEPT_BRIGHTNESS),
+        ("--level", level, what is What.SWEPT_TAIL, What.SWEPT_TAIL),
     ):
         if value is not None and not goes:
             raise InputError(f"{option}: goes with --what {words}, not with --what {what}")
     refuse_inputs(output, [product])
     ending = check_figure_file("--output", output, overwrite)
-    choice = Choice(release, image_name, line, "column" if width is WidthName.COLUMN else "full")
+    choice = Choice(
+        release,
+        image_name,
+        line,
+        "column" if width is WidthName.COLUMN else "full",
+        fate,
+        None if place is None else Place(*_two_numbers("--place", place, "0,12")),
+        None if sky is None else SkyPlace(*_two_numbers("--sky", sky, "-5,0")),
+        _positive("--level", level),
+    )
     with output_lock(output):
         if what is What.PLAN:
             content = figure_bytes(timeline(read_plan(product), choice.width), ending, dpi)
+        elif what in SWEPT_FIGURES:
+            content = _of_sweep(product, what, choice, ending, dpi)
         else:
             content = _of_product(product, what, choice, ending, dpi)
         save_bytes(content, output, overwrite)
     typer.echo(output)
-    if what is What.PLAN:
+    if what in SWEPT_FIGURES:
+        name_next("sweep", product, "--point", "1", "-o", "point-1.nc")
+    elif what is What.PLAN:
         name_next("report", "PRODUCT.nc", product, "-o", "report.html")
     else:
         name_next("report", product, "-o", "report.html")
 
 
 def _of_image(what: What) -> bool:
-    return what in FIGURES and FIGURES[what].of_image
+    return what in DRAWINGS and DRAWINGS[what].of_image
+
+
+def _two_numbers(option: str, text: str, example: str) -> tuple[float, float]:
+    try:
+        first, second = (float(part) for part in text.split(","))
+    except ValueError:
+        first = second = math.nan
+    if not (math.isfinite(first) and math.isfinite(second)):
+        raise InputError(f"{option}: {quoted(text)} is not two numbers; write for example {example}")
+    return first, second
+
+
+def _positive(option: str, value: float | None) -> float | None:
+    if value is not None and not (math.isfinite(value) and value > 0.0):
+        raise InputError(f"{option}: {value:g} is out of range; must be above 0")
+    return value
+
+
+def _of_sweep(product: str, what: What, choice: Choice, ending: str, dpi: int) -> bytes:
+    """Return a figure of a sweep's product, of which no more than a point at a time is read."""
+    with open_sweep(product) as ds:
+        try:
+            return figure_bytes(SWEPT_FIGURES[what].draw(ds, choice), ending, dpi)
+        except InputError as error:
+            raise InputError(f"{product}: {error}") from None
+        except (OSError, RuntimeError) as error:
+            raise InputError(f"{product}: is damaged: its data cannot be read ({error})") from None
 
 
 def _of_product(product: str, what: What, choice: Choice, ending: str, dpi: int) -> bytes:
+    if is_sweep(product):
+        words = ", ".join(SWEPT_FIGURES)
+        raise InputError(
+            f"--what: {what} is a figure of a run, and {product} is a sweep's, which has {words}"
+        )
     with open_product(product) as stored:
         spared = [name for name in map(str, stored.data_vars) if _is_spared(name, what)]
         # No figure shows responses, the largest part of a product that has them.

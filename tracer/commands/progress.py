@@ -65,4 +65,5 @@ def _figures(status: Status, seconds: float) -> str:
     rate = status.flights / seconds if seconds > 0.0 else 0.0
     error = status.relative_error
     precision = "" if error is None else f", {status.known} known to {100 * error:.2g} %"
-    return f"{rate:,.0f} flights/s on {status.workers} workers{precision}"
+    part = f"{status.part}, " if status.part else ""
+    return f"{part}{rate:,.0f} flights/s on {status.workers} workers{precision}"

@@ -9,11 +9,13 @@ from tracer.commands.arguments import JSON, PRODUCT_FILE
 from tracer.commands.budget_table import print_budget
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
+from tracer.commands.sweep_tables import print_point_budgets
 from tracer.commands.tables import print_rows, print_wrapped_rows
 from tracer.errors import InputError
 from tracer.plots.moving import motion_of, time_words
 from tracer.product.checksum import data_checksum
-from tracer.product.reading import load_all, open_product
+from tracer.product.reading import is_sweep, load_all, open_product, open_sweep
+from tracer.product.sweep_layout import swept_dimensions
 
 SHOWN = (
     "title",
@@ -36,10 +38,17 @@ SHOWN = (
 
 VELOCITY_UNIT = "m s-1"
 UNKNOWN = "unknown"
+SHOWN_OF_SWEEPS = (
+    *("title", "created", "source", "git_commit", "swept_dimensions", "points", "flights", "kernel_seconds"),
+    *("wall_seconds", "workers", "sweep_hash", "data_checksum"),
+)
 
 
 def command(product: PRODUCT_FILE, json: JSON = False) -> None:
     """Say what is in a product: scene, particle budget, errors, checksum (which is verified)."""
+    if is_sweep(product):
+        _sweep(product, json)
+        return
     with open_product(product) as ds:
         load_all(ds, product)
         if data_checksum(ds) != ds.attrs.get("data_checksum"):
@@ -55,6 +64,43 @@ def command(product: PRODUCT_FILE, json: JSON = False) -> None:
         typer.echo("variables, with the median relative standard error of their cells that were hit")
         print_rows(_variable_rows(ds))
     name_next("plot", product, "--what", "density", "-o", "density.png")
+
+
+def _sweep(product: str, json: bool) -> None:
+    """Say what is in the product of a sweep, its points and their budgets."""
+    with open_sweep(product) as ds:
+        try:
+            found = data_checksum(ds)
+        except (OSError, RuntimeError, ValueError) as error:
+            raise InputError(f"{product}: is damaged: its data cannot be read ({error})") from None
+        if found != ds.attrs.get("data_checksum"):
+            raise InputError(
+                f"{product}: its data do not match its data_checksum; the file was changed or damaged"
+            )
+        known = {key: ds.attrs[key] for key in SHOWN_OF_SWEEPS if key in ds.attrs}
+        if json:
+            print_json({**known, "swept": _swept(ds)})
+            return
+        print_rows([(key, _text(value)) for key, value in known.items()])
+        print_point_budgets(ds)
+        print_rows(
+            [
+                (name, str(ds[name].attrs["units"]), " x ".join(map(str, ds[name].dims)))
+                for name in _tallied(ds)
+            ]
+        )
+    name_next("sweep", product, "--point", "1", "-o", "point-1.nc")
+
+
+def _swept(ds: xr.Dataset) -> dict[str, Any]:
+    """Return what varies, with its values in SI units, and each fate's rate over the swept dimensions and releases."""
+    axes = [name for name in map(str, ds.variables) if "run_file_key" in ds[name].attrs]
+    fates = {str(fate): ds["ledger"].sel(fate=fate).values.tolist() for fate in ds["fate_name"].values}
+    return {
+        "dimensions": list(swept_dimensions(ds.attrs)),
+        "values": {name: ds[name].values.tolist() for name in axes},
+        "ledger": fates,
+    }
 
 
 def _text(value: Any) -> str:

@@ -20,6 +20,8 @@ class Status(NamedTuple):
     known: str
     """What the relative error is one of, in words."""
     workers: int
+    part: str = ""
+    """Which part of a larger job is under way, in words; empty where the run is all."""
 
 
 class Watcher(Protocol):

@@ -1,4 +1,4 @@
-"""All figures of a product by the word that asks for them."""
+"""All figures of a product, of a run or a sweep, by the word that asks for them."""
 
 from collections.abc import Callable
 from enum import StrEnum
@@ -14,11 +14,15 @@ from tracer.plots.image import image
 from tracer.plots.ledger import ledger
 from tracer.plots.profile import profile
 from tracer.plots.style import Width
+from tracer.plots.swept.brightness import SkyPlace, swept_brightness
+from tracer.plots.swept.column import Place, swept_column
+from tracer.plots.swept.ledger import swept_ledger
+from tracer.plots.swept.tail import swept_tail
 from tracer.plots.tail import tail
 
 
 class What(StrEnum):
-    """The figures of a product, and that of a plan."""
+    """The figures of a product, that of a plan, and those of a sweep."""
 
     COLUMN = "column"
     DENSITY = "density"
@@ -32,15 +36,27 @@ class What(StrEnum):
     ESCAPE_MAP = "escape-map"
     ESCAPE_DIRECTIONS = "escape-directions"
     PLAN = "plan"
+    SWEPT_LEDGER = "swept-ledger"
+    SWEPT_COLUMN = "swept-column"
+    SWEPT_BRIGHTNESS = "swept-brightness"
+    SWEPT_TAIL = "swept-tail"
 
 
 class Choice(NamedTuple):
-    """What to draw of a product; None stands for all releases, the only image, column density."""
+    """What to draw of a product; None stands for all releases, the only image, column density.
+
+    The others are those of a sweep: a fate, a place on the ground, one in the sky, the level down to which a tail
+    counts.
+    """
 
     release: str | None = None
     image: str | None = None
     line: str | None = None
     width: Width = "full"
+    fate: str | None = None
+    place: Place | None = None
+    sky: SkyPlace | None = None
+    level: float | None = None
 
 
 class Drawing(NamedTuple):
@@ -80,4 +96,29 @@ FIGURES: dict[What, Drawing] = {
         "where they cross the outer sphere", partial(_map, MAPS[What.ESCAPE_DIRECTIONS])
     ),
 }
-"""Figures of a product: all but that of a plan."""
+"""Figures of a run's product."""
+
+
+def _swept_ledger(sweep: xr.Dataset, choice: Choice) -> Figure:
+    return swept_ledger(sweep, choice.release, choice.fate, choice.width)
+
+
+def _swept_column(sweep: xr.Dataset, choice: Choice) -> Figure:
+    return swept_column(sweep, choice.release, choice.place, choice.width)
+
+
+def _swept_brightness(sweep: xr.Dataset, choice: Choice) -> Figure:
+    return swept_brightness(sweep, choice.image, choice.line, choice.release, choice.sky, choice.width)
+
+
+def _swept_tail(sweep: xr.Dataset, choice: Choice) -> Figure:
+    return swept_tail(sweep, choice.level, choice.image, choice.line, choice.release, choice.width)
+
+
+SWEPT_FIGURES: dict[What, Drawing] = {
+    What.SWEPT_LEDGER: Drawing("what share escapes, is ionised, ..., against what varies", _swept_ledger),
+    What.SWEPT_COLUMN: Drawing("above the ground by day and night, or at --place", _swept_column),
+    What.SWEPT_BRIGHTNESS: Drawing("of one line of sight of an image, at --sky", _swept_brightness, True),
+    What.SWEPT_TAIL: Drawing("how far down the tail an image shows --level", _swept_tail, True),
+}
+"""Figures of a sweep's product."""

@@ -41,15 +41,22 @@ def summed(product: xr.Dataset, name: str, names: Sequence[str], add_up: Linear,
     factor : float
         Of the unit.
     """
-    chosen = product[[one for one in (name, name + REPLICATES) if one in product]].sel(release=list(names))
+    chosen = product[name].sel(release=list(names))
     with np.errstate(over="ignore", under="ignore", invalid="ignore"):
-        value = add_up(chosen[name].transpose(RELEASE, ...).values).sum(axis=0) * factor
+        value = add_up(chosen.transpose(RELEASE, ...).values).sum(axis=0) * factor
         if not has_replicates(product, name):
             return Field(value, np.full(value.shape, np.nan))
-        # One release at a time: in double precision all replicates at once would be large.
-        each = chosen[name + REPLICATES].transpose(RELEASE, REPLICATE, ...)
-        parts = sum(add_up(one.values.astype(np.float64)) for one in each) * factor
-        return Field(value, _standard_error(np.asarray(parts), _batches(product)))
+        return Field(value, _standard_error(*replicate_sums(product, name, names, add_up, factor)))
+
+
+def replicate_sums(
+    product: xr.Dataset, name: str, names: Sequence[str], add_up: Linear, factor: float
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return what `summed` adds up, for each replicate, shape (G, sums), and the batches in each, shape (G,)."""
+    # One release at a time: in double precision all replicates at once would be large.
+    each = product[name + REPLICATES].sel(release=list(names)).transpose(RELEASE, REPLICATE, ...)
+    parts = sum(add_up(one.values.astype(np.float64)) for one in each) * factor
+    return np.asarray(parts), _batches(product)
 
 
 def _batches(product: xr.Dataset) -> NDArray[np.float64]:

@@ -1,7 +1,7 @@
 """What a netCDF file claims to hold, judged before any of it is read."""
 
 import re
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -34,7 +34,24 @@ REAL_NUMBERS = ("kernel_seconds", "wall_seconds", "body_radius")
 TEXTS = ("title", "history", "source", "run_file", "scene_hash", "run_hash", "batch_ranges", "data_checksum")
 
 
-def why_suspicious(file: Any, size: int) -> str | None:
+LABEL_VARIABLES = frozenset(label.variable for label in LABELS)
+
+
+class Swept(NamedTuple):
+    """What a sweep's product has beside a run's: leading `dimensions`, variables of `text`, those that are `fixed`.
+
+    Of the layout's variables those that are not fixed have the leading dimensions.
+    """
+
+    dimensions: tuple[str, ...] = ()
+    text: frozenset[str] = frozenset()
+    fixed: frozenset[str] = frozenset()
+
+
+RUN = Swept()
+
+
+def why_suspicious(file: Any, size: int, swept: Swept = RUN) -> str | None:
     """Return why a file of `size` bytes, opened as netCDF4.Dataset, cannot be a product's; None if it can.
 
     Only names, shapes, types and attributes are looked at: a file may claim any size without having it.
@@ -48,19 +65,18 @@ def why_suspicious(file: Any, size: int) -> str | None:
             return f"has {len(dimension)} positions along {name}; at most {MOST_ALONG} are allowed"
     claimed = 0
     for name, variable in file.variables.items():
-        if reason := _why_odd(name, variable):
+        if reason := _why_odd(name, variable, LABEL_VARIABLES | swept.text):
             return reason
         claimed += _bytes(variable)
     if claimed > MOST_EXPANSION * size:
         return f"claims {claimed:.3g} bytes of data in a file of {size}"
-    return _why_misshapen(file) or _why_false_words(file)
+    return _why_misshapen(file, swept) or _why_false_words(file)
 
 
-def _why_odd(name: str, variable: Any) -> str | None:
+def _why_odd(name: str, variable: Any, texts: frozenset[str]) -> str | None:
     if not NAME.fullmatch(name):
         return f"has a variable named {name[:80]!r}"
-    labels = {label.variable for label in LABELS}
-    if (variable.dtype is str) != (name in labels):
+    if (variable.dtype is str) != (name in texts):
         return f"has {'text' if variable.dtype is str else 'no text'} in {name}"
     if variable.dtype is not str and variable.dtype.kind not in "fiu":
         return f"has no numbers in {name}"
@@ -74,7 +90,7 @@ def _bytes(variable: Any) -> int:
     return size if variable.dtype is str else size * int(variable.dtype.itemsize)
 
 
-def _why_misshapen(file: Any) -> str | None:
+def _why_misshapen(file: Any, swept: Swept) -> str | None:
     """Return which known variable has other dimensions or another type than the layout says."""
     ending = VERTICAL.removeprefix("<image>")
     images = [name.removesuffix(ending) for name in file.dimensions if name.endswith(ending)]
@@ -86,8 +102,10 @@ def _why_misshapen(file: Any) -> str | None:
     for axis in axes:
         expected |= {axis: (axis,), axis + BOUNDS: (axis, EDGE)}
     for name, row in layout(images, True, resolved, speeds=True).items():
-        expected |= {name: row.dimensions, name + STANDARD_ERROR: row.dimensions}
-        expected[name + REPLICATES] = (REPLICATE, *row.dimensions)
+        leading = () if name in swept.fixed else swept.dimensions
+        dimensions = (*leading, *row.dimensions)
+        expected |= {name: dimensions, name + STANDARD_ERROR: dimensions}
+        expected[name + REPLICATES] = (*leading, REPLICATE, *row.dimensions)
     for name, dimensions in expected.items():
         variable = file.variables.get(name)
         if variable is None:
@@ -96,7 +114,7 @@ def _why_misshapen(file: Any) -> str | None:
             return (
                 f"has {name} over {', '.join(variable.dimensions)}; it must be over {', '.join(dimensions)}"
             )
-        if name not in {label.variable for label in LABELS} and variable.dtype.kind != "f":
+        if name not in LABEL_VARIABLES and variable.dtype.kind != "f":
             return f"has whole numbers in {name}"
     return None
 

@@ -335,9 +335,17 @@ def resolved_images(dimensions: Iterable[Any]) -> list[str]:
 
 def why_no_product(attributes: Mapping[Any, Any], variables: Container[Any]) -> str | None:
     """Return why these attributes and variables are no product that this package knows; None if they are."""
-    version = attributes.get("product_version")
-    if version is None or any(name not in variables for name in LANDMARKS):
+    if attributes.get("product_version") is None or any(name not in variables for name in LANDMARKS):
         return "is not a product of this program"
+    kind = attributes.get("product_kind", "run")
+    if kind != "run":
+        return f"is the product of a {kind}, not of a run; tracer sweep FILE --point N -o OUT.nc takes a run out of it"
+    return why_other_version(attributes)
+
+
+def why_other_version(attributes: Mapping[Any, Any]) -> str | None:
+    """Return why a product with these attributes is of another version than this package reads; None if it is not."""
+    version = attributes.get("product_version")
     if version != PRODUCT_VERSION:
         return f"is of product_version {version}; this package reads version {PRODUCT_VERSION}"
     return None

@@ -16,6 +16,7 @@ from tracer.product.assembling import without_label_indexes
 from tracer.product.layout import why_no_product
 from tracer.product.netcdf import write_netcdf
 from tracer.product.replacing import put_in_place, sync, written_beside
+from tracer.product.sweep_layout import why_no_sweep
 
 COMPLETE = "complete"
 CHECKSUM = "data_checksum"
@@ -46,7 +47,15 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
     TracerError
         Where writing fails, as on a full disk; no half file is left.
     """
-    reason = why_no_product(ds.attrs, ds.variables)
+    _save(ds, path, overwrite, why_no_product(ds.attrs, ds.variables))
+
+
+def save_sweep(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None:
+    """Write the product of a sweep, as `save_product` writes that of a run, and with its errors."""
+    _save(ds, path, overwrite, why_no_sweep(ds.attrs, ds.variables))
+
+
+def _save(ds: xr.Dataset, path: StrPath, overwrite: bool, reason: str | None) -> None:
     if reason:
         raise InputError(f"{os.fspath(path)}: the Dataset cannot be saved: {reason}")
     check_output(path, overwrite)

@@ -16,7 +16,7 @@ MOTHER = """
 import json, os, resource, signal, sys, traceback
 import tracer.engine.checkpoint_slots as slots
 from tracer.__main__ import main
-from tracer.commands import merge, run, summary
+from tracer.commands import merge, run, summary, sweep
 from tracer.engine.batches import compile_kernels, make_work
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene

@@ -7,9 +7,11 @@ from pathlib import Path
 import pytest
 
 import tracer
+from tracer.engine.sweep.preparing import prepare_sweep
 
 RUNS = Path(__file__).parents[3] / "runs"
-DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith("-plan"))
+DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith(("-plan", "-sweep")))
+SWEEPS = sorted(RUNS.glob("*-sweep.toml"))
 FEWER = (
     "ensemble.particles_per_batch=10",
     "ensemble.batches=3",
@@ -46,6 +48,13 @@ def test_lantern_plans_its_observation_of_harrow(products):
     assert len(table) == 91
     assert (table["snr"] > 0.0).all()
     assert 0 < table["do_not_command"].sum() < 10
+
+
+@pytest.mark.parametrize("demo", [demo.stem for demo in SWEEPS])
+def test_demo_sweep_is_one_that_can_be_traced(demo):
+    prepared = prepare_sweep(tracer.load_sweep(RUNS / f"{demo}.toml"), workers=1)
+    assert len(prepared.points) > 2
+    assert {axis.name for axis in prepared.axes} <= {"true_anomaly"}
 
 
 @pytest.mark.parametrize("demo", VARIABLES_OF_ALL)

@@ -6,7 +6,7 @@ import sys
 import pytest
 
 from tracer.__main__ import main
-from tracer.plots.figures import FIGURES, What
+from tracer.plots.figures import FIGURES, SWEPT_FIGURES, What
 from tracer.product.writing import save_product
 
 
@@ -139,4 +139,4 @@ def test_figure_is_drawn_with_no_more_of_the_product_than_it_needs(folder, capsy
 
 
 def test_every_word_but_that_of_a_plan_has_its_figure():
-    assert [*FIGURES, What.PLAN] == list(What)
+    assert [*FIGURES, What.PLAN, *SWEPT_FIGURES] == list(What)

@@ -2,6 +2,7 @@
 
 import os
 from collections.abc import Iterable
+from typing import Any
 
 from pydantic import ValidationError
 
@@ -10,6 +11,9 @@ from tracer.engine.runspec.run import RunSpec
 from tracer.errors import InputError
 from tracer.inputs.messages import validation_message
 from tracer.inputs.toml import file_text, tables
+
+SWEEP = "sweep"
+"""The table that makes a run file a sweep file."""
 
 
 def load_run(path: str | os.PathLike[str], overrides: Iterable[str] = ()) -> RunSpec:
@@ -60,9 +64,22 @@ def parse_run(text: str, file: str | os.PathLike[str], overrides: Iterable[str] 
     """
     name = os.fspath(file)
     given = tables(text, name)
+    if SWEEP in given:
+        raise InputError(f"{name}: {SWEEP}: makes this a sweep file, not a run file; tracer sweep traces it")
     for change in overrides:
         given = override(given, change)
+    return checked_run(given, name)
+
+
+def checked_run(given: dict[str, Any], file: str) -> RunSpec:
+    """Check the tables of a run file, as TOML gives them; `file` is its name, as in `parse_run`.
+
+    Raises
+    ------
+    InputError
+        They cannot be used; the message says file, key, value and what is allowed.
+    """
     try:
-        return RunSpec.model_validate(given, context={"file": name})
+        return RunSpec.model_validate(given, context={"file": file})
     except ValidationError as error:
-        raise InputError(f"{name}: {validation_message(error, RunSpec, given)}") from None
+        raise InputError(f"{file}: {validation_message(error, RunSpec, given)}") from None

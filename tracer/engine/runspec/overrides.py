@@ -1,4 +1,4 @@
-"""Changes of single keys from the command line, `--set key=value`."""
+"""Changes of single keys of a run file: `--set key=value` on the command line, the axes of a sweep."""
 
 import re
 import tomllib
@@ -8,6 +8,9 @@ from tracer.errors import InputError
 from tracer.units import quoted
 
 _STEP = re.compile(r"(?P<key>[A-Za-z0-9_-]+)(?:\[(?P<number>[0-9]{1,9})\])?")
+
+
+Steps = list[tuple[str, int | None]]
 
 
 def override(given: dict[str, Any], change: str) -> dict[str, Any]:
@@ -30,41 +33,57 @@ def override(given: dict[str, Any], change: str) -> dict[str, Any]:
     InputError
         No `=`, a path that is none, or one that leads through a value or to a list entry that does not exist.
     """
+    subject = f"--set {quoted(change)}"
     path, equals, value = change.partition("=")
     if not equals:
-        raise InputError(f"--set {quoted(change)}: must be key=value")
-    steps = [_step(part.strip(), change) for part in path.split(".")]
-    return _changed_table(given, steps, _value(value.strip()), change)
+        raise InputError(f"{subject}: must be key=value")
+    return with_value(given, key_steps(path, subject), _value(value.strip()), subject)
 
 
-def _step(part: str, change: str) -> tuple[str, int | None]:
-    match = _STEP.fullmatch(part)
-    if match is None:
-        raise InputError(
-            f"--set {quoted(change)}: {quoted(part)} is not a key; write for example "
-            "release[1].speed.temperature=1300 K"
-        )
-    return match["key"], int(match["number"]) if match["number"] else None
+def key_steps(path: str, subject: str) -> Steps:
+    """Return the keys on a dotted `path`, each with its place in a list, from 1; `subject` begins messages.
+
+    Raises
+    ------
+    InputError
+        A path that is none.
+    """
+    return [_step(part.strip(), subject) for part in path.split(".")]
 
 
-def _changed_table(
-    table: Any, steps: list[tuple[str, int | None]], value: Any, change: str
-) -> dict[str, Any]:
+def with_value(given: Any, steps: Steps, value: Any, subject: str) -> dict[str, Any]:
+    """Return a copy of the table `given` with `value` where the `steps` lead; `subject` begins messages.
+
+    Raises
+    ------
+    InputError
+        The path leads through a value or to a list entry that does not exist.
+    """
     (key, number), rest = steps[0], steps[1:]
-    if not isinstance(table, dict):
-        raise InputError(f"--set {quoted(change)}: there is no table that could hold {key}")
+    if not isinstance(given, dict):
+        raise InputError(f"{subject}: there is no table that could hold {key}")
     if number is None:
-        new = _changed_table(table.get(key, {}), rest, value, change) if rest else value
-        return {**table, key: new}
-    entries = table.get(key, [])
+        new = with_value(given.get(key, {}), rest, value, subject) if rest else value
+        return {**given, key: new}
+    entries = given.get(key, [])
     if not isinstance(entries, list) or not 1 <= number <= len(entries):
         there = (
             f"there are {len(entries)}, counted from 1" if isinstance(entries, list) else f"{key} is no list"
         )
-        raise InputError(f"--set {quoted(change)}: there is no {key}[{number}]; {there}")
+        raise InputError(f"{subject}: there is no {key}[{number}]; {there}")
     old = entries[number - 1]
-    new = _changed_table(old, rest, value, change) if rest else value
-    return {**table, key: [*entries[: number - 1], new, *entries[number:]]}
+    new = with_value(old, rest, value, subject) if rest else value
+    return {**given, key: [*entries[: number - 1], new, *entries[number:]]}
+
+
+def _step(part: str, subject: str) -> tuple[str, int | None]:
+    match = _STEP.fullmatch(part)
+    if match is None:
+        raise InputError(
+            f"{subject}: {quoted(part)} is not a key; write for example release[1].speed.temperature"
+            f"{'=1300 K' if subject.startswith('--set') else ''}"
+        )
+    return match["key"], int(match["number"]) if match["number"] else None
 
 
 def _value(text: str) -> Any:

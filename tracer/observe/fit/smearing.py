@@ -140,7 +140,7 @@ def _shares(edges: Floats, centres: Floats, sizes: Floats, widths: Floats) -> Fl
 
 
 def _integral(order: int, x: Floats, sigma: Floats) -> Floats:
-    """Return Phi(x/sigma) integrated `order` times, 0 to 2, from where it vanishes; without spread, of the unit step."""
+    """Return Phi(x/sigma) integrated `order` times, 0 to 2, from where it vanishes; a unit step without spread."""
     if not sigma.any():
         return np.asarray((np.heaviside(x, 0.5), np.maximum(x, 0.0), 0.5 * np.maximum(x, 0.0) ** 2)[order])
     z = x / sigma
