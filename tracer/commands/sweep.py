@@ -159,6 +159,7 @@ def _sweep(job: Job, cluster: str | None, workers: int | None, note: Note) -> No
                 executor.workers,
                 watch,
                 executor.map_batches,
+                prepare=executor.prepare,
                 overwrite=job.overwrite,
                 resume=job.resume,
                 note=note,
@@ -207,7 +208,14 @@ def _trace_one(
         chosen_executor(cluster, workers, note) as executor,
         shown_progress() as watch,
     ):
-        product = run(chosen.spec, executor.workers, watch, executor.map_batches, note=note)
+        product = run(
+            chosen.spec,
+            executor.workers,
+            watch,
+            executor.map_batches,
+            prepare=executor.prepare,
+            note=note,
+        )
         save_product(product, job.path, job.overwrite)
     typer.echo(f"point {number}: {chosen.words}")
     print_budget(product)

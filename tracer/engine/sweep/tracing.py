@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import Any, NamedTuple
 
-from tracer.engine.executors.seam import MapBatches
+from tracer.engine.executors.seam import MapBatches, Prepare, nothing_to_prepare
 from tracer.engine.executors.threads import map_batches
 from tracer.engine.memory import GIGABYTE, available_memory
 from tracer.engine.progress import Note, Status, Watcher, no_note
@@ -57,6 +57,7 @@ def run_sweep(
     watch: Watcher | None = None,
     executor: MapBatches = map_batches,
     *,
+    prepare: Prepare = nothing_to_prepare,
     overwrite: bool = False,
     resume: bool = False,
     note: Note = no_note,
@@ -78,6 +79,8 @@ def run_sweep(
         Told of the progress of the whole sweep now and then.
     executor : callable
         Where batches run, see `tracer.engine.executors`.
+    prepare : callable, optional
+        Has the executor's workers load what batches call, before a point's clock starts.
     overwrite : bool
         Whether an existing product is replaced, and what an interrupted sweep has left is dropped.
     resume : bool
@@ -117,7 +120,7 @@ def run_sweep(
         _check_store(store, output, overwrite, resume)
         remove_leftovers(Path(os.path.realpath(output)))
         store.make()
-        _trace_all(_Job(prepared, store, workers, watch, executor, note))
+        _trace_all(_Job(prepared, store, workers, watch, executor, prepare, note))
         _put_together(prepared, store, output, overwrite)
         store.remove()
     return True
@@ -129,6 +132,7 @@ class _Job(NamedTuple):
     workers: int
     watch: Watcher | None
     executor: MapBatches
+    prepare: Prepare
     note: Note
 
 
@@ -196,7 +200,15 @@ def _trace_point(job: _Job, one: PreparedPoint, finished: int, watch: Watcher | 
         return Kept(finished + whole, point.number, 0 if whole else checkpoints.kept_batches)
 
     try:
-        product = run(point.spec, job.workers, watch, job.executor, checkpoints=checkpoints, note=job.note)
+        product = run(
+            point.spec,
+            job.workers,
+            watch,
+            job.executor,
+            prepare=job.prepare,
+            checkpoints=checkpoints,
+            note=job.note,
+        )
         save_product(product, job.store.path(one.identity), overwrite=True)
     except KeyboardInterrupt:
         raise SweepInterrupted(kept()) from None
