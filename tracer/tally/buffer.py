@@ -27,11 +27,11 @@ class BufferLayout(NamedTuple):
 
 
 def make_layout(
-    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False
+    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False, hosted: bool = False
 ) -> BufferLayout:
     """Return the layout for a grid, image planes and a number of emission lines.
 
-    Atoms at rest are counted where the ground is `adsorbing`. What is kept by replicate comes first.
+    Atoms at rest are counted where the ground is `adsorbing`, those that hit the host where the body is `hosted`. What is kept by replicate comes first.
     """
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
@@ -40,7 +40,7 @@ def make_layout(
     kept = (cells, ground, (pixels,), (lines, *cells), (lines, pixels))
     fluxes = (ground,) * 5
     at_rest = ground if adsorbing else (0, 0)
-    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,))
+    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,), (int(hosted),))
     return BufferLayout((*kept, cells, *fluxes, at_rest, *numbers), sum(prod(shape) for shape in kept))
 
 
