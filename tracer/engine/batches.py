@@ -66,7 +66,9 @@ class Work(NamedTuple):
 
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
-    layout = make_layout(scene.grid, scene.planes, len(scene.lines), scene.desorption is not None, scene.moon is not None)
+    layout = make_layout(
+        scene.grid, scene.planes, len(scene.lines), scene.desorption is not None, scene.moon is not None
+    )
     return Work(scene, kernel_world(scene), layout, seed, particles)
 
 

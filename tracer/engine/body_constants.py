@@ -12,7 +12,6 @@ from tracer.errors import InputError
 from tracer.physics.host import kepler_period
 from tracer.units import si
 
-
 DAY = 86400.0
 MOST_MISFIT = 0.05
 """By how much a moon's period may differ from that of a circle about host and moon alone."""
@@ -148,7 +147,10 @@ def _refuse_phase(spec: RunSpec, table: HostTable, known: Body | None) -> None:
     for key in ("distance", "period", "phase_angle"):
         if (given := getattr(table, key)) is not None:
             raise refuse(
-                spec, f"body.host.{key}", given, "stands beside sun.epoch, which tells it; must be one of the two"
+                spec,
+                f"body.host.{key}",
+                given,
+                "stands beside sun.epoch, which tells it; must be one of the two",
             )
 
 
@@ -160,7 +162,7 @@ def _period(spec: RunSpec, table: HostTable, known: Body | None, distance: float
         return known.rotation_period
     if gm == 0.0:
         if table.period is None:
-            raise refuse(spec, "body.host.period", None, 'missing; without gravity nothing else tells it')
+            raise refuse(spec, "body.host.period", None, "missing; without gravity nothing else tells it")
         return si(table.period)
     circular = kepler_period(distance, gm)
     if table.period is None:

@@ -218,8 +218,9 @@ def _refuse_rest_beside_host(spec: RunSpec) -> None:
             spec,
             "body.host",
             None,
-            'stands beside surface.adsorbed "desorbed": with the host held at its phase the ground does not turn under '
-            'the Sun, and atoms would rest through nights without end; must be left out, or surface.adsorbed "captured"',
+            'stands beside surface.adsorbed "desorbed": with the host held at its phase the ground does not turn '
+            "under the Sun, and atoms would rest through nights without end; must be left out, or surface.adsorbed "
+            '"captured"',
         )
 
 
@@ -303,7 +304,10 @@ def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:
         )
     if body.host_gm == 0.0:
         raise refuse(
-            spec, "domain.outer_radius", None, 'required beside a host without gravity, for example "40 radii"'
+            spec,
+            "domain.outer_radius",
+            None,
+            'required beside a host without gravity, for example "40 radii"',
         )
     outer = hill_radius(body.orbit, body.gm, body.host_gm)
     if outer <= body.radius:

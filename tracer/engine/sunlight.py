@@ -106,7 +106,10 @@ def _moon(spec: RunSpec, sun: SunTable, body: BodyConstants) -> MoonPlace | None
         if spec.body.name != MOON:
             sighting_at_epoch(spec, sun.epoch)
             raise refuse(
-                spec, "body.host", None, f"beside sun.epoch is for the {MOON}; {spec.body.name} has no host there"
+                spec,
+                "body.host",
+                None,
+                f"beside sun.epoch is for the {MOON}; {spec.body.name} has no host there",
             )
         return moon_as_seen(moon_sighting(sun.epoch))
     assert host.phase_angle is not None

@@ -15,7 +15,7 @@ from tracer.kernels.fused import fused
 from tracer.kernels.sunlight import visible_fraction
 
 CLEAR, PARTIAL, DARK = 0.0, 1.0, 2.0
-"""How a step lies in the host's shadow: all in full light, wherever part of the Sun may be covered, all in the umbra."""
+"""How a step lies in the host's shadow: all in full light, where part of the Sun may be covered, all in the umbra."""
 
 LEAST_PART = 0.125
 LEAST_RADII = 0.02
@@ -89,7 +89,7 @@ def _pulled(host, ax, ay, az, x, y, z):
 
 @inlined
 def _heights(host, x, y, z):
-    """Return (along, off) [m] the shadow's axis, sunward positive, and the heights over penumbra and umbra."""
+    """Return places [m] along the shadow's axis, sunward positive, and off it, and over penumbra and umbra."""
     qx, qy, qz = x - host.x, y - host.y, z - host.z
     along = fused(qx, host.sun_x, fused(qy, host.sun_y, qz * host.sun_z))
     off = math.sqrt(max(0.0, fused(qx, qx, fused(qy, qy, fused(qz, qz, -(along * along))))))
@@ -106,7 +106,15 @@ def _heights(host, x, y, z):
 
 
 @kernel
-def _seen_past(host, x, y, z):
+def shadow_heights(host, x, y, z):
+    """Return the heights [m] of (x, y, z) over the surfaces of penumbra and umbra; below 0 inside."""
+    _, _, penumbra, umbra = _heights(host, x, y, z)
+    return penumbra, umbra
+
+
+@kernel
+def sun_past(host, x, y, z):
+    """Return the part of the Sun's disc, 0 to 1, that is seen past the host at (x, y, z) [m]."""
     if host.casts == 0.0:
         return 1.0
     along, off, penumbra, umbra = _heights(host, x, y, z)
@@ -164,7 +172,8 @@ def _neared(host, end_host, start, end):
 
 @inlined
 def _nearest(host, radius, per_r, x, y, z):
-    return max(per_r, host.radius / radius * _per_distance(host, x, y, z))
+    per_q = _per_distance(host, x, y, z)
+    return max(per_r, per_q), max(per_r, host.radius / radius * per_q)
 
 
 def with_host_pull(body: Any, ax: float, ay: float, az: float, x: float, y: float, z: float) -> Any:
@@ -182,7 +191,7 @@ def past_host(body: Any, lit: float, x: float, y: float, z: float) -> float:
 
     As if the two covered parts of the Sun's disc by chance: exact where one covers all or nothing.
     """
-    return lit if body.host is None else lit * _seen_past(body.host, x, y, z)
+    return lit if body.host is None else lit * sun_past(body.host, x, y, z)
 
 
 def host_height(body: Any, place: tuple[float, ...]) -> tuple[float, float]:
@@ -195,9 +204,13 @@ def host_neared(body: Any, end_body: Any, start: tuple[float, ...], end: tuple[f
     return False if body.host is None else _neared.py_func(body.host, end_body.host, start, end)
 
 
-def nearest(body: Any, radius: float, per_r: float, x: float, y: float, z: float) -> float:
-    """Return one over the lesser of the distances [m] from moon and host, counted as so many radii of the moon."""
-    return per_r if body.host is None else _nearest.py_func(body.host, radius, per_r, x, y, z)
+def nearest(body: Any, radius: float, per_r: float, x: float, y: float, z: float) -> tuple[float, float]:
+    """Return one over the lesser of the distances [m-1] from moon and host.
+
+    That is `per_r` [m-1] without a host. It comes twice, the second time as if each radius of the host were one of the
+    moon, `radius` [m].
+    """
+    return (per_r, per_r) if body.host is None else _nearest.py_func(body.host, radius, per_r, x, y, z)
 
 
 def without_host(record: Any) -> bool:
@@ -223,7 +236,7 @@ def _compiled_with_slip(body, velocity, y):
 def _compiled_past_host(body, lit, x, y, z):
     if without_host(body):
         return lambda body, lit, x, y, z: lit
-    return lambda body, lit, x, y, z: lit * _seen_past(body.host, x, y, z)
+    return lambda body, lit, x, y, z: lit * sun_past(body.host, x, y, z)
 
 
 @overload(host_height, jit_options=INLINED)
@@ -243,5 +256,5 @@ def _compiled_host_neared(body, end_body, start, end):
 @overload(nearest, jit_options=INLINED)
 def _compiled_nearest(body, radius, per_r, x, y, z):
     if without_host(body):
-        return lambda body, radius, per_r, x, y, z: per_r
+        return lambda body, radius, per_r, x, y, z: (per_r, per_r)
     return lambda body, radius, per_r, x, y, z: _nearest(body.host, radius, per_r, x, y, z)

@@ -126,8 +126,9 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
     _begin_series(sky.forces, flight, curve)
     body = body_in_series(sky.forces, curve, SERIES, 1, 0.0)
-    per_nearest = nearest(body, sky.forces.radius, 1.0 / r, place[0], place[1], place[2])
-    scales = error_scales(tolerance, sky.forces, r, speed_squared, per_nearest)
+    nearness = nearest(body, sky.forces.radius, 1.0 / r, place[0], place[1], place[2])
+    near = 1.0 / nearness[0] if nearness[0] > 1.0 / r else r
+    scales = error_scales(tolerance, sky.forces, r, speed_squared, (near, nearness[1]))
     h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     h = longest_on_orbit(sky.forces, curve, SERIES, 1, h)
     h = longest_beside_host(body, place, speed_squared, slopes[0], h)

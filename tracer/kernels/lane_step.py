@@ -446,9 +446,9 @@ def _judge(lanes, sky):
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
         body = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
         x, y, z = _vector(lanes, START + lane)
-        per_nearest = nearest(body, forces.radius, per_r, x, y, z)
-        squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_nearest)) * (
-            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_r * per_r)
+        per_centre, per_far = nearest(body, forces.radius, per_r, x, y, z)
+        squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_far)) * (
+            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_centre * per_centre)
             + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v_squared)
             + of_hazard * of_hazard
         )

@@ -249,12 +249,8 @@ def _moon_in_series(forces, array, at, stride, t):
     turning = turning_at(forces.orbit, d0)
     angle = t * (forces.host.rate - turning + t * (d1 * turning / d0))
     square = angle * angle
-    sine = angle * fused(
-        square, fused(square, fused(-square, 1.0 / 5040.0, 1.0 / 120.0), -1.0 / 6.0), 1.0
-    )
-    cosine = fused(
-        square, fused(square, fused(-square, 1.0 / 720.0, 1.0 / 24.0), -1.0 / 2.0), 1.0
-    )
+    sine = angle * fused(square, fused(square, fused(-square, 1.0 / 5040.0, 1.0 / 120.0), -1.0 / 6.0), 1.0)
+    cosine = fused(square, fused(square, fused(-square, 1.0 / 720.0, 1.0 / 24.0), -1.0 / 2.0), 1.0)
     return _moon(forces, distance, velocity, fused(c0, cosine, -(s0 * sine)), fused(s0, cosine, c0 * sine))
 
 
@@ -430,7 +426,5 @@ def _compiled_longest_on_orbit(forces, array, at, stride, longest):
     if stands_still(forces):
         return lambda forces, array, at, stride, longest: longest
     if not without_host(forces):
-        return lambda forces, array, at, stride, longest: _longest_of_moon(
-            forces, array, at, stride, longest
-        )
+        return lambda forces, array, at, stride, longest: _longest_of_moon(forces, array, at, stride, longest)
     return lambda forces, array, at, stride, longest: _longest_on_orbit(forces, array, at, stride, longest)

@@ -18,8 +18,8 @@ class Tally(NamedTuple):
     latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time), `ledger` (fate) and
     `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without cells where no atom
     rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond` samples beyond the end
-    of a line's table; `struck` the weight that hit the host, without an entry where there is none. Where the body moves, `aloft` holds all samples, and `older` weight times survival time behind
-    the limit of age.
+    of a line's table; `struck` the weight that hit the host, without an entry where there is none. Where the body
+    moves, `aloft` holds all samples, and `older` weight times survival time behind the limit of age.
     """
 
     content: np.ndarray

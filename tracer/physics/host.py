@@ -21,7 +21,7 @@ from tracer.physics.orbit import Station
 Floats = NDArray[np.float64]
 
 FAR_SUN = 1e6
-"""Distance of the Sun in units of the moon's from its host where there is no Sun: its direction is the same for both."""
+"""Distance of the Sun in units of the moon's from its host where there is none: its direction is the same for both."""
 
 
 class MoonPlace(NamedTuple):
@@ -86,7 +86,7 @@ def moon_without_sun(distance: float, rate: float, phase_angle: float) -> MoonPl
 
 
 def moon_as_seen(seen: MoonSighting) -> MoonPlace:
-    """Return the moon that an ephemeris has: its own distance, velocity and place beside the host, off the plane too."""
+    """Return the moon that an ephemeris has: its own distance, velocity and place beside the host, off the plane."""
     x, y, z = map(float, seen.host)
     gap = np.array([seen.station.distance - x, -y, -z])
     ux, uy, uz = (float(part) for part in gap / np.linalg.norm(gap))

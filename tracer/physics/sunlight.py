@@ -51,7 +51,7 @@ def forces_of(
     """Return the forces on an atom near a body at `station`; `push` [m s-2] is constant, at 1 au, without the lines'.
 
     `gm` [m3 s-2] and `radius` [m] of the body; beyond `outer_radius` [m] a flight ends. With an `orbit` the body moves
-    on it, and `station` is where it is at time 0. A moon has a `host`; where it moves, orbit and station are the host's.
+    on it, and `station` is where it is at time 0. A moon has a `host`; where it moves, both are those of that.
     """
     return Forces(
         gm=float(gm),

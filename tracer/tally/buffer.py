@@ -31,7 +31,8 @@ def make_layout(
 ) -> BufferLayout:
     """Return the layout for a grid, image planes and a number of emission lines.
 
-    Atoms at rest are counted where the ground is `adsorbing`, those that hit the host where the body is `hosted`. What is kept by replicate comes first.
+    Atoms at rest are counted where the ground is `adsorbing`, those that hit the host where the body is `hosted`. What
+    is kept by replicate comes first.
     """
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)

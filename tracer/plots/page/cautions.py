@@ -106,7 +106,13 @@ def left_out(product: xr.Dataset) -> Iterator[str]:
             yield "The body stands still on its orbit while atoms fly: no seasons within a tail that is weeks long."
     else:
         yield "There is no Sun in this scene: no push, no tide, no light, no shadow, no loss to sunlight."
-    yield "The gravity and shadow of a host planet, and a moon's own motion about it."
+    if "host" in table(run, "body"):
+        yield (
+            "The moon's orbit is a circle, but for an epoch in the plane of its host's orbit about the Sun; the host "
+            "has no atmosphere that bends light into its shadow, and no magnetosphere."
+        )
+    else:
+        yield "The gravity and shadow of a host planet, and a moon's own motion about it."
     yield "A smooth sphere: no topography, no porosity; temperature follows a simple law of the Sun's height."
     if table(run, "surface").get("adsorbed", "captured") == "captured":
         yield "Atoms that stick are captured for good; none leaves again later."
