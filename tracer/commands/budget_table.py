@@ -18,6 +18,7 @@ PLAIN_WORDS = {
 
 
 ROULETTE_WORDS = "dropped by roulette on balance, by chance"
+HOST_WORDS = "hit the host planet, counted above as lost otherwise"
 
 
 def print_budget(product: xr.Dataset) -> None:
@@ -36,6 +37,10 @@ def print_budget(product: xr.Dataset) -> None:
         if balance != 0.0:
             error = float(one["roulette_balance_standard_error"]) / rate
             rows.append((f"{-100 * balance / rate:9.4f} %", _error(error), ROULETTE_WORDS))
+        if "host_impact_rate" in one:
+            error = float(one["host_impact_rate_standard_error"]) / rate
+            share = float(one["host_impact_rate"]) / rate
+            rows.append((f"{100 * share:9.4f} %", _error(error), HOST_WORDS))
         print_rows(rows)
         life, flights = float(one["mean_life"]), float(one["mean_flights"])
         typer.echo(f"  mean life {life:.4g} s on {flights:.4g} flights")

@@ -12,7 +12,7 @@ from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.constants import ASTRONOMICAL_UNIT
-from tracer.engine.preview import Preview, ReleasePreview, SunPreview, preview
+from tracer.engine.preview import HostPreview, Preview, ReleasePreview, SunPreview, preview
 from tracer.engine.runspec.load import load_run
 from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
@@ -29,7 +29,7 @@ EMPHASIS = MappingProxyType(
     }
 )
 MEGABYTE = 1e6
-_INSIDE = ("sun", "surface")
+_INSIDE = ("sun", "host", "surface")
 
 
 def command(
@@ -59,6 +59,7 @@ def _flat(figures: Preview) -> dict[str, Any]:
     return {
         **{key: value for key, value in figures._asdict().items() if key not in _INSIDE},
         **sun,
+        **({} if figures.host is None else figures.host._asdict()),
         **figures.surface._asdict(),
     }
 
@@ -70,6 +71,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
         [
             ("propagator", figures.propagator),
             *_sun_rows(figures.sun),
+            *_host_rows(figures.host),
             ("radius", f"{figures.radius / 1e3:.6g} km"),
             ("gm", f"{figures.gm / 1e9:.7g} km3 s-2"),
             ("surface gravity", f"{figures.surface_gravity:.4g} m s-2"),
@@ -116,6 +118,35 @@ def _motion(sun: SunPreview) -> str:
     if sun.event_window is None:
         return "stationary: distance and velocity of the body stay the same"
     return f"moving: fluxes count in the last {sun.event_window / HOUR:.4g} h before the stated position"
+
+
+def _host_rows(host: HostPreview | None) -> list[tuple[str, str]]:
+    if host is None:
+        return []
+    off = f", {abs(host.host_latitude):.3g} deg {'north' if host.host_latitude > 0.0 else 'south'}"
+    rows = [
+        ("host", f"{host.host}, {host.host_gm / 1e9:.7g} km3 s-2, radius {host.host_radius / 1e3:.6g} km"),
+        ("distance from the host", f"{host.host_distance / 1e3:.7g} km"),
+        ("period about the host", f"{host.host_period / DAY:.6g} d sidereal"),
+        (
+            "phase angle",
+            f"{host.phase_angle:.5g} deg from the Sun towards dusk{off if host.host_latitude else ''}; "
+            f"{_phase(host.phase_angle)} seen from the host",
+        ),
+    ]
+    if host.transverse_velocity is not None:
+        rows.append(("transverse velocity", f"{host.transverse_velocity / 1e3:.5g} km/s about the Sun"))
+    if host.eclipse is not None and host.sun_past_host is not None:
+        part = f"{100.0 * host.sun_past_host:.3g} % of the Sun seen past the host from the centre"
+        rows.append(("eclipse by the host", f"{host.eclipse}; {part}"))
+    return rows
+
+
+def _phase(angle: float) -> str:
+    """Return the moon's phase by the host's `angle` [deg] from the Sun."""
+    words = ("full moon", "last quarter", "new moon", "first quarter")
+    nearest = round(angle / 90.0)
+    return ("" if abs(angle - 90.0 * nearest) < 1.0 else "near ") + words[nearest % 4]
 
 
 def _residence_rows(figures: Preview) -> list[tuple[str, str]]:
@@ -168,6 +199,8 @@ def _speed_bins(figures: Preview) -> str:
 
 def _outer_radius(figures: Preview) -> str:
     origin = ", the Hill radius" if figures.outer_radius_is_hill_radius else ""
+    if origin and figures.host is not None:
+        origin += " about the host"
     return f"{figures.outer_radius / 1e3:.6g} km, {figures.outer_radius / figures.radius:.4g} radii{origin}"
 
 

@@ -76,7 +76,12 @@ class Work(NamedTuple):
 def make_work(scene: Scene, seed: int, particles: int) -> Work:
     """Return the work of a run with `particles` per batch and release."""
     layout = make_layout(
-        scene.grid, scene.planes, len(scene.lines), scene.desorption is not None, scene.speed_bins
+        scene.grid,
+        scene.planes,
+        len(scene.lines),
+        adsorbing=scene.desorption is not None,
+        speed_bins=scene.speed_bins,
+        hosted=scene.moon is not None,
     )
     responses = response_work(scene, particles)
     return Work(scene, kernel_world(scene), layout, seed, particles, responses=responses)

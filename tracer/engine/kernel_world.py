@@ -12,6 +12,7 @@ from tracer.engine.sunlight import NO_PHOTO_LOSS, Sunlight
 from tracer.kernels.adsorption import Adsorption
 from tracer.kernels.bounce import Surface
 from tracer.kernels.cells import Cells, Images, Velocities, make_cells
+from tracer.kernels.host import Host, HostOrbit
 from tracer.kernels.motion import Losses
 from tracer.kernels.quantiles import quantile_nodes
 from tracer.kernels.roulette import WEIGHTED
@@ -21,6 +22,7 @@ from tracer.kernels.surface_map import SurfaceMap
 from tracer.kernels.temperature import UNIFORM, SurfaceTemperature
 from tracer.kernels.traps import MAPPED, NOWHERE, POLEWARD, Traps
 from tracer.kernels.world import Light, Motion, Snapshot, World
+from tracer.physics.host import moving_host, still_host
 from tracer.physics.lines import line_tables, push_tables
 from tracer.physics.orbit import Station
 from tracer.physics.sunlight import conditions_of, forces_of, losses_of, shadow_of
@@ -111,20 +113,32 @@ def _traps(traps: ColdTraps | None) -> Traps:
 def _light(scene: Scene) -> Light:
     """Return what integrated flights need; without a Sun the numbers are never used, but must have their types."""
     sun = scene.sun or _NO_SUN
-    body = scene.body
+    body, moon = scene.body, scene.moon
+    station = sun.station if moon is None or sun.orbit is None else moon.host_station
     forces = forces_of(
         gm=body.gm,
         radius=body.radius,
         outer_radius=scene.outer_radius,
-        station=sun.station,
+        station=station if moon is None else station._replace(orbital_rate=scene.frame_rate),
         tide=sun.tide,
         push=sun.push,
         orbit=sun.orbit,
+        host=_host(scene, sun),
     )
     pushing = push_tables(sun.lines if sun.lines_push else (), scene.mass)
     shadow = shadow_of(sun.shadow, body.radius, sun.station.distance)
     conditions = conditions_of(forces, _losses(scene, sun), shadow, pushing)
     return Light(conditions, line_tables(sun.lines), DEFAULT_TOLERANCE)
+
+
+def _host(scene: Scene, sun: Sunlight) -> Host | HostOrbit | None:
+    """Return the host as it moves, or as it keeps its place; it casts a shadow if the body does."""
+    host, moon, casts = scene.body.host, scene.moon, sun.shadow != "none"
+    if host is None or moon is None:
+        return None
+    if sun.orbit is None:
+        return still_host(host.gm, host.radius, moon, casts)
+    return moving_host(host.gm, host.radius, moon, sun.orbit, casts)
 
 
 def _losses(scene: Scene, sun: Sunlight) -> Losses:

@@ -169,6 +169,7 @@ def _attributes(plan: Plan, folder: Folder, costs: Costs) -> dict[str, Any]:
         "workers": costs.workers,
         "body_radius": plan.scene.body.radius,
         **_sun_attributes(plan.spec, plan.scene, folder),
+        **_host_attributes(plan.scene),
         **_stop_attributes(plan, folder),
         **_response_attributes(plan.scene),
         "complete": 1,
@@ -211,6 +212,20 @@ def _sun_attributes(spec: RunSpec, scene: Scene, folder: Folder) -> dict[str, An
         "orbital_rate": station.orbital_rate,
         "share_beyond_line_tables": np.array([_share_beyond(scene, one) for one in tallies]),
         **_motion_attributes(scene, tallies),
+    }
+
+
+def _host_attributes(scene: Scene) -> dict[str, Any]:
+    """Return where the host stands [m] in the moon's Sun-fixed frame, its phase angle [deg] and radius [m]."""
+    host, moon = scene.body.host, scene.moon
+    if host is None or moon is None:
+        return {}
+    return {
+        "host": host.name,
+        "host_radius": host.radius,
+        "host_position": np.array(moon.host),
+        "phase_angle": moon.phase_angle,
+        "frame_rate": scene.frame_rate,
     }
 
 

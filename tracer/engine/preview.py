@@ -1,5 +1,6 @@
 """What a run would do, without running it: the resolved scene in figures."""
 
+import math
 from collections.abc import Iterator
 from typing import NamedTuple
 
@@ -19,7 +20,9 @@ from tracer.engine.sunlight import Sunlight, lines_without_g, true_anomaly
 from tracer.engine.surface_preview import SurfacePreview, preview_surface
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.hops import single_hops
+from tracer.kernels.host import Host, shadow_heights, sun_past
 from tracer.kernels.temperature import temperatures
+from tracer.physics.host import still_host
 from tracer.physics.lines import line_acceleration
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
@@ -99,6 +102,28 @@ class SunPreview(NamedTuple):
     lines_without_g: tuple[str, ...]
 
 
+class HostPreview(NamedTuple):
+    """The host of a moon.
+
+    `host` is its name, `host_gm` [m3 s-2], `host_radius` and `host_distance` [m], `host_period` [s] in which its
+    direction turns once among the stars, as at the stated position; `phase_angle` [deg] and `host_latitude` [deg] of
+    its place, seen from the moon; `transverse_velocity` [m s-1] of the moon about the Sun. `sun_past_host` is the part
+    of the Sun's disc that the host leaves to be seen from the moon's centre, `eclipse` the word for the whole moon:
+    both None without a Sun or a shadow.
+    """
+
+    host: str
+    host_gm: float
+    host_radius: float
+    host_distance: float
+    host_period: float
+    phase_angle: float
+    host_latitude: float
+    transverse_velocity: float | None
+    sun_past_host: float | None
+    eclipse: str | None
+
+
 class ResidencePreview(NamedTuple):
     """How long the ground holds an atom at one place of the equator: `temperature` [K], `residence_time` [s].
 
@@ -122,6 +147,7 @@ class Preview(NamedTuple):
     species: str
     propagator: str
     sun: SunPreview | None
+    host: HostPreview | None
     surface: SurfacePreview
     radius: float
     gm: float
@@ -159,6 +185,7 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         species=spec.gas.species,
         propagator=INTEGRATOR if scene.integrated else ARCS,
         sun=None if scene.sun is None else _preview_sun(spec, scene, scene.sun),
+        host=_preview_host(scene),
         surface=preview_surface(spec, scene),
         radius=body.radius,
         gm=body.gm,
@@ -204,6 +231,37 @@ def _preview_sun(spec: RunSpec, scene: Scene, sun: Sunlight) -> SunPreview:
         lines=tuple(line.name for line in sun.lines),
         lines_without_g=lines_without_g(spec),
     )
+
+
+def _preview_host(scene: Scene) -> HostPreview | None:
+    host, moon, sun = scene.body.host, scene.moon, scene.sun
+    if host is None or moon is None:
+        return None
+    shadow = None
+    if sun is not None and sun.shadow != "none":
+        shadow = still_host(host.gm, host.radius, moon, True)
+    return HostPreview(
+        host=host.name,
+        host_gm=host.gm,
+        host_radius=host.radius,
+        host_distance=moon.distance,
+        host_period=2.0 * math.pi / moon.rate,
+        phase_angle=moon.phase_angle,
+        host_latitude=math.degrees(math.asin(moon.host[2] / moon.distance)),
+        transverse_velocity=None if sun is None else moon.station.orbital_rate * moon.station.distance,
+        sun_past_host=None if shadow is None else sun_past(shadow, 0.0, 0.0, 0.0),
+        eclipse=None if shadow is None else _eclipse(shadow, scene.body.radius),
+    )
+
+
+def _eclipse(host: Host, radius: float) -> str:
+    """Return how a moon of `radius` [m] lies in the shadow of `host`."""
+    penumbra, umbra = shadow_heights(host, 0.0, 0.0, 0.0)
+    if penumbra >= radius:
+        return "none"
+    if umbra <= -radius:
+        return "total"
+    return "partial" if umbra < radius else "penumbral"
 
 
 def _preview_residence(scene: Scene) -> Iterator[ResidencePreview]:

@@ -16,6 +16,8 @@ RESIDENCE = "Frenkel, J. (1924), Z. Physik 26, 117: residence times of adsorbed 
 ROULETTE = "Kahn, H. & Harris, T. E. (1951), Natl. Bur. Stand. Appl. Math. Ser. 12, 27: roulette"
 KEPLER = "Danby, J. M. A. (1988), Fundamentals of Celestial Mechanics, section 6.9"
 
+THREE_BODIES = "Szebehely, V. (1967), Theory of Orbits: the restricted problem of three bodies"
+
 MOON_TEMPERATURE = "Hurley, D. M. et al. (2015), Icarus 255, 159: temperature of the lunar surface"
 HEAT_CONDUCTION = (
     "Carslaw, H. S. & Jaeger, J. C. (1959), Conduction of Heat in Solids; "
@@ -33,6 +35,8 @@ def scene_references(scene: Scene) -> Iterator[str]:
         yield MOON_TEMPERATURE
     if ground == CONDUCTION:
         yield HEAT_CONDUCTION
+    if scene.moon is not None:
+        yield THREE_BODIES
     if scene.lines:
         yield SOLAR_LINES
     if scene.sun is not None and scene.sun.photo.total:

@@ -81,7 +81,9 @@ def response_work(scene: Scene, particles: int) -> ResponseWork | None:
     launches = max(particles, LEAST_PER_BIN * bins)
     counts = [_counts(edges, one, launches) for one in speeds]
     flat = scene._replace(grid=_one_layer(scene.grid))
-    layout = make_layout(flat.grid, (), len(scene.lines), scene.desorption is not None)
+    layout = make_layout(
+        flat.grid, (), len(scene.lines), scene.desorption is not None, hosted=scene.moon is not None
+    )
     return ResponseWork(edges, np.array(counts), kernel_world(flat), layout)
 
 

@@ -29,6 +29,7 @@ from tracer.engine.surface_temperature import surface_temperature
 from tracer.inputs.sky import SkyPoint
 from tracer.kernels.sticking import Sticking
 from tracer.kernels.temperature import SurfaceTemperature
+from tracer.physics.host import MoonPlace, moon_without_sun
 from tracer.physics.lines import VelocityTable
 from tracer.physics.orbit import hill_radius
 from tracer.physics.release.laws import DirectionLaw, PlaceLaw, SpeedLaw
@@ -81,7 +82,7 @@ class Scene(NamedTuple):
     `mass` [kg] of one atom; `surface_temperature` is None where nothing needs it, `desorption` where adsorbed atoms are
     kept for good, `cold_traps` where there are none; `outer_radius` [m] from the centre, `age_limit` [s]; `emphasis`
     says which launches are sampled densely, "even" or "far", `speed_bins` how many bins of launch speed have their
-    responses kept, 0 for none.
+    responses kept, 0 for none; `moon` is where the body stands beside its host, None where it has none.
     """
 
     body: BodyConstants
@@ -100,6 +101,7 @@ class Scene(NamedTuple):
     planes: tuple[ImagePlane, ...]
     emphasis: str
     speed_bins: int
+    moon: MoonPlace | None
 
     @property
     def lines(self) -> tuple[VelocityTable, ...]:
@@ -114,6 +116,8 @@ class Scene(NamedTuple):
     @property
     def integrated(self) -> bool:
         """Whether flights must be integrated; else closed-form arcs are exact."""
+        if self.moon is not None:
+            return True
         if self.sun is None:
             return False
         if self.sun.orbit is not None:
@@ -124,15 +128,25 @@ class Scene(NamedTuple):
     def event_window(self) -> float | None:
         """Time [s] before the stated position in which events count as fluxes; None where the body stands still.
 
-        One degree of the orbit's mean anomaly, but not more than the limit of age.
+        One degree of the orbit's mean anomaly, or of a moon's phase, but not more than the limit of age.
         """
         if self.sun is None or self.sun.orbit is None:
             return None
-        return float(min(self.age_limit, np.radians(1.0) / self.sun.orbit.mean_motion))
+        rate = self.sun.orbit.mean_motion
+        if self.moon is not None:
+            rate = abs(self.moon.rate - rate)
+        return float(min(self.age_limit, np.radians(1.0) / rate))
 
     @property
     def frame_rate(self) -> float:
-        """Angular rate [rad s-1] at which the Sun-fixed frame turns about +z; without a Sun it does not."""
+        """Angular rate [rad s-1] at which the Sun-fixed frame turns about +z; without Sun and host it does not.
+
+        Beside a host it is the moon's about the host, so that the host keeps its place; where the moon moves it is the
+        host's about the Sun.
+        """
+        if self.moon is not None:
+            moves = self.sun is not None and self.sun.orbit is not None
+            return self.moon.host_station.orbital_rate if moves else self.moon.rate
         return 0.0 if self.sun is None else self.sun.station.orbital_rate
 
     @property
@@ -154,6 +168,7 @@ def build_scene(spec: RunSpec) -> Scene:
     body = resolve_body(spec)
     _refuse_colliding_images(spec)
     _refuse_rest_on_uneven_ground(spec)
+    _refuse_rest_beside_host(spec)
     sun = resolve_sunlight(spec, body)
     return Scene(
         body=body,
@@ -175,6 +190,7 @@ def build_scene(spec: RunSpec) -> Scene:
         planes=tuple(_plane(spec, i, image, body.radius) for i, image in enumerate(spec.image, 1)),
         emphasis=spec.ensemble.emphasis,
         speed_bins=spec.ensemble.speed_bins,
+        moon=_moon(body) if sun is None else sun.moon,
     )
 
 
@@ -195,6 +211,27 @@ def _refuse_rest_on_uneven_ground(spec: RunSpec) -> None:
             'stands beside surface.adsorbed "desorbed": the ground of a moving body turns unevenly under the Sun, and '
             'how long atoms rest on it is not known; must be "stationary", or surface.adsorbed "captured"',
         )
+
+
+def _refuse_rest_beside_host(spec: RunSpec) -> None:
+    """Refuse atoms at rest beside a host that keeps its place: the ground of the moon would keep its own to the Sun."""
+    if spec.body.host is not None and spec.surface.adsorbed == "desorbed":
+        raise refuse(
+            spec,
+            "body.host",
+            None,
+            'stands beside surface.adsorbed "desorbed": with the host held at its phase the ground does not turn '
+            "under the Sun, and atoms would rest through nights without end; must be left out, or surface.adsorbed "
+            '"captured"',
+        )
+
+
+def _moon(body: BodyConstants) -> MoonPlace | None:
+    """Return where a body without a Sun stands beside its host, None where it has none."""
+    if body.host is None:
+        return None
+    assert body.host.phase_angle is not None
+    return moon_without_sun(body.host.distance, body.host.rate, body.host.phase_angle)
 
 
 def _refuse_colliding_images(spec: RunSpec) -> None:
@@ -270,6 +307,13 @@ def _outer_radius(spec: RunSpec, body: BodyConstants) -> float:
     if body.orbit is None:
         raise refuse(
             spec, "domain.outer_radius", None, 'required for a body without an orbit, for example "40 radii"'
+        )
+    if body.host_gm == 0.0:
+        raise refuse(
+            spec,
+            "domain.outer_radius",
+            None,
+            'required beside a host without gravity, for example "40 radii"',
         )
     outer = hill_radius(body.orbit, body.gm, body.host_gm)
     if outer <= body.radius:

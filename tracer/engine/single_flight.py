@@ -14,7 +14,8 @@ from tracer.fate import Fate
 from tracer.kernels.arc import highest
 from tracer.kernels.arc_flight import arc_end, arc_state, launch_arc
 from tracer.kernels.dense_output import FLOWN, LENGTH, START, hazards_at, place_at
-from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, STRUCK
+from tracer.kernels.host import past_host
 from tracer.kernels.integrated_flight import advance, new_curve, new_flight, start_flight
 from tracer.kernels.motion import Sky
 from tracer.kernels.orbit import body_on_orbit
@@ -37,7 +38,12 @@ TOLERANCE = 1e-11
 LIT_COLUMN = 2
 
 LANDED_WORD = "landed"
-ENDINGS = {LANDED: LANDED_WORD, CROSSED: Fate.ESCAPED.label, AGED: Fate.AGE_LIMIT.label}
+ENDINGS = {
+    LANDED: LANDED_WORD,
+    CROSSED: Fate.ESCAPED.label,
+    AGED: Fate.AGE_LIMIT.label,
+    STRUCK: Fate.OTHER_LOSS.label,
+}
 
 PATH_COLUMNS = ("time", "survival", "lit", "x", "y", "z", "vx", "vy", "vz")
 
@@ -155,7 +161,8 @@ def _lit_fractions(sky: Sky, path: Floats) -> Floats:
         place = tuple(map(float, row[3:6]))
         body = body_on_orbit(sky.forces, float(row[0]))
         shadow = shadow_behind(sky.shadow, body)
-        fractions[i] = lit_fraction(shadow, zone_at(shadow, *place), *place, body.distance)
+        own = lit_fraction(shadow, zone_at(shadow, *place), *place, body.distance)
+        fractions[i] = past_host(body, own, *place)
     return fractions
 
 

@@ -18,7 +18,8 @@ from tracer.engine.runspec.sun import SunTable
 from tracer.engine.two_columns import read_two_columns
 from tracer.errors import InputError
 from tracer.kernels.orbit import Orbit
-from tracer.physics.ephemeris import KNOWN, Sighting, sighting
+from tracer.physics.ephemeris import KNOWN, MOON, Sighting, moon_sighting, sighting
+from tracer.physics.host import MoonPlace, moon_as_seen, moon_at_phase
 from tracer.physics.lines import VelocityTable, catalogue_table, constant_table, table_of
 from tracer.physics.orbit import Station, orbit_through, station_at_distance, station_at_true_anomaly
 from tracer.physics.photo_losses import PhotoLoss, photo_loss
@@ -33,7 +34,8 @@ class Sunlight(NamedTuple):
 
     `orbit` is None where the body stands still; one that moves is at `station` at time 0. `tide` says whether the Sun's
     tide acts, `shadow` is the run file's word. `lines` shine, and push as well if `lines_push`; `push` [m s-2] at 1 au
-    comes beside them. `photo` holds the photo-losses at 1 au.
+    comes beside them. `photo` holds the photo-losses at 1 au. `moon` is None where no host is near; `orbit` is the
+    host's where one is.
     """
 
     station: Station
@@ -44,6 +46,7 @@ class Sunlight(NamedTuple):
     lines_push: bool
     push: float
     photo: PhotoLoss
+    moon: MoonPlace | None = None
 
     @property
     def matters_in_flight(self) -> bool:
@@ -64,8 +67,9 @@ def resolve_sunlight(spec: RunSpec, body: BodyConstants) -> Sunlight | None:
         return None
     lines = _lines(spec)
     lines_push, push = _push(spec, bool(lines))
-    station = _station(spec, spec.sun, body)
-    orbit = _orbit(spec, spec.sun, body, station)
+    moon = _moon(spec, spec.sun, body)
+    station = _station(spec, spec.sun, body) if moon is None else moon.station
+    orbit = _orbit(spec, spec.sun, body, station if moon is None else moon.host_station)
     nearest = station.distance if orbit is None else orbit.semi_major_axis * (1.0 - orbit.eccentricity)
     _refuse_inside_the_sun(spec, body, nearest)
     return Sunlight(
@@ -77,6 +81,7 @@ def resolve_sunlight(spec: RunSpec, body: BodyConstants) -> Sunlight | None:
         lines_push=lines_push,
         push=push,
         photo=_photo(spec, spec.sun),
+        moon=moon,
     )
 
 
@@ -90,6 +95,30 @@ def replaced_lines(spec: RunSpec) -> tuple[str, ...]:
     """Return the catalogue's lines with known g that the run file replaces by its own."""
     own = {line.name for line in spec.gas.line}
     return tuple(line.name for line in lines_of(spec.gas.species) if line.has_g and line.name in own)
+
+
+def _moon(spec: RunSpec, sun: SunTable, body: BodyConstants) -> MoonPlace | None:
+    """Return where the body stands beside its host, None where it has none."""
+    host = body.host
+    if host is None:
+        return None
+    if sun.epoch is not None:
+        if spec.body.name != MOON:
+            sighting_at_epoch(spec, sun.epoch)
+            raise refuse(
+                spec,
+                "body.host",
+                None,
+                f"beside sun.epoch is for the {MOON}; {spec.body.name} has no host there",
+            )
+        return moon_as_seen(moon_sighting(sun.epoch))
+    assert host.phase_angle is not None
+    station = _station(spec, sun, body)
+    if not station.distance > 2.0 * host.distance:
+        raise refuse(
+            spec, "body.host.distance", None, "must be less than half of the host's distance from the Sun"
+        )
+    return moon_at_phase(station, host.distance, host.rate, host.phase_angle)
 
 
 def _station(spec: RunSpec, sun: SunTable, body: BodyConstants) -> Station:
@@ -120,7 +149,7 @@ def _orbit(spec: RunSpec, sun: SunTable, body: BodyConstants, station: Station) 
             "sun.motion",
             sun.motion,
             f"beside an epoch is for planets: {spec.body.name} swings about its host, which no orbit about the Sun "
-            "follows; give sun.true_anomaly",
+            "follows; give sun.true_anomaly" + (", and body.host its phase_angle" if body.host else ""),
         )
     return orbit_through(station)
 

@@ -6,6 +6,8 @@ allocate nothing also do without numba's reference counts: counted atomically fo
 every call, they took more time than the flights themselves.
 """
 
+from typing import Any
+
 import numba
 
 from tracer.kernels import code_cache
@@ -14,6 +16,11 @@ OPTIONS = {"nogil": True, "error_model": "numpy"}
 
 INLINED = {**OPTIONS, "_nrt": False, "forceinline": True}
 """Options of what numba chooses by the types of its arguments, see `orbit`."""
+
+
+def field_type(record: Any, name: str) -> Any:
+    """Return numba's type of a field of a NamedTuple's type `record`."""
+    return record.types[record.fields.index(name)]
 
 
 def kernel(function):

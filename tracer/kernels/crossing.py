@@ -1,4 +1,4 @@
-"""Where a step's curve first passes the ground, the outer sphere or an edge of the shadow.
+"""Where a step's curve first passes the ground, the outer sphere, an edge of the shadow or the host.
 
 Every surface is a height that is positive on the atom's side. A curve that starts and ends above a surface
 may still dip below it: where it first nears and then leaves the surface, tangents bound how low it came. The shadow of
@@ -9,6 +9,7 @@ import math
 
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.dense_output import LENGTH, SERIES, place_at
+from tracer.kernels.host import host_height
 from tracer.kernels.orbit import body_in_series
 from tracer.kernels.shadow import (
     LIT,
@@ -24,6 +25,7 @@ UMBRA_EDGE = 2
 ANTUMBRA_EDGE = 3
 GROUND = 4
 OUTER = 5
+HOST = 6
 
 NEVER = 2.0
 """Part of a step, which is beyond its end."""
@@ -80,9 +82,12 @@ def _widened(shadow, sine, cosine, x, rho):
 
 
 @inlined
-def shadow_on(sky, curve, part):
-    """Return the shadow at `part` of the step's `curve`."""
-    return shadow_behind(sky.shadow, body_in_series(sky.forces, curve, SERIES, 1, part * curve[LENGTH]))
+def _height_on(sky, surface, zone, curve, part, place):
+    """Return what `height` does at `part` of the step, where the atom is at `place`; the host's surface counts too."""
+    body = body_in_series(sky.forces, curve, SERIES, 1, part * curve[LENGTH])
+    if surface == HOST:
+        return host_height(body, place)
+    return height(shadow_behind(sky.shadow, body), sky.forces.outer_radius, surface, zone, place)
 
 
 @kernel
@@ -95,9 +100,8 @@ def first_crossing(sky, surface, zone, curve, reach, start, end):
     """
     h = reach * curve[LENGTH]
     scale = math.sqrt(start[0] * start[0] + start[1] * start[1] + start[2] * start[2])
-    outer_radius = sky.forces.outer_radius
-    f0, d0 = height(shadow_on(sky, curve, 0.0), outer_radius, surface, zone, start)
-    f1, d1 = height(shadow_on(sky, curve, reach), outer_radius, surface, zone, end)
+    f0, d0 = _height_on(sky, surface, zone, curve, 0.0, start)
+    f1, d1 = _height_on(sky, surface, zone, curve, reach, end)
     d0 *= h
     d1 *= h
     launched = f0 <= TOUCH * scale
@@ -142,8 +146,7 @@ def _dip(sky, surface, zone, curve, reach, ends, depth):
         if trial > 3 and lesser + 2.0 * (bound - lesser) > -depth:
             return NEVER
         low = min(max(low, a + 0.05 * (b - a)), b - 0.05 * (b - a))
-        shadow = shadow_on(sky, curve, reach * low)
-        f, d = height(shadow, sky.forces.outer_radius, surface, zone, place_at(curve, reach * low))
+        f, d = _height_on(sky, surface, zone, curve, reach * low, place_at(curve, reach * low))
         if f < -depth:
             return low
         d *= reach * curve[LENGTH]
@@ -165,8 +168,7 @@ def _root(sky, surface, zone, curve, reach, start, right, launched, scale):
     left = 0.0
     part = start if 0.0 < start < right else right
     for _ in range(HALVINGS):
-        shadow = shadow_on(sky, curve, reach * part)
-        f, d = height(shadow, sky.forces.outer_radius, surface, zone, place_at(curve, reach * part))
+        f, d = _height_on(sky, surface, zone, curve, reach * part, place_at(curve, reach * part))
         if abs(f) <= SHARP * scale:
             return part
         if f > 0.0:

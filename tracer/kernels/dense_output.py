@@ -3,11 +3,12 @@
 The curve is float64 (CURVE_SIZE,): start time [s] and length [s] of the full step, the part of it that was
 flown before ground, outer sphere, shadow edge or age limit cut it, the zone of the shadow, then five
 coefficients of each of x, y, z, vx, vy, vz and the ionising and the other hazard, as Hairer, Norsett & Wanner
-(1993), II.6, write them; at the end the series (see `orbit`) of the body's distance, where the body moves.
+(1993), II.6, write them; at the end the series (see `orbit`) of the body's distance, where the body moves, and
+its host's phase.
 """
 
 from tracer.kernels.compiling import inlined, merged
-from tracer.kernels.orbit import ORDER
+from tracer.kernels.orbit import SERIES_SIZE
 
 START = 0
 LENGTH = 1
@@ -15,7 +16,7 @@ FLOWN = 2
 CURVE_ZONE = 3
 COEFFICIENTS = 4
 SERIES = 44
-CURVE_SIZE = SERIES + ORDER + 1
+CURVE_SIZE = SERIES + SERIES_SIZE
 
 
 @merged

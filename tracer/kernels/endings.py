@@ -7,3 +7,5 @@ AGED = 2
 UNRESOLVED = 3
 DROPPED = 4
 """Its weight had become negligible, and roulette ended it."""
+STRUCK = 5
+"""It hit the host."""

@@ -9,9 +9,9 @@ from tracer.fate import Fate
 from tracer.kernels.adsorption import desorbed, spread_along, stay
 from tracer.kernels.arc_flight import turned
 from tracer.kernels.bounce import rebound, sticking_at
-from tracer.kernels.compiling import INLINED, inlined, merged
-from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED
-from tracer.kernels.orbit import field_type, orbit_state, turning_at
+from tracer.kernels.compiling import INLINED, field_type, inlined, merged
+from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED, STRUCK
+from tracer.kernels.orbit import orbit_state, turning_at
 from tracer.kernels.resume import AGE, CLOCK, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
 from tracer.kernels.roulette import play_roulette
 from tracer.kernels.scoring import ground_cell
@@ -147,6 +147,9 @@ def _end_aloft(world, atom, tally, ending, alive, x, y, z):
         tally.escaped_by_direction[row, column] += alive
     elif ending == AGED:
         tally.ledger[Fate.AGE_LIMIT] += alive
+    elif ending == STRUCK:
+        tally.ledger[Fate.OTHER_LOSS] += alive
+        tally.struck[0] += alive
     elif ending != DROPPED:
         tally.ledger[Fate.UNRESOLVED] += alive
     atom[UNDER_WAY] = 0.0

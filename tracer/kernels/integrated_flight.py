@@ -2,24 +2,26 @@
 
 A flight in progress is float64 (FLIGHT_SIZE,): time since launch [s]; x, y, z [m]; vx, vy, vz [m s-1]; the
 ionising and the other hazard, whose sum's negative exponential is the survival; the slopes there; the next
-step [s]; the step before the present zone [s]; the zone; the number of trial steps; where the body moves, its
-distance [m] and radial velocity [m s-1]. It can be kept and gone on with at any time.
+step [s]; the step before the present zone [s]; the zone; the number of trial steps; where the body moves, the series
+of `orbit`, of which distance [m], radial velocity [m s-1] and a host's phase are used. It can be kept and gone on with
+at any time.
 """
 
 import math
 
 import numpy as np
+from numba.extending import overload
 
-from tracer.kernels.compiling import inlined, kernel, merged
+from tracer.kernels.compiling import INLINED, inlined, kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
+    HOST,
     NEVER,
     OUTER,
     PENUMBRA_EDGE,
     UMBRA_EDGE,
     first_crossing,
-    shadow_on,
     time_to_edge,
 )
 from tracer.kernels.dense_output import (
@@ -34,9 +36,11 @@ from tracer.kernels.dense_output import (
     set_component,
 )
 from tracer.kernels.dormand_prince import NODES, trial_step
-from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, STRUCK, UNRESOLVED
+from tracer.kernels.host import approach, host_neared, nearest, shade_and_nearness, without_host
 from tracer.kernels.motion import rates_beside
 from tracer.kernels.orbit import (
+    SERIES_SIZE,
     body_in_series,
     body_on_orbit,
     keep_body,
@@ -65,7 +69,7 @@ OPEN_STEP = 15
 ZONE = 16
 TRIALS = 17
 BODY = 18
-FLIGHT_SIZE = 20
+FLIGHT_SIZE = BODY + SERIES_SIZE
 
 MOST_TRIALS = 1_000_000.0
 SHORTEST_STEP = 1e-13
@@ -120,13 +124,16 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     slopes = _slopes(flight)
     r = math.sqrt(place[0] * place[0] + place[1] * place[1] + place[2] * place[2])
     speed_squared = place[3] * place[3] + place[4] * place[4] + place[5] * place[5]
-    scales = error_scales(tolerance, sky.forces, r, speed_squared)
     _begin_series(sky.forces, flight, curve)
+    body = body_in_series(sky.forces, curve, SERIES, 1, 0.0)
+    nearness = nearest(body, sky.forces.radius, 1.0 / r, place[0], place[1], place[2])
+    near = 1.0 / nearness[0] if nearness[0] > 1.0 / r else r
+    scales = error_scales(tolerance, sky.forces, r, speed_squared, (near, nearness[1]))
     h = min(flight[STEP], longest_step(1.0 / r, speed_squared, slopes[0]))
     h = longest_on_orbit(sky.forces, curve, SERIES, 1, h)
+    h = longest_beside_host(body, place, speed_squared, slopes[0], h)
     if zone == PENUMBRA:
-        shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, curve, SERIES, 1, 0.0))
-        h = min(h, longest_step_in_penumbra(shadow, place))
+        h = min(h, longest_step_in_penumbra(shadow_behind(sky.shadow, body), place))
     left = time_limit - flight[TIME]
     while True:
         last = h >= left
@@ -146,8 +153,8 @@ def advance(flight, curve, conditions, tolerance, time_limit):
     _store(curve, flight, h, place, slopes, growth, end_slopes, quartic)
     end = _moved(place, growth)
     flight[STEP] = h * change
-    near = surfaces_near(sky, shadow_on(sky, curve, 0.0), shadow_on(sky, curve, 1.0), zone, place, end)
-    if near[0] or near[1] or near[2]:
+    near = surfaces_near(sky, body, body_in_series(sky.forces, curve, SERIES, 1, h), zone, place, end)
+    if near[0] or near[1] or near[2] or near[3]:
         surface, part = first_surface(sky, zone, curve, near, place, end)
         if part <= 1.0:
             return _cut(flight, curve, conditions, zone, surface, part)
@@ -164,7 +171,8 @@ def advance(flight, curve, conditions, tolerance, time_limit):
 
 @merged
 def _begin_series(forces, flight, curve):
-    curve[SERIES], curve[SERIES + 1] = flight[BODY], flight[BODY + 1]
+    for i in range(SERIES_SIZE):
+        curve[SERIES + i] = flight[BODY + i]
     set_series(forces, curve, SERIES, 1)
 
 
@@ -277,12 +285,13 @@ def _give_up(flight, curve):
 
 
 @merged
-def surfaces_near(sky, start_shadow, end_shadow, zone, start, end):
-    """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge).
+def surfaces_near(sky, start_body, end_body, zone, start, end):
+    """Return which kinds of surface a step may have met: (ground, outer sphere, shadow edge, host).
 
-    `start` and `end` (x, y, z, vx, vy, vz) are its ends, with the shadow as it is at each.
+    `start` and `end` (x, y, z, vx, vy, vz) are its ends, with the body as it is at each.
     """
     forces = sky.forces
+    start_shadow, end_shadow = shadow_behind(sky.shadow, start_body), shadow_behind(sky.shadow, end_body)
     r0 = start[0] * start[0] + start[1] * start[1] + start[2] * start[2]
     r1 = end[0] * end[0] + end[1] * end[1] + end[2] * end[2]
     climb0 = start[0] * start[3] + start[1] * start[4] + start[2] * start[5]
@@ -292,6 +301,7 @@ def surfaces_near(sky, start_shadow, end_shadow, zone, start, end):
         r1 < forces.radius * forces.radius or (climb0 < 0.0 and climb1 > 0.0),
         r1 > outer or (climb0 > 0.0 and climb1 < 0.0 and 4.0 * max(r0, r1) > outer),
         sky.shadow.kind != NO_SHADOW and not _sunward_in_light(start_shadow, end_shadow, zone, start, end),
+        host_neared(start_body, end_body, start, end),
     )
 
 
@@ -299,7 +309,7 @@ def surfaces_near(sky, start_shadow, end_shadow, zone, start, end):
 def first_surface(sky, zone, curve, near, start, end):
     """Return (surface, part): what the step's curve meets first, and where; part is NEVER if nothing."""
     first, part, reach = 0, NEVER, 1.0
-    for surface in (GROUND, OUTER, PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
+    for surface in (GROUND, HOST, OUTER, PENUMBRA_EDGE, UMBRA_EDGE, ANTUMBRA_EDGE):
         if _may_meet(sky.shadow, zone, surface, near):
             other = first_crossing(sky, surface, zone, curve, reach, start, end)
             if other < part:
@@ -311,9 +321,11 @@ def first_surface(sky, zone, curve, near, start, end):
 
 @merged
 def _may_meet(shadow, zone, surface, near):
-    """Return True where `surface` bounds `zone` and is `near` (ground, outer sphere, shadow edge)."""
+    """Return True where `surface` bounds `zone` and is `near` (ground, outer sphere, shadow edge, host)."""
     if surface == GROUND:
         return near[0]
+    if surface == HOST:
+        return near[3]
     if surface == OUTER:
         return near[1]
     if zone == PENUMBRA:
@@ -348,6 +360,8 @@ def _cut(flight, curve, conditions, zone, surface, part):
         return LANDED
     if surface == OUTER:
         return CROSSED
+    if surface == HOST:
+        return STRUCK
     beyond = zone_beyond(conditions.sky.shadow, zone, surface)
     flight[ZONE] = beyond
     sky, tables = conditions.sky, conditions.push_tables
@@ -370,6 +384,28 @@ def longest_step(per_r, speed_squared, acceleration):
     """
     pull = abs(acceleration[0]) + abs(acceleration[1]) + abs(acceleration[2])
     return inverse_root(max(per_r * (speed_squared * per_r + pull), 1e-300))
+
+
+@inlined
+def _longest_beside_host(host, place, speed_squared, acceleration, longest):
+    _, per_way = shade_and_nearness(host, place[0], place[1], place[2])
+    return min(longest, longest_step(per_way, approach(host, speed_squared), acceleration))
+
+
+def longest_beside_host(body, place, speed_squared, acceleration, longest):
+    """Return the lesser of a step `longest` [s] and the longest that misses neither the host nor its shadow."""
+    if body.host is None:
+        return longest
+    return _longest_beside_host.py_func(body.host, place, speed_squared, acceleration, longest)
+
+
+@overload(longest_beside_host, jit_options=INLINED)
+def _compiled_longest_beside_host(body, place, speed_squared, acceleration, longest):
+    if without_host(body):
+        return lambda body, place, speed_squared, acceleration, longest: longest
+    return lambda body, place, speed_squared, acceleration, longest: _longest_beside_host(
+        body.host, place, speed_squared, acceleration, longest
+    )
 
 
 @kernel

@@ -9,6 +9,7 @@ from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
     GROUND,
     HALVINGS,
+    HOST,
     OUTER,
     PENUMBRA_EDGE,
     SHARP,
@@ -16,10 +17,10 @@ from tracer.kernels.crossing import (
     height,
 )
 from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at
-from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, UNRESOLVED
+from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, STRUCK, UNRESOLVED
 from tracer.kernels.lane_step import DOUBTFUL, LANDS, lane_place, lane_rates, try_steps
 from tracer.kernels.lanes import WIDTH
-from tracer.kernels.orbit import ORDER, body_in_series, body_on_orbit, keep_body
+from tracer.kernels.orbit import SERIES_SIZE, body_in_series, body_on_orbit, keep_body
 from tracer.kernels.shadow import PENUMBRA, shadow_behind, zone_at, zone_beyond
 from tracer.kernels.step_control import STEP_SHARE, first_step
 
@@ -87,10 +88,12 @@ def look_closer(lanes, lane, sky, tables, curve):
     start = lane_place(lanes, row.START, lane)
     end = lane_place(lanes, row.END, lane)
     h = lanes[row.LENGTH + lane]
-    shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, 0.0))
-    end_shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, h))
-    near = one.surfaces_near(sky, shadow, end_shadow, zone, start, end)
-    if near[0] or near[1] or (near[2] and _edge_met((shadow, end_shadow), sky.forces, zone, start, end)):
+    body = body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, 0.0)
+    end_body = body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, h)
+    shadows = shadow_behind(sky.shadow, body), shadow_behind(sky.shadow, end_body)
+    near = one.surfaces_near(sky, body, end_body, zone, start, end)
+    near_sphere = near[0] or near[1] or near[3]
+    if near_sphere or (near[2] and _edge_met(shadows, sky.forces, zone, start, end)):
         _draw_curve(lanes, lane, curve)
         surface, part = one.first_surface(sky, zone, curve, near, start, end)
         if part <= 1.0:
@@ -232,6 +235,9 @@ def _cut(lanes, lane, sky, tables, curve, zone, surface, part):
     if surface == OUTER:
         lanes[row.STANDING + lane] = CROSSED
         return
+    if surface == HOST:
+        lanes[row.STANDING + lane] = STRUCK
+        return
     body = body_in_series(sky.forces, lanes, row.SERIES + lane, WIDTH, part * lanes[row.LENGTH + lane])
     beyond = zone_beyond(sky.shadow, zone, surface)
     lanes[row.ZONE + lane] = beyond
@@ -252,7 +258,7 @@ def _draw_curve(lanes, lane, curve):
     curve[LENGTH] = h
     curve[FLOWN] = 1.0
     curve[CURVE_ZONE] = lanes[row.ZONE + lane]
-    for i in range(ORDER + 1):
+    for i in range(SERIES_SIZE):
         curve[SERIES + i] = lanes[row.SERIES + i * WIDTH + lane]
     for i in range(6):
         start, growth, bend, rest, quartic = _polynomial(lanes, lane, h, i * WIDTH)

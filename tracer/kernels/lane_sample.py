@@ -6,6 +6,7 @@ from tracer.kernels.apart import lane_value, set_lane_value
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.first_guess import rough_angle, rough_arcsine, rough_logarithm
 from tracer.kernels.fused import fused
+from tracer.kernels.host import with_slip
 from tracer.kernels.lanes import (
     ACCELERATION,
     ACCEPTED,
@@ -116,7 +117,8 @@ def sample_steps(lanes, sky, cells):
         seen = max(lane_value(lanes, LIT + lane), lane_value(lanes, PARTIAL + lane))
         set_lane_value(lanes, RECEIVED + lane, seen * full_light / s2)
         approach = fused(sx, vx - forces.radial_velocity, -fused(y, vy, z * vz))
-        set_lane_value(lanes, RECEDING + lane, -approach / math.sqrt(s2))
+        distance = math.sqrt(s2)
+        set_lane_value(lanes, RECEDING + lane, with_slip(forces, -approach / distance, y / distance))
         set_lane_value(
             lanes, LAYER + lane, rough_logarithm((r - cells.radius) * per_first) * cells.cells_per_log
         )

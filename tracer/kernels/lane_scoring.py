@@ -1,9 +1,12 @@
 """What the samples of all lanes leave in the cells, and their steps in the particle budget."""
 
+from numba.extending import overload
+
 from tracer.fate import Fate
 from tracer.kernels.cells import close_layer, column_at, row_at
-from tracer.kernels.compiling import merged
+from tracer.kernels.compiling import INLINED, field_type, inlined, merged
 from tracer.kernels.foresight import fetch_early
+from tracer.kernels.host import past_host, without_host
 from tracer.kernels.lanes import (
     ACCEPTED,
     CELL,
@@ -26,7 +29,7 @@ from tracer.kernels.lanes import (
 )
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.scoring import count_in_cell, count_in_images
-from tracer.kernels.shadow import PENUMBRA, lit_fraction
+from tracer.kernels.shadow import PENUMBRA, lit_fraction, zone_at
 
 
 @merged
@@ -44,7 +47,7 @@ def score_lanes(world, tally, lanes, shine):
         x, y, z = lanes[SAMPLE + lane], lanes[SAMPLE + Y + lane], lanes[SAMPLE + Z + lane]
         content, received = lanes[CONTENT + lane], lanes[RECEIVED + lane]
         if lanes[PARTIAL + lane] > 0.0:
-            received *= lit_fraction(sky.shadow, PENUMBRA, x, y, z, sky.forces.distance)
+            received *= seen_part(sky, x, y, z)
         for line in range(shine.shape[0]):
             shine[line] = received * line_value(tables, line, lanes[RECEDING + lane])
         if beyond_tables(tables, lanes[RECEDING + lane]):
@@ -81,3 +84,28 @@ def _find_cells(world, tally, lanes, lines):
                 fetch_early(tally.ionized, (layer, row, column))
             for line in range(lines):
                 fetch_early(tally.emission, (line, layer, row, column))
+
+
+@inlined
+def _seen_past_body(sky, x, y, z):
+    return lit_fraction(sky.shadow, PENUMBRA, x, y, z, sky.forces.distance)
+
+
+@inlined
+def _seen_past_both(sky, x, y, z):
+    own = lit_fraction(sky.shadow, zone_at(sky.shadow, x, y, z), x, y, z, sky.forces.distance)
+    return past_host(sky.forces, own, x, y, z)
+
+
+def seen_part(sky, x, y, z):
+    """Return the part of the Sun that an atom at (x, y, z) [m] sees, which is in a penumbra: of a host, of any zone."""
+    seen = _seen_past_body if sky.forces.host is None else _seen_past_both
+    return seen.py_func(sky, x, y, z)
+
+
+@overload(seen_part, jit_options=INLINED)
+def _compiled_seen_part(sky, x, y, z):
+    forces = field_type(sky, "forces")
+    if without_host(forces):
+        return lambda sky, x, y, z: _seen_past_body(sky, x, y, z)
+    return lambda sky, x, y, z: _seen_past_both(sky, x, y, z)

@@ -7,9 +7,10 @@ is at work on the next group.
 import math
 
 import numpy as np
+from numba.extending import overload
 
 from tracer.kernels.apart import lane_value, set_lane_value, table_entry
-from tracer.kernels.compiling import inlined, kernel
+from tracer.kernels.compiling import INLINED, inlined, kernel
 from tracer.kernels.dormand_prince import (
     NODES,
     TABLEAU,
@@ -26,6 +27,18 @@ from tracer.kernels.dormand_prince import (
 )
 from tracer.kernels.endings import FLYING
 from tracer.kernels.fused import fused
+from tracer.kernels.host import (
+    DARK,
+    approach,
+    host_neared,
+    nearest,
+    past_host,
+    shade_and_nearness,
+    with_host_pull,
+    with_slip,
+    without_host,
+)
+from tracer.kernels.host import PARTIAL as PARTLY_SHADED
 from tracer.kernels.integrated_flight import (
     MOST_TRIALS,
     SHORTEST_STEP,
@@ -44,6 +57,7 @@ from tracer.kernels.lanes import (
     FLOWN,
     FOURTH,
     GROWTH,
+    HOST_STEP,
     LAST,
     LENGTH,
     LIGHT,
@@ -57,6 +71,7 @@ from tracer.kernels.lanes import (
     SECOND,
     SERIES,
     SEVENTH,
+    SHADE,
     SIXTH,
     STAGE_ACCELERATION,
     STAGE_LIGHT,
@@ -109,6 +124,7 @@ def try_steps(lanes, sky, tables):
     Lanes without a flight make a step of no length.
     """
     numbers = _numbers(sky, tables)
+    shade_lanes(lanes, sky.forces)
     apart = prepare_apart(lanes, sky, tables)
     _choose_lengths(lanes, sky.forces)
     # Not a literal, for each of which numba would compile what it is passed to.
@@ -191,7 +207,7 @@ def lane_rates(sky, tables, zone, body, position, velocity):
     As lanes do. Light is relative to full light at `light_distance`; other losses neither go with it nor are constant.
     """
     x, y, z = position
-    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+    lit = past_host(body, lit_fraction(sky.shadow, zone, x, y, z, body.distance), x, y, z)
     extra = extra_push(body, tables, position, velocity)
     return _rates(_numbers(sky, tables), tables, lit, extra, body, position, velocity)
 
@@ -218,7 +234,8 @@ def prepare_apart(lanes, sky, tables):
     apart = 0
     for lane in range(WIDTH):
         zone = lanes[ZONE + lane]
-        partial = zone in (PENUMBRA, ANTUMBRA) and lanes[STANDING + lane] == FLYING
+        in_part = zone in (PENUMBRA, ANTUMBRA) or partly_shaded(sky.forces, lanes, lane)
+        partial = in_part and lanes[STANDING + lane] == FLYING
         lanes[PARTIAL + lane] = 1.0 if partial else 0.0
         if partial and zone == PENUMBRA:
             shadow = shadow_behind(sky.shadow, body_in_series(sky.forces, lanes, SERIES + lane, WIDTH, 0.0))
@@ -253,7 +270,8 @@ def look_apart(lanes, apart, stage, sky, tables):
         x, y, z = _moved(lanes, stage, lane, START, START + VELOCITY, 0)
         if partial:
             zone = int(lanes[ZONE + lane])
-            lanes[LIT + lane] = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+            lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+            lanes[LIT + lane] = past_host(body, lit, x, y, z)
         if tables[0] > MOST_GRIDS:
             v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
             lanes[EXTRA + lane] = extra_push(body, tables, (x, y, z), v)
@@ -336,6 +354,7 @@ def _rates(numbers, tables, lit, extra, body, position, velocity):
     dilution = (forces.light_distance * forces.light_distance) * per_s2
     light = lit * dilution
     receding = fused(uy, vy, fused(uz, vz, -(ux * (vx - body.radial_velocity))))
+    receding = with_slip(body, receding, uy)
     push = _pushed(tables, one_grid, receding) + _pushed(tables, other_grid, receding)
     sunward = fused(forces.tide_gm, per_s2, -(light * ((forces.push + extra) + push)))
     stay = w * w - pull
@@ -343,7 +362,7 @@ def _rates(numbers, tables, lit, extra, body, position, velocity):
     ax = fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level)))
     ay = fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy)))
     ax, ay = with_turning_growth(body, ax, ay, x, y)
-    acceleration = ax, ay, -fused(pull, z, sunward * uz)
+    acceleration = with_host_pull(body, ax, ay, -fused(pull, z, sunward * uz), x, y, z)
     return acceleration, light, fused(lit, losses.other_lit, dilution * losses.other_distance), r2 * per_r3
 
 
@@ -392,13 +411,15 @@ def _choose_lengths(lanes, forces):
         longest = longest_step(per_r, v[0] * v[0] + v[1] * v[1] + v[2] * v[2], a)
         set_series(forces, lanes, SERIES + lane, WIDTH)
         longest = longest_on_orbit(forces, lanes, SERIES + lane, WIDTH, longest)
+        longest = longest_beside_host_in_lane(forces, lanes, lane, longest)
         h = min(lane_value(lanes, STEP + lane), longest)
         left = lane_value(lanes, TIME_LIMIT + lane) - lane_value(lanes, TIME + lane)
         last = h >= left
         h = left if last else h
         set_lane_value(lanes, LENGTH + lane, h if lane_value(lanes, STANDING + lane) == FLYING else 0.0)
         set_lane_value(lanes, LAST + lane, 1.0 if last else 0.0)
-        set_lane_value(lanes, LIT + lane, 1.0 if lane_value(lanes, ZONE + lane) == FULL_LIGHT else 0.0)
+        lit = 1.0 if lane_value(lanes, ZONE + lane) == FULL_LIGHT else 0.0
+        set_lane_value(lanes, LIT + lane, unless_dark(forces, lanes, lane, lit))
 
 
 @inlined
@@ -423,8 +444,11 @@ def _judge(lanes, sky):
         of_hazard = fused(per_light, light_error, lane_value(lanes, OTHER_ERROR + lane))
         per_r = lane_value(lanes, START + NEARNESS + lane)
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
-        squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_r)) * (
-            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_r * per_r)
+        body = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
+        x, y, z = _vector(lanes, START + lane)
+        per_centre, per_far = nearest(body, forces.radius, per_r, x, y, z)
+        squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_far)) * (
+            _squared_error(h, v, v3, v4, v5, v6, v7) * (per_centre * per_centre)
             + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v_squared)
             + of_hazard * of_hazard
         )
@@ -478,7 +502,8 @@ def _flag(lanes, sky):
         end_above, end_rate = _cone(shadow, there, lit, end_x, end_y, end_z, end_vx, end_vy, end_vz)
         neared = (sign * rate <= 0.0) & (sign * end_rate >= 0.0)
         edge = edges & ((sign * end_above < 0.0) | neared | (lane_value(lanes, PARTIAL + lane) > 0.0))
-        other = (end_r2 > highest) | turns | edge
+        start, end = (x, y, z, vx, vy, vz), (end_x, end_y, end_z, end_vx, end_vy, end_vz)
+        other = (end_r2 > highest) | turns | edge | host_neared(here, there, start, end)
         met = (end_r2 < lowest) | dips | other
         accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
         too_short = not (lane_value(lanes, STEP + lane) > SHORTEST_STEP * lane_value(lanes, TIME + lane))
@@ -513,3 +538,65 @@ def _squared_error(h, k1, k3, k4, k5, k6, k7):
     ey = error_row(h, k1[1], k3[1], k4[1], k5[1], k6[1], k7[1])
     ez = error_row(h, k1[2], k3[2], k4[2], k5[2], k6[2], k7[2])
     return fused(ex, ex, fused(ey, ey, ez * ez))
+
+
+@inlined
+def _shade_lanes(lanes, forces):
+    for lane in range(WIDTH):
+        body = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
+        x, y, z = _vector(lanes, START + lane)
+        vx, vy, vz = _vector(lanes, START + VELOCITY + lane)
+        shade, per_way = shade_and_nearness(body.host, x, y, z)
+        v2 = approach(body.host, vx * vx + vy * vy + vz * vz)
+        set_lane_value(lanes, SHADE + lane, shade)
+        a = _vector(lanes, START + ACCELERATION + lane)
+        set_lane_value(lanes, HOST_STEP + lane, longest_step(per_way, v2, a))
+
+
+def shade_lanes(lanes, forces):
+    """Say in every lane how its next step lies in the host's shadow, and how long it may be beside the host."""
+    if forces.host is not None:
+        _shade_lanes.py_func(lanes, forces)
+
+
+def partly_shaded(forces, lanes, lane):
+    """Return whether the host may cover part of the Sun during a lane's step."""
+    return False if forces.host is None else lanes[SHADE + lane] == PARTLY_SHADED
+
+
+def unless_dark(forces, lanes, lane, lit):
+    """Return the part `lit` of the Sun that is seen, 0 where the lane's step lies in the host's umbra."""
+    return lit if forces.host is None or lanes[SHADE + lane] < DARK else 0.0
+
+
+def longest_beside_host_in_lane(forces, lanes, lane, longest):
+    """Return the lesser of a step `longest` [s] and the longest beside the host."""
+    return longest if forces.host is None else min(longest, lanes[HOST_STEP + lane])
+
+
+@overload(shade_lanes, jit_options=INLINED)
+def _compiled_shade_lanes(lanes, forces):
+    if without_host(forces):
+        return lambda lanes, forces: None
+    return lambda lanes, forces: _shade_lanes(lanes, forces)
+
+
+@overload(partly_shaded, jit_options=INLINED)
+def _compiled_partly_shaded(forces, lanes, lane):
+    if without_host(forces):
+        return lambda forces, lanes, lane: False
+    return lambda forces, lanes, lane: lane_value(lanes, SHADE + lane) == PARTLY_SHADED
+
+
+@overload(unless_dark, jit_options=INLINED)
+def _compiled_unless_dark(forces, lanes, lane, lit):
+    if without_host(forces):
+        return lambda forces, lanes, lane, lit: lit
+    return lambda forces, lanes, lane, lit: 0.0 if lane_value(lanes, SHADE + lane) == DARK else lit
+
+
+@overload(longest_beside_host_in_lane, jit_options=INLINED)
+def _compiled_longest_beside_host_in_lane(forces, lanes, lane, longest):
+    if without_host(forces):
+        return lambda forces, lanes, lane, longest: longest
+    return lambda forces, lanes, lane, longest: min(longest, lane_value(lanes, HOST_STEP + lane))

@@ -8,7 +8,7 @@ from itertools import accumulate
 
 import numpy as np
 
-from tracer.kernels.orbit import ORDER
+from tracer.kernels.orbit import SERIES_SIZE
 
 WIDTH = 16
 """Number of lanes; known when a loop is compiled, and large enough not to be unrolled before it is vectorised."""
@@ -89,10 +89,13 @@ _ROWS = (
     ("LOST", 1),
     ("IONIZED", 1),
     ("LIFE", 1),
-    # Where the body moves: the series of its distance about the step's start.
-    ("SERIES", ORDER + 1),
+    # Where the body moves: the series of its distance about the step's start, and the host's phase there.
+    ("SERIES", SERIES_SIZE),
     # The sample's velocity in the Sun-fixed frame.
     ("SAMPLE_VELOCITY", 3),
+    # Where there is a host: how the step lies in its shadow, and the longest step [s] beside it.
+    ("SHADE", 1),
+    ("HOST_STEP", 1),
 )
 _FIRST = dict(
     zip(
@@ -150,6 +153,8 @@ IONIZED = _FIRST["IONIZED"]
 LIFE = _FIRST["LIFE"]
 SERIES = _FIRST["SERIES"]
 SAMPLE_VELOCITY = _FIRST["SAMPLE_VELOCITY"]
+SHADE = _FIRST["SHADE"]
+HOST_STEP = _FIRST["HOST_STEP"]
 
 VACANT = -2.0
 """Standing of a lane without a flight."""

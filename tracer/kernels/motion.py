@@ -6,6 +6,7 @@ from typing import NamedTuple
 import numpy as np
 
 from tracer.kernels.compiling import inlined
+from tracer.kernels.host import Host, HostOrbit, past_host, with_host_pull, with_slip
 from tracer.kernels.lines import sum_of_lines
 from tracer.kernels.orbit import Orbit, with_turning_growth
 from tracer.kernels.shadow import Shadow, lit_fraction
@@ -18,7 +19,8 @@ class Forces(NamedTuple):
     tide; the body stands at `distance` [m] and recedes at `radial_velocity` [m s-1]; the frame turns at
     `turning` [rad s-1] about +z, 0 switches its terms off. `push` [m s-2] away from the Sun, at
     `light_distance` [m] in full light, comes on top of the lines'. A body that moves has an `orbit`, and distance,
-    radial velocity and turning are those at time 0; one that stands still has None.
+    radial velocity and turning are those at time 0; one that stands still has None. A moon has a `host`, a HostOrbit
+    where it moves; its distance, radial velocity and turning are then the host's, and `orbit` is the host's too.
     """
 
     gm: float
@@ -31,6 +33,7 @@ class Forces(NamedTuple):
     push: float
     light_distance: float
     orbit: Orbit | None
+    host: Host | HostOrbit | None
 
 
 class Losses(NamedTuple):
@@ -68,11 +71,11 @@ def radial_velocity(body, x, y, z, vx, vy, vz):
     """Return the atom's heliocentric radial velocity [m s-1], positive away from the Sun.
 
     `body` is the Forces of one that stands still, or a MovingBody. The turning of the frame moves atom and origin alike
-    about the Sun and drops out.
+    about the Sun and drops out, but for the slip of a frame that turns with a host.
     """
     sx = body.distance - x
     s = math.sqrt(sx * sx + y * y + z * z)
-    return (y * vy + z * vz - sx * (vx - body.radial_velocity)) / s
+    return with_slip(body, (y * vy + z * vz - sx * (vx - body.radial_velocity)) / s, y / s)
 
 
 @inlined
@@ -80,7 +83,7 @@ def sunlight_received(sky, zone, body, x, y, z):
     """Return the light at (x, y, z) [m] relative to full light at `light_distance`."""
     forces = sky.forces
     sx = body.distance - x
-    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+    lit = past_host(body, lit_fraction(sky.shadow, zone, x, y, z, body.distance), x, y, z)
     return lit * forces.light_distance * forces.light_distance / (sx * sx + y * y + z * z)
 
 
@@ -96,7 +99,7 @@ def rates_beside(sky, tables, zone, body, position, velocity):
 
     a = -GM r/r^3 + GM_sun (s/D^3 - x_hat/d^2) - b s/D - 2 W x v + W^2 (x, y, 0) - dW/dt x r, s from the atom to the
     Sun, D = |s|, W the turning and b the radiation acceleration; `body` is the Forces of one that stands still, whose
-    W is constant, or a MovingBody.
+    W is constant, or a MovingBody. A host at h adds GM_host ((h - r)/|h - r|^3 - h/|h|^3).
     """
     forces, losses = sky.forces, sky.losses
     x, y, z = position
@@ -109,7 +112,7 @@ def rates_beside(sky, tables, zone, body, position, velocity):
     per_s2 = 1.0 / s2
     per_s = math.sqrt(s2) * per_s2
     ux, uy, uz = sx * per_s, y * per_s, z * per_s
-    lit = lit_fraction(sky.shadow, zone, x, y, z, body.distance)
+    lit = past_host(body, lit_fraction(sky.shadow, zone, x, y, z, body.distance), x, y, z)
     dilution = forces.light_distance * forces.light_distance * per_s2
     light = lit * dilution
     sunward = forces.tide_gm * per_s2 - light * forces.push
@@ -118,9 +121,11 @@ def rates_beside(sky, tables, zone, body, position, velocity):
     ay = (w * w - pull) * y - sunward * uy
     az = -pull * z - sunward * uz
     ax, ay = with_turning_growth(body, ax, ay, x, y)
+    ax, ay, az = with_host_pull(body, ax, ay, az, x, y, z)
     push = 0.0
     if lit > 0.0:
-        push = sum_of_lines(tables, (uy * vy + uz * vz) - ux * (vx - body.radial_velocity))
+        receding = (uy * vy + uz * vz) - ux * (vx - body.radial_velocity)
+        push = sum_of_lines(tables, with_slip(body, receding, uy))
     acceleration = (
         (ax + 2.0 * w * vy) - (light * ux) * push,
         (ay - 2.0 * w * vx) + (light * uy) * push,

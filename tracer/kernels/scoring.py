@@ -26,8 +26,9 @@ class Tally(NamedTuple):
     `ionized` (altitude, latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time),
     `ledger` (fate) and `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without
     cells where no atom rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond`
-    samples beyond the end of a line's table. Where the body moves, `aloft` holds all samples, and `older` weight times
-    survival time behind the limit of age.
+    samples beyond the end of a line's table; `struck` the weight that hit the host, without an entry where there is
+    none. Where the body moves, `aloft` holds all samples, and `older` weight times survival time behind the limit of
+    age.
     """
 
     content: np.ndarray
@@ -51,6 +52,7 @@ class Tally(NamedTuple):
     life: np.ndarray
     aloft: np.ndarray
     older: np.ndarray
+    struck: np.ndarray
 
 
 @merged

@@ -38,7 +38,7 @@ from tracer.kernels.lanes import (
 from tracer.kernels.launches import Launches
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity, sunlight_received
-from tracer.kernels.orbit import orbit_state, turning_at
+from tracer.kernels.orbit import orbit_state, stated_body, turning_at
 from tracer.kernels.resume import (
     AGE,
     CLOCK,
@@ -99,7 +99,7 @@ def trace_snapshot(
 
 def books_of(tally: Tally) -> tuple[Tally, Tally, Tally]:
     """Return the tallies that ends of flights are entered in: of the cohort, of events in the window, of no account."""
-    numbers = ("ledger", "launches", "roulette", "life")
+    numbers = ("ledger", "launches", "roulette", "life", "struck")
     fluxes = ("returned", "captured", "escaped", "escaped_by_direction")
     kept = {"released", *numbers, *fluxes}
     scrap = Tally(
@@ -303,8 +303,9 @@ def _show(world, tally, atom, lanes, lane, shine):
     at = START + VELOCITY + lane
     velocity = (lanes[at], lanes[at + Y], lanes[at + Z])
     content = lanes[ALIVE + lane] * lanes[KEPT + lane]
-    received = sunlight_received(sky, int(lanes[ZONE + lane]), sky.forces, x, y, z)
-    receding = radial_velocity(sky.forces, x, y, z, *velocity)
+    body = stated_body(sky.forces)
+    received = sunlight_received(sky, int(lanes[ZONE + lane]), body, x, y, z)
+    receding = radial_velocity(body, x, y, z, *velocity)
     for line in range(shine.shape[0]):
         shine[line] = received * line_value(tables, line, receding)
     tally.aloft[0] += content

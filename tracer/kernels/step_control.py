@@ -59,16 +59,18 @@ def far_out(radius, per_distance):
 
 
 @merged
-def error_scales(tolerance, forces, distance, speed_squared):
+def error_scales(tolerance, forces, distance, speed_squared, nearest):
     """Return what squared errors of position [m], velocity [m s-1] and hazard are multiplied by in `step_error`.
 
-    Position counts against the `distance` [m] from the centre, velocity against the speed and that of a circular
-    orbit, the hazard, which survival is the exponential of, against 1; one means what `tolerance` allows.
+    Position counts against the distance from the centre, velocity against the speed and that of a circular orbit at
+    `distance` [m], the hazard, which survival is the exponential of, against 1; one means what `tolerance` allows.
+    `nearest` holds the distance [m] from the nearer centre, of body or host, and one over [m-1] that which `far_out`
+    counts.
     """
     allowed = STEP_SHARE * tolerance
-    per_allowed = far_out(forces.radius, 1.0 / distance) / (allowed * allowed)
+    per_allowed = far_out(forces.radius, nearest[1]) / (allowed * allowed)
     return (
-        per_allowed / (distance * distance),
+        per_allowed / (nearest[0] * nearest[0]),
         per_allowed / (speed_squared + forces.gm / distance),
         per_allowed,
     )

@@ -7,7 +7,7 @@ from typing import Any, NamedTuple
 
 from tracer.catalogue.lines import lines
 from tracer.catalogue.load import bodies, gases, hosts
-from tracer.catalogue.records import Orbit
+from tracer.catalogue.records import Body, Orbit
 from tracer.physics.orbit import hill_radius
 from tracer.physics.thermal import most_probable_speed
 from tracer.units import parse, si
@@ -106,10 +106,26 @@ def _orbit_and_hill_radius(body: Table, radius: float) -> tuple[Orbit | None, fl
     gm = _value(body, "gm", "gravitational parameter", radius)
     if gm is None and known:
         gm = known.gm
+    host = known.host if known else hosts()["Sun"]
+    if "host" in body:
+        return host.orbit or orbit, None if gm is None else _hill_radius_about_host(
+            _table(body, "host"), known, gm
+        )
     if orbit is None:
         return None, None
-    host = known.host if known else hosts()["Sun"]
     return host.orbit or orbit, None if gm is None else hill_radius(orbit, gm, host.gm)
+
+
+def _hill_radius_about_host(host: Table, known: Body | None, gm: float) -> float | None:
+    """Return a (m/3M)^(1/3) [m] of a moon on a circle about the `host` that its run file tells, or the catalogue."""
+    host_gm = _value(host, "gm", "gravitational parameter", 1.0)
+    distance = _value(host, "distance", "length", 1.0)
+    if known is not None:
+        host_gm = known.host.gm if host_gm is None else host_gm
+        distance = known.orbit.semi_major_axis if distance is None else distance
+    if not host_gm or distance is None:
+        return None
+    return hill_radius(Orbit(distance, 0.0), gm, host_gm)
 
 
 def _table(parent: Table, key: str) -> Table:

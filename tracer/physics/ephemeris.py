@@ -44,6 +44,20 @@ class Sighting(NamedTuple):
     true_anomaly: float
 
 
+class MoonSighting(NamedTuple):
+    """Where the Moon stands at a moment, under the Sun and beside the Earth.
+
+    `host` (3,) [m] is the Earth's place in the Moon's Sun-fixed frame, whose north is that of the orbit of Earth and
+    Moon about the Sun; `rate` [rad s-1] about north at which the Earth's direction turns among the stars just then;
+    `host_station` and `station` are the Earth's and the Moon's own.
+    """
+
+    host: Floats
+    rate: float
+    host_station: Station
+    station: Station
+
+
 def heliocentric_state(name: str, moment: datetime) -> HeliocentricState:
     """Return where a planet or the Moon is at `moment`, which must be in UTC.
 
@@ -88,6 +102,32 @@ def sighting(name: str, moment: datetime) -> Sighting:
     # e sin f = h v_r / GM and e cos f = h^2 / (GM r) - 1 of a Kepler orbit.
     anomaly = math.degrees(math.atan2(h * receding, h * h / r - GM_SUN)) % 360.0
     return Sighting(Station(distance, radial_velocity, h / r**2), anomaly)
+
+
+def moon_sighting(moment: datetime) -> MoonSighting:
+    """Return where the Moon stands at `moment`, which must be in UTC, beside the Earth and under the Sun."""
+    moon, earth = heliocentric_state(MOON, moment), heliocentric_state("Earth", moment)
+    orbiting = _state(erfa.plan94(*_terrestrial_time(moment), EARTH_MOON))
+    normal = np.cross(orbiting.position, orbiting.velocity)
+    distance = float(np.linalg.norm(moon.position))
+    x_axis = -moon.position / distance
+    z_axis = normal - (normal @ x_axis) * x_axis
+    z_axis /= np.linalg.norm(z_axis)
+    axes = np.array([x_axis, np.cross(z_axis, x_axis), z_axis])
+    host, motion = axes @ (earth.position - moon.position), axes @ (earth.velocity - moon.velocity)
+    velocity = axes @ moon.velocity
+    return MoonSighting(
+        host,
+        float((host[0] * motion[1] - host[1] * motion[0]) / (host[0] ** 2 + host[1] ** 2)),
+        _own_station(earth),
+        Station(distance, float(-velocity[0]), float(-velocity[1]) / distance),
+    )
+
+
+def _own_station(state: HeliocentricState) -> Station:
+    distance = float(np.linalg.norm(state.position))
+    momentum = float(np.linalg.norm(np.cross(state.position, state.velocity)))
+    return Station(distance, float(state.position @ state.velocity) / distance, momentum / distance**2)
 
 
 def _terrestrial_time(moment: datetime) -> tuple[float, float]:

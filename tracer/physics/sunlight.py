@@ -4,6 +4,7 @@ import math
 
 from tracer.catalogue.load import hosts
 from tracer.constants import ASTRONOMICAL_UNIT, GM_SUN
+from tracer.kernels.host import Host, HostOrbit
 from tracer.kernels.motion import Conditions, Forces, Losses, Sky
 from tracer.kernels.orbit import Orbit
 from tracer.kernels.shadow import CONES, CYLINDER, NO_SHADOW, Shadow
@@ -45,11 +46,12 @@ def forces_of(
     tide: bool,
     push: float,
     orbit: Orbit | None = None,
+    host: Host | HostOrbit | None = None,
 ) -> Forces:
     """Return the forces on an atom near a body at `station`; `push` [m s-2] is constant, at 1 au, without the lines'.
 
     `gm` [m3 s-2] and `radius` [m] of the body; beyond `outer_radius` [m] a flight ends. With an `orbit` the body moves
-    on it, and `station` is where it is at time 0.
+    on it, and `station` is where it is at time 0. A moon has a `host`; where it moves, both are those of that.
     """
     return Forces(
         gm=float(gm),
@@ -62,6 +64,7 @@ def forces_of(
         push=float(push),
         light_distance=ASTRONOMICAL_UNIT,
         orbit=orbit,
+        host=host,
     )
 
 

@@ -20,6 +20,8 @@ REPLICATE, EDGE = "replicate", "bounds"
 
 ADSORBED_COLUMN = "adsorbed_column"
 """The one tallied variable that only runs have whose ground holds atoms for a while."""
+HOST_IMPACT_RATE = "host_impact_rate"
+"""The one tallied variable that only moons beside their host have."""
 
 IMAGE = "<image>"
 """Stands for an image's product name in the rows below."""
@@ -226,6 +228,13 @@ ROWS = (
     Variable(ADSORBED_COLUMN, _GROUND, "m-2", "column of atoms at rest on the ground", optional=True),
     Variable("ionization_rate", _CELLS, "m-3 s-1", "ions made by sunlight per volume and time"),
     Variable("ledger", (RELEASE, FATE), "s-1", "particle budget"),
+    Variable(
+        HOST_IMPACT_RATE,
+        (RELEASE,),
+        "s-1",
+        "rate of atoms that hit the host planet, a part of other_loss",
+        optional=True,
+    ),
     Variable(
         "roulette_balance",
         (RELEASE,),

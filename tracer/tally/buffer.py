@@ -48,11 +48,17 @@ class Responses(NamedTuple):
 
 
 def make_layout(
-    grid: Grid, planes: Sequence[ImagePlane], lines: int, adsorbing: bool = False, speed_bins: int = 0
+    grid: Grid,
+    planes: Sequence[ImagePlane],
+    lines: int,
+    adsorbing: bool = False,
+    speed_bins: int = 0,
+    hosted: bool = False,
 ) -> BufferLayout:
     """Return the layout for a grid, image planes, a number of emission lines and of bins of launch speed.
 
-    Atoms at rest are counted where the ground is `adsorbing`. What is kept by replicate comes first.
+    Atoms at rest are counted where the ground is `adsorbing`, those that hit the host where the body is `hosted`. What
+    is kept by replicate comes first.
     """
     altitudes = len(grid.altitude_edges) - 1
     ground = (len(grid.latitude_edges) - 1, len(grid.local_time_edges) - 1)
@@ -62,7 +68,7 @@ def make_layout(
     kept = (cells, ground, (pixels,), (by_velocity,), (lines, *cells), (lines, pixels), (lines, by_velocity))
     fluxes = (ground,) * 5
     at_rest = ground if adsorbing else (0, 0)
-    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,))
+    numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,), (int(hosted),))
     bins = (speed_bins, ORDERS)
     responses = ((*bins, *ground), (*bins, pixels), (*bins, lines, pixels)) if speed_bins else ()
     replicated = sum(prod(shape) for shape in (*responses, *kept))

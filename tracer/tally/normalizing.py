@@ -72,6 +72,8 @@ def product_fields(
         yield ProductField("adsorbed_column", tally.adsorbed, per_area)
     yield ProductField("ionization_rate", tally.ionized, per_volume)
     yield ProductField("ledger", tally.ledger, one)
+    if tally.struck.size:
+        yield ProductField("host_impact_rate", tally.struck[0], one)
     yield ProductField("roulette_balance", tally.roulette[0], one)
     yield ProductField("mean_flights", tally.launches[0], per_atom)
     yield ProductField("mean_life", tally.life[0], per_atom)

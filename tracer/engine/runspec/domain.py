@@ -13,7 +13,7 @@ class DomainTable(Table):
     outer_radius: LengthOrRadii | None = Field(
         None,
         description="Distance from the centre; crossing it outwards is escape, bound or not. Default: the "
-        "Hill radius; required for a body without an orbit.",
+        "Hill radius, of a moon with a host about the host; required for a body without an orbit.",
     )
     age_limit: Duration = Field(Quantity(1.0, "yr"), description="Longest life of a particle.")
 

@@ -19,7 +19,9 @@ class SunTable(Table):
     """The Sun; left out there is no light, no tide and no turning frame, and +x still points to it."""
 
     true_anomaly: Angle | None = Field(
-        None, description="Where the body stands on its orbit; one of this, `epoch` and `distance` is needed."
+        None,
+        description="Where the body, or its host, stands on its orbit; one of this, `epoch` and `distance` is "
+        "needed.",
     )
     epoch: Epoch | None = Field(
         None,
@@ -27,7 +29,8 @@ class SunTable(Table):
         "`true_anomaly`.",
     )
     distance: Length | None = Field(
-        None, description="Distance of the body from the Sun, in place of `true_anomaly`."
+        None,
+        description="Distance of the body, or its host, from the Sun, in place of `true_anomaly`.",
     )
     radial_velocity: RadialVelocity | None = Field(
         None,
@@ -38,11 +41,15 @@ class SunTable(Table):
         "stationary",
         description="Whether distance and velocity of the body stay the same while atoms fly, or the body travels on "
         "its orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of "
-        "mean anomaly before it, and the ledger is that of the atoms released there; needs an orbit.",
+        "mean anomaly, or of a moon's phase, before it, and the ledger is that of the atoms released there; needs an "
+        "orbit. A moon with a host goes round it meanwhile, and has the phase angle at the stated position; "
+        "stationary, the host keeps its place, and the frame turns, with the Sun's direction, as the moon goes about the host: "
+        "right for gravity, and for light while that turns little.",
     )
     shadow: Literal["penumbra", "cylinder", "none"] = Field(
         "penumbra",
-        description="Shadow of the body: cones of umbra and penumbra, a cylinder of the body's radius, or none.",
+        description="Shadow of the body: cones of umbra and penumbra, a cylinder of the body's radius, or none. A "
+        "host's is always cones, unless there is none.",
     )
     solar_activity: Fraction = Field(
         0.0, description="Activity between the quiet Sun, 0, and the active, 1; interpolates the photo-rates."

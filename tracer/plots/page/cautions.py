@@ -137,6 +137,12 @@ def _of_sunlight(run: Table, shines: bool) -> Iterator[str]:
 
 def _of_the_host(run: Table) -> Iterator[str]:
     body = table(run, "body")
+    if "host" in body:
+        yield (
+            "The moon's orbit is a circle, but for an epoch in the plane of its host's orbit about the Sun; the host "
+            "has no atmosphere that bends light into its shadow, and no magnetosphere."
+        )
+        return
     known = bodies().get(str(body.get("name")))
     if known is not None and known.host.orbit is not None:
         host = known.host.name
