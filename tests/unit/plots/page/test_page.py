@@ -379,6 +379,13 @@ def test_every_figure_has_a_heading_and_an_alternative(make_product, empty):
     assert "Nothing was counted" in " ".join(one.alternative for one in product_figures(empty(product)))
 
 
+def test_atoms_at_rest_are_shown_only_where_some_rest(make_product):
+    product = make_product()
+    names = {one.name for one in product_figures(product)}
+    without = {one.name for one in product_figures(product.drop_vars("adsorbed_column"))}
+    assert names - without == {"figure-adsorbed-map"}
+
+
 def test_largest_cell_of_a_map_is_named(make_product):
     product = make_product()
     product.return_flux.values[0, 3, 1] = 9e11
