@@ -245,6 +245,26 @@ def test_what_limits_a_product_is_said(make_product):
     assert "Up to 2\N{NO-BREAK SPACE}% of the time" in words
 
 
+@pytest.mark.parametrize(
+    ("gas", "lines", "words"),
+    [
+        (
+            "",
+            ("na_d2",),
+            "Push of sunlight: that of the lines with known g, Doppler-shifted. Photo-ionisation: the",
+        ),
+        ("", (), "Push of sunlight: none. Photo-ionisation: the catalogue's rate."),
+        ('photoionization_rate = "0 s-1"', (), "Photo-ionisation: none."),
+        ('photoionization_rate = "5e-6 s-1"', (), "Photo-ionisation: 5 × 10⁻⁶ s⁻¹ at 1 au."),
+        ('radiation_acceleration = "0.05 m s-2"', ("na_d2",), "Push of sunlight: 0.05 m s⁻² at 1 au."),
+    ],
+)
+def test_what_sunlight_does_is_told(make_product, gas, lines, words):
+    text = RUN.replace('species = "Na"', f'species = "Na"\n{gas}')
+    told = dict(scene_words(make_product(lines=lines).assign_attrs(run_file=text)))
+    assert words in plain(told["Sunlight"])
+
+
 def test_scene_without_the_sun_leaves_out_sunlight(make_product):
     with_sun, without = (
         " ".join(left_out(make_product().assign_attrs(run_file=text)))
