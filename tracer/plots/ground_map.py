@@ -9,6 +9,7 @@ from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 from numpy.typing import NDArray
 
+from tracer.errors import InputError
 from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
 from tracer.plots.field import Field, released_words, releases, variable
 from tracer.plots.hatching import hatch_rectangles
@@ -29,7 +30,7 @@ from tracer.plots.style import (
     styled,
 )
 from tracer.plots.words import framed_figure
-from tracer.product.layout import LATITUDE, LOCAL_TIME
+from tracer.product.layout import ADSORBED_COLUMN, LATITUDE, LOCAL_TIME
 
 DAWN, DUSK, TURN = 6.0, 18.0, 24.0
 LEFT, RIGHT, TOP, STRIP = 11.0, 4.0, 6.5, 3.0
@@ -115,8 +116,18 @@ DIRECTIONS = GroundMap(
     FLUX_COLOURS,
     "no escape counted",
 )
+ADSORBED = GroundMap(
+    ADSORBED_COLUMN,
+    "Column of atoms at rest on the ground",
+    "Atoms at rest (cm$^{-2}$)",
+    PER_SQUARE_CENTIMETRE,
+    "cm-2",
+    COLUMN_COLOURS,
+    "no atom at rest counted",
+)
 MAPS = {
     "column": COLUMN,
+    "adsorbed-map": ADSORBED,
     "release-map": RELEASED,
     "return-map": RETURNED,
     "capture-map": CAPTURED,
@@ -136,7 +147,7 @@ def ground_map(
     product : xarray.Dataset
         As `open_product` gives it.
     what : GroundMap
-        `COLUMN`, `RELEASED`, `RETURNED`, `CAPTURED`, `ESCAPING` or `DIRECTIONS`.
+        `COLUMN`, `ADSORBED`, `RELEASED`, `RETURNED`, `CAPTURED`, `ESCAPING` or `DIRECTIONS`.
     release : str, optional
         Name of the release to draw; the sum over all if absent.
     width : "column" or "full"
@@ -145,8 +156,10 @@ def ground_map(
     Raises
     ------
     InputError
-        Where the product has no such release.
+        Where the product has no such release, or no atoms at rest.
     """
+    if what.variable not in product:
+        raise InputError(f"the product has no {what.variable}: in its run no atom rests on the ground")
     names = releases(product, release)
     field = variable(product, what.variable, names, what.factor)
     hours, latitudes = edges(product, LOCAL_TIME), edges(product, LATITUDE)

@@ -80,6 +80,10 @@ def test_existing_file_is_kept(folder, capsys):
             ["-o", "a.png", "--what", "column", "--release", "vent"],
             'small.nc: there is no release "vent"; allowed: "impact vapour", "sputtering"',
         ),
+        (
+            ["-o", "a.png", "--what", "adsorbed-map"],
+            "small.nc: the product has no adsorbed_column: in its run no atom rests on the ground",
+        ),
     ],
 )
 def test_what_cannot_be_drawn_ends_with_2_one_line_and_no_file(folder, capsys, words, message):

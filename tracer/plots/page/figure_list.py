@@ -43,7 +43,7 @@ def product_figures(product: xr.Dataset) -> Iterator[PageFigure]:
         yield from _image_figures(product, name)
     yield _figure(product, What.COLUMN, "Column density above the ground", _map_words(product, COLUMN))
     for word, what in MAPS.items():
-        if word != What.COLUMN:
+        if word != What.COLUMN and what.variable in product:
             yield _figure(product, What(word), what.words, _map_words(product, what))
 
 

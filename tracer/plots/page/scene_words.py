@@ -7,6 +7,7 @@ from typing import Any
 
 import xarray as xr
 
+from tracer.catalogue.photo_rates import photo_rates
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.physics.thermal import escape_speed, jeans_parameter, surface_gravity
 from tracer.plots.page.law_words import (
@@ -31,6 +32,7 @@ from tracer.plots.run_text import (
     table,
     value,
 )
+from tracer.product.layout import LINE
 
 KILOMETRE = 1e3
 
@@ -43,7 +45,7 @@ def scene_words(product: xr.Dataset) -> Iterator[tuple[str, str]]:
         return
     radius = _known(product.attrs, "body_radius") or nan
     yield "Body and gas", _body(run, radius)
-    yield "Sunlight", _sunlight(run, product.attrs)
+    yield "Sunlight", _sunlight(run, product.attrs, LINE in product.dims)
     for entry in entries(run, "release"):
         yield (
             f"Release \N{LEFT DOUBLE QUOTATION MARK}{entry.get('name')}\N{RIGHT DOUBLE QUOTATION MARK}",
@@ -71,6 +73,8 @@ def release_jeans(run: Table, entry: Table, radius: float) -> float | None:
 
 def _body(run: Table, radius: float) -> str:
     name, species = table(run, "body").get("name", "?"), table(run, "gas").get("species", "?")
+    if name == "Moon":
+        name = "the Moon"
     words = f"{species} over {name}, a smooth sphere of radius {number(radius / KILOMETRE)} km"
     gm = body_gm(run)
     if gm:
@@ -86,7 +90,7 @@ def _body(run: Table, radius: float) -> str:
     return words + f". The ground turns once in {duration(period)} among the stars."
 
 
-def _sunlight(run: Table, attributes: Mapping[Any, Any]) -> str:
+def _sunlight(run: Table, attributes: Mapping[Any, Any], shines: bool) -> str:
     if "sun" not in run:
         return (
             "None: gravity alone, no push, no tide, no light. The direction +x still counts as that of the Sun "
@@ -110,16 +114,23 @@ def _sunlight(run: Table, attributes: Mapping[Any, Any]) -> str:
         if _moves(run)
         else "it stays there while atoms fly"
     )
-    push = gas.get("radiation_acceleration", "lines")
+    push = gas.get("radiation_acceleration", "lines" if shines else "none")
     pushes = {
         "lines": "that of the lines with known g, Doppler-shifted",
         "none": "none",
     }.get(str(push), f"{shown(push)} at 1 au")
     return (
         f"{words}; {stands}. The Sun's tide {tide}. Push of sunlight: {pushes}. "
-        f"Shadow: {shown(sun.get('shadow', 'penumbra'))}. Solar activity {shown(sun.get('solar_activity', 0.0))} "
-        "(0 quiet, 1 active)."
+        f"Photo-ionisation: {_ionization(gas)}. Shadow: {shown(sun.get('shadow', 'penumbra'))}. "
+        f"Solar activity {shown(sun.get('solar_activity', 0.0))} (0 quiet, 1 active)."
     )
+
+
+def _ionization(gas: Table) -> str:
+    rate = gas.get("photoionization_rate")
+    if rate is None:
+        return "the catalogue's rate" if str(gas.get("species")) in photo_rates() else "none, no rate is known"
+    return "none" if value(gas, "photoionization_rate", "rate") == 0.0 else f"{shown(rate)} at 1 au"
 
 
 def _release(run: Table, entry: Table, radius: float) -> str:

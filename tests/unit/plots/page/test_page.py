@@ -245,6 +245,26 @@ def test_what_limits_a_product_is_said(make_product):
     assert "Up to 2\N{NO-BREAK SPACE}% of the time" in words
 
 
+@pytest.mark.parametrize(
+    ("gas", "lines", "words"),
+    [
+        (
+            "",
+            ("na_d2",),
+            "Push of sunlight: that of the lines with known g, Doppler-shifted. Photo-ionisation: the",
+        ),
+        ("", (), "Push of sunlight: none. Photo-ionisation: the catalogue's rate."),
+        ('photoionization_rate = "0 s-1"', (), "Photo-ionisation: none."),
+        ('photoionization_rate = "5e-6 s-1"', (), "Photo-ionisation: 5 × 10⁻⁶ s⁻¹ at 1 au."),
+        ('radiation_acceleration = "0.05 m s-2"', ("na_d2",), "Push of sunlight: 0.05 m s⁻² at 1 au."),
+    ],
+)
+def test_what_sunlight_does_is_told(make_product, gas, lines, words):
+    text = RUN.replace('species = "Na"', f'species = "Na"\n{gas}')
+    told = dict(scene_words(make_product(lines=lines).assign_attrs(run_file=text)))
+    assert words in plain(told["Sunlight"])
+
+
 def test_scene_without_the_sun_leaves_out_sunlight(make_product):
     with_sun, without = (
         " ".join(left_out(make_product().assign_attrs(run_file=text)))
@@ -377,6 +397,13 @@ def test_every_figure_has_a_heading_and_an_alternative(make_product, empty):
     assert len({one.name for one in figures}) == len(figures)
     assert all(len(one.alternative) > 30 and one.heading for one in figures)
     assert "Nothing was counted" in " ".join(one.alternative for one in product_figures(empty(product)))
+
+
+def test_atoms_at_rest_are_shown_only_where_some_rest(make_product):
+    product = make_product()
+    names = {one.name for one in product_figures(product)}
+    without = {one.name for one in product_figures(product.drop_vars("adsorbed_column"))}
+    assert names - without == {"figure-adsorbed-map"}
 
 
 def test_largest_cell_of_a_map_is_named(make_product):
