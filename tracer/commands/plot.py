@@ -30,6 +30,8 @@ class WidthName(StrEnum):
 HELP = " ".join(
     [*(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()), f"{What.PLAN}: a plan in time."]
 )
+OF_VELOCITY = ("column_", "brightness_", "mean_velocity_", "velocity_width_", "line_shift_", "line_width_")
+"""Beginnings of the variables that the figure of velocities needs."""
 OF_IMAGES = " and ".join(what for what, drawing in FIGURES.items() if drawing.of_image)
 
 
@@ -133,4 +135,6 @@ def _is_spared(name: str, what: What) -> bool:
         return False
     if what is What.TAIL:
         return not name.startswith(("column_", "brightness_"))
+    if what is What.VELOCITY:
+        return not name.startswith(OF_VELOCITY)
     return what not in (What.DENSITY, What.PROFILE) or name != "number_density" + REPLICATES

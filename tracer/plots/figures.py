@@ -15,6 +15,7 @@ from tracer.plots.ledger import ledger
 from tracer.plots.profile import profile
 from tracer.plots.style import Width
 from tracer.plots.tail import tail
+from tracer.plots.velocity import velocity
 
 
 class What(StrEnum):
@@ -26,6 +27,7 @@ class What(StrEnum):
     LEDGER = "ledger"
     PROFILE = "profile"
     TAIL = "tail"
+    VELOCITY = "velocity"
     RELEASE_MAP = "release-map"
     RETURN_MAP = "return-map"
     CAPTURE_MAP = "capture-map"
@@ -72,6 +74,9 @@ FIGURES: dict[What, Drawing] = {
     What.LEDGER: Drawing("the particle budget", partial(_plain, ledger)),
     What.PROFILE: Drawing("density against altitude by day and by night", partial(_plain, profile)),
     What.TAIL: Drawing("along the tail axis of an image", partial(_of_image, tail), True),
+    What.VELOCITY: Drawing(
+        "line shapes, shifts and widths in an image resolved by velocity", partial(_of_image, velocity), True
+    ),
     What.RELEASE_MAP: Drawing("where new atoms leave the ground", partial(_map, MAPS[What.RELEASE_MAP])),
     What.RETURN_MAP: Drawing("where atoms land", partial(_map, MAPS[What.RETURN_MAP])),
     What.CAPTURE_MAP: Drawing("where the ground keeps them", partial(_map, MAPS[What.CAPTURE_MAP])),

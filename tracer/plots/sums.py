@@ -49,10 +49,11 @@ def summed(product: xr.Dataset, name: str, names: Sequence[str], add_up: Linear,
         # One release at a time: in double precision all replicates at once would be large.
         each = chosen[name + REPLICATES].transpose(RELEASE, REPLICATE, ...)
         parts = sum(add_up(one.values.astype(np.float64)) for one in each) * factor
-        return Field(value, _standard_error(np.asarray(parts), _batches(product)))
+        return Field(value, _standard_error(np.asarray(parts), batches_of_replicates(product)))
 
 
-def _batches(product: xr.Dataset) -> NDArray[np.float64]:
+def batches_of_replicates(product: xr.Dataset) -> NDArray[np.float64]:
+    """Return how many batches each replicate of the product stands for; one each where it does not say."""
     groups = product.sizes[REPLICATE]
     counts = np.atleast_1d(np.asarray(product.attrs.get(BATCHES, ()), dtype=np.float64))
     return counts if counts.size == groups else np.ones(groups)
