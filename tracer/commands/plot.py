@@ -41,6 +41,8 @@ HELP = " ".join(
 )
 DRAWINGS = {**FIGURES, **SWEPT_FIGURES}
 OF_IMAGES = " and ".join(what for what, drawing in DRAWINGS.items() if drawing.of_image)
+OF_VELOCITY = ("column_", "brightness_", "mean_velocity_", "velocity_width_", "line_shift_", "line_width_")
+"""Beginnings of the variables that the figure of velocities needs."""
 
 
 def command(
@@ -226,4 +228,6 @@ def _is_spared(name: str, what: What) -> bool:
         return False
     if what is What.TAIL:
         return not name.startswith(("column_", "brightness_"))
+    if what is What.VELOCITY:
+        return not name.startswith(OF_VELOCITY)
     return what not in (What.DENSITY, What.PROFILE) or name != "number_density" + REPLICATES

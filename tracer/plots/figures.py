@@ -19,6 +19,7 @@ from tracer.plots.swept.column import Place, swept_column
 from tracer.plots.swept.ledger import swept_ledger
 from tracer.plots.swept.tail import swept_tail
 from tracer.plots.tail import tail
+from tracer.plots.velocity import velocity
 
 
 class What(StrEnum):
@@ -30,6 +31,7 @@ class What(StrEnum):
     LEDGER = "ledger"
     PROFILE = "profile"
     TAIL = "tail"
+    VELOCITY = "velocity"
     ADSORBED_MAP = "adsorbed-map"
     RELEASE_MAP = "release-map"
     RETURN_MAP = "return-map"
@@ -90,6 +92,9 @@ FIGURES: dict[What, Drawing] = {
     What.PROFILE: Drawing("density against altitude by day and by night", partial(_plain, profile)),
     What.TAIL: Drawing("along the tail axis of an image", partial(_of_image, tail), True),
     What.ADSORBED_MAP: Drawing("where atoms rest on the ground", partial(_map, MAPS[What.ADSORBED_MAP])),
+    What.VELOCITY: Drawing(
+        "line shapes, shifts and widths in an image resolved by velocity", partial(_of_image, velocity), True
+    ),
     What.RELEASE_MAP: Drawing("where new atoms leave the ground", partial(_map, MAPS[What.RELEASE_MAP])),
     What.RETURN_MAP: Drawing("where atoms land", partial(_map, MAPS[What.RETURN_MAP])),
     What.CAPTURE_MAP: Drawing("where the ground keeps them", partial(_map, MAPS[What.CAPTURE_MAP])),

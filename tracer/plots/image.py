@@ -115,9 +115,9 @@ def image(
         draw_error_contours(axes, columns, rows, field)
         draw_disc(axes, sky.toward_viewer, sky.up, sky.right)
         mark_sun(axes, sky.toward_viewer, sky.up, sky.right, stretch)
-        axes.set_xlabel(f"{_direction(sky.right, 'rightward in the sky')} (body radii)")
+        axes.set_xlabel(f"{direction_words(sky.right, 'rightward in the sky')} (body radii)")
         between = " " if panel.height > ROOM_FOR_LABEL else "\n"
-        axes.set_ylabel(f"{_direction(sky.up, 'northward in the sky')}{between}(body radii)")
+        axes.set_ylabel(f"{direction_words(sky.up, 'northward in the sky')}{between}(body radii)")
         kilometres_across(axes, radius)
         kilometres_up(axes, radius)
         draw_colour_bar(axes_in(figure, bar), colour_span([field]), colours, label, [field])
@@ -159,6 +159,7 @@ def _has_disc(columns: Edges, rows: Edges) -> bool:
     return bool(columns[0] < 1.0 and columns[-1] > -1.0 and rows[0] < 1.0 and rows[-1] > -1.0)
 
 
-def _direction(vector: Vector, otherwise: str) -> str:
+def direction_words(vector: Vector, otherwise: str) -> str:
+    """Return where an axis of an image points, by its unit vector; `otherwise` where it lies aslant."""
     words = SUNWARD_WORDS.get(vector, otherwise)
     return words[0].upper() + words[1:]

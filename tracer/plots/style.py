@@ -26,6 +26,7 @@ NUMBER_DENSITY_COLOURS, COLUMN_COLOURS, BRIGHTNESS_COLOURS, FLUX_COLOURS = (
     "inferno",
     "magma",
 )
+SHIFT_COLOURS, WIDTH_COLOURS = "cividis", "viridis"
 """Perceptually uniform colour maps, rising in lightness, so that they survive colour blindness and grey print."""
 
 HATCH, HATCH_COLOUR = "////", "0.62"

@@ -56,10 +56,11 @@ def replicate_sums(
     # One release at a time: in double precision all replicates at once would be large.
     each = product[name + REPLICATES].sel(release=list(names)).transpose(RELEASE, REPLICATE, ...)
     parts = sum(add_up(one.values.astype(np.float64)) for one in each) * factor
-    return np.asarray(parts), _batches(product)
+    return np.asarray(parts), batches_of_replicates(product)
 
 
-def _batches(product: xr.Dataset) -> NDArray[np.float64]:
+def batches_of_replicates(product: xr.Dataset) -> NDArray[np.float64]:
+    """Return how many batches each replicate of the product stands for; one each where it does not say."""
     groups = product.sizes[REPLICATE]
     counts = np.atleast_1d(np.asarray(product.attrs.get(BATCHES, ()), dtype=np.float64))
     return counts if counts.size == groups else np.ones(groups)

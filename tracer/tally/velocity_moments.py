@@ -84,6 +84,11 @@ def joined(parts: Sequence[Moments], batches: Sequence[float]) -> Moments:
     return _left(_sums(parts, batches), None)
 
 
+def added_up(moments: Moments) -> Moments:
+    """Return the moments of all places along the first axis together."""
+    return _left(_sums_of(*moments), None)
+
+
 def jackknife_errors(groups: Sequence[Moments], batches: Sequence[float]) -> tuple[Floats, Floats]:
     """Return the standard errors of mean and width of all `groups` together, from leaving out one after the other.
 
@@ -144,7 +149,11 @@ class _Sums(NamedTuple):
 
 def _sums(parts: Sequence[Moments], batches: Sequence[float]) -> _Sums:
     weights = np.array([part.weight * count for part, count in zip(parts, batches, strict=True)], np.float64)
-    means, widths = (np.nan_to_num(np.array([part[i] for part in parts], np.float64)) for i in (1, 2))
+    return _sums_of(weights, *(np.array([part[i] for part in parts], np.float64) for i in (1, 2)))
+
+
+def _sums_of(weights: Floats, means: Floats, widths: Floats) -> _Sums:
+    means, widths = np.nan_to_num(means), np.nan_to_num(widths)
     whole = weights.sum(axis=0)
     with np.errstate(divide="ignore", invalid="ignore"):
         origin = np.where(whole > 0.0, (weights * means).sum(axis=0) / whole, 0.0)

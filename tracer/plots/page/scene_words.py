@@ -129,7 +129,9 @@ def _sunlight(run: Table, attributes: Mapping[Any, Any], shines: bool) -> str:
 def _ionization(gas: Table) -> str:
     rate = gas.get("photoionization_rate")
     if rate is None:
-        return "the catalogue's rate" if str(gas.get("species")) in photo_rates() else "none, no rate is known"
+        return (
+            "the catalogue's rate" if str(gas.get("species")) in photo_rates() else "none, no rate is known"
+        )
     return "none" if value(gas, "photoionization_rate", "rate") == 0.0 else f"{shown(rate)} at 1 au"
 
 
