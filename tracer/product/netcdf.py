@@ -1,6 +1,6 @@
 """A Dataset into a netCDF-4 file, one chunk at a time: what is not in memory stays out of it."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
@@ -9,9 +9,9 @@ import netCDF4
 import numpy as np
 import xarray as xr
 
-from tracer.product.checksum import TEXT_KINDS, ProductDigest
+from tracer.product.checksum import TEXT_KINDS, ProductDigest, data_checksum
 from tracer.product.layout import BOUNDS
-from tracer.product.slabs import CHUNK_BYTES, chunk_shape
+from tracer.product.slabs import CHUNK_BYTES, chunk_shape, slabs
 
 COMPRESSION = {"zlib": True, "complevel": 1, "shuffle": True}
 
@@ -45,17 +45,51 @@ def write_netcdf(ds: xr.Dataset, path: Path) -> str:
     OSError, RuntimeError
         Where the file cannot be written.
     """
-    with netCDF4.Dataset(path, "w", format="NETCDF4", clobber=False) as file:
-        file.setncatts(ds.attrs)
-        for dimension, size in ds.sizes.items():
-            file.createDimension(str(dimension), size)
+    with _defined(ds, path) as stored:
         variables = ds.variables
-        stored = {str(name): _define(file, str(name), variables[name], ds) for name in variables}
         digest = ProductDigest()
         for name in sorted(stored):
             for place, values in digest.passing(name, variables[name]):
                 stored[name][place if values.ndim else ...] = values
     return digest.hexdigest()
+
+
+def write_by_points(ds: xr.Dataset, path: Path, swept: Sequence[str]) -> str:
+    """Write a Dataset as `write_netcdf`, all that belongs to one point of its leading dimensions before the next.
+
+    So a Dataset whose points lie in files of their own needs each of them once.
+
+    Parameters
+    ----------
+    ds, path
+        As in `write_netcdf`.
+    swept : sequence of str
+        The leading dimensions; variables that do not begin with them, or have no others, come first.
+    """
+    depth, variables = len(swept), ds.variables
+    with _defined(ds, path) as stored:
+        by_points = [
+            name for name in stored if variables[name].dims[:depth] == tuple(swept) != variables[name].dims
+        ]
+        for name in stored.keys() - set(by_points):
+            stored[name][...] = variables[name].values
+        for point in np.ndindex(*(ds.sizes[axis] for axis in swept)):
+            for name in by_points:
+                one = variables[name]
+                for place in slabs(one.shape[depth:], one.dtype.itemsize):
+                    stored[name][(*point, *place)] = one[(*point, *place)].values
+    with small_caches(), xr.open_dataset(path, engine="netcdf4", decode_times=False) as written:
+        return data_checksum(written)
+
+
+@contextmanager
+def _defined(ds: xr.Dataset, path: Path) -> Iterator[dict[str, Any]]:
+    """Yield the variables of a new file, with all but their values."""
+    with netCDF4.Dataset(path, "w", format="NETCDF4", clobber=False) as file:
+        file.setncatts(ds.attrs)
+        for dimension, size in ds.sizes.items():
+            file.createDimension(str(dimension), size)
+        yield {str(name): _define(file, str(name), variable, ds) for name, variable in ds.variables.items()}
 
 
 def _define(file: Any, name: str, variable: xr.Variable, ds: xr.Dataset) -> Any:

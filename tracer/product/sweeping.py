@@ -1,7 +1,6 @@
 """Points of a sweep put together along the swept dimensions, and taken out again; a chunk at a time."""
 
 import json
-from collections import OrderedDict
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from pathlib import Path
@@ -30,9 +29,6 @@ from tracer.product.sweep_layout import (
     shape_of,
     swept_dimensions,
 )
-
-OPEN_FILES = 32
-"""Points whose files are kept open while their values pass: systems allow a few hundred."""
 
 ReadPoint = Callable[[int, str, Key], NDArray[Any]]
 
@@ -215,30 +211,27 @@ def _plain(value: Any) -> Any:
 
 
 class _Files:
-    """The points' files, of which the last few that were used stay open."""
+    """The points' files, of which the last that was used stays open."""
 
     def __init__(self, paths: Sequence[Path]) -> None:
         self._paths = paths
-        self._open: OrderedDict[int, Any] = OrderedDict()
+        self._number = -1
+        self._file: Any = None
 
     def __enter__(self) -> "_Files":
         return self
 
     def __exit__(self, *_: object) -> None:
-        while self._open:
-            self._open.popitem()[1].close()
+        if self._file is not None:
+            self._file.close()
+            self._file = None
 
     def read(self, number: int, name: str, key: Key) -> NDArray[Any]:
         """Return values of one variable of the point at `number`, from 0."""
-        if number not in self._open:
-            if len(self._open) >= OPEN_FILES:
-                self._open.popitem(last=False)[1].close()
+        if self._file is None or number != self._number:
+            self.__exit__()
             with small_caches():
-                file = netCDF4.Dataset(self._paths[number])
-            file.set_auto_maskandscale(False)
-            self._open[number] = file
-        self._open.move_to_end(number)
-        variable = self._open[number].variables[name]
-        # Every chunk passes once: nothing needs to be kept of it.
-        variable.set_var_chunk_cache(0, 1, 0.0)
-        return np.asarray(variable[key if key else ...])
+                self._file = netCDF4.Dataset(self._paths[number])
+            self._file.set_auto_maskandscale(False)
+            self._number = number
+        return np.asarray(self._file.variables[name][key if key else ...])

@@ -3,8 +3,9 @@
 import errno
 import os
 import shutil
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from functools import partial
 from pathlib import Path
 
 import netCDF4
@@ -14,9 +15,9 @@ import xarray as xr
 from tracer.errors import InputError, TracerError
 from tracer.product.assembling import without_label_indexes
 from tracer.product.layout import why_no_product
-from tracer.product.netcdf import write_netcdf
+from tracer.product.netcdf import write_by_points, write_netcdf
 from tracer.product.replacing import put_in_place, sync, written_beside
-from tracer.product.sweep_layout import why_no_sweep
+from tracer.product.sweep_layout import swept_dimensions, why_no_sweep
 
 COMPLETE = "complete"
 CHECKSUM = "data_checksum"
@@ -47,15 +48,22 @@ def save_product(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None
     TracerError
         Where writing fails, as on a full disk; no half file is left.
     """
-    _save(ds, path, overwrite, why_no_product(ds.attrs, ds.variables))
+    _save(ds, path, overwrite, why_no_product(ds.attrs, ds.variables), write_netcdf)
 
 
 def save_sweep(ds: xr.Dataset, path: StrPath, overwrite: bool = False) -> None:
     """Write the product of a sweep, as `save_product` writes that of a run, and with its errors."""
-    _save(ds, path, overwrite, why_no_sweep(ds.attrs, ds.variables))
+    write = partial(write_by_points, swept=swept_dimensions(ds.attrs))
+    _save(ds, path, overwrite, why_no_sweep(ds.attrs, ds.variables), write)
 
 
-def _save(ds: xr.Dataset, path: StrPath, overwrite: bool, reason: str | None) -> None:
+def _save(
+    ds: xr.Dataset,
+    path: StrPath,
+    overwrite: bool,
+    reason: str | None,
+    write: Callable[[xr.Dataset, Path], str],
+) -> None:
     if reason:
         raise InputError(f"{os.fspath(path)}: the Dataset cannot be saved: {reason}")
     check_output(path, overwrite)
@@ -63,7 +71,7 @@ def _save(ds: xr.Dataset, path: StrPath, overwrite: bool, reason: str | None) ->
     stored = without_label_indexes(ds)
     stored.attrs = {key: value for key, value in ds.attrs.items() if key not in (COMPLETE, CHECKSUM)}
     with _written_beside(target, path, stored.nbytes) as beside:
-        checksum = write_netcdf(stored, beside)
+        checksum = write(stored, beside)
         sync(beside)
         with netCDF4.Dataset(beside, "a") as file:
             file.setncattr(CHECKSUM, checksum)
