@@ -12,6 +12,7 @@ from tracer.commands.next_command import name_next
 from tracer.commands.tables import print_rows
 from tracer.errors import InputError
 from tracer.product.checksum import data_checksum
+from tracer.product.layout import HOST_IMPACT_RATE, STANDARD_ERROR
 from tracer.product.reading import load_all, open_product
 
 SHOWN = (
@@ -69,11 +70,18 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
             ),
             "roulette_balance": float(one["roulette_balance"]),
             "roulette_balance_standard_error": float(one["roulette_balance_standard_error"]),
+            **_host_impacts(one),
             "mean_flights": float(one["mean_flights"]),
             "mean_life": float(one["mean_life"]),
         }
     errors = {name: _median_relative_error(ds, name) for name in _tallied(ds)}
     return {"releases": releases, "median_relative_standard_error": errors}
+
+
+def _host_impacts(one: xr.Dataset) -> dict[str, float]:
+    """Return the rate of atoms that hit the host planet, with its error; nothing where there is none."""
+    names = (HOST_IMPACT_RATE, HOST_IMPACT_RATE + STANDARD_ERROR)
+    return {name: float(one[name]) for name in names if name in one}
 
 
 def _tallied(ds: xr.Dataset) -> list[str]:
