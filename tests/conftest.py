@@ -105,6 +105,19 @@ MOVING_RUN = SMALL_LIGHT_RUN.replace(
     'distance = "0.35 au"\nradial_velocity = "8 km/s"', 'true_anomaly = "60 deg"\nmotion = "moving"'
 ).replace('rotation_period = "60 d"', 'orbit = { semi_major_axis = "0.4 au", eccentricity = 0.2 }')
 
+HOST = """
+[body.host]
+gm = "2e7 km3 s-2"
+radius = "30000 km"
+distance = "400000 km"
+phase_angle = "5 deg"
+rotation = "turning"
+"""
+
+HOST_RUN = SMALL_LIGHT_RUN.replace("\n[sun]", HOST + "\n[sun]")
+
+MOVING_HOST_RUN = MOVING_RUN.replace("\n[sun]", HOST.replace('rotation = "turning"\n', "") + "\n[sun]")
+
 WARM_KERNELS = str(Path(__file__).with_name("warm_kernels.py"))
 
 
@@ -112,12 +125,13 @@ def pytest_sessionstart(session: pytest.Session) -> None:
     """Compile the kernels once, into the cache that all test processes share, before these processes start."""
     if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):
         return
-    # The kernels of bodies that move are compiled beside the others, which would take as long again after them.
+    # The kernels of bodies that move are compiled beside the others, which would take as long again after them; those
+    # of moons beside a host are compiled apart again.
     beside = subprocess.Popen([sys.executable, WARM_KERNELS], stdin=subprocess.PIPE, text=True)
     assert beside.stdin
-    beside.stdin.write(MOVING_RUN)
+    beside.stdin.write("\f".join((MOVING_RUN, MOVING_HOST_RUN)))
     beside.stdin.close()
-    for text in (SMALL_RUN, SMALL_LIGHT_RUN):
+    for text in (SMALL_RUN, HOST_RUN, SMALL_LIGHT_RUN):
         scene = build_scene(parse_run(text, "run file"))
         work = make_work(scene, 1, 1)
         compile_kernels(work)

@@ -1,4 +1,4 @@
-"""Compile the kernels of one run file into the user's cache: `python tests/warm_kernels.py < RUN.toml`."""
+"""Compile kernels into the user's cache: `python tests/warm_kernels.py < RUNS`, run files parted by form feeds."""
 
 import sys
 
@@ -7,4 +7,5 @@ from tracer.engine.runspec.load import parse_run
 from tracer.engine.scene import build_scene
 
 if __name__ == "__main__":
-    compile_kernels(make_work(build_scene(parse_run(sys.stdin.read(), "run file")), 1, 1))
+    for text in sys.stdin.read().split("\f"):
+        compile_kernels(make_work(build_scene(parse_run(text, "run file")), 1, 1))

@@ -6,6 +6,8 @@ import typer
 import xarray as xr
 
 from tracer.commands.tables import print_rows
+from tracer.fate import Fate
+from tracer.product.layout import HOST_IMPACT_RATE, STANDARD_ERROR
 
 PLAIN_WORDS = {
     "captured": "captured at the surface",
@@ -17,8 +19,9 @@ PLAIN_WORDS = {
 }
 
 
+OTHER_LOSS = Fate.OTHER_LOSS.label
 ROULETTE_WORDS = "dropped by roulette on balance, by chance"
-HOST_WORDS = "hit the host planet, counted above as lost otherwise"
+HOST_WORDS = "of all hit the host planet, counted above"
 
 
 def print_budget(product: xr.Dataset) -> None:
@@ -34,13 +37,13 @@ def print_budget(product: xr.Dataset) -> None:
             if share > 0.0:
                 error = float(one["ledger_standard_error"].sel(fate=fate)) / rate
                 rows.append((f"{100 * share:9.4f} %", _error(error), PLAIN_WORDS[str(fate)]))
+            if fate == OTHER_LOSS and HOST_IMPACT_RATE in one:
+                share = float(one[HOST_IMPACT_RATE]) / rate
+                error = float(one[HOST_IMPACT_RATE + STANDARD_ERROR]) / rate
+                rows.append((f"{100 * share:9.4f} %", _error(error), HOST_WORDS))
         if balance != 0.0:
             error = float(one["roulette_balance_standard_error"]) / rate
             rows.append((f"{-100 * balance / rate:9.4f} %", _error(error), ROULETTE_WORDS))
-        if "host_impact_rate" in one:
-            error = float(one["host_impact_rate_standard_error"]) / rate
-            share = float(one["host_impact_rate"]) / rate
-            rows.append((f"{100 * share:9.4f} %", _error(error), HOST_WORDS))
         print_rows(rows)
         life, flights = float(one["mean_life"]), float(one["mean_flights"])
         typer.echo(f"  mean life {life:.4g} s on {flights:.4g} flights")

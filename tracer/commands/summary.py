@@ -14,6 +14,7 @@ from tracer.commands.tables import print_rows, print_wrapped_rows
 from tracer.errors import InputError
 from tracer.plots.moving import motion_of, time_words
 from tracer.product.checksum import data_checksum
+from tracer.product.layout import HOST_IMPACT_RATE, STANDARD_ERROR
 from tracer.product.reading import is_sweep, load_all, open_product, open_sweep
 from tracer.product.sweep_layout import swept_dimensions
 
@@ -123,6 +124,7 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
             ),
             "roulette_balance": float(one["roulette_balance"]),
             "roulette_balance_standard_error": float(one["roulette_balance_standard_error"]),
+            **_host_impacts(one),
             "mean_flights": float(one["mean_flights"]),
             "mean_life": float(one["mean_life"]),
         }
@@ -134,6 +136,12 @@ def _figures(ds: xr.Dataset) -> dict[str, Any]:
         if ds[name].attrs["units"] != VELOCITY_UNIT
     }
     return {"releases": releases, "median_relative_standard_error": errors}
+
+
+def _host_impacts(one: xr.Dataset) -> dict[str, float]:
+    """Return the rate of atoms that hit the host planet, with its error; nothing where there is none."""
+    names = (HOST_IMPACT_RATE, HOST_IMPACT_RATE + STANDARD_ERROR)
+    return {name: float(one[name]) for name in names if name in one}
 
 
 def _tallied(ds: xr.Dataset) -> list[str]:

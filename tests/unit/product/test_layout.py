@@ -17,6 +17,7 @@ def test_every_variable_of_gravity_has_its_dimensions_and_unit():
         "adsorbed_column": (GROUND, "m-2"),
         "ionization_rate": (("release", "altitude", "latitude", "local_time"), "m-3 s-1"),
         "ledger": (("release", "fate"), "s-1"),
+        "host_impact_rate": (("release",), "s-1"),
         "roulette_balance": (("release",), "s-1"),
         "mean_flights": (("release",), "1"),
         "mean_life": (("release",), "s"),
