@@ -78,6 +78,21 @@ def test_table_filters_by_words_and_by_what_may_be_commanded(shown):
     assert browser.run("document.getElementById('shown').textContent") == "1 of 4 exposures shown"
 
 
+def test_times_stay_in_sight_while_the_table_scrolls_sideways(shown):
+    browser = shown(700)
+    left = "document.querySelector('table.plan tbody th').getBoundingClientRect().left"
+    before = browser.run(left)
+    scrolled = (
+        "(() => { const r = document.querySelector('.tall'); r.scrollLeft = 150; return r.scrollLeft; })()"
+    )
+    assert browser.run(scrolled) > 50
+    assert browser.run(left) == pytest.approx(before, abs=1)
+    # Over the cells that pass below it, in the head too.
+    assert browser.run("getComputedStyle(document.querySelector('table.plan tbody th')).backgroundColor") != (
+        "rgba(0, 0, 0, 0)"
+    )
+
+
 @pytest.mark.parametrize("width", [375, 320])
 def test_phone_needs_no_sideways_scrolling_and_gets_narrow_figures(shown, width):
     browser = shown(width, 812)
