@@ -276,7 +276,7 @@ def test_words_stand_at_places_of_their_own(make_product, swept, axis):
 
 
 def test_values_are_shown_in_the_unit_in_which_they_were_written(make_product, swept, axis):
-    product = make_product()
+    product = make_product(lines=(), views={})
     for written, unit, si, shown in (
         ("au", "m", 1.495978707e11, 1.0),
         ("radii", "m", 1.8e7, 10.0),
