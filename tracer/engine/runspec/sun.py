@@ -43,8 +43,8 @@ class SunTable(Table):
         "its orbit. Moving, density and images are those at the stated position, fluxes those of the last degree of "
         "mean anomaly, or of a moon's phase, before it, and the ledger is that of the atoms released there; needs an "
         "orbit. A moon with a host goes round it meanwhile, and has the phase angle at the stated position; "
-        "stationary, the host keeps its place, and the frame turns, with the Sun's direction, as the moon goes about the host: "
-        "right for gravity, and for light while that turns little.",
+        "stationary, the host keeps its place, and the frame turns, with the Sun's direction, as the moon goes about "
+        "the host: right for gravity, and for light while that turns little.",
     )
     shadow: Literal["penumbra", "cylinder", "none"] = Field(
         "penumbra",
