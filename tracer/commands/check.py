@@ -59,7 +59,7 @@ def _flat(figures: Preview) -> dict[str, Any]:
     return {
         **{key: value for key, value in figures._asdict().items() if key not in _INSIDE},
         **sun,
-        **({} if figures.host is None else figures.host._asdict()),
+        **(dict.fromkeys(HostPreview._fields) if figures.host is None else figures.host._asdict()),
         **figures.surface._asdict(),
     }
 
