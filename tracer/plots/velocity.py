@@ -42,7 +42,7 @@ from tracer.plots.velocity_sums import Velocities, profiles, velocities_by_pixel
 from tracer.plots.words import framed_figure
 from tracer.product.layout import image_dimensions, ratio_names, resolved_images, velocity_dimension
 
-LEFT, RIGHT, TOP, BOTTOM, LEGEND_GAP = 14.0, 4.0, 5.0, 9.0, 1.0
+LEFT, RIGHT, TOP, BOTTOM, LEGEND_GAP = 16.5, 4.0, 5.0, 9.0, 1.0
 SHAPE_HEIGHT = 50.0
 MAP_LEFT, MAP_RIGHT, MAP_TOP = 14.0, 12.5, 14.0
 LOWEST_MAP, HIGHEST_MAP, NARROWEST_MAP = 18.0, 70.0, 20.0

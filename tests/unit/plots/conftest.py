@@ -20,6 +20,7 @@ RADIUS = 1.8e6
 VIEWS = {"tail_from_north": "north", "from_dawn": "dawn", "from_dusk": "dusk", "from_the_sun": "sun"}
 CELLS = {"altitude": 4, "latitude": 4, "local_time": 6}
 PIXELS = (7, 5)
+BINS = 8
 
 
 @pytest.fixture
@@ -35,6 +36,7 @@ def make_product() -> Callable[..., xr.Dataset]:
         radius: float = RADIUS,
         title: str = "Sodium over Harrow",
         top: float = 4.0,
+        resolved: tuple[str, ...] = (),
     ) -> xr.Dataset:
         grid = make_grid(radius, 0.01 * radius, top * radius, *CELLS.values())
         planes = [
@@ -45,17 +47,34 @@ def make_product() -> Callable[..., xr.Dataset]:
                 (-4 * radius, 3 * radius),
                 (-2 * radius, 2 * radius),
                 PIXELS,
+                (-4e3, 4e3, BINS) if name in resolved else None,
             )
             for name, place in views.items()
         ]
         sizes = {"release": len(releases), "fate": len(FATE_LABELS), "line": len(lines), **CELLS}
         for name in views:
-            sizes |= {f"{name}_horizontal": PIXELS[0], f"{name}_vertical": PIXELS[1]}
+            sizes |= {
+                f"{name}_horizontal": PIXELS[0],
+                f"{name}_vertical": PIXELS[1],
+                f"{name}_velocity": BINS,
+            }
         random = np.random.default_rng(20310601)
         fields = {}
-        for name, row in layout(views, bool(lines)).items():
+        others = np.random.default_rng(7)
+        for name, row in layout(views, bool(lines), resolved).items():
             shape = tuple(sizes[axis] for axis in row.dimensions)
-            if row.tallied:
+            if row.ratio is not None:
+                # Velocities stay such: from 1 to 3 km/s.
+                mean = others.uniform(1e3, 3e3, shape)
+                spread = mean * others.normal(1.0, 0.1, (replicates, *shape))
+                fields[name] = FieldStatistics(mean, 0.1 * mean, spread if replicates else None)
+            elif row.velocity:
+                mean = size * others.uniform(0.5, 1.5, shape)
+                spread = mean * others.normal(1.0, 0.1, (replicates, *shape))
+                fields[name] = FieldStatistics(
+                    mean, 0.1 * mean, spread.clip(max=3e38) if replicates else None
+                )
+            elif row.tallied:
                 mean = size * random.uniform(0.5, 1.5, shape)
                 kept = row.replicated and replicates > 0
                 spread = mean * random.normal(1.0, 0.1, (replicates, *shape))

@@ -24,6 +24,7 @@ from tracer.plots.significance import NOTHING
 from tracer.plots.style import styled
 from tracer.plots.tail import tail
 from tracer.plots.timeline import timeline
+from tracer.plots.velocity import velocity
 
 
 def image_from_north(product, release=None, width="full"):
@@ -34,13 +35,19 @@ def along_tail(product, release=None, width="full"):
     return tail(product, "tail_from_north", None, release, width)
 
 
-FIGURES = (density, image_from_north, vertical_column, ledger, profile, along_tail)
+def by_velocity(product, release=None, width="full"):
+    return velocity(product, None, None, release, width)
+
+
+FIGURES = (density, image_from_north, vertical_column, ledger, profile, along_tail, by_velocity)
 ODD = {
     "tiny values": {"size": 1e-300},
     "huge values": {"size": 1e300},
     "boulder without lines and replicates": {"radius": 50.0, "lines": (), "replicates": 0},
 }
 PIXEL = 1.0
+RESOLVED = ("tail_from_north",)
+"""Images resolved by velocity, for the figure that needs one."""
 
 
 def drawn(figure):
@@ -82,26 +89,28 @@ def assert_readable(figure):
 @pytest.mark.parametrize("figure", FIGURES)
 @pytest.mark.parametrize("odd", ODD)
 def test_odd_product_is_drawn_without_a_warning_and_readable(make_product, figure, odd):
-    assert_readable(drawn(figure(make_product(**ODD[odd]), width="column")))
+    assert_readable(drawn(figure(make_product(**ODD[odd], resolved=RESOLVED), width="column")))
 
 
 @pytest.mark.parametrize("figure", FIGURES)
 def test_figure_is_readable_at_full_width(make_product, figure):
-    one = drawn(figure(make_product(), width="full"))
+    one = drawn(figure(make_product(resolved=RESOLVED), width="full"))
     assert_readable(one)
     assert one.get_size_inches()[0] * 25.4 == pytest.approx(180.0)
 
 
-@pytest.mark.parametrize("figure", [vertical_column, ledger, profile, along_tail])
+@pytest.mark.parametrize("figure", [vertical_column, ledger, profile, along_tail, by_velocity])
 def test_many_releases_and_a_long_title_are_readable(make_product, figure):
     many = tuple(f"release number {number}" for number in range(15))
     title = "What a long title, worth $5 or $6, " * 8
-    assert_readable(drawn(figure(make_product(releases=many, title=title), width="column")))
+    assert_readable(
+        drawn(figure(make_product(releases=many, title=title, resolved=RESOLVED), width="column"))
+    )
 
 
 @pytest.mark.parametrize("figure", FIGURES)
 def test_empty_product_says_that_nothing_was_counted(make_product, empty, figure):
-    one = drawn(figure(empty(make_product()), width="column"))
+    one = drawn(figure(empty(make_product(resolved=RESOLVED)), width="column"))
     assert NOTHING in [words for words, _ in shown_texts(one)]
 
 
@@ -127,9 +136,9 @@ def test_map_is_readable_in_a_column_and_says_where_nothing_was_counted(make_pro
     assert NOTHING in [words for words, _ in shown_texts(one)]
 
 
-@pytest.mark.parametrize("figure", [profile, along_tail])
+@pytest.mark.parametrize("figure", [profile, along_tail, by_velocity])
 def test_curves_without_replicates_say_why_they_have_no_bands(make_product, figure):
-    one = figure(make_product(replicates=0))
+    one = figure(make_product(replicates=0, resolved=RESOLVED))
     assert not [band for axes in one.axes for band in axes.collections if band.get_gid() == BAND]
     assert "No error bands" in " ".join(text.get_text() for text in one.texts)
 

@@ -14,6 +14,7 @@ from tracer.plots.profile import profile
 from tracer.plots.style import styled
 from tracer.plots.tail import tail
 from tracer.plots.timeline import timeline
+from tracer.plots.velocity import velocity
 
 LOOKS = Path(__file__).parent / "looks"
 SQUARES = (24, 32)
@@ -26,13 +27,14 @@ FIGURES = {
     "image": partial(image, name="from_dusk", line="na_d2"),
     "profile": profile,
     "tail": partial(tail, name="from_dusk"),
+    "velocity": partial(velocity, line="na_d2"),
 }
 
 
 @pytest.fixture
 def gas(make_product):
     """Return a product that thins out with altitude and towards the night, with a corner that says nothing."""
-    product = make_product(releases=("impact vapour", "sputtering"), replicates=4)
+    product = make_product(releases=("impact vapour", "sputtering"), replicates=4, resolved=("from_dusk",))
     sunny = 1.2 + np.cos(np.radians(15.0 * (product.local_time - 12.0)))
     thin = np.exp(-product.altitude / product.body_radius)
     north = 1.5 + np.sin(np.radians(product.latitude))
@@ -46,6 +48,13 @@ def gas(make_product):
             stored = product[name + end]
             product[name + end].values[...] = (stored * away).transpose(*stored.dims).values
     product.vertical_column_standard_error.values[:, 0, :2] *= 20.0
+    # Lines that are wider and recede faster down the tail.
+    line = away * np.exp(-((product.from_dusk_velocity / 2e3 - 0.5) ** 2))
+    for end in ("", "_replicates"):
+        stored = product["brightness_by_velocity_from_dusk" + end]
+        stored.values[...] = (stored * line).transpose(*stored.dims).values
+        for name in ("line_shift_from_dusk", "line_width_from_dusk"):
+            product[name + end].values[...] *= away.values
     return product
 
 

@@ -9,6 +9,7 @@ import xarray as xr
 from matplotlib.figure import Figure
 
 from tracer.errors import InputError
+from tracer.plots.apertures import apertures
 from tracer.plots.budget import budget_of, look
 from tracer.plots.field import Field, releases, variable
 from tracer.plots.figures import FIGURES, Choice, What
@@ -21,6 +22,8 @@ from tracer.plots.sky import image_names, line_names, shining, sky_of
 from tracer.plots.style import Width
 from tracer.plots.tail import strip_of
 from tracer.plots.timeline import timeline
+from tracer.plots.velocity_sums import velocities_in
+from tracer.product.layout import ratio_names, resolved_images
 
 NOTHING = "Nothing was counted."
 
@@ -83,14 +86,18 @@ def _image_figures(product: xr.Dataset, name: str) -> Iterator[PageFigure]:
     field = variable(product, f"column_{name}", names, PER_SQUARE_CENTIMETRE)
     words = f"Image of column density.{_largest(field, 'cm-2')}"
     yield _figure(product, What.IMAGE, f"Column density: {sky.title}", words, name)
+    strongest_line = None
     if lines := line_names(product):
         fields = [
             variable(shining(product, line), f"brightness_{name}", names, KILORAYLEIGH) for line in lines
         ]
         strongest = int(np.argmax([one.value.max(initial=0.0) for one in fields]))
+        strongest_line = lines[strongest]
         words = f"Image of brightness in {lines[strongest]}.{_largest(fields[strongest], 'kR')}"
         heading = f"Brightness in {lines[strongest]}: {sky.title}"
         yield _figure(product, What.IMAGE, heading, words, name, lines[strongest])
+    if name in resolved_images(product.dims):
+        yield _velocity_figure(product, name, strongest_line)
     try:
         strip_of(product, sky, float(product.attrs["body_radius"]))
     except InputError:
@@ -99,6 +106,24 @@ def _image_figures(product: xr.Dataset, name: str) -> Iterator[PageFigure]:
         f"Column density along the axis from the Sun through the body, by release.{_largest(field, 'cm-2')}"
     )
     yield _figure(product, What.TAIL, f"Along the tail axis: {sky.title}", words, name)
+
+
+def _velocity_figure(product: xr.Dataset, name: str, line: str | None) -> PageFigure:
+    sky = sky_of(product, name)
+    source = product if line is None else shining(product, line)
+    parts = apertures(product, sky, float(product.attrs["body_radius"]))
+    found = velocities_in(source, ratio_names(name, line is not None), releases(product, None), parts)
+    said = [
+        f"{part.words}: mean {number(found.mean[i], 3)} km/s, width {number(found.width[i], 3)} km/s"
+        for i, part in enumerate(parts)
+        if found.hit[i]
+    ]
+    words = (
+        "Line shapes along the line of sight, positive away from the viewer, and maps of mean velocity and width. "
+        f"{'; '.join(said) or NOTHING.rstrip('.')}."
+    )
+    what = "column density" if line is None else line
+    return _figure(product, What.VELOCITY, f"Velocities, {what}: {sky.title}", words, name, line)
 
 
 def _budget_words(product: xr.Dataset) -> str:
