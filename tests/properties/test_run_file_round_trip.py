@@ -142,6 +142,17 @@ BODIES = table(
                 "eccentricity": st.floats(0.0, 1.0, exclude_max=True),
             }
         ),
+        "host": table(
+            # Locked ground would need a body without a rotation period.
+            {"rotation": st.just("turning")},
+            {
+                "gm": quantities(0.0, 1e9, "km3 s-2"),
+                "radius": quantities(0.0, 1e5, "km"),
+                "distance": quantities(0.0, 1e7, "km"),
+                "period": quantities(-100.0, -1.0, "d") | quantities(1.0, 100.0, "h"),
+                "phase_angle": quantities(-1e3, 1e3, "deg", "rad"),
+            },
+        ),
     },
 )
 SUN_KEYS = {
