@@ -21,6 +21,8 @@ RESIDUAL_HEIGHT = 20.0
 """Distances [mm] round the panels, and their heights."""
 LOG_SPAN = 8.0
 """Ratio of largest to smallest value above which the axis is logarithmic."""
+LEAST_PART = 0.1
+"""Parts of the model are shown down to this share of the smallest value."""
 LIMIT_COLOUR, POINT_SIZE, CAP = "0.35", 2.2, 1.2
 FEWEST_SIGMAS = 3.5
 """Least height of the panel of residuals, in standard errors."""
@@ -120,8 +122,9 @@ def _log_span(points: Points) -> tuple[float, float] | None:
     values = points.value
     if not np.all(values > 0.0) or values.max() < LOG_SPAN * values.min():
         return None
-    none = np.zeros(len(values))
-    return log_range([Field(np.concatenate([values, values + points.sigma]), np.concatenate([none, none]))])
+    parts = np.concatenate([np.asarray(part) for part in (points.background, *points.parts.values())])
+    shown = np.concatenate([values, values + points.sigma, parts[parts > LEAST_PART * values.min()]])
+    return log_range([Field(shown, np.zeros(len(shown)))])
 
 
 def _draw_residuals(axes: Axes, points: Points) -> None:

@@ -2,6 +2,7 @@
 
 import itertools
 import math
+from collections.abc import Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -22,6 +23,8 @@ BETTER = 1e-4
 """Fall of -2 ln L below the best that shows another, better minimum."""
 ON_EDGE = 1e-9
 FAR_STEP = 4.0
+OTHER_SHARES = (0.2, 0.8)
+"""Places in a law parameter's range from which a profile is looked for again."""
 
 
 class BetterFound(Exception):
@@ -82,9 +85,7 @@ def rise_at(scan: Scan, place: dict[int, float]) -> float:
     held = np.zeros(len(start), dtype=bool)
     for number, value in place.items():
         start[number], held[number] = value, True
-    found, value = descend(scan.likelihood, start, held)
-    if value < scan.value - BETTER:
-        raise BetterFound(found)
+    _, value = _least(scan, [start, *_other_starts(scan, start, held)], held)
     return max(0.0, value - scan.value)
 
 
@@ -122,7 +123,10 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
         place = min(place, edge) if sign > 0.0 else max(place, edge)
         start, root = _profile(scan, number, place, start)
         if abs(root - wanted) < CLOSE:
-            return place
+            # Other parameters may do better far from where they were on the way here.
+            start, root = _elsewhere(scan, number, start, root)
+            if abs(root - wanted) < CLOSE:
+                return place
         if root < wanted:
             if place == edge:
                 return edge
@@ -161,7 +165,33 @@ def _profile(scan: Scan, number: int, place: float, near: Floats) -> tuple[Float
     start[number] = place
     held = np.zeros(len(start), dtype=bool)
     held[number] = True
-    found, value = descend(scan.likelihood, start, held)
+    found, value = _least(scan, [start], held)
+    return found, math.sqrt(max(0.0, value - scan.value))
+
+
+def _elsewhere(scan: Scan, number: int, near: Floats, root: float) -> tuple[Floats, float]:
+    """Return what `_profile` does for the place of `near`, from other starts as well."""
+    held = np.zeros(len(near), dtype=bool)
+    held[number] = True
+    found, value = _least(scan, [near, *_other_starts(scan, near, held)], held)
+    new = math.sqrt(max(0.0, value - scan.value))
+    return (found, new) if new < root else (near, root)
+
+
+def _other_starts(scan: Scan, near: Floats, held: NDArray[np.bool_]) -> list[Floats]:
+    """Return `near` with one law parameter after the other, as far as free, moved to either side of its range."""
+    low, high = scan.likelihood.low, scan.likelihood.high
+    starts = []
+    for number in np.flatnonzero(np.isfinite(low) & np.isfinite(high) & ~held):
+        for share in OTHER_SHARES:
+            start = near.copy()
+            start[number] = low[number] + share * (high[number] - low[number])
+            starts.append(start)
+    return starts
+
+
+def _least(scan: Scan, starts: Sequence[Floats], held: NDArray[np.bool_]) -> tuple[Floats, float]:
+    found, value = min((descend(scan.likelihood, one, held) for one in starts), key=lambda one: one[1])
     if value < scan.value - BETTER:
         raise BetterFound(found)
-    return found, math.sqrt(max(0.0, value - scan.value))
+    return found, value

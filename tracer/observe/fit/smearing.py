@@ -39,9 +39,9 @@ def smearing(
 
     Each point is the mean over the aperture of the image convolved with the seeing in both directions; inside a pixel
     the image is taken as straight, with the slope between its neighbours, so that pixels blur nothing to second order.
-    A Gaussian and a rectangle along the axes are integrated in closed form; a Moffat
-    function is the mixture of Gaussians (1 + x)^-beta = integral of t^(beta - 1) exp(-t (1 + x)) dt / Gamma(beta); an
-    aperture aslant is tiled with small squares. With neither, a point is the mean over an area of one pixel about it.
+    A Gaussian and a rectangle along the axes are integrated in closed form; a Moffat function is the mixture of
+    Gaussians (1 + x)^-beta = integral of t^(beta - 1) exp(-t (1 + x)) dt / Gamma(beta); an aperture aslant is tiled
+    with small squares. With neither, a point is the mean over an area of one pixel about it.
     Rows sum to 1 less what lies outside of the image.
 
     Parameters
@@ -140,7 +140,7 @@ def _shares(edges: Floats, centres: Floats, sizes: Floats, widths: Floats) -> Fl
 
 
 def _integral(order: int, x: Floats, sigma: Floats) -> Floats:
-    """Return Phi(x/sigma) integrated `order` times, 0 to 2, from where it vanishes; a unit step without spread."""
+    """Return Phi(x/sigma) integrated `order` times, 0 to 2, from where it vanishes; the unit step without spread."""
     if not sigma.any():
         return np.asarray((np.heaviside(x, 0.5), np.maximum(x, 0.0), 0.5 * np.maximum(x, 0.0) ** 2)[order])
     z = x / sigma
