@@ -40,7 +40,8 @@ HELP = " ".join(
     ]
 )
 DRAWINGS = {**FIGURES, **SWEPT_FIGURES}
-OF_IMAGES = " and ".join(what for what, drawing in DRAWINGS.items() if drawing.of_image)
+_OF_IMAGES = [what for what, drawing in DRAWINGS.items() if drawing.of_image]
+OF_IMAGES = f"{', '.join(_OF_IMAGES[:-1])} and {_OF_IMAGES[-1]}"
 OF_VELOCITY = ("column_", "brightness_", "mean_velocity_", "velocity_width_", "line_shift_", "line_width_")
 """Beginnings of the variables that the figure of velocities needs."""
 
@@ -85,7 +86,7 @@ def command(
         str | None,
         typer.Option(
             metavar="NAME",
-            help="Draw image or tail in the brightness of this line; otherwise in column density.",
+            help="Draw image, tail or velocity in the brightness of this line; otherwise in column density.",
             show_default=False,
         ),
     ] = None,

@@ -11,8 +11,9 @@ from tracer.product.layout import Ratio, ratio_names
 from tracer.tally.axes import ImagePlane
 from tracer.tally.buffer import tally_views
 from tracer.tally.field import FieldStatistics
+from tracer.tally.plane_moments import plane_moments
 from tracer.tally.statistics import replicate_counts
-from tracer.tally.velocity_moments import Moments, jackknife_errors, plane_moments
+from tracer.tally.velocity_moments import Moments, jackknife_errors
 
 Numbers = NDArray[np.float64]
 

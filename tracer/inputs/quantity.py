@@ -72,6 +72,8 @@ TemperatureOrSurface = Annotated[
 ]
 Speed = Annotated[Quantity, Measured("speed", POSITIVE)]
 RadialVelocity = Annotated[Quantity, Measured("speed")]
+LineOfSightVelocity = Annotated[Quantity, Measured("speed", Interval(at_least=-3e8, at_most=3e8))]
+"""No further than light."""
 Angle = Annotated[Quantity, Measured("angle")]
 Latitude = Annotated[Quantity, Measured("angle", Interval(at_least=-90.0, at_most=90.0))]
 Rate = Annotated[Quantity, Measured("rate", Interval(above=0.0, at_most=1e35))]

@@ -54,6 +54,7 @@ LEAST_SPAN = 1e-3
 FEW_TICKS = 5
 MIDDLE_OF_ALL = (2.0, 98.0)
 """Percentiles of what says something between which the colours lie: single pixels must not decide."""
+MINUS = "\N{MINUS SIGN}"
 MOST_WRITTEN, MOST_PLACES = 1e4, 4
 """Largest value written out, and most places behind the point."""
 
@@ -183,9 +184,9 @@ def _looks(parts: Sequence[Aperture], found: Velocities) -> list[Curve]:
 def _with_error(value: float, error: float, sign: str) -> str:
     """Return a value with its error, both to the error's first digit."""
     if not (0.0 < error < MOST_WRITTEN and abs(value) < MOST_WRITTEN):
-        return f"{value:{sign}.3g}"
+        return f"{value:{sign}.3g}".replace("-", MINUS)
     places = min(max(0, -math.floor(math.log10(error))), MOST_PLACES)
-    return f"{value:{sign}.{places}f} \N{PLUS-MINUS SIGN} {error:.{places}f}"
+    return f"{value:{sign}.{places}f} \N{PLUS-MINUS SIGN} {error:.{places}f}".replace("-", MINUS)
 
 
 def _maps(pixels: Velocities) -> list[Map]:

@@ -5,6 +5,7 @@ import json
 import pytest
 
 from tracer.__main__ import main
+from tracer.product.writing import save_product
 
 VELOCITY = 'image[1].velocity={ from = "-1 km/s", to = "1 km/s", bins = 3 }'
 
@@ -38,6 +39,18 @@ def test_run_says_what_the_bins_leave_out_and_summary_how_well_velocities_are_kn
     errors = json.loads(out)["median_relative_standard_error"]
     assert "column_by_velocity_tail_from_north" in errors
     assert "mean_velocity_tail_from_north" not in errors
+    figure = tmp_path / "velocity.png"
+    said_by(capsys, "plot", product, "--what", "velocity", "-o", str(figure), "--dpi", "50")
+    assert figure.read_bytes().startswith(b"\x89PNG")
+
+
+def test_a_product_without_velocities_has_no_such_figure(small_product, tmp_path, capsys):
+    save_product(small_product, tmp_path / "small.nc")
+    with pytest.raises(SystemExit) as ended:
+        main(["plot", str(tmp_path / "small.nc"), "--what", "velocity", "-o", str(tmp_path / "v.png")])
+    assert ended.value.code == 2
+    assert "small.nc: no image is resolved by velocity; give one velocity = " in capsys.readouterr().err
+    assert not (tmp_path / "v.png").exists()
 
 
 def test_check_says_that_without_replicates_velocities_have_no_errors(small_run_file, capsys):

@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.memory import sizes
 from tracer.engine.planning import make_plan
 from tracer.engine.runspec.load import load_run
@@ -66,7 +67,26 @@ def test_never_hit_pixels_are_not_numbers_and_others_are(resolved):
         assert np.isnan(resolved[name + "_standard_error"].values).all()
 
 
-def test_resumed_and_saved_velocities_are_the_same(run_file, resolved, tmp_path):
+class Stopped(Exception):
+    pass
+
+
+def test_resumed_velocities_are_those_of_an_uninterrupted_run(run_file, resolved, tmp_path):
+    spec, output = load_run(run_file, [VELOCITY]), tmp_path / "out.nc"
+    checkpoints = Checkpoints(output)
+
+    def watch(status):
+        if status.batches >= 2:
+            checkpoints.write()
+            raise Stopped
+
+    with pytest.raises(Stopped):
+        run(spec, workers=1, watch=watch, checkpoints=checkpoints)
+    again = run(spec, workers=1, checkpoints=Checkpoints(output, True))
+    assert again.attrs["data_checksum"] == resolved.attrs["data_checksum"]
+
+
+def test_saved_velocities_and_those_of_two_workers_are_the_same(run_file, resolved, tmp_path):
     save_product(resolved, tmp_path / "one.nc")
     with open_product(tmp_path / "one.nc") as ds:
         assert ds.attrs["data_checksum"] == resolved.attrs["data_checksum"]

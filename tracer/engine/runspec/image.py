@@ -6,7 +6,7 @@ from pydantic import Field, model_validator
 
 from tracer.engine.runspec.order import is_below
 from tracer.inputs.number import Cells
-from tracer.inputs.quantity import RadialVelocity, SkyOffset
+from tracer.inputs.quantity import LineOfSightVelocity, SkyOffset
 from tracer.inputs.sky import ViewerDirection
 from tracer.inputs.table import Table, conflict
 from tracer.inputs.text import Line
@@ -18,8 +18,8 @@ class VelocityTable(Table):
     What is slower or faster is not lost: it is kept apart.
     """
 
-    from_: RadialVelocity = Field(alias="from", description="Lower end; negative towards the viewer.")
-    to: RadialVelocity = Field(description="Upper end.")
+    from_: LineOfSightVelocity = Field(alias="from", description="Lower end; negative towards the viewer.")
+    to: LineOfSightVelocity = Field(description="Upper end.")
     bins: Cells = Field(description="Equal bins between the two ends.")
 
     @model_validator(mode="after")

@@ -120,7 +120,7 @@ def _velocity_figure(product: xr.Dataset, name: str, line: str | None) -> PageFi
     ]
     words = (
         "Line shapes along the line of sight, positive away from the viewer, and maps of mean velocity and width. "
-        f"{'; '.join(said) or NOTHING.rstrip('.')}."
+        + (f"In parts of the image: {'; '.join(said)}." if said else NOTHING)
     )
     what = "column density" if line is None else line
     return _figure(product, What.VELOCITY, f"Velocities, {what}: {sky.title}", words, name, line)

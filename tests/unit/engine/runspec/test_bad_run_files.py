@@ -238,11 +238,16 @@ VELOCITY = "image[1].velocity"
         ),
         (
             '{ to = "3 km/s", bins = 6 }',
-            f'{VELOCITY}.from: missing; must be a quantity of speed, for example "2 km/s"',
+            f"{VELOCITY}.from: missing; must be a quantity of speed from -300000000 m s-1 to 300000000 m s-1, "
+            'for example "2 km/s"',
         ),
         (
             '{ from = "3 km/s", to = "3000 m/s", bins = 6 }',
             f'{VELOCITY}.to: "3000 m/s" is not above from "3 km/s"',
+        ),
+        (
+            '{ from = "-1e9 m/s", to = "3 km/s", bins = 6 }',
+            f'{VELOCITY}.from: "-1e9 m/s" is out of range; must be from -300000000 m s-1 to 300000000 m s-1',
         ),
         (
             '{ from = -3, to = "3 km/s", bins = 6 }',
