@@ -22,7 +22,11 @@ def reference_of(root: type[Table], preface: str, hidden: tuple[type[Table], ...
     hidden : tuple of type[Table]
         Tables that are told by the words of the fields that take them.
     """
-    sections = [preface, _units(root), _section("Top level", None, _top_level(root))]
+    sections = [preface]
+    if dimensions_in(root):
+        sections.append(_units(root))
+    if top := _top_level(root):
+        sections.append(_section("Top level", None, top))
     for key, field in fields_of(root).items():
         sections.extend(_sections(key, field, hidden))
     return "\n".join(sections)

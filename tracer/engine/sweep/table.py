@@ -21,9 +21,16 @@ _PREFACE = """\
 
 A sweep file is a run file with a table `[sweep]` that says which of its keys vary. All other tables
 are those of a run file, with the same rules. With `run` they may be left out: those that are given
-then change the named run file, key by key, and a list takes the place of the whole list. Each point
-of the sweep is the run of that file with the point's values: the same seed, so that points differ by
-what varies and not by chance. `tracer run RUN.toml --set KEY=VALUE` makes the same product.
+then change the named run file, key by key, and a list takes the place of the whole list; paths are
+relative to the named run file.
+
+Each point of the sweep is the run of that file with the point's values, to the last bit; `tracer run
+RUN.toml --set KEY=VALUE` makes it alone. All points have the run file's seed: with the same random
+numbers their differences are usually known better than the error bars of each say. Where points must
+be independent vary `ensemble.seed` along with other keys, `paired`.
+
+Any key may vary that leaves grid, images, releases, emission lines and the number of replicates as
+they are, which the points of one product share. Numbers along an axis rise or fall throughout.
 """
 
 _NAME = re.compile(r"[a-z][a-z0-9_]{0,39}")

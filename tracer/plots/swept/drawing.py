@@ -154,9 +154,10 @@ def _draw_line(axes: Axes, along: Values, line: Line) -> None:
     error = np.where(np.isfinite(field.error), field.error, 0.0)
     dashes = "none" if along.are_words else line.look.dashes
     bars = axes.errorbar(
-        x[hit],
-        field.value[hit],
-        yerr=error[hit],
+        x,
+        # Not a number leaves a gap in the line.
+        np.where(hit, field.value, np.nan),
+        yerr=np.where(hit, error, np.nan),
         fmt=line.marker,
         color=line.look.colour,
         linestyle=dashes,

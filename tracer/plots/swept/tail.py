@@ -73,6 +73,8 @@ def swept_tail(
     )
     if at_least.any():
         caption += f" Arrows: still above the level at the image's end, {end:.4g} body radii."
+    if not lengths.value.all():
+        caption += " Gaps: nowhere behind the body above the level."
     if not has_replicates(source, seen.variable):
         caption = f"{caption} {NO_REPLICATES}"
     words = Words(
