@@ -72,7 +72,7 @@ def test_moon_stands_where_its_host_does():
     notes = figures("sun.true_anomaly=0 deg", "body.name=Moon").notes
     assert (
         "Moon has the distance and velocity of Earth from the Sun; its own motion about Earth, and the gravity and "
-        "shadow of Earth, are left out"
+        "shadow of Earth, are left out; body.host brings them in"
     ) in notes
 
 
