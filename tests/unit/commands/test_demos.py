@@ -9,7 +9,7 @@ import pytest
 import tracer
 
 RUNS = Path(__file__).parents[3] / "runs"
-DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith("-plan"))
+DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith(("-plan", "-observation")))
 FEWER = (
     "ensemble.particles_per_batch=10",
     "ensemble.batches=3",
