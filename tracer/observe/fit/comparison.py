@@ -158,7 +158,10 @@ def _estimate(scan: Scan, number: int) -> Estimate:
     slot = scan.likelihood.slots[number]
     if slot.key is None:
         return Estimate(*(slot.unit * end for end in found))
-    return Estimate(*(math.exp(end) for end in found))
+    given = scan.likelihood.components[slot.component or 0].curve.parameters
+    edges = next(one for one in given if one.key == slot.key)
+    # An end that lies on an edge of the range is that edge, not what rounding makes of its logarithm.
+    return Estimate(*(min(max(math.exp(end), edges.low), edges.high) for end in found))
 
 
 def needed_of(ds: xr.Dataset, spec: ObservationSpec, profile: Profile) -> list[str]:

@@ -80,11 +80,11 @@ class Lawful:
     ) -> None:
         self.parameters = fitted
         self._response, self._law, self._held = response, law, dict(held)
-        self._spline: CubicSpline | None = None
+        self._spline: Floats | None = None
         if len(fitted) == 1:
             logs = np.linspace(math.log(fitted[0].low), math.log(fitted[0].high), NODES)
-            self._spline = CubicSpline(logs, np.array([self._mean(np.array([one])) for one in logs]))
-            self._slope = self._spline.derivative()
+            values = np.array([self._mean(np.array([one])) for one in logs])
+            self._nodes, self._spline = logs, CubicSpline(logs, values).c
         elif fitted:
             # The ends of ranges must be covered, which shows before any fit.
             for ends in np.array([[p.low, p.high] for p in fitted]).T:
@@ -93,7 +93,11 @@ class Lawful:
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
         if self._spline is not None:
-            return np.asarray(self._spline(logs[0])), np.asarray(self._slope(logs[0]))[np.newaxis]
+            # Written out: a descent asks thousands of times, and a call of the library costs more than the sum.
+            step = self._nodes[1] - self._nodes[0]
+            place = min(max(int((logs[0] - self._nodes[0]) / step), 0), NODES - 2)
+            x, c = logs[0] - self._nodes[place], self._spline[:, place]
+            return ((c[0] * x + c[1]) * x + c[2]) * x + c[3], ((3.0 * c[0] * x + 2.0 * c[1]) * x + c[2])[None]
         mean = self._mean(logs)
         slopes = np.empty((len(logs), len(mean)))
         for k in range(len(logs)):

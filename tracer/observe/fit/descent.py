@@ -69,7 +69,7 @@ def _step(normal: Floats, gradient: Floats, damping: float) -> Floats:
     scale = np.sqrt(np.maximum(np.diag(normal), np.finfo(float).tiny))
     scaled = normal / np.outer(scale, scale)
     # A part of the trace as well: two parameters that do the same leave a matrix without inverse.
-    scaled[np.diag_indices_from(scaled)] += damping + 1e-13
+    scaled.flat[:: len(scale) + 1] += damping + 1e-13
     return np.asarray(np.linalg.solve(scaled, -gradient / scale) / scale)
 
 
