@@ -10,7 +10,9 @@ import tracer
 from tracer.engine.sweep.preparing import prepare_sweep
 
 RUNS = Path(__file__).parents[3] / "runs"
-DEMOS = sorted(path for path in RUNS.glob("*.toml") if not path.stem.endswith(("-plan", "-sweep", "-observation")))
+DEMOS = sorted(
+    path for path in RUNS.glob("*.toml") if not path.stem.endswith(("-plan", "-sweep", "-observation"))
+)
 SWEEPS = sorted(RUNS.glob("*-sweep.toml"))
 FEWER = (
     "ensemble.particles_per_batch=10",
