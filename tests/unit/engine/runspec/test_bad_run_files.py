@@ -247,7 +247,7 @@ VELOCITY = "image[1].velocity"
         ),
         (
             '{ from = "-1e9 m/s", to = "3 km/s", bins = 6 }',
-            f'{VELOCITY}.from: "-1e9 m/s" is out of range; must be from -300000000 m s-1 to 300000000 m s-1',
+            f'{VELOCITY}.from: "-1000000000 m/s" is out of range; must be from -300000000 m s-1 to 300000000 m s-1',
         ),
         (
             '{ from = -3, to = "3 km/s", bins = 6 }',
