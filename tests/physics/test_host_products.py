@@ -9,11 +9,14 @@ from tracer.engine.batches import make_work
 from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.load import parse_run
 from tracer.engine.scene import build_scene
+from tracer.engine.tasks import BatchRange
+from tracer.engine.tracing import run
 from tracer.fate import Fate
 from tracer.kernels.endings import CROSSED, LANDED, STRUCK
 from tracer.kernels.integrated_flight import HAZARDS, TIME, fly, new_curve, new_flight, start_flight
 from tracer.kernels.resume import ENDED, new_resume
 from tracer.kernels.tracing import trace_slice
+from tracer.product.merging import merged_product
 from tracer.tally.buffer import tally_views
 
 RUN = """
@@ -151,3 +154,15 @@ def test_a_moving_moon_is_one_that_stands_while_its_phase_hardly_changes(traced)
         one, other = (ds.ledger.sel(fate=fate).item() for ds in (still, moving))
         error = math.hypot(*(ds.ledger_standard_error.sel(fate=fate).item() for ds in (still, moving)))
         assert abs(one - other) < 4.0 * error + 1e-3
+
+
+@pytest.mark.parametrize("motion", ["stationary", "moving"])
+def test_products_beside_a_host_are_the_same_for_any_workers_and_merge(motion):
+    text = VENT.replace('"60 deg"', f'"60 deg", motion = "{motion}"')
+    spec = parse_run(text, "host.toml", ["ensemble.batches=4"])
+    one, two = run(spec, workers=1), run(spec, workers=2)
+    assert one.attrs["data_checksum"] == two.attrs["data_checksum"]
+    parts = [run(spec, workers=1, batches=BatchRange(*ends)) for ends in ((0, 1), (1, 4))]
+    merged = merged_product([(f"part {i}", part) for i, part in enumerate(parts)])
+    np.testing.assert_allclose(merged.host_impact_rate, one.host_impact_rate, rtol=1e-12)
+    np.testing.assert_allclose(merged.attrs["host_position"], one.attrs["host_position"])
