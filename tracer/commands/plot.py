@@ -40,7 +40,7 @@ HELP = " ".join(
     ]
 )
 DRAWINGS = {**FIGURES, **SWEPT_FIGURES}
-OF_IMAGES = " and ".join(what for what, drawing in DRAWINGS.items() if drawing.of_image)
+OF_IMAGES = ", ".join(what for what, drawing in DRAWINGS.items() if drawing.of_image)
 
 
 def command(
