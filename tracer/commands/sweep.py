@@ -46,7 +46,7 @@ def command(
         str,
         typer.Argument(
             metavar="SWEEP.toml",
-            help="The sweep file: a run file with a table [sweep], see runs/README.md. With --point also the product "
+            help="The sweep file: a run file with a table `sweep`, see runs/README.md. With --point also the product "
             "of a sweep.",
             show_default=False,
         ),
