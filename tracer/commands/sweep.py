@@ -120,7 +120,7 @@ def command(
             )
         _take_out(sweep_file, point, output, overwrite)
         return
-    sweep = load_sweep(sweep_file, tuple(settings or ()))
+    sweep = load_sweep(sweep_file, settings or ())
     if check:
         _check(prepare_sweep(sweep, workers or available_processors()), sweep_file, settings, json)
         return

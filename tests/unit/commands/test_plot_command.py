@@ -62,11 +62,11 @@ def test_existing_file_is_kept(folder, capsys):
         ),
         (
             ["-o", "a.png", "--what", "density", "--line", "na_d2"],
-            "--line: goes with --what image, tail and velocity, not with --what density",
+            "--line: goes with --what image, tail, velocity, swept-brightness and swept-tail, not with --what density",
         ),
         (
             ["-o", "a.png", "--what", "ledger", "--image", "tail"],
-            "--image: goes with --what image, tail and velocity, not with --what ledger",
+            "--image: goes with --what image, tail, velocity, swept-brightness and swept-tail, not with --what ledger",
         ),
         (
             ["-o", "a.png", "--what", "plan", "--release", "sputtering"],

@@ -65,7 +65,9 @@ def parse_run(text: str, file: str | os.PathLike[str], overrides: Iterable[str] 
     name = os.fspath(file)
     given = tables(text, name)
     if SWEEP in given:
-        raise InputError(f"{name}: {SWEEP}: makes this a sweep file, not a run file; tracer sweep traces it")
+        raise InputError(
+            f"{name}: {SWEEP}: makes this a sweep file, not a run file; tracer sweep traces it, with --check checks it"
+        )
     for change in overrides:
         given = override(given, change)
     return checked_run(given, name)

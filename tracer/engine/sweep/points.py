@@ -1,7 +1,7 @@
 """A sweep file as a whole: its axes with their values, and the run of each point."""
 
 import os
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from math import prod
 from pathlib import Path
 from typing import Any, NamedTuple
@@ -88,14 +88,14 @@ class Point(NamedTuple):
     spec: RunSpec
 
 
-def load_sweep(path: str | os.PathLike[str], overrides: tuple[str, ...] = ()) -> Sweep:
+def load_sweep(path: str | os.PathLike[str], overrides: Iterable[str] = ()) -> Sweep:
     """Read a sweep file.
 
     Parameters
     ----------
     path : path
         A TOML file: a run file with a table `[sweep]`, or such a table that names a run file.
-    overrides : tuple of str
+    overrides : iterable of str
         Changes such as `ensemble.batches=5`, applied to the run file of all points before axes are.
 
     Returns
