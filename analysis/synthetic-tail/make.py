@@ -20,7 +20,7 @@ HERE = Path(__file__).parent
 RUNS = HERE.parents[1] / "runs"
 OBSERVATION, TABLE = RUNS / "harrow-tail-observation.toml", RUNS / "harrow-tail-observed.csv"
 
-SEED = 20310802
+SEED = 20310803
 POSITIONS = np.arange(-2.0, 17.01, 0.5)
 RELATIVE, ABSOLUTE_KR, BACKGROUND_KR = 0.03, 0.4, 1.5
 """Standard errors: a part of the brightness and a constant, added in squares; and the background."""

@@ -91,10 +91,10 @@ FIGURES: dict[What, Drawing] = {
     What.LEDGER: Drawing("the particle budget", partial(_plain, ledger)),
     What.PROFILE: Drawing("density against altitude by day and by night", partial(_plain, profile)),
     What.TAIL: Drawing("along the tail axis of an image", partial(_of_image, tail), True),
-    What.ADSORBED_MAP: Drawing("where atoms rest on the ground", partial(_map, MAPS[What.ADSORBED_MAP])),
     What.VELOCITY: Drawing(
         "line shapes, shifts and widths in an image resolved by velocity", partial(_of_image, velocity), True
     ),
+    What.ADSORBED_MAP: Drawing("where atoms rest on the ground", partial(_map, MAPS[What.ADSORBED_MAP])),
     What.RELEASE_MAP: Drawing("where new atoms leave the ground", partial(_map, MAPS[What.RELEASE_MAP])),
     What.RETURN_MAP: Drawing("where atoms land", partial(_map, MAPS[What.RETURN_MAP])),
     What.CAPTURE_MAP: Drawing("where the ground keeps them", partial(_map, MAPS[What.CAPTURE_MAP])),

@@ -1,0 +1,73 @@
+"""The figure of a comparison: what it shows, at both widths and for profiles of any kind."""
+
+import numpy as np
+import pytest
+
+from tracer.observe.fit.result import Comparison, Correlations, Estimate, Points
+from tracer.plots.comparison import DATA, comparison
+from tracer.plots.saving import figure_bytes
+
+RATE = Estimate(2e24, 1.9e24, 2.1e24, 1.8e24, 2.2e24)
+
+
+def made(value, upper=(False,) * 5, background=0.0):
+    value = np.asarray(value, dtype=float)
+    points = Points(
+        position=np.arange(5.0),
+        value=value,
+        sigma=0.1 * np.abs(value) + 0.1,
+        upper=np.array(upper),
+        model=value + background,
+        model_error=0.02 * np.abs(value),
+        residual=np.array([0.5, -0.5, 1.0, -6.0, 0.0]),
+        parts={"desorption": 0.7 * value, "$vapour_%": 0.3 * value},
+        background=np.full(5, background),
+        unit="kR",
+        position_unit="radii",
+        position_words="Tangent altitude",
+    )
+    return Comparison(
+        title="Harrow's tail, 5 $",
+        products=("a.nc",),
+        what="brightness of na_d2",
+        view="seen from north",
+        rates={"desorption": RATE, "$vapour_%": RATE},
+        held_rates={},
+        parameters={"$vapour_%": {"temperature": Estimate(3e3, 2.5e3, 3.5e3, 2e3, 4e3)}},
+        background=None,
+        chi_square=5.0,
+        degrees_of_freedom=3,
+        probability=0.17,
+        minus_two_log_likelihood=5.0,
+        correlations=Correlations(("a", "b"), np.eye(2)),
+        points=points,
+        statements=(),
+        warnings=(),
+    )
+
+
+@pytest.mark.parametrize("width", ["column", "full"])
+def test_data_model_parts_and_residuals_are_drawn(width):
+    figure = comparison(made([100.0, 50.0, 20.0, 8.0, 3.0], background=0.5), width)
+    upper, lower = figure.axes
+    assert upper.get_yscale() == "log"
+    assert "Brightness of na_d2 (kR)" in upper.get_ylabel()
+    assert lower.get_xlabel() == "Tangent altitude (body radii)"
+    # model, two parts, background; data and upper limits
+    assert len(upper.lines) >= 5
+    points = upper.containers[0].lines[0]
+    assert points.get_gid() == DATA
+    np.testing.assert_array_equal(points.get_ydata(), [100.0, 50.0, 20.0, 8.0, 3.0])
+    assert lower.get_ylim()[0] < -6.0 < 6.0 < lower.get_ylim()[1]
+    labels = [text.get_text() for text in figure.legends[0].get_texts()]
+    assert labels == ["model", "desorption", r"\$vapour_%", "background"]
+    assert figure_bytes(figure, ".png", 60).startswith(b"\x89PNG")
+
+
+def test_values_below_zero_and_upper_limits_are_drawn_on_a_straight_axis():
+    figure = comparison(made([10.0, 5.0, -1.0, 2.0, 3.0], upper=(False, False, False, True, True)))
+    upper = figure.axes[0]
+    assert upper.get_yscale() == "linear"
+    limits = next(line for line in upper.lines if line.get_gid() == "upper limits")
+    np.testing.assert_array_equal(limits.get_xdata(), [3.0, 4.0])
+    assert figure_bytes(figure, ".svg").startswith(b"<?xml")
