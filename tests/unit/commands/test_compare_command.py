@@ -126,6 +126,8 @@ def test_rates_behind_a_profile_are_found(folder, capsys):
         sum(np.array(part) for part in points["parts"].values()), points["model"], rtol=1e-9
     )
     assert points["unit"] == "kR"
+    assert len(found["residuals"]) == len(POSITIONS)
+    assert max(map(abs, found["residuals"])) < 4.5
     assert found["correlations"]["names"] == ["desorption: rate", "vapour: rate"]
 
 

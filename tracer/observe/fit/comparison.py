@@ -28,6 +28,7 @@ from tracer.observe.fit.words import (
     entangled_parameters,
     loud_model,
     quality,
+    thickness,
     told_apart,
     unit_slip,
 )
@@ -123,8 +124,15 @@ def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) 
         data.sigma[~data.upper],
         np.sum([one.rate * one.mean for one in chosen], axis=0)[~data.upper],
     )
+    for one in chosen:
+        if not one.mean.any():
+            raise InputError(
+                f'{one.product}: release "{one.name}" adds nothing to any point; leave it out of fit.releases'
+            )
     fitted = fit(data, components, slots)
-    words = [*([slip] if slip else []), *warnings]
+    rates = fitted.scan.likelihood.model(fitted.best).rates
+    thick = thickness(np.nansum([rate * one.depth for rate, one in zip(rates, chosen, strict=True)], axis=0))
+    words = [*([slip] if slip else []), *([thick] if thick else []), *warnings]
     return _result(spec, profile, [name for name, _ in products], how, fitted, words)
 
 
