@@ -1,7 +1,8 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
-`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan` and `plan_observation`,
-`load_observation` and `compare`, are loaded when they are first asked for, so that `import tracer` costs nothing.
+`load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation`,
+`evaluate_law`, `load_observation` and `compare`, are loaded when they are first asked for, so that `import tracer` costs
+nothing.
 """
 
 from importlib import import_module
@@ -14,6 +15,7 @@ if TYPE_CHECKING:
     from tracer.observe.observationspec.observation import load_observation
     from tracer.observe.plan import plan_observation
     from tracer.observe.planspec.plan import load_plan
+    from tracer.observe.responses import evaluate_law
     from tracer.observe.sightlines import sightlines
     from tracer.product.reading import open_product
     from tracer.product.writing import save_product
@@ -21,6 +23,7 @@ if TYPE_CHECKING:
 __all__ = [
     "__version__",
     "compare",
+    "evaluate_law",
     "load_observation",
     "load_plan",
     "load_run",
@@ -33,6 +36,7 @@ __all__ = [
 
 _HOMES = {
     "compare": "tracer.observe.fit.comparison",
+    "evaluate_law": "tracer.observe.responses",
     "load_observation": "tracer.observe.observationspec.observation",
     "load_plan": "tracer.observe.planspec.plan",
     "load_run": "tracer.engine.runspec.load",

@@ -123,9 +123,7 @@ def test_own_law_gives_the_run_its_own_fields(traced):
 
 
 def test_moving_body_gives_its_own_fields(traced):
-    product = traced(
-        MOVING.replace("batches = 40", "batches = 20").replace("cles_per_batch = 400", "cles_per_batch = 300")
-    )
+    product = traced(MOVING.replace("particles_per_batch = 400", "particles_per_batch = 1000"))
     z = deviations(evaluate_law(product, 0, LAWS["1200 K"]), product)
     assert len(z) > 15
     assert np.abs(z).max() < 5.0

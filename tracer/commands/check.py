@@ -85,6 +85,7 @@ def _print_scene(spec: RunSpec, figures: Preview) -> None:
             *_residence_rows(figures),
             ("particles", _particles(spec, figures)),
             ("emphasis", EMPHASIS[figures.emphasis]),
+            ("launch-speed bins", _speed_bins(figures)),
             ("memory", f"about {figures.memory / MEGABYTE:.0f} MB"),
             ("product", f"at most {figures.product_size / MEGABYTE:.0f} MB on disk"),
         ]
@@ -154,6 +155,15 @@ def _surface_rows(surface: SurfacePreview) -> list[tuple[str, str]]:
 def _particles(spec: RunSpec, figures: Preview) -> str:
     limit = "" if spec.ensemble.stop is None else "at most "
     return f"{limit}{figures.particles:,} in {limit}{figures.batches} batches, seed {figures.seed}"
+
+
+def _speed_bins(figures: Preview) -> str:
+    if figures.fastest_bin is None:
+        return "none: other laws of speed need other runs"
+    return (
+        f"{figures.speed_bins} up to {figures.fastest_bin / 1e3:.4g} km/s, one edge at the escape speed; "
+        "as many launches again serve them"
+    )
 
 
 def _outer_radius(figures: Preview) -> str:

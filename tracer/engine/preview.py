@@ -140,6 +140,8 @@ class Preview(NamedTuple):
     batches: int
     seed: int
     emphasis: str
+    speed_bins: int
+    fastest_bin: float | None
     memory: int
     product_size: int
     notes: tuple[str, ...]
@@ -149,7 +151,9 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
     """Return the figures of `scene`, for a run on `workers` threads."""
     body = scene.body
     releases = tuple(_preview_release(scene, release) for release in scene.releases)
-    memory, product_size = sizes(make_plan(spec, scene), workers)
+    plan = make_plan(spec, scene)
+    memory, product_size = sizes(plan, workers)
+    responses = plan.work.responses
     return Preview(
         body=spec.body.name,
         species=spec.gas.species,
@@ -173,6 +177,8 @@ def preview(spec: RunSpec, scene: Scene, workers: int) -> Preview:
         batches=spec.ensemble.most_batches,
         seed=spec.ensemble.seed,
         emphasis=scene.emphasis,
+        speed_bins=scene.speed_bins,
+        fastest_bin=None if responses is None else float(responses.edges[-1]),
         memory=memory,
         product_size=product_size,
         notes=(*scene_notes(spec, scene), *_outflow_notes(releases), *_memory_notes(memory)),

@@ -7,6 +7,7 @@ from them afterwards.
 """
 
 from collections.abc import Callable
+from itertools import pairwise
 from typing import NamedTuple
 
 import numpy as np
@@ -102,26 +103,30 @@ def trace_responses(
     rng = np.random.Generator(np.random.PCG64(sequence))
     supply = EvenNumbers(rng)
     strata = _strata(work.counts[number])
-    ends = np.cumsum(strata.counts)
     world = world_of_release(work.world, release)
     found = response_views(layout, buffer)
     assert found is not None
     own = tally_views(layout, buffer)
     rest = np.zeros(work.layout.size)
-    for place, (count, end) in enumerate(zip(strata.counts, ends, strict=True)):
-        at, half = divmod(place, 2)
-        rest[:] = 0.0
-        tally = tally_views(work.layout, rest)._replace(
-            column_content=found.column_content[at, half],
-            image_content=found.image_content[at, half],
-            image_emission=found.image_emission[at, half],
-        )
-        source = release._replace(speed=Ramp(float(work.edges[at]), float(work.edges[at + 1]), half == 1))
-        for first in range(end - count, end, BLOCK):
-            u, shares = draw(strata, supply, first, min(BLOCK, end - first))
-            fly(world, make_launches(scene, source, u, shares), tally, rng)
-        # Whoever reads the budget must learn of it.
-        own.ledger[Fate.UNRESOLVED] += tally.ledger[Fate.UNRESOLVED]
+    for first in range(0, work.launches, BLOCK):
+        count = min(BLOCK, work.launches - first)
+        place = np.repeat(np.arange(len(strata.counts)), strata.counts)[first : first + count]
+        at, half = np.divmod(place, 2)
+        u, shares = draw(strata, supply, first, count)
+        law = Ramp(work.edges[at], work.edges[at + 1], half == 1)
+        launches = make_launches(scene, release._replace(speed=law), u, shares)
+        cuts = [0, *(np.flatnonzero(np.diff(place)) + 1), count]
+        for start, stop in pairwise(cuts):
+            rest[:] = 0.0
+            key = at[start], half[start]
+            tally = tally_views(work.layout, rest)._replace(
+                column_content=found.column_content[key],
+                image_content=found.image_content[key],
+                image_emission=found.image_emission[key],
+            )
+            fly(world, Launches(*(array[start:stop] for array in launches)), tally, rng)
+            # Whoever reads the budget must learn of it.
+            own.ledger[Fate.UNRESOLVED] += tally.ledger[Fate.UNRESOLVED]
     for field in found:
         falling, rising = field[:, 0].copy(), field[:, 1].copy()
         field[:, 0] = 0.5 * (rising + falling)

@@ -28,8 +28,7 @@ from tracer.product.layout import (
     layout,
     variable_names,
 )
-from tracer.tally.axes import Grid, ImagePlane, cell_area, cell_volume, middles
-from tracer.tally.buffer import ORDERS
+from tracer.tally.axes import ORDERS, Grid, ImagePlane, cell_area, cell_volume, middles
 from tracer.tally.field import FieldStatistics
 
 Entry = tuple[tuple[str, ...], NDArray[Any], dict[str, Any]]

@@ -13,6 +13,8 @@ Floats = NDArray[np.float64]
 Direction = tuple[float, float, float]
 
 HOURS_A_TURN = 24.0
+ORDERS = 2
+"""Legendre orders of a response within a bin of launch speed: 0 and 1."""
 ROUNDING = 4e-16
 """Direction cosines below this are rounding of a right angle and count as 0."""
 

@@ -9,13 +9,9 @@ from numpy.typing import NDArray
 
 from tracer.fate import Fate
 from tracer.kernels.scoring import Tally
-from tracer.tally.axes import Grid, ImagePlane
+from tracer.tally.axes import ORDERS, Grid, ImagePlane
 
 Floats = NDArray[np.float64]
-
-
-ORDERS = 2
-"""Legendre orders of a response within a bin of launch speed: 0 and 1."""
 
 
 class BufferLayout(NamedTuple):

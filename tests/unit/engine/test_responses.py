@@ -8,16 +8,20 @@ from tracer.engine.batches import Task, make_work, trace_batch
 from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.memory import refuse_what_does_not_fit, sizes
 from tracer.engine.planning import make_plan
+from tracer.engine.responses import trace_responses
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
 from tracer.engine.tasks import BatchRange
 from tracer.engine.tracing import run
 from tracer.errors import InputError
+from tracer.kernels.resume import new_resume
+from tracer.kernels.tracing import trace_slice
 from tracer.observe.responses import evaluate_law
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.product.merging import merged_product
 from tracer.product.reading import open_product
 from tracer.product.writing import save_product
+from tracer.tally.budget import budget_gap
 
 BINS = "ensemble.speed_bins=8"
 FIELDS = ("vertical_column", "column_tail_from_north")
@@ -132,7 +136,7 @@ def test_images_whose_responses_would_collide_are_refused(small_run_file):
     path = small_run_file.with_name("colliding.toml")
     path.write_text(text.replace("[ensemble]", other + "[ensemble]"), encoding="utf-8")
     build_scene(load_run(path))
-    with pytest.raises(InputError, match="names collide in the product: column_response_tail_from_north"):
+    with pytest.raises(InputError, match=r"names collide in the product: .*column_response_tail_from_north"):
         build_scene(load_run(path, [BINS]))
 
 
@@ -144,3 +148,23 @@ def test_few_particles_still_reach_every_bin(small_run_file):
     told = []
     trace_batch(work, Task(0, 0), lambda atoms, _flights: told.append(atoms), lambda: False)
     assert sum(told) == pytest.approx(work.launches)
+
+
+def test_each_bin_has_a_unit_rate_whose_budget_closes(small_light_run_file):
+    work = make_work(build_scene(load_run(small_light_run_file, [BINS])), 1, 80)
+    assert work.responses is not None
+    rates = []
+
+    def fly(world, launches, tally, rng) -> None:
+        trace_slice(world, launches, new_resume(1), tally, rng, 10**9)
+        rate = launches.weights.sum()
+        assert budget_gap(rate, tally.ledger, float(tally.roulette[0])) < 1e-9
+        speeds = np.linalg.norm(launches.velocities, axis=1)
+        at = np.searchsorted(work.responses.edges, speeds) - 1
+        assert np.all(at == at[0])
+        rates.append((int(at[0]), rate))
+
+    trace_responses(work.scene, work.responses, work.layout, np.zeros(work.layout.size), (1, 1, 0), fly)
+    # Falling and rising half of each bin.
+    assert [at for at, _ in rates] == [at for at in range(8) for _ in range(2)]
+    assert [rate for _, rate in rates] == pytest.approx([1.0] * 16, rel=1e-14)

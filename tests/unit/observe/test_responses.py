@@ -38,6 +38,8 @@ def test_every_law_of_the_run_file_with_a_density_can_be_evaluated():
     [
         ({"law": "maxwell-flux", "temperature": 1e6}, r"% of the law is faster than the last bin"),
         ({"law": "maxwell-flux", "temperature": 0.5}, "narrower than the bins"),
+        ({"law": "maxwell-flux", "temperature": 1e-250}, "narrower than the bins"),
+        ({"law": "maxwell-gas", "temperature": 1e-250}, "narrower than the bins"),
         ({"law": "table", "speed": [1000.0, 1001.0], "pdf": [1.0, 1.0]}, "narrower than the bins"),
         ({"law": "maxwell-flux", "temperature": "1200"}, "temperature: .*unit"),
         ({"law": "maxwell-flux", "temperature": -3.0}, "temperature: -3.0 is out of range; must be above 0"),

@@ -7,6 +7,8 @@ from pathlib import Path
 import netCDF4
 import pytest
 
+from tracer.engine.runspec.load import load_run
+from tracer.engine.tracing import run
 from tracer.product.writing import save_product
 
 CHECKER = Path(sysconfig.get_path("scripts")) / "compliance-checker"
@@ -25,6 +27,15 @@ def saved(product, tmp_path):
 
 def test_the_conventions_are_met(saved):
     done = check(saved, "lenient")
+    assert done.returncode == 0, done.stdout
+
+
+def test_the_conventions_are_met_with_responses(small_light_run_file, tmp_path):
+    product = run(
+        load_run(small_light_run_file, ["ensemble.speed_bins=8", "ensemble.replicates=0"]), workers=1
+    )
+    save_product(product, tmp_path / "responses.nc")
+    done = check(tmp_path / "responses.nc", "lenient")
     assert done.returncode == 0, done.stdout
 
 

@@ -61,7 +61,7 @@ particles_per_batch = 2_000          # per release; the more, the smaller the er
 batches = 20                         # at least 2; error bars come from the scatter between batches
 seed = 20310601
 emphasis = "even"                    # or "far": more launches that reach high, escape or make a tail
-speed_bins = 0                       # 32 keeps responses by launch speed: other speed laws without tracing again
+speed_bins = 0                       # 32 keeps responses by launch speed, for other speed laws afterwards
 replicates = 20                      # groups of batches kept for the errors of sums; 0 keeps none
 """
 

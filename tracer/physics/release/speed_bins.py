@@ -8,16 +8,21 @@ FASTEST_IN_ESCAPES = 20.0
 FASTEST_IN_MEDIANS = 40.0
 """How far bins reach: this many escape speeds, and this many median speeds of the slowest law."""
 
-BELOW_ESCAPE = 18.0 / 32.0
+BELOW_ESCAPE = 24.0 / 32.0
 """Part of the bins that lies below the escape speed where that is well above the median speed."""
 
 FEW_MEDIANS = 0.25
 """Escape speed in median speeds at which half as many bins lie below it: slower than that few atoms are."""
 
-BULK, BULK_MEDIANS = 10.0, 2.0
-EDGE, EDGE_ESCAPES = 8.0, 0.05
-"""Bins below escape go with BULK bins even in log(1 + v/a) and EDGE bins even in log(1 + (v_esc - v)/b); a and b are
-these parts of the median and the escape speed. Above, they are even in log(1 + (v - v_esc)/b)."""
+ENERGY, ENERGY_MEDIANS = 16.0, 5.0
+BULK, BULK_MEDIANS = 6.0, 2.0
+EDGE, EDGE_ESCAPES = 1.0, 0.05
+"""Bins below escape stand as ENERGY bins even in log(1 + (v/a)^2), so that a Maxwellian falls evenly from bin to bin,
+BULK bins even in log(1 + v/b) and EDGE bins even in log(1 + (v_esc - v)/c); a, b and c are these parts of the median
+and the escape speed. Above, they are even in log(1 + (v - v_esc)/c). With 32 bins for sodium of
+1,200 K, the mean time in any shell up to 16 radii is wrong by at most 4 % over Mercury, 0.8 % over a body of 3.2 km/s
+and 0.05 % over the Moon for a law of 600 K, by 0.3 % for 1,200 K, 0.05 % for 2,400 K and sputtered atoms (own
+quadrature)."""
 
 GRID_POINTS = 4001
 
@@ -49,9 +54,10 @@ def speed_bin_edges(bins: int, escape_speed: float, slow: float, fast: float) ->
 
 def _below(escape_speed: float, slow: float, bins: int) -> Floats:
     v = np.linspace(0.0, escape_speed, GRID_POINTS)
+    energy = np.log1p((v / (ENERGY_MEDIANS * slow)) ** 2)
     bulk = np.log1p(v / (BULK_MEDIANS * slow))
     near = -np.log1p((escape_speed - v) / (EDGE_ESCAPES * escape_speed))
-    place = BULK * bulk / bulk[-1] + EDGE * (1.0 - near / near[0])
+    place = ENERGY * energy / energy[-1] + BULK * bulk / bulk[-1] + EDGE * (1.0 - near / near[0])
     edges = np.asarray(np.interp(np.linspace(0.0, place[-1], bins + 1), place, v))
     edges[0], edges[-1] = 0.0, escape_speed
     return edges

@@ -1,6 +1,10 @@
 """How a law of launch speed is spread over bins: its probabilities and Legendre moments within each."""
 
+from functools import lru_cache
+from typing import NamedTuple
+
 import numpy as np
+from numpy.typing import NDArray
 
 from tracer.physics.release.laws import Floats, SpeedDensity
 
@@ -30,16 +34,32 @@ def legendre_moments(law: SpeedDensity, edges: Floats, mass: float, orders: int 
     ndarray, shape (n, orders)
         The first column holds the probabilities of the bins.
     """
+    kinks = law.kinks()
+    inside = kinks[(kinks > edges[0]) & (kinks < edges[-1])]
+    nodes = _nodes(np.ascontiguousarray(edges, np.float64).tobytes(), inside.tobytes(), orders)
+    by_part = np.einsum("in,ink->ik", law.density(nodes.speeds, mass), nodes.weights)
+    return np.asarray(np.add.reduceat(by_part, nodes.first, axis=0))
+
+
+class _Nodes(NamedTuple):
+    """Places and weights of the quadrature: parts of bins, nodes in each, orders; and the first part of each bin."""
+
+    speeds: Floats
+    weights: Floats
+    first: NDArray[np.int64]
+
+
+@lru_cache(maxsize=8)
+def _nodes(edge_bytes: bytes, kink_bytes: bytes, orders: int) -> _Nodes:
+    """Return the nodes for edges and kinks [m s-1]: a fit asks for the same again and again."""
+    edges, kinks = (np.frombuffer(one, np.float64) for one in (edge_bytes, kink_bytes))
     steps = np.arange(PARTS) / PARTS
     cuts = np.append((edges[:-1, np.newaxis] + steps * np.diff(edges)[:, np.newaxis]).ravel(), edges[-1])
-    kinks = law.kinks()
-    if kinks.size:
-        cuts = np.union1d(cuts, kinks[(kinks > edges[0]) & (kinks < edges[-1])])
+    cuts = np.union1d(cuts, kinks) if kinks.size else cuts
     half = 0.5 * np.diff(cuts)[:, np.newaxis]
     speeds = cuts[:-1, np.newaxis] + half * (1.0 + _PLACES)
-    weights = law.density(speeds, mass) * half * _WEIGHTS
     place = np.searchsorted(edges, 0.5 * (cuts[1:] + cuts[:-1])) - 1
     low, high = edges[place, np.newaxis], edges[place + 1, np.newaxis]
     polynomials = np.polynomial.legendre.legvander((2.0 * speeds - low - high) / (high - low), orders - 1)
-    by_part = np.einsum("in,ink->ik", weights, polynomials)
-    return np.asarray(np.add.reduceat(by_part, np.searchsorted(place, np.arange(len(edges) - 1)), axis=0))
+    weights = (half * _WEIGHTS)[:, :, np.newaxis] * polynomials
+    return _Nodes(speeds, weights, np.searchsorted(place, np.arange(len(edges) - 1)))
