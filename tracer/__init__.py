@@ -1,8 +1,8 @@
 """Monte Carlo test-particle tracer for surface-bound exospheres, the gas of airless bodies.
 
 `load_run`, `run`, `open_product`, `save_product`, and for observers `sightlines`, `load_plan`, `plan_observation`,
-`evaluate_law`, `load_observation` and `compare`, are loaded when they are first asked for, so that `import tracer` costs
-nothing.
+`evaluate_law`, `load_observation` and `compare`, are loaded when they are first asked for, so that `import tracer`
+costs nothing.
 """
 
 from importlib import import_module

@@ -39,9 +39,8 @@ horizontal = ["-8 radii", "3 radii"]
 vertical = ["-3 radii", "3 radii"]
 pixels = [44, 24]
 [ensemble]
-particles_per_batch = 600
+particles_per_batch = 1200
 batches = 20
-emphasis = "far"
 """
 OBSERVATION = """
 title = "Tail of Harrow"
