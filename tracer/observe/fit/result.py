@@ -54,7 +54,7 @@ class Points(NamedTuple):
 
 
 class Correlations(NamedTuple):
-    """Correlation `matrix` (P, P) of the free parameters `names`; NaN for one that lies on the edge of its range."""
+    """Correlation `matrix` (P, P) of the free parameters `names`; NaN for one on an edge, or that does nothing."""
 
     names: tuple[str, ...]
     matrix: Floats
