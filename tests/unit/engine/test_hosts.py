@@ -173,6 +173,12 @@ def test_a_moon_without_the_key_has_no_host():
     assert not any("brings them in" in note for note in check(MOON).notes)
 
 
+def test_check_says_which_constants_of_a_host_are_not_the_catalogues():
+    (note,) = (note for note in check(MOON, "body.host.gm=4e5 km3 s-2").notes if "gm" in note)
+    assert "host.gm" in note
+    assert not any("host.gm" in note or "host.distance" in note for note in check(MOON).notes)
+
+
 def test_check_shows_the_host():
     figures = check(MOON)
     host = figures.host
