@@ -2,7 +2,9 @@
 
 import math
 
+import numpy as np
 import pytest
+from scipy.integrate import solve_ivp
 
 from tracer.engine.kernel_world import kernel_world
 from tracer.engine.preview import preview
@@ -275,6 +277,34 @@ def test_a_flight_may_end_on_the_host():
     assert math.hypot(x, y - 14000e3, z) == pytest.approx(1800e3, rel=1e-9)
     # On its way from the umbra's side the Sun is seen.
     assert (flown.path[:, 2] > 0.0).all()
+
+
+@pytest.mark.parametrize("sun", ["", '[sun]\ntrue_anomaly = "0 deg"\ntide = false\nshadow = "none"\n'])
+def test_a_run_files_moon_and_host_go_round_each_other(sun):
+    """A flight of a day under gravity alone, against DOP853 (Hairer, Norsett & Wanner 1993) along axes that stay."""
+    gas = 'gas={ species = "Na", radiation_acceleration = "none", photoionization_rate = "0 s-1" }'
+    text = MOON.partition("[sun]")[0] + sun
+    scene = scene_of(text, *((gas,) if sun else ()), "body.host.phase_angle=90 deg")
+    host, gm = scene.body.host, scene.body.gm
+    path = fly(scene, Launch(0.0, 15.0, 2600.0, 30.0, 90.0)).path
+    assert path[-1, 0] > DAY / 2.0
+
+    def slopes(time, state):
+        angle = 0.5 * math.pi + host.rate * time
+        toward = host.distance * np.array([math.cos(angle), math.sin(angle), 0.0])
+        r, q = state[:3], toward - state[:3]
+        pull = host.gm * (q / np.linalg.norm(q) ** 3 - toward / host.distance**3)
+        return np.concatenate([state[3:], pull - gm * r / np.linalg.norm(r) ** 3])
+
+    begin, end = path[0], path[-1]
+    turned = begin[6:9] + host.rate * np.array([-begin[4], begin[3], 0.0])
+    found = solve_ivp(
+        slopes, (0.0, end[0]), [*begin[3:6], *turned], method="DOP853", rtol=1e-11, atol=1e-5
+    ).y[:3, -1]
+    c, s = math.cos(host.rate * end[0]), math.sin(host.rate * end[0])
+    expected = [c * found[0] + s * found[1], c * found[1] - s * found[0], found[2]]
+    # A frame that turned with the Sun would end 7,700 km from there.
+    assert np.linalg.norm(end[3:6] - expected) < 100.0
 
 
 def test_what_an_observer_learns_of_the_outer_radius():
