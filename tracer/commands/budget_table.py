@@ -21,7 +21,7 @@ PLAIN_WORDS = {
 
 OTHER_LOSS = Fate.OTHER_LOSS.label
 ROULETTE_WORDS = "dropped by roulette on balance, by chance"
-HOST_WORDS = "of all hit the host planet, counted above"
+HOST_WORDS = "of all hit the host planet, part of what is lost otherwise"
 
 
 def print_budget(product: xr.Dataset) -> None:

@@ -29,6 +29,9 @@ EMPHASIS = MappingProxyType(
     }
 )
 MEGABYTE = 1e6
+NEAR_PHASE = 15.0
+"""Degrees up to which a moon is near a phase that has a name."""
+
 _INSIDE = ("sun", "host", "surface")
 
 
@@ -145,8 +148,11 @@ def _host_rows(host: HostPreview | None) -> list[tuple[str, str]]:
 def _phase(angle: float) -> str:
     """Return the moon's phase by the host's `angle` [deg] from the Sun."""
     words = ("full moon", "last quarter", "new moon", "first quarter")
-    nearest = round(angle / 90.0)
-    return ("" if abs(angle - 90.0 * nearest) < 1.0 else "near ") + words[nearest % 4]
+    nearest, before = round(angle / 90.0), int(angle // 90.0)
+    off = abs(angle - 90.0 * nearest)
+    if off >= NEAR_PHASE:
+        return f"between {words[before % 4]} and {words[(before + 1) % 4]}"
+    return ("" if off < 1.0 else "near ") + words[nearest % 4]
 
 
 def _residence_rows(figures: Preview) -> list[tuple[str, str]]:

@@ -69,7 +69,7 @@ def command(
 ) -> None:
     """Add up column density, brightness and optical depth along lines of sight through a product.
 
-    column_lit_m2 is the part outside the body's umbra.
+    column_lit_m2 is the part outside the body's umbra; a host's is not counted.
 
     Outside the product's grid no gas is counted; outside_share is the part of
     the path through the traced space (up to the run's outer radius) out there.

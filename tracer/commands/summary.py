@@ -32,6 +32,8 @@ SHOWN = (
     "workers",
     "motion",
     "event_window",
+    "host",
+    "phase_angle",
     "scene_hash",
     "run_hash",
     "data_checksum",

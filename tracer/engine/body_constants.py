@@ -180,11 +180,16 @@ def _period(spec: RunSpec, table: HostTable, known: Body | None, distance: float
 
 def overridden_constants(spec: RunSpec) -> tuple[str, ...]:
     """Return the keys of `[body]` that replace a constant of the catalogue."""
-    if spec.body.name not in bodies():
+    known = bodies().get(spec.body.name)
+    if known is None:
         return ()
-    return tuple(
+    keys = [
         key for key in ("radius", "gm", "rotation_period", "orbit") if getattr(spec.body, key) is not None
-    )
+    ]
+    if (host := spec.body.host) is not None and known.host.orbit is not None:
+        of_host = ("gm", "radius", "distance", "period")
+        keys += [f"host.{key}" for key in of_host if getattr(host, key) is not None]
+    return tuple(keys)
 
 
 def _unknown_body(spec: RunSpec, missing: str) -> InputError:

@@ -114,12 +114,15 @@ def _light(scene: Scene) -> Light:
     """Return what integrated flights need; without a Sun the numbers are never used, but must have their types."""
     sun = scene.sun or _NO_SUN
     body, moon = scene.body, scene.moon
-    station = sun.station if moon is None or sun.orbit is None else moon.host_station
+    station = sun.station
+    if moon is not None:
+        moves = sun.orbit is not None
+        station = moon.host_station if moves else station._replace(orbital_rate=scene.frame_rate)
     forces = forces_of(
         gm=body.gm,
         radius=body.radius,
         outer_radius=scene.outer_radius,
-        station=station if moon is None else station._replace(orbital_rate=scene.frame_rate),
+        station=station,
         tide=sun.tide,
         push=sun.push,
         orbit=sun.orbit,

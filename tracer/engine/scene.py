@@ -142,11 +142,11 @@ class Scene(NamedTuple):
         """Angular rate [rad s-1] at which the Sun-fixed frame turns about +z; without Sun and host it does not.
 
         Beside a host it is the moon's about the host, so that the host keeps its place; where the moon moves it is the
-        host's about the Sun.
+        moon's about the Sun, as at the stated position.
         """
         if self.moon is not None:
             moves = self.sun is not None and self.sun.orbit is not None
-            return self.moon.host_station.orbital_rate if moves else self.moon.rate
+            return self.moon.station.orbital_rate if moves else self.moon.rate
         return 0.0 if self.sun is None else self.sun.station.orbital_rate
 
     @property

@@ -4,12 +4,14 @@ import math
 
 import pytest
 
+from tracer.engine.kernel_world import kernel_world
 from tracer.engine.preview import preview
 from tracer.engine.runspec.load import parse_run
 from tracer.engine.runspec.writing import run_file_text
 from tracer.engine.scene import build_scene
 from tracer.engine.single_flight import Launch, fly
 from tracer.errors import InputError
+from tracer.kernels.orbit import body_on_orbit
 from tracer.observe.run_facts import run_facts
 
 RUN = """
@@ -171,6 +173,12 @@ def test_a_moon_without_the_key_has_no_host():
     assert not any("brings them in" in note for note in check(MOON).notes)
 
 
+def test_check_says_which_constants_of_a_host_are_not_the_catalogues():
+    (note,) = (note for note in check(MOON, "body.host.gm=4e5 km3 s-2").notes if "gm" in note)
+    assert "host.gm" in note
+    assert not any("host.gm" in note or "host.distance" in note for note in check(MOON).notes)
+
+
 def test_check_shows_the_host():
     figures = check(MOON)
     host = figures.host
@@ -226,7 +234,19 @@ def test_locked_ground_does_not_turn_and_turning_ground_does():
     assert turning.ground_spin == pytest.approx(2.0 * math.pi / 18000.0 - rate, rel=1e-12)
     # Where the moon moves, the frame keeps to the Sun, and locked ground turns under it.
     moving = scene_of(TINE, "sun.motion=moving")
-    assert moving.ground_spin == pytest.approx(rate - moving.moon.host_station.orbital_rate, rel=1e-12)
+    assert moving.ground_spin == pytest.approx(rate - moving.moon.station.orbital_rate, rel=1e-12)
+
+
+@pytest.mark.parametrize("angle", [0.0, 50.0, 184.0])
+def test_velocities_are_seen_along_axes_that_do_not_turn_with_the_moon(angle):
+    """At the stated position the frame of a moon that moves turns as the Sun's direction does, seen from the moon."""
+    scene = scene_of(MOON, "sun.motion=moving", f"body.host.phase_angle={angle} deg")
+    world = kernel_world(scene)
+    seen = body_on_orbit(world.light.conditions.sky.forces, 0.0)
+    assert world.images.velocities.turning == pytest.approx(seen.turning, rel=1e-9)
+    # Which is not the host's rate about the Sun, by the Moon's 1 km/s over the Earth's 30.
+    slower = scene.moon.host_station.orbital_rate
+    assert (seen.turning > slower * 1.02) if angle < 90.0 else (seen.turning < slower * 0.98)
 
 
 def test_a_retrograde_moon_goes_the_other_way():

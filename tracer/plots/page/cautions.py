@@ -142,6 +142,11 @@ def _of_the_host(run: Table) -> Iterator[str]:
             "The moon's orbit is a circle, but for an epoch in the plane of its host's orbit about the Sun; the host "
             "has no atmosphere that bends light into its shadow, and no magnetosphere."
         )
+        if "sun" in run and table(run, "sun").get("motion", "stationary") == "stationary":
+            yield (
+                "The host keeps its place, and the Sun's direction turns along with it: the older an atom, the more "
+                "its sunlight and shadow came from elsewhere."
+            )
         return
     known = bodies().get(str(body.get("name")))
     if known is not None and known.host.orbit is not None:

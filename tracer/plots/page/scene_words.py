@@ -5,6 +5,7 @@ from math import nan
 from numbers import Real
 from typing import Any
 
+import numpy as np
 import xarray as xr
 
 from tracer.catalogue.photo_rates import photo_rates
@@ -45,6 +46,8 @@ def scene_words(product: xr.Dataset) -> Iterator[tuple[str, str]]:
         return
     radius = _known(product.attrs, "body_radius") or nan
     yield "Body and gas", _body(run, radius)
+    if "host" in product.attrs:
+        yield "Host", _host(run, product.attrs)
     yield "Sunlight", _sunlight(run, product.attrs, LINE in product.dims)
     for entry in entries(run, "release"):
         yield (
@@ -84,10 +87,31 @@ def _body(run: Table, radius: float) -> str:
         )
     elif gm == 0.0:
         words += ", without gravity"
+    host = table(table(run, "body"), "host")
+    if "host" in table(run, "body") and host.get("rotation", "locked") == "locked":
+        return words + ". The ground keeps the same face to the host."
     period = rotation_period(run)
     if period is None:
         return words + ". The ground does not turn."
     return words + f". The ground turns once in {duration(period)} among the stars."
+
+
+def _host(run: Table, attributes: Mapping[Any, Any]) -> str:
+    """Return what is near a moon; `host_position` [m] has three numbers, in a product as out of a file."""
+    words = f"{attributes['host']}, a sphere"
+    radius, angle = _known(attributes, "host_radius"), _known(attributes, "phase_angle")
+    place = np.atleast_1d(np.asarray(attributes.get("host_position", ()), dtype=np.float64))
+    if radius is not None:
+        words += f" of radius {number(radius / KILOMETRE)} km"
+    if place.size == 3:
+        words += f", {number(float(np.linalg.norm(place)) / KILOMETRE)} km away"
+    if angle is not None:
+        words += f", at a phase angle of {number(angle)} deg (0 full moon, 180 new moon, seen from the host)"
+    if _moves(run):
+        words += "; the moon goes round it while atoms fly, and this is its stated position"
+    else:
+        words += "; it keeps its place while atoms fly, in a frame that turns as the moon goes round it"
+    return words + ". It pulls, shades, and ends the flight of what hits it."
 
 
 def _sunlight(run: Table, attributes: Mapping[Any, Any], shines: bool) -> str:

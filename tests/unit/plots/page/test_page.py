@@ -302,6 +302,34 @@ def test_host_is_left_out_where_there_is_one(make_product, body, words, others):
     assert others not in told
 
 
+HOSTED = RUN.replace(
+    'name = "Harrow"',
+    'name = "Tine"\nhost = { gm = "9500 km3 s-2", radius = "1800 km", distance = "14000 km", phase_angle = "8 deg" }',
+)
+
+
+def test_a_host_is_told(make_product):
+    attributes = {"host": "the host of Tine", "host_radius": 1.8e6, "phase_angle": 8.0}
+    told = {}
+    for motion in ("stationary", "moving"):
+        text = HOSTED.replace('true_anomaly = "60 deg"', f'true_anomaly = "60 deg"\nmotion = "{motion}"')
+        product = make_product().assign_attrs(
+            run_file=text, host_position=np.array([8.4e6, 11.2e6, 0.0]), **attributes
+        )
+        told[motion] = plain(dict(scene_words(product))["Host"]), left_out_of(make_product, text)
+        assert "keeps the same face to the host" in dict(scene_words(product))["Body and gas"]
+    host, caution = told["stationary"]
+    assert host.startswith(
+        "the host of Tine, a sphere of radius 1800 km, 14,000 km away, at a phase angle of 8 deg"
+    )
+    assert "it keeps its place while atoms fly" in host
+    assert "the Sun's direction turns along with it" in caution
+    host, caution = told["moving"]
+    assert "the moon goes round it while atoms fly" in host
+    assert "the Sun's direction turns along with it" not in caution
+    assert "Host" not in dict(scene_words(make_product().assign_attrs(run_file=RUN)))
+
+
 def test_what_is_left_out_fits_the_ground(make_product):
     kept, bouncing, resting = (
         left_out_of(make_product, RUN.replace('sticking = { law = "step", below = "200 K" }', ground))
