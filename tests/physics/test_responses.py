@@ -53,7 +53,7 @@ radial_velocity = "8 km/s"
 [gas]
 """,
     1,
-).replace("particles_per_batch = 2000", "particles_per_batch = 400")
+).replace("particles_per_batch = 2000", "particles_per_batch = 800")
 MOVING = SUNLIT.replace(
     'distance = "0.35 au"\nradial_velocity = "8 km/s"', 'true_anomaly = "60 deg"\nmotion = "moving"'
 ).replace(

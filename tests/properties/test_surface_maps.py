@@ -20,7 +20,9 @@ def axes(draw, low: float, high: float, least: int) -> np.ndarray:
 @st.composite
 def maps(draw) -> SurfaceMap:
     latitudes, hours = draw(axes(-90.0, 90.0, 2)), draw(axes(0.0, 24.0, 2))
-    values = draw(arrays(float, (len(latitudes), len(hours)), elements=st.floats(0.0, 1e3)))
+    # Far from the smallest numbers there are, of which products have no digits left.
+    numbers = st.just(0.0) | st.floats(1e-250, 1e3)
+    values = draw(arrays(float, (len(latitudes), len(hours)), elements=numbers))
     return SurfaceMap(latitudes, hours, values)
 
 

@@ -20,6 +20,7 @@ from tracer.observe.fit.result import Comparison
 from tracer.observe.observationspec.observation import ObservationSpec, load_observation
 from tracer.plots.comparison import comparison
 from tracer.plots.saving import figure_bytes
+from tracer.product.layout import LINE
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
 from tracer.product.writing import check_output, save_bytes
@@ -112,6 +113,7 @@ def figures_of(found: Comparison) -> dict[str, Any]:
         "degrees_of_freedom": found.degrees_of_freedom,
         "probability": found.probability,
         "minus_two_log_likelihood": found.minus_two_log_likelihood,
+        "residuals": points.residual.tolist(),
         "correlations": {
             "names": list(found.correlations.names),
             "matrix": found.correlations.matrix.tolist(),
@@ -127,7 +129,6 @@ def figures_of(found: Comparison) -> dict[str, Any]:
             "upper_limit": points.upper.tolist(),
             "model": points.model.tolist(),
             "model_standard_error": points.model_error.tolist(),
-            "residuals": points.residual.tolist(),
             "parts": {name: part.tolist() for name, part in points.parts.items()},
             "background": points.background.tolist(),
         },
@@ -159,6 +160,10 @@ def _compared(products: Sequence[str], spec: ObservationSpec) -> Comparison:
         with open_product(product) as stored:
             names = _needed(stored, product, spec, profile)
             ds = stored[names]
+            lines = [str(name) for name in ds["line_name"].values] if LINE in ds.dims else []
+            if spec.profile.line in lines:
+                # Responses of the other lines would take as much memory again.
+                ds = ds.isel({LINE: [lines.index(spec.profile.line)]})
             load_all(ds, product)
             loaded.append((product, ds))
     return compared(loaded, spec)

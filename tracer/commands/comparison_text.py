@@ -5,11 +5,8 @@ from collections.abc import Iterator
 import typer
 
 from tracer.commands.tables import print_table
-from tracer.observe.fit.result import Comparison, Estimate
-from tracer.units import conversion_factor
+from tracer.observe.fit.result import Comparison, Estimate, as_read
 
-SHOWN_UNITS = {"temperature": ("K", "K"), "binding_energy": ("J", "eV"), "cutoff_energy": ("J", "eV")}
-"""Unit of a law's parameter, and the one it is read in."""
 HEADS = ("", "best", "68 %", "95 %", "unit")
 
 
@@ -30,15 +27,14 @@ def print_comparison(found: Comparison) -> None:
 
 def _rows(found: Comparison) -> Iterator[tuple[str, ...]]:
     for name, rate in found.rates.items():
-        yield _row(f"{name}: rate", rate, 1.0, "s-1")
+        yield _row(f"{name}: rate", rate, "s-1")
     for name, parameters in found.parameters.items():
         for key, estimate in parameters.items():
-            given, shown = SHOWN_UNITS[key]
-            yield _row(f"{name}: {key}", estimate, conversion_factor(given, shown) or 1.0, shown)
+            yield _row(f"{name}: {key}", *as_read(key, estimate))
     if found.background is not None:
-        yield _row("background", found.background, 1.0, found.points.unit)
+        yield _row("background", found.background, found.points.unit)
 
 
-def _row(label: str, estimate: Estimate, factor: float, unit: str) -> tuple[str, ...]:
-    best, low68, high68, low95, high95 = (f"{factor * end:.4g}" for end in estimate)
+def _row(label: str, estimate: Estimate, unit: str) -> tuple[str, ...]:
+    best, low68, high68, low95, high95 = (f"{end:.4g}" for end in estimate)
     return label, best, f"{low68} to {high68}", f"{low95} to {high95}", unit

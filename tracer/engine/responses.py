@@ -57,7 +57,7 @@ class ResponseWork(NamedTuple):
     """What a worker needs beside `Work`: `edges` (bins + 1,) [m s-1] and how many launches each bin gets in a batch.
 
     `counts` (release, 2 bins) has the falling and the rising half of each bin in turn; `world` and `layout` are the
-    run's with one layer of altitude, since density is not kept by bins.
+    run's with one layer of altitude and images not resolved by velocity, since neither is kept by bins.
     """
 
     edges: Floats
@@ -80,7 +80,9 @@ def response_work(scene: Scene, particles: int) -> ResponseWork | None:
     edges = _edges(scene, speeds)
     launches = max(particles, LEAST_PER_BIN * bins)
     counts = [_counts(edges, one, launches) for one in speeds]
-    flat = scene._replace(grid=_one_layer(scene.grid))
+    # Without velocities, for which the layout has no room: kernels write where the world says, and check no bounds.
+    planes = tuple(plane._replace(velocity_edges=None) for plane in scene.planes)
+    flat = scene._replace(grid=_one_layer(scene.grid), planes=planes)
     layout = make_layout(
         flat.grid, (), len(scene.lines), scene.desorption is not None, hosted=scene.moon is not None
     )

@@ -7,7 +7,7 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
-from tracer.observe.fit.result import Comparison, Points
+from tracer.observe.fit.result import Comparison, Points, as_read
 from tracer.plots.curves import Curve, draw_band, draw_legend, legend_height, release_curve
 from tracer.plots.field import Field
 from tracer.plots.log_range import log_range
@@ -167,10 +167,9 @@ def _caption(found: Comparison) -> str:
     words = [f"Rates with their 68 % ranges: {rates}."] if rates else []
     for name, parameters in found.parameters.items():
         for key, one in parameters.items():
-            unit = "K" if key == "temperature" else "J"
-            words.append(
-                f"{name}, {key.replace('_', ' ')}: {one.best:.4g} {unit} ({one.low68:.4g} to {one.high68:.4g})."
-            )
+            read, unit = as_read(key, one)
+            ends = f"{read.low68:.4g} to {read.high68:.4g}"
+            words.append(f"{name}, {key.replace('_', ' ')}: {read.best:.4g} {unit} ({ends}).")
     words.append("Band: one standard error of the Monte Carlo sampling.")
     return " ".join(words)
 

@@ -39,9 +39,8 @@ horizontal = ["-8 radii", "3 radii"]
 vertical = ["-3 radii", "3 radii"]
 pixels = [44, 24]
 [ensemble]
-particles_per_batch = 600
+particles_per_batch = 1200
 batches = 20
-emphasis = "far"
 """
 OBSERVATION = """
 title = "Tail of Harrow"
@@ -126,6 +125,8 @@ def test_rates_behind_a_profile_are_found(folder, capsys):
         sum(np.array(part) for part in points["parts"].values()), points["model"], rtol=1e-9
     )
     assert points["unit"] == "kR"
+    assert len(found["residuals"]) == len(POSITIONS)
+    assert max(map(abs, found["residuals"])) < 4.5
     assert found["correlations"]["names"] == ["desorption: rate", "vapour: rate"]
 
 

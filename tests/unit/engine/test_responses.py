@@ -43,6 +43,21 @@ def test_all_else_of_a_run_stays_the_same_to_the_last_bit(responding, small_prod
     }
 
 
+def test_bins_of_speed_and_of_velocity_do_not_disturb_each_other(responding, small_run_file):
+    velocity = [f"image[1].velocity.{key}" for key in ("from=-2 km/s", "to=2 km/s", "bins=3")]
+    resolved = run(load_run(small_run_file, velocity), workers=1)
+    both = run(load_run(small_run_file, [BINS, *velocity]), workers=1)
+    assert float(resolved.column_by_velocity_tail_from_north.sum()) > 0.0
+    for alone in (responding, resolved):
+        for name, variable in alone.variables.items():
+            assert both.variables[name].identical(variable), name
+    assert set(both.variables) == set(responding.variables) | set(resolved.variables)
+    # Kernels write where the world says, and check no bounds.
+    work = make_work(build_scene(load_run(small_run_file, [BINS, *velocity])), 1, 100)
+    assert work.world.images.velocities.resolved
+    assert not work.responses.world.images.velocities.resolved
+
+
 def test_scene_hash_knows_of_the_bins(responding, small_product):
     assert responding.attrs["scene_hash"] != small_product.attrs["scene_hash"]
 

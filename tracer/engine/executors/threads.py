@@ -27,7 +27,8 @@ def map_batches(
         while running:
             done, _ = wait(running, timeout=POLL_SECONDS, return_when=FIRST_COMPLETED)
             tick()
-            for future in done:
+            # In their order: the fewer must wait to be folded, and what is folded grows batch by batch.
+            for future in sorted(done, key=lambda future: running[future][0]):
                 place, task = running.pop(future)
                 yield task, future.result()
                 queue.finish(place)

@@ -19,7 +19,7 @@ from tracer.observe.fit.likelihood import Component, Likelihood, Measured, Model
 from tracer.observe.fit.pooling import check_alike, with_own_names
 from tracer.observe.fit.profile import SI_VALUES, Profile, read_profile
 from tracer.observe.fit.ranges import RISE_68, RISE_95, BetterFound, Scan, absences, ends, scan_of
-from tracer.observe.fit.result import Comparison, Estimate, Points
+from tracer.observe.fit.result import Comparison, Estimate, Points, as_read
 from tracer.observe.fit.sky import Scale, aperture_of, metres_in, spread_of, track_of, view_of
 from tracer.observe.fit.sources import Source
 from tracer.observe.fit.words import (
@@ -28,6 +28,7 @@ from tracer.observe.fit.words import (
     entangled_parameters,
     loud_model,
     quality,
+    thickness,
     told_apart,
     unit_slip,
 )
@@ -51,7 +52,6 @@ PASSES = 4
 SETTLED = 1e-3
 """Change of -2 ln L between passes that ends them."""
 MOST_RESTARTS = 5
-PARAMETER_UNITS = {"temperature": "K", "binding_energy": "J", "cutoff_energy": "J"}
 
 
 class Fitted(NamedTuple):
@@ -123,8 +123,15 @@ def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) 
         data.sigma[~data.upper],
         np.sum([one.rate * one.mean for one in chosen], axis=0)[~data.upper],
     )
+    for one in chosen:
+        if not one.mean.any():
+            raise InputError(
+                f'{one.product}: release "{one.name}" adds nothing to any point; leave it out of fit.releases'
+            )
     fitted = fit(data, components, slots)
-    words = [*([slip] if slip else []), *warnings]
+    rates = fitted.scan.likelihood.model(fitted.best).rates
+    thick = thickness(np.nansum([rate * one.depth for rate, one in zip(rates, chosen, strict=True)], axis=0))
+    words = [*([slip] if slip else []), *([thick] if thick else []), *warnings]
     return _result(spec, profile, [name for name, _ in products], how, fitted, words)
 
 
@@ -336,8 +343,9 @@ def _result(
     for slot, estimate in zip(slots, fitted.ranges, strict=True):
         if slot.key is not None and slot.component is not None:
             parameters.setdefault(names[slot.component], {})[slot.key] = estimate
-            ends_given = math.exp(slot.low), math.exp(slot.high)
-            found = at_range(f"'{slot.name}'", estimate, *ends_given, PARAMETER_UNITS[slot.key])
+            read, unit = as_read(slot.key, estimate)
+            low, high = (end * read.best / estimate.best for end in (math.exp(slot.low), math.exp(slot.high)))
+            found = at_range(f"'{slot.name}'", read, low, high, unit)
             words += [found] if found else []
     points = _points(spec, profile, likelihood, model)
     loud = loud_model(np.sqrt(np.diag(likelihood.model_covariance)), profile.sigma)

@@ -100,6 +100,8 @@ def _linear(likelihood: Likelihood, start: Floats) -> Floats:
     places = [n for n, slot in enumerate(likelihood.slots) if slot.key is None]
     start = start.copy()
     start[places] = 0.0
+    if not places:
+        return start
     measured = int((~likelihood.data.upper).sum())
     residual, slope = (part[:measured] for part in likelihood.residuals(start))
     # Slopes of the rates do not depend on the rates.

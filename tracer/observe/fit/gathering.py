@@ -16,7 +16,9 @@ from tracer.observe.fit.sky import Aperture, Spread, Track, View
 from tracer.observe.fit.smearing import smearing
 from tracer.observe.fit.sources import Response, Source
 from tracer.observe.gas import LEAST_REPLICATES, unknown_line
+from tracer.observe.optical_depth import optical_depth
 from tracer.observe.responses import speed_edges
+from tracer.observe.run_facts import line_facts, run_facts
 from tracer.product.layout import BOUNDS, LAUNCH_SPEED, LINE, ORDER, RELEASE, REPLICATE, REPLICATES
 
 Floats = NDArray[np.float64]
@@ -97,7 +99,7 @@ def gather(ds: xr.Dataset, product: str, line: str | None, optics: Optics, respo
             ds, line, optics.view, optics.track, optics.aperture, optics.spread
         )
         return Gathered(
-            _sources(ds, product, mean, replicates, [None] * len(mean)),
+            _sources(ds, product, mean, replicates, [None] * len(mean), np.full(mean.shape, np.nan)),
             "lines of sight through its grid",
             tuple(warnings),
         )
@@ -109,7 +111,12 @@ def gather(ds: xr.Dataset, product: str, line: str | None, optics: Optics, respo
         weights, _of_line(ds[name + REPLICATES], line, known).transpose(REPLICATE, RELEASE, ...).values
     )
     found = _responses(ds, image, line, known, weights) if responses else [None] * len(mean)
-    return Gathered(_sources(ds, product, mean, replicates, found), f"image {image.name}", tuple(warnings))
+    depth = np.zeros(mean.shape)
+    if line is not None:
+        columns = _through(weights, ds[f"column_{image.name}"].transpose(RELEASE, ...).values)
+        depth = _depths(ds, line, np.maximum(columns, 0.0))
+    sources = _sources(ds, product, mean, replicates, found, depth)
+    return Gathered(sources, f"image {image.name}", tuple(warnings))
 
 
 def _of_line(array: xr.DataArray, line: str | None, known: Sequence[str]) -> xr.DataArray:
@@ -126,7 +133,12 @@ def _through(weights: csr_array, images: NDArray[Any]) -> Floats:
 
 
 def _sources(
-    ds: xr.Dataset, product: str, mean: Floats, replicates: Floats, responses: Sequence[Response | None]
+    ds: xr.Dataset,
+    product: str,
+    mean: Floats,
+    replicates: Floats,
+    responses: Sequence[Response | None],
+    depths: Floats,
 ) -> tuple[Source, ...]:
     """Return the sources, from points (R, N) and (G, R, N) at the product's rates."""
     area = np.asarray(ds["cell_area"].values)
@@ -145,9 +157,18 @@ def _sources(
             batches=batches,
             speed=speeds.get(str(name), {}),
             response=responses[i],
+            depth=depths[i] / rates[i],
         )
         for i, name in enumerate(ds["release_name"].values)
     )
+
+
+def _depths(ds: xr.Dataset, line: str, columns: Floats) -> Floats:
+    """Return the optical depths (R, N) of columns (R, N) [m-2] at the centre of a line, by the run's laws of speed."""
+    facts = run_facts(str(ds.attrs.get("run_file", "")), float(ds.attrs["body_radius"]), None)
+    names = [str(name) for name in ds["release_name"].values]
+    speeds = np.array([facts.doppler_speeds.get(name, np.nan) for name in names])
+    return optical_depth(columns.T, line_facts(line, facts.species), speeds).T
 
 
 def _responses(

@@ -45,9 +45,10 @@ class Scan(NamedTuple):
 
 
 def scan_of(likelihood: Likelihood, best: Floats, value: float) -> Scan:
-    """Return the scan about the best parameters; those on an edge have no covariance: NaN."""
+    """Return the scan about the best parameters; those on an edge, or that do nothing, have no covariance: NaN."""
     _, slope = likelihood.residuals(best)
-    inside = ~on_edge(likelihood, best)
+    # The law of a release that is absent changes nothing.
+    inside = ~on_edge(likelihood, best) & (np.sum(slope**2, axis=0) > 0.0)
     covariance = np.full((len(best), len(best)), np.nan)
     normal = slope[:, inside].T @ slope[:, inside]
     scale = np.sqrt(np.maximum(np.diag(normal), np.finfo(float).tiny))

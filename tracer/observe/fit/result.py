@@ -6,7 +6,12 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.units import conversion_factor
+
 Floats = NDArray[np.float64]
+
+READING_UNITS = {"temperature": ("K", "K"), "binding_energy": ("J", "eV"), "cutoff_energy": ("J", "eV")}
+"""Unit of a law's parameter, and the one in which people read it."""
 
 
 class Estimate(NamedTuple):
@@ -17,6 +22,13 @@ class Estimate(NamedTuple):
     high68: float
     low95: float
     high95: float
+
+
+def as_read(key: str, estimate: Estimate) -> tuple[Estimate, str]:
+    """Return the estimate of a law's parameter in the unit in which people read it, and that unit."""
+    given, shown = READING_UNITS[key]
+    factor = conversion_factor(given, shown) or 1.0
+    return Estimate(*(factor * end for end in estimate)), shown
 
 
 class Points(NamedTuple):
@@ -42,7 +54,7 @@ class Points(NamedTuple):
 
 
 class Correlations(NamedTuple):
-    """Correlation `matrix` (P, P) of the free parameters `names`; NaN for one that lies on the edge of its range."""
+    """Correlation `matrix` (P, P) of the free parameters `names`; NaN for one on an edge, or that does nothing."""
 
     names: tuple[str, ...]
     matrix: Floats

@@ -26,7 +26,8 @@ class Source(NamedTuple):
 
     `rate` [s-1] of the product; `mean` (N,) and `replicates` (G, N) for one atom per second, in the unit of the points;
     `batches` (G,) that count into each replicate; `speed` is the run file's table of the law of launch speeds;
-    `response` is None where the product holds none.
+    `response` is None where the product holds none; `depth` (N,) is the optical depth at the line's centre for one atom
+    per second, NaN where it is not known.
     """
 
     name: str
@@ -37,6 +38,7 @@ class Source(NamedTuple):
     batches: Floats
     speed: dict[str, Any]
     response: Response | None
+    depth: Floats
 
 
 def covariance(replicates: Floats, batches: Floats) -> Floats:

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from tracer.observe.fit.likelihood import RATE
 from tracer.observe.fit.ranges import RISE_95, Scan
 from tracer.observe.fit.result import Correlations, Estimate
+from tracer.observe.optical_depth import THICK
 
 Floats = NDArray[np.float64]
 
@@ -84,6 +85,17 @@ def loud_model(model_error: Floats, sigma: Floats) -> str | None:
     return (
         f"the Monte Carlo error of the model is {ratio:.2g} times that of the measurement; it is counted, but known "
         "from few replicates: run with more particles"
+    )
+
+
+def thickness(depth: Floats) -> str | None:
+    """Return a warning where the gas is not thin to its own light, by optical depths (N,)."""
+    thick = int((depth > THICK).sum())
+    if not thick:
+        return None
+    return (
+        f"{thick} points have an optical depth above {THICK:g}, up to {depth.max():.2g}: the model scatters light "
+        "once and is too bright there, so that rates come out too low"
     )
 
 

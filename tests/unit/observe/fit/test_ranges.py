@@ -11,7 +11,7 @@ from tracer.observe.fit.comparison import fit
 from tracer.observe.fit.curves import Fixed, Parameter
 from tracer.observe.fit.likelihood import Component, Measured, slots_of
 from tracer.observe.fit.sources import covariance
-from tracer.observe.fit.words import at_range, correlations_of, quality, told_apart, unit_slip
+from tracer.observe.fit.words import at_range, correlations_of, quality, thickness, told_apart, unit_slip
 
 X = np.linspace(0.2, 8.0, 30)
 NO_ERROR = np.ones(2)
@@ -193,6 +193,22 @@ def test_unit_slip_is_named(quantity, factor, words):
     for own in (0.4, 2.5):
         assert words in unit_slip(quantity, factor * own * model, np.full(len(X), 100.0 * factor), model)
     assert unit_slip(quantity, 30.0 * model, np.full(len(X), 100.0), model) is None
+
+
+def test_thick_gas_is_named():
+    assert thickness(np.array([0.1, 0.3, np.nan])) is None
+    assert thickness(np.array([0.1, 0.5, 0.4])).startswith(
+        "2 points have an optical depth above 0.3, up to 0.5"
+    )
+
+
+def test_parameter_alone_is_fitted_at_a_held_rate():
+    value = 3e4 * shape(2.0)
+    data = measured(value, 500.0)
+    component = Component("a", Heated(0.5, 6.0), np.ones(10), 3e4)
+    found = fit(data, [component], slots_of(data, [component], background=False))
+    assert found.ranges[0].best == pytest.approx(2.0, rel=1e-4)
+    assert found.absences == {}
 
 
 def test_quality_is_said_plainly():
