@@ -8,7 +8,7 @@ from typing import Annotated, Any
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import JSON, OVERWRITE
+from tracer.commands.arguments import OVERWRITE
 from tracer.commands.comparison_text import print_comparison
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import json_text, print_json
@@ -51,7 +51,14 @@ def command(
             show_default=False,
         ),
     ] = None,
-    json: JSON = False,
+    json: Annotated[
+        bool,
+        typer.Option(
+            "--json",
+            help="Print the figures for machines: parameters of laws in SI units, rates in s-1, background and points "
+            "in the profile's units, which `points` names.",
+        ),
+    ] = False,
     overwrite: OVERWRITE = False,
 ) -> None:
     """Say what a measured profile tells of the sources of a product's gas: rates, law parameters, how sure.

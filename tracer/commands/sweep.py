@@ -113,10 +113,18 @@ def command(
     """Trace a run file over lists or ranges of its values and write one product with the swept dimensions."""
     if json and not check:
         raise InputError("--json: goes with --check")
+    if point is not None:
+        for option in (name for name, value in {"--check": check, "--resume": resume}.items() if value):
+            raise InputError(f"--point: cannot go with {option}, which is about all points of a sweep")
     if Path(sweep_file).suffix == ENDING or is_sweep(sweep_file):
         if point is None:
             raise InputError(
                 f"{sweep_file}: is a product, not a sweep file; --point N takes one point out of it"
+            )
+        tracing = {"--set": settings, "--workers": workers, "--cluster": cluster, "--log": log}
+        for option in (name for name, value in tracing.items() if value):
+            raise InputError(
+                f"{sweep_file}: is a product, which is traced already; {option} goes with a sweep file"
             )
         _take_out(sweep_file, point, output, overwrite)
         return
@@ -191,7 +199,11 @@ def _sweep(job: Job, cluster: str | None, workers: int | None, note: Note) -> No
 
 def _how_to_go_on(job: Job, kept: Kept) -> str:
     safe = [f"{kept.points} {'point' if kept.points == 1 else 'points'}"] if kept.points else []
-    safe += [f"{kept.batches} batches of point {kept.number}"] if kept.batches else []
+    safe += (
+        [f"{kept.batches} {'batch' if kept.batches == 1 else 'batches'} of point {kept.number}"]
+        if kept.batches
+        else []
+    )
     if not safe:
         return "No point is kept. Run the same command with --resume to start again"
     return f"{' and '.join(safe)} kept; go on with: {job.again}"

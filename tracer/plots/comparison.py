@@ -26,7 +26,7 @@ LEAST_PART = 0.1
 LIMIT_COLOUR, POINT_SIZE, CAP = "0.35", 2.2, 1.2
 FEWEST_SIGMAS = 3.5
 """Least height of the panel of residuals, in standard errors."""
-DATA, MODEL, BACKGROUND = "measured", "model", "background"
+DATA, LIMITS, MODEL, BACKGROUND = "measured", "upper limits", "model", "background"
 
 Floats = NDArray[np.float64]
 
@@ -44,7 +44,8 @@ def comparison(found: Comparison, width: Width = "full") -> Figure:
     points = found.points
     order = np.argsort(points.position, kind="stable")
     looks = _looks(found)
-    legend = legend_height(looks, width) + LEGEND_GAP
+    named = [*_point_looks(points), *looks]
+    legend = legend_height(named, width) + LEGEND_GAP
     heights = (HEIGHTS[width], RESIDUAL_HEIGHT)
     with styled():
         figure, box = framed_figure(
@@ -65,7 +66,7 @@ def comparison(found: Comparison, width: Width = "full") -> Figure:
             axes.set_axisbelow(True)
         upper.tick_params(labelbottom=False)
         lower.set_xlabel(f"{points.position_words} ({_unit_words(points.position_unit)})")
-        draw_legend(figure, looks, width, box.bottom + legend - LEGEND_GAP)
+        draw_legend(figure, named, width, box.bottom + legend - LEGEND_GAP)
     return figure
 
 
@@ -73,6 +74,11 @@ def _looks(found: Comparison) -> list[Curve]:
     parts = [release_curve(number, name) for number, name in enumerate(found.points.parts)]
     looks = [Curve(MODEL, "black", "-", 1.2), *parts]
     return [*looks, Curve(BACKGROUND, "0.5", (0.0, (2.0, 2.0)))] if found.points.background.any() else looks
+
+
+def _point_looks(points: Points) -> list[Curve]:
+    limits = [Curve(LIMITS, LIMIT_COLOUR, "none", marker="v")] if points.upper.any() else []
+    return [Curve(DATA, "black", "none", marker="o"), *limits]
 
 
 def _draw_profile(
@@ -107,7 +113,7 @@ def _draw_profile(
         color=LIMIT_COLOUR,
         markersize=3.0,
         zorder=4.0,
-        gid="upper limits",
+        gid=LIMITS,
     )
     axes.set_ylabel(f"{what.capitalize() if what.islower() else what} ({_unit_words(points.unit)})")
     if span is not None:
@@ -165,8 +171,6 @@ def _caption(found: Comparison) -> str:
             ends = f"{read.low68:.4g} to {read.high68:.4g}"
             words.append(f"{name}, {key.replace('_', ' ')}: {read.best:.4g} {unit} ({ends}).")
     words.append("Band: one standard error of the Monte Carlo sampling.")
-    if found.points.upper.any():
-        words.append("Triangles: upper limits.")
     return " ".join(words)
 
 

@@ -30,15 +30,17 @@ DASHES: tuple[Any, ...] = (
 """Told apart in grey print too; the next six releases take the colours again with other dashes."""
 LEGEND_ROW, HANDLE = 3.4, 9.0
 """Height of a row of the legend, width of a line in it with its distances [mm]."""
+MARKER_SIZE = 3.0
 
 
 class Curve(NamedTuple):
-    """A line of a figure: name, colour, dashes, width [pt]."""
+    """A line of a figure: name, colour, dashes, width [pt], and the marker of its points in the legend."""
 
     name: str
     colour: str
     dashes: Any
     width: float = 1.0
+    marker: str = ""
 
 
 def release_curve(number: int, name: str) -> Curve:
@@ -112,7 +114,14 @@ def draw_legend(figure: Figure, curves: Sequence[Curve], width: Width, top: floa
     figure.legend(
         handles=[
             Line2D(
-                [], [], color=one.colour, linestyle=one.dashes, linewidth=one.width, label=_label(one, room)
+                [],
+                [],
+                color=one.colour,
+                linestyle=one.dashes,
+                linewidth=one.width,
+                marker=one.marker,
+                markersize=MARKER_SIZE,
+                label=_label(one, room),
             )
             for one in curves
         ],

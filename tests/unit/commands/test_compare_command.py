@@ -230,11 +230,18 @@ def test_products_are_pooled_where_body_sun_and_gas_agree(folder, products, caps
         "vapour (other.nc)",
     ]
     assert any("cannot be told apart" in words or "not needed" in words for words in found["statements"])
+    assert not any("same seed" in words for words in found["warnings"])
     elsewhere = products[1].copy()
     elsewhere.attrs["run_file"] = elsewhere.attrs["run_file"].replace('"0.35 au"', '"0.45 au"')
     save_product(elsewhere, "far.nc")
     assert ending_of("model.nc", "far.nc", "seen.toml") == 2
     assert "far.nc: cannot be pooled with model.nc: they differ in sun.distance" in capsys.readouterr().err
+
+
+def test_pooled_products_of_one_seed_are_named(folder, products, capsys):
+    save_product(products[0], "again.nc")
+    assert ending_of("model.nc", "again.nc", "seen.toml") == 0
+    assert "warning: again.nc and model.nc have the same seed" in capsys.readouterr().out
 
 
 def test_view_without_an_image_is_seen_through_the_grid(folder, capsys):

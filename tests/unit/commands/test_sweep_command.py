@@ -178,6 +178,18 @@ def test_figures_of_a_sweep_are_drawn(folder, capsys, words):
             "--point: there is no point 7; there are 6, counted from 1",
         ),
         (
+            ("sweep", "swept.nc", "--point", "2", "--check"),
+            "--point: cannot go with --check, which is about all points of a sweep",
+        ),
+        (
+            ("sweep", "sweep.toml", "--point", "2", "--resume"),
+            "--point: cannot go with --resume, which is about all points of a sweep",
+        ),
+        (
+            ("sweep", "swept.nc", "--point", "2", "--set", "ensemble.seed=3"),
+            "swept.nc: is a product, which is traced already; --set goes with a sweep file",
+        ),
+        (
             ("sweep", "sweep.toml", "-o", "small.toml"),
             "small.toml: is read by this command; name another output",
         ),

@@ -60,7 +60,7 @@ def test_data_model_parts_and_residuals_are_drawn(width):
     np.testing.assert_array_equal(points.get_ydata(), [100.0, 50.0, 20.0, 8.0, 3.0])
     assert lower.get_ylim()[0] < -6.0 < 6.0 < lower.get_ylim()[1]
     labels = [text.get_text() for text in figure.legends[0].get_texts()]
-    assert labels == ["model", "desorption", r"\$vapour_%", "background"]
+    assert labels == ["measured", "model", "desorption", r"\$vapour_%", "background"]
     assert figure_bytes(figure, ".png", 60).startswith(b"\x89PNG")
 
 
@@ -70,4 +70,9 @@ def test_values_below_zero_and_upper_limits_are_drawn_on_a_straight_axis():
     assert upper.get_yscale() == "linear"
     limits = next(line for line in upper.lines if line.get_gid() == "upper limits")
     np.testing.assert_array_equal(limits.get_xdata(), [3.0, 4.0])
+    handles = figure.legends[0].legend_handles
+    assert [(one.get_label(), one.get_marker()) for one in handles[:2]] == [
+        ("measured", "o"),
+        ("upper limits", "v"),
+    ]
     assert figure_bytes(figure, ".svg").startswith(b"<?xml")

@@ -72,7 +72,9 @@ class Shape(NamedTuple):
     lines: Any
     surface_temperature: Any
     adsorbed_column: Any
+    host: Any
     replicates: Any
+    launch_speeds: Any
 
 
 def prepare_sweep(sweep: Sweep, workers: int) -> PreparedSweep:
@@ -140,7 +142,9 @@ def _shape(plan: Plan) -> Shape:
         lines=tuple(line.name for line in scene.lines),
         surface_temperature=scene.surface_temperature is not None,
         adsorbed_column=scene.desorption is not None,
+        host=scene.moon is not None,
         replicates=plan.replicates,
+        launch_speeds=() if plan.work.responses is None else tuple(plan.work.responses.edges.tolist()),
     )
 
 
@@ -151,8 +155,18 @@ _WORDS = {
     "lines": "other emission lines",
     "surface_temperature": "a surface temperature where others have none, or none where others have one",
     "adsorbed_column": 'another word for surface.adsorbed, which decides over the variable "adsorbed_column"',
+    "host": "a host where others have none, or none where others have one",
     "replicates": "another number of replicates",
+    "launch_speeds": "other bins of launch speed",
 }
+_RADII_HINT = "Lengths in radii follow the body's radius: give them in km, or make several sweeps"
+_HINTS = {
+    "grid": _RADII_HINT,
+    "images": _RADII_HINT,
+    "launch_speeds": "The bins of ensemble.speed_bins follow the run's laws and the escape speed: evaluate other laws "
+    "from the responses of one run, or set speed_bins = 0",
+}
+"""What to do instead, where it is not plain."""
 
 
 def _refuse_uncertain_replicates(sweep: Sweep, plan: Plan) -> None:
@@ -169,8 +183,7 @@ def _refuse_other_shape(sweep: Sweep, point: Point, first: Shape, shape: Shape) 
         if not _same(ours, theirs):
             raise InputError(
                 f"{sweep.file}: {SWEEP}: point {point.number} ({point.words}) has {_WORDS[name]} than point 1; the "
-                "points of one product share them. Lengths in radii follow the body's radius: give them in km, "
-                "or make several sweeps"
+                f"points of one product share them. {_HINTS.get(name, 'Make several sweeps')}"
             )
 
 

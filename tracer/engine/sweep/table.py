@@ -29,8 +29,10 @@ RUN.toml --set KEY=VALUE` makes it alone. All points have the run file's seed: w
 numbers their differences are usually known better than the error bars of each say. Where points must
 be independent vary `ensemble.seed` along with other keys, `paired`.
 
-Any key may vary that leaves grid, images, releases, emission lines and the number of replicates as
-they are, which the points of one product share. Numbers along an axis rise or fall throughout.
+Any key may vary that leaves grid, images, releases, emission lines, bins of launch speed and the
+number of replicates as they are, which the points of one product share. The bins of
+`ensemble.speed_bins` follow the laws of release and the escape speed. Numbers along an axis rise or
+fall throughout.
 """
 
 _NAME = re.compile(r"[a-z][a-z0-9_]{0,39}")

@@ -19,6 +19,8 @@ SAME_VIEW = 0.1
 """Angle [deg] within which an image's viewer stands where the observer does."""
 COLUMN = "column_"
 KILOMETRE = 1e3
+ROUNDING = 1e-12
+"""Part of an image's size below which a place in a message is 0."""
 
 MISSING_REFUSED, MISSING_NAMED = 0.2, 0.01
 """Share of a point's smeared light that may fall outside of the image before it is refused, or named."""
@@ -63,7 +65,7 @@ def image_of(ds: xr.Dataset, view: View, wanted: str | None, track: Track) -> Sk
     images = [SkyImage(name, (_edges(ds, name, 0), _edges(ds, name, 1))) for name in same]
     holding = [image for image in images if _holds(image, track)]
     if images and not holding:
-        raise InputError(_too_small(images[0], track))
+        raise InputError(too_small(images[0], track))
     return min(holding, key=lambda image: image.pixel) if holding else None
 
 
@@ -80,7 +82,7 @@ def check_smearing(
     words = []
     missing = 1.0 - np.asarray(weights.sum(axis=1)).ravel()
     row, most = int(np.argmax(missing)), float(missing.max())
-    text = f"image {image.name}: {100.0 * most:.2g} % of what row {row + 1} gathers lies outside of it"
+    text = f"image {image.name}: {100.0 * most:.3g} % of what row {row + 1} gathers lies outside of it"
     if most > MISSING_REFUSED:
         raise InputError(f"{text}; run with a larger image")
     if most > MISSING_NAMED:
@@ -122,11 +124,18 @@ def _holds(image: SkyImage, track: Track) -> bool:
     )
 
 
-def _too_small(image: SkyImage, track: Track) -> str:
+def too_small(image: SkyImage, track: Track) -> str:
+    """Return what is said of an image that does not hold all points of a track."""
     parts = []
     for words, axis, places in zip(("upwards", "rightwards"), image.edges, (track.v, track.h), strict=True):
-        parts.append(
-            f"{words} from {axis[0] / KILOMETRE:.6g} to {axis[-1] / KILOMETRE:.6g} km, the profile from "
-            f"{places.min() / KILOMETRE:.6g} to {places.max() / KILOMETRE:.6g} km"
+        ends = (axis[0], axis[-1], places.min(), places.max())
+        # A place on the axis is off it by the rounding of sine and cosine.
+        low, high, nearest, farthest = (
+            f"{_rounded(end, axis[-1] - axis[0]) / KILOMETRE:.6g}" for end in ends
         )
+        parts.append(f"{words} from {low} to {high} km, the profile from {nearest} to {farthest} km")
     return f"image {image.name} does not hold the profile: it reaches {'; '.join(parts)}. Is the positions' unit right?"
+
+
+def _rounded(place: float, size: float) -> float:
+    return 0.0 if abs(place) < ROUNDING * size else place

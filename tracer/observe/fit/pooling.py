@@ -7,6 +7,7 @@ import xarray as xr
 
 from tracer.errors import InputError
 from tracer.observe.fit.sources import Source
+from tracer.product.batch_ranges import SeedRange, parse_ranges
 from tracer.product.run_file import differing_keys
 
 SAME = ("body", "sun", "gas")
@@ -40,7 +41,28 @@ def check_alike(products: Sequence[tuple[str, xr.Dataset]]) -> list[str]:
             words.append(
                 f"{name} and {first_name} differ in {', '.join(named)}; one ground and domain would be physical"
             )
+        if _share_batches(first, ds):
+            words.append(
+                f"{name} and {first_name} have the same seed: their Monte Carlo errors are not independent, as the "
+                "ranges take them to be; run one of them with another ensemble.seed"
+            )
     return words
+
+
+def _share_batches(one: xr.Dataset, other: xr.Dataset) -> bool:
+    """Return whether two products launch with some of the same random numbers."""
+    return any(
+        a.seed == b.seed and a.first < b.stop and b.first < a.stop
+        for a in _batches(one)
+        for b in _batches(other)
+    )
+
+
+def _batches(ds: xr.Dataset) -> list[SeedRange]:
+    try:
+        return parse_ranges(str(ds.attrs.get("batch_ranges", "")))
+    except ValueError:
+        return []
 
 
 def with_own_names(sources: Sequence[Source]) -> list[Source]:

@@ -23,6 +23,8 @@ SI_VALUES = {"brightness": "R", "column": "m-2"}
 
 TRUTHS = {"true": True, "1": True, "1.0": True, "false": False, "0": False, "0.0": False, "": False}
 LEAST_POINTS = 2
+FAINTEST, BRIGHTEST = 1e-60, 1e60
+"""Sizes of values and standard errors, in the product's unit, between which squares of their ratios are numbers."""
 
 
 class Profile(NamedTuple):
@@ -80,6 +82,18 @@ def _profile(table: Table, given: ProfileTable) -> Profile:
     factor = _value_factor(unit, given, given.value)
     own = _stated_unit(table, given.sigma, VALUE_ENDINGS)
     sigma_factor = factor if own is None else _value_factor(own, given, given.sigma)
+    wanted = SI_VALUES[given.quantity]
+    _refuse(
+        np.abs(value) > BRIGHTEST / factor,
+        value,
+        given.value,
+        f"must be at most {BRIGHTEST:g} {wanted} in size",
+    )
+    for bad, words in (
+        (sigma > BRIGHTEST / sigma_factor, f"must be at most {BRIGHTEST:g} {wanted} in size"),
+        (sigma < FAINTEST / sigma_factor, f"must be at least {FAINTEST:g} {wanted}"),
+    ):
+        _refuse(bad, sigma, given.sigma, words)
     return Profile(position, value * factor, sigma * sigma_factor, upper, position_unit, unit, factor)
 
 

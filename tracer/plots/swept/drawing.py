@@ -87,7 +87,7 @@ def lines_figure(
     sweep: xr.Dataset, points: Points, lines: Sequence[Line], words: Words, width: Width
 ) -> Figure:
     """Return lines with error bars against what varies."""
-    looks = [line.look for line in lines if line.look.name]
+    looks = [line.look._replace(marker=line.marker) for line in lines if line.look.name]
     legend = legend_height(looks, width) + LEGEND_GAP if looks else 0.0
     with styled():
         figure, box = framed_figure(

@@ -223,6 +223,18 @@ MANY = axis("ensemble.seed", str(list(range(100))))
             "{file}: sweep: point 2 (replicates 2) has another number of replicates than point 1; ",
         ),
         (
+            HEAD + axis("ensemble.speed_bins", "[0, 8]"),
+            "{file}: sweep: point 2 (speed_bins 8) has other bins of launch speed than point 1; ",
+        ),
+        (
+            HEAD
+            + axis("release[1].speed.temperature", '["900 K", "3000 K"]')
+            + "[ensemble]\nspeed_bins = 8\n",
+            "{file}: sweep: point 2 (temperature 3000 K) has other bins of launch speed than point 1; the points of "
+            "one product share them. The bins of ensemble.speed_bins follow the run's laws and the escape speed: "
+            "evaluate other laws from the responses of one run, or set speed_bins = 0",
+        ),
+        (
             HEAD
             + STICKING
             + '[ensemble]\nreplicates = 30\nstop = { variable = "number_density", relative_error = 0.1, '
@@ -244,6 +256,11 @@ def test_what_cannot_be_swept_is_refused_with_the_reason(sweep_of, tmp_path, tex
     assert str(refusal.value)[: len(expected)] == expected
     if not expected.endswith((": ", "; ")):
         assert str(refusal.value) == expected
+
+
+def test_bins_of_launch_speed_that_all_points_share_are_swept(sweep_of):
+    prepared = prepare_sweep(sweep_of(HEAD + STICKING + "[ensemble]\nspeed_bins = 8\n"), 1)
+    assert len(prepared.points) == 2
 
 
 def test_notes_about_scenes_are_said_once(sweep_of):

@@ -77,6 +77,17 @@ def test_rows_may_fall_and_repeat_a_position(tmp_path):
     [
         ("2,10,1", "2,10,-1", "row 2, column sigma: -1 is not allowed; must be above 0"),
         ("2,10,1", "2,10,0", "row 2, column sigma: 0 is not allowed; must be above 0"),
+        (
+            "2,10,1",
+            "2,1e308,1",
+            "row 2, column brightness_kR: 1e+308 is not allowed; must be at most 1e+60 R in size",
+        ),
+        (
+            "2,10,1",
+            "2,10,1e300",
+            "row 2, column sigma: 1e+300 is not allowed; must be at most 1e+60 R in size",
+        ),
+        ("2,10,1", "2,10,1e-300", "row 2, column sigma: 1e-300 is not allowed; must be at least 1e-60 R"),
         ("2,10,1", "0.5,10,1", "row 2, column downtail_radii: 0.5 turns back behind 1"),
         ("2,10,1", "2,nan,1", "row 2, column brightness_kR: nan is not allowed; must be a finite number"),
         ("2,10,1", "2,,1", "row 2, column brightness_kR: missing"),

@@ -7,7 +7,7 @@ import pytest
 from scipy.special import erf
 
 from tracer.errors import InputError
-from tracer.observe.fit.images import SkyImage, check_smearing
+from tracer.observe.fit.images import SkyImage, check_smearing, too_small
 from tracer.observe.fit.sky import FWHM_OF_GAUSSIAN, Aperture, Spread, Track
 from tracer.observe.fit.smearing import smearing
 
@@ -100,3 +100,15 @@ def test_images_too_small_or_too_coarse_are_named_or_refused():
                 check_smearing(image, track(), weights, None, Spread(1.0, None))
         else:
             assert any(message in one for one in check_smearing(image, track(), weights, None, spread))
+
+
+def test_profile_beyond_an_image_is_told_in_round_numbers():
+    # cos(pi/2) is 6e-17: points on the axis lie off it by that.
+    angle = 0.5 * np.pi
+    places = 1e7 * np.arange(3.0)
+    edges = np.linspace(-1e7, 1e7, 11)
+    words = too_small(
+        SkyImage("tail", (edges, edges)), Track(places * np.cos(angle), places * np.sin(angle), angle)
+    )
+    assert "upwards from -10000 to 10000 km, the profile from 0 to 20000 km" in words
+    assert "rightwards from -10000 to 10000 km, the profile from 0 to 0 km" in words

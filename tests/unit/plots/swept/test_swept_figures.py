@@ -334,3 +334,11 @@ def test_what_a_sweep_does_not_have_is_refused(seasons, draw, message):
     with pytest.raises(InputError) as refusal:
         draw(seasons)
     assert str(refusal.value).startswith(message)
+
+
+def test_legend_shows_markers_that_grey_print_keeps(seasons):
+    handles = swept_ledger(seasons).legends[0].legend_handles
+    markers = [one.get_marker() for one in handles]
+    assert len(markers) > 1
+    assert len(set(markers)) == len(markers)
+    assert "" not in markers
