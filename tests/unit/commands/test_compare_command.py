@@ -238,6 +238,40 @@ def test_products_are_pooled_where_body_sun_and_gas_agree(folder, products, caps
     assert "far.nc: cannot be pooled with model.nc: they differ in sun.distance" in capsys.readouterr().err
 
 
+def test_known_background_is_added_to_the_model(folder, capsys):
+    assert ending_of("model.nc", "seen.toml", "--json") == 0
+    plain = json.loads(capsys.readouterr().out)
+    head, *rows = Path("seen.csv").read_text(encoding="utf-8").splitlines()
+    raised = [f"{x},{float(value) + 40.0!r},{sigma}" for x, value, sigma in (row.split(",") for row in rows)]
+    Path("seen.csv").write_text("\n".join([head, *raised]) + "\n", encoding="utf-8")
+    Path("seen.toml").write_text(OBSERVATION + '[background]\nlevel = "40000 R"\n', encoding="utf-8")
+    assert ending_of("model.nc", "seen.toml", "--json") == 0
+    found = json.loads(capsys.readouterr().out)
+    for name in RATES:
+        assert found["rates"][name]["best"] == pytest.approx(plain["rates"][name]["best"], rel=1e-6)
+    assert found["points"]["background"] == pytest.approx([40.0] * len(POSITIONS))
+    assert found["background"] is None
+
+
+def test_law_in_a_fit_is_the_one_that_evaluate_law_gives(folder, products, capsys):
+    """A response has two orders in each bin; without the second, points here are off by per cents."""
+    law = {"law": "sigmund-thompson", "binding_energy": "2 eV", "cutoff_energy": "100 eV"}
+    keys = 'law = "sigmund-thompson"\nbinding_energy = "2 eV"\ncutoff_energy = "100 eV"\nrate = "5e23 s-1"\n'
+    Path("seen.toml").write_text(OBSERVATION + f'[[fit.release]]\nname = "vapour"\n{keys}', encoding="utf-8")
+    assert ending_of("model.nc", "seen.toml", "--json") == 0
+    found = json.loads(capsys.readouterr().out)
+    image = tracer.evaluate_law(products[0], "vapour", law).brightness_tail.sel(line="na_d2").values
+    edges = tuple(
+        np.append(
+            products[0][f"tail_{axis}_bounds"].values[:, 0], products[0][f"tail_{axis}_bounds"].values[-1, 1]
+        )
+        for axis in ("vertical", "horizontal")
+    )
+    track = Track(-POSITIONS * RADIUS, np.zeros(len(POSITIONS)), np.pi)
+    weights = smearing(edges, track, Aperture(0.5 * RADIUS, RADIUS, np.pi), Spread(0.6 * RADIUS, None))
+    np.testing.assert_allclose(found["points"]["parts"]["vapour"], weights @ image.ravel() / 1e3, rtol=1e-6)
+
+
 def test_pooled_products_of_one_seed_are_named(folder, products, capsys):
     save_product(products[0], "again.nc")
     assert ending_of("model.nc", "again.nc", "seen.toml") == 0

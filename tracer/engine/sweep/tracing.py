@@ -258,7 +258,7 @@ def _attributes(prepared: PreparedSweep, products: Sequence[PointHead]) -> dict[
 
 
 class _OverallWatch:
-    """Tells of the whole sweep where a run tells of its point: what this session has to do and has done."""
+    """Tells of the whole sweep where a run tells of its point: what is left to do and what is done."""
 
     def __init__(self, watch: Watcher, waiting: Sequence[PreparedPoint], points: int) -> None:
         self._watch = watch
