@@ -121,6 +121,20 @@ MOVING_HOST_RUN = MOVING_RUN.replace("\n[sun]", HOST.replace('rotation = "turnin
 WARM_KERNELS = str(Path(__file__).with_name("warm_kernels.py"))
 
 
+CHECK_CONVENTIONS = str(Path(__file__).with_name("check_conventions.py"))
+
+
+@pytest.fixture(scope="session")
+def check_conventions() -> Callable[..., "subprocess.CompletedProcess[str]"]:
+    """Return what runs the CF checker on a file, by default leniently."""
+
+    def check(path: Path | str, criteria: str = "lenient") -> "subprocess.CompletedProcess[str]":
+        words = ["--test=cf:1.11", "--criteria", criteria, "-f", "text", str(path)]
+        return subprocess.run([sys.executable, CHECK_CONVENTIONS, *words], capture_output=True, text=True)
+
+    return check
+
+
 def pytest_sessionstart(session: pytest.Session) -> None:
     """Compile the kernels once, into the cache that all test processes share, before these processes start."""
     if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):

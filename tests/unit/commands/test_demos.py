@@ -1,7 +1,5 @@
 """The demos, with fewer particles than they ask for: each runs, keeps its budget and follows the CF conventions."""
 
-import subprocess
-import sys
 from pathlib import Path
 
 import pytest
@@ -75,13 +73,8 @@ def test_measured_tail_of_harrow_is_explained_by_its_sources():
 
 
 @pytest.mark.parametrize("demo", VARIABLES_OF_ALL)
-def test_demo_product_follows_the_cf_conventions(products, demo):
-    checker = str(Path(sys.executable).with_name("compliance-checker"))
-    done = subprocess.run(
-        [checker, "--test=cf:1.11", "--criteria", "lenient", str(products[demo])],
-        capture_output=True,
-        text=True,
-    )
+def test_demo_product_follows_the_cf_conventions(products, check_conventions, demo):
+    done = check_conventions(products[demo])
     assert done.returncode == 0, done.stdout
     assert "All tests passed!" in done.stdout
 

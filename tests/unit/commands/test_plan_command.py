@@ -94,12 +94,9 @@ def test_existing_table_is_kept(folder, capsys):
     assert (folder / "out.csv").read_text(encoding="utf-8") == "precious"
 
 
-def test_netcdf_table_follows_the_cf_conventions(folder):
+def test_netcdf_table_follows_the_cf_conventions(folder, check_conventions):
     assert ending_of("small.nc", "lantern-plan.toml", "-o", "out.nc") == 0
-    checker = str(Path(sys.executable).with_name("compliance-checker"))
-    done = subprocess.run(
-        [checker, "--test=cf:1.11", "--criteria", "lenient", "out.nc"], capture_output=True, text=True
-    )
+    done = check_conventions("out.nc")
     assert done.returncode == 0, done.stdout
     assert "All tests passed!" in done.stdout
 
