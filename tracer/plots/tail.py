@@ -171,7 +171,8 @@ def _choices(product: xr.Dataset, names: Sequence[str]) -> list[tuple[Curve, lis
 
 
 def _caption(strip: Strip, sky: Sky, errors: bool) -> str:
-    words = [f"Means within {strip.half_width:.3g} body radii of the axis."]
+    noun = "radius" if f"{strip.half_width:.3g}" == "1" else "radii"
+    words = [f"Means within {strip.half_width:.3g} body {noun} of the axis."]
     if abs(sky.toward_viewer[0]) > SLANTED:
         words.append("Distances are those in the sky, shorter than in space.")
     words.append(BAND_WORDS if errors else NO_REPLICATES)

@@ -23,7 +23,7 @@ LETTER_WIDTH = 0.55
 """Mean width of a letter of the font over its size, on the safe side."""
 BOLD = 1.08
 """Width of bold letters over that of others."""
-TITLE_LINES, SUBTITLE_LINES, CAPTION_LINES = 2, 2, 6
+TITLE_LINES, SUBTITLE_LINES, CAPTION_LINES = 2, 2, 8
 
 
 def plain(text: str) -> str:
