@@ -21,6 +21,8 @@ MARGIN = 2.0
 """Free space [mm] along the figure's rim."""
 LETTER_WIDTH = 0.55
 """Mean width of a letter of the font over its size, on the safe side."""
+WIDER, MANY = 0.64, 0.2
+"""That of a text of which at least such a share are digits and signs, which are wider."""
 BOLD = 1.08
 """Width of bold letters over that of others."""
 TITLE_LINES, SUBTITLE_LINES, CAPTION_LINES = 2, 2, 8
@@ -36,7 +38,9 @@ def broken(text: str, width: float, size: float, lines: int) -> list[str]:
 
     What does not fit is cut, and an ellipsis says so.
     """
-    letters = max(4, int(width / (LETTER_WIDTH * size * MILLIMETRES_PER_POINT)))
+    numbers = sum(one.isdigit() or one in "+=<>" for one in text)
+    letter = WIDER if numbers > MANY * len(text) else LETTER_WIDTH
+    letters = max(4, int(width / (letter * size * MILLIMETRES_PER_POINT)))
     return textwrap.wrap(text, letters, max_lines=lines, placeholder=" \N{HORIZONTAL ELLIPSIS}")
 
 
