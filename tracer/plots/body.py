@@ -1,6 +1,7 @@
 """The body as a viewer sees it: its disc, night side and terminator, and where the Sun stands."""
 
 from math import hypot
+from typing import NamedTuple
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -19,6 +20,25 @@ ON_AXIS = 1e-6
 """Sine of the angle between Sun and line of sight below which the Sun has no direction in the sky."""
 STEPS = 90
 POINTS_PER_INCH = 72.0
+
+
+class Disc(NamedTuple):
+    """A circle in a picture: its middle rightwards and upwards, and its radius, in body radii."""
+
+    right: float
+    up: float
+    radius: float
+
+    def meets(self, across: tuple[float, float], along: tuple[float, float]) -> bool:
+        """Return whether a part of the circle lies within these limits, rightwards and upwards."""
+        beyond = (
+            max(low - middle, middle - high, 0.0)
+            for middle, (low, high) in ((self.right, across), (self.up, along))
+        )
+        return hypot(*beyond) < self.radius
+
+
+BODY = Disc(0.0, 0.0, 1.0)
 
 
 def night_side(toward_viewer: Vector, up: Vector, right: Vector) -> NDArray[np.float64]:
@@ -52,23 +72,23 @@ def sun_in_sky(up: Vector, right: Vector) -> NDArray[np.float64]:
     return np.array([1.0, 0.0]) if length < ON_AXIS else np.array([x / length, y / length])
 
 
-def draw_body(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, radius: float = 1.0) -> None:
-    """Draw the solid body, day side light and night side dark, with radius 1 on the axes."""
-    outline = radius * night_side(toward_viewer, up, right)
-    axes.add_patch(Circle((0.0, 0.0), radius, facecolor=DAY_COLOUR, linewidth=0.0, zorder=3.0))
+def draw_body(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, disc: Disc = BODY) -> None:
+    """Draw a solid sphere, day side light and night side dark."""
+    middle, radius = (disc.right, disc.up), disc.radius
+    outline = middle + radius * night_side(toward_viewer, up, right)
+    axes.add_patch(Circle(middle, radius, facecolor=DAY_COLOUR, linewidth=0.0, zorder=3.0))
     axes.add_patch(Polygon(outline, facecolor=NIGHT_COLOUR, linewidth=0.0, gid=NIGHT, zorder=3.1))
-    axes.add_patch(
-        Circle((0.0, 0.0), radius, fill=False, edgecolor="black", linewidth=0.5, gid=LIMB, zorder=3.2)
-    )
+    axes.add_patch(Circle(middle, radius, fill=False, edgecolor="black", linewidth=0.5, gid=LIMB, zorder=3.2))
 
 
-def draw_disc(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector) -> None:
+def draw_disc(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, disc: Disc = BODY) -> None:
     """Draw limb and terminator over an image and darken the night side; what lies before the disc shows through."""
-    outline = night_side(toward_viewer, up, right)
+    middle = (disc.right, disc.up)
+    outline = middle + disc.radius * night_side(toward_viewer, up, right)
     axes.add_patch(Polygon(outline, facecolor="black", alpha=0.4, linewidth=0.0, gid=NIGHT, zorder=3.0))
     for patch in (
         Polygon(outline, fill=False, edgecolor="white", linewidth=0.4, zorder=3.1),
-        Circle((0.0, 0.0), 1.0, fill=False, edgecolor="white", linewidth=0.6, gid=LIMB, zorder=3.2),
+        Circle(middle, disc.radius, fill=False, edgecolor="white", linewidth=0.6, gid=LIMB, zorder=3.2),
     ):
         patch.set_path_effects([withStroke(linewidth=1.3, foreground="black")])
         axes.add_patch(patch)
@@ -84,7 +104,7 @@ def mark_sun(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, stret
     toward_sun /= hypot(*toward_sun)
     x, y = toward_sun
     # As near to the corner as neither the tip of the arrow nor the word behind its tail leaves the axes.
-    middle = np.array([min(-6.0 - 8.0 * x, -10.0 + 13.0 * x), min(-6.0 - 8.0 * y, -7.0 + 10.0 * y)])
+    middle = np.array([min(-6.0 - 8.0 * x, -10.0 + 14.0 * x), min(-6.0 - 8.0 * y, -7.0 + 10.5 * y)])
     arrow = axes.annotate(
         "",
         xy=(1.0, 1.0),
@@ -102,8 +122,8 @@ def mark_sun(axes: Axes, toward_viewer: Vector, up: Vector, right: Vector, stret
         zorder=5.0,
     )
     if arrow.arrow_patch is not None:
-        arrow.arrow_patch.set(color="black", path_effects=[withStroke(linewidth=2.2, foreground="white")])
-    _letters(axes, "Sun", middle - toward_sun * np.array([13.0, 10.0]), "center", "center")
+        arrow.arrow_patch.set(color="black", path_effects=[withStroke(linewidth=2.8, foreground="white")])
+    _letters(axes, "Sun", middle - toward_sun * np.array([14.0, 10.5]), "center", "center")
 
 
 def _letters(axes: Axes, words: str, points: NDArray[np.float64], across: str, along: str) -> None:
@@ -114,7 +134,7 @@ def _letters(axes: Axes, words: str, points: NDArray[np.float64], across: str, a
         ha=across,
         va=along,
         fontsize=SMALL_SIZE,
-        path_effects=[withStroke(linewidth=1.5, foreground="white")],
+        path_effects=[withStroke(linewidth=2.5, foreground="white")],
         zorder=5.0,
     )
 

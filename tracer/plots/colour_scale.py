@@ -16,8 +16,8 @@ from tracer.plots.style import Box
 MOST_DECADES = 7.0
 FEWEST_DECADES = 1.0
 ROUNDING = 1e-9
-ROOM_BELOW = 22.5
-"""Room [mm] that labels and colour bar need below a panel."""
+ROOM_BELOW, ROOM_FOR_LABELS = 22.5, 10.0
+"""Room [mm] that labels and colour bar need below a panel, and that of labels alone."""
 DROP, HEIGHT, SHORTEST, SHARE = 13.0, 2.5, 48.0, 0.7
 """Distance of the colour bar's lower edge below the panel, its height and least length [mm]; its length over the
 panel's width."""
@@ -42,7 +42,7 @@ def colour_span(fields: Sequence[Field]) -> Span | None:
     """Return the span of the significant values of the fields; None where nothing was counted.
 
     Where no value is significant it spans all; it never spans more than `MOST_DECADES` below the largest, and
-    never less than one.
+    never less than one, with the values in its middle.
     """
     values = np.concatenate([one.value[one.significant] for one in fields])
     if not values.size:
@@ -51,10 +51,14 @@ def colour_span(fields: Sequence[Field]) -> Span | None:
         return None
     top = math.log10(max(float(values.max()), SMALLEST))
     low = max(math.log10(max(float(values.min()), SMALLEST)), top - MOST_DECADES)
-    if top - low < FEWEST_DECADES:
-        low, top = math.floor(low), math.ceil(top)
-        top += low == top
+    room = 0.5 * max(FEWEST_DECADES - (top - low), 0.0)
+    low, top = low - room, top + room
     return Span(10.0**low, 10.0**top)
+
+
+def room_below(span: Span | None) -> float:
+    """Return the room [mm] below a panel; without a span there is no colour bar."""
+    return ROOM_FOR_LABELS if span is None else ROOM_BELOW
 
 
 def log_norm(span: Span) -> LogNorm:

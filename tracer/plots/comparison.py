@@ -12,8 +12,8 @@ from tracer.plots.curves import Curve, draw_band, draw_legend, legend_height, re
 from tracer.plots.field import Field
 from tracer.plots.log_range import log_range
 from tracer.plots.log_ticks import set_log_ticks
-from tracer.plots.style import WIDTHS, Box, Width, axes_in, styled
-from tracer.plots.words import framed_figure
+from tracer.plots.style import TEXT_SIZE, WIDTHS, Box, Width, axes_in, line_height, styled
+from tracer.plots.words import broken, framed_figure
 
 LEFT, RIGHT, TOP, BOTTOM, BETWEEN, LEGEND_GAP = 16.5, 4.0, 2.0, 10.0, 2.0, 1.0
 HEIGHTS: dict[Width, float] = {"column": 52.0, "full": 72.0}
@@ -46,16 +46,18 @@ def comparison(found: Comparison, width: Width = "full") -> Figure:
     looks = _looks(found)
     named = [*_point_looks(points), *looks]
     legend = legend_height(named, width) + LEGEND_GAP
-    heights = (HEIGHTS[width], RESIDUAL_HEIGHT)
+    heights, across = (HEIGHTS[width], RESIDUAL_HEIGHT), WIDTHS[width] - LEFT - RIGHT
+    label = broken(f"{points.position_words} ({_unit_words(points.position_unit)})", across, TEXT_SIZE, 2)
+    bottom = BOTTOM + (len(label) - 1) * line_height(TEXT_SIZE)
     with styled():
         figure, box = framed_figure(
             width,
-            TOP + sum(heights) + BETWEEN + BOTTOM + legend,
+            TOP + sum(heights) + BETWEEN + bottom + legend,
             found.title,
             _subtitle(found),
             _caption(found),
         )
-        foot, across = box.bottom + legend + BOTTOM, WIDTHS[width] - LEFT - RIGHT
+        foot = box.bottom + legend + bottom
         upper = axes_in(figure, Box(LEFT, foot + heights[1] + BETWEEN, across, heights[0]))
         lower = axes_in(figure, Box(LEFT, foot, across, heights[1]))
         _draw_profile(upper, points, order, looks, found.what)
@@ -65,7 +67,7 @@ def comparison(found: Comparison, width: Width = "full") -> Figure:
             axes.grid(color="0.92", linewidth=0.4)
             axes.set_axisbelow(True)
         upper.tick_params(labelbottom=False)
-        lower.set_xlabel(f"{points.position_words} ({_unit_words(points.position_unit)})")
+        lower.set_xlabel("\n".join(label))
         draw_legend(figure, named, width, box.bottom + legend - LEGEND_GAP)
     return figure
 

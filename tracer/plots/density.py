@@ -6,11 +6,13 @@ import xarray as xr
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Circle
+from matplotlib.patheffects import withStroke
 from matplotlib.ticker import MaxNLocator
 
 from tracer.plots.body import Vector, draw_body, mark_sun
-from tracer.plots.colour_scale import ROOM_BELOW, Span, bar_below, colour_span, draw_colour_bar
+from tracer.plots.colour_scale import Span, bar_below, colour_span, draw_colour_bar, room_below
 from tracer.plots.field import released_words, releases
+from tracer.plots.host import CUT_WORDS, HostDisc, host_in_plane, name_host
 from tracer.plots.lengths import MOST_STEPS, STEPS, body_radius, kilometres_across, kilometres_up
 from tracer.plots.planes import PlaneCells, draw_cells, equatorial, noon_midnight
 from tracer.plots.reading_units import PER_CUBIC_CENTIMETRE
@@ -83,15 +85,22 @@ def density(product: xr.Dataset, release: str | None = None, width: Width = "ful
     ]
     fields = [plane.field for plane in planes]
     span = colour_span(fields)
+    top = float(planes[0].radii[-1])
+    hosts = [
+        host_in_plane(product, radius, view.toward_viewer, view.up, view.right, top)
+        for view in (EQUATORIAL, NOON_MIDNIGHT)
+    ]
+    cut = [host.words(CUT_WORDS) for host in hosts if host]
     with styled():
         figure, panels, bar = _lay_out(
             width,
+            room_below(span),
             str(product.attrs.get("title", "")),
             f"Number density, {released_words(names)}",
-            note(fields, names),
+            " ".join([*filter(None, [note(fields, names)]), *cut[:1]]),
         )
-        for axes, plane, view in zip(panels, planes, (EQUATORIAL, NOON_MIDNIGHT), strict=True):
-            _draw_panel(axes, plane, view, span, radius)
+        for axes, plane, view, host in zip(panels, planes, (EQUATORIAL, NOON_MIDNIGHT), hosts, strict=True):
+            _draw_panel(axes, plane, view, span, host)
         _label(panels, width, radius)
         draw_colour_bar(
             axes_in(figure, bar), span, NUMBER_DENSITY_COLOURS, "Number density (cm$^{-3}$)", fields
@@ -99,13 +108,15 @@ def density(product: xr.Dataset, release: str | None = None, width: Width = "ful
     return figure
 
 
-def _lay_out(width: Width, title: str, subtitle: str, caption: str) -> tuple[Figure, list[Axes], Box]:
+def _lay_out(
+    width: Width, below: float, title: str, subtitle: str, caption: str
+) -> tuple[Figure, list[Axes], Box]:
     """Return the figure, its two panels and the colour bar's box: panels side by side, or stacked in a column."""
     beside = width == "full"
     side = (WIDTHS[width] - LEFT - RIGHT - (BETWEEN_BESIDE if beside else 0.0)) / (2.0 if beside else 1.0)
     stack = side if beside else 2.0 * side + BETWEEN_STACKED
-    figure, box = framed_figure(width, TOP + stack + ROOM_BELOW, title, subtitle, caption)
-    low = box.bottom + ROOM_BELOW
+    figure, box = framed_figure(width, TOP + stack + below, title, subtitle, caption)
+    low = box.bottom + below
     if beside:
         places = [Box(LEFT, low, side, side), Box(LEFT + side + BETWEEN_BESIDE, low, side, side)]
     else:
@@ -114,7 +125,7 @@ def _lay_out(width: Width, title: str, subtitle: str, caption: str) -> tuple[Fig
     return figure, [axes_in(figure, place) for place in places], bar
 
 
-def _draw_panel(axes: Axes, plane: PlaneCells, view: View, span: Span | None, radius: float) -> None:
+def _draw_panel(axes: Axes, plane: PlaneCells, view: View, span: Span | None, host: HostDisc | None) -> None:
     top = float(plane.radii[-1])
     axes.set(xlim=(-ROOM * top, ROOM * top), ylim=(-ROOM * top, ROOM * top), aspect="equal")
     for axis in (axes.xaxis, axes.yaxis):
@@ -122,6 +133,9 @@ def _draw_panel(axes: Axes, plane: PlaneCells, view: View, span: Span | None, ra
     draw_cells(axes, plane, span, NUMBER_DENSITY_COLOURS)
     axes.add_patch(Circle((0.0, 0.0), top, fill=False, edgecolor="0.4", linewidth=0.4))
     draw_body(axes, view.toward_viewer, view.up, view.right)
+    if host:
+        draw_body(axes, view.toward_viewer, view.up, view.right, host.disc)
+        name_host(axes, host)
     mark_sun(axes, view.toward_viewer, view.up, view.right)
     if span is None:
         say_nothing(axes)
@@ -135,6 +149,8 @@ def _draw_panel(axes: Axes, plane: PlaneCells, view: View, span: Span | None, ra
             va="center",
             fontsize=SMALL_SIZE,
             rotation=90.0 * (x != 0),
+            path_effects=[withStroke(linewidth=1.5, foreground="white")],
+            zorder=4.0,
         )
 
 

@@ -10,7 +10,7 @@ from matplotlib.patches import Rectangle
 from numpy.typing import NDArray
 
 from tracer.errors import InputError
-from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
+from tracer.plots.colour_scale import Span, bar_below, colour_span, draw_colour_bar, log_norm, room_below
 from tracer.plots.field import Field, released_words, releases, variable
 from tracer.plots.hatching import hatch_rectangles
 from tracer.plots.moving import event_note
@@ -165,19 +165,21 @@ def ground_map(
     hours, latitudes = edges(product, LOCAL_TIME), edges(product, LATITUDE)
     across = WIDTHS[width] - LEFT - RIGHT
     height = across * np.ptp(latitudes) / (TURN * DEGREES_PER_HOUR)
+    span = colour_span([field])
+    below = room_below(span)
     with styled():
         figure, box = framed_figure(
             width,
-            TOP + height + ROOM_BELOW,
+            TOP + height + below,
             str(product.attrs.get("title", "")),
             f"{what.words}, {released_words(names)}",
             " ".join(filter(None, [event_note(product, what.variable), note([field], names, what.nothing)])),
         )
-        panel = Box(LEFT, box.bottom + ROOM_BELOW, across, height)
-        _draw(axes_in(figure, panel), hours, latitudes, field, what.colours)
+        panel = Box(LEFT, box.bottom + below, across, height)
+        _draw(axes_in(figure, panel), hours, latitudes, field, span, what.colours)
         _draw_day_and_night(axes_in(figure, panel._replace(bottom=panel.bottom + height, height=STRIP)))
         bar = axes_in(figure, bar_below(panel))
-        draw_colour_bar(bar, colour_span([field]), what.colours, what.label, [field])
+        draw_colour_bar(bar, span, what.colours, what.label, [field])
     return figure
 
 
@@ -187,9 +189,13 @@ def vertical_column(product: xr.Dataset, release: str | None = None, width: Widt
 
 
 def _draw(
-    axes: Axes, hours: NDArray[np.float64], latitudes: NDArray[np.float64], field: Field, colours: str
+    axes: Axes,
+    hours: NDArray[np.float64],
+    latitudes: NDArray[np.float64],
+    field: Field,
+    span: Span | None,
+    colours: str,
 ) -> None:
-    span = colour_span([field])
     if span is None:
         say_nothing(axes)
     else:

@@ -7,10 +7,11 @@ from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
 from tracer.plots.body import Vector, draw_disc, mark_sun
-from tracer.plots.colour_scale import ROOM_BELOW, bar_below, colour_span, draw_colour_bar, log_norm
+from tracer.plots.colour_scale import Span, bar_below, colour_span, draw_colour_bar, log_norm, room_below
 from tracer.plots.error_contours import contour_words, draw_error_contours
 from tracer.plots.field import Field, released_words, releases, variable
 from tracer.plots.hatching import hatch_rectangles
+from tracer.plots.host import OUTLINED_WORDS, host_in_sky, outline_host
 from tracer.plots.lengths import body_radius, kilometres_across, kilometres_up
 from tracer.plots.planes import edges
 from tracer.plots.reading_units import KILORAYLEIGH, PER_SQUARE_CENTIMETRE
@@ -35,6 +36,8 @@ LEFT, RIGHT, TOP = 12.5, 12.5, 7.0
 LOWEST, HIGHEST, NARROWEST = 18.0, 120.0, 20.0
 """Limits of the panel's height and width [mm]; a flatter image is stretched upwards, a narrower one stands in the
 middle."""
+LEAST_STRETCH = 1.05
+"""Below this an image is as good as high enough, and stays true to scale."""
 ROOM_FOR_LABEL = 38.0
 """Height [mm] above which the label along the vertical fits on one line."""
 
@@ -95,39 +98,45 @@ def image(
     lit = "no atom counted" if line is None else "no atom in sunlight counted"
     shape = float(np.ptp(rows) / np.ptp(columns))
     stretch = _stretch(width, shape)
+    span = colour_span([field])
+    host = host_in_sky(product, radius, sky.up, sky.right, (columns[0], columns[-1]), (rows[0], rows[-1]))
     caption = [
         STRETCHED_WORDS.format(stretch=stretch) if stretch > 1.0 else "",
         note([field], names, lit),
         contour_words(field),
         DISC_WORDS.format(shape="Ellipse" if stretch > 1.0 else "Circle") if _has_disc(columns, rows) else "",
+        host.words(OUTLINED_WORDS) if host else "",
     ]
     with styled():
         figure, panel, bar = _lay_out(
             width,
             stretch * shape,
+            room_below(span),
             str(product.attrs.get("title", "")),
             f"{sky.title}: {what}, {released_words(names)}",
             " ".join(words for words in caption if words),
         )
         axes = axes_in(figure, panel)
         axes.set(xlim=(columns[0], columns[-1]), ylim=(rows[0], rows[-1]), aspect=stretch)
-        _draw(axes, columns, rows, field, colours)
+        _draw(axes, columns, rows, field, span, colours)
         draw_error_contours(axes, columns, rows, field)
         draw_disc(axes, sky.toward_viewer, sky.up, sky.right)
+        outline_host(axes, host, sky.toward_viewer, sky.up, sky.right)
         mark_sun(axes, sky.toward_viewer, sky.up, sky.right, stretch)
         axes.set_xlabel(f"{direction_words(sky.right, 'rightward in the sky')} (body radii)")
         between = " " if panel.height > ROOM_FOR_LABEL else "\n"
         axes.set_ylabel(f"{direction_words(sky.up, 'northward in the sky')}{between}(body radii)")
         kilometres_across(axes, radius)
         kilometres_up(axes, radius)
-        draw_colour_bar(axes_in(figure, bar), colour_span([field]), colours, label, [field])
+        draw_colour_bar(axes_in(figure, bar), span, colours, label, [field])
     return figure
 
 
 def _stretch(width: Width, shape: float) -> float:
     """Return by how much an image of this height over width is stretched upwards to fill the lowest panel."""
     _, room = _left_and_room(width, shape)
-    return max(1.0, LOWEST / (room * shape))
+    stretch = LOWEST / (room * shape)
+    return stretch if stretch > LEAST_STRETCH else 1.0
 
 
 def _left_and_room(width: Width, shape: float) -> tuple[float, float]:
@@ -136,17 +145,18 @@ def _left_and_room(width: Width, shape: float) -> tuple[float, float]:
     return left, WIDTHS[width] - left - RIGHT
 
 
-def _lay_out(width: Width, shape: float, title: str, subtitle: str, caption: str) -> tuple[Figure, Box, Box]:
+def _lay_out(
+    width: Width, shape: float, below: float, title: str, subtitle: str, caption: str
+) -> tuple[Figure, Box, Box]:
     left, room = _left_and_room(width, shape)
-    height = min(max(room * shape, LOWEST), HIGHEST)
+    height = min(room * shape, HIGHEST)
     across = min(max(height / shape, NARROWEST), room)
-    figure, box = framed_figure(width, TOP + height + ROOM_BELOW, title, subtitle, caption)
-    panel = Box(left + 0.5 * (room - across), box.bottom + ROOM_BELOW, across, height)
+    figure, box = framed_figure(width, TOP + height + below, title, subtitle, caption)
+    panel = Box(left + 0.5 * (room - across), box.bottom + below, across, height)
     return figure, panel, bar_below(panel)
 
 
-def _draw(axes: Axes, columns: Edges, rows: Edges, field: Field, colours: str) -> None:
-    span = colour_span([field])
+def _draw(axes: Axes, columns: Edges, rows: Edges, field: Field, span: Span | None, colours: str) -> None:
     if span is None:
         say_nothing(axes)
     else:

@@ -17,6 +17,8 @@ Scaling = Callable[[ArrayLike], NDArray[Any]]
 KILOMETRE = 1e3
 MOST_STEPS, STEPS = 7, (1, 2, 5, 10)
 """Number of steps between ticks, and the steps that read well."""
+FEWEST_TICKS = 3
+"""Ticks of the kilometres that there must be, though the steps become smaller."""
 
 
 def body_radius(product: xr.Dataset) -> float:
@@ -45,7 +47,7 @@ def kilometres_across(axes: Axes, radius: float) -> None:
     """Add kilometres along the top of axes whose horizontal is in body radii of `radius` [m]."""
     unit, name = kilometre_unit(radius * max(map(abs, axes.get_xlim())))
     top = axes.secondary_xaxis("top", functions=scaling(radius / unit))
-    top.xaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS))
+    top.xaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS, min_n_ticks=FEWEST_TICKS))
     top.set_xlabel(name, loc="right")
 
 
@@ -53,7 +55,7 @@ def kilometres_up(axes: Axes, radius: float) -> None:
     """Add kilometres along the right side of axes whose vertical is in body radii of `radius` [m]."""
     unit, name = kilometre_unit(radius * max(map(abs, axes.get_ylim())))
     side = axes.secondary_yaxis("right", functions=scaling(radius / unit))
-    side.yaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS))
+    side.yaxis.set_major_locator(MaxNLocator(MOST_STEPS, steps=STEPS, min_n_ticks=FEWEST_TICKS))
     side.set_ylabel(name, loc="top")
 
 

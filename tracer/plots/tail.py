@@ -60,6 +60,12 @@ class Strip(NamedTuple):
         """Middles of the bins that hold pixels, in body radii."""
         return np.asarray(0.5 * (self.edges[1:] + self.edges[:-1])[self.bins])
 
+    @property
+    def words(self) -> str:
+        """The half width, as a text says it."""
+        number = f"{self.half_width:.3g}"
+        return f"{number} body {'radius' if number == '1' else 'radii'}"
+
     def means(self, images: NDArray[np.float64]) -> NDArray[np.float64]:
         """Return the means (..., M) of images (..., rows, columns) over the pixels of each bin."""
         flat = images.reshape(*images.shape[:-2], -1)[..., self.pixels]
@@ -171,7 +177,7 @@ def _choices(product: xr.Dataset, names: Sequence[str]) -> list[tuple[Curve, lis
 
 
 def _caption(strip: Strip, sky: Sky, errors: bool) -> str:
-    words = [f"Means within {strip.half_width:.3g} body radii of the axis."]
+    words = [f"Means within {strip.words} of the axis."]
     if abs(sky.toward_viewer[0]) > SLANTED:
         words.append("Distances are those in the sky, shorter than in space.")
     words.append(BAND_WORDS if errors else NO_REPLICATES)

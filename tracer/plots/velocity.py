@@ -20,6 +20,7 @@ from tracer.plots.colour_scale import POINTS, ROOM_BELOW, bar_below
 from tracer.plots.curves import Curve, draw_band, draw_legend, legend_height, release_curve
 from tracer.plots.field import Field, listed, released_words, releases
 from tracer.plots.hatching import hatch_rectangles
+from tracer.plots.host import OUTLINED_WORDS, host_in_sky, outline_host
 from tracer.plots.image import direction_words
 from tracer.plots.lengths import STEPS, body_radius, kilometres_across, kilometres_up
 from tracer.plots.log_range import log_range
@@ -120,6 +121,8 @@ def velocity(
     words = [VELOCITY_WORDS, BAND_WORDS if errors else NO_REPLICATES, MAP_WORDS if errors else ""]
     vertical, horizontal = image_dimensions(sky.name)
     columns, rows = (edges(product, axis) / radius for axis in (horizontal, vertical))
+    host = host_in_sky(product, radius, sky.up, sky.right, (columns[0], columns[-1]), (rows[0], rows[-1]))
+    words.append(host.words(OUTLINED_WORDS) if host else "")
     with styled():
         figure, panel, places, legend = _lay_out(
             width,
@@ -138,6 +141,7 @@ def velocity(
             _draw_map(axes, columns, rows, one.value, one.colours, hatched)
             axes.set_title(one.title, loc="left", pad=3.0)
             draw_disc(axes, sky.toward_viewer, sky.up, sky.right)
+            outline_host(axes, host, sky.toward_viewer, sky.up, sky.right)
             mark_sun(axes, sky.toward_viewer, sky.up, sky.right)
             axes.set_xlabel(f"{direction_words(sky.right, 'rightward in the sky')} (body radii)")
             if width == "column" or one is maps[0]:

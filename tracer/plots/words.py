@@ -21,9 +21,12 @@ MARGIN = 2.0
 """Free space [mm] along the figure's rim."""
 LETTER_WIDTH = 0.55
 """Mean width of a letter of the font over its size, on the safe side."""
+WORDY, NUMBERED, MANY = 0.57, 0.64, 0.2
+"""That of captions, whose lines are long and may happen to be wide, and of those of which more than such a share are
+digits and signs."""
 BOLD = 1.08
 """Width of bold letters over that of others."""
-TITLE_LINES, SUBTITLE_LINES, CAPTION_LINES = 2, 2, 6
+TITLE_LINES, SUBTITLE_LINES, CAPTION_LINES = 2, 2, 8
 
 
 def plain(text: str) -> str:
@@ -48,7 +51,9 @@ def framed_figure(width: Width, height: float, title: str, subtitle: str, captio
         *((line, TITLE_SIZE, "bold") for line in broken(title, inner / BOLD, TITLE_SIZE, TITLE_LINES)),
         *((line, TEXT_SIZE, "normal") for line in broken(subtitle, inner, TEXT_SIZE, SUBTITLE_LINES)),
     ]
-    foot = broken(caption, inner, SMALL_SIZE, CAPTION_LINES)
+    numbers = sum(one.isdigit() or one in "+=<>" for one in caption)
+    letter = NUMBERED if numbers > MANY * len(caption) else WORDY
+    foot = broken(caption, inner * LETTER_WIDTH / letter, SMALL_SIZE, CAPTION_LINES)
     below = MARGIN + len(foot) * line_height(SMALL_SIZE)
     above = MARGIN + sum(line_height(size) for _, size, _ in head)
     figure = blank_figure(across, below + height + above)

@@ -6,6 +6,7 @@ import pytest
 from tracer.observe.fit.result import Comparison, Correlations, Estimate, Points
 from tracer.plots.comparison import DATA, comparison
 from tracer.plots.saving import figure_bytes
+from tracer.plots.style import styled
 
 RATE = Estimate(2e24, 1.9e24, 2.1e24, 1.8e24, 2.2e24)
 
@@ -44,6 +45,25 @@ def made(value, upper=(False,) * 5, background=0.0):
         statements=(),
         warnings=(),
     )
+
+
+@pytest.mark.parametrize("width", ["column", "full"])
+def test_long_words_and_many_numbers_stay_inside_the_figure(width):
+    found = made([100.0, 50.0, 20.0, 8.0, 3.0])
+    words = "Distance from the body's centre away from the Sun, in the sky"
+    rate = Estimate(2.034e24, 1.545e24, 2.587e24, 1e24, 3e24)
+    figure = comparison(
+        found._replace(
+            points=found.points._replace(position_words=words),
+            rates=dict.fromkeys(("photon desorption", "impact vapour", "sputtering"), rate),
+        ),
+        width,
+    )
+    assert figure.axes[1].get_xlabel().replace("\n", " ") == f"{words} (body radii)"
+    with styled():
+        figure.canvas.draw()
+        boxes = [text.get_window_extent() for text in (*figure.texts, figure.axes[1].xaxis.label)]
+    assert all(box.x0 >= 0.0 and box.x1 <= figure.bbox.width for box in boxes)
 
 
 @pytest.mark.parametrize("width", ["column", "full"])

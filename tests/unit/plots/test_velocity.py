@@ -5,9 +5,10 @@ import pytest
 
 from tracer.errors import InputError
 from tracer.plots.apertures import apertures
+from tracer.plots.curves import draw_legend, release_curve
 from tracer.plots.page.figure_list import product_figures
 from tracer.plots.sky import shining, sky_of
-from tracer.plots.style import styled
+from tracer.plots.style import WIDTHS, blank_figure, styled
 from tracer.plots.velocity import resolved_sky, velocity
 from tracer.plots.velocity_sums import profiles, velocities_by_pixel, velocities_in
 from tracer.product.layout import ratio_names
@@ -126,3 +127,12 @@ def shown(names):
         for line in ("na_d1", "na_d2")
         if f"figure-velocity-{image}-{line}" in names
     ]
+
+
+@pytest.mark.parametrize("width", ["column", "full"])
+def test_legend_has_room_for_numbers_with_their_errors(width):
+    minus, error = "\N{MINUS SIGN}", "\N{PLUS-MINUS SIGN}"
+    name = f"tail 1.5 to 3.4 radii: {minus}0.26 {error} 0.01, width 1.028 {error} 0.008 km/s"
+    figure = blank_figure(WIDTHS[width], 40.0)
+    draw_legend(figure, [release_curve(number, name) for number in range(4)], width, 30.0)
+    assert [text.get_text() for text in figure.legends[0].get_texts()] == 4 * [name]

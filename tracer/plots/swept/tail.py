@@ -20,6 +20,8 @@ from tracer.plots.swept.drawing import Words, family_lines, lines_figure, map_fi
 from tracer.plots.swept.per_point import of_each_point
 from tracer.plots.tail import Strip, strip_of
 
+PER_SQUARE = "\N{SUPERSCRIPT MINUS}\N{SUPERSCRIPT TWO}"
+"""In plain letters, since titles have no formulas."""
 FROM = 1.0
 """Distance downtail [body radii] where a tail begins: in front of it lies the body."""
 
@@ -68,9 +70,7 @@ def swept_tail(
         raise InputError(_why_no_length(source, points.numbers, strip, seen, names, level, unit))
     end = float(strip.middles[-1])
     at_least = lengths.value >= end
-    caption = (
-        f"Mean within {strip.half_width:.3g} body radii of the tail axis; distances are those in the sky."
-    )
+    caption = f"Mean within {strip.words} of the tail axis; distances are those in the sky."
     if at_least.any():
         caption += f" Arrows: still above the level at the image's end, {end:.4g} body radii."
     if not lengths.value.all():
@@ -78,7 +78,7 @@ def swept_tail(
     if not has_replicates(source, seen.variable):
         caption = f"{caption} {NO_REPLICATES}"
     words = Words(
-        f"{sky.title}: length of the tail down to {level:g} {unit.replace('-2', '$^{-2}$')}, {seen.what}, "
+        f"{sky.title}: length of the tail down to {level:g} {unit.replace('-2', PER_SQUARE)}, {seen.what}, "
         f"{released_words(names)}",
         "Downtail distance (body radii)",
         caption,

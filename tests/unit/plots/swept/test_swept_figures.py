@@ -176,6 +176,13 @@ def test_points_without_a_tail_leave_a_gap(tails):
     assert "Gaps: nowhere behind the body above the level." in _texts(figure)
 
 
+def test_title_of_a_tail_in_column_density_has_its_unit_in_plain_letters(tails):
+    words = _texts(swept_tail(tails, 0.1, IMAGE))
+    assert (
+        "length of the tail down to 0.1 cm\N{SUPERSCRIPT MINUS}\N{SUPERSCRIPT TWO}, column density" in words
+    )
+
+
 def _texts(figure) -> str:
     return " ".join(text.get_text() for text in figure.texts)
 
