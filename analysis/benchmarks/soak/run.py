@@ -14,6 +14,8 @@ RUN_FILE = ROOT / "runs" / "harrow-helium.toml"
 PARTICLES = 20_000
 SECONDS_BETWEEN_LOOKS = 5.0
 PROBE_BATCHES = 4
+MOST_GROWTH = 1.1
+"""Largest over smallest memory, after the first tenth of the time."""
 
 
 def resident_megabytes(pid: int) -> float:
@@ -63,8 +65,9 @@ def main() -> int:
         part = looks[number : number + tenth]
         print(f"from {number * SECONDS_BETWEEN_LOOKS:6.0f} s: {min(part):7.1f} to {max(part):7.1f} MB")
     settled = looks[len(looks) // 10 :]
-    print(f"after the first tenth: largest over smallest {max(settled) / min(settled):.3f}")
-    return 0
+    growth = max(settled) / min(settled)
+    print(f"after the first tenth: largest over smallest {growth:.3f} (asked: {MOST_GROWTH})")
+    return int(growth > MOST_GROWTH)
 
 
 if __name__ == "__main__":
