@@ -13,6 +13,7 @@ from concurrent import futures
 from contextlib import contextmanager, suppress
 from functools import partial
 from importlib import import_module
+from itertools import islice
 from threading import Event
 from time import monotonic
 from typing import Any, NamedTuple
@@ -39,8 +40,8 @@ IGNORE_CTRL_C = "import signal; signal.signal(signal.SIGINT, signal.SIG_IGN)"
 
 
 ENVIRONMENT = {"OMP_NUM_THREADS": 1, "MKL_NUM_THREADS": 1, "OPENBLAS_NUM_THREADS": 1}
-"""Of local workers, in place of the library's own: that has the C library give memory back as soon as it is free, so that
-every array of launches is met page by page by the system again: a quarter more time for a batch of arcs."""
+"""Of local workers, in place of the library's own. That has the C library give memory back as soon as it is free, so
+that the system maps every array of launches page by page again: a quarter more time for a batch of arcs."""
 
 
 class ForeignWorker(TracerError):
@@ -214,6 +215,15 @@ def _is_cancelled(key: str) -> bool:
     return False
 
 
+def most_under_way(workers: int) -> int:
+    """Return how many batches the scheduler may have at a time: one for each worker, and a few for those that finish.
+
+    It gives each to a worker at once, and there they wait. The more wait, the likelier one worker has several before it
+    and another none, while the window is full.
+    """
+    return workers + max(1, workers // 4)
+
+
 def keep(work: Work) -> Work:
     """Return `work`: as a task of its own it is sent once, and made again if its worker dies."""
     return work
@@ -246,7 +256,9 @@ def _map_batches(
 
     try:
         while True:
-            for place, task in queue.startable(window(census.workers(), len(work.scene.releases))):
+            present = census.workers()
+            startable = queue.startable(window(present, len(work.scene.releases)))
+            for place, task in islice(startable, max(0, most_under_way(present) - len(running))):
                 submit(place, task, 1)
             if not running:
                 return
