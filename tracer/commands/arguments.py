@@ -22,6 +22,20 @@ SETTINGS = Annotated[
 
 OVERWRITE = Annotated[bool, typer.Option("--overwrite", help="Replace an existing output.")]
 
+CLUSTER = Annotated[
+    str | None,
+    typer.Option(
+        metavar="WHERE",
+        help="Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json.",
+        show_default=False,
+    ),
+]
+
+LOG = Annotated[
+    str | None,
+    typer.Option(metavar="FILE", help="Append one JSON line an event.", show_default=False),
+]
+
 JSON = Annotated[
     bool, typer.Option("--json", help="Print the figures for machines: SI units, angles in degrees.")
 ]

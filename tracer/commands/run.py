@@ -7,7 +7,7 @@ from typing import Annotated, NamedTuple
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import RUN_FILE, SETTINGS
+from tracer.commands.arguments import CLUSTER, LOG, RUN_FILE, SETTINGS
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import refuse_inputs
@@ -73,18 +73,8 @@ def command(
             show_default=False,
         ),
     ] = None,
-    cluster: Annotated[
-        str | None,
-        typer.Option(
-            metavar="WHERE",
-            help="Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json.",
-            show_default=False,
-        ),
-    ] = None,
-    log: Annotated[
-        str | None,
-        typer.Option(metavar="FILE", help="Append one JSON line an event.", show_default=False),
-    ] = None,
+    cluster: CLUSTER = None,
+    log: LOG = None,
     settings: SETTINGS = None,
 ) -> None:
     """Trace a run file's particles and write the product (netCDF)."""

@@ -6,7 +6,7 @@ from typing import Annotated, NamedTuple
 
 import typer
 
-from tracer.commands.arguments import JSON, SETTINGS
+from tracer.commands.arguments import CLUSTER, JSON, LOG, SETTINGS
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import about, refuse_inputs
@@ -95,18 +95,8 @@ def command(
             "--resume", help="Go on from the finished points and checkpoints of an interrupted sweep."
         ),
     ] = False,
-    cluster: Annotated[
-        str | None,
-        typer.Option(
-            metavar="WHERE",
-            help="Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json.",
-            show_default=False,
-        ),
-    ] = None,
-    log: Annotated[
-        str | None,
-        typer.Option(metavar="FILE", help="Append one JSON line an event.", show_default=False),
-    ] = None,
+    cluster: CLUSTER = None,
+    log: LOG = None,
     settings: SETTINGS = None,
     json: JSON = False,
 ) -> None:

@@ -4,12 +4,10 @@ import os
 from collections.abc import Iterable
 from typing import Any
 
-from pydantic import ValidationError
-
 from tracer.engine.runspec.overrides import override
 from tracer.engine.runspec.run import RunSpec
 from tracer.errors import InputError
-from tracer.inputs.messages import validation_message
+from tracer.inputs.checking import checked
 from tracer.inputs.toml import file_text, tables
 
 SWEEP = "sweep"
@@ -81,7 +79,4 @@ def checked_run(given: dict[str, Any], file: str) -> RunSpec:
     InputError
         They cannot be used; the message says file, key, value and what is allowed.
     """
-    try:
-        return RunSpec.model_validate(given, context={"file": file})
-    except ValidationError as error:
-        raise InputError(f"{file}: {validation_message(error, RunSpec, given)}") from None
+    return checked(RunSpec, given, file)

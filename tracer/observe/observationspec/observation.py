@@ -2,10 +2,9 @@
 
 import os
 
-from pydantic import Field, ValidationError
+from pydantic import Field
 
-from tracer.errors import InputError
-from tracer.inputs.messages import validation_message
+from tracer.inputs.checking import checked
 from tracer.inputs.reference import reference_of
 from tracer.inputs.table import FileTable
 from tracer.inputs.text import Line
@@ -60,11 +59,7 @@ def parse_observation(text: str, file: str | os.PathLike[str]) -> ObservationSpe
         The text is no TOML or cannot be used.
     """
     name = os.fspath(file)
-    given = tables(text, name)
-    try:
-        return ObservationSpec.model_validate(given, context={"file": name})
-    except ValidationError as error:
-        raise InputError(f"{name}: {validation_message(error, ObservationSpec, given)}") from None
+    return checked(ObservationSpec, tables(text, name), name)
 
 
 def observation_reference() -> str:

@@ -2,10 +2,9 @@
 
 import os
 
-from pydantic import Field, PrivateAttr, ValidationError
+from pydantic import Field, PrivateAttr
 
-from tracer.errors import InputError
-from tracer.inputs.messages import validation_message
+from tracer.inputs.checking import checked
 from tracer.inputs.reference import reference_of
 from tracer.inputs.table import FileTable
 from tracer.inputs.text import Line
@@ -58,11 +57,7 @@ def parse_plan(text: str, file: str | os.PathLike[str]) -> PlanSpec:
         The text is no TOML or cannot be used.
     """
     name = os.fspath(file)
-    given = tables(text, name)
-    try:
-        return PlanSpec.model_validate(given, context={"file": name})
-    except ValidationError as error:
-        raise InputError(f"{name}: {validation_message(error, PlanSpec, given)}") from None
+    return checked(PlanSpec, tables(text, name), name)
 
 
 def plan_reference() -> str:
