@@ -2,8 +2,8 @@
 
 An atom launched at speed v contributes c(v) to a pixel, and a law p(v) the integral of p c. In each bin the product
 knows the mean R0 of c and its mean R1 weighted with x, which runs from -1 to 1 through the bin; the law has there the
-probability P and the mean M of x. With both taken as straight lines the pixel is rate times the sum of P R0 + 3 M R1.
-What is left out is the product of what bends in p and what bends in c, estimated from the second differences of R0.
+Legendre moments P, M and Q. A pixel is rate times the sum of P R0 + 3 M R1 + 5 Q R2, with R2 told from R0 and R1 of the
+bin and of the one beside it (`within_bins`). How far off that may be is part of the error.
 """
 
 from collections.abc import Iterator
@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from tracer.errors import InputError
 from tracer.observe.speed_laws import SpeedLawWords, speed_density
 from tracer.observe.spread import standard_error
+from tracer.observe.within_bins import BESIDE, Doubt, bend_weights, bias_bound, doubt_of
 from tracer.physics.release.laws import SpeedDensity
 from tracer.physics.release.speed_moments import legendre_moments
 from tracer.product.layout import (
@@ -24,6 +25,7 @@ from tracer.product.layout import (
     IMAGE,
     LAUNCH_SPEED,
     LINE,
+    ORDER,
     RELEASE,
     REPLICATE,
     REPLICATES,
@@ -43,7 +45,10 @@ MOST_BENT = 0.1
 LEAST_REPLICATES = 2
 
 BIAS = "_within_bin_bias"
-"""Ending of the variables that estimate what the bins' width does."""
+"""Ending of the variables that bound what the bins' width does."""
+
+SCATTER = "_monte_carlo_error"
+"""Ending of the variables with the part of the error that more launches make smaller."""
 
 RESPONSE = "_response"
 
@@ -53,15 +58,22 @@ class BinsDoNotCover(InputError):
 
 
 class _Functional(NamedTuple):
-    """What is made of a bin's two responses: `bins` used, and weights (bin, order) of the field and of its bias."""
+    """What is made of a bin's two responses.
+
+    `bins` in which the law has a part, and those beside; `field` (bins, order) are the weights of what is asked, for
+    `rate` [s-1]; `doubt`, `edges` and `escape` are what `bias_bound` needs.
+    """
 
     bins: slice
     field: Floats
-    bias: Floats
+    rate: float
+    doubt: Doubt
+    edges: Floats
+    escape: float
 
 
-def bin_moments(law: SpeedLawWords | SpeedDensity, edges: Floats, mass: float) -> Floats:
-    """Return (bins, 2): the probability P of each bin and the integral M of the density times x over it.
+def law_weights(law: SpeedLawWords | SpeedDensity, edges: Floats, mass: float, escape: float) -> Floats:
+    """Return (bins, 2): the weights of R0 and R1 of each bin in what an atom per second by a law leaves.
 
     Parameters
     ----------
@@ -71,6 +83,8 @@ def bin_moments(law: SpeedLawWords | SpeedDensity, edges: Floats, mass: float) -
         Edges of the bins [m s-1]: `launch_speed_bounds` of the product.
     mass : float
         Mass of an atom [kg]: the attribute `atom_mass` of the product.
+    escape : float
+        Escape speed [m s-1]: the attribute `escape_speed` of the product.
 
     Raises
     ------
@@ -81,9 +95,15 @@ def bin_moments(law: SpeedLawWords | SpeedDensity, edges: Floats, mass: float) -
 
     Notes
     -----
-    A pixel is rate times the sum over bins of P R0 + 3 M R1, see this module. It takes about a tenth of a millisecond.
+    It takes some tenths of a millisecond.
     """
-    return _moments(speed_density(law), edges, mass)[:, :2]
+    return _weights(_moments(speed_density(law), edges, mass), edges, escape)
+
+
+def law_doubt(law: SpeedLawWords | SpeedDensity, edges: Floats, mass: float) -> Doubt:
+    """Return what the means of the bins leave open of a law, for `bias_bound`; see `law_weights`."""
+    density = speed_density(law)
+    return doubt_of(density, edges, mass, _moments(density, edges, mass))
 
 
 def speed_edges(product: xr.Dataset) -> Floats:
@@ -124,10 +144,12 @@ def evaluate_law(product: xr.Dataset, release: str | int, law: SpeedLawWords | S
     Returns
     -------
     xarray.Dataset
-        `vertical_column`, `column_<image>` and `brightness_<image>` as in the product, of this release alone, each with
-        `_standard_error` and `_replicates`, and with `_within_bin_bias`, an estimate to second order of the excess
-        because the bins have a width: trust no pixel where it exceeds the error. A variable's `bias_over_error` is the
-        root of the sum of the squares of all its biases, less what their own scatter explains, over that of its errors.
+        `vertical_column`, `column_<image>` and `brightness_<image>` as in the product, of this release alone. Each has
+        `_replicates` and their `_monte_carlo_error`; `_within_bin_bias`, how far off the bins' width may have put it,
+        at least 0 (`tracer.observe.within_bins.bias_bound`); and `_standard_error`, the root of the sum of the squares
+        of these two, NaN where no atom was seen. Bins that no launch left anything from count as 0 in all of them. A
+        variable's `bias_over_error` is the root of the sum of the squares of all its biases over that of its errors:
+        near 1 the bins' width decides, and more `speed_bins` help more than more particles.
         The attribute `share_beyond_bins` is what of the law lies beyond the last bin.
 
     Raises
@@ -146,9 +168,8 @@ def evaluate_law(product: xr.Dataset, release: str | int, law: SpeedLawWords | S
             "the product keeps too few replicates for the errors of sums over bins; "
             "set [ensemble] replicates to 2 or more and run it again"
         )
-    moments = _moments(density, edges, mass)
     rate = release_rate(product, number)
-    functional = _functional(moments, edges, float(product.attrs["escape_speed"]), rate)
+    functional = _functional(density, edges, mass, float(product.attrs["escape_speed"]), rate)
     variables: dict[str, xr.DataArray] = {}
     for row in _response_rows(product):
         variables |= _evaluated(product, row, number, functional, batches)
@@ -197,36 +218,16 @@ def _moments(law: SpeedDensity, edges: Floats, mass: float) -> Floats:
     return moments
 
 
-def _functional(moments: Floats, edges: Floats, escape: float, rate: float) -> _Functional:
-    field = rate * moments[:, :2] * np.array([1.0, 3.0])
-    bias = np.zeros_like(field)
-    bias[:, 0] = rate * _bends(moments[:, 2], edges, escape)
-    used = np.flatnonzero((field != 0.0).any(axis=1) | (bias != 0.0).any(axis=1))
-    bins = slice(int(used[0]), int(used[-1]) + 1)
-    return _Functional(bins, field[bins], bias[bins])
+def _functional(density: SpeedDensity, edges: Floats, mass: float, escape: float, rate: float) -> _Functional:
+    doubt = law_doubt(density, edges, mass)
+    used = np.flatnonzero(doubt.moments.any(axis=1))
+    bins = slice(max(0, int(used[0]) - BESIDE), int(used[-1]) + 1 + BESIDE)
+    field = rate * _weights(doubt.moments, edges, escape)
+    return _Functional(bins, field[bins], rate, doubt, edges, escape)
 
 
-def _bends(second: Floats, edges: Floats, escape: float) -> Floats:
-    """Return the weights (bins,) of R0 in the leading term of what two straight lines have too much.
-
-    That is minus the sum over bins of Q w^2 c''/12: Q the second Legendre moment of the law, w the width, c'' the
-    second difference of R0, taken on one side of the escape speed alone. Where a law falls steeply through a bin that
-    is up to three times what is really wrong (own quadrature).
-    """
-    middles, widths = 0.5 * (edges[1:] + edges[:-1]), np.diff(edges)
-    weights = np.zeros(len(middles))
-    break_at = int(np.searchsorted(edges, escape * (1.0 - 1e-12)))
-    for first, stop in ((0, break_at), (break_at, len(middles))):
-        if stop - first < 3:
-            continue
-        for place in range(first, stop):
-            k = min(max(place, first + 1), stop - 2)
-            before, after = middles[k] - middles[k - 1], middles[k + 1] - middles[k]
-            size = -second[place] * widths[place] ** 2 / 6.0 / (before + after)
-            weights[k - 1] += size / before
-            weights[k] -= size * (1.0 / before + 1.0 / after)
-            weights[k + 1] += size / after
-    return weights
+def _weights(moments: Floats, edges: Floats, escape: float) -> Floats:
+    return np.asarray(moments[:, :2] * (1.0, 3.0) + bend_weights(moments[:, 2], edges, escape))
 
 
 def _response_rows(product: xr.Dataset) -> Iterator[Variable]:
@@ -243,18 +244,25 @@ def _evaluated(
     # An image may have the word in its name as well.
     name = row.name.replace(RESPONSE, "", 1)
     chosen = {RELEASE: number, LAUNCH_SPEED: functional.bins}
-    mean, bias = _summed(product[row.name].isel(chosen), functional)
-    groups = [
-        _summed(product[row.name + REPLICATES].isel({**chosen, REPLICATE: group}), functional)
-        for group in range(len(batches))
-    ]
-    replicates, biases = (np.array(one) for one in zip(*groups, strict=True))
-    error, scatter = (standard_error(np.moveaxis(one, 0, -1), batches) for one in (replicates, biases))
+    responses = _by_bin(product[row.name].isel(chosen))
+    mean = np.tensordot(functional.field, responses, 2)
+    bias = functional.rate * bias_bound(
+        functional.doubt, functional.edges, functional.escape, responses, functional.bins.start
+    )
+    of_group = product[row.name + REPLICATES]
+    replicates = np.array(
+        [
+            np.tensordot(functional.field, _by_bin(of_group.isel({**chosen, REPLICATE: group})), 2)
+            for group in range(len(batches))
+        ]
+    )
+    scatter = np.where(mean == 0.0, np.nan, standard_error(np.moveaxis(replicates, 0, -1), batches))
+    error = np.hypot(scatter, bias)
+    known = np.isfinite(error)
     # Relative to the largest error squares stay within a float's range.
-    largest = float(error.max()) or 1.0
-    excess = float(np.sum((bias / largest) ** 2 - (scatter / largest) ** 2))
-    ratio = float(np.sqrt(max(0.0, excess) / max(np.sum((error / largest) ** 2), 1.0)))
-    error = np.where(mean == 0.0, np.nan, error)
+    largest = float(error[known].max(initial=0.0)) or 1.0
+    sizes = [float(np.sum((one[known] / largest) ** 2)) for one in (bias, error)]
+    ratio = float(np.sqrt(sizes[0] / max(sizes[1], 1.0)))
     template = product[name].isel({RELEASE: [number]})
     place = template.dims.index(RELEASE)
 
@@ -268,16 +276,13 @@ def _evaluated(
     groups_of = like(mean, "means over groups of batches of ").expand_dims({REPLICATE: len(batches)})
     return {
         name: like(mean).assign_attrs(bias_over_error=ratio),
-        name + STANDARD_ERROR: like(error, "standard error of "),
+        name + STANDARD_ERROR: like(error, "standard error, with the bound of the within-bin bias, of "),
+        name + SCATTER: like(scatter, "Monte Carlo error of "),
         name + REPLICATES: groups_of.copy(data=np.expand_dims(replicates, 1 + place)),
-        name + BIAS: like(bias, "estimated excess, since bins of launch speed have a width, of "),
+        name + BIAS: like(bias, "bound of what is wrong, since bins of launch speed have a width, with "),
     }
 
 
-def _summed(response: xr.DataArray, functional: _Functional) -> tuple[Floats, Floats]:
-    """Return field and bias, summed over bins and orders."""
-    values = np.asarray(response.values, dtype=np.float64)
-    axis = response.dims.index(LAUNCH_SPEED)
-    field = np.tensordot(functional.field, values, axes=([0, 1], [axis, axis + 1]))
-    bias = np.tensordot(functional.bias, values, axes=([0, 1], [axis, axis + 1]))
-    return field, bias
+def _by_bin(response: xr.DataArray) -> Floats:
+    """Return a response with bins first and orders second."""
+    return np.asarray(response.transpose(LAUNCH_SPEED, ORDER, ...).values, dtype=np.float64)

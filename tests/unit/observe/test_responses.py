@@ -5,22 +5,24 @@ import pytest
 
 from tracer.constants import ATOMIC_MASS
 from tracer.errors import InputError
-from tracer.observe.responses import BinsDoNotCover, bin_moments, evaluate_law
+from tracer.observe.responses import BinsDoNotCover, evaluate_law, law_weights
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.single import Single
 from tracer.physics.release.speed_bins import speed_bin_edges
 
 SODIUM = 22.98977 * ATOMIC_MASS
-EDGES = speed_bin_edges(32, 3249.0, 1206.0, 3000.0)
+ESCAPE = 3249.0
+EDGES = speed_bin_edges(32, ESCAPE, 1206.0, 3000.0)
 
 
 def test_words_and_laws_mean_the_same():
-    theirs = bin_moments(MaxwellFlux(1200.0), EDGES, SODIUM)
+    theirs = law_weights(MaxwellFlux(1200.0), EDGES, SODIUM, ESCAPE)
     assert theirs.shape == (32, 2)
+    # A response that is 1 at all speeds gives the law's probability.
     assert theirs[:, 0].sum() == pytest.approx(1.0, abs=1e-9)
     for kelvin in (1200.0, "1200 K", 1200):
         words = {"law": "maxwell-flux", "temperature": kelvin}
-        assert np.array_equal(bin_moments(words, EDGES, SODIUM), theirs)
+        assert np.array_equal(law_weights(words, EDGES, SODIUM, ESCAPE), theirs)
 
 
 def test_every_law_of_the_run_file_with_a_density_can_be_evaluated():
@@ -30,7 +32,7 @@ def test_every_law_of_the_run_file_with_a_density_can_be_evaluated():
         {"law": "sigmund-thompson", "binding_energy": "2 eV", "cutoff_energy": "500 eV"},
         {"law": "table", "speed": speeds, "pdf": [0.0, 1.0, 0.0]},
     ):
-        assert bin_moments(words, EDGES, SODIUM)[:, 0].sum() == pytest.approx(1.0, abs=0.01)
+        assert law_weights(words, EDGES, SODIUM, ESCAPE)[:, 0].sum() == pytest.approx(1.0, abs=0.01)
 
 
 @pytest.mark.parametrize(
@@ -69,12 +71,12 @@ def test_every_law_of_the_run_file_with_a_density_can_be_evaluated():
 )
 def test_other_laws_are_refused(law, message):
     with pytest.raises(InputError, match=message):
-        bin_moments(law, EDGES, SODIUM)
+        law_weights(law, EDGES, SODIUM, ESCAPE)
 
 
 def test_laws_that_bins_do_not_cover_have_an_error_of_their_own():
     with pytest.raises(BinsDoNotCover):
-        bin_moments({"law": "maxwell-flux", "temperature": 1e6}, EDGES, SODIUM)
+        law_weights({"law": "maxwell-flux", "temperature": 1e6}, EDGES, SODIUM, ESCAPE)
 
 
 def test_product_without_responses_is_refused(small_product):

@@ -138,7 +138,7 @@ def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) 
 def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) -> Fitted:
     """Return the best parameters and their ranges.
 
-    The model's Monte Carlo error follows the rates: fits and errors take turns until they agree, and the ranges are
+    The model's own error follows the rates: fits and errors take turns until they agree, and the ranges are
     taken with the error at the best.
     """
     likelihood = Likelihood(data, components, slots)

@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Callable, Mapping
-from typing import NamedTuple, Protocol
+from typing import NamedTuple, Protocol, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,20 +10,20 @@ from scipy.interpolate import CubicSpline
 
 from tracer.errors import InputError
 from tracer.observe.fit.sources import Response
-from tracer.observe.responses import bin_moments
+from tracer.observe.responses import law_doubt, law_weights
+from tracer.observe.within_bins import bias_bound
 from tracer.physics.release.laws import SpeedDensity
 from tracer.physics.release.speed.maxwell_flux import MaxwellFlux
 from tracer.physics.release.speed.maxwell_gas import MaxwellGas
 from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
 
 Floats = NDArray[np.float64]
+Found = TypeVar("Found")
 
 NODES = 97
 """Values of a parameter at which a curve is computed; between them it is a cubic spline in the logarithm."""
 STEP = 1e-4
 """Step in the logarithm of a parameter for slopes of laws with several."""
-SLOPE_ORDER = 3.0
-"""Weight of a bin's slope beside its mean: the response is M0 + 3 M1 for moments of degree 0 and 1."""
 
 LAWS: Mapping[str, Callable[..., SpeedDensity]] = {
     "maxwell-flux": lambda temperature: MaxwellFlux(temperature),
@@ -53,6 +53,10 @@ class Curve(Protocol):
         """Return the replicates (G, N) at logarithms (K,)."""
         ...
 
+    def bias_at(self, logs: Floats) -> Floats:
+        """Return how far off (N,) the bins of launch speed may put the points at logarithms (K,), at least 0."""
+        ...
+
 
 class Fixed:
     """A profile without anything to fit but its rate."""
@@ -70,6 +74,10 @@ class Fixed:
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
         return self._replicates
+
+    def bias_at(self, logs: Floats) -> Floats:
+        """Return what `Curve.bias_at` does: nothing, since no bins are asked."""
+        return np.zeros_like(self._mean)
 
 
 class Lawful:
@@ -110,15 +118,24 @@ class Lawful:
         found = np.einsum("bo,gbon->gn", self._weights(logs), self._response.replicates, optimize=True)
         return np.asarray(found)
 
+    def bias_at(self, logs: Floats) -> Floats:
+        """Return what `Curve.bias_at` does."""
+        seen = self._response
+        doubt = self._asked(logs, lambda law: law_doubt(law, seen.edges, seen.mass))
+        return bias_bound(doubt, seen.edges, seen.escape, seen.means)
+
     def _mean(self, logs: Floats) -> Floats:
         return np.asarray(np.einsum("bo,bon->n", self._weights(logs), self._response.means, optimize=True))
 
     def _weights(self, logs: Floats) -> Floats:
+        seen = self._response
+        return self._asked(logs, lambda law: law_weights(law, seen.edges, seen.mass, seen.escape))
+
+    def _asked(self, logs: Floats, question: Callable[[SpeedDensity], Found]) -> Found:
+        """Return the answer for the law with these parameters; an error says what they were."""
         values = {p.key: math.exp(log) for p, log in zip(self.parameters, logs, strict=True)}
-        law = LAWS[self._law](**self._held, **values)
         try:
-            moments = bin_moments(law, self._response.edges, self._response.mass)
+            return question(LAWS[self._law](**self._held, **values))
         except InputError as error:
             words = ", ".join(f"{key} {value:.6g}" for key, value in {**self._held, **values}.items())
             raise InputError(f"{self._law} with {words}: {error}") from None
-        return np.asarray(moments * (1.0, SLOPE_ORDER))

@@ -186,8 +186,8 @@ def _responses(
     replicates = _through(
         weights, _of_line(ds[name + REPLICATES], line, known).transpose(REPLICATE, *order, ...).values
     )
-    mass = float(ds.attrs["atom_mass"])
-    return [Response(edges, mass, means[i], replicates[:, i]) for i in range(len(means))]
+    mass, escape = float(ds.attrs["atom_mass"]), float(ds.attrs["escape_speed"])
+    return [Response(edges, mass, escape, means[i], replicates[:, i]) for i in range(len(means))]
 
 
 def _run_file(ds: xr.Dataset) -> dict[str, Any]:

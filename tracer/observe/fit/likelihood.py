@@ -16,6 +16,8 @@ Floats = NDArray[np.float64]
 Truths = NDArray[np.bool_]
 
 TINY = 1e-150
+COMMON = 0.5
+"""Correlation between two points of what the bins of launch speed may put wrong in a model."""
 RATE = ": rate"
 """Ending of the names of rates among the free parameters."""
 
@@ -113,7 +115,7 @@ class Likelihood:
         self.take_model_error(None)
 
     def take_model_error(self, parameters: Floats | None) -> None:
-        """Count the Monte Carlo error of the model at these parameters from now on; none at all for None."""
+        """Count the error of the model at these parameters, Monte Carlo and bins, from now on; none at all for None."""
         data, keep = self.data, self._measured
         self.model_covariance = (
             np.zeros((len(data.value),) * 2) if parameters is None else self._model_covariance(parameters)
@@ -192,4 +194,9 @@ class Likelihood:
         whole = np.zeros((len(self.data.value),) * 2)
         for one, rate, log in zip(self.components, rates, logs, strict=True):
             whole += rate**2 * covariance(one.curve.replicates_at(log), one.batches)
+            # What the bins' width does has the law's part in common for all points, while the response's part changes
+            # from point to point by an unknown size and sign. As if common to all, a fit would take it away with one
+            # number; as if each point's own, many points would average it out. Half of it is either.
+            bias = rate * one.curve.bias_at(log)
+            whole += COMMON * np.outer(bias, bias) + (1.0 - COMMON) * np.diag(bias**2)
         return whole

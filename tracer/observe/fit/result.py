@@ -35,8 +35,8 @@ class Points(NamedTuple):
     """The profile and what the best fit makes of it, N points, values in `unit`.
 
     `position` in `position_unit`, which counts what `position_words` say; `sigma` of the measurement, `model_error` of
-    the Monte Carlo; `upper` marks upper limits; `residual` is (value - model) over both errors together; `parts` the
-    releases by name, `background` what was added to them.
+    the model, Monte Carlo and bins of launch speed; `upper` marks upper limits; `residual` is (value - model) over both
+    errors together; `parts` the releases by name, `background` what was added to them.
     """
 
     position: Floats

@@ -11,12 +11,13 @@ Floats = NDArray[np.float64]
 class Response(NamedTuple):
     """Points of a profile by launch speed: B bins between `edges` [m s-1], for one atom per second, of `mass` [kg].
 
-    `means` (B, 2, N) for an even number of launches in a bin, order 0, and their slope across it, order 1;
-    `replicates` (G, B, 2, N).
+    `escape` is the escape speed [m s-1]; `means` (B, 2, N) for an even number of launches in a bin, order 0, and
+    their slope across it, order 1; `replicates` (G, B, 2, N).
     """
 
     edges: Floats
     mass: float
+    escape: float
     means: Floats
     replicates: Floats
 

@@ -34,11 +34,24 @@ def legendre_moments(law: SpeedDensity, edges: Floats, mass: float, orders: int 
     ndarray, shape (n, orders)
         The first column holds the probabilities of the bins.
     """
-    kinks = law.kinks()
-    inside = kinks[(kinks > edges[0]) & (kinks < edges[-1])]
-    nodes = _nodes(np.ascontiguousarray(edges, np.float64).tobytes(), inside.tobytes(), orders)
+    nodes = _law_nodes(law, edges, orders)
     by_part = np.einsum("in,ink->ik", law.density(nodes.speeds, mass), nodes.weights)
     return np.asarray(np.add.reduceat(by_part, nodes.first, axis=0))
+
+
+def unsigned_rest(law: SpeedDensity, edges: Floats, mass: float, moments: Floats) -> Floats:
+    """Return the integrals (bins,) of the size of a law's density less the polynomial that has its `moments`.
+
+    `moments` (bins, orders) and the other arguments are those of `legendre_moments`.
+    """
+    orders = moments.shape[1]
+    nodes = _law_nodes(law, edges, orders)
+    place = np.repeat(np.arange(len(edges) - 1), np.diff(np.append(nodes.first, len(nodes.speeds))))
+    factors = (2.0 * np.arange(orders) + 1.0) * moments / np.diff(edges)[:, np.newaxis]
+    polynomials = nodes.weights / nodes.weights[:, :, :1]
+    rest = law.density(nodes.speeds, mass) - np.einsum("ik,ink->in", factors[place], polynomials)
+    by_part = np.sum(np.abs(rest) * nodes.weights[:, :, 0], axis=1)
+    return np.asarray(np.add.reduceat(by_part, nodes.first))
 
 
 class _Nodes(NamedTuple):
@@ -47,6 +60,12 @@ class _Nodes(NamedTuple):
     speeds: Floats
     weights: Floats
     first: NDArray[np.int64]
+
+
+def _law_nodes(law: SpeedDensity, edges: Floats, orders: int) -> _Nodes:
+    kinks = law.kinks()
+    inside = kinks[(kinks > edges[0]) & (kinks < edges[-1])]
+    return _nodes(np.ascontiguousarray(edges, np.float64).tobytes(), inside.tobytes(), orders)
 
 
 @lru_cache(maxsize=8)

@@ -7,11 +7,13 @@ import pytest
 from scipy.optimize import minimize_scalar
 from scipy.stats import norm
 
+from tracer.constants import ATOMIC_MASS, BOLTZMANN
 from tracer.observe.fit.comparison import fit
-from tracer.observe.fit.curves import Fixed, Parameter
+from tracer.observe.fit.curves import Fixed, Lawful, Parameter
 from tracer.observe.fit.likelihood import Component, Measured, slots_of
-from tracer.observe.fit.sources import covariance
+from tracer.observe.fit.sources import Response, covariance
 from tracer.observe.fit.words import at_range, correlations_of, quality, thickness, told_apart, unit_slip
+from tracer.physics.release.speed_bins import speed_bin_edges
 
 X = np.linspace(0.2, 8.0, 30)
 NO_ERROR = np.ones(2)
@@ -36,9 +38,9 @@ def measured(value, sigma, upper=None, level=0.0):
 class Heated:
     """A profile whose scale length is a parameter: exp(-x/T), for which all is known."""
 
-    def __init__(self, low, high, error=0.0):
+    def __init__(self, low, high, error=0.0, bias=0.0):
         self.parameters = (Parameter("temperature", low, high),)
-        self._error = error
+        self._error, self._bias = error, bias
 
     def at(self, logs):
         length = math.exp(logs[0])
@@ -48,6 +50,9 @@ class Heated:
     def replicates_at(self, logs):
         spread = self._error * np.sin(np.outer(np.arange(1.0, 11.0), X))
         return self.at(logs)[0] * (1.0 + spread - spread.mean(axis=0))
+
+    def bias_at(self, logs):
+        return self._bias * self.at(logs)[0]
 
 
 def test_rates_are_those_of_weighted_least_squares():
@@ -215,3 +220,42 @@ def test_quality_is_said_plainly():
     assert quality(200.0, 30, 1e-20).endswith("ranges do not count that and are too narrow")
     assert quality(30.0, 30, 0.5).endswith("the model fits")
     assert "better than chance" in quality(5.0, 30, 0.9999)
+
+
+def test_width_of_bins_counts_as_an_error_of_the_model():
+    value = 3e4 * shape(2.0)
+    data = measured(value, 0.02 * value)
+    unbiased, biased = (
+        fit(data, parts, slots_of(data, parts, background=False))
+        for parts in ([Component("a", Heated(0.5, 8.0, bias=bias), np.ones(10), None)] for bias in (0.0, 0.1))
+    )
+    assert np.abs(unbiased.scan.likelihood.model_covariance).max() < 1e-20 * value.max() ** 2
+    found = biased.scan.likelihood.model_covariance
+    # A tenth of the model at each point, half of its variance common to all.
+    model = biased.scan.likelihood.model(biased.best).total
+    np.testing.assert_allclose(np.sqrt(np.diag(found)), 0.1 * model, rtol=1e-3)
+    np.testing.assert_allclose(found[0, 1:], 0.5 * 0.01 * model[0] * model[1:], rtol=1e-3)
+    # What is common cannot be averaged out: the rate is known to no better than 0.1 sqrt(1/2).
+    rate = biased.ranges[0]
+    assert 0.07 < 0.5 * (rate.high68 - rate.low68) / rate.best < 0.14
+    assert 0.5 * (unbiased.ranges[0].high68 - unbiased.ranges[0].low68) / unbiased.ranges[0].best < 0.03
+
+
+def test_model_of_responses_knows_what_the_width_of_bins_does():
+    edges = speed_bin_edges(32, 3249.0, 1206.0, 3000.0)
+    middles, halves = 0.5 * (edges[1:] + edges[:-1]), 0.5 * np.diff(edges)
+    # Responses v and a step at 2 km/s: nothing is lost of the first.
+    step = np.clip((edges[1:] - 2000.0) / (2.0 * halves), 0.0, 1.0)
+    means = np.stack([np.stack([middles, halves / 3.0]), np.stack([step, step * (1.0 - step)])], axis=2)
+    means = means.transpose(1, 0, 2)
+    response = Response(edges, 22.98977 * ATOMIC_MASS, 3249.0, means, means[np.newaxis])
+    curve = Lawful(response, "maxwell-flux", {}, (Parameter("temperature", 600.0, 2400.0),))
+    value, bias = curve.at(np.log([1000.0]))[0], curve.bias_at(np.log([1000.0]))
+    assert bias[0] < 1e-9 * value[0]
+    assert 1e-4 < bias[1] / value[1] < 0.1
+    # Mean speed of a flux-weighted Maxwellian: (3/4) sqrt(2 pi k T/m), by integration.
+    mean_speed = 0.75 * math.sqrt(2.0 * math.pi * BOLTZMANN * 1000.0 / response.mass)
+    assert value[0] == pytest.approx(mean_speed, rel=1e-5)
+    # Share above v: (1 + mv2/2kT) exp(-mv2/2kT).
+    x = 0.5 * response.mass * 2000.0**2 / (BOLTZMANN * 1000.0)
+    assert abs(value[1] - (1.0 + x) * math.exp(-x)) < bias[1]
