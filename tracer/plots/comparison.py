@@ -32,7 +32,7 @@ Floats = NDArray[np.float64]
 
 
 def comparison(found: Comparison, width: Width = "full") -> Figure:
-    """Return the figure of a comparison: data, model with its Monte Carlo error, parts; and residuals below.
+    """Return the figure of a comparison: data, model with its error, parts; and residuals below.
 
     Parameters
     ----------
@@ -172,7 +172,7 @@ def _caption(found: Comparison) -> str:
             read, unit = as_read(key, one)
             ends = f"{read.low68:.4g} to {read.high68:.4g}"
             words.append(f"{name}, {key.replace('_', ' ')}: {read.best:.4g} {unit} ({ends}).")
-    words.append("Band: one standard error of the Monte Carlo sampling.")
+    words.append("Band: one standard error of the model, Monte Carlo and bins of launch speed.")
     return " ".join(words)
 
 

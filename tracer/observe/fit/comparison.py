@@ -39,7 +39,7 @@ from tracer.units import Quantity, conversion_factor, parse, quoted, si
 Floats = NDArray[np.float64]
 
 CAUTION = (
-    "Ranges count the profile's errors and the Monte Carlo error alone. An absolute rate hangs on g-values, "
+    "Ranges count the profile's errors and the model's own alone. An absolute rate hangs on g-values, "
     "photo-lifetimes and the calibration of the profile as well, which are often known to tens of per cent."
 )
 POSITION_WORDS = {

@@ -17,7 +17,7 @@ Floats = NDArray[np.float64]
 POOR, TOO_GOOD = 0.01, 0.99
 """Probabilities of a chi-square at or above the one found beyond which it is named."""
 LOUD_MODEL = 0.5
-"""Monte Carlo error over that of the measurement, root mean square over the points, which is named."""
+"""Error of the model over that of the measurement, root mean square over the points, which is named."""
 ALIKE = 0.9
 """Size of a correlation that is named."""
 SLIP = 100.0
@@ -78,13 +78,13 @@ def quality(chi_square: float, degrees: int, probability: float) -> str:
 
 
 def loud_model(model_error: Floats, sigma: Floats) -> str | None:
-    """Return a warning where the Monte Carlo error of the model is not small beside that of the measurement."""
+    """Return a warning where the own error of the model is not small beside that of the measurement."""
     ratio = float(np.sqrt(np.mean((model_error / sigma) ** 2)))
     if ratio <= LOUD_MODEL:
         return None
     return (
-        f"the Monte Carlo error of the model is {ratio:.2g} times that of the measurement; it is counted, but known "
-        "from few replicates: run with more particles"
+        f"the error of the model, Monte Carlo and bins, is {ratio:.2g} times that of the measurement; it is counted, "
+        "but known from few replicates: run with more particles"
     )
 
 
