@@ -13,6 +13,7 @@ ESCAPE = 3249.0
 EDGES = speed_bin_edges(32, ESCAPE, 1206.0, 3000.0)
 NODES, SHARES = np.polynomial.legendre.leggauss(200)
 MIDDLES, HALVES = 0.5 * (EDGES[1:] + EDGES[:-1]), 0.5 * np.diff(EDGES)
+X = np.linspace(-1.0, 1.0, 20)
 SPEEDS = MIDDLES[:, None] + HALVES[:, None] * NODES
 
 
@@ -138,9 +139,8 @@ def test_envelopes_hold_whatever_is_nowhere_below_zero():
             assert low * (1.0 - 3e-3) <= value <= high * (1.0 + 3e-3)
 
 
-def test_concave_envelope_is_the_highest_chord():
-    rng = np.random.default_rng(3)
-    values = rng.normal(size=20)
+@pytest.mark.parametrize("values", [np.random.default_rng(3).normal(size=20), X**2, -(X**2), 3.0 * X])
+def test_concave_envelope_is_the_highest_chord(values):
     found = _concave_envelope(values)
     for place in range(20):
         chords = [
@@ -148,7 +148,7 @@ def test_concave_envelope_is_the_highest_chord():
             for i in range(place + 1)
             for j in range(place, 20)
         ]
-        assert found[place] == pytest.approx(max(chords), rel=1e-12)
+        assert found[place] == pytest.approx(max(chords), rel=1e-12, abs=1e-12)
 
 
 def test_bin_without_neighbours_is_bounded_by_positivity():
