@@ -155,7 +155,7 @@ def evaluate_law(product: xr.Dataset, release: str | int, law: SpeedLawWords | S
     Raises
     ------
     BinsDoNotCover
-        See `bin_moments`.
+        See `law_weights`.
     InputError
         An unknown release, a law that cannot be evaluated, or a product without responses or replicates.
     """
