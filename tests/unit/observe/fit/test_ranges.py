@@ -7,8 +7,8 @@ import pytest
 from scipy.optimize import minimize_scalar
 from scipy.stats import norm
 
-from tracer.observe.fit.comparison import fit
 from tracer.observe.fit.curves import Fixed, Parameter
+from tracer.observe.fit.fitting import fit
 from tracer.observe.fit.likelihood import Component, Measured, slots_of
 from tracer.observe.fit.sources import covariance
 from tracer.observe.fit.words import at_range, correlations_of, quality, thickness, told_apart, unit_slip
@@ -44,6 +44,11 @@ class Heated:
         length = math.exp(logs[0])
         value = np.exp(-X / length)
         return value, (value * X / length)[np.newaxis]
+
+    def at_many(self, logs):
+        lengths = np.exp(logs)
+        values = np.exp(-X / lengths)
+        return values, (values * X / lengths)[:, np.newaxis]
 
     def replicates_at(self, logs):
         spread = self._error * np.sin(np.outer(np.arange(1.0, 11.0), X))
