@@ -27,6 +27,8 @@ Floats = NDArray[np.float64]
 PAIRS = 200
 """Pairs of opposite errors: a second or less of one core with two releases."""
 SEED = 20310930
+MOST_POINTS = 500
+"""Points of a profile above which its draws take too long: 0.4 s of one core with 36, 4 s with 288, four parameters."""
 LARGEST_ROOT, ROOTS = 4.0, 200
 """Rises are looked for at this many square roots, up to that of 16."""
 BLUR = 0.2
@@ -66,6 +68,10 @@ def _reason(scan: Scan) -> str:
         return "all that is free enters linearly, for which they are exact"
     if scan.likelihood.data.upper.any():
         return "in another draw an upper limit would be a measurement"
+    if len(scan.likelihood.data.value) > MOST_POINTS:
+        return (
+            f"profiles of more than {MOST_POINTS} points take too long to be fitted again hundreds of times"
+        )
     if several > 1:
         return "a law with several free parameters takes too long to be fitted again hundreds of times"
     return ""

@@ -201,7 +201,15 @@ def test_what_is_not_calibrated_says_why():
     x = np.linspace(0.2, 8.0, 20)
     rates = fitted(Fixed(np.exp(-x), np.tile(np.exp(-x), (3, 1))), 9.0 * np.exp(-x))
     limits = fitted(decay(), 9.0 * np.exp(-x / 2.0) + 0.1, upper=True)
-    for found, words in ((rates, "enters linearly"), (limits, "an upper limit would be a measurement")):
+    wide = np.ones((1, 501)) / math.sqrt(501.0)
+    many = fitted(
+        Bent(lambda logs: 9.0 * logs * wide, lambda logs: 9.0 * wide + 0.0 * logs, 0.1, 3.0), wide[0], 1.0
+    )
+    for found, words in (
+        (rates, "enters linearly"),
+        (limits, "an upper limit would be a measurement"),
+        (many, "profiles of more than 500 points"),
+    ):
         assert found.calibration.draws == 0
         np.testing.assert_array_equal(found.calibration.rises, np.tile(WILKS, (len(found.ranges), 1)))
         assert words in range_words(found.calibration, ["a: rate", "a: temperature"])
