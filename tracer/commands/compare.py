@@ -66,7 +66,8 @@ def command(
     The product's image goes through the same slit and seeing as the profile.
     Rates are fitted by weighted least squares, none below 0; parameters of
     launch-speed laws by profile likelihood, from a product made with
-    ensemble.speed_bins. Ranges hold 68 and 95 %.
+    ensemble.speed_bins. Ranges hold 68 and 95 %: where law parameters are
+    fitted that is measured on profiles drawn about the best fit.
 
     An absolute rate hangs on g-values, photo-lifetimes and the profile's
     calibration as well, which the ranges do not count.
@@ -113,6 +114,12 @@ def figures_of(found: Comparison) -> dict[str, Any]:
         "degrees_of_freedom": found.degrees_of_freedom,
         "probability": found.probability,
         "minus_two_log_likelihood": found.minus_two_log_likelihood,
+        "range_ends": {
+            "calibrated": found.range_ends.draws > 0,
+            "draws": found.range_ends.draws,
+            "seed": found.range_ends.seed,
+            "rises": {name: list(rises) for name, rises in found.range_ends.rises.items()},
+        },
         "residuals": points.residual.tolist(),
         "correlations": {
             "names": list(found.correlations.names),

@@ -127,6 +127,9 @@ def test_rates_behind_a_profile_are_found(folder, capsys):
     assert points["unit"] == "kR"
     assert len(found["residuals"]) == len(POSITIONS)
     assert max(map(abs, found["residuals"])) < 4.5
+    assert not found["range_ends"]["calibrated"]
+    assert found["range_ends"]["rises"]["vapour: rate"] == pytest.approx([1.0, 3.8415], rel=1e-4)
+    assert any("not calibrated: all that is free enters linearly" in words for words in found["statements"])
     assert found["correlations"]["names"] == ["desorption: rate", "vapour: rate"]
 
 
@@ -138,6 +141,11 @@ def test_temperature_is_fitted_from_responses(folder, capsys):
     estimate = found["parameters"]["vapour"]["temperature"]
     assert 1500.0 <= estimate["low95"] < 4000.0 < estimate["high95"] <= 10000.0
     assert found["degrees_of_freedom"] == len(POSITIONS) - 3
+    ends = found["range_ends"]
+    assert ends["calibrated"]
+    assert ends["draws"] == 400
+    assert sorted(ends["rises"]) == ["desorption: rate", "vapour: rate", "vapour: temperature"]
+    assert all(low >= 1.0 and high > 3.84 for low, high in ends["rises"].values())
 
 
 def test_results_and_figures_are_written_and_the_next_command_named(folder, capsys):

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from tracer.observe.fit.result import Comparison, Correlations, Estimate, Points
+from tracer.observe.fit.result import Comparison, Correlations, Estimate, Points, RangeEnds
 from tracer.plots.comparison import DATA, comparison
 from tracer.plots.saving import figure_bytes
 from tracer.plots.style import styled
@@ -40,6 +40,7 @@ def made(value, upper=(False,) * 5, background=0.0):
         degrees_of_freedom=3,
         probability=0.17,
         minus_two_log_likelihood=5.0,
+        range_ends=RangeEnds(200, 1, {"a": (1.0, 3.84)}),
         correlations=Correlations(("a", "b"), np.eye(2)),
         points=points,
         statements=(),

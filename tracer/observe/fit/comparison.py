@@ -3,7 +3,6 @@
 import math
 from collections.abc import Sequence
 from difflib import get_close_matches
-from typing import NamedTuple
 
 import numpy as np
 import xarray as xr
@@ -11,15 +10,15 @@ from numpy.typing import NDArray
 from scipy.special import gammaincc
 
 from tracer.errors import InputError
+from tracer.observe.fit.calibration import SEED, Calibration
 from tracer.observe.fit.curves import Curve, Fixed, Lawful, Parameter
-from tracer.observe.fit.descent import descend, lowest
+from tracer.observe.fit.fitting import Fitted, fit
 from tracer.observe.fit.gathering import Optics, gather, variables_for
 from tracer.observe.fit.images import image_of
 from tracer.observe.fit.likelihood import Component, Likelihood, Measured, Model, Slot, slots_of
 from tracer.observe.fit.pooling import check_alike, with_own_names
 from tracer.observe.fit.profile import SI_VALUES, Profile, read_profile
-from tracer.observe.fit.ranges import RISE_68, RISE_95, BetterFound, Scan, absences, ends, scan_of
-from tracer.observe.fit.result import Comparison, Estimate, Points, as_read
+from tracer.observe.fit.result import Comparison, Estimate, Points, RangeEnds, as_read
 from tracer.observe.fit.sky import Scale, aperture_of, metres_in, spread_of, track_of, view_of
 from tracer.observe.fit.sources import Source
 from tracer.observe.fit.words import (
@@ -28,6 +27,7 @@ from tracer.observe.fit.words import (
     entangled_parameters,
     loud_model,
     quality,
+    range_words,
     thickness,
     told_apart,
     unit_slip,
@@ -47,24 +47,6 @@ POSITION_WORDS = {
     "altitude": "Tangent altitude",
     "slit": "Position along the slit",
 }
-PASSES = 4
-"""Fits after which the model's error, which follows the rates, is taken as it is."""
-SETTLED = 1e-3
-"""Change of -2 ln L between passes that ends them."""
-MOST_RESTARTS = 5
-
-
-class Fitted(NamedTuple):
-    """A fit that has arrived: the scan about its best, the ranges of all parameters, what lacks without releases."""
-
-    scan: Scan
-    ranges: tuple[Estimate, ...]
-    absences: dict[tuple[int, ...], float]
-
-    @property
-    def best(self) -> Floats:
-        """The best parameters, as the likelihood counts them."""
-        return self.scan.best
 
 
 def compare(products: xr.Dataset | Sequence[xr.Dataset], observation: ObservationSpec) -> Comparison:
@@ -133,42 +115,6 @@ def compared(products: Sequence[tuple[str, xr.Dataset]], spec: ObservationSpec) 
     thick = thickness(np.nansum([rate * one.depth for rate, one in zip(rates, chosen, strict=True)], axis=0))
     words = [*([slip] if slip else []), *([thick] if thick else []), *warnings]
     return _result(spec, profile, [name for name, _ in products], how, fitted, words)
-
-
-def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) -> Fitted:
-    """Return the best parameters and their ranges.
-
-    The model's own error follows the rates: fits and errors take turns until they agree, and the ranges are
-    taken with the error at the best.
-    """
-    likelihood = Likelihood(data, components, slots)
-    best, value = lowest(likelihood)
-    for _ in range(PASSES):
-        likelihood.take_model_error(best)
-        before = value
-        best, value = descend(likelihood, best, np.zeros(len(slots), dtype=bool))
-        if abs(value - before) < SETTLED:
-            break
-    for _ in range(MOST_RESTARTS):
-        scan = scan_of(likelihood, best, value)
-        try:
-            return Fitted(scan, tuple(_estimate(scan, n) for n in range(len(slots))), absences(scan))
-        except BetterFound as found:
-            best, value = lowest(likelihood, (found.parameters,))
-    raise InputError("the fit finds better and better parameters without end; give narrower ranges")
-
-
-def _estimate(scan: Scan, number: int) -> Estimate:
-    low68, high68 = ends(scan, number, RISE_68)
-    low95, high95 = ends(scan, number, RISE_95)
-    found = Estimate(float(scan.best[number]), low68, high68, low95, high95)
-    slot = scan.likelihood.slots[number]
-    if slot.key is None:
-        return Estimate(*(slot.unit * end for end in found))
-    given = scan.likelihood.components[slot.component or 0].curve.parameters
-    edges = next(one for one in given if one.key == slot.key)
-    # An end that lies on an edge of the range is that edge, not what rounding makes of its logarithm.
-    return Estimate(*(min(max(math.exp(end), edges.low), edges.high) for end in found))
 
 
 def needed_of(ds: xr.Dataset, spec: ObservationSpec, profile: Profile) -> list[str]:
@@ -331,7 +277,8 @@ def _result(
     chi_square = likelihood.chi_square(best)
     degrees = int((~profile.upper).sum()) - len(slots)
     probability = float(gammaincc(0.5 * degrees, 0.5 * chi_square))
-    correlations = correlations_of(fitted.scan, [slot.name for slot in slots])
+    labels = [slot.name for slot in slots]
+    correlations = correlations_of(fitted.scan, labels)
     names = [one.name for one in likelihood.components]
     rates = {
         names[s.component]: e
@@ -365,15 +312,24 @@ def _result(
         degrees_of_freedom=degrees,
         probability=probability,
         minus_two_log_likelihood=fitted.scan.value,
+        range_ends=_range_ends(fitted.calibration, labels),
         correlations=correlations,
         points=points,
         statements=(
             quality(chi_square, degrees, probability),
+            range_words(fitted.calibration, labels),
             *told_apart(fitted.absences, correlations, free),
             *entangled_parameters(correlations),
         ),
         warnings=(*words, *([loud] if loud else [])),
     )
+
+
+def _range_ends(calibration: Calibration, names: Sequence[str]) -> RangeEnds:
+    rises = {
+        name: (float(low), float(high)) for name, (low, high) in zip(names, calibration.rises, strict=True)
+    }
+    return RangeEnds(calibration.draws, SEED, rises)
 
 
 def _points(spec: ObservationSpec, profile: Profile, likelihood: Likelihood, model: Model) -> Points:

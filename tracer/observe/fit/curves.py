@@ -49,6 +49,10 @@ class Curve(Protocol):
         """Return the points (N,) and their slopes (K, N) at logarithms (K,)."""
         ...
 
+    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return the points (D, N) and their slopes (D, K, N) at D sets of logarithms (D, K)."""
+        ...
+
     def replicates_at(self, logs: Floats) -> Floats:
         """Return the replicates (G, N) at logarithms (K,)."""
         ...
@@ -70,6 +74,11 @@ class Fixed:
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
         return self._mean, self._no_slopes
+
+    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return what `Curve.at_many` does."""
+        count = len(logs)
+        return np.tile(self._mean, (count, 1)), np.zeros((count, 0, len(self._mean)))
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
@@ -112,6 +121,16 @@ class Lawful:
             step = STEP * np.eye(len(logs))[k]
             slopes[k] = (self._mean(logs + step) - self._mean(logs - step)) / (2.0 * STEP)
         return mean, slopes
+
+    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return what `Curve.at_many` does."""
+        if self._spline is None:
+            points, slopes = zip(*map(self.at, logs), strict=True)
+            return np.array(points), np.array(slopes)
+        step = self._nodes[1] - self._nodes[0]
+        place = np.clip(((logs[:, 0] - self._nodes[0]) / step).astype(int), 0, NODES - 2)
+        x, c = (logs[:, 0] - self._nodes[place])[:, None], self._spline[:, place]
+        return ((c[0] * x + c[1]) * x + c[2]) * x + c[3], ((3.0 * c[0] * x + 2.0 * c[1]) * x + c[2])[:, None]
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""

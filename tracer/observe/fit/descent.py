@@ -1,9 +1,12 @@
-"""The least sum of squares within bounds: damped Gauss-Newton steps from the best of a grid of starts."""
+"""The least sum of squares within bounds: damped Gauss-Newton steps from the valleys of a grid of starts."""
 
 import itertools
+from collections.abc import Sequence
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import minimum_filter
 from scipy.optimize import nnls
 
 from tracer.observe.fit.likelihood import Likelihood
@@ -17,8 +20,17 @@ SMALLEST_GAIN = 1e-9
 FIRST_DAMPING, LEAST_DAMPING, MOST_DAMPING = 1e-4, 1e-12, 1e12
 STARTS_PER_PARAMETER = {0: 1, 1: 25, 2: 11, 3: 7}
 FEWEST_STARTS = 4
-DESCENTS = 3
-"""Descents from different starts, the best of the grid."""
+MOST_DESCENTS = 9
+"""Most descents from different starts: the lowest of those points of the grid that no neighbour is below."""
+SAME_PLACE = 1e-2
+"""Distance between the ends of two descents, in any parameter, below which they lie in one valley."""
+
+
+class Valley(NamedTuple):
+    """A minimum of -2 ln L: its parameters and `value`."""
+
+    parameters: Floats
+    value: float
 
 
 def descend(likelihood: Likelihood, start: Floats, held: Truths) -> tuple[Floats, float]:
@@ -58,11 +70,15 @@ def descend(likelihood: Likelihood, start: Floats, held: Truths) -> tuple[Floats
     return at, value
 
 
-def lowest(likelihood: Likelihood, also: tuple[Floats, ...] = ()) -> tuple[Floats, float]:
-    """Return the parameters of least -2 ln L anywhere, and that value; `also` are starts known from before."""
-    starts = [*also, *_best_starts(likelihood)]
+def valleys(likelihood: Likelihood, starts: Sequence[Floats]) -> tuple[Valley, ...]:
+    """Return the minima of -2 ln L to which the starts lead, the lowest first."""
     held = np.zeros(len(likelihood.slots), dtype=bool)
-    return min((descend(likelihood, start, held) for start in starts), key=lambda found: found[1])
+    found = [Valley(*descend(likelihood, start, held)) for start in starts]
+    kept: list[Valley] = []
+    for one in sorted(found, key=lambda valley: valley.value):
+        if all(np.max(np.abs(one.parameters - other.parameters)) > SAME_PLACE for other in kept):
+            kept.append(one)
+    return tuple(kept)
 
 
 def _step(normal: Floats, gradient: Floats, damping: float) -> Floats:
@@ -73,22 +89,27 @@ def _step(normal: Floats, gradient: Floats, damping: float) -> Floats:
     return np.asarray(np.linalg.solve(scaled, -gradient / scale) / scale)
 
 
-def _best_starts(likelihood: Likelihood) -> list[Floats]:
-    """Return the best starts of a grid over the laws' parameters, each with the rates that suit it."""
+def grid_starts(likelihood: Likelihood) -> list[Floats]:
+    """Return the valleys of a grid over the laws' parameters, each with the rates that suit it, the lowest first."""
     places = [n for n, slot in enumerate(likelihood.slots) if slot.key is not None]
     count = STARTS_PER_PARAMETER.get(len(places), FEWEST_STARTS)
     axes = [
         likelihood.low[n] + (likelihood.high[n] - likelihood.low[n]) * (np.arange(count) + 0.5) / count
         for n in places
     ]
-    found = []
+    starts = []
     for logs in itertools.product(*axes):
         start = np.zeros(len(likelihood.slots))
         start[places] = logs
-        start = _linear(likelihood, start)
-        found.append((likelihood.value(start), start))
-    found.sort(key=lambda one: one[0])
-    return [start for _, start in found[:DESCENTS]]
+        starts.append(_linear(likelihood, start))
+    values = np.array([likelihood.value(start) for start in starts])
+    if places:
+        grid = values.reshape([count] * len(places))
+        lowest = np.flatnonzero(grid <= minimum_filter(grid, size=3, mode="nearest"))
+    else:
+        lowest = np.zeros(1, dtype=int)
+    order = lowest[np.argsort(values[lowest], kind="stable")]
+    return [starts[n] for n in order[:MOST_DESCENTS]]
 
 
 def _linear(likelihood: Likelihood, start: Floats) -> Floats:

@@ -154,6 +154,48 @@ class Likelihood:
         limits, tilts = self._limits(total[~keep])
         return np.concatenate([away, limits]), np.concatenate([turned, tilts[:, None] * steps[:, ~keep].T])
 
+    def residuals_of_many(self, values: Floats, parameters: Floats) -> tuple[Floats, Floats]:
+        """Return residuals (D, N) and their slopes (D, P, N) of D other profiles, none of whose points is a limit.
+
+        Parameters
+        ----------
+        values : ndarray, shape (D, N)
+            Profiles in place of the measured one.
+        parameters : ndarray, shape (D, P)
+            The parameters of each.
+        """
+        total = np.zeros(values.shape)
+        steps = np.zeros((*parameters.shape, values.shape[1]))
+        for i, one in enumerate(self.components):
+            points, slopes = one.curve.at_many(parameters[:, self._law_places[i]])
+            place = self._rate_places[i]
+            if place is None:
+                rate = np.full((len(parameters), 1), one.held_rate)
+            else:
+                rate = parameters[:, place, None] * self.slots[place].unit
+                steps[:, place] = self.slots[place].unit * points
+            total += rate * points
+            steps[:, self._law_places[i]] = rate[:, :, None] * slopes
+        if self._background is None:
+            total += self.data.level
+        else:
+            unit = self.slots[self._background].unit
+            total += parameters[:, self._background, None] * unit
+            steps[:, self._background] = unit
+        return (values - total) @ self._whiten.T, -(steps @ self._whiten.T)
+
+    def noise(self, normal: Floats) -> Floats:
+        """Return errors (D, N) of measurement and model together, from D sets of standard normal numbers (D, N).
+
+        Raises
+        ------
+        ValueError
+            Where a point is an upper limit.
+        """
+        if self.data.upper.any():
+            raise ValueError("upper limits have no Gaussian error")
+        return np.asarray(solve_triangular(self._whiten, normal.T, lower=True).T)
+
     def value(self, parameters: Floats) -> float:
         """Return -2 ln L without constants."""
         found, _ = self.residuals(parameters)

@@ -8,7 +8,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from tracer.observe.fit.descent import descend
+from tracer.observe.fit.descent import Valley, descend
 from tracer.observe.fit.likelihood import Likelihood
 
 Floats = NDArray[np.float64]
@@ -36,16 +36,21 @@ class BetterFound(Exception):
 
 
 class Scan(NamedTuple):
-    """What ranges are taken from: the best parameters, their -2 ln L, and their covariance (P, P)."""
+    """What ranges are taken from: the best parameters, their -2 ln L, their covariance (P, P), all valleys."""
 
     likelihood: Likelihood
     best: Floats
     value: float
     covariance: Floats
+    valleys: tuple[Valley, ...]
 
 
-def scan_of(likelihood: Likelihood, best: Floats, value: float) -> Scan:
-    """Return the scan about the best parameters; those on an edge, or that do nothing, have no covariance: NaN."""
+def scan_of(likelihood: Likelihood, valleys: tuple[Valley, ...]) -> Scan:
+    """Return the scan about the first of the valleys.
+
+    Parameters on an edge, or that do nothing, have no covariance: NaN.
+    """
+    best, value = valleys[0]
     _, slope = likelihood.residuals(best)
     # The law of a release that is absent changes nothing.
     inside = ~on_edge(likelihood, best) & (np.sum(slope**2, axis=0) > 0.0)
@@ -55,7 +60,7 @@ def scan_of(likelihood: Likelihood, best: Floats, value: float) -> Scan:
     covariance[np.ix_(inside, inside)] = np.linalg.pinv(
         normal / np.outer(scale, scale), hermitian=True
     ) / np.outer(scale, scale)
-    return Scan(likelihood, best, value, covariance)
+    return Scan(likelihood, best, value, covariance, valleys)
 
 
 def on_edge(likelihood: Likelihood, parameters: Floats) -> NDArray[np.bool_]:
@@ -65,6 +70,9 @@ def on_edge(likelihood: Likelihood, parameters: Floats) -> NDArray[np.bool_]:
 
 def ends(scan: Scan, number: int, rise: float) -> tuple[float, float]:
     """Return the ends of a parameter's range; one that the edge of what is allowed cuts short lies on it.
+
+    Where -2 ln L has several valleys within `rise`, the range reaches from the first to the last of them: what is as
+    likely as the rest of a range must not lie outside because a hill stands before it.
 
     Raises
     ------
@@ -86,7 +94,7 @@ def rise_at(scan: Scan, place: dict[int, float]) -> float:
     held = np.zeros(len(start), dtype=bool)
     for number, value in place.items():
         start[number], held[number] = value, True
-    _, value = _least(scan, [start, *_other_starts(scan, start, held)], held)
+    _, value = _least(scan, [start, *other_starts(scan, start, held)], held)
     return max(0.0, value - scan.value)
 
 
@@ -108,7 +116,11 @@ def absences(scan: Scan) -> dict[tuple[int, ...], float]:
 def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
     likelihood, wanted = scan.likelihood, math.sqrt(rise)
     edge = float((likelihood.low if sign < 0.0 else likelihood.high)[number])
-    best = float(scan.best[number])
+    start, value = max(
+        (one for one in scan.valleys if one.value - scan.value < rise),
+        key=lambda one: sign * float(one.parameters[number]),
+    )
+    best = float(start[number])
     if sign * (edge - best) <= ON_EDGE:
         return edge
     spread = scan.covariance[number, number]
@@ -118,8 +130,8 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
         else _first_width(likelihood, number, best)
     )
     inner, outer = best, math.nan
-    low_root, high_root = 0.0, math.nan
-    start, place = scan.best, best + sign * width * wanted
+    low_root, high_root = math.sqrt(max(0.0, value - scan.value)), math.nan
+    place = best + sign * width * wanted
     for _ in range(MOST_TRIALS):
         place = min(place, edge) if sign > 0.0 else max(place, edge)
         start, root = _profile(scan, number, place, start)
@@ -174,12 +186,12 @@ def _elsewhere(scan: Scan, number: int, near: Floats, root: float) -> tuple[Floa
     """Return what `_profile` does for the place of `near`, from other starts as well."""
     held = np.zeros(len(near), dtype=bool)
     held[number] = True
-    found, value = _least(scan, [near, *_other_starts(scan, near, held)], held)
+    found, value = _least(scan, [near, *other_starts(scan, near, held)], held)
     new = math.sqrt(max(0.0, value - scan.value))
     return (found, new) if new < root else (near, root)
 
 
-def _other_starts(scan: Scan, near: Floats, held: NDArray[np.bool_]) -> list[Floats]:
+def other_starts(scan: Scan, near: Floats, held: NDArray[np.bool_]) -> list[Floats]:
     """Return `near` with one law parameter after the other, as far as free, moved to either side of its range."""
     low, high = scan.likelihood.low, scan.likelihood.high
     starts = []

@@ -60,13 +60,26 @@ class Correlations(NamedTuple):
     matrix: Floats
 
 
+class RangeEnds(NamedTuple):
+    """By how much -2 ln L has risen at the ends of the ranges of 68.27 and 95 % of each free parameter, by its name.
+
+    `draws` of profiles about the best fit, with random numbers of `seed`, calibrated the rises; where it is 0 they are
+    those of chi-square with one degree of freedom.
+    """
+
+    draws: int
+    seed: int
+    rises: Mapping[str, tuple[float, float]]
+
+
 class Comparison(NamedTuple):
     """Result of a comparison.
 
     `rates` [s-1] by release; `parameters` by release and name, temperatures [K], energies [J]; `background` in the unit
     of the points, None where it was not fitted. `chi_square` counts measured points alone; `minus_two_log_likelihood`
-    (without constants) upper limits as well. `probability` of a chi-square as large or larger. `statements` say what
-    the fit tells and cannot tell, `warnings` what is doubtful.
+    (without constants) upper limits as well. `range_ends` say where ranges end and whether that was calibrated.
+    `probability` of a chi-square as large or larger. `statements` say what the fit tells and cannot tell, `warnings`
+    what is doubtful.
     """
 
     title: str
@@ -81,6 +94,7 @@ class Comparison(NamedTuple):
     degrees_of_freedom: int
     probability: float
     minus_two_log_likelihood: float
+    range_ends: RangeEnds
     correlations: Correlations
     points: Points
     statements: tuple[str, ...]

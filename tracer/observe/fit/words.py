@@ -7,8 +7,9 @@ from collections.abc import Iterator, Mapping, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.observe.fit.calibration import Calibration
 from tracer.observe.fit.likelihood import RATE
-from tracer.observe.fit.ranges import RISE_95, Scan
+from tracer.observe.fit.ranges import RISE_68, RISE_95, Scan
 from tracer.observe.fit.result import Correlations, Estimate
 from tracer.observe.optical_depth import THICK
 
@@ -75,6 +76,19 @@ def quality(chi_square: float, degrees: int, probability: float) -> str:
     if probability > TOO_GOOD:
         return f"{head}: better than chance; the standard errors may be too large, or not independent"
     return f"{head}: the model fits"
+
+
+def range_words(calibration: Calibration, names: Sequence[str]) -> str:
+    """Return where the ranges of the parameters `names` end, and how that was found."""
+    wilks = f"{RISE_68:g} and {RISE_95:.2f}"
+    if not calibration.draws:
+        return f"Ranges of 68 and 95 % end where -2 ln L has risen by {wilks}, not calibrated: {calibration.reason}"
+    most = int(np.argmax(np.max(calibration.rises / (RISE_68, RISE_95), axis=1)))
+    low, high = calibration.rises[most]
+    return (
+        f"Ranges are calibrated on {calibration.draws} profiles drawn about the best fit: of '{names[most]}', which "
+        f"that widens most, they end where -2 ln L has risen by {low:.3g} and {high:.3g} instead of {wilks}"
+    )
 
 
 def loud_model(model_error: Floats, sigma: Floats) -> str | None:

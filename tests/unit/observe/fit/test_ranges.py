@@ -8,8 +8,8 @@ from scipy.optimize import minimize_scalar
 from scipy.stats import norm
 
 from tracer.constants import ATOMIC_MASS, BOLTZMANN
-from tracer.observe.fit.comparison import fit
 from tracer.observe.fit.curves import Fixed, Lawful, Parameter
+from tracer.observe.fit.fitting import fit
 from tracer.observe.fit.likelihood import Component, Measured, slots_of
 from tracer.observe.fit.sources import Response, covariance
 from tracer.observe.fit.words import at_range, correlations_of, quality, thickness, told_apart, unit_slip
@@ -46,6 +46,11 @@ class Heated:
         length = math.exp(logs[0])
         value = np.exp(-X / length)
         return value, (value * X / length)[np.newaxis]
+
+    def at_many(self, logs):
+        lengths = np.exp(logs)
+        values = np.exp(-X / lengths)
+        return values, (values * X / lengths)[:, np.newaxis]
 
     def replicates_at(self, logs):
         spread = self._error * np.sin(np.outer(np.arange(1.0, 11.0), X))
@@ -166,7 +171,9 @@ def test_parameter_that_meets_its_range_is_named():
     assert "lies on the low end of its range, 2.5 to 6 K" in at_range("'a'", found, 2.5, 6.0, "K")
 
 
-def test_small_coverage_of_rate_and_parameter():
+def test_small_coverage_of_rate_and_parameter(monkeypatch):
+    # Fewer draws in each calibration, for the time it takes.
+    monkeypatch.setattr("tracer.observe.fit.calibration.PAIRS", 40)
     # 60 draws: a share of 68.27 % lies outside 0.50 to 0.85, or one of 95 % below 0.87, by chance in 1 of 100 sets of
     # the four (binomial). The whole study stands in analysis/validation/fit-coverage.
     rng = np.random.default_rng(4)

@@ -1,0 +1,235 @@
+"""Where ranges end: on models whose rise of -2 ln L at the truth is known, and against the fit of one profile alone."""
+
+import math
+
+import numpy as np
+import pytest
+from scipy.stats import chi2
+
+from tracer.observe.fit.calibration import calibrated, quantiles
+from tracer.observe.fit.curves import Fixed, Lawful, Parameter
+from tracer.observe.fit.descent import descend
+from tracer.observe.fit.fitting import fit
+from tracer.observe.fit.likelihood import Component, Likelihood, Measured, slots_of
+from tracer.observe.fit.many_descents import descend_many
+from tracer.observe.fit.sources import Response
+from tracer.observe.fit.words import range_words
+
+WILKS = (1.0, 3.841458820694124)
+
+
+class Bent:
+    """A profile of one parameter p, any function of log p with its slope, without error or off by a share `bias`."""
+
+    def __init__(self, points, slopes, low, high, bias=0.0):
+        self.parameters = (Parameter("temperature", math.exp(low), math.exp(high)),)
+        self._points, self._slopes, self._bias = points, slopes, bias
+
+    def at_many(self, logs):
+        return self._points(logs), self._slopes(logs)[:, np.newaxis]
+
+    def at(self, logs):
+        points, slopes = self.at_many(logs[np.newaxis])
+        return points[0], slopes[0]
+
+    def replicates_at(self, logs):
+        return np.tile(self.at(logs)[0], (3, 1))
+
+    def bias_at(self, logs):
+        return self._bias * np.abs(self.at(logs)[0])
+
+
+def circle():
+    return Bent(
+        lambda logs: np.hstack([np.cos(logs), np.sin(logs)]),
+        lambda logs: np.hstack([-np.sin(logs), np.cos(logs)]),
+        -3.14,
+        3.14,
+    )
+
+
+def fitted(curve, value, held=None, sigma=1.0, upper=False):
+    value = np.asarray(value, dtype=float)
+    data = Measured(value, np.full(len(value), sigma), np.full(len(value), False), 0.0)
+    if upper:
+        data.upper[-1] = True
+    component = Component("a", curve, np.ones(3), held)
+    return fit(data, [component], slots_of(data, [component], background=False))
+
+
+def test_rises_of_a_direction_are_those_of_its_own_distribution(monkeypatch):
+    """A point measured with unit errors on a circle of radius R, the angle fitted.
+
+    The best angle is that of the point y = (R + z1, z2) itself, so that -2 ln L rises at the truth by |y - R|^2 -
+    (|y| - R)^2 = 2 R (|y| - R - z1), which is no chi-square: its mean is 2 R E|y| - 2 R^2, 1 + 1/(4 R^2) for large R.
+    """
+    # Ten times the draws: their scatter is then 0.014 and 0.11, beside 0.13 and 0.45 from Wilks to what is expected.
+    monkeypatch.setattr("tracer.observe.fit.calibration.PAIRS", 2000)
+    radius = 1.6
+    found = fitted(circle(), [radius * math.cos(0.3), radius * math.sin(0.3)], held=radius)
+    z = np.random.default_rng(11).normal(size=(400_000, 2))
+    rise = 2.0 * radius * (np.hypot(radius + z[:, 0], z[:, 1]) - radius - z[:, 0])
+    expected = np.quantile(rise, chi2.cdf(WILKS, 1))
+    np.testing.assert_allclose(expected, [1.13, 4.29], rtol=0.01)
+    assert np.all(np.abs(found.calibration.rises[0] - expected) < [0.05, 0.4])
+
+
+def test_wide_circle_is_as_good_as_straight():
+    found = fitted(circle(), [300.0 * math.cos(0.3), 300.0 * math.sin(0.3)], held=300.0)
+    np.testing.assert_allclose(found.calibration.rises[0], WILKS, rtol=1e-3)
+    estimate = found.ranges[0]
+    # The half-width of an angle seen from afar is 1/R.
+    assert math.log(estimate.high68 / estimate.best) == pytest.approx(1.0 / 300.0, rel=5e-3)
+
+
+def test_draws_that_are_those_of_the_linear_fit_change_nothing():
+    linear = np.random.default_rng(1).normal(size=200) ** 2
+    np.testing.assert_allclose(quantiles(linear, linear), WILKS, rtol=1e-3)
+
+
+@pytest.mark.parametrize("factor", [1.2, 1.5])
+def test_rises_larger_by_a_factor_move_the_ends_by_it(factor):
+    # Bartlett 1937 (Proc. R. Soc. A 160, 268: memory): a ratio larger by a factor throughout.
+    linear = np.random.default_rng(2).normal(size=4000) ** 2
+    np.testing.assert_allclose(quantiles(factor * linear, linear), factor * np.array(WILKS), rtol=0.04)
+
+
+def test_ranges_are_never_narrower_than_those_of_the_likelihood_ratio():
+    linear = np.random.default_rng(3).normal(size=400) ** 2
+    assert quantiles(0.5 * linear, linear) == WILKS
+
+
+def test_range_reaches_over_a_hill_to_the_other_valley():
+    # (p^2 - 1) k seen as 0: -2 ln L is k^2 (p^2 - 1)^2, with valleys at -1 and 1 and a hill of k^2 = 9 between them.
+    height = 3.0
+    curve = Bent(
+        lambda logs: np.full((1, 4), 0.5 * height) * (logs**2 - 1.0),
+        lambda logs: np.full((1, 4), height) * logs,
+        -2.5,
+        2.4,
+    )
+    found = fitted(curve, np.zeros(4), held=1.0)
+    low68, high68 = found.calibration.rises[0] ** 0.5
+    estimate = found.ranges[0]
+    for (low, high), root in (
+        ((estimate.low68, estimate.high68), low68),
+        ((estimate.low95, estimate.high95), high68),
+    ):
+        end = math.sqrt(1.0 + root / height)
+        assert math.log(low) == pytest.approx(-end, rel=2e-3)
+        assert math.log(high) == pytest.approx(end, rel=2e-3)
+
+
+def decay():
+    x = np.linspace(0.2, 8.0, 20)
+    return Bent(
+        lambda logs: np.exp(-x / np.exp(logs)),
+        lambda logs: np.exp(-x / np.exp(logs)) * x / np.exp(logs),
+        math.log(0.3),
+        math.log(30.0),
+    )
+
+
+def test_many_descents_arrive_where_each_alone_does():
+    curve, flat = decay(), np.ones(20)
+    x = np.linspace(0.2, 8.0, 20)
+    components = [
+        Component("a", curve, np.ones(3), None),
+        Component("b", Fixed(np.exp(-x / 9.0), np.tile(np.exp(-x / 9.0), (3, 1))), np.ones(3), None),
+    ]
+    rng = np.random.default_rng(5)
+    values = 20.0 * np.exp(-x / 2.0) + rng.normal(size=(30, 20))
+    data = Measured(values[0], flat, flat < 0.0, 0.0)
+    slots = slots_of(data, components, background=True)
+    likelihood = Likelihood(data, components, slots)
+    start = np.array([1.0, 0.1, 0.0, math.log(2.0)])
+    for held in (np.zeros(4, bool), np.array([False, False, False, True])):
+        at, least = descend_many(likelihood, values, np.tile(start, (30, 1)), held)
+        assert np.all(at[:, :2] >= 0.0)
+        if held[3]:
+            assert np.all(at[:, 3] == start[3])
+        for one, found in zip(values, least, strict=True):
+            alone = Likelihood(data._replace(value=one), components, slots)
+            assert found == pytest.approx(descend(alone, start, held)[1], abs=3e-3)
+    # The second rate meets its bound in some of the draws, so that bounds are tried.
+    assert np.any(at[:, 1] == 0.0)
+    assert np.any(at[:, 1] > 0.0)
+
+
+def test_residuals_of_many_are_those_of_each():
+    response = Response(
+        np.linspace(0.0, 6e3, 13),
+        3.8e-26,
+        3e3,
+        np.random.default_rng(6).uniform(size=(12, 2, 5)),
+        np.random.default_rng(7).uniform(size=(4, 12, 2, 5)),
+    )
+    curve = Lawful(response, "maxwell-flux", {}, (Parameter("temperature", 500.0, 3000.0),))
+    data = Measured(np.ones(5), np.linspace(0.1, 0.3, 5), np.zeros(5, bool), 0.2)
+    components = [Component("a", curve, np.ones(4), None), Component("b", curve, np.ones(4), 0.7)]
+    slots = slots_of(data, components, background=False)
+    likelihood = Likelihood(data, components, slots)
+    rng = np.random.default_rng(8)
+    places = np.column_stack([rng.uniform(0.1, 2.0, 6), *np.log(rng.uniform(500.0, 3000.0, (2, 6)))])
+    likelihood.take_model_error(places[0])
+    values = rng.normal(size=(6, 5))
+    many, slopes = likelihood.residuals_of_many(values, places)
+    for n, place in enumerate(places):
+        alone = Likelihood(data._replace(value=values[n]), components, slots)
+        alone.take_model_error(places[0])
+        residual, slope = alone.residuals(place)
+        np.testing.assert_allclose(many[n], residual, rtol=1e-9, atol=1e-9)
+        np.testing.assert_allclose(slopes[n].T, slope, rtol=1e-9, atol=1e-9)
+
+
+def test_noise_has_the_covariance_of_measurement_and_model():
+    replicates = np.random.default_rng(9).uniform(0.5, 1.5, (8, 3))
+    points = np.array([[3.0, 1.0, 2.0]])
+    # Without Monte Carlo error, but off by up to a tenth for the width of the bins.
+    wide = Bent(lambda logs: points + 0.0 * logs, lambda logs: 0.0 * points * logs, -1.0, 1.0, bias=0.1)
+    data = Measured(np.ones(3), np.array([0.1, 0.2, 0.3]), np.zeros(3, bool), 0.0)
+    components = [
+        Component("a", Fixed(replicates.mean(axis=0), replicates), np.ones(8), None),
+        Component("b", wide, np.ones(3), 2.0),
+    ]
+    slots = slots_of(data, components, background=False)
+    likelihood = Likelihood(data, components, slots)
+    likelihood.take_model_error(np.array([0.5 / slots[0].unit, 0.0]))
+    bias = 2.0 * 0.1 * points[0]
+    expected = (
+        0.5**2 * np.cov(replicates, rowvar=False) / 8
+        + 0.5 * (np.outer(bias, bias) + np.diag(bias**2))
+        + np.diag(data.sigma**2)
+    )
+    turned = likelihood.noise(np.eye(3))
+    np.testing.assert_allclose(turned.T @ turned, expected, rtol=1e-9)
+
+
+def test_ranges_are_the_same_each_time():
+    x = np.linspace(0.2, 8.0, 20)
+    value = 6.0 * np.exp(-x / 2.0) + np.random.default_rng(10).normal(size=20)
+    assert fitted(decay(), value).ranges == fitted(decay(), value).ranges
+
+
+def test_what_is_not_calibrated_says_why():
+    x = np.linspace(0.2, 8.0, 20)
+    rates = fitted(Fixed(np.exp(-x), np.tile(np.exp(-x), (3, 1))), 9.0 * np.exp(-x))
+    limits = fitted(decay(), 9.0 * np.exp(-x / 2.0) + 0.1, upper=True)
+    wide = np.ones((1, 501)) / math.sqrt(501.0)
+    many = fitted(
+        Bent(lambda logs: 9.0 * logs * wide, lambda logs: 9.0 * wide + 0.0 * logs, 0.1, 3.0), wide[0], 1.0
+    )
+    for found, words in (
+        (rates, "enters linearly"),
+        (limits, "an upper limit would be a measurement"),
+        (many, "profiles of more than 500 points"),
+    ):
+        assert found.calibration.draws == 0
+        np.testing.assert_array_equal(found.calibration.rises, np.tile(WILKS, (len(found.ranges), 1)))
+        assert words in range_words(found.calibration, ["a: rate", "a: temperature"])
+        assert "risen by 1 and 3.84, not calibrated" in range_words(found.calibration, ["a: rate", "b"])
+    drawn = fitted(circle(), [1.6, 0.0], held=1.6)
+    assert calibrated(drawn.scan).draws == 400
+    assert range_words(drawn.calibration, ["angle"]).startswith(
+        "Ranges are calibrated on 400 profiles drawn about the best fit: of 'angle', which that widens most"
+    )
