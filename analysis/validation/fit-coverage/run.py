@@ -12,7 +12,7 @@ import tracer
 from tracer.observe.fit.comparison import components_of, optics_for
 from tracer.observe.fit.fitting import fit
 from tracer.observe.fit.gathering import gather
-from tracer.observe.fit.likelihood import Measured, slots_of
+from tracer.observe.fit.likelihood import Likelihood, Measured, slots_of
 from tracer.observe.fit.profile import Profile
 from tracer.observe.observationspec.observation import ObservationSpec, parse_observation
 
@@ -127,13 +127,27 @@ def case_of(model: xr.Dataset, truth: xr.Dataset, releases: list[str]) -> Case:
     )
 
 
+def measured(case: Case, value: np.ndarray) -> Measured:
+    """Return a profile of the case with these values."""
+    return Measured(value, case.sigma, np.zeros(len(value), bool), 0.0)
+
+
+def model_share(case: Case) -> float:
+    """Return the error of the model, Monte Carlo and bins, over the noise where that is largest, at the truth."""
+    data = measured(case, case.truth)
+    slots = slots_of(data, case.components, False)
+    likelihood = Likelihood(data, case.components, slots)
+    true = [TRUE[one.name] / one.unit if one.key is None else np.log(TRUE[one.name]) for one in slots]
+    likelihood.take_model_error(np.array(true))
+    return float(np.max(np.sqrt(np.diag(likelihood.model_covariance)) / case.sigma))
+
+
 def coverage(case: Case, draws: int, seed: int) -> Coverage:
     """Return how often ranges hold the truth."""
     rng = np.random.default_rng(seed)
     hits, depths, rises = [], [], []
     for _ in range(draws):
-        value = case.truth + case.sigma * rng.normal(size=len(case.truth))
-        data = Measured(value, case.sigma, np.zeros(len(value), bool), 0.0)
+        data = measured(case, case.truth + case.sigma * rng.normal(size=len(case.truth)))
         slots = slots_of(data, case.components, False)
         fitted = fit(data, case.components, slots)
         true = np.array([TRUE[slot.name] for slot in slots])
@@ -163,7 +177,10 @@ def main(draws: int, numbers: list[int]) -> int:
         case, begin = case_of(model, truth, releases), time.process_time()
         case = case._replace(sigma=factor * case.sigma)
         found = coverage(case, draws, SEED)
-        print(f"{' and '.join(releases)}: noise {100 * np.median(case.sigma / case.truth):.2g} % (median)")
+        print(
+            f"{' and '.join(releases)}: noise {100 * np.median(case.sigma / case.truth):.2g} % (median), "
+            f"error of the model up to {model_share(case):.2g} of it"
+        )
         for i, name in enumerate(found.names):
             shares, rises = found.shares[:, i], found.rises[i]
             good = all(low <= share <= high for (low, high), share in zip(BANDS, shares, strict=True))
