@@ -26,12 +26,11 @@ CARE = 1.5
 and 1,800 responses with thresholds, kinks, jumps and peaks anywhere the bound then holds in 99.9 %, always where there
 is a threshold alone, and what is wrong is at most 1.3 times the bound (`analysis/validation/speed-responses`)."""
 
-RAMP_CENTRE = 1.0 / 3.0
-"""Mean of x under densities that rise or fall evenly through a bin: where R0 + R1 and R0 - R1 are known."""
-
-
 BESIDE = 2
 """Bins to either side from which R2 of a bin is told."""
+
+RAMP_CENTRE = 1.0 / 3.0
+"""Mean of x under densities that rise or fall evenly through a bin: where R0 + R1 and R0 - R1 are known."""
 
 
 class Bend(NamedTuple):

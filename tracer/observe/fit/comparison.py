@@ -270,7 +270,7 @@ def _result(
     products: Sequence[str],
     how: Sequence[str],
     fitted: Fitted,
-    warnings: list[str],
+    warnings: Sequence[str],
 ) -> Comparison:
     likelihood, best = fitted.scan.likelihood, fitted.best
     model, slots = likelihood.model(best), likelihood.slots
@@ -280,23 +280,11 @@ def _result(
     labels = [slot.name for slot in slots]
     correlations = correlations_of(fitted.scan, labels)
     names = [one.name for one in likelihood.components]
-    rates = {
-        names[s.component]: e
-        for s, e in zip(slots, fitted.ranges, strict=True)
-        if s.key is None and s.component is not None
-    }
-    parameters: dict[str, dict[str, Estimate]] = {}
-    words = list(warnings)
-    for slot, estimate in zip(slots, fitted.ranges, strict=True):
-        if slot.key is not None and slot.component is not None:
-            parameters.setdefault(names[slot.component], {})[slot.key] = estimate
-            read, unit = as_read(slot.key, estimate)
-            low, high = (end * read.best / estimate.best for end in (math.exp(slot.low), math.exp(slot.high)))
-            found = at_range(f"'{slot.name}'", read, low, high, unit)
-            words += [found] if found else []
+    by_slot = list(zip(slots, fitted.ranges, strict=True))
+    parameters, at_ends = _parameters(by_slot, names)
     points = _points(spec, profile, likelihood, model)
     loud = loud_model(np.sqrt(np.diag(likelihood.model_covariance)), profile.sigma)
-    background = next((e for s, e in zip(slots, fitted.ranges, strict=True) if s.component is None), None)
+    background = next((estimate for slot, estimate in by_slot if slot.component is None), None)
     free = {n: names[s.component] for n, s in enumerate(slots) if s.key is None and s.component is not None}
     factor = 1.0 / profile.value_factor
     return Comparison(
@@ -304,7 +292,7 @@ def _result(
         products=tuple(products),
         what=spec.profile.quantity + (f" of {spec.profile.line}" if spec.profile.line else " density"),
         view=f"seen {view_of(spec.view).words}, by {' and '.join(dict.fromkeys(how))}",
-        rates=rates,
+        rates={name: fitted.ranges[n] for n, name in free.items()},
         held_rates={one.name: one.held_rate for one in likelihood.components if one.held_rate is not None},
         parameters=parameters,
         background=None if background is None else Estimate(*(factor * end for end in background)),
@@ -321,8 +309,25 @@ def _result(
             *told_apart(fitted.absences, correlations, free),
             *entangled_parameters(correlations),
         ),
-        warnings=(*words, *([loud] if loud else [])),
+        warnings=(*warnings, *at_ends, *([loud] if loud else [])),
     )
+
+
+def _parameters(
+    by_slot: Sequence[tuple[Slot, Estimate]], names: Sequence[str]
+) -> tuple[dict[str, dict[str, Estimate]], list[str]]:
+    """Return the parameters of laws by the component's name and their own, and warnings of those that meet an end."""
+    parameters: dict[str, dict[str, Estimate]] = {}
+    warnings = []
+    for slot, estimate in by_slot:
+        if slot.key is None or slot.component is None:
+            continue
+        parameters.setdefault(names[slot.component], {})[slot.key] = estimate
+        read, unit = as_read(slot.key, estimate)
+        low, high = (end * read.best / estimate.best for end in (math.exp(slot.low), math.exp(slot.high)))
+        found = at_range(f"'{slot.name}'", read, low, high, unit)
+        warnings += [found] if found else []
+    return parameters, warnings
 
 
 def _range_ends(calibration: Calibration, names: Sequence[str]) -> RangeEnds:

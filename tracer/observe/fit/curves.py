@@ -110,11 +110,10 @@ class Lawful:
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
         if self._spline is not None:
-            # Written out: a descent asks thousands of times, and a call of the library costs more than the sum.
             step = self._nodes[1] - self._nodes[0]
             place = min(max(int((logs[0] - self._nodes[0]) / step), 0), NODES - 2)
-            x, c = logs[0] - self._nodes[place], self._spline[:, place]
-            return ((c[0] * x + c[1]) * x + c[2]) * x + c[3], ((3.0 * c[0] * x + 2.0 * c[1]) * x + c[2])[None]
+            points, slope = _cubic(self._spline[:, place], logs[0] - self._nodes[place])
+            return points, slope[np.newaxis]
         mean = self._mean(logs)
         slopes = np.empty((len(logs), len(mean)))
         for k in range(len(logs)):
@@ -125,12 +124,12 @@ class Lawful:
     def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at_many` does."""
         if self._spline is None:
-            points, slopes = zip(*map(self.at, logs), strict=True)
-            return np.array(points), np.array(slopes)
+            each = [self.at(one) for one in logs]
+            return np.array([points for points, _ in each]), np.array([slopes for _, slopes in each])
         step = self._nodes[1] - self._nodes[0]
         place = np.clip(((logs[:, 0] - self._nodes[0]) / step).astype(int), 0, NODES - 2)
-        x, c = (logs[:, 0] - self._nodes[place])[:, None], self._spline[:, place]
-        return ((c[0] * x + c[1]) * x + c[2]) * x + c[3], ((3.0 * c[0] * x + 2.0 * c[1]) * x + c[2])[:, None]
+        points, slopes = _cubic(self._spline[:, place], (logs[:, 0] - self._nodes[place])[:, np.newaxis])
+        return points, slopes[:, np.newaxis]
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
@@ -158,3 +157,12 @@ class Lawful:
         except InputError as error:
             words = ", ".join(f"{key} {value:.6g}" for key, value in {**self._held, **values}.items())
             raise InputError(f"{self._law} with {words}: {error}") from None
+
+
+def _cubic(terms: Floats, x: Floats) -> tuple[Floats, Floats]:
+    """Return value and slope at `x` of a cubic whose four `terms` stand highest power first.
+
+    Written out: a descent asks thousands of times, and a call of the library costs more than the sum.
+    """
+    cube, square, straight, constant = terms
+    return ((cube * x + square) * x + straight) * x + constant, (3.0 * cube * x + 2.0 * square) * x + straight

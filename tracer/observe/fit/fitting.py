@@ -40,8 +40,13 @@ class Fitted(NamedTuple):
 def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) -> Fitted:
     """Return the best parameters and their ranges.
 
-    The model's Monte Carlo error follows the rates: fits and errors take turns until they agree, and the ranges are
-    taken with the error at the best.
+    The model's own error, Monte Carlo and bins of launch speed, follows rates and laws: fits and errors take turns
+    until they agree, and calibration and ranges are taken with the error at the best.
+
+    Raises
+    ------
+    InputError
+        Where one better minimum after the other is met, or bins do not cover a law.
     """
     likelihood = Likelihood(data, components, slots)
     known: tuple[Floats, ...] = ()

@@ -82,7 +82,6 @@ class Model(NamedTuple):
     parts: Floats
     background: Floats
     rates: Floats
-    logs: tuple[Floats, ...]
 
     @property
     def total(self) -> Floats:
@@ -130,22 +129,13 @@ class Likelihood:
 
     def model(self, parameters: Floats) -> Model:
         """Return the points of the model."""
-        parts, _, rates, logs = self._parts(parameters)
-        return Model(rates[:, None] * parts, np.full(parts.shape[1], self._level(parameters)), rates, logs)
+        rates = np.array([self._rate(i, parameters) for i in range(len(self.components))])
+        parts = np.array([points for points, _ in self._seen(parameters)])
+        return Model(rates[:, None] * parts, np.full(parts.shape[1], self._level(parameters)), rates)
 
     def residuals(self, parameters: Floats) -> tuple[Floats, Floats]:
         """Return residuals (M,), whose squares sum to -2 ln L, and their slopes (M, P)."""
-        parts, slopes, rates, _ = self._parts(parameters)
-        total = rates @ parts + self._level(parameters)
-        steps = np.zeros((len(self.slots), parts.shape[1]))
-        for i in range(len(self.components)):
-            place = self._rate_places[i]
-            if place is not None:
-                steps[place] = self.slots[place].unit * parts[i]
-            for k, n in enumerate(self._law_places[i]):
-                steps[n] = rates[i] * slopes[i][k]
-        if self._background is not None:
-            steps[self._background] = self.slots[self._background].unit
+        total, steps = self._predicted(parameters, self._seen(parameters))
         keep = self._measured
         away = self._whiten @ (self.data.value[keep] - total[keep])
         turned = -(self._whiten @ steps[:, keep].T)
@@ -164,24 +154,11 @@ class Likelihood:
         parameters : ndarray, shape (D, P)
             The parameters of each.
         """
-        total = np.zeros(values.shape)
-        steps = np.zeros((*parameters.shape, values.shape[1]))
-        for i, one in enumerate(self.components):
-            points, slopes = one.curve.at_many(parameters[:, self._law_places[i]])
-            place = self._rate_places[i]
-            if place is None:
-                rate = np.full((len(parameters), 1), one.held_rate)
-            else:
-                rate = parameters[:, place, None] * self.slots[place].unit
-                steps[:, place] = self.slots[place].unit * points
-            total += rate * points
-            steps[:, self._law_places[i]] = rate[:, :, None] * slopes
-        if self._background is None:
-            total += self.data.level
-        else:
-            unit = self.slots[self._background].unit
-            total += parameters[:, self._background, None] * unit
-            steps[:, self._background] = unit
+        seen = [
+            one.curve.at_many(parameters[:, places])
+            for one, places in zip(self.components, self._law_places, strict=True)
+        ]
+        total, steps = self._predicted(parameters, seen)
         return (values - total) @ self._whiten.T, -(steps @ self._whiten.T)
 
     def noise(self, normal: Floats) -> Floats:
@@ -219,26 +196,48 @@ class Likelihood:
             return self.data.level
         return float(parameters[self._background] * self.slots[self._background].unit)
 
-    def _parts(self, parameters: Floats) -> tuple[Floats, list[Floats], Floats, tuple[Floats, ...]]:
-        """Return points for one atom per second (components, N), their slopes, rates, logarithms of parameters."""
-        parts = np.empty((len(self.components), len(self.data.value)))
-        slopes, rates, logs = [], np.empty(len(self.components)), []
-        for i, one in enumerate(self.components):
-            logs.append(parameters[self._law_places[i]])
-            parts[i], slope = one.curve.at(logs[-1])
-            slopes.append(slope)
-            place = self._rate_places[i]
-            rates[i] = one.held_rate if place is None else parameters[place] * self.slots[place].unit
-        return parts, slopes, rates, tuple(logs)
+    def _rate(self, number: int, parameters: Floats) -> Floats:
+        """Return the rates (...) [s-1] of a component at parameters (..., P)."""
+        place = self._rate_places[number]
+        if place is None:
+            return np.full(parameters.shape[:-1], self.components[number].held_rate)
+        return np.asarray(parameters[..., place] * self.slots[place].unit)
+
+    def _seen(self, parameters: Floats) -> list[tuple[Floats, Floats]]:
+        """Return the points (N,) of each component for one atom per second, and their slopes (K, N)."""
+        return [
+            one.curve.at(parameters[places])
+            for one, places in zip(self.components, self._law_places, strict=True)
+        ]
+
+    def _predicted(self, parameters: Floats, seen: Sequence[tuple[Floats, Floats]]) -> tuple[Floats, Floats]:
+        """Return the points (..., N) of the model at parameters (..., P), and their slopes (..., P, N).
+
+        `seen` are points (..., N) and slopes (..., K, N) of the components' curves there.
+        """
+        total = np.zeros((*parameters.shape[:-1], len(self.data.value)))
+        steps = np.zeros((*parameters.shape, len(self.data.value)))
+        for i, (points, slopes) in enumerate(seen):
+            rate, place = self._rate(i, parameters)[..., None], self._rate_places[i]
+            total += rate * points
+            if place is not None:
+                steps[..., place, :] = self.slots[place].unit * points
+            for k, n in enumerate(self._law_places[i]):
+                steps[..., n, :] = rate * slopes[..., k, :]
+        if self._background is None:
+            return total + self.data.level, steps
+        unit = self.slots[self._background].unit
+        steps[..., self._background, :] = unit
+        return total + unit * parameters[..., self._background, None], steps
 
     def _model_covariance(self, parameters: Floats) -> Floats:
-        _, _, rates, logs = self._parts(parameters)
         whole = np.zeros((len(self.data.value),) * 2)
-        for one, rate, log in zip(self.components, rates, logs, strict=True):
-            whole += rate**2 * covariance(one.curve.replicates_at(log), one.batches)
+        for i, one in enumerate(self.components):
+            rate, logs = self._rate(i, parameters), parameters[self._law_places[i]]
+            whole += rate**2 * covariance(one.curve.replicates_at(logs), one.batches)
             # What the bins' width does has the law's part in common for all points, while the response's part changes
             # from point to point by an unknown size and sign. As if common to all, a fit would take it away with one
             # number; as if each point's own, many points would average it out. Half of it is either.
-            bias = rate * one.curve.bias_at(log)
+            bias = rate * one.curve.bias_at(logs)
             whole += COMMON * np.outer(bias, bias) + (1.0 - COMMON) * np.diag(bias**2)
         return whole

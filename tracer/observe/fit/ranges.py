@@ -22,7 +22,8 @@ MOST_TRIALS = 60
 BETTER = 1e-4
 """Fall of -2 ln L below the best that shows another, better minimum."""
 ON_EDGE = 1e-9
-FAR_STEP = 4.0
+LEAST_STEP, FAR_STEP = 1.2, 4.0
+"""Least and most by which the distance from the best is multiplied while an end lies beyond."""
 OTHER_SHARES = (0.2, 0.8)
 """Places in a law parameter's range from which a profile is looked for again."""
 
@@ -123,23 +124,14 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
     best = float(start[number])
     if sign * (edge - best) <= ON_EDGE:
         return edge
-    spread = scan.covariance[number, number]
-    width = (
-        math.sqrt(spread)
-        if math.isfinite(spread) and spread > 0.0
-        else _first_width(likelihood, number, best)
-    )
     inner, outer = best, math.nan
-    low_root, high_root = math.sqrt(max(0.0, value - scan.value)), math.nan
-    place = best + sign * width * wanted
+    low_root, high_root = _root(scan, value), math.nan
+    place = best + sign * _width(scan, number, best) * wanted
     for _ in range(MOST_TRIALS):
         place = min(place, edge) if sign > 0.0 else max(place, edge)
-        start, root = _profile(scan, number, place, start)
+        start, root = _profile(scan, number, place, start, wanted)
         if abs(root - wanted) < CLOSE:
-            # Other parameters may do better far from where they were on the way here.
-            start, root = _elsewhere(scan, number, start, root)
-            if abs(root - wanted) < CLOSE:
-                return place
+            return place
         if root < wanted:
             if place == edge:
                 return edge
@@ -148,10 +140,8 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
             outer, high_root = place, root
         if math.isnan(outer):
             # sqrt(rise) runs nearly straight with the distance from the best.
-            step = (wanted / root if root > 0.0 else FAR_STEP) * (place - best)
-            place = best + sign * min(
-                max(sign * step * 1.05, 1.2 * sign * (place - best)), FAR_STEP * sign * (place - best)
-            )
+            factor = 1.05 * wanted / root if root > 0.0 else FAR_STEP
+            place = best + min(max(factor, LEAST_STEP), FAR_STEP) * (place - best)
         else:
             share = (wanted - low_root) / (high_root - low_root)
             place = inner + min(max(share, 0.05), 0.95) * (outer - inner)
@@ -160,8 +150,11 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
     return place
 
 
-def _first_width(likelihood: Likelihood, number: int, best: float) -> float:
-    """Return a width to begin with where no curvature tells one: what the parameter alone would have."""
+def _width(scan: Scan, number: int, best: float) -> float:
+    """Return a width to begin with: of the covariance, or where there is none what the parameter alone would have."""
+    likelihood, variance = scan.likelihood, scan.covariance[number, number]
+    if math.isfinite(variance) and variance > 0.0:
+        return math.sqrt(variance)
     at = np.where(np.isfinite(likelihood.low), likelihood.low, 0.0)
     at = np.where(np.isfinite(likelihood.high), 0.5 * (at + likelihood.high), at)
     at[number] = best
@@ -172,23 +165,24 @@ def _first_width(likelihood: Likelihood, number: int, best: float) -> float:
     return float(min(width, 0.25 * span)) if math.isfinite(span) else width
 
 
-def _profile(scan: Scan, number: int, place: float, near: Floats) -> tuple[Floats, float]:
-    """Return the parameters at their best for one of them held at `place`, and the square root of the rise."""
+def _profile(scan: Scan, number: int, place: float, near: Floats, wanted: float) -> tuple[Floats, float]:
+    """Return the parameters at their best for one of them held at `place`, and the square root of the rise.
+
+    Where that is about the root `wanted`, other starts than `near` are tried as well: other parameters may do better
+    far from where they were on the way here.
+    """
     start = near.copy()
     start[number] = place
     held = np.zeros(len(start), dtype=bool)
     held[number] = True
     found, value = _least(scan, [start], held)
-    return found, math.sqrt(max(0.0, value - scan.value))
+    if abs(_root(scan, value) - wanted) < CLOSE:
+        found, value = _least(scan, [found, *other_starts(scan, found, held)], held)
+    return found, _root(scan, value)
 
 
-def _elsewhere(scan: Scan, number: int, near: Floats, root: float) -> tuple[Floats, float]:
-    """Return what `_profile` does for the place of `near`, from other starts as well."""
-    held = np.zeros(len(near), dtype=bool)
-    held[number] = True
-    found, value = _least(scan, [near, *other_starts(scan, near, held)], held)
-    new = math.sqrt(max(0.0, value - scan.value))
-    return (found, new) if new < root else (near, root)
+def _root(scan: Scan, value: float) -> float:
+    return math.sqrt(max(0.0, value - scan.value))
 
 
 def other_starts(scan: Scan, near: Floats, held: NDArray[np.bool_]) -> list[Floats]:
