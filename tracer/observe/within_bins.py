@@ -109,14 +109,14 @@ def bias_bound(doubt: Doubt, edges: Floats, escape: float, responses: Floats, fi
         bend = every[number]
         beside = responses[bend.first - first : bend.first - first + len(bend.chosen)]
         second = np.tensordot(bend.chosen, beside, 2)
-        least = _strict_bound(doubt, number, responses[place], second)
+        bound_of_bin = _strict_bound(doubt, number, responses[place], second)
         if len(bend.others):
             others = np.tensordot(bend.others, beside, 2)
             away = np.abs(others - second).max(axis=0)
             size = np.abs(others).max(axis=0)
             smooth = 5.0 * (abs(doubt.moments[number, 2]) * away + doubt.rest[number] * size)
-            least = np.minimum(least, CARE * smooth)
-        bound += least
+            bound_of_bin = np.minimum(bound_of_bin, CARE * smooth)
+        bound += bound_of_bin
     return bound
 
 
