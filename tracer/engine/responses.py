@@ -125,8 +125,7 @@ def trace_responses(
             key = at[start], half[start]
             tally = tally_views(work.layout, rest)._replace(
                 column_content=found.column_content[key],
-                image_content=found.image_content[key],
-                image_emission=found.image_emission[key],
+                pixels=found.pixels[key],
             )
             fly(world, Launches(*(array[start:stop] for array in launches)), tally, rng)
             # Whoever reads the budget must learn of it.

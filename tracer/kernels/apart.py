@@ -27,7 +27,7 @@ def table_entry(tables, index):
     return tables[index]
 
 
-def _promise(access, own, other):
+def promise(access, own, other):
     """Mark a load or store as one to `own`, which doesn't overlap `other`."""
     module = access.module
     domain = module.add_metadata([ir.MetaDataString(module, "tracer.kernels.apart")])
@@ -40,14 +40,14 @@ def _promise(access, own, other):
     return access
 
 
-def _pointer(context, builder, array_type, array, index):
+def pointer_to(context, builder, array_type, array, index):
     data = context.make_array(array_type)(context, builder, array).data
     return builder.gep(data, [index], inbounds=True)
 
 
 def _loading(own, other):
     def generate(context, builder, signature, arguments):
-        return _promise(builder.load(_pointer(context, builder, signature.args[0], *arguments)), own, other)
+        return promise(builder.load(pointer_to(context, builder, signature.args[0], *arguments)), own, other)
 
     return generate
 
@@ -66,8 +66,8 @@ def _load_table(typing_context, tables, index):
 def _store_lane(typing_context, lanes, index, value):
     def generate(context, builder, signature, arguments):
         array, at, number = arguments
-        place = _pointer(context, builder, signature.args[0], array, at)
-        _promise(builder.store(number, place), LANES, TABLES)
+        place = pointer_to(context, builder, signature.args[0], array, at)
+        promise(builder.store(number, place), LANES, TABLES)
         return context.get_dummy_value()
 
     return types.void(lanes, types.intp, types.float64), generate
@@ -86,3 +86,24 @@ def _compiled_set_lane_value(lanes, index, value):
 @overload(table_entry)
 def _compiled_table_entry(tables, index):
     return lambda tables, index: _load_table(tables, index)
+
+
+def set_lane_bits(lanes, index, whole):
+    """Set `lanes[index]` to the bits of a `whole` number; `index` >= 0."""
+    lanes[index : index + 1].view("int64")[0] = whole
+
+
+@intrinsic
+def _store_bits(typing_context, lanes, index, whole):
+    def generate(context, builder, signature, arguments):
+        array, at, number = arguments
+        place = pointer_to(context, builder, signature.args[0], array, at)
+        promise(builder.store(builder.bitcast(number, ir.DoubleType()), place), LANES, TABLES)
+        return context.get_dummy_value()
+
+    return types.void(lanes, types.intp, types.int64), generate
+
+
+@overload(set_lane_bits)
+def _compiled_set_lane_bits(lanes, index, whole):
+    return lambda lanes, index, whole: _store_bits(lanes, index, whole)

@@ -18,7 +18,8 @@ from tracer.kernels.crossing import (
 )
 from tracer.kernels.dense_output import COEFFICIENTS, CURVE_ZONE, FLOWN, LENGTH, SERIES, START, place_at
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, STRUCK, UNRESOLVED
-from tracer.kernels.lane_step import DOUBTFUL, LANDS, lane_place, lane_rates, try_steps
+from tracer.kernels.lane_rates import lane_rates
+from tracer.kernels.lane_step import DOUBTFUL, LANDS, lane_place, try_steps
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.orbit import SERIES_SIZE, body_in_series, body_on_orbit, keep_body
 from tracer.kernels.shadow import PENUMBRA, shadow_behind, zone_at, zone_beyond

@@ -2,6 +2,8 @@
 
 import math
 
+import numpy as np
+
 from tracer.kernels.apart import lane_value, set_lane_value
 from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.first_guess import rough_angle, rough_arcsine, rough_logarithm
@@ -34,6 +36,7 @@ from tracer.kernels.lanes import (
     SAMPLE,
     SAMPLE_R,
     SAMPLE_VELOCITY,
+    SAMPLES,
     SERIES,
     SEVENTH,
     STAGE_ACCELERATION,
@@ -41,8 +44,13 @@ from tracer.kernels.lanes import (
     STAGE_OTHER,
     START,
     STATE_ROWS,
+    SUM_IONIZED,
+    SUM_LIFE,
+    SUM_LOST,
+    SUM_STEPS,
     TIME,
     VELOCITY,
+    WEIGHT,
     WIDTH,
     Y,
     Z,
@@ -54,6 +62,21 @@ SHORT = 0.5
 
 HALVINGS = 10
 """A longer hazard is halved as often, and the survival squared."""
+
+
+GOLDEN = 0.5 * (math.sqrt(5.0) - 1.0)
+"""Its multiples' fractional parts lie as evenly as those of a number can (Weyl 1916, Math. Ann. 77, 313: memory)."""
+
+
+WAY = 0.25
+"""Way [radii] for each of which a step is sampled once.
+
+Far out, where steps are long and few, more samples cost little and are what single pixels lack; near the ground, where
+nearly all flights are, a second one costs more than it gains.
+"""
+
+MOST_SAMPLES = 16.0
+"""Samples of a step at the most; each costs about a third of the step."""
 
 
 @inlined
@@ -83,18 +106,21 @@ def survival(u):
 
 @kernel
 def sample_steps(lanes, sky, cells):
-    """Sample the flown step of every lane at its part DRAWN, book what the step takes, and go on from its end."""
+    """Sample the flown step of every lane at its part DRAWN of the first of its even parts, and book what it takes."""
     forces, losses, _ = sky
     full_light = forces.light_distance * forces.light_distance
     per_light = losses.ionizing + losses.other_sunlight
+    per_way = 1.0 / (WAY * cells.radius)
     for lane in range(WIDTH):
+        set_lane_value(lanes, SAMPLES + lane, _samples(lanes, lane, per_way))
         _book(lanes, lane, losses, per_light)
+    _sum_up(lanes)
     cells_per_turn = cells.local_time_cells / (2.0 * math.pi)
     rows_per_angle = cells.latitude_cells / math.pi
     per_first = 1.0 / cells.first_altitude
     for lane in range(WIDTH):
         flown = lane_value(lanes, FLOWN + lane)
-        part = flown * lane_value(lanes, DRAWN + lane)
+        part = flown * (lane_value(lanes, DRAWN + lane) / lane_value(lanes, SAMPLES + lane))
         h = lane_value(lanes, LENGTH + lane)
         x = _place(lanes, 0, lane, h, part)
         y = _place(lanes, Y, lane, h, part)
@@ -124,7 +150,37 @@ def sample_steps(lanes, sky, cells):
         )
         set_lane_value(lanes, ROW + lane, (rough_arcsine(z / r) + 0.5 * math.pi) * rows_per_angle)
         set_lane_value(lanes, COLUMN + lane, (rough_angle(x, y) + math.pi) * cells_per_turn)
+
+
+@kernel
+def go_on(lanes):
+    """Go on from the end of every lane's step."""
+    for lane in range(WIDTH):
         _go_on(lanes, lane)
+        _draw_on(lanes, lane)
+
+
+@inlined
+def sample_of(lanes, lane, losses, number):
+    """Return (x, y, z [m], velocity [m s-1], atoms) of a lane's step in its even part of this `number`, from 0."""
+    flown, h = lanes[FLOWN + lane], lanes[LENGTH + lane]
+    samples = lanes[SAMPLES + lane]
+    part = flown * ((number + lanes[DRAWN + lane]) / samples)
+    light = _at(part, 0.0, _integral(lanes, lane, h, LIGHT, STAGE_LIGHT))
+    other = _at(part, 0.0, _integral(lanes, lane, h, OTHER, STAGE_OTHER))
+    per_light = losses.ionizing + losses.other_sunlight
+    hazard = fused(per_light, light, fused(losses.other_everywhere * h, part, other))
+    velocity = (
+        _velocity(lanes, 0, lane, h, part),
+        _velocity(lanes, Y, lane, h, part),
+        _velocity(lanes, Z, lane, h, part),
+    )
+    x, y, z = (
+        _place(lanes, 0, lane, h, part),
+        _place(lanes, Y, lane, h, part),
+        _place(lanes, Z, lane, h, part),
+    )
+    return x, y, z, velocity, lanes[WEIGHT + lane] * (math.exp(-hazard) * flown * h / samples)
 
 
 @kernel
@@ -133,6 +189,7 @@ def book_steps(lanes, sky):
     forces, losses, _ = sky
     per_light = losses.ionizing + losses.other_sunlight
     for lane in range(WIDTH):
+        set_lane_value(lanes, SAMPLES + lane, 1.0)
         _book(lanes, lane, losses, per_light)
     for lane in range(WIDTH):
         duration = lane_value(lanes, FLOWN + lane) * lane_value(lanes, LENGTH + lane)
@@ -141,9 +198,20 @@ def book_steps(lanes, sky):
 
 
 @inlined
+def _samples(lanes, lane, per_way):
+    """Return how many samples the step of a lane is worth: one for each `WAY` that it takes the atom."""
+    dx = lane_value(lanes, END + lane) - lane_value(lanes, START + lane)
+    dy = lane_value(lanes, END + Y + lane) - lane_value(lanes, START + Y + lane)
+    dz = lane_value(lanes, END + Z + lane) - lane_value(lanes, START + Z + lane)
+    ways = math.sqrt(fused(dx, dx, fused(dy, dy, dz * dz))) * per_way
+    return np.floor(min(max(ways, 1.0), MOST_SAMPLES))
+
+
+@inlined
 def _book(lanes, lane, losses, per_light):
     flown = lane_value(lanes, FLOWN + lane)
-    part = flown * lane_value(lanes, DRAWN + lane)
+    samples = lane_value(lanes, SAMPLES + lane)
+    part = flown * (lane_value(lanes, DRAWN + lane) / samples)
     h = lane_value(lanes, LENGTH + lane)
     light = _integral(lanes, lane, h, LIGHT, STAGE_LIGHT)
     other = _integral(lanes, lane, h, OTHER, STAGE_OTHER)
@@ -163,7 +231,8 @@ def _book(lanes, lane, losses, per_light):
     share = losses.ionizing * lit_through / (grown if grown > 0.0 else 1.0)
     duration = flown * h
     _, sampled = survival(before_sample)
-    set_lane_value(lanes, CONTENT + lane, alive * sampled * duration)
+    set_lane_value(lanes, WEIGHT + lane, alive)
+    set_lane_value(lanes, CONTENT + lane, alive * sampled * (duration / samples))
     set_lane_value(lanes, LIFE + lane, alive * duration * (mean + bent / 1.5))
     set_lane_value(lanes, LOST + lane, lost)
     set_lane_value(lanes, IONIZED + lane, lost * share)
@@ -178,6 +247,35 @@ def _go_on(lanes, lane):
         at = row * WIDTH + lane
         stands = lane_value(lanes, START + at)
         set_lane_value(lanes, START + at, lane_value(lanes, END + at) if accepted else stands)
+
+
+@inlined
+def _sum_up(lanes):
+    """Add what the accepted steps take to the sums of their lanes."""
+    for lane in range(WIDTH):
+        accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
+        _add(lanes, SUM_LIFE + lane, lane_value(lanes, LIFE + lane) if accepted else 0.0)
+        _add(lanes, SUM_LOST + lane, lane_value(lanes, LOST + lane) if accepted else 0.0)
+        _add(lanes, SUM_IONIZED + lane, lane_value(lanes, IONIZED + lane) if accepted else 0.0)
+        _add(lanes, SUM_STEPS + lane, 1.0 if accepted else 0.0)
+
+
+@inlined
+def _add(lanes, at, value):
+    set_lane_value(lanes, at, lane_value(lanes, at) + value)
+
+
+@inlined
+def _draw_on(lanes, lane):
+    """Set the part at which the next step is sampled.
+
+    One random number a flight, for each further step moved on by the golden ratio: even for each step, as it must be
+    for unbiased sums, and spread more evenly over the steps of a flight than numbers drawn for each.
+    """
+    drawn = lane_value(lanes, DRAWN + lane) + GOLDEN
+    drawn = drawn - 1.0 if drawn >= 1.0 else drawn
+    accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
+    set_lane_value(lanes, DRAWN + lane, drawn if accepted else lane_value(lanes, DRAWN + lane))
 
 
 @inlined

@@ -1,21 +1,21 @@
-"""What the samples of all lanes leave in the cells, and their steps in the particle budget."""
+"""What the samples of all lanes leave in the cells and the images."""
+
+import math
 
 from numba.extending import overload
 
-from tracer.fate import Fate
 from tracer.kernels.cells import close_layer, column_at, row_at
-from tracer.kernels.compiling import INLINED, field_type, inlined, merged
+from tracer.kernels.compiling import INLINED, field_type, inlined, kernel, merged
 from tracer.kernels.foresight import fetch_early
 from tracer.kernels.host import past_host, without_host
+from tracer.kernels.lane_sample import sample_of
 from tracer.kernels.lanes import (
     ACCEPTED,
     CELL,
     COLUMN,
     CONTENT,
-    IONIZED,
     LAYER,
-    LIFE,
-    LOST,
+    LIT,
     PARTIAL,
     RECEDING,
     RECEIVED,
@@ -23,27 +23,30 @@ from tracer.kernels.lanes import (
     SAMPLE,
     SAMPLE_R,
     SAMPLE_VELOCITY,
+    SAMPLES,
     WIDTH,
     Y,
     Z,
 )
 from tracer.kernels.lines import beyond_tables, line_value
-from tracer.kernels.scoring import count_in_cell, count_in_images
+from tracer.kernels.motion import radial_velocity
+from tracer.kernels.scoring import count_in_cell, count_in_images, score_sample
 from tracer.kernels.shadow import PENUMBRA, lit_fraction, zone_at
 
 
 @merged
 def score_lanes(world, tally, lanes, shine):
-    """Count the sample of every lane that made a step; `shine` (line,) is room for each line's photons."""
-    _find_cells(world, tally, lanes, shine.shape[0])
+    """Count the first sample of every lane that made a step, and return whether any step is worth more of them.
+
+    `shine` (line,) is room for each line's photons.
+    """
+    more = 0.0
+    _find_cells(world, tally, lanes)
     tables, sky = world.light.line_tables, world.light.conditions.sky
     cells = world.cells
     for lane in range(WIDTH):
         if lanes[ACCEPTED + lane] == 0.0:
             continue
-        tally.life[0] += lanes[LIFE + lane]
-        tally.ledger[Fate.IONIZED] += lanes[IONIZED + lane]
-        tally.ledger[Fate.OTHER_LOSS] += lanes[LOST + lane] - lanes[IONIZED + lane]
         x, y, z = lanes[SAMPLE + lane], lanes[SAMPLE + Y + lane], lanes[SAMPLE + Z + lane]
         content, received = lanes[CONTENT + lane], lanes[RECEIVED + lane]
         if lanes[PARTIAL + lane] > 0.0:
@@ -61,10 +64,39 @@ def score_lanes(world, tally, lanes, shine):
             at = SAMPLE_VELOCITY + lane
             velocity = (lanes[at], lanes[at + Y], lanes[at + Z])
             count_in_images(tally, world.images, cells.radius, x, y, z, velocity, content, shine)
+        more = max(more, lanes[SAMPLES + lane])
+    return more > 1.0
+
+
+@kernel
+def score_further(world, tally, lanes, shine):
+    """Count the further samples of steps that are worth more than one."""
+    for lane in range(WIDTH):
+        if lanes[SAMPLES + lane] > 1.0 and lanes[ACCEPTED + lane] > 0.0:
+            for number in range(1, int(lanes[SAMPLES + lane])):
+                _score_one(world, tally, lanes, lane, number, shine)
+
+
+@inlined
+def _score_one(world, tally, lanes, lane, number, shine):
+    tables, sky = world.light.line_tables, world.light.conditions.sky
+    x, y, z, velocity, content = sample_of(lanes, lane, sky.losses, number)
+    forces = sky.forces
+    sx = forces.distance - x
+    seen = seen_part(sky, x, y, z) if lanes[PARTIAL + lane] > 0.0 else lanes[LIT + lane]
+    received = seen * forces.light_distance * forces.light_distance / (sx * sx + y * y + z * z)
+    receding = radial_velocity(forces, x, y, z, velocity[0], velocity[1], velocity[2])
+    for line in range(shine.shape[0]):
+        shine[line] = received * line_value(tables, line, receding)
+    if beyond_tables(tables, receding):
+        tally.beyond[0] += content
+    r = math.sqrt(x * x + y * y + z * z)
+    ionizing = received * sky.losses.ionizing
+    score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)
 
 
 @merged
-def _find_cells(world, tally, lanes, lines):
+def _find_cells(world, tally, lanes):
     """Set the cell of every lane's sample, and have what will be added to in it fetched."""
     cells, ionizing = world.cells, world.light.conditions.sky.losses.ionizing
     for lane in range(WIDTH):
@@ -79,11 +111,9 @@ def _find_cells(world, tally, lanes, lines):
             column = column_at(cells, lanes[COLUMN + lane], x, y)
             lanes[CELL + Y + lane] = row
             lanes[CELL + Z + lane] = column
-            fetch_early(tally.content, (layer, row, column))
+            fetch_early(tally.gas, (layer, row, column, 0))
             if ionizing > 0.0:
                 fetch_early(tally.ionized, (layer, row, column))
-            for line in range(lines):
-                fetch_early(tally.emission, (line, layer, row, column))
 
 
 @inlined

@@ -9,7 +9,7 @@ import math
 import numpy as np
 from numba.extending import overload
 
-from tracer.kernels.apart import lane_value, set_lane_value, table_entry
+from tracer.kernels.apart import lane_value, set_lane_value
 from tracer.kernels.compiling import INLINED, inlined, kernel
 from tracer.kernels.dormand_prince import (
     NODES,
@@ -34,8 +34,6 @@ from tracer.kernels.host import (
     nearest,
     past_host,
     shade_and_nearness,
-    with_host_pull,
-    with_slip,
     without_host,
 )
 from tracer.kernels.host import PARTIAL as PARTLY_SHADED
@@ -45,12 +43,22 @@ from tracer.kernels.integrated_flight import (
     longest_step,
     longest_step_in_penumbra,
 )
+from tracer.kernels.lane_rates import (
+    arrive,
+    extra_push,
+    grid_of,
+    lane_vector,
+    leave,
+    nearness,
+    set_lane_vector,
+)
 from tracer.kernels.lanes import (
     ACCELERATION,
     ACCEPTED,
     APART,
     CHANGE,
     END,
+    ERROR_SQUARED,
     EXTRA,
     FIFTH,
     FLAGGED,
@@ -62,11 +70,14 @@ from tracer.kernels.lanes import (
     LENGTH,
     LIGHT,
     LIT,
+    MOST_GRIDS,
     NEARNESS,
     OTHER,
     OTHER_ERROR,
     PARTIAL,
     PER_ALLOWED,
+    PER_R3,
+    PLACE,
     QUARTIC,
     SECOND,
     SERIES,
@@ -90,9 +101,7 @@ from tracer.kernels.lanes import (
     Y,
     Z,
 )
-from tracer.kernels.lines import HEADING, HEADING_SIZE, line_value
-from tracer.kernels.motion import radial_velocity
-from tracer.kernels.orbit import body_in_series, longest_on_orbit, set_series, with_turning_growth
+from tracer.kernels.orbit import body_in_series, longest_on_orbit, set_series
 from tracer.kernels.shadow import (
     ANTUMBRA,
     NO_SHADOW,
@@ -104,17 +113,11 @@ from tracer.kernels.shadow import (
 from tracer.kernels.shadow import LIT as FULL_LIGHT
 from tracer.kernels.step_control import far_out, step_change
 
-MOST_GRIDS = 2
-"""Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
-
 LANDS, DOUBTFUL = 1.0, 2.0
 """Flags of a step: it starts well above ground, ends below it and meets nothing else; it wants to be looked at."""
 
 ALOFT = 1.0 + 1e-6
 """Square of the least distance from the centre, in radii, that is well above ground."""
-
-COUNTING = 6755399441055744.0
-"""1.5 2^52: the sum of it and a small number holds that number, rounded to a whole one, in its last bits."""
 
 
 @kernel
@@ -123,7 +126,7 @@ def try_steps(lanes, sky, tables):
 
     Lanes without a flight make a step of no length.
     """
-    numbers = _numbers(sky, tables)
+    grids = grid_of(tables, 0), grid_of(tables, 1)
     shade_lanes(lanes, sky.forces)
     apart = prepare_apart(lanes, sky, tables)
     _choose_lengths(lanes, sky.forces)
@@ -133,26 +136,24 @@ def try_steps(lanes, sky, tables):
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
-        v2 = second(v, h, a)
-        _set_stage(lanes, SECOND + lane, v2, _rates_at(lanes, lane, numbers, tables, 1, second(p, h, v), v2))
+        arrive(lanes, SECOND, lane, sky, grids, 1, second(p, h, v), second(v, h, a))
+    leave(lanes, SECOND, sky, tables, 1)
     if apart > 0:
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
-        v3 = third(v, h, a, a2)
-        _set_stage(
-            lanes, THIRD + lane, v3, _rates_at(lanes, lane, numbers, tables, 2, third(p, h, v, v2), v3)
-        )
+        arrive(lanes, THIRD, lane, sky, grids, 2, third(p, h, v, v2), third(v, h, a, a2))
+    leave(lanes, THIRD, sky, tables, 2)
     if apart > 0:
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3, a3 = _stage(lanes, THIRD + lane)
-        v4 = fourth(v, h, a, a2, a3)
         p4 = fourth(p, h, v, v2, v3)
-        _set_stage(lanes, FOURTH + lane, v4, _rates_at(lanes, lane, numbers, tables, 3, p4, v4))
+        arrive(lanes, FOURTH, lane, sky, grids, 3, p4, fourth(v, h, a, a2, a3))
+    leave(lanes, FOURTH, sky, tables, 3)
     if apart > 0:
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
@@ -160,9 +161,9 @@ def try_steps(lanes, sky, tables):
         v2, a2 = _stage(lanes, SECOND + lane)
         v3, a3 = _stage(lanes, THIRD + lane)
         v4, a4 = _stage(lanes, FOURTH + lane)
-        v5 = fifth(v, h, a, a2, a3, a4)
         p5 = fifth(p, h, v, v2, v3, v4)
-        _set_stage(lanes, FIFTH + lane, v5, _rates_at(lanes, lane, numbers, tables, 4, p5, v5))
+        arrive(lanes, FIFTH, lane, sky, grids, 4, p5, fifth(v, h, a, a2, a3, a4))
+    leave(lanes, FIFTH, sky, tables, 4)
     if apart > 0:
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
@@ -171,9 +172,9 @@ def try_steps(lanes, sky, tables):
         v3, a3 = _stage(lanes, THIRD + lane)
         v4, a4 = _stage(lanes, FOURTH + lane)
         v5, a5 = _stage(lanes, FIFTH + lane)
-        v6 = sixth(v, h, a, a2, a3, a4, a5)
         p6 = sixth(p, h, v, v2, v3, v4, v5)
-        _set_stage(lanes, SIXTH + lane, v6, _rates_at(lanes, lane, numbers, tables, 5, p6, v6))
+        arrive(lanes, SIXTH, lane, sky, grids, 5, p6, sixth(v, h, a, a2, a3, a4, a5))
+    leave(lanes, SIXTH, sky, tables, 5)
     if apart > 0:
         stage = look_apart(lanes, apart, stage, sky, tables)
     for lane in range(WIDTH):
@@ -186,43 +187,22 @@ def try_steps(lanes, sky, tables):
         turned = solution(h, a, a3, a4, a5, a6)
         v7 = (v[0] + turned[0], v[1] + turned[1], v[2] + turned[2])
         p7 = (p[0] + moved[0], p[1] + moved[1], p[2] + moved[2])
-        rates = _rates_at(lanes, lane, numbers, tables, 6, p7, v7)
-        _set_stage(lanes, SEVENTH + lane, v7, rates)
-        _set_vector(lanes, GROWTH + lane, moved)
-        _set_vector(lanes, GROWTH + VELOCITY + lane, turned)
-        _set_vector(lanes, END + lane, p7)
-        _set_vector(lanes, END + VELOCITY + lane, v7)
-        _set_vector(lanes, END + ACCELERATION + lane, rates[0])
-        set_lane_value(lanes, END + LIGHT + lane, rates[1])
-        set_lane_value(lanes, END + OTHER + lane, rates[2])
-        set_lane_value(lanes, END + NEARNESS + lane, rates[3])
+        arrive(lanes, SEVENTH, lane, sky, grids, 6, p7, v7)
+        set_lane_vector(lanes, GROWTH + lane, moved)
+        set_lane_vector(lanes, GROWTH + VELOCITY + lane, turned)
+        set_lane_vector(lanes, END + lane, p7)
+        set_lane_vector(lanes, END + VELOCITY + lane, v7)
+    leave(lanes, SEVENTH, sky, tables, 6)
+    for lane in range(WIDTH):
+        set_lane_vector(
+            lanes, END + ACCELERATION + lane, lane_vector(lanes, SEVENTH + STAGE_ACCELERATION + lane)
+        )
+        set_lane_value(lanes, END + LIGHT + lane, lane_value(lanes, SEVENTH + STAGE_LIGHT + lane))
+        set_lane_value(lanes, END + OTHER + lane, lane_value(lanes, SEVENTH + STAGE_OTHER + lane))
+        per_r3 = lane_value(lanes, PER_R3 + lane)
+        set_lane_value(lanes, END + NEARNESS + lane, nearness(lane_vector(lanes, PLACE + lane), per_r3))
     _judge(lanes, sky)
     _flag(lanes, sky)
-
-
-@kernel
-def lane_rates(sky, tables, zone, body, position, velocity):
-    """Return ((ax, ay, az) [m s-2], light, other losses [s-1], 1/r [m-1]) of an atom in shadow `zone` of `body`.
-
-    As lanes do. Light is relative to full light at `light_distance`; other losses neither go with it nor are constant.
-    """
-    x, y, z = position
-    lit = past_host(body, lit_fraction(sky.shadow, zone, x, y, z, body.distance), x, y, z)
-    extra = extra_push(body, tables, position, velocity)
-    return _rates(_numbers(sky, tables), tables, lit, extra, body, position, velocity)
-
-
-@kernel
-def extra_push(body, tables, position, velocity):
-    """Return the acceleration [m s-2] at 1 au by lines beyond the first `MOST_GRIDS` tables."""
-    push = 0.0
-    if int(tables[0]) <= MOST_GRIDS:
-        return push
-    x, y, z = position
-    receding = radial_velocity(body, x, y, z, velocity[0], velocity[1], velocity[2])
-    for line in range(MOST_GRIDS, int(tables[0])):
-        push += line_value(tables, line, receding)
-    return push
 
 
 @kernel
@@ -298,109 +278,20 @@ def _moved(lanes, stage, lane, start, slope, later):
 
 
 @inlined
-def _numbers(sky, tables):
-    return sky, _grid(tables, 0), _grid(tables, 1)
-
-
-@inlined
-def _grid(tables, line):
-    """Return (first velocity, steps per velocity, last step, entry) of a line's table, that of no line if none."""
-    if line < int(tables[0]):
-        heading = HEADING + HEADING_SIZE * line
-        return tables[heading], tables[heading + 1], tables[heading + 2], np.int64(tables[heading + 3])
-    return 0.0, 0.0, 0.0, np.int64(tables.shape[0] - 2)
-
-
-@inlined
-def _pushed(tables, grid, velocity):
-    """Return what `lines.line_value` does, in operations that several lanes can share."""
-    first, per_velocity, last, entry = grid
-    step = (velocity - first) * per_velocity
-    step = step if step > 0.0 else 0.0
-    step = last if step > last else step
-    # Rounded to the knot before, or at a knot to either: the straight lines that meet there agree.
-    counted = np.float64((step - 0.5) + COUNTING).view(np.int64) - np.float64(COUNTING).view(np.int64)
-    knot = entry + 2 * counted
-    return fused(step, table_entry(tables, knot + 1), table_entry(tables, knot))
-
-
-@inlined
-def _rates_at(lanes, lane, numbers, tables, node, position, velocity):
-    lit, extra = lane_value(lanes, LIT + lane), lane_value(lanes, EXTRA + lane)
-    since_start = NODES[node] * lane_value(lanes, LENGTH + lane)
-    body = body_in_series(numbers[0].forces, lanes, SERIES + lane, WIDTH, since_start)
-    return _rates(numbers, tables, lit, extra, body, position, velocity)
-
-
-@inlined
-def _rates(numbers, tables, lit, extra, body, position, velocity):
-    """Return what `lane_rates` does where the part `lit` of the Sun is seen and the lines left out push by `extra`."""
-    sky, one_grid, other_grid = numbers
-    forces, losses, _ = sky
-    x, y, z = position
-    vx, vy, vz = velocity
-    w = body.turning
-    r2 = fused(x, x, fused(y, y, z * z))
-    sx = body.distance - x
-    s2 = fused(sx, sx, fused(y, y, z * z))
-    r3 = r2 * math.sqrt(r2)
-    # One division for both distances.
-    inverse = 1.0 / (r3 * s2)
-    per_s2 = r3 * inverse
-    per_r3 = s2 * inverse
-    pull = forces.gm * per_r3
-    per_s = math.sqrt(s2) * per_s2
-    ux, uy, uz = sx * per_s, y * per_s, z * per_s
-    dilution = (forces.light_distance * forces.light_distance) * per_s2
-    light = lit * dilution
-    receding = fused(uy, vy, fused(uz, vz, -(ux * (vx - body.radial_velocity))))
-    receding = with_slip(body, receding, uy)
-    push = _pushed(tables, one_grid, receding) + _pushed(tables, other_grid, receding)
-    sunward = fused(forces.tide_gm, per_s2, -(light * ((forces.push + extra) + push)))
-    stay = w * w - pull
-    level = forces.tide_gm / (body.distance * body.distance)
-    ax = fused(sunward, ux, fused(stay, x, fused(2.0 * w, vy, -level)))
-    ay = fused(stay, y, fused(-2.0 * w, vx, -(sunward * uy)))
-    ax, ay = with_turning_growth(body, ax, ay, x, y)
-    acceleration = with_host_pull(body, ax, ay, -fused(pull, z, sunward * uz), x, y, z)
-    return acceleration, light, fused(lit, losses.other_lit, dilution * losses.other_distance), r2 * per_r3
-
-
-@inlined
 def _begin(lanes, lane):
     """Return the step's length and place, velocity and acceleration at its start."""
     return (
         lane_value(lanes, LENGTH + lane),
-        _vector(lanes, START + lane),
-        _vector(lanes, START + VELOCITY + lane),
-        _vector(lanes, START + ACCELERATION + lane),
+        lane_vector(lanes, START + lane),
+        lane_vector(lanes, START + VELOCITY + lane),
+        lane_vector(lanes, START + ACCELERATION + lane),
     )
-
-
-@inlined
-def _vector(lanes, row):
-    return lane_value(lanes, row), lane_value(lanes, row + Y), lane_value(lanes, row + Z)
-
-
-@inlined
-def _set_vector(lanes, row, vector):
-    set_lane_value(lanes, row, vector[0])
-    set_lane_value(lanes, row + Y, vector[1])
-    set_lane_value(lanes, row + Z, vector[2])
 
 
 @inlined
 def _stage(lanes, row):
     """Return velocity and acceleration of the stage whose vx is at `row`."""
-    return _vector(lanes, row), _vector(lanes, row + STAGE_ACCELERATION)
-
-
-@inlined
-def _set_stage(lanes, row, velocity, rates):
-    _set_vector(lanes, row, velocity)
-    _set_vector(lanes, row + STAGE_ACCELERATION, rates[0])
-    set_lane_value(lanes, row + STAGE_LIGHT, rates[1])
-    set_lane_value(lanes, row + STAGE_OTHER, rates[2])
+    return lane_vector(lanes, row), lane_vector(lanes, row + STAGE_ACCELERATION)
 
 
 @inlined
@@ -438,20 +329,24 @@ def _judge(lanes, sky):
         v5, a5 = _stage(lanes, FIFTH + lane)
         v6, a6 = _stage(lanes, SIXTH + lane)
         v7, a7 = _stage(lanes, SEVENTH + lane)
-        _set_vector(lanes, QUARTIC + lane, quartic(h, v, v3, v4, v5, v6, v7))
-        _set_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
+        set_lane_vector(lanes, QUARTIC + lane, quartic(h, v, v3, v4, v5, v6, v7))
+        set_lane_vector(lanes, QUARTIC + VELOCITY + lane, quartic(h, a, a3, a4, a5, a6, a7))
         light_error = _integrate(lanes, lane, h, LIGHT, STAGE_LIGHT)
         of_hazard = fused(per_light, light_error, lane_value(lanes, OTHER_ERROR + lane))
         per_r = lane_value(lanes, START + NEARNESS + lane)
         v_squared = v[0] * v[0] + v[1] * v[1] + v[2] * v[2]
         body = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
-        x, y, z = _vector(lanes, START + lane)
+        x, y, z = lane_vector(lanes, START + lane)
         per_centre, per_far = nearest(body, forces.radius, per_r, x, y, z)
         squared = (lane_value(lanes, PER_ALLOWED + lane) * far_out(forces.radius, per_far)) * (
             _squared_error(h, v, v3, v4, v5, v6, v7) * (per_centre * per_centre)
             + _squared_error(h, a, a3, a4, a5, a6, a7) / fused(forces.gm, per_r, v_squared)
             + of_hazard * of_hazard
         )
+        set_lane_value(lanes, ERROR_SQUARED + lane, squared)
+    # Apart, since what a change takes waits on itself: here the processor is at work on many lanes at a time.
+    for lane in range(WIDTH):
+        squared, h = lane_value(lanes, ERROR_SQUARED + lane), lane_value(lanes, LENGTH + lane)
         accepted = squared <= 1.0
         change = step_change(squared)
         flown = 1.0 if accepted & (lane_value(lanes, STANDING + lane) == FLYING) else 0.0
@@ -482,10 +377,10 @@ def _flag(lanes, sky):
     highest = forces.outer_radius * forces.outer_radius
     edges = shadow.kind != NO_SHADOW
     for lane in range(WIDTH):
-        x, y, z = _vector(lanes, START + lane)
-        vx, vy, vz = _vector(lanes, START + VELOCITY + lane)
-        end_x, end_y, end_z = _vector(lanes, END + lane)
-        end_vx, end_vy, end_vz = _vector(lanes, END + VELOCITY + lane)
+        x, y, z = lane_vector(lanes, START + lane)
+        vx, vy, vz = lane_vector(lanes, START + VELOCITY + lane)
+        end_x, end_y, end_z = lane_vector(lanes, END + lane)
+        end_vx, end_vy, end_vz = lane_vector(lanes, END + VELOCITY + lane)
         r2 = x * x + y * y + z * z
         end_r2 = end_x * end_x + end_y * end_y + end_z * end_z
         climb = x * vx + y * vy + z * vz
@@ -544,12 +439,12 @@ def _squared_error(h, k1, k3, k4, k5, k6, k7):
 def _shade_lanes(lanes, forces):
     for lane in range(WIDTH):
         body = body_in_series(forces, lanes, SERIES + lane, WIDTH, 0.0)
-        x, y, z = _vector(lanes, START + lane)
-        vx, vy, vz = _vector(lanes, START + VELOCITY + lane)
+        x, y, z = lane_vector(lanes, START + lane)
+        vx, vy, vz = lane_vector(lanes, START + VELOCITY + lane)
         shade, per_way = shade_and_nearness(body.host, x, y, z)
         v2 = approach(body.host, vx * vx + vy * vy + vz * vz)
         set_lane_value(lanes, SHADE + lane, shade)
-        a = _vector(lanes, START + ACCELERATION + lane)
+        a = lane_vector(lanes, START + ACCELERATION + lane)
         set_lane_value(lanes, HOST_STEP + lane, longest_step(per_way, v2, a))
 
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from tracer.kernels.orbit import SERIES_SIZE
 
-WIDTH = 16
+WIDTH = 32
 """Number of lanes; known when a loop is compiled, and large enough not to be unrolled before it is vectorised."""
 
 Y, Z = WIDTH, 2 * WIDTH
@@ -25,6 +25,9 @@ STAGE_ACCELERATION, STAGE_LIGHT, STAGE_OTHER = (rows * WIDTH for rows in (3, 6, 
 """From the row of a stage's vx to those of its ax, its light and its other losses."""
 
 STAGE_ROWS = 8
+
+MOST_GRIDS = 2
+"""Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
 
 _ROWS = (
     # The flight as it stands, and as it will after the step that was tried.
@@ -47,7 +50,7 @@ _ROWS = (
     ("LEAST", 1),
     # The step that was tried: its length [s]; 1 where only part of the Sun is seen; the part that is; the push of lines
     # beyond the first tables [m s-2]; 1 where age ends it, where it is accepted, where it needs a closer look; the
-    # factor to the next; the part of it that is flown.
+    # factor to the next; the square of its error over what is allowed; the part of it that is flown.
     ("LENGTH", 1),
     ("PARTIAL", 1),
     ("LIT", 1),
@@ -56,6 +59,7 @@ _ROWS = (
     ("ACCEPTED", 1),
     ("FLAGGED", 1),
     ("CHANGE", 1),
+    ("ERROR_SQUARED", 1),
     ("FLOWN", 1),
     # Lanes that are looked at one by one, in each stage or after it, as many as there are.
     ("APART", 1),
@@ -66,14 +70,27 @@ _ROWS = (
     ("FIFTH", STAGE_ROWS),
     ("SIXTH", STAGE_ROWS),
     ("SEVENTH", STAGE_ROWS),
+    # A stage: its place; 1/r^3 [m-3], 1/s^2 [m-2], 1/s [m-1], s the distance from the Sun; for each table of pushing
+    # lines how many steps from its first knot, the bits of the straight line's entry, and the push.
+    ("PLACE", 3),
+    ("PER_R3", 1),
+    ("PER_S2", 1),
+    ("PER_S", 1),
+    ("LINE_STEP", MOST_GRIDS),
+    ("LINE_ENTRY", MOST_GRIDS),
+    ("LINE_PUSH", MOST_GRIDS),
     # Growth of place, velocity and the integrals of light and other losses over the whole step; the quartic
     # coefficients of the same.
     ("GROWTH", STAGE_ROWS),
     ("QUARTIC", STAGE_ROWS),
     # The error of the other losses; stays 0, as do their growth and quartic coefficient, where they don't vary.
     ("OTHER_ERROR", 1),
-    # The sample: an even random number; place; distance from the centre; atoms; light received; radial velocity from
-    # the Sun; the cells, counted with fractions.
+    # How many samples the step is worth; the weight at its start [s-1].
+    ("SAMPLES", 1),
+    ("WEIGHT", 1),
+    # The first sample: its place in the first even part of the step, from 0 to 1, which further samples have in theirs,
+    # even and random; place; distance from the centre; atoms; light received; radial velocity from the Sun; the cells,
+    # counted with fractions.
     ("DRAWN", 1),
     ("SAMPLE", 3),
     ("SAMPLE_R", 1),
@@ -89,6 +106,12 @@ _ROWS = (
     ("LOST", 1),
     ("IONIZED", 1),
     ("LIFE", 1),
+    # The same summed over accepted steps, entered in the budget when all flights have ended; the number of the steps,
+    # counted at the end of a slice.
+    ("SUM_LOST", 1),
+    ("SUM_IONIZED", 1),
+    ("SUM_LIFE", 1),
+    ("SUM_STEPS", 1),
     # Where the body moves: the series of its distance about the step's start, and the host's phase there.
     ("SERIES", SERIES_SIZE),
     # The sample's velocity in the Sun-fixed frame.
@@ -127,6 +150,7 @@ LAST = _FIRST["LAST"]
 ACCEPTED = _FIRST["ACCEPTED"]
 FLAGGED = _FIRST["FLAGGED"]
 CHANGE = _FIRST["CHANGE"]
+ERROR_SQUARED = _FIRST["ERROR_SQUARED"]
 FLOWN = _FIRST["FLOWN"]
 APART = _FIRST["APART"]
 SECOND = _FIRST["SECOND"]
@@ -135,9 +159,18 @@ FOURTH = _FIRST["FOURTH"]
 FIFTH = _FIRST["FIFTH"]
 SIXTH = _FIRST["SIXTH"]
 SEVENTH = _FIRST["SEVENTH"]
+PLACE = _FIRST["PLACE"]
+PER_R3 = _FIRST["PER_R3"]
+PER_S2 = _FIRST["PER_S2"]
+PER_S = _FIRST["PER_S"]
+LINE_STEP = _FIRST["LINE_STEP"]
+LINE_ENTRY = _FIRST["LINE_ENTRY"]
+LINE_PUSH = _FIRST["LINE_PUSH"]
 GROWTH = _FIRST["GROWTH"]
 QUARTIC = _FIRST["QUARTIC"]
 OTHER_ERROR = _FIRST["OTHER_ERROR"]
+SAMPLES = _FIRST["SAMPLES"]
+WEIGHT = _FIRST["WEIGHT"]
 DRAWN = _FIRST["DRAWN"]
 SAMPLE = _FIRST["SAMPLE"]
 SAMPLE_R = _FIRST["SAMPLE_R"]
@@ -151,6 +184,10 @@ CELL = _FIRST["CELL"]
 LOST = _FIRST["LOST"]
 IONIZED = _FIRST["IONIZED"]
 LIFE = _FIRST["LIFE"]
+SUM_LOST = _FIRST["SUM_LOST"]
+SUM_IONIZED = _FIRST["SUM_IONIZED"]
+SUM_LIFE = _FIRST["SUM_LIFE"]
+SUM_STEPS = _FIRST["SUM_STEPS"]
 SERIES = _FIRST["SERIES"]
 SAMPLE_VELOCITY = _FIRST["SAMPLE_VELOCITY"]
 SHADE = _FIRST["SHADE"]
@@ -164,6 +201,8 @@ def new_lanes() -> np.ndarray:
     """Return lanes without flights, their numbers such as no formula stumbles over."""
     lanes = np.ones(LANES_SIZE)
     lanes[STANDING : STANDING + WIDTH] = VACANT
-    for first in (EXTRA, GROWTH + STAGE_OTHER, QUARTIC + STAGE_OTHER, OTHER_ERROR):
+    pushes = [LINE_PUSH + line * WIDTH for line in range(MOST_GRIDS)]
+    others = [GROWTH + STAGE_OTHER, QUARTIC + STAGE_OTHER, OTHER_ERROR]
+    for first in [EXTRA, *pushes, *others, SUM_LIFE, SUM_LOST, SUM_IONIZED, SUM_STEPS]:
         lanes[first : first + WIDTH] = 0.0
     return lanes

@@ -19,11 +19,12 @@ from tracer.kernels.compiling import kernel, merged
 class Tally(NamedTuple):
     """Views into one batch's counts; weights are [s-1], samples weight times time [atoms].
 
-    `content` (altitude, latitude, local_time) and `column_content` (latitude, local_time) hold samples, the latter
-    scaled by (R/r)^2; `image_content` is flat over all image planes, `velocity_content` over what those resolved by
-    velocity keep (see `cells.Velocities`). `emission` (line, altitude, latitude, local_time), `image_emission` (line,
-    pixel) and `velocity_emission` (line, as `velocity_content`) hold samples times scattered photons a second,
-    `ionized` (altitude, latitude, local_time) samples times the rate of ionisation. Fluxes (latitude, local_time),
+    `gas` (altitude, latitude, local_time, 1 + lines) and `pixels` (pixel, 1 + lines), flat over all image planes, hold
+    samples and, behind them, samples times the photons a second scattered in each line: side by side, since a sample
+    adds to all of them. `column_content` (latitude, local_time) holds samples scaled by (R/r)^2, `velocity_content`
+    what image planes resolved by velocity keep (see `cells.Velocities`), flat over them, `velocity_emission` (line, as
+    `velocity_content`) the same times photons, `ionized` (altitude, latitude, local_time) samples times the rate of
+    ionisation. Fluxes (latitude, local_time),
     `ledger` (fate) and `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without
     cells where no atom rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond`
     samples beyond the end of a line's table; `struck` the weight that hit the host, without an entry where there is
@@ -31,12 +32,10 @@ class Tally(NamedTuple):
     age.
     """
 
-    content: np.ndarray
+    gas: np.ndarray
     column_content: np.ndarray
-    image_content: np.ndarray
+    pixels: np.ndarray
     velocity_content: np.ndarray
-    emission: np.ndarray
-    image_emission: np.ndarray
     velocity_emission: np.ndarray
     ionized: np.ndarray
     released: np.ndarray
@@ -53,6 +52,26 @@ class Tally(NamedTuple):
     aloft: np.ndarray
     older: np.ndarray
     struck: np.ndarray
+
+    @property
+    def content(self) -> np.ndarray:
+        """Samples in the cells, (altitude, latitude, local_time), a view."""
+        return self.gas[..., 0]
+
+    @property
+    def emission(self) -> np.ndarray:
+        """Samples in the cells times scattered photons a second, (line, altitude, latitude, local_time), a view."""
+        return np.moveaxis(self.gas[..., 1:], -1, 0)
+
+    @property
+    def image_content(self) -> np.ndarray:
+        """Samples in the pixels, (pixel,), a view."""
+        return self.pixels[:, 0]
+
+    @property
+    def image_emission(self) -> np.ndarray:
+        """Samples in the pixels times scattered photons a second, (line, pixel), a view."""
+        return self.pixels[:, 1:].T
 
 
 @merged
@@ -78,13 +97,13 @@ def score_sample(tally, cells, images, x, y, z, r, velocity, content, ionizing, 
 @merged
 def count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine):
     """Count `content` atoms at distance `r` [m] in a cell of the grid and in the column that it belongs to."""
-    tally.content[layer, row, column] += content
+    tally.gas[layer, row, column, 0] += content
     shrink = cells.radius / r
     tally.column_content[row, column] += content * shrink * shrink
     if ionizing > 0.0:
         tally.ionized[layer, row, column] += content * ionizing
     for line in range(shine.shape[0]):
-        tally.emission[line, layer, row, column] += content * shine[line]
+        tally.gas[layer, row, column, 1 + line] += content * shine[line]
 
 
 @merged
@@ -93,9 +112,9 @@ def count_in_images(tally, images, radius, x, y, z, velocity, content, shine):
     for i in range(images.first.shape[0]):
         pixel = image_pixel(images, i, radius, x, y, z)
         if pixel >= 0:
-            tally.image_content[pixel] += content
+            tally.pixels[pixel, 0] += content
             for line in range(shine.shape[0]):
-                tally.image_emission[line, pixel] += content * shine[line]
+                tally.pixels[pixel, 1 + line] += content * shine[line]
             if images.velocities.bins[i] > 0:
                 away = recession(images, i, x, y, velocity)
                 pixels = images.rows[i] * images.columns[i]

@@ -2,20 +2,24 @@
 
 import numpy as np
 
+from tracer.fate import Fate
 from tracer.kernels.arc_flight import fly_arc
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
 from tracer.kernels.lane_flight import end_in_lane, launch_in_lane, step_lanes
-from tracer.kernels.lane_sample import sample_steps
-from tracer.kernels.lane_scoring import score_lanes
+from tracer.kernels.lane_sample import go_on, sample_steps
+from tracer.kernels.lane_scoring import score_further, score_lanes
 from tracer.kernels.lanes import (
-    ACCEPTED,
     ALIVE,
     DRAWN,
     KEPT,
     LEAST,
     STANDING,
+    SUM_IONIZED,
+    SUM_LIFE,
+    SUM_LOST,
+    SUM_STEPS,
     VACANT,
     WIDTH,
 )
@@ -70,19 +74,44 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                     continue
             if lanes[STANDING + lane] != VACANT:
                 if flights == most_flights:
+                    _count_steps(resume)
                     return flights
                 _end_flight(world, resume, tally, lane, rng)
                 flights += 1
-            _begin_flight(world, launches, resume, tally, lane)
+            _begin_flight(world, launches, resume, tally, lane, rng)
         resume.counters[CURSOR] = 0
         step_lanes(lanes, sky, tables, resume.curve)
-        for lane in range(WIDTH):
-            if lanes[ACCEPTED + lane] > 0.0:
-                resume.counters[STEPS] += 1
-                lanes[DRAWN + lane] = rng.random()
         sample_steps(lanes, sky, world.cells)
-        score_lanes(world, tally, lanes, resume.shine)
+        if score_lanes(world, tally, lanes, resume.shine):
+            score_further(world, tally, lanes, resume.shine)
+        go_on(lanes)
+    _count_steps(resume)
+    if resume.counters[ENDED] == launches.weights.shape[0]:
+        _close_books(resume, tally)
     return flights
+
+
+@kernel
+def _count_steps(resume):
+    """Count the steps of all lanes, slice by slice: whole numbers, whose sum is the same wherever slices end."""
+    for lane in range(WIDTH):
+        resume.counters[STEPS] += int(resume.lanes[SUM_STEPS + lane])
+        resume.lanes[SUM_STEPS + lane] = 0.0
+
+
+@merged
+def _close_books(resume, tally):
+    """Enter in the budget what the steps of all lanes took, once their last flights have ended.
+
+    Not slice by slice: sums would be rounded differently where slices end elsewhere.
+    """
+    lanes = resume.lanes
+    for lane in range(WIDTH):
+        tally.life[0] += lanes[SUM_LIFE + lane]
+        tally.ledger[Fate.IONIZED] += lanes[SUM_IONIZED + lane]
+        tally.ledger[Fate.OTHER_LOSS] += lanes[SUM_LOST + lane] - lanes[SUM_IONIZED + lane]
+        for row in (SUM_LIFE, SUM_IONIZED, SUM_LOST):
+            lanes[row + lane] = 0.0
 
 
 @merged
@@ -98,7 +127,7 @@ def _survives_roulette(world, tally, lanes, lane, rng):
 
 
 @merged
-def _begin_flight(world, launches, resume, tally, lane):
+def _begin_flight(world, launches, resume, tally, lane, rng):
     """Launch the lane's atom again, or a new one, or leave the lane vacant if there are no more."""
     atom, lanes = resume.atoms[lane], resume.lanes
     if atom[UNDER_WAY] == 0.0:
@@ -108,6 +137,7 @@ def _begin_flight(world, launches, resume, tally, lane):
         release(world, launches, resume.counters[RELEASED], atom, tally)
         resume.counters[RELEASED] += 1
     lanes[ALIVE + lane] = take_off(atom, tally)
+    lanes[DRAWN + lane] = rng.random()
     lanes[LEAST + lane] = world.roulette.aloft / atom[SURVIVAL]
     light = world.light
     launch_in_lane(

@@ -38,13 +38,12 @@ class BufferLayout(NamedTuple):
 class Responses(NamedTuple):
     """What unit rates of launches into bins of speed leave, by Legendre order of the speed within the bin.
 
-    `column_content` (bin, order, latitude, local_time), `image_content` (bin, order, pixel) and `image_emission`
-    (bin, order, line, pixel) as the fields of these names of a `Tally`, per launch and second.
+    `column_content` (bin, order, latitude, local_time) and `pixels` (bin, order, pixel, 1 + lines) as the fields of
+    these names of a `Tally`, per launch and second.
     """
 
     column_content: Floats
-    image_content: Floats
-    image_emission: Floats
+    pixels: Floats
 
 
 def make_layout(
@@ -65,12 +64,12 @@ def make_layout(
     pixels = sum(plane_size(plane) for plane in planes)
     by_velocity = sum(plane_size(plane) * velocity_sums(plane) for plane in planes)
     cells = (altitudes, *ground)
-    kept = (cells, ground, (pixels,), (by_velocity,), (lines, *cells), (lines, pixels), (lines, by_velocity))
+    kept = ((*cells, 1 + lines), ground, (pixels, 1 + lines), (by_velocity,), (lines, by_velocity))
     fluxes = (ground,) * 5
     at_rest = ground if adsorbing else (0, 0)
     numbers = ((len(Fate),), (1,), (1,), (1,), (1,), (1,), (1,), (int(hosted),))
     bins = (speed_bins, ORDERS)
-    responses = ((*bins, *ground), (*bins, pixels), (*bins, lines, pixels)) if speed_bins else ()
+    responses = ((*bins, *ground), (*bins, pixels, 1 + lines)) if speed_bins else ()
     replicated = sum(prod(shape) for shape in (*responses, *kept))
     return BufferLayout((*kept, cells, *fluxes, at_rest, *numbers), replicated, responses)
 

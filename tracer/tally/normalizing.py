@@ -107,9 +107,9 @@ def response_fields(responses: Responses, grid: Grid, planes: Sequence[ImagePlan
     """Yield the product's responses to unit rates of launches, as `product_fields` does its variables."""
     per_area = (1.0 / cell_area(grid))[:, np.newaxis]
     yield ProductField("vertical_column_response", responses.column_content, per_area, replicated=True)
-    for plane, content, per_pixel in _images(responses.image_content, planes):
+    for plane, content, per_pixel in _images(responses.pixels[..., 0], planes):
         yield ProductField(f"column_response_{plane}", content, per_pixel, replicated=True)
-    by_line = np.moveaxis(responses.image_emission, 2, 0)
+    by_line = np.moveaxis(responses.pixels[..., 1:], -1, 0)
     if len(by_line):
         for plane, content, per_pixel in _images(by_line, planes):
             yield ProductField(

@@ -17,7 +17,7 @@ from tracer.engine.emphasis import with_emphasis
 from tracer.engine.scene import Scene, build_scene
 from tracer.kernels.scoring import Tally
 from tracer.tally.axes import middles
-from tracer.tally.buffer import plane_shape, tally_views
+from tracer.tally.buffer import plane_shape, plane_size, tally_views
 
 Floats = NDArray[np.float64]
 
@@ -56,7 +56,7 @@ def regions(scene: Scene) -> dict[str, Callable[[Tally], Floats]]:
     plane = scene.planes[0]
     far = middles(plane.horizontal_edges) < -15.0 * radius
     return {
-        "tail": lambda tally: tally.image_content.reshape(plane_shape(plane))[:, far].ravel(),
+        "tail": lambda tally: tally.image_content[: plane_size(plane)].reshape(plane_shape(plane))[:, far].ravel(),
         "high": lambda tally: tally.content[high].ravel(),
         "column": lambda tally: tally.column_content[:, day].ravel(),
         "escape": lambda tally: tally.ledger[1:2],

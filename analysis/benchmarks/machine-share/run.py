@@ -78,7 +78,7 @@ def main() -> None:
     conditions = case.work.world.light.conditions
     fresh = new_lanes()
     for lane, state in enumerate(case.states):
-        launch_in_lane(fresh, lane, conditions, DEFAULT_TOLERANCE, 1e6, tuple(map(float, state)))
+        launch_in_lane(fresh, lane, conditions, DEFAULT_TOLERANCE, 0.0, 1e6, tuple(map(float, state)))
     counts = operations(fresh.copy(), conditions.sky, conditions.push_tables)
     total = sum(counts.values()) + counts["multiply-adds"]
     step = seconds_per_step(fresh, conditions.sky, conditions.push_tables)

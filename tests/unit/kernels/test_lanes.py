@@ -13,13 +13,16 @@ from tracer.engine.launching import draw_launches
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
 from tracer.fate import Fate
+from tracer.kernels import lanes as row
 from tracer.kernels.compiling import OPTIONS
 from tracer.kernels.endings import CROSSED, LANDED
 from tracer.kernels.integrated_flight import HAZARDS, PLACE, TIME, fly, new_curve, new_flight, start_flight
-from tracer.kernels.lane_sample import sample_steps, survival
+from tracer.kernels.lane_flight import launch_in_lane, step_lanes
+from tracer.kernels.lane_sample import MOST_SAMPLES, go_on, sample_of, sample_steps, survival
 from tracer.kernels.lane_step import try_steps
 from tracer.kernels.lanes import WIDTH, new_lanes
-from tracer.kernels.resume import ENDED, new_resume
+from tracer.kernels.lookups import look_up_four
+from tracer.kernels.resume import ENDED, STEPS, new_resume
 from tracer.kernels.step_control import inverse_root, step_change
 from tracer.kernels.tracing import trace_slice
 from tracer.tally.buffer import tally_views
@@ -190,6 +193,23 @@ def test_slices_of_any_length_count_the_same(small_light_run_file):
         assert np.array_equal(counted, results[0][1])
 
 
+def test_a_slice_that_stops_has_counted_its_steps(small_light_run_file):
+    # The pilot of far launches, which gives up long lives, weighs them by their steps.
+    scene = build_scene(load_run(small_light_run_file))
+    steps = []
+    for budget in (10**9, 1):
+        work = make_work(scene, 1, 60)
+        launches = draw_launches(scene, scene.releases[0], 60, np.random.default_rng(3), 1.0)
+        tally = tally_views(work.layout, np.zeros(work.layout.size))
+        resume, rng = new_resume(len(scene.lines)), np.random.default_rng(4)
+        trace_slice(work.world, launches, resume, tally, rng, budget)
+        early = resume.counters[STEPS]
+        while resume.counters[ENDED] < 60:
+            trace_slice(work.world, launches, resume, tally, rng, budget)
+        steps.append((early, resume.counters[STEPS]))
+    assert steps[0][1] == steps[1][1] == steps[0][0] > steps[1][0] > WIDTH
+
+
 @pytest.mark.parametrize("hazard", [0.0, 1e-9, 1e-3, 0.3, 0.4999, 0.5, 2.0, 30.0, 500.0])
 def test_survival_of_a_step(hazard):
     mean, left = survival(hazard)
@@ -205,18 +225,98 @@ def test_roots_from_bits():
     assert step_change(math.inf) == step_change(math.nan) == 0.2
 
 
+def test_a_step_is_sampled_once_for_each_of_its_even_parts(tmp_path):
+    """The first sample, taken in all lanes at once, is what `sample_of` gives; all add up to the step's duration."""
+    work = make_work(scene_of(tmp_path, species="Ar", gas=LOSSES), 1, WIDTH)
+    sky, tables = work.world.light.conditions
+    lanes = new_lanes()
+    rng = np.random.default_rng(5)
+    for lane in range(WIDTH):
+        # From near the ground to where steps are long.
+        r = work.scene.body.radius * 1.02 * 1.05**lane
+        place = (r, 0.1 * r, 0.2 * r, 300.0, 1200.0, -400.0)
+        launch_in_lane(lanes, lane, work.world.light.conditions, 1e-3, 0.0, 1e7, place)
+        lanes[row.ALIVE + lane] = 1.0 + lane
+        lanes[row.DRAWN + lane] = rng.random()
+    # The first steps are short everywhere; some lanes' flights end on the way.
+    for _ in range(8):
+        step_lanes(lanes, sky, tables, new_curve())
+        sample_steps(lanes, sky, work.world.cells)
+        go_on(lanes)
+    step_lanes(lanes, sky, tables, new_curve())
+    sample_steps(lanes, sky, work.world.cells)
+    samples = lanes[row.SAMPLES : row.SAMPLES + WIDTH]
+    flown = np.flatnonzero(lanes[row.ACCEPTED : row.ACCEPTED + WIDTH])
+    assert len(flown) > WIDTH // 4
+    assert samples[flown].min() < 4.0 < samples[flown].max() <= MOST_SAMPLES
+    for lane in flown:
+        x, y, z, velocity, content = sample_of(lanes, lane, sky.losses, 0)
+        places = [lanes[row.SAMPLE + axis * WIDTH + lane] for axis in range(3)]
+        velocities = [lanes[row.SAMPLE_VELOCITY + axis * WIDTH + lane] for axis in range(3)]
+        assert (x, y, z) == pytest.approx(places, rel=1e-14)
+        assert velocity == pytest.approx(velocities, rel=1e-12)
+        assert content == pytest.approx(lanes[row.CONTENT + lane], rel=1e-13)
+        contents = [sample_of(lanes, lane, sky.losses, n)[4] for n in range(int(samples[lane]))]
+        # The integral of the survival by its values at even spaces: off by what it loses in one of them.
+        life = lanes[row.LIFE + lane]
+        decay = abs(contents[0] - contents[-1]) + abs(contents[0]) * lanes[row.LENGTH + lane] * 1e-4
+        assert sum(contents) == pytest.approx(life, abs=decay)
+
+
+def test_samples_of_flights_hold_their_residence_time(tmp_path):
+    # All samples lie in the grid, which ends with the domain; without losses their weights add up exactly.
+    _, _, tally, _ = traced(scene_of(tmp_path, gas=LASTING, temperature=6000), 400)
+    assert tally.content.sum() == pytest.approx(tally.life[0], rel=1e-9)
+
+
+def test_samples_of_a_flight_lie_evenly_over_its_steps():
+    # Fractional parts of u + n golden: even for each step, and any few in a row spread over the unit interval.
+    lanes = new_lanes()
+    lanes[row.DRAWN : row.DRAWN + WIDTH] = 0.25
+    lanes[row.ACCEPTED : row.ACCEPTED + WIDTH] = 1.0
+    lanes[row.ACCEPTED] = 0.0
+    drawn = []
+    for _ in range(8):
+        go_on(lanes)
+        drawn.append(lanes[row.DRAWN + 1])
+    assert lanes[row.DRAWN] == 0.25
+    expected = [(0.25 + n * (math.sqrt(5.0) - 1.0) / 2.0) % 1.0 for n in range(1, 9)]
+    assert drawn == pytest.approx(expected, rel=1e-12)
+    assert np.diff(np.sort(drawn)).max() < 0.2
+
+
+def test_lines_looked_up_four_at_a_time():
+    rng = np.random.default_rng(6)
+    tables, lanes = rng.normal(size=60), np.zeros(12)
+    knots = rng.integers(0, 59, 4)
+    lanes[:4] = knots.view(np.float64)
+    lanes[4:8] = rng.uniform(0.0, 30.0, 4)
+    compiled = lanes.copy()
+    look_up_four(lanes, tables, 0, 4, 8)
+    _look_up(compiled, tables)
+    expected = tables[knots] + lanes[4:8] * tables[knots + 1]
+    np.testing.assert_allclose(lanes[8:], expected, rtol=1e-14)
+    np.testing.assert_allclose(compiled[8:], expected, rtol=1e-13, atol=1e-14)
+
+
+@numba.njit
+def _look_up(lanes, tables):
+    look_up_four(lanes, tables, 0, 4, 8)
+
+
 @pytest.mark.skipif(not (FEATURES.get("avx2") and FEATURES.get("fma")), reason="needs x86 with AVX2")
 def test_steps_are_vector_operations(small_light_run_file):
     world = make_work(build_scene(load_run(small_light_run_file)), 1, 1).world
     conditions = world.light.conditions
-    for function, arguments, roots in (
-        (try_steps, (new_lanes(), conditions.sky, conditions.push_tables), 12),
-        (sample_steps, (new_lanes(), conditions.sky, world.cells), 3),
+    for function, arguments, (roots, divisions) in (
+        # Two roots and a division in each of six stages, and in what follows: a loop that is left out shows.
+        (try_steps, (new_lanes(), conditions.sky, conditions.push_tables), (14, 7)),
+        (sample_steps, (new_lanes(), conditions.sky, world.cells), (4, 5)),
     ):
         # Machine code that comes from the cache can't be read.
         compiled = numba.njit(**OPTIONS, _nrt=False)(function.py_func)
         compiled(*arguments)
         text = next(iter(compiled.inspect_asm().values()))
         assert len(re.findall(r"vsqrtpd\s.*ymm", text)) >= roots
-        assert len(re.findall(r"vdivpd\s.*ymm", text)) >= 5
+        assert len(re.findall(r"vdivpd\s.*ymm", text)) >= divisions
         assert len(re.findall(r"vfn?m(?:add|sub)\d+pd\s.*ymm", text)) >= 50
