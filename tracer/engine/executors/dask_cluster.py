@@ -43,6 +43,9 @@ ENVIRONMENT = {"OMP_NUM_THREADS": 1, "MKL_NUM_THREADS": 1, "OPENBLAS_NUM_THREADS
 """Of local workers, in place of the library's own. That has the C library give memory back as soon as it is free, so
 that the system maps every array of launches page by page again: a quarter more time for a batch of arcs."""
 
+SAMPLING_OF_STACKS = "distributed.worker.profile.enabled"
+"""Every process would look at its own stacks a hundred times a second, for a page of the dashboard: some per cent."""
+
 
 class ForeignWorker(TracerError):
     """A worker whose batches would have other last bits."""
@@ -109,7 +112,9 @@ def _libraries() -> Any:
 def _client(distributed: Any, where: str) -> Iterator[Any]:
     if match := LOCAL.fullmatch(where):
         with (
-            import_module("dask").config.set({"distributed.nanny.pre-spawn-environ": ENVIRONMENT}),
+            import_module("dask").config.set(
+                {"distributed.nanny.pre-spawn-environ": ENVIRONMENT, SAMPLING_OF_STACKS: False}
+            ),
             distributed.LocalCluster(
                 n_workers=int(match[1]),
                 threads_per_worker=1,
