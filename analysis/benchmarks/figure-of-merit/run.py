@@ -56,7 +56,9 @@ def regions(scene: Scene) -> dict[str, Callable[[Tally], Floats]]:
     plane = scene.planes[0]
     far = middles(plane.horizontal_edges) < -15.0 * radius
     return {
-        "tail": lambda tally: tally.image_content[: plane_size(plane)].reshape(plane_shape(plane))[:, far].ravel(),
+        "tail": lambda tally: (
+            tally.image_content[: plane_size(plane)].reshape(plane_shape(plane))[:, far].ravel()
+        ),
         "high": lambda tally: tally.content[high].ravel(),
         "column": lambda tally: tally.column_content[:, day].ravel(),
         "escape": lambda tally: tally.ledger[1:2],
