@@ -1,14 +1,30 @@
 """Atoms one after another, so that each one's share of a tally can be read: for few of them, as a pilot flies."""
 
+import numpy as np
+
 from tracer.kernels.compiling import allocating_kernel, kernel
 from tracer.kernels.lanes import WIDTH
 from tracer.kernels.launches import Launches
-from tracer.kernels.resume import ATOM_SIZE, STEPS
+from tracer.kernels.resume import ATOM_SIZE, STEPS, Resume
+from tracer.kernels.scoring import Tally
 from tracer.kernels.snapshot import trace_snapshot
 from tracer.kernels.tracing import trace_arcs, trace_integrated
+from tracer.kernels.world import World
 
 
-def trace_alone(world, launches, chosen, start, resume, buffer, tally, rng, most_flights, found, costs):
+def trace_alone(
+    world: World,
+    launches: Launches,
+    chosen: np.ndarray,
+    start: Resume,
+    resume: Resume,
+    buffer: np.ndarray,
+    tally: Tally,
+    rng: np.random.Generator,
+    most_flights: int,
+    found: np.ndarray,
+    costs: np.ndarray,
+) -> int:
     """Trace launches one by one and return the number of their flights.
 
     Parameters
