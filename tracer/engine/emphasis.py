@@ -15,10 +15,10 @@ from tracer.engine.batches import Work, make_work
 from tracer.engine.launching import make_launches
 from tracer.engine.scene import Release, Scene
 from tracer.fate import Fate
-from tracer.kernels.alone import trace_alone
-from tracer.kernels.resume import new_resume
-from tracer.kernels.scoring import Tally
+from tracer.kernels.launches import Launches
+from tracer.kernels.resume import STEPS, new_resume
 from tracer.kernels.temperature import temperatures
+from tracer.kernels.tracing import trace_slice
 from tracer.physics.release.boxes import Sample, halved, importance
 from tracer.physics.release.even_numbers import DIMENSIONS, PLACE, SPEED, TURN, EvenNumbers
 from tracer.physics.release.strata import Boxes, Strata, one_stratum, shared_out
@@ -131,26 +131,15 @@ def fly_pilot(scene: Scene, release: Release, boxes: Boxes) -> Sample:
     u[:, SPEED] = np.minimum(1.0 - u[:, SPEED], np.nextafter(1.0, 0.0))
     launches = make_launches(scene, release, u, np.ones(len(box)))
     work = make_work(scene._replace(grid=_shells(scene), planes=(), speed_bins=0), PILOT_SEED, 1)
-    buffer = np.zeros(work.layout.size)
-    start, resume = new_resume(len(scene.lines)), new_resume(len(scene.lines))
-    found, costs = np.zeros((len(box), len(buffer))), np.zeros(len(box))
+    scores = np.empty((len(box), SHELLS + 1))
+    costs = np.empty(len(box))
     flown, spent = 0, 0
     while flown < each and (flown < LEAST_PILOT_ROUNDS or spent < PILOT_BUDGET):
-        spent += trace_alone(
-            work.world,
-            launches,
-            np.arange(flown, len(box), each),
-            start,
-            resume,
-            buffer,
-            tally_views(work.layout, buffer),
-            rng,
-            PILOT_FLIGHTS,
-            found,
-            costs,
-        )
+        for i in range(flown, len(box), each):
+            launch = Launches(*(array[i : i + 1] for array in launches))
+            scores[i], costs[i], flights = _fly_alone(work, launch, rng)
+            spent += flights
         flown += 1
-    scores = np.array([_left_far_out(tally_views(work.layout, one)) for one in found])
     done = np.flatnonzero(np.arange(len(box)) % each < flown)
     box, scores = box[done], scores[done]
     return Sample(box, points[done], importance(scores, boxes.probabilities[box] / flown), costs[done])
@@ -163,6 +152,10 @@ def _shells(scene: Scene) -> Grid:
     return Grid(radius, altitude_edges(first, top, SHELLS + 1), latitude_edges(1), local_time_edges(1))
 
 
-def _left_far_out(tally: Tally) -> Floats:
-    """Return what an atom has left in far shells and in escape, (SHELLS + 1,)."""
-    return np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED])
+def _fly_alone(work: Work, launch: Launches, rng: np.random.Generator) -> tuple[Floats, float, int]:
+    """Return what one atom leaves in far shells and in escape, (SHELLS + 1,), its cost in steps, its flights."""
+    tally = tally_views(work.layout, np.zeros(work.layout.size))
+    resume = new_resume(len(work.scene.lines))
+    flights = trace_slice(work.world, launch, resume, tally, rng, PILOT_FLIGHTS)
+    left = np.append(tally.content[1:, 0, 0], tally.ledger[Fate.ESCAPED])
+    return left, flights + float(resume.counters[STEPS]), flights
