@@ -101,7 +101,8 @@ def test_even_emphasis_changes_nothing(small_run_file):
     assert with_emphasis(work) is work
 
 
-def test_product_of_emphasis_far_does_not_depend_on_the_workers(small_light_run_file):
+def test_product_of_emphasis_far_does_not_depend_on_the_workers(small_light_run_file, monkeypatch):
+    monkeypatch.setattr(emphasis, "PILOT_ATOMS", 1024)
     spec = load_run(small_light_run_file, [FAR])
     one, other = run(spec, workers=1), run(spec, workers=3)
     assert one.attrs["data_checksum"] == other.attrs["data_checksum"]
