@@ -22,9 +22,9 @@ def set_lane_value(lanes, index, value):
     lanes[index] = value
 
 
-def table_entry(tables, index):
-    """Return `tables[index]`; `index` >= 0."""
-    return tables[index]
+def set_lane_bits(lanes, index, whole):
+    """Set `lanes[index]` to the bits of a `whole` number; `index` >= 0."""
+    lanes[index : index + 1].view("int64")[0] = whole
 
 
 def promise(access, own, other):
@@ -41,36 +41,36 @@ def promise(access, own, other):
 
 
 def pointer_to(context, builder, array_type, array, index):
+    """Return the pointer to a number of an array, `index` >= 0."""
     data = context.make_array(array_type)(context, builder, array).data
     return builder.gep(data, [index], inbounds=True)
 
 
-def _loading(own, other):
-    def generate(context, builder, signature, arguments):
-        return promise(builder.load(pointer_to(context, builder, signature.args[0], *arguments)), own, other)
-
-    return generate
-
-
 @intrinsic
 def _load_lane(typing_context, lanes, index):
-    return types.float64(lanes, types.intp), _loading(LANES, TABLES)
+    def generate(context, builder, signature, arguments):
+        return promise(
+            builder.load(pointer_to(context, builder, signature.args[0], *arguments)), LANES, TABLES
+        )
+
+    return types.float64(lanes, types.intp), generate
 
 
-@intrinsic
-def _load_table(typing_context, tables, index):
-    return types.float64(tables, types.intp), _loading(TABLES, LANES)
+def _store(context, builder, signature, arguments):
+    array, at, number = arguments
+    place = pointer_to(context, builder, signature.args[0], array, at)
+    promise(builder.store(builder.bitcast(number, ir.DoubleType()), place), LANES, TABLES)
+    return context.get_dummy_value()
 
 
 @intrinsic
 def _store_lane(typing_context, lanes, index, value):
-    def generate(context, builder, signature, arguments):
-        array, at, number = arguments
-        place = pointer_to(context, builder, signature.args[0], array, at)
-        promise(builder.store(number, place), LANES, TABLES)
-        return context.get_dummy_value()
+    return types.void(lanes, types.intp, types.float64), _store
 
-    return types.void(lanes, types.intp, types.float64), generate
+
+@intrinsic
+def _store_bits(typing_context, lanes, index, whole):
+    return types.void(lanes, types.intp, types.int64), _store
 
 
 @overload(lane_value)
@@ -81,27 +81,6 @@ def _compiled_lane_value(lanes, index):
 @overload(set_lane_value)
 def _compiled_set_lane_value(lanes, index, value):
     return lambda lanes, index, value: _store_lane(lanes, index, value)
-
-
-@overload(table_entry)
-def _compiled_table_entry(tables, index):
-    return lambda tables, index: _load_table(tables, index)
-
-
-def set_lane_bits(lanes, index, whole):
-    """Set `lanes[index]` to the bits of a `whole` number; `index` >= 0."""
-    lanes[index : index + 1].view("int64")[0] = whole
-
-
-@intrinsic
-def _store_bits(typing_context, lanes, index, whole):
-    def generate(context, builder, signature, arguments):
-        array, at, number = arguments
-        place = pointer_to(context, builder, signature.args[0], array, at)
-        promise(builder.store(builder.bitcast(number, ir.DoubleType()), place), LANES, TABLES)
-        return context.get_dummy_value()
-
-    return types.void(lanes, types.intp, types.int64), generate
 
 
 @overload(set_lane_bits)

@@ -119,15 +119,7 @@ def sample_steps(lanes, sky, cells):
     rows_per_angle = cells.latitude_cells / math.pi
     per_first = 1.0 / cells.first_altitude
     for lane in range(WIDTH):
-        flown = lane_value(lanes, FLOWN + lane)
-        part = flown * (lane_value(lanes, DRAWN + lane) / lane_value(lanes, SAMPLES + lane))
-        h = lane_value(lanes, LENGTH + lane)
-        x = _place(lanes, 0, lane, h, part)
-        y = _place(lanes, Y, lane, h, part)
-        z = _place(lanes, Z, lane, h, part)
-        vx = _velocity(lanes, 0, lane, h, part)
-        vy = _velocity(lanes, Y, lane, h, part)
-        vz = _velocity(lanes, Z, lane, h, part)
+        x, y, z, (vx, vy, vz) = _state_at(lanes, lane, _part(lanes, lane, 0.0))
         level = fused(x, x, y * y)
         r = math.sqrt(fused(z, z, level))
         sx = forces.distance - x
@@ -163,24 +155,40 @@ def go_on(lanes):
 @inlined
 def sample_of(lanes, lane, losses, number):
     """Return (x, y, z [m], velocity [m s-1], atoms) of a lane's step in its even part of this `number`, from 0."""
-    flown, h = lanes[FLOWN + lane], lanes[LENGTH + lane]
-    samples = lanes[SAMPLES + lane]
-    part = flown * ((number + lanes[DRAWN + lane]) / samples)
-    light = _at(part, 0.0, _integral(lanes, lane, h, LIGHT, STAGE_LIGHT))
-    other = _at(part, 0.0, _integral(lanes, lane, h, OTHER, STAGE_OTHER))
+    part = _part(lanes, lane, number)
+    x, y, z, velocity = _state_at(lanes, lane, part)
+    light, other = _integrals(lanes, lane)
     per_light = losses.ionizing + losses.other_sunlight
-    hazard = fused(per_light, light, fused(losses.other_everywhere * h, part, other))
+    hazard = _hazard(losses, per_light, lanes[LENGTH + lane], light, other, part)
+    duration = lanes[FLOWN + lane] * lanes[LENGTH + lane] / lanes[SAMPLES + lane]
+    return x, y, z, velocity, lanes[WEIGHT + lane] * (math.exp(-hazard) * duration)
+
+
+@inlined
+def _part(lanes, lane, number):
+    """Return the part of the step at which it is sampled in its even part of this `number`, from 0."""
+    drawn, samples = lane_value(lanes, DRAWN + lane), lane_value(lanes, SAMPLES + lane)
+    return lane_value(lanes, FLOWN + lane) * ((number + drawn) / samples)
+
+
+@inlined
+def _state_at(lanes, lane, part):
+    """Return (x, y, z [m], (vx, vy, vz) [m s-1]) at a part of the step."""
+    h = lane_value(lanes, LENGTH + lane)
     velocity = (
         _velocity(lanes, 0, lane, h, part),
         _velocity(lanes, Y, lane, h, part),
         _velocity(lanes, Z, lane, h, part),
     )
-    x, y, z = (
-        _place(lanes, 0, lane, h, part),
-        _place(lanes, Y, lane, h, part),
-        _place(lanes, Z, lane, h, part),
-    )
-    return x, y, z, velocity, lanes[WEIGHT + lane] * (math.exp(-hazard) * flown * h / samples)
+    x, y = _place(lanes, 0, lane, h, part), _place(lanes, Y, lane, h, part)
+    return x, y, _place(lanes, Z, lane, h, part), velocity
+
+
+@inlined
+def _hazard(losses, per_light, h, light, other, part):
+    """Return the hazard gathered up to a part of a step of length `h` [s], from the integrals of `_integrals`."""
+    steady = fused(losses.other_everywhere * h, part, _at(part, 0.0, other))
+    return fused(per_light, _at(part, 0.0, light), steady)
 
 
 @kernel
@@ -210,17 +218,11 @@ def _samples(lanes, lane, per_way):
 @inlined
 def _book(lanes, lane, losses, per_light):
     flown = lane_value(lanes, FLOWN + lane)
-    samples = lane_value(lanes, SAMPLES + lane)
-    part = flown * (lane_value(lanes, DRAWN + lane) / samples)
     h = lane_value(lanes, LENGTH + lane)
-    light = _integral(lanes, lane, h, LIGHT, STAGE_LIGHT)
-    other = _integral(lanes, lane, h, OTHER, STAGE_OTHER)
-    steady = losses.other_everywhere * h
-    lit_through = _at(flown, 0.0, light)
-    grown = fused(per_light, lit_through, fused(steady, flown, _at(flown, 0.0, other)))
-    middle = 0.5 * flown
-    half = fused(per_light, _at(middle, 0.0, light), fused(steady, middle, _at(middle, 0.0, other)))
-    before_sample = fused(per_light, _at(part, 0.0, light), fused(steady, part, _at(part, 0.0, other)))
+    light, other = _integrals(lanes, lane)
+    grown = _hazard(losses, per_light, h, light, other, flown)
+    half = _hazard(losses, per_light, h, light, other, 0.5 * flown)
+    before_sample = _hazard(losses, per_light, h, light, other, _part(lanes, lane, 0.0))
     kept = lane_value(lanes, KEPT + lane)
     alive = lane_value(lanes, ALIVE + lane) * kept
     mean, survives = survival(grown)
@@ -228,11 +230,11 @@ def _book(lanes, lane, losses, per_light):
     excess = half - 0.5 * grown
     bent = math.sqrt(survives) * excess * fused(0.5, excess, -1.0)
     lost = alive * (grown * mean)
-    share = losses.ionizing * lit_through / (grown if grown > 0.0 else 1.0)
+    share = losses.ionizing * _at(flown, 0.0, light) / (grown if grown > 0.0 else 1.0)
     duration = flown * h
     _, sampled = survival(before_sample)
     set_lane_value(lanes, WEIGHT + lane, alive)
-    set_lane_value(lanes, CONTENT + lane, alive * sampled * (duration / samples))
+    set_lane_value(lanes, CONTENT + lane, alive * sampled * (duration / lane_value(lanes, SAMPLES + lane)))
     set_lane_value(lanes, LIFE + lane, alive * duration * (mean + bent / 1.5))
     set_lane_value(lanes, LOST + lane, lost)
     set_lane_value(lanes, IONIZED + lane, lost * share)
@@ -315,6 +317,16 @@ def _velocity(lanes, axis, lane, h, part):
         lane_value(lanes, QUARTIC + VELOCITY + axis + lane),
     )
     return _at(part, lane_value(lanes, START + VELOCITY + axis + lane), coefficients)
+
+
+@inlined
+def _integrals(lanes, lane):
+    """Return what `_at` takes of the integrals of light and of other losses over the step."""
+    h = lane_value(lanes, LENGTH + lane)
+    return (
+        _integral(lanes, lane, h, LIGHT, STAGE_LIGHT),
+        _integral(lanes, lane, h, OTHER, STAGE_OTHER),
+    )
 
 
 @inlined

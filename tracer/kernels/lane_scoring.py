@@ -1,7 +1,5 @@
 """What the samples of all lanes leave in the cells and the images."""
 
-import math
-
 from numba.extending import overload
 
 from tracer.kernels.cells import close_layer, column_at, row_at
@@ -30,7 +28,7 @@ from tracer.kernels.lanes import (
 )
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity
-from tracer.kernels.scoring import count_in_cell, count_in_images, score_sample
+from tracer.kernels.scoring import count_in_cell, count_in_images, score_in_light
 from tracer.kernels.shadow import PENUMBRA, lit_fraction, zone_at
 
 
@@ -79,20 +77,14 @@ def score_further(world, tally, lanes, shine):
 
 @inlined
 def _score_one(world, tally, lanes, lane, number, shine):
-    tables, sky = world.light.line_tables, world.light.conditions.sky
-    x, y, z, velocity, content = sample_of(lanes, lane, sky.losses, number)
+    sky = world.light.conditions.sky
     forces = sky.forces
+    x, y, z, velocity, content = sample_of(lanes, lane, sky.losses, number)
     sx = forces.distance - x
     seen = seen_part(sky, x, y, z) if lanes[PARTIAL + lane] > 0.0 else lanes[LIT + lane]
     received = seen * forces.light_distance * forces.light_distance / (sx * sx + y * y + z * z)
     receding = radial_velocity(forces, x, y, z, velocity[0], velocity[1], velocity[2])
-    for line in range(shine.shape[0]):
-        shine[line] = received * line_value(tables, line, receding)
-    if beyond_tables(tables, receding):
-        tally.beyond[0] += content
-    r = math.sqrt(x * x + y * y + z * z)
-    ionizing = received * sky.losses.ionizing
-    score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)
+    score_in_light(world, tally, x, y, z, velocity, content, received, receding, shine)
 
 
 @merged

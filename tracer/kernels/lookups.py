@@ -35,7 +35,7 @@ def _look_up_four(typing_context, lanes, tables, knots, steps, result):
         number, whole = ir.DoubleType(), ir.IntType(64)
         four, pair = ir.VectorType(number, FOUR), ir.VectorType(number, 2)
 
-        def lane_vector(at):
+        def four_at(at):
             return builder.bitcast(pointer_to(context, builder, lanes_type, lanes, at), four.as_pointer())
 
         def picked(first, second, order):
@@ -53,12 +53,12 @@ def _look_up_four(typing_context, lanes, tables, knots, steps, result):
             pairs.append(promise(line, TABLES, LANES))
         both = [picked(pairs[i], pairs[i + 1], range(4)) for i in (0, 2)]
         value, rise = (picked(*both, order) for order in ((0, 2, 4, 6), (1, 3, 5, 7)))
-        step = builder.load(lane_vector(steps))
+        step = builder.load(four_at(steps))
         step.align = 8
         kind = ir.FunctionType(four, [four, four, four])
         fused = get_or_insert_function(builder.module, kind, f"llvm.fma.v{FOUR}f64")
         found = builder.call(fused, [promise(step, LANES, TABLES), rise, value])
-        stored = builder.store(found, lane_vector(result))
+        stored = builder.store(found, four_at(result))
         stored.align = 8
         promise(stored, LANES, TABLES)
         return context.get_dummy_value()

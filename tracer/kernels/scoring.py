@@ -13,7 +13,8 @@ from tracer.kernels.cells import (
     recession,
     velocity_bin,
 )
-from tracer.kernels.compiling import kernel, merged
+from tracer.kernels.compiling import inlined, kernel, merged
+from tracer.kernels.lines import beyond_tables, line_value
 
 
 class Tally(NamedTuple):
@@ -24,12 +25,11 @@ class Tally(NamedTuple):
     adds to all of them. `column_content` (latitude, local_time) holds samples scaled by (R/r)^2, `velocity_content`
     what image planes resolved by velocity keep (see `cells.Velocities`), flat over them, `velocity_emission` (line, as
     `velocity_content`) the same times photons, `ionized` (altitude, latitude, local_time) samples times the rate of
-    ionisation. Fluxes (latitude, local_time),
-    `ledger` (fate) and `launches` hold weights, `adsorbed` (latitude, local_time) weight times time at rest, without
-    cells where no atom rests; `roulette` the weight that roulette added, `life` weight times survival time, `beyond`
-    samples beyond the end of a line's table; `struck` the weight that hit the host, without an entry where there is
-    none. Where the body moves, `aloft` holds all samples, and `older` weight times survival time behind the limit of
-    age.
+    ionisation. Fluxes (latitude, local_time), `ledger` (fate) and `launches` hold weights, `adsorbed` (latitude,
+    local_time) weight times time at rest, without cells where no atom rests; `roulette` the weight that roulette added,
+    `life` weight times survival time, `beyond` samples beyond the end of a line's table; `struck` the weight that hit
+    the host, without an entry where there is none. Where the body moves, `aloft` holds all samples, and `older` weight
+    times survival time behind the limit of age.
     """
 
     gas: np.ndarray
@@ -92,6 +92,22 @@ def score_sample(tally, cells, images, x, y, z, r, velocity, content, ionizing, 
         row, column = ground_cell(cells, x, y, z, r)
         count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine)
     count_in_images(tally, images, cells.radius, x, y, z, velocity, content, shine)
+
+
+@inlined
+def score_in_light(world, tally, x, y, z, velocity, content, received, receding, shine):
+    """Count `content` atoms that receive so much light and recede from the Sun at `receding` [m s-1].
+
+    `received` is relative to full light at `light_distance`; `shine` (line,) is room for each line's photons.
+    """
+    tables = world.light.line_tables
+    for line in range(shine.shape[0]):
+        shine[line] = received * line_value(tables, line, receding)
+    if beyond_tables(tables, receding):
+        tally.beyond[0] += content
+    r = math.sqrt(x * x + y * y + z * z)
+    ionizing = received * world.light.conditions.sky.losses.ionizing
+    score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)
 
 
 @merged

@@ -36,7 +36,6 @@ from tracer.kernels.lanes import (
     Z,
 )
 from tracer.kernels.launches import Launches
-from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity, sunlight_received
 from tracer.kernels.orbit import orbit_state, stated_body, turning_at
 from tracer.kernels.resume import (
@@ -59,7 +58,7 @@ from tracer.kernels.resume import (
     WEIGHT,
     Resume,
 )
-from tracer.kernels.scoring import Tally, score_sample
+from tracer.kernels.scoring import Tally, score_in_light
 from tracer.kernels.step_control import care
 from tracer.kernels.world import World
 
@@ -298,7 +297,7 @@ def _fly_on(world, atom, end):
 @merged
 def _show(world, tally, atom, lanes, lane, shine):
     """Count an atom where it is at the stated position; `shine` (line,) is room for each line's photons."""
-    sky, tables = world.light.conditions.sky, world.light.line_tables
+    sky = world.light.conditions.sky
     x, y, z = lanes[START + lane], lanes[START + Y + lane], lanes[START + Z + lane]
     at = START + VELOCITY + lane
     velocity = (lanes[at], lanes[at + Y], lanes[at + Z])
@@ -306,11 +305,5 @@ def _show(world, tally, atom, lanes, lane, shine):
     body = stated_body(sky.forces)
     received = sunlight_received(sky, int(lanes[ZONE + lane]), body, x, y, z)
     receding = radial_velocity(body, x, y, z, *velocity)
-    for line in range(shine.shape[0]):
-        shine[line] = received * line_value(tables, line, receding)
     tally.aloft[0] += content
-    if beyond_tables(tables, receding):
-        tally.beyond[0] += content
-    r = math.sqrt(x * x + y * y + z * z)
-    ionizing = received * sky.losses.ionizing
-    score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)
+    score_in_light(world, tally, x, y, z, velocity, content, received, receding, shine)

@@ -15,6 +15,9 @@ Floats = NDArray[np.float64]
 LEAST_GROUPS = 4
 """Replicates that must have counted something for a ratio to have an error: three differences between them."""
 
+ROUNDING = 1e-13
+"""Part of a mean square that rounding may leave of the difference of it and the square of the mean: some hundred times
+that of one sum. The root is 3e-7, so that widths of 1 mm/s some km/s from the origin are told from none."""
 
 PLACES_AT_A_TIME = 8_192
 """So that leaving out every group of a large image takes little memory."""
@@ -34,12 +37,14 @@ class Moments(NamedTuple):
 def from_sums(weight: Floats, linear: Floats, square: Floats, origin: float | Floats) -> Moments:
     """Return the moments of sums of `weight`, of weight times v and of weight times v squared, v counted from `origin`.
 
-    Rounding takes digits from the width where the mean lies many widths from the origin, and never makes its square
-    negative.
+    Rounding takes digits from the width where the mean lies many widths from the origin; a square of the width that is
+    no more than `ROUNDING` of the mean square is nothing, such as that of a single sample.
     """
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         mean = np.where(weight > 0.0, linear / weight, np.nan)
-        width = np.sqrt(np.maximum(np.where(weight > 0.0, square / weight, np.nan) - mean * mean, 0.0))
+        mean_square = np.where(weight > 0.0, square / weight, np.nan)
+        variance = mean_square - mean * mean
+        width = np.sqrt(np.where(variance <= ROUNDING * mean_square, 0.0, variance))
     return Moments(weight, origin + mean, width)
 
 

@@ -41,6 +41,15 @@ def test_a_beam_far_from_the_origin_keeps_its_width():
     assert moments_of(v, np.full(1000, 0.1)).width.item() == pytest.approx(1.0, abs=1e-6)
 
 
+def test_what_rounding_leaves_is_no_width():
+    random = np.random.default_rng(5)
+    for v in random.uniform(-4000.0, 4000.0, 200):
+        # One sample, counted in pieces whose sums are rounded.
+        assert moments_of(np.full(7, v), random.random(7)).width.item() == 0.0
+    # A centimetre a second is told from none.
+    assert moments_of(np.array([2999.99, 3000.01]), np.ones(2)).width.item() == pytest.approx(0.01, rel=1e-2)
+
+
 def test_parts_put_together_are_the_whole():
     random = np.random.default_rng(2)
     v, w = random.normal(0.0, 500.0, 900), random.random(900)
