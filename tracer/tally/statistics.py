@@ -5,6 +5,7 @@ from collections.abc import Iterator
 import numpy as np
 from numpy.typing import NDArray
 
+from tracer.kernels.folding import fold_batch
 from tracer.tally.buffer import BufferLayout
 
 Floats = NDArray[np.float64]
@@ -31,18 +32,12 @@ class BatchStatistics:
         self.replicate_sum = np.zeros((replicates, layout.replicated_size))
 
     def fold(self, buffer: Floats) -> None:
-        """Take in the next batch's buffer; batches must come in order, since float sums depend on it.
-
-        The stable update of Welford 1962, Technometrics 4, 419: the squared deviation never goes negative.
-        """
+        """Take in the next batch's buffer; batches must come in order, since float sums depend on it."""
         replicates, size = self.replicate_sum.shape
         if replicates:
             self.replicate_sum[(self.first_batch + self.batches) % replicates] += buffer[:size]
         self.batches += 1
-        deviation = buffer - self.mean
-        self.mean += deviation / self.batches
-        deviation *= buffer - self.mean
-        self.squared_deviation += deviation
+        fold_batch(buffer, self.batches, self.mean, self.squared_deviation)
 
     def standard_error(self) -> Floats:
         """Return the standard error of the mean; NaN where nothing was ever scored or with fewer than two batches."""

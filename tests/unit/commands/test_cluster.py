@@ -138,6 +138,22 @@ def test_a_worker_with_another_numba_is_refused(start, folder, cluster):
     assert len(done.err.splitlines()) == 1
 
 
+def test_every_worker_has_the_work_before_the_first_batch(start, folder, cluster):
+    # With the work on one worker alone, the others had no batch until the first of these was done.
+    cluster(2)
+    done = start(code=SHARE_AMONG_TWO).wait()
+    assert done.code == 0, done.err
+
+
+SHARE_AMONG_TWO = """
+from distributed import Client
+from tracer.engine.executors.dask_cluster import shared_out
+with Client(scheduler_file="scheduler.json", set_as_default=False) as client:
+    client.wait_for_workers(2, timeout=10)
+    shared = shared_out(client, "the work", "work")
+    assert len(client.who_has([shared])["work"]) == 2
+"""
+
 WAIT_FOR_TWO = """
 from distributed import Client
 with Client(scheduler_file="scheduler.json", set_as_default=False) as client:

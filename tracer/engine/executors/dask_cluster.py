@@ -234,6 +234,18 @@ def keep(work: Work) -> Work:
     return work
 
 
+def shared_out(client: Any, work: Work, key: str) -> Any:
+    """Return `work` as a task that every worker has done.
+
+    The scheduler gives batches to workers that have what they need: with the work on one alone, the others would wait
+    until it steals for them, some for as long as a batch takes.
+    """
+    shared = client.submit(keep, work, key=key, pure=False)
+    with _loss_told():
+        client.replicate([shared])
+    return shared
+
+
 def _map_batches(
     distributed: Any,
     client: Any,
@@ -246,7 +258,7 @@ def _map_batches(
 ) -> Generator[tuple[Task, BatchResult], None, None]:
     """Yield (task, result) for each task, in the order in which they finish; see `tracer.engine.executors.seam`."""
     run = f"tracer-{uuid4().hex}"
-    shared = client.submit(keep, work, key=f"{run}-work", pure=False)
+    shared = shared_out(client, work, f"{run}-work")
     queue = Queue(tasks)
     census = _Census(client, note, workers)
     running: dict[Any, tuple[int, Task, int]] = {}
