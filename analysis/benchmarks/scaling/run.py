@@ -10,15 +10,19 @@ from pathlib import Path
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 import tracer
 
 ROOT = Path(__file__).parents[3]
 RUN_FILES = {"arcs": "moon-sodium-gravity.toml", "integrated": "mercury-sodium.toml"}
 BATCHES = 20
-BATCHES_SIDE_BY_SIDE = 6
-"""Batches of the runs that are compared: short runs in many rounds tell more than long ones, where others use the
-machine's cores as well."""
+BATCHES_SIDE_BY_SIDE = 12
+"""Batches a release of the runs that are compared: one worker may have nothing to do while the other ends the last, so
+that of few batches two workers cannot take half the time."""
+
+TRIES = 3
+"""Runs of all but the most particles, in turn, of which the fastest counts."""
 
 MOST_DEVIATION = 0.10
 LEAST_SPEED_UP = 1.85
@@ -64,34 +68,36 @@ def releases(name: str) -> int:
 def growth(kind: str, name: str, largest: float) -> bool:
     """Print time and memory against particles from 1e4 on; return whether they grow as they should.
 
-    The straight line goes from a run of one particle a batch, whose time is that of the batches themselves, to the
-    largest run. All on one processor: with a second one, what a batch costs to fold hides behind the tracing of the
-    next where that takes longer, and short runs look too cheap.
+    All on one processor: with a second one, what a batch costs to fold hides behind the tracing of the next where that
+    takes longer, and short runs look too cheap.
     """
     share = BATCHES * releases(name)
-    counts = [1, *(round(n / share) for n in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5))]
-    runs = []
-    for count in counts:
-        tries = [
-            run(name, count, "--workers", "1", alone=True) for _ in range(3 if count * share < 1e6 else 1)
-        ]
-        runs.append(min(tries))
-    fixed, last = runs[0].seconds, runs[-1].seconds
-    slope = (last - fixed) / (counts[-1] - counts[0])
+    counts = [round(n / share) for n in 10.0 ** np.arange(4.0, np.log10(largest) + 0.5)]
+    tries: list[list[Run]] = [[] for _ in counts]
+    for number in range(TRIES):
+        for count, made in zip(counts, tries, strict=True):
+            if number == 0 or count < counts[-1]:
+                made.append(run(name, count, "--workers", "1", alone=True))
+    particles = np.array(counts) * share
+    seconds = np.array([min(one.seconds for one in made) for made in tries])
+    memories = np.array([max(one.memory for one in made) for made in tries])
+    fixed, slope = straight_line(particles, seconds)
+    over = seconds / (fixed + slope * particles) - 1.0
     print(f"\n{kind} ({name}), one worker, {BATCHES} batches of each of {releases(name)} releases")
     print(f"{'particles':>12s} {'seconds':>9s} {'over the line':>14s} {'memory MB':>10s}")
-    deviations = []
-    for count, one in zip(counts, runs, strict=True):
-        deviations.append(one.seconds / (fixed + slope * (count - counts[0])) - 1.0)
-        print(f"{count * share:12,d} {one.seconds:9.3f} {100 * deviations[-1]:+12.1f} % {one.memory:10.0f}")
-    linear = max(map(abs, deviations))
-    memories = [one.memory for one in runs[1:]]
-    flat = max(memories) / min(memories) - 1.0
-    print(f"{slope / releases(name) / BATCHES * 1e6:.3g} microseconds a particle")
+    for row in zip(particles, seconds, 100.0 * over, memories, strict=True):
+        print("{:12,d} {:9.3f} {:+12.1f} % {:10.0f}".format(*row))
+    linear, flat = np.abs(over).max(), memories.max() / memories.min() - 1.0
+    print(f"{fixed:.3g} s and {slope * 1e6:.3g} microseconds a particle")
     print(
         f"time is linear within {100 * linear:.1f} %, memory flat within {100 * flat:.1f} % (both asked: 10 %)"
     )
-    return linear <= MOST_DEVIATION and flat <= MOST_DEVIATION
+    return bool(linear <= MOST_DEVIATION and flat <= MOST_DEVIATION)
+
+
+def straight_line(particles: NDArray[np.int64], seconds: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return constant and slope of the straight line with the least sum of squared relative deviations."""
+    return np.linalg.lstsq(np.column_stack([1.0 / seconds, particles / seconds]), np.ones(len(seconds)))[0]
 
 
 def speed_up(kind: str, name: str, seconds: float, rounds: int) -> bool:
