@@ -43,8 +43,13 @@ ENVIRONMENT = {"OMP_NUM_THREADS": 1, "MKL_NUM_THREADS": 1, "OPENBLAS_NUM_THREADS
 """Of local workers, in place of the library's own. That has the C library give memory back as soon as it is free, so
 that the system maps every array of launches page by page again: a quarter more time for a batch of arcs."""
 
-SAMPLING_OF_STACKS = "distributed.worker.profile.enabled"
-"""Every process would look at its own stacks a hundred times a second, for a page of the dashboard: some per cent."""
+SELF_OBSERVATION = {
+    "distributed.worker.profile.enabled": False,
+    "distributed.admin.tick.interval": "1s",
+    "distributed.admin.system-monitor.interval": "5s",
+}
+"""Of local processes. They would look at their own stacks a hundred times a second, ask fifty times a second whether they
+are late, and read the machine's load twice a second, all for pages of the dashboard: some per cent."""
 
 
 class ForeignWorker(TracerError):
@@ -113,7 +118,7 @@ def _client(distributed: Any, where: str) -> Iterator[Any]:
     if match := LOCAL.fullmatch(where):
         with (
             import_module("dask").config.set(
-                {"distributed.nanny.pre-spawn-environ": ENVIRONMENT, SAMPLING_OF_STACKS: False}
+                {"distributed.nanny.pre-spawn-environ": ENVIRONMENT, **SELF_OBSERVATION}
             ),
             distributed.LocalCluster(
                 n_workers=int(match[1]),
