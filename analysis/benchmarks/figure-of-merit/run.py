@@ -166,6 +166,12 @@ def main() -> int:
     parser.add_argument(
         "--gravity-factor", type=int, default=10, help="as many more of independent launches there"
     )
+    parser.add_argument(
+        "--scene",
+        choices=("sunlight", "gravity", "harrow"),
+        action="append",
+        help="only this one (default: all)",
+    )
     arguments = parser.parse_args()
     print("machine:", platform.processor() or platform.machine(), platform.platform())
     print("load of the machine:", Path("/proc/loadavg").read_text(encoding="ascii").strip())
@@ -180,7 +186,8 @@ def main() -> int:
         "harrow": ("Harrow sodium 1,200 K", tracer.load_run(HARROW), 1),
     }
     missed = []
-    for name, (title, run_file, more) in scenes.items():
+    for name in arguments.scene or scenes:
+        title, run_file, more = scenes[name]
         scene = build_scene(run_file)
         missed += report(title, name, measure(scene, arguments.batches, more))
     print("\nmissed: " + "; ".join(missed) if missed else "\nall goals reached")
