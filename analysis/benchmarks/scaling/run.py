@@ -24,17 +24,24 @@ that of few batches two workers cannot take half the time."""
 TRIES = 3
 """Runs of all but the most particles, in turn, of which the fastest counts."""
 
+STOLEN = 8
+"""Place of stolen time in the first line of the system's table."""
+
 MOST_DEVIATION = 0.10
 LEAST_SPEED_UP = 1.85
 MOST_CLUSTER_OVERHEAD = 0.05
 
 
 class Run(NamedTuple):
-    """Wall and kernel `seconds` of a run by its product, and the largest memory [MB] of its process."""
+    """Wall and kernel `seconds` of a run by its product, and the largest memory [MB] of its process.
+
+    `stolen` are the processors' seconds that a host of virtual machines gave to others meanwhile.
+    """
 
     seconds: float
     kernel: float
     memory: float
+    stolen: float
 
 
 def run(name: str, particles: int, *options: str, batches: int = BATCHES, alone: bool = False) -> Run:
@@ -44,6 +51,7 @@ def run(name: str, particles: int, *options: str, batches: int = BATCHES, alone:
         words = [sys.executable, "-m", "tracer", "run", str(ROOT / "runs" / name), "-o", str(output)]
         for setting in (f"ensemble.batches={batches}", f"ensemble.particles_per_batch={particles}"):
             words += ["--set", setting]
+        stolen = stolen_seconds()
         pid = os.fork()
         if pid == 0:
             os.chdir(ROOT)
@@ -54,10 +62,19 @@ def run(name: str, particles: int, *options: str, batches: int = BATCHES, alone:
             os.dup2(silence, 2)
             os.execv(sys.executable, [*words, *options])
         _, status, usage = os.wait4(pid, 0)
+        stolen = stolen_seconds() - stolen
         if status:
             raise SystemExit(f"{' '.join(words)} ended with status {status}")
         with tracer.open_product(output) as product:
-            return Run(product.attrs["wall_seconds"], product.attrs["kernel_seconds"], usage.ru_maxrss / 1e3)
+            return Run(
+                product.attrs["wall_seconds"], product.attrs["kernel_seconds"], usage.ru_maxrss / 1e3, stolen
+            )
+
+
+def stolen_seconds() -> float:
+    """Return the seconds that all processors together have lost to others so far, as the system knows of them."""
+    fields = Path("/proc/stat").read_text(encoding="ascii").split("\n", 1)[0].split()
+    return int(fields[STOLEN]) / os.sysconf("SC_CLK_TCK")
 
 
 def releases(name: str) -> int:
@@ -113,15 +130,19 @@ def speed_up(kind: str, name: str, seconds: float, rounds: int) -> bool:
     if find_spec("distributed"):
         ways |= {"1 process": ("--cluster", "local:1"), "2 processes": ("--cluster", "local:2")}
     best, beside = dict.fromkeys(ways, np.inf), dict.fromkeys(ways, np.inf)
+    stolen: dict[str, list[float]] = {way: [] for way in ways}
     for _ in range(rounds):
         for way, options in ways.items():
             one = run(name, particles, *options, batches=BATCHES_SIDE_BY_SIDE)
             best[way] = min(best[way], one.seconds)
+            stolen[way].append(one.stolen / one.seconds)
             beside[way] = min(beside[way], int(way[0]) * one.seconds / one.kernel - 1.0)
     print(f"\n{kind} ({name}), {share} batches of {particles} particles, about {seconds:g} s each")
     print(", ".join(f"{way}: {spent:.2f} s" for way, spent in best.items()))
     shares = ", ".join(f"{way}: {100 * share:.1f} %" for way, share in beside.items())
     print(f"wall time of all workers beyond the kernels' processor time, of the latter: {shares}")
+    lost = ", ".join(f"{way}: {min(parts):.3f} to {max(parts):.3f}" for way, parts in stolen.items())
+    print(f"processors that the host gave to others: {lost}")
     threads = best["1 thread"] / best["2 threads"]
     print(f"two threads over one: {threads:.3f} (asked: {LEAST_SPEED_UP})")
     fine = threads >= LEAST_SPEED_UP
