@@ -8,7 +8,7 @@ from typing import Annotated, Any
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import OVERWRITE
+from tracer.commands.arguments import OVERWRITE, argument, option
 from tracer.commands.comparison_text import print_comparison
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import json_text, print_json
@@ -33,22 +33,20 @@ FIGURES = (".png", ".pdf", ".svg")
 def command(
     files: Annotated[
         list[str],
-        typer.Argument(
-            metavar="PRODUCT.nc... OBSERVATION.toml",
-            help="One product of `tracer run`, or several whose releases are pooled; then the observation file, whose "
+        argument(
+            "PRODUCT.nc... OBSERVATION.toml",
+            "One product of `tracer run`, or several whose releases are pooled; then the observation file, whose "
             "keys stand in runs/README.md.",
-            show_default=False,
         ),
     ],
     output: Annotated[
         list[str] | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"May be repeated; the ending says what is written: {RESULT} the result with all points, "
+            f"{', '.join(FIGURES)} the figure of data, model, parts and residuals.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"May be repeated; the ending says what is written: {RESULT} the result with all points, "
-            f"{', '.join(FIGURES)} the figure of data, model, parts and residuals.",
-            show_default=False,
         ),
     ] = None,
     json: Annotated[

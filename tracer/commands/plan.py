@@ -8,7 +8,7 @@ import numpy as np
 import typer
 from astropy.table import Table
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument, option
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.constants import ASTRONOMICAL_UNIT
@@ -41,21 +41,19 @@ def command(
     product: PRODUCT_FILE,
     plan: Annotated[
         str,
-        typer.Argument(
-            metavar="PLAN.toml",
-            help="The plan file: path of the observer, pointing, spectrometer; its keys stand in runs/README.md.",
-            show_default=False,
+        argument(
+            "PLAN.toml",
+            "The plan file: path of the observer, pointing, spectrometer; its keys stand in runs/README.md.",
         ),
     ],
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"The table, a row per exposure; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to "
+            "standard output, and the summary to standard error.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"The table, a row per exposure; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to "
-            "standard output, and the summary to standard error.",
-            show_default=False,
         ),
     ] = None,
     overwrite: OVERWRITE = False,

@@ -5,7 +5,7 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
@@ -24,11 +24,7 @@ def command(
     product: PRODUCT_FILE,
     plan: Annotated[
         str | None,
-        typer.Argument(
-            metavar="PLAN-OUT",
-            help="The table that `tracer plan` wrote: .ecsv, .csv or .nc.",
-            show_default=False,
-        ),
+        argument("PLAN-OUT", "The table that `tracer plan` wrote: .ecsv, .csv or .nc."),
     ] = None,
     output: Annotated[
         str, typer.Option("--output", "-o", metavar="FILE.html", help="The page.")

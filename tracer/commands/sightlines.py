@@ -5,7 +5,7 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument, option
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
 from tracer.errors import InputError
@@ -23,31 +23,25 @@ def command(
     product: PRODUCT_FILE,
     rays: Annotated[
         str,
-        typer.Argument(
-            metavar="RAYS",
-            help="CSV or ECSV: observer_x_km, observer_y_km, observer_z_km (Sun-fixed frame: +x to the Sun, +z north); "
+        argument(
+            "RAYS",
+            "CSV or ECSV: observer_x_km, observer_y_km, observer_z_km (Sun-fixed frame: +x to the Sun, +z north); "
             "and look_x, look_y, look_z, or tangent_altitude_km, tangent_latitude_deg, tangent_local_time_h; "
             "optional time.",
-            show_default=False,
         ),
     ],
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"The table; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to standard output.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"The table; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to standard output.",
-            show_default=False,
         ),
     ] = None,
     line: Annotated[
         list[str] | None,
-        typer.Option(
-            metavar="NAME",
-            help="An emission line of the product; may be repeated. Otherwise all of them.",
-            show_default=False,
-        ),
+        option("NAME", "An emission line of the product; may be repeated. Otherwise all of them."),
     ] = None,
     by_release: Annotated[
         bool,
@@ -55,11 +49,10 @@ def command(
     ] = False,
     doppler_speed: Annotated[
         str | None,
-        typer.Option(
-            metavar="SPEED",
-            help="Doppler speed b for the optical depth, such as '930 m/s'. Otherwise sqrt(2kT/m) of each release's "
+        option(
+            "SPEED",
+            "Doppler speed b for the optical depth, such as '930 m/s'. Otherwise sqrt(2kT/m) of each release's "
             "law of speed.",
-            show_default=False,
         ),
     ] = None,
     no_errors: Annotated[
