@@ -5,9 +5,9 @@ import math
 import typer
 
 from tracer.commands.arguments import OVERWRITE
-from tracer.commands.figure_file import check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import FIGURE_ENDINGS, check_output_file
 from tracer.commands.plot_options import (
     DPI,
     DRAWINGS,
@@ -70,7 +70,7 @@ def command(
         if value is not None and not goes:
             raise InputError(f"{option}: goes with --what {words}, not with --what {what}")
     refuse_inputs(output, [product])
-    ending = check_figure_file("--output", output, overwrite)
+    ending = check_output_file("--output", output, FIGURE_ENDINGS, overwrite, "figure")
     choice = Choice(
         release,
         image_name,

@@ -6,7 +6,7 @@ from typing import Annotated
 import typer
 
 from tracer.commands.arguments import argument, option
-from tracer.commands.figure_file import ENDINGS
+from tracer.commands.output_file import FIGURE_ENDINGS
 from tracer.plots.figures import FIGURES, SWEPT_FIGURES, What
 
 
@@ -38,7 +38,8 @@ PRODUCT = Annotated[
 ]
 WHAT = Annotated[What, option("FIGURE", HELP)]
 OUTPUT = Annotated[
-    str, option("FILE", f"The figure; its ending says its kind: {', '.join(ENDINGS)}.", "--output", "-o")
+    str,
+    option("FILE", f"The figure; its ending says its kind: {', '.join(FIGURE_ENDINGS)}.", "--output", "-o"),
 ]
 IMAGE = Annotated[
     str | None,

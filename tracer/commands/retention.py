@@ -12,8 +12,8 @@ from tracer.catalogue.records import Gas
 from tracer.commands.arguments import JSON, argument, option
 from tracer.commands.choices import unknown_name
 from tracer.commands.durations import AGE_IN_GYR
-from tracer.commands.figure_file import check_figure_file
 from tracer.commands.machine_output import print_json
+from tracer.commands.output_file import FIGURE_ENDINGS, check_output_file
 from tracer.commands.quantity_options import Measure, si_option
 from tracer.commands.retention_bodies import (
     Circumstances,
@@ -123,7 +123,7 @@ def command(
     )
     body_names, gas_names = _sorted_words(names or [], gas or [])
     if plot is not None:
-        check_figure_file("--plot", plot, overwrite)
+        check_output_file("--plot", plot, FIGURE_ENDINGS, overwrite, "figure")
     check_overrides(body_names, given)
     asked = [subject(name, given) for name in body_names]
     chosen = [_gas(name) for name in gas_names or DEFAULT_GASES]

@@ -8,10 +8,11 @@ import typer
 from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument, option
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import check_output_file
 from tracer.errors import InputError
 from tracer.observe.gas import gas_of, without_the_rest
 from tracer.observe.sightlines import CAUTION, Options, sightlines_of
-from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
+from tracer.observe.table_files import ENDINGS, csv_text, table_bytes
 from tracer.observe.tables import read_table
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
@@ -75,7 +76,7 @@ def command(
     speed = _speed(doppler_speed)
     if output is not None:
         refuse_inputs(output, [product, rays])
-        ending = check_table_file("--output", output, overwrite)
+        ending = check_output_file("--output", output, ENDINGS, overwrite, "table")
     table = read_table(rays)
     with open_product(product) as stored:
         ds = without_the_rest(stored, errors=not no_errors)
