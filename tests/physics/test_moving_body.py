@@ -22,9 +22,9 @@ from tracer.kernels.integrated_flight import (
     new_flight,
     start_flight,
 )
-from tracer.kernels.orbit import orbit_state
 from tracer.kernels.shadow import zone_at
 from tracer.kernels.sunlight import visible_fraction
+from tracer.kernels.two_body import orbit_state
 from tracer.physics.lines import catalogue_table, push_tables
 from tracer.physics.orbit import orbit_through, station_at_true_anomaly
 from tracer.physics.photo_losses import photo_loss

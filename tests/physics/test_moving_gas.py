@@ -8,7 +8,7 @@ from scipy.integrate import quad
 
 from tracer.engine.runspec.load import parse_run
 from tracer.engine.scene import build_scene
-from tracer.kernels.orbit import orbit_state
+from tracer.kernels.two_body import orbit_state
 
 RADIUS = 1.8e6
 DAY = 86400.0

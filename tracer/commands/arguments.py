@@ -1,40 +1,50 @@
 """Arguments and options that several commands share."""
 
-from typing import Annotated
+from typing import Annotated, Any
 
 import typer
 
-RUN_FILE = Annotated[str, typer.Argument(metavar="RUN.toml", help="The run file.", show_default=False)]
 
-PRODUCT_FILE = Annotated[
-    str, typer.Argument(metavar="PRODUCT.nc", help="A product of `tracer run`.", show_default=False)
-]
+def argument(metavar: str, words: str) -> Any:
+    """Return an argument, with `words` of help that say what is meant where it is left out."""
+    return typer.Argument(metavar=metavar, help=words, show_default=False)
+
+
+def option(metavar: str, words: str, *names: str) -> Any:
+    """Return an option, by default named as its parameter; its `words` of help say what holds without it."""
+    return typer.Option(*names, metavar=metavar, help=words, show_default=False)
+
+
+RUN_FILE = Annotated[str, argument("RUN.toml", "The run file.")]
+
+PRODUCT_FILE = Annotated[str, argument("PRODUCT.nc", "A product of `tracer run`.")]
 
 SETTINGS = Annotated[
     list[str] | None,
-    typer.Option(
+    option(
+        "KEY=VALUE",
+        "Change a key of the run file, for example --set release[1].rate='2e24 s-1'. May be repeated.",
         "--set",
-        metavar="KEY=VALUE",
-        help="Change a key of the run file, for example --set release[1].rate='2e24 s-1'. May be repeated.",
-        show_default=False,
     ),
 ]
 
 OVERWRITE = Annotated[bool, typer.Option("--overwrite", help="Replace an existing output.")]
 
-CLUSTER = Annotated[
-    str | None,
+WORKERS = Annotated[
+    int | None,
     typer.Option(
-        metavar="WHERE",
-        help="Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json.",
-        show_default=False,
+        min=1, help="Threads to trace on; by default all processors. The product does not depend on it."
     ),
 ]
 
-LOG = Annotated[
+CLUSTER = Annotated[
     str | None,
-    typer.Option(metavar="FILE", help="Append one JSON line an event.", show_default=False),
+    option(
+        "WHERE", "Trace on Dask workers: local:N, tcp://HOST:PORT, tls://HOST:PORT or a scheduler FILE.json."
+    ),
 ]
+
+LOG = Annotated[str | None, option("FILE", "Append one JSON line an event.")]
 
 JSON = Annotated[
     bool, typer.Option("--json", help="Print the figures for machines: SI units, angles in degrees.")

@@ -10,7 +10,7 @@ import typer
 from tracer.catalogue.lines import lines
 from tracer.catalogue.load import bodies, gases, source_notes
 from tracer.catalogue.photo_rates import photo_rates
-from tracer.commands.arguments import JSON
+from tracer.commands.arguments import JSON, argument
 from tracer.commands.catalogue_figures import body_figures, gas_figures, line_figures
 from tracer.commands.catalogue_tables import print_bases, print_bodies, print_gases, print_lines
 from tracer.commands.machine_output import print_json
@@ -57,11 +57,7 @@ CONTENTS: Mapping[Part, Contents] = {
 def command(
     part: Annotated[
         str | None,
-        typer.Argument(
-            metavar="bodies|gases|lines",
-            help="What to list; all three, in short, by default.",
-            show_default=False,
-        ),
+        argument("bodies|gases|lines", "What to list; all three, in short, by default."),
     ] = None,
     json: JSON = False,
 ) -> None:

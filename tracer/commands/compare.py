@@ -8,11 +8,12 @@ from typing import Annotated, Any
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import OVERWRITE
+from tracer.commands.arguments import OVERWRITE, argument, option
 from tracer.commands.comparison_text import print_comparison
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import json_text, print_json
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import FIGURE_ENDINGS, check_output_file
 from tracer.errors import InputError
 from tracer.observe.fit.comparison import CAUTION, compared, needed_of
 from tracer.observe.fit.profile import Profile, read_profile
@@ -23,32 +24,28 @@ from tracer.plots.saving import figure_bytes
 from tracer.product.layout import LINE
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
-from tracer.product.writing import check_output, save_bytes
-from tracer.units import quoted
+from tracer.product.writing import save_bytes
 
 RESULT = ".json"
-FIGURES = (".png", ".pdf", ".svg")
 
 
 def command(
     files: Annotated[
         list[str],
-        typer.Argument(
-            metavar="PRODUCT.nc... OBSERVATION.toml",
-            help="One product of `tracer run`, or several whose releases are pooled; then the observation file, whose "
+        argument(
+            "PRODUCT.nc... OBSERVATION.toml",
+            "One product of `tracer run`, or several whose releases are pooled; then the observation file, whose "
             "keys stand in runs/README.md.",
-            show_default=False,
         ),
     ],
     output: Annotated[
         list[str] | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"May be repeated; the ending says what is written: {RESULT} the result with all points, "
+            f"{', '.join(FIGURE_ENDINGS)} the figure of data, model, parts and residuals.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"May be repeated; the ending says what is written: {RESULT} the result with all points, "
-            f"{', '.join(FIGURES)} the figure of data, model, parts and residuals.",
-            show_default=False,
         ),
     ] = None,
     json: Annotated[
@@ -78,7 +75,7 @@ def command(
     read = [*products, observation, str(spec.folder / spec.profile.file)]
     for path in outputs:
         refuse_inputs(path, read)
-        _check(path, overwrite)
+        check_output_file("--output", path, (RESULT, *FIGURE_ENDINGS), overwrite)
     with ExitStack() as stack:
         for path in outputs:
             stack.enter_context(output_lock(path))
@@ -92,7 +89,7 @@ def command(
         for path in outputs:
             typer.echo(path)
         typer.echo(CAUTION, err=True)
-    if any(Path(path).suffix.lower() in FIGURES for path in outputs):
+    if any(Path(path).suffix.lower() in FIGURE_ENDINGS for path in outputs):
         name_next("report", products[0], "-o", "report.html")
     else:
         name_next("compare", *files, "-o", f"{Path(observation).stem}.png")
@@ -153,12 +150,6 @@ def _told_apart(files: Sequence[str]) -> tuple[list[str], str]:
     if len({Path(name).resolve() for name in products}) < len(products):
         raise InputError(f"{products[0]}: a product is named twice; each counts once")
     return products, observation
-
-
-def _check(path: str, overwrite: bool) -> None:
-    if Path(path).suffix.lower() not in (RESULT, *FIGURES):
-        raise InputError(f"--output: {quoted(path)} has none of the endings {', '.join((RESULT, *FIGURES))}")
-    check_output(path, overwrite)
 
 
 def _compared(products: Sequence[str], spec: ObservationSpec) -> Comparison:

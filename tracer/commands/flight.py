@@ -6,7 +6,7 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import JSON, OVERWRITE, RUN_FILE, SETTINGS
+from tracer.commands.arguments import JSON, OVERWRITE, RUN_FILE, SETTINGS, option
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.machine_output import print_json
 from tracer.commands.next_command import name_next
@@ -45,9 +45,7 @@ def command(
     ],
     output: Annotated[
         str | None,
-        typer.Option(
-            "--output", "-o", metavar="FLIGHT.csv", help="Write the path as CSV.", show_default=False
-        ),
+        option("FLIGHT.csv", "Write the path as CSV.", "--output", "-o"),
     ] = None,
     overwrite: OVERWRITE = False,
     settings: SETTINGS = None,

@@ -5,7 +5,7 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE
+from tracer.commands.arguments import OVERWRITE, argument, option
 from tracer.commands.budget_table import print_budget
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
@@ -18,16 +18,9 @@ from tracer.product.writing import check_output, save_product
 def command(
     products: Annotated[
         list[str],
-        typer.Argument(
-            metavar="PRODUCT.nc...",
-            help="Products of one scene: other seeds, or other batches of one seed.",
-            show_default=False,
-        ),
+        argument("PRODUCT.nc...", "Products of one scene: other seeds, or other batches of one seed."),
     ],
-    output: Annotated[
-        str,
-        typer.Option("--output", "-o", metavar="OUT.nc", help="The merged product.", show_default=False),
-    ],
+    output: Annotated[str, option("OUT.nc", "The merged product.", "--output", "-o")],
     overwrite: OVERWRITE = False,
 ) -> None:
     """Merge products of one scene, made with other seeds or batches, into one with smaller errors."""

@@ -1,12 +1,35 @@
-"""What a user is likely to want next."""
+"""The commands that a user is likely to want next, quoted for a shell."""
 
 import shlex
 from collections.abc import Sequence
+from typing import NamedTuple
 
 import typer
 
 
+class Tracing(NamedTuple):
+    """How to trace, as the options that `tracer run` and `tracer sweep` share say."""
+
+    workers: int | None
+    cluster: str | None
+    log: str | None
+    settings: Sequence[str]
+    overwrite: bool
+    resume: bool
+
+
 def name_next(*words: str, settings: Sequence[str] | None = None) -> None:
-    """Print, on standard error, the command `tracer` with `words` and the same --set `settings`, quoted for a shell."""
-    changes = [part for setting in settings or () for part in ("--set", setting)]
-    typer.echo(f"Next: {shlex.join(['tracer', *words, *changes])}", err=True)
+    """Print, on standard error, the command `tracer` with `words` and the same --set `settings`."""
+    typer.echo(f"Next: {shlex.join(['tracer', *words, *_changes(settings or ())])}", err=True)
+
+
+def resuming_command(*words: str, tracing: Tracing) -> str:
+    """Return the command `tracer` with `words` that goes on with an interrupted `tracing`."""
+    options = {"--cluster": tracing.cluster, "--log": tracing.log, "--workers": tracing.workers}
+    given = [part for name, value in options.items() if value is not None for part in (name, str(value))]
+    overwrite = ["--overwrite"] if tracing.overwrite else []
+    return shlex.join(["tracer", *words, *given, *_changes(tracing.settings), *overwrite, "--resume"])
+
+
+def _changes(settings: Sequence[str]) -> list[str]:
+    return [part for setting in settings for part in ("--set", setting)]

@@ -8,16 +8,17 @@ import numpy as np
 import typer
 from astropy.table import Table
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument, option
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import check_output_file
 from tracer.constants import ASTRONOMICAL_UNIT
 from tracer.observe.gas import Gas, gas_of, without_the_rest
 from tracer.observe.plan import CAUTION, check_lines, lines_of, observation_of
 from tracer.observe.plan_summary import PlanSummary, summarize
 from tracer.observe.planspec.observer import TablePath
 from tracer.observe.planspec.plan import PlanSpec, load_plan
-from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
+from tracer.observe.table_files import ENDINGS, csv_text, table_bytes
 from tracer.observe.tables import times
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
@@ -41,21 +42,19 @@ def command(
     product: PRODUCT_FILE,
     plan: Annotated[
         str,
-        typer.Argument(
-            metavar="PLAN.toml",
-            help="The plan file: path of the observer, pointing, spectrometer; its keys stand in runs/README.md.",
-            show_default=False,
+        argument(
+            "PLAN.toml",
+            "The plan file: path of the observer, pointing, spectrometer; its keys stand in runs/README.md.",
         ),
     ],
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"The table, a row per exposure; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to "
+            "standard output, and the summary to standard error.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"The table, a row per exposure; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to "
-            "standard output, and the summary to standard error.",
-            show_default=False,
         ),
     ] = None,
     overwrite: OVERWRITE = False,
@@ -72,7 +71,7 @@ def command(
     spec = load_plan(plan)
     if output is not None:
         refuse_inputs(output, [product, plan, *_inputs(spec)])
-        ending = check_table_file("--output", output, overwrite)
+        ending = check_output_file("--output", output, ENDINGS, overwrite, "table")
     with open_product(product) as stored:
         check_lines(spec, stored)
         ds = without_the_rest(stored)

@@ -1,15 +1,30 @@
 """`tracer plot`: a figure of a product."""
 
 import math
-from enum import StrEnum
-from typing import Annotated
 
 import typer
 
 from tracer.commands.arguments import OVERWRITE
-from tracer.commands.figure_file import ENDINGS, check_figure_file
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import FIGURE_ENDINGS, check_output_file
+from tracer.commands.plot_options import (
+    DPI,
+    DRAWINGS,
+    FATE,
+    IMAGE,
+    LEVEL,
+    LINE,
+    OF_IMAGES,
+    OUTPUT,
+    PLACE,
+    PRODUCT,
+    RELEASE,
+    SKY,
+    WHAT,
+    WIDTH,
+    WidthName,
+)
 from tracer.errors import InputError
 from tracer.plots.figures import FIGURES, SWEPT_FIGURES, Choice, What
 from tracer.plots.plan_table import read_plan
@@ -23,115 +38,23 @@ from tracer.product.reading import is_sweep, load_all, open_product, open_sweep
 from tracer.product.writing import save_bytes
 from tracer.units import quoted
 
-
-class WidthName(StrEnum):
-    """The widths of a figure."""
-
-    COLUMN = "column"
-    FULL = "full"
-
-
-HELP = " ".join(
-    [
-        *(f"{what}: {drawing.help}." for what, drawing in FIGURES.items()),
-        f"{What.PLAN}: a plan in time.",
-        "Of a sweep:",
-        *(f"{what}: {drawing.help}." for what, drawing in SWEPT_FIGURES.items()),
-    ]
-)
-DRAWINGS = {**FIGURES, **SWEPT_FIGURES}
-_OF_IMAGES = [what for what, drawing in DRAWINGS.items() if drawing.of_image]
-OF_IMAGES = f"{', '.join(_OF_IMAGES[:-1])} and {_OF_IMAGES[-1]}"
 OF_VELOCITY = ("column_", "brightness_", "mean_velocity_", "velocity_width_", "line_shift_", "line_width_")
 """Beginnings of the variables that the figure of velocities needs."""
 
 
 def command(
-    product: Annotated[
-        str,
-        typer.Argument(
-            metavar="PRODUCT.nc",
-            help="A product of `tracer run` or `tracer sweep`; for --what plan the table that `tracer plan` wrote.",
-            show_default=False,
-        ),
-    ],
-    what: Annotated[
-        What,
-        typer.Option(
-            metavar="FIGURE",
-            help=HELP,
-            show_default=False,
-        ),
-    ],
-    output: Annotated[
-        str,
-        typer.Option(
-            "--output",
-            "-o",
-            metavar="FILE",
-            help=f"The figure; its ending says its kind: {', '.join(ENDINGS)}.",
-            show_default=False,
-        ),
-    ],
-    image_name: Annotated[
-        str | None,
-        typer.Option(
-            "--image",
-            metavar="NAME",
-            help="Which image, by its name in the run file or the product; needed where there are several.",
-            show_default=False,
-        ),
-    ] = None,
-    line: Annotated[
-        str | None,
-        typer.Option(
-            metavar="NAME",
-            help="Draw image, tail or velocity in the brightness of this line; otherwise in column density.",
-            show_default=False,
-        ),
-    ] = None,
-    release: Annotated[
-        str | None,
-        typer.Option(
-            metavar="NAME", help="Draw one release; otherwise the sum over all of them.", show_default=False
-        ),
-    ] = None,
-    fate: Annotated[
-        str | None,
-        typer.Option(
-            metavar="NAME", help="Of a sweep: the share of one fate, such as escaped.", show_default=False
-        ),
-    ] = None,
-    place: Annotated[
-        str | None,
-        typer.Option(
-            metavar="LATITUDE,HOUR",
-            help="Of a sweep: the place whose column is drawn, in degrees and hours of local time; by default the "
-            "means of day and night side.",
-            show_default=False,
-        ),
-    ] = None,
-    sky: Annotated[
-        str | None,
-        typer.Option(
-            metavar="RIGHT,UP",
-            help="Of a sweep: the line of sight, by its place in the image from the body's centre, in body radii; by "
-            "default the brightest of the first point.",
-            show_default=False,
-        ),
-    ] = None,
-    level: Annotated[
-        float | None,
-        typer.Option(
-            metavar="NUMBER",
-            help="Of a sweep: down to what a tail counts, in kR, or in cm-2 without --line.",
-            show_default=False,
-        ),
-    ] = None,
-    width: Annotated[
-        WidthName, typer.Option(help="column: 88 mm, one column of a journal. full: 180 mm, the whole page.")
-    ] = WidthName.FULL,
-    dpi: Annotated[int, typer.Option(min=50, max=1200, help="Pixels per inch.")] = DOTS_PER_INCH,
+    product: PRODUCT,
+    what: WHAT,
+    output: OUTPUT,
+    image_name: IMAGE = None,
+    line: LINE = None,
+    release: RELEASE = None,
+    fate: FATE = None,
+    place: PLACE = None,
+    sky: SKY = None,
+    level: LEVEL = None,
+    width: WIDTH = WidthName.FULL,
+    dpi: DPI = DOTS_PER_INCH,
     overwrite: OVERWRITE = False,
 ) -> None:
     """Draw one figure of a product, or of a plan, ready for a paper, as PNG, PDF or SVG."""
@@ -147,7 +70,7 @@ def command(
         if value is not None and not goes:
             raise InputError(f"{option}: goes with --what {words}, not with --what {what}")
     refuse_inputs(output, [product])
-    ending = check_figure_file("--output", output, overwrite)
+    ending = check_output_file("--output", output, FIGURE_ENDINGS, overwrite, "figure")
     choice = Choice(
         release,
         image_name,

@@ -5,17 +5,17 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument
 from tracer.commands.input_guard import refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import check_output_file
 from tracer.errors import InputError
 from tracer.plots.page.document import report_page
 from tracer.plots.plan_table import read_plan
 from tracer.product.checksum import data_checksum
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
-from tracer.product.writing import check_output, save_bytes
-from tracer.units import quoted
+from tracer.product.writing import save_bytes
 
 ENDINGS = (".html", ".htm")
 
@@ -24,11 +24,7 @@ def command(
     product: PRODUCT_FILE,
     plan: Annotated[
         str | None,
-        typer.Argument(
-            metavar="PLAN-OUT",
-            help="The table that `tracer plan` wrote: .ecsv, .csv or .nc.",
-            show_default=False,
-        ),
+        argument("PLAN-OUT", "The table that `tracer plan` wrote: .ecsv, .csv or .nc."),
     ] = None,
     output: Annotated[
         str, typer.Option("--output", "-o", metavar="FILE.html", help="The page.")
@@ -37,11 +33,7 @@ def command(
 ) -> None:
     """Write one HTML page that needs no network: scene, budget, figures, plan, cautions, provenance."""
     refuse_inputs(output, [product, *([plan] if plan is not None else [])])
-    if Path(output).suffix.lower() not in ENDINGS:
-        raise InputError(
-            f"--output: {quoted(output)} has none of the endings of a page: {', '.join(ENDINGS)}"
-        )
-    check_output(output, overwrite)
+    check_output_file("--output", output, ENDINGS, overwrite, "page")
     planned = None if plan is None else read_plan(plan)
     with output_lock(output), open_product(product) as ds:
         load_all(ds, product)

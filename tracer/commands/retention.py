@@ -9,11 +9,11 @@ import typer
 
 from tracer.catalogue.load import bodies, gases
 from tracer.catalogue.records import Gas
-from tracer.commands.arguments import JSON
+from tracer.commands.arguments import JSON, argument, option
 from tracer.commands.choices import unknown_name
 from tracer.commands.durations import AGE_IN_GYR
-from tracer.commands.figure_file import check_figure_file
 from tracer.commands.machine_output import print_json
+from tracer.commands.output_file import FIGURE_ENDINGS, check_output_file
 from tracer.commands.quantity_options import Measure, si_option
 from tracer.commands.retention_bodies import (
     Circumstances,
@@ -51,26 +51,23 @@ WIND_SPEED = Measure("speed", "km/s", Interval(at_least=1e-3, at_most=1e5))
 
 
 def _quantity(words: str) -> Any:
-    return typer.Option(metavar="QUANTITY", help=words, show_default=False)
+    return option("QUANTITY", words)
 
 
 def command(
     names: Annotated[
         list[str] | None,
-        typer.Argument(
-            metavar="BODY",
-            help="Bodies of the catalogue (tracer catalogue bodies), or one of your own with --radius and --gm.",
-            show_default=False,
+        argument(
+            "BODY",
+            "Bodies of the catalogue (tracer catalogue bodies), or one of your own with --radius and --gm.",
         ),
     ] = None,
     gas: Annotated[
         list[str] | None,
-        typer.Option(
-            "--gas",
-            metavar="GAS...",
-            help="Gases of the catalogue (tracer catalogue gases), one or more. "
+        option(
+            "GAS...",
+            "Gases of the catalogue (tracer catalogue gases), one or more. "
             f"By default {', '.join(DEFAULT_GASES)}.",
-            show_default=False,
         ),
     ] = None,
     temperature: Annotated[
@@ -99,10 +96,8 @@ def command(
     ] = None,
     plot: Annotated[
         str | None,
-        typer.Option(
-            metavar="FILE",
-            help="Draw escape speed against temperature with the limits of each gas (.png, .pdf or .svg).",
-            show_default=False,
+        option(
+            "FILE", "Draw escape speed against temperature with the limits of each gas (.png, .pdf or .svg)."
         ),
     ] = None,
     overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an existing figure.")] = False,
@@ -128,7 +123,7 @@ def command(
     )
     body_names, gas_names = _sorted_words(names or [], gas or [])
     if plot is not None:
-        check_figure_file("--plot", plot, overwrite)
+        check_output_file("--plot", plot, FIGURE_ENDINGS, overwrite, "figure")
     check_overrides(body_names, given)
     asked = [subject(name, given) for name in body_names]
     chosen = [_gas(name) for name in gas_names or DEFAULT_GASES]

@@ -1,17 +1,16 @@
 """`tracer run`: the main job."""
 
-import shlex
 from pathlib import Path
 from typing import Annotated, NamedTuple
 
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import CLUSTER, LOG, RUN_FILE, SETTINGS
+from tracer.commands.arguments import CLUSTER, LOG, RUN_FILE, SETTINGS, WORKERS, option
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import refuse_inputs
-from tracer.commands.next_command import name_next
+from tracer.commands.next_command import Tracing, name_next, resuming_command
 from tracer.commands.progress import shown_progress
 from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.executors.choice import chosen_executor
@@ -35,8 +34,7 @@ class Job(NamedTuple):
     plan: Plan
     path: str
     share: bool
-    overwrite: bool
-    resume: bool
+    tracing: Tracing
     again: str
     """The command that goes on after an interruption."""
 
@@ -45,20 +43,14 @@ def command(
     run_file: RUN_FILE,
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT.nc",
+            "The product; by default the run file's name with .nc, in the current folder.",
             "--output",
             "-o",
-            metavar="OUT.nc",
-            help="The product; by default the run file's name with .nc, in the current folder.",
-            show_default=False,
         ),
     ] = None,
-    workers: Annotated[
-        int | None,
-        typer.Option(
-            min=1, help="Threads to trace on; by default all processors. The product does not depend on it."
-        ),
-    ] = None,
+    workers: WORKERS = None,
     overwrite: Annotated[
         bool, typer.Option("--overwrite", help="Replace an existing product; drop an existing checkpoint.")
     ] = False,
@@ -67,10 +59,8 @@ def command(
     ] = False,
     batches: Annotated[
         str | None,
-        typer.Option(
-            metavar="FIRST:STOP",
-            help="A share: these batches alone, counted from 0; tracer merge puts shares together.",
-            show_default=False,
+        option(
+            "FIRST:STOP", "A share: these batches alone, counted from 0; tracer merge puts shares together."
         ),
     ] = None,
     cluster: CLUSTER = None,
@@ -78,36 +68,32 @@ def command(
     settings: SETTINGS = None,
 ) -> None:
     """Trace a run file's particles and write the product (netCDF)."""
-    spec = load_run(run_file, settings or ())
+    tracing = Tracing(workers, cluster, log, settings or (), overwrite, resume)
+    spec = load_run(run_file, tracing.settings)
     path = Path(run_file).stem + ".nc" if output is None else output
     share = None if batches is None else parse_batches(batches)
     plan = make_plan(spec, build_scene(spec), share)
-    words = ["tracer", "run", run_file, "-o", path]
-    for option, value in (("--batches", batches), ("--cluster", cluster), ("--log", log)):
-        words += [option, value] if value is not None else []
-    words += ["--workers", str(workers)] if workers is not None else []
-    words += [word for change in settings or () for word in ("--set", change)]
-    words += ["--overwrite"] if overwrite else []
-    job = Job(plan, path, share is not None, overwrite, resume, shlex.join([*words, "--resume"]))
+    words = ["run", run_file, "-o", path, *(() if batches is None else ("--batches", batches))]
+    job = Job(plan, path, share is not None, tracing, resuming_command(*words, tracing=tracing))
     for name in (path, log):
         if name is not None:
             refuse_inputs(name, [run_file, *referenced_files(spec)])
     with event_log(log) as note:
-        _do(job, cluster, workers, note)
+        _do(job, note)
 
 
-def _do(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
-    if not (job.resume and Path(job.path).exists()):
-        check_output(job.path, job.overwrite)
+def _do(job: Job, note: Note) -> None:
+    if not (job.tracing.resume and Path(job.path).exists()):
+        check_output(job.path, job.tracing.overwrite)
     for text in scene_notes(job.plan.spec, job.plan.scene):
         note("note", f"Note: {text}.")
     with output_lock(job.path):
-        checkpoints = Checkpoints(job.path, job.resume, note)
+        checkpoints = Checkpoints(job.path, job.tracing.resume, note)
         checkpoints.remove_leftovers()
-        if job.resume and Path(job.path).exists() and _is_done(job, checkpoints):
+        if job.tracing.resume and Path(job.path).exists() and _is_done(job, checkpoints):
             return
         _check_checkpoints(job, checkpoints)
-        product = _trace_and_save(job, cluster, workers, checkpoints, note)
+        product = _trace_and_save(job, checkpoints, note)
     print_budget(product)
     attributes = product.attrs
     typer.echo(
@@ -132,26 +118,25 @@ def _is_done(job: Job, checkpoints: Checkpoints) -> bool:
         typer.echo(f"product: {job.path} is complete already: nothing to do")
         name_next("summary", job.path)
         return True
-    check_output(job.path, job.overwrite)
+    check_output(job.path, job.tracing.overwrite)
     return False
 
 
 def _check_checkpoints(job: Job, checkpoints: Checkpoints) -> None:
     """See to it that a fresh start destroys no work unasked."""
-    if job.resume or not checkpoints.existing():
+    if job.tracing.resume or not checkpoints.existing():
         return
-    if not job.overwrite:
+    if not job.tracing.overwrite:
         raise InputError(
             f"{job.path}: an interrupted run has left a checkpoint; --resume goes on from it, --overwrite starts afresh"
         )
     checkpoints.remove()
 
 
-def _trace_and_save(
-    job: Job, cluster: str | None, workers: int | None, checkpoints: Checkpoints, note: Note
-) -> xr.Dataset:
+def _trace_and_save(job: Job, checkpoints: Checkpoints, note: Note) -> xr.Dataset:
+    tracing = job.tracing
     try:
-        with chosen_executor(cluster, workers, note) as executor, shown_progress() as watch:
+        with chosen_executor(tracing.cluster, tracing.workers, note) as executor, shown_progress() as watch:
             product = run(
                 job.plan.spec,
                 executor.workers,
@@ -162,7 +147,7 @@ def _trace_and_save(
                 checkpoints=checkpoints,
                 note=note,
             )
-        save_product(product, job.path, job.overwrite)
+        save_product(product, job.path, job.tracing.overwrite)
     except KeyboardInterrupt:
         note("interrupted", "", batches_kept=checkpoints.kept_batches)
         raise Interrupted(

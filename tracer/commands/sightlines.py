@@ -5,13 +5,14 @@ from typing import Annotated
 
 import typer
 
-from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE
+from tracer.commands.arguments import OVERWRITE, PRODUCT_FILE, argument, option
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.next_command import name_next
+from tracer.commands.output_file import check_output_file
 from tracer.errors import InputError
 from tracer.observe.gas import gas_of, without_the_rest
 from tracer.observe.sightlines import CAUTION, Options, sightlines_of
-from tracer.observe.table_files import ENDINGS, check_table_file, csv_text, table_bytes
+from tracer.observe.table_files import ENDINGS, csv_text, table_bytes
 from tracer.observe.tables import read_table
 from tracer.product.lock import output_lock
 from tracer.product.reading import load_all, open_product
@@ -23,31 +24,25 @@ def command(
     product: PRODUCT_FILE,
     rays: Annotated[
         str,
-        typer.Argument(
-            metavar="RAYS",
-            help="CSV or ECSV: observer_x_km, observer_y_km, observer_z_km (Sun-fixed frame: +x to the Sun, +z north); "
+        argument(
+            "RAYS",
+            "CSV or ECSV: observer_x_km, observer_y_km, observer_z_km (Sun-fixed frame: +x to the Sun, +z north); "
             "and look_x, look_y, look_z, or tangent_altitude_km, tangent_latitude_deg, tangent_local_time_h; "
             "optional time.",
-            show_default=False,
         ),
     ],
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT",
+            f"The table; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to standard output.",
             "--output",
             "-o",
-            metavar="OUT",
-            help=f"The table; its ending says its kind: {', '.join(ENDINGS)}. Otherwise CSV to standard output.",
-            show_default=False,
         ),
     ] = None,
     line: Annotated[
         list[str] | None,
-        typer.Option(
-            metavar="NAME",
-            help="An emission line of the product; may be repeated. Otherwise all of them.",
-            show_default=False,
-        ),
+        option("NAME", "An emission line of the product; may be repeated. Otherwise all of them."),
     ] = None,
     by_release: Annotated[
         bool,
@@ -55,11 +50,10 @@ def command(
     ] = False,
     doppler_speed: Annotated[
         str | None,
-        typer.Option(
-            metavar="SPEED",
-            help="Doppler speed b for the optical depth, such as '930 m/s'. Otherwise sqrt(2kT/m) of each release's "
+        option(
+            "SPEED",
+            "Doppler speed b for the optical depth, such as '930 m/s'. Otherwise sqrt(2kT/m) of each release's "
             "law of speed.",
-            show_default=False,
         ),
     ] = None,
     no_errors: Annotated[
@@ -82,7 +76,7 @@ def command(
     speed = _speed(doppler_speed)
     if output is not None:
         refuse_inputs(output, [product, rays])
-        ending = check_table_file("--output", output, overwrite)
+        ending = check_output_file("--output", output, ENDINGS, overwrite, "table")
     table = read_table(rays)
     with open_product(product) as stored:
         ds = without_the_rest(stored, errors=not no_errors)

@@ -1,17 +1,17 @@
 """`tracer sweep`: one run file, traced again and again with other values of some of its keys."""
 
-import shlex
+from collections.abc import Mapping
 from pathlib import Path
 from typing import Annotated, NamedTuple
 
 import typer
 
-from tracer.commands.arguments import CLUSTER, JSON, LOG, SETTINGS
+from tracer.commands.arguments import CLUSTER, JSON, LOG, SETTINGS, WORKERS, argument, option
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.machine_output import print_json
-from tracer.commands.next_command import name_next
+from tracer.commands.next_command import Tracing, name_next, resuming_command
 from tracer.commands.progress import shown_progress
 from tracer.commands.sweep_tables import print_point_budgets, print_prepared
 from tracer.engine.executors.choice import chosen_executor
@@ -35,8 +35,7 @@ class Job(NamedTuple):
 
     sweep: Sweep
     path: str
-    overwrite: bool
-    resume: bool
+    tracing: Tracing
     again: str
     """The command that goes on after an interruption."""
 
@@ -44,21 +43,19 @@ class Job(NamedTuple):
 def command(
     sweep_file: Annotated[
         str,
-        typer.Argument(
-            metavar="SWEEP.toml",
-            help="The sweep file: a run file with a table \\[sweep], see runs/README.md. With --point also the product "
+        argument(
+            "SWEEP.toml",
+            "The sweep file: a run file with a table \\[sweep], see runs/README.md. With --point also the product "
             "of a sweep.",
-            show_default=False,
         ),
     ],
     output: Annotated[
         str | None,
-        typer.Option(
+        option(
+            "OUT.nc",
+            "The product; by default the sweep file's name with .nc, in the current folder.",
             "--output",
             "-o",
-            metavar="OUT.nc",
-            help="The product; by default the sweep file's name with .nc, in the current folder.",
-            show_default=False,
         ),
     ] = None,
     check: Annotated[
@@ -77,12 +74,7 @@ def command(
             show_default=False,
         ),
     ] = None,
-    workers: Annotated[
-        int | None,
-        typer.Option(
-            min=1, help="Threads to trace on; by default all processors. The product does not depend on it."
-        ),
-    ] = None,
+    workers: WORKERS = None,
     overwrite: Annotated[
         bool,
         typer.Option(
@@ -101,24 +93,16 @@ def command(
     json: JSON = False,
 ) -> None:
     """Trace a run file over lists or ranges of its values and write one product with the swept dimensions."""
+    tracing = Tracing(workers, cluster, log, settings or (), overwrite, resume)
     if json and not check:
         raise InputError("--json: goes with --check")
-    if point is not None:
-        for option in (name for name, value in {"--check": check, "--resume": resume}.items() if value):
-            raise InputError(f"--point: cannot go with {option}, which is about all points of a sweep")
+    about_all = _first_given({"--check": check, "--resume": resume})
+    if point is not None and about_all is not None:
+        raise InputError(f"--point: cannot go with {about_all}, which is about all points of a sweep")
     if Path(sweep_file).suffix == ENDING or is_sweep(sweep_file):
-        if point is None:
-            raise InputError(
-                f"{sweep_file}: is a product, not a sweep file; --point N takes one point out of it"
-            )
-        tracing = {"--set": settings, "--workers": workers, "--cluster": cluster, "--log": log}
-        for option in (name for name, value in tracing.items() if value):
-            raise InputError(
-                f"{sweep_file}: is a product, which is traced already; {option} goes with a sweep file"
-            )
-        _take_out(sweep_file, point, output, overwrite)
+        _take_out(sweep_file, _point_of_product(sweep_file, point, tracing), output, overwrite)
         return
-    sweep = load_sweep(sweep_file, settings or ())
+    sweep = load_sweep(sweep_file, tracing.settings)
     if check:
         _check(prepare_sweep(sweep, workers or available_processors()), sweep_file, settings, json)
         return
@@ -126,16 +110,35 @@ def command(
     for name in (path, log):
         if name is not None:
             refuse_inputs(name, _inputs(sweep))
+    job = Job(sweep, path, tracing, resuming_command("sweep", sweep_file, "-o", path, tracing=tracing))
     with event_log(log) as note:
-        if point is not None:
-            _trace_one(sweep, point, Job(sweep, path, overwrite, False, ""), cluster, workers, note)
-            return
-        words = ["tracer", "sweep", sweep_file, "-o", path]
-        for option, value in (("--cluster", cluster), ("--log", log), ("--workers", workers)):
-            words += [option, str(value)] if value is not None else []
-        words += [word for change in settings or () for word in ("--set", change)]
-        words += ["--overwrite"] if overwrite else []
-        _sweep(Job(sweep, path, overwrite, resume, shlex.join([*words, "--resume"])), cluster, workers, note)
+        if point is None:
+            _sweep(job, note)
+        else:
+            _trace_one(point, job, note)
+
+
+def _point_of_product(product: str, point: int | None, tracing: Tracing) -> int:
+    """Return the point to take out of a sweep's product, for which options of tracing are of no use."""
+    if point is None:
+        raise InputError(f"{product}: is a product, not a sweep file; --point N takes one point out of it")
+    of_tracing = _first_given(
+        {
+            "--set": tracing.settings,
+            "--workers": tracing.workers,
+            "--cluster": tracing.cluster,
+            "--log": tracing.log,
+        }
+    )
+    if of_tracing is not None:
+        raise InputError(
+            f"{product}: is a product, which is traced already; {of_tracing} goes with a sweep file"
+        )
+    return point
+
+
+def _first_given(options: Mapping[str, object]) -> str | None:
+    return next((name for name, value in options.items() if value), None)
 
 
 def _default_output(sweep_file: str, point: int | None) -> str:
@@ -148,9 +151,12 @@ def _inputs(sweep: Sweep) -> list[str | Path]:
     return [sweep.file, sweep.run_file, *referenced_files(first.spec)]
 
 
-def _sweep(job: Job, cluster: str | None, workers: int | None, note: Note) -> None:
+def _sweep(job: Job, note: Note) -> None:
     try:
-        with chosen_executor(cluster, workers, note) as executor, shown_progress() as watch:
+        with (
+            chosen_executor(job.tracing.cluster, job.tracing.workers, note) as executor,
+            shown_progress() as watch,
+        ):
             made = run_sweep(
                 job.sweep,
                 job.path,
@@ -158,8 +164,8 @@ def _sweep(job: Job, cluster: str | None, workers: int | None, note: Note) -> No
                 watch,
                 executor.map_batches,
                 prepare=executor.prepare,
-                overwrite=job.overwrite,
-                resume=job.resume,
+                overwrite=job.tracing.overwrite,
+                resume=job.tracing.resume,
                 note=note,
             )
     except SweepInterrupted as interruption:
@@ -199,15 +205,13 @@ def _how_to_go_on(job: Job, kept: Kept) -> str:
     return f"{' and '.join(safe)} kept; go on with: {job.again}"
 
 
-def _trace_one(
-    sweep: Sweep, number: int, job: Job, cluster: str | None, workers: int | None, note: Note
-) -> None:
+def _trace_one(number: int, job: Job, note: Note) -> None:
     """Trace one point alone, as `tracer run` would trace its run file."""
-    chosen = _point(sweep, number)
-    check_output(job.path, job.overwrite)
+    chosen = _point(job.sweep, number)
+    check_output(job.path, job.tracing.overwrite)
     with (
         output_lock(job.path),
-        chosen_executor(cluster, workers, note) as executor,
+        chosen_executor(job.tracing.cluster, job.tracing.workers, note) as executor,
         shown_progress() as watch,
     ):
         product = run(
@@ -218,7 +222,7 @@ def _trace_one(
             prepare=executor.prepare,
             note=note,
         )
-        save_product(product, job.path, job.overwrite)
+        save_product(product, job.path, job.tracing.overwrite)
     typer.echo(f"point {number}: {chosen.words}")
     print_budget(product)
     typer.echo(f"product: {job.path}")

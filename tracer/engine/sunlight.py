@@ -17,7 +17,7 @@ from tracer.engine.runspec.spectral_line import GTable, SpectralLineTable
 from tracer.engine.runspec.sun import SunTable
 from tracer.engine.two_columns import read_two_columns
 from tracer.errors import InputError
-from tracer.kernels.orbit import Orbit
+from tracer.kernels.two_body import Orbit
 from tracer.physics.ephemeris import KNOWN, MOON, Sighting, moon_sighting, sighting
 from tracer.physics.host import MoonPlace, moon_as_seen, moon_at_phase
 from tracer.physics.lines import VelocityTable, catalogue_table, constant_table, table_of

@@ -1,5 +1,6 @@
 """A file of TOML into tables, with messages that say file, line and what is wrong."""
 
+import os
 import re
 import tomllib
 from pathlib import Path
@@ -14,7 +15,7 @@ _PLAIN_WORDS = (
 )
 
 
-def file_text(name: str, what: str) -> str:
+def file_text(path: str | os.PathLike[str], what: str) -> str:
     """Return the text of a UTF-8 file, with or without byte-order mark; `what` it should be, for messages.
 
     Raises
@@ -22,6 +23,7 @@ def file_text(name: str, what: str) -> str:
     InputError
         The file cannot be read.
     """
+    name = os.fspath(path)
     return _decoded(_content(name, what), name)
 
 

@@ -11,11 +11,11 @@ from tracer.kernels.arc_flight import turned
 from tracer.kernels.bounce import rebound, sticking_at
 from tracer.kernels.compiling import INLINED, field_type, inlined, merged
 from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED, STRUCK
-from tracer.kernels.orbit import orbit_state, turning_at
 from tracer.kernels.resume import AGE, CLOCK, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
 from tracer.kernels.roulette import play_roulette
 from tracer.kernels.scoring import ground_cell
 from tracer.kernels.traps import NOWHERE, trapped
+from tracer.kernels.two_body import orbit_state, turning_at
 
 
 @inlined

@@ -8,8 +8,9 @@ import numpy as np
 from tracer.kernels.compiling import inlined
 from tracer.kernels.host import Host, HostOrbit, past_host, with_host_pull, with_slip
 from tracer.kernels.lines import sum_of_lines
-from tracer.kernels.orbit import Orbit, with_turning_growth
+from tracer.kernels.orbit import with_turning_growth
 from tracer.kernels.shadow import Shadow, lit_fraction
+from tracer.kernels.two_body import Orbit
 
 
 class Forces(NamedTuple):

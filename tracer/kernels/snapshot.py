@@ -37,7 +37,7 @@ from tracer.kernels.lanes import (
 )
 from tracer.kernels.launches import Launches
 from tracer.kernels.motion import radial_velocity, sunlight_received
-from tracer.kernels.orbit import orbit_state, stated_body, turning_at
+from tracer.kernels.orbit import stated_body
 from tracer.kernels.resume import (
     AGE,
     CLOCK,
@@ -60,6 +60,7 @@ from tracer.kernels.resume import (
 )
 from tracer.kernels.scoring import Tally, score_in_light
 from tracer.kernels.step_control import care
+from tracer.kernels.two_body import orbit_state, turning_at
 from tracer.kernels.world import World
 
 COHORT = 0.0

@@ -1,18 +1,14 @@
 """What the run file inside a product tells an observer: the gas, its sources, the Sun, the traced space."""
 
 import math
-import tomllib
-from collections.abc import Mapping
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 from tracer.catalogue.lines import lines
 from tracer.catalogue.load import bodies, gases, hosts
 from tracer.catalogue.records import Body, Orbit
 from tracer.physics.orbit import hill_radius
 from tracer.physics.thermal import most_probable_speed
-from tracer.units import parse, si
-
-Table = Mapping[str, Any]
+from tracer.product.run_file import Table, entries, table, tables_of, value
 
 
 class LineFacts(NamedTuple):
@@ -42,22 +38,18 @@ def run_facts(text: str, radius: float, ground_temperature: float | None) -> Run
 
     `ground_temperature` [K] stands for the temperature of gas that leaves at that of the surface.
     """
-    try:
-        run: Table = tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError):
-        run = {}
-    gas, sun = _table(run, "gas"), _table(run, "sun")
+    run = tables_of(text)
+    gas, sun = table(run, "gas"), table(run, "sun")
     species = str(gas.get("species", ""))
-    mass = _value(gas, "mass", "mass", radius)
+    mass = value(gas, "mass", "mass", radius)
     if mass is None and species in gases():
         mass = gases()[species].mass
-    releases = [entry for entry in run.get("release", ()) if isinstance(entry, dict)]
     speeds = {
-        str(entry.get("name")): _doppler_speed(_table(entry, "speed"), mass, ground_temperature)
-        for entry in releases
+        str(entry.get("name")): _doppler_speed(table(entry, "speed"), mass, ground_temperature)
+        for entry in entries(run, "release")
     }
-    orbit, hill = _orbit_and_hill_radius(_table(run, "body"), radius)
-    outer = _value(_table(run, "domain"), "outer_radius", "length or radii", radius)
+    orbit, hill = _orbit_and_hill_radius(table(run, "body"), radius)
+    outer = value(table(run, "domain"), "outer_radius", "length or radii", radius)
     return RunFacts(
         species=species,
         mass=mass,
@@ -84,32 +76,32 @@ def _doppler_speed(speed: Table, mass: float | None, ground_temperature: float |
     """
     law = speed.get("law")
     if law == "single":
-        return _value(speed, "speed", "speed", 1.0) or math.nan
+        return value(speed, "speed", "speed", 1.0) or math.nan
     if mass is None:
         return math.nan
     if law == "sigmund-thompson":
-        return math.sqrt((_value(speed, "binding_energy", "energy", 1.0) or math.nan) / mass)
+        return math.sqrt((value(speed, "binding_energy", "energy", 1.0) or math.nan) / mass)
     if law not in ("maxwell-flux", "maxwell-gas"):
         return math.nan
     at_ground = speed.get("temperature") == "surface"
-    kelvin = ground_temperature if at_ground else _value(speed, "temperature", "temperature", 1.0)
+    kelvin = ground_temperature if at_ground else value(speed, "temperature", "temperature", 1.0)
     return math.nan if kelvin is None else most_probable_speed(kelvin, mass)
 
 
 def _orbit_and_hill_radius(body: Table, radius: float) -> tuple[Orbit | None, float | None]:
     known = bodies().get(str(body.get("name")))
-    given = _table(body, "orbit")
+    given = table(body, "orbit")
     orbit = known.orbit if known else None
-    axis = _value(given, "semi_major_axis", "length", radius)
+    axis = value(given, "semi_major_axis", "length", radius)
     if axis is not None:
         orbit = Orbit(axis, float(given.get("eccentricity", 0.0)))
-    gm = _value(body, "gm", "gravitational parameter", radius)
+    gm = value(body, "gm", "gravitational parameter", radius)
     if gm is None and known:
         gm = known.gm
     host = known.host if known else hosts()["Sun"]
     if "host" in body:
         return host.orbit or orbit, None if gm is None else _hill_radius_about_host(
-            _table(body, "host"), known, gm
+            table(body, "host"), known, gm
         )
     if orbit is None:
         return None, None
@@ -118,23 +110,11 @@ def _orbit_and_hill_radius(body: Table, radius: float) -> tuple[Orbit | None, fl
 
 def _hill_radius_about_host(host: Table, known: Body | None, gm: float) -> float | None:
     """Return a (m/3M)^(1/3) [m] of a moon on a circle about the `host` that its run file tells, or the catalogue."""
-    host_gm = _value(host, "gm", "gravitational parameter", 1.0)
-    distance = _value(host, "distance", "length", 1.0)
+    host_gm = value(host, "gm", "gravitational parameter", 1.0)
+    distance = value(host, "distance", "length", 1.0)
     if known is not None:
         host_gm = known.host.gm if host_gm is None else host_gm
         distance = known.orbit.semi_major_axis if distance is None else distance
     if not host_gm or distance is None:
         return None
     return hill_radius(Orbit(distance, 0.0), gm, host_gm)
-
-
-def _table(parent: Table, key: str) -> Table:
-    inner = parent.get(key)
-    return inner if isinstance(inner, dict) else {}
-
-
-def _value(table: Table, key: str, dimension: str, radius: float) -> float | None:
-    try:
-        return si(parse(table.get(key), dimension), radius)
-    except ValueError:
-        return None

@@ -3,7 +3,6 @@
 import csv
 import io
 import re
-from pathlib import Path
 from typing import Any
 
 import netCDF4
@@ -11,8 +10,6 @@ from astropy.table import Table
 
 from tracer.errors import InputError
 from tracer.observe.tables import column_values
-from tracer.product.writing import check_output
-from tracer.units import quoted
 
 ENDINGS = (".csv", ".ecsv", ".nc")
 
@@ -30,21 +27,6 @@ UNITS = (
 CF_UNITS = {"Rayleigh": "1e10 m-2 s-1", "AU": "149597870700 m", "deg": "degree"}
 """What the standard library of units for netCDF does not know by the same name."""
 _NOT_IN_NETCDF = re.compile(r"[^A-Za-z0-9_]")
-
-
-def check_table_file(option: str, path: str, overwrite: bool) -> str:
-    """Refuse a table's file that cannot be made, before any work is done for it, and return its ending.
-
-    Raises
-    ------
-    InputError
-        Another ending than those of tables, or as `check_output`.
-    """
-    ending = Path(path).suffix.lower()
-    if ending not in ENDINGS:
-        raise InputError(f"{option}: {quoted(path)} has none of the endings of a table: {', '.join(ENDINGS)}")
-    check_output(path, overwrite)
-    return ending
 
 
 def table_bytes(table: Table, ending: str, row: str) -> bytes:

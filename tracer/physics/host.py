@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from tracer.catalogue.load import hosts
 from tracer.kernels import host as kernels
-from tracer.kernels.orbit import Orbit, true_anomaly
+from tracer.kernels.two_body import Orbit, true_anomaly
 from tracer.physics.ephemeris import MoonSighting
 from tracer.physics.orbit import Station
 

@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 from tracer.catalogue.records import Orbit
 from tracer.constants import GM_SUN
-from tracer.kernels import orbit as moving
+from tracer.kernels import two_body
 
 
 class Station(NamedTuple):
@@ -76,7 +76,7 @@ def station_at_distance(orbit: Orbit | None, distance: float, radial_velocity: f
     return Station(distance, radial_velocity, angular_momentum(orbit) / distance**2)
 
 
-def orbit_through(station: Station) -> moving.Orbit:
+def orbit_through(station: Station) -> two_body.Orbit:
     """Return the two-body orbit about the Sun of a body that stands at `station` at time 0, as kernels take it.
 
     With h = Omega d^2: p = h^2/GM, e cos f = p/d - 1, e sin f = h v_r/GM; tan(E/2) = sqrt((1 - e)/(1 + e)) tan(f/2),
@@ -96,7 +96,7 @@ def orbit_through(station: Station) -> moving.Orbit:
     a = h * h / (GM_SUN * (1.0 - e * e))
     f = math.atan2(across, along)
     anomaly = 2.0 * math.atan2(math.sqrt(1.0 - e) * math.sin(0.5 * f), math.sqrt(1.0 + e) * math.cos(0.5 * f))
-    return moving.Orbit(
+    return two_body.Orbit(
         gm=float(GM_SUN),
         angular_momentum=float(h),
         semi_major_axis=float(a),

@@ -6,8 +6,8 @@ from tracer.catalogue.load import hosts
 from tracer.constants import ASTRONOMICAL_UNIT, GM_SUN
 from tracer.kernels.host import Host, HostOrbit
 from tracer.kernels.motion import Conditions, Forces, Losses, Sky
-from tracer.kernels.orbit import Orbit
 from tracer.kernels.shadow import CONES, CYLINDER, NO_SHADOW, Shadow
+from tracer.kernels.two_body import Orbit
 from tracer.physics.lines import Floats, push_tables
 from tracer.physics.orbit import Station
 

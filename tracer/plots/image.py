@@ -14,12 +14,10 @@ from tracer.plots.hatching import hatch_rectangles
 from tracer.plots.host import OUTLINED_WORDS, host_in_sky, outline_host
 from tracer.plots.lengths import body_radius, kilometres_across, kilometres_up
 from tracer.plots.planes import edges
-from tracer.plots.reading_units import KILORAYLEIGH, PER_SQUARE_CENTIMETRE
+from tracer.plots.seen import of_line, seen_in
 from tracer.plots.significance import note, say_nothing
-from tracer.plots.sky import BRIGHTNESS, COLUMN, shining, sky_of
+from tracer.plots.sky import sky_of
 from tracer.plots.style import (
-    BRIGHTNESS_COLOURS,
-    COLUMN_COLOURS,
     TEXT_SIZE,
     WIDTHS,
     Box,
@@ -87,12 +85,8 @@ def image(
     radius = body_radius(product)
     sky = sky_of(product, name)
     names = releases(product, release)
-    if line is None:
-        field = variable(product, COLUMN + sky.name, names, PER_SQUARE_CENTIMETRE)
-        what, label, colours = "column density", "Column density (cm$^{-2}$)", COLUMN_COLOURS
-    else:
-        field = variable(shining(product, line), BRIGHTNESS + sky.name, names, KILORAYLEIGH)
-        what, label, colours = f"brightness in {line}", "Brightness (kR)", BRIGHTNESS_COLOURS
+    seen = seen_in(sky, line)
+    field = variable(of_line(product, line), seen.variable, names, seen.factor)
     vertical, horizontal = image_dimensions(sky.name)
     columns, rows = (edges(product, axis) / radius for axis in (horizontal, vertical))
     lit = "no atom counted" if line is None else "no atom in sunlight counted"
@@ -113,12 +107,12 @@ def image(
             stretch * shape,
             room_below(span),
             str(product.attrs.get("title", "")),
-            f"{sky.title}: {what}, {released_words(names)}",
+            f"{sky.title}: {seen.what}, {released_words(names)}",
             " ".join(words for words in caption if words),
         )
         axes = axes_in(figure, panel)
         axes.set(xlim=(columns[0], columns[-1]), ylim=(rows[0], rows[-1]), aspect=stretch)
-        _draw(axes, columns, rows, field, span, colours)
+        _draw(axes, columns, rows, field, span, seen.colours)
         draw_error_contours(axes, columns, rows, field)
         draw_disc(axes, sky.toward_viewer, sky.up, sky.right)
         outline_host(axes, host, sky.toward_viewer, sky.up, sky.right)
@@ -128,7 +122,7 @@ def image(
         axes.set_ylabel(f"{direction_words(sky.up, 'northward in the sky')}{between}(body radii)")
         kilometres_across(axes, radius)
         kilometres_up(axes, radius)
-        draw_colour_bar(axes_in(figure, bar), span, colours, label, [field])
+        draw_colour_bar(axes_in(figure, bar), span, seen.colours, seen.label, [field])
     return figure
 
 

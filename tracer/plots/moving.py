@@ -8,8 +8,9 @@ import numpy as np
 import xarray as xr
 from numpy.typing import NDArray
 
-from tracer.plots.run_text import entries, run_tables
+from tracer.plots.run_text import run_tables
 from tracer.product.layout import RELEASE
+from tracer.product.run_file import entries
 
 EVENTS = ("return_flux", "capture_flux", "escape_flux", "escape_rate_by_direction")
 """Variables that count events: with a body that moves, those of the window before the stated position."""

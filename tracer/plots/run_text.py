@@ -1,43 +1,14 @@
 """What a product's own run file says, for curves and words beside its figures."""
 
-import tomllib
-from collections.abc import Mapping
-from typing import Any
-
 import xarray as xr
 
 from tracer.catalogue.load import bodies, gases
-from tracer.units import parse, si
-
-Table = Mapping[str, Any]
+from tracer.product.run_file import Table, table, tables_of, value
 
 
 def run_tables(product: xr.Dataset) -> Table:
     """Return the run file inside a product as tables; empty where it has none that can be read."""
-    try:
-        return tomllib.loads(str(product.attrs.get("run_file", "")))
-    except (tomllib.TOMLDecodeError, RecursionError):
-        return {}
-
-
-def table(parent: Table, key: str) -> Table:
-    """Return the table under `key`; empty where there is none."""
-    inner = parent.get(key)
-    return inner if isinstance(inner, dict) else {}
-
-
-def entries(parent: Table, key: str) -> list[Table]:
-    """Return the list of tables under `key`; empty where there is none."""
-    inner = parent.get(key)
-    return [one for one in inner if isinstance(one, dict)] if isinstance(inner, list) else []
-
-
-def value(parent: Table, key: str, dimension: str, radius: float | None = None) -> float | None:
-    """Return the quantity under `key` in SI units, angles in degrees; None where it is no such quantity."""
-    try:
-        return si(parse(parent.get(key), dimension), radius)
-    except ValueError:
-        return None
+    return tables_of(str(product.attrs.get("run_file", "")))
 
 
 def atom_mass(run: Table) -> float | None:

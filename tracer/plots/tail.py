@@ -18,9 +18,9 @@ from tracer.plots.lengths import body_radius, kilometres_across
 from tracer.plots.log_range import log_range
 from tracer.plots.log_ticks import set_log_ticks
 from tracer.plots.planes import edges
-from tracer.plots.reading_units import KILORAYLEIGH, PER_SQUARE_CENTIMETRE
+from tracer.plots.seen import of_line, seen_in
 from tracer.plots.significance import say_nothing
-from tracer.plots.sky import BRIGHTNESS, COLUMN, Sky, shining, sky_of
+from tracer.plots.sky import Sky, sky_of
 from tracer.plots.style import DAY_COLOUR, NIGHT_COLOUR, SMALL_SIZE, WIDTHS, Box, Width, axes_in, styled
 from tracer.plots.sums import NO_REPLICATES, has_replicates, summed
 from tracer.plots.words import framed_figure
@@ -104,14 +104,9 @@ def tail(
     """
     radius, sky, names = body_radius(product), sky_of(product, name), releases(product, release)
     strip = strip_of(product, sky, radius)
-    if line is None:
-        source, variable, factor = product, COLUMN + sky.name, PER_SQUARE_CENTIMETRE
-        what, label = "column density", "Column density (cm$^{-2}$)"
-    else:
-        source, variable, factor = shining(product, line), BRIGHTNESS + sky.name, KILORAYLEIGH
-        what, label = f"brightness in {line}", "Brightness (kR)"
+    source, seen = of_line(product, line), seen_in(sky, line)
     lines = [
-        (look, summed(source, variable, chosen, strip.means, factor))
+        (look, summed(source, seen.variable, chosen, strip.means, seen.factor))
         for look, chosen in _choices(product, names)
     ]
     looks, fields = [look for look, _ in lines], [field for _, field in lines]
@@ -120,14 +115,14 @@ def tail(
             width,
             TOP + HEIGHTS[width] + BOTTOM + legend_height(looks, width) + LEGEND_GAP,
             str(product.attrs.get("title", "")),
-            f"{sky.title}: {what} along the tail axis, {released_words(names)}",
-            _caption(strip, sky, has_replicates(source, variable)),
+            f"{sky.title}: {seen.what} along the tail axis, {released_words(names)}",
+            _caption(strip, sky, has_replicates(source, seen.variable)),
         )
         legend = box.bottom + legend_height(looks, width)
         across = WIDTHS[width] - LEFT - RIGHT
         axes = axes_in(figure, Box(LEFT, legend + LEGEND_GAP + BOTTOM, across, HEIGHTS[width]))
         span = log_range(fields)
-        _set_axes(axes, span, strip, label, radius)
+        _set_axes(axes, span, strip, seen.label, radius)
         for look, field in lines:
             draw_band(axes, strip.middles, field, look)
         if span is None:

@@ -9,16 +9,8 @@ from numpy.typing import NDArray
 
 from tracer.physics.chamberlain import base_density, density_ratio
 from tracer.physics.thermal import jeans_parameter, most_probable_speed
-from tracer.plots.run_text import (
-    Table,
-    atom_mass,
-    body_gm,
-    entries,
-    rotation_period,
-    run_tables,
-    table,
-    value,
-)
+from tracer.plots.run_text import atom_mass, body_gm, rotation_period, run_tables
+from tracer.product.run_file import Table, entries, table, value
 
 SLOW_GROUND = 0.01
 """Speed of the ground over the most probable speed below which launches count as those from a body at rest: the

@@ -66,19 +66,14 @@ def _save(
 ) -> None:
     if reason:
         raise InputError(f"{os.fspath(path)}: the Dataset cannot be saved: {reason}")
-    check_output(path, overwrite)
-    target = Path(os.path.realpath(path))
     stored = without_label_indexes(ds)
     stored.attrs = {key: value for key, value in ds.attrs.items() if key not in (COMPLETE, CHECKSUM)}
-    with _written_beside(target, path, stored.nbytes) as beside:
+    with _placed(path, overwrite, stored.nbytes) as beside:
         checksum = write(stored, beside)
         sync(beside)
         with netCDF4.Dataset(beside, "a") as file:
             file.setncattr(CHECKSUM, checksum)
             file.setncattr(COMPLETE, np.int32(1))
-        sync(beside)
-        check_output(path, overwrite)
-        put_in_place(beside, target)
 
 
 def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
@@ -100,13 +95,8 @@ def save_bytes(content: bytes, path: StrPath, overwrite: bool = False) -> None:
     TracerError
         Where writing fails, as on a full disk; no half file is left.
     """
-    check_output(path, overwrite)
-    target = Path(os.path.realpath(path))
-    with _written_beside(target, path, len(content)) as beside:
+    with _placed(path, overwrite, len(content)) as beside:
         beside.write_bytes(content)
-        sync(beside)
-        check_output(path, overwrite)
-        put_in_place(beside, target)
 
 
 def check_output(path: StrPath, overwrite: bool = False) -> None:
@@ -134,10 +124,16 @@ def check_output(path: StrPath, overwrite: bool = False) -> None:
 
 
 @contextmanager
-def _written_beside(target: Path, path: StrPath, size: int) -> Iterator[Path]:
+def _placed(path: StrPath, overwrite: bool, size: int) -> Iterator[Path]:
+    """Yield a file to write beside the output `path`, of up to `size` bytes, and put it in the output's place."""
+    check_output(path, overwrite)
+    target = Path(os.path.realpath(path))
     try:
         with written_beside(target) as beside:
             yield beside
+            sync(beside)
+            check_output(path, overwrite)
+            put_in_place(beside, target)
     except (OSError, RuntimeError) as error:
         reason = _why_unwritten(error, target.parent, size)
         raise TracerError(f"{os.fspath(path)}: cannot be written: {reason}") from error

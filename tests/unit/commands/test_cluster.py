@@ -13,23 +13,9 @@ import tracer
 
 pytest.importorskip("distributed")
 
-RUN_FILE = """
-title = "Cluster"
-body = { name = "Ball", radius = "1000 km", gm = "3000 km3 s-2" }
-gas = { species = "He" }
-surface = { temperature = { law = "uniform", value = "250 K" }, sticking = 0.1 }
-domain = { outer_radius = "20 radii", age_limit = "1 yr" }
-grid = { altitude = { cells = 20 }, latitude_cells = 18, local_time_cells = 24 }
-ensemble = { particles_per_batch = 1000, batches = 40 }
-[[release]]
-name = "vent"
-rate = "1e20 s-1"
-speed = { law = "maxwell-flux", temperature = "surface" }
-[[release]]
-name = "crack"
-rate = "1e19 s-1"
-speed = { law = "maxwell-flux", temperature = "400 K" }
-"""
+RUN_FILE = (
+    Path(__file__).with_name("ball.toml").read_text(encoding="utf-8").replace("batches = 60", "batches = 40")
+)
 LOAD = "import distributed, distributed.scheduler, distributed.worker"
 SCHEDULER = """
 import asyncio, json

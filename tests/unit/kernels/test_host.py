@@ -20,7 +20,8 @@ from tracer.kernels.host import (
     with_slip,
 )
 from tracer.kernels.integrated_flight import longest_beside_host
-from tracer.kernels.orbit import body_on_orbit, orbit_state, stated_body, true_anomaly
+from tracer.kernels.orbit import body_on_orbit, stated_body
+from tracer.kernels.two_body import orbit_state, true_anomaly
 from tracer.physics.host import moon_at_phase, moving_host, still_host
 from tracer.physics.orbit import Station, orbit_through
 from tracer.physics.sunlight import forces_of

@@ -1,23 +1,10 @@
-"""Observation files: what is refused, in what words, and their reference."""
-
-from collections.abc import Iterator
-from pathlib import Path
+"""Observation files: what is refused, and in what words."""
 
 import pytest
 
 from tracer.errors import InputError
-from tracer.inputs.kinds import tables_in
-from tracer.inputs.table import Table
-from tracer.observe.observationspec.observation import (
-    BEGIN,
-    END,
-    ObservationSpec,
-    load_observation,
-    observation_reference,
-    parse_observation,
-)
+from tracer.observe.observationspec.observation import load_observation, parse_observation
 
-README = Path(__file__).parents[3] / "runs" / "README.md"
 OBSERVATION = """
 [profile]
 file = "p.csv"
@@ -105,28 +92,3 @@ def test_mistakes_are_named_by_key_value_and_what_is_allowed(old, new, message):
 def test_missing_file_is_named(tmp_path):
     with pytest.raises(InputError, match=r"none\.toml: no such file"):
         load_observation(tmp_path / "none.toml")
-
-
-def tables(table: type[Table]) -> Iterator[type[Table]]:
-    yield table
-    for field in table.model_fields.values():
-        for inner in tables_in(field.annotation):
-            yield from tables(inner)
-
-
-def test_readme_holds_the_present_observation_reference():
-    text = README.read_text(encoding="utf-8")
-    assert text.count(BEGIN) == text.count(END) == 1
-    written = text[text.index(BEGIN) + len(BEGIN) + 1 : text.index(END)]
-    assert written == observation_reference(), (
-        "rewrite what stands between the markers with observation_reference()"
-    )
-
-
-def test_every_key_is_explained():
-    text = observation_reference()
-    for table in tables(ObservationSpec):
-        assert table.__doc__
-        for key, field in table.model_fields.items():
-            assert field.description, f"{table.__name__}.{key}"
-            assert f"`{key}`" in text or f"{key}]" in text

@@ -1,6 +1,7 @@
 """A plan's rows: path, pointing, field of view, limits."""
 
 import math
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -25,24 +26,7 @@ RADIUS = 1.8e6
 GRID = make_grid(RADIUS, 5e4, 9e6, 12, 6, 8)
 AU = 1.495978707e11
 
-PLAN = """
-title = "Test"
-[observer]
-law = "table"
-file = "path.csv"
-[pointing]
-law = "tangent-altitude"
-altitude = "200 km"
-side = "dawn"
-[spectrometer]
-collecting_area = "10 cm2"
-field_of_view = { width = "0.2 deg", height = "0.1 deg" }
-exposure = "10 s"
-sun_keep_out = "30 deg"
-[[spectrometer.line]]
-name = "na_d2"
-throughput = 0.1
-"""
+PLAN = Path(__file__).with_name("limb-plan.toml").read_text(encoding="utf-8")
 PATH = """time,observer_x_km,observer_y_km,observer_z_km
 0,5000,100,0
 60,4000,200,3000

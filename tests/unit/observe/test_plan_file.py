@@ -1,28 +1,13 @@
 """Plan files: what is refused, and in what words."""
 
+from pathlib import Path
+
 import pytest
 
 from tracer.errors import InputError
 from tracer.observe.planspec.plan import load_plan, parse_plan
 
-PLAN = """
-title = "Test"
-[observer]
-law = "table"
-file = "path.csv"
-[pointing]
-law = "tangent-altitude"
-altitude = "200 km"
-side = "dawn"
-[spectrometer]
-collecting_area = "10 cm2"
-field_of_view = { width = "0.2 deg", height = "0.1 deg" }
-exposure = "10 s"
-sun_keep_out = "30 deg"
-[[spectrometer.line]]
-name = "na_d2"
-throughput = 0.1
-"""
+PLAN = Path(__file__).with_name("limb-plan.toml").read_text(encoding="utf-8")
 SPICE = """law = "spice"
 kernels = ["a.bsp"]
 observer = "LANTERN"

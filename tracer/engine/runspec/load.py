@@ -34,8 +34,7 @@ def load_run(path: str | os.PathLike[str], overrides: Iterable[str] = ()) -> Run
     InputError
         The file cannot be read or used; the message says file, key, value and what is allowed.
     """
-    name = os.fspath(path)
-    return parse_run(file_text(name, "run file"), name, overrides)
+    return parse_run(file_text(path, "run file"), path, overrides)
 
 
 def parse_run(text: str, file: str | os.PathLike[str], overrides: Iterable[str] = ()) -> RunSpec:

@@ -4,11 +4,11 @@ import os
 
 from pydantic import Field
 
-from tracer.inputs.checking import checked
+from tracer.inputs.checking import parsed
 from tracer.inputs.reference import reference_of
 from tracer.inputs.table import FileTable
 from tracer.inputs.text import Line
-from tracer.inputs.toml import file_text, tables
+from tracer.inputs.toml import file_text
 from tracer.observe.observationspec.fit import BackgroundTable, FitTable
 from tracer.observe.observationspec.profile import ProfileTable
 from tracer.observe.observationspec.view import SeeingTable, SlitTable, ViewTable
@@ -46,8 +46,7 @@ def load_observation(path: str | os.PathLike[str]) -> ObservationSpec:
     InputError
         The file cannot be read or used; the message says file, key, value and what is allowed.
     """
-    name = os.fspath(path)
-    return parse_observation(file_text(name, "observation file"), name)
+    return parse_observation(file_text(path, "observation file"), path)
 
 
 def parse_observation(text: str, file: str | os.PathLike[str]) -> ObservationSpec:
@@ -58,8 +57,7 @@ def parse_observation(text: str, file: str | os.PathLike[str]) -> ObservationSpe
     InputError
         The text is no TOML or cannot be used.
     """
-    name = os.fspath(file)
-    return checked(ObservationSpec, tables(text, name), name)
+    return parsed(ObservationSpec, text, file)
 
 
 def observation_reference() -> str:

@@ -4,11 +4,11 @@ import os
 
 from pydantic import Field, PrivateAttr
 
-from tracer.inputs.checking import checked
+from tracer.inputs.checking import parsed
 from tracer.inputs.reference import reference_of
 from tracer.inputs.table import FileTable
 from tracer.inputs.text import Line
-from tracer.inputs.toml import file_text, tables
+from tracer.inputs.toml import file_text
 from tracer.observe.planspec.observer import ObserverPath
 from tracer.observe.planspec.pointing import Pointing
 from tracer.observe.planspec.spectrometer import SpectrometerTable
@@ -44,8 +44,7 @@ def load_plan(path: str | os.PathLike[str]) -> PlanSpec:
     InputError
         The file cannot be read or used; the message says file, key, value and what is allowed.
     """
-    name = os.fspath(path)
-    return parse_plan(file_text(name, "plan file"), name)
+    return parse_plan(file_text(path, "plan file"), path)
 
 
 def parse_plan(text: str, file: str | os.PathLike[str]) -> PlanSpec:
@@ -56,8 +55,7 @@ def parse_plan(text: str, file: str | os.PathLike[str]) -> PlanSpec:
     InputError
         The text is no TOML or cannot be used.
     """
-    name = os.fspath(file)
-    return checked(PlanSpec, tables(text, name), name)
+    return parsed(PlanSpec, text, file)
 
 
 def plan_reference() -> str:

@@ -13,10 +13,11 @@ from tracer.plots.moving import older_worth_a_caution
 from tracer.plots.page.reading import number, percent
 from tracer.plots.page.scene_words import release_jeans
 from tracer.plots.plan_table import FORBIDDEN, PlanTable
-from tracer.plots.run_text import Table, entries, run_tables, table
+from tracer.plots.run_text import run_tables
 from tracer.plots.sums import has_replicates
 from tracer.product.layout import LINE
 from tracer.product.outside_velocity import outside_notes
+from tracer.product.run_file import Table, entries, table
 
 FIRST = (
     "A planning aid, not a flight product. Flight rules, keep-out angles, detector limits and the decisions of the "

@@ -5,7 +5,7 @@ from numbers import Integral, Real
 from typing import Any
 
 from tracer.plots.page.reading import count, number, quantity
-from tracer.plots.run_text import Table, table
+from tracer.product.run_file import Table, table
 
 Words = Mapping[str, Callable[[Table], str]]
 

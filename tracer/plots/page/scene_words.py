@@ -23,17 +23,9 @@ from tracer.plots.page.law_words import (
     trap_words,
 )
 from tracer.plots.page.reading import duration, number
-from tracer.plots.run_text import (
-    Table,
-    atom_mass,
-    body_gm,
-    entries,
-    rotation_period,
-    run_tables,
-    table,
-    value,
-)
+from tracer.plots.run_text import atom_mass, body_gm, rotation_period, run_tables
 from tracer.product.layout import LINE
+from tracer.product.run_file import Table, entries, table, value
 
 KILOMETRE = 1e3
 

@@ -12,9 +12,9 @@ from tracer.errors import InputError
 from tracer.plots.field import Field, released_words, releases
 from tracer.plots.lengths import body_radius
 from tracer.plots.planes import edges
-from tracer.plots.reading_units import KILORAYLEIGH, PER_SQUARE_CENTIMETRE
-from tracer.plots.sky import BRIGHTNESS, COLUMN, Sky, shining, sky_of
-from tracer.plots.style import BRIGHTNESS_COLOURS, COLUMN_COLOURS, Width
+from tracer.plots.seen import Seen, of_line, seen_in
+from tracer.plots.sky import Sky, sky_of
+from tracer.plots.style import Width
 from tracer.plots.sums import NO_REPLICATES, has_replicates, summed
 from tracer.plots.swept.axes import points_of
 from tracer.plots.swept.drawing import Words, family_lines, lines_figure, map_figure
@@ -36,25 +36,6 @@ class Pixel(NamedTuple):
     row: int
     column: int
     middle: SkyPlace
-
-
-class Seen(NamedTuple):
-    """What is seen of a product's image: a variable of it, its factor to `label`'s unit, in words and colours."""
-
-    variable: str
-    factor: float
-    what: str
-    label: str
-    colours: str
-
-
-def seen_in(sky: Sky, line: str | None) -> Seen:
-    """Return what is seen of an image: brightness in a line [kR], or column density [cm-2] without one."""
-    if line is None:
-        label = "Column density (cm$^{-2}$)"
-        return Seen(COLUMN + sky.name, PER_SQUARE_CENTIMETRE, "column density", label, COLUMN_COLOURS)
-    what = f"brightness in {line}"
-    return Seen(BRIGHTNESS + sky.name, KILORAYLEIGH, what, "Brightness (kR)", BRIGHTNESS_COLOURS)
 
 
 def swept_brightness(
@@ -87,7 +68,7 @@ def swept_brightness(
     InputError
         No such image, line, release or place, or more than two swept dimensions.
     """
-    source = sweep if line is None else shining(sweep, line)
+    source = of_line(sweep, line)
     names, points, sky = releases(sweep, release), points_of(sweep), sky_of(sweep, name)
     seen = seen_in(sky, line)
     pixel = _brightest(source, sky, seen, names) if place is None else _pixel(sweep, sky, place)

@@ -11,11 +11,11 @@ from numpy.typing import NDArray
 from tracer.errors import InputError
 from tracer.plots.field import Field, released_words, releases
 from tracer.plots.lengths import body_radius
-from tracer.plots.sky import shining, sky_of
+from tracer.plots.seen import Seen, of_line, seen_in
+from tracer.plots.sky import sky_of
 from tracer.plots.style import Width
 from tracer.plots.sums import NO_REPLICATES, has_replicates, replicate_sums, summed
 from tracer.plots.swept.axes import points_of
-from tracer.plots.swept.brightness import Seen, seen_in
 from tracer.plots.swept.drawing import Words, family_lines, lines_figure, map_figure
 from tracer.plots.swept.per_point import of_each_point
 from tracer.plots.tail import Strip, strip_of
@@ -59,7 +59,7 @@ def swept_tail(
         No such image, line or release, an image without a tail axis, no level or one that no point's tail falls to, or
         more than two swept dimensions.
     """
-    source = sweep if line is None else shining(sweep, line)
+    source = of_line(sweep, line)
     names, points, sky = releases(sweep, release), points_of(sweep), sky_of(sweep, name)
     seen, strip = seen_in(sky, line), strip_of(sweep, sky, body_radius(sweep))
     lengths = of_each_point(

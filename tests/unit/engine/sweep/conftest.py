@@ -7,21 +7,7 @@ import pytest
 
 from tracer.engine.sweep.points import Sweep, load_sweep
 
-TWO_AXES = """
-[sweep]
-run = "small.toml"
-[[sweep.axis]]
-key = "surface.sticking"
-values = [0.2, 1.0]
-[[sweep.axis]]
-key = "release[1].speed.temperature"
-first = "600 K"
-last = "2400 K"
-count = 3
-spacing = "logarithmic"
-[ensemble]
-batches = 4
-"""
+TWO_AXES = Path(__file__).with_name("two-axes.toml").read_text(encoding="utf-8")
 
 
 @pytest.fixture

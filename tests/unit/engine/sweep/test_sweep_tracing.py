@@ -1,6 +1,7 @@
 """A sweep holds what its points' runs make, to the last bit, however often it was interrupted."""
 
 import os
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -17,6 +18,8 @@ from tracer.errors import InputError, TracerError
 from tracer.product.checksum import data_checksum
 from tracer.product.reading import open_product, open_sweep
 from tracer.product.sweeping import sweep_point
+
+TEXT = Path(__file__).with_name("two-axes.toml").read_text(encoding="utf-8")
 
 
 class Stopped(KeyboardInterrupt):
@@ -40,7 +43,7 @@ def note(events):
 
 @pytest.fixture(scope="module")
 def whole(tmp_path_factory, small_run_file):
-    """Return the sweep of `TWO_AXES` that nothing happened to, and its checksum."""
+    """Return the sweep of `TEXT` that nothing happened to, and its checksum."""
     folder = tmp_path_factory.mktemp("whole")
     (folder / "small.toml").write_bytes(small_run_file.read_bytes())
     (folder / "sweep.toml").write_text(TEXT, encoding="utf-8")
@@ -48,23 +51,6 @@ def whole(tmp_path_factory, small_run_file):
     assert run_sweep(sweep, folder / "out.nc", 1)
     with open_sweep(folder / "out.nc") as ds:
         return folder / "out.nc", ds.attrs["data_checksum"]
-
-
-TEXT = """
-[sweep]
-run = "small.toml"
-[[sweep.axis]]
-key = "surface.sticking"
-values = [0.2, 1.0]
-[[sweep.axis]]
-key = "release[1].speed.temperature"
-first = "600 K"
-last = "2400 K"
-count = 3
-spacing = "logarithmic"
-[ensemble]
-batches = 4
-"""
 
 
 def values_of(ds):
