@@ -114,7 +114,8 @@ def growth(kind: str, name: str, largest: float) -> bool:
 
 def straight_line(particles: NDArray[np.int64], seconds: NDArray[np.float64]) -> NDArray[np.float64]:
     """Return constant and slope of the straight line with the least sum of squared relative deviations."""
-    return np.linalg.lstsq(np.column_stack([1.0 / seconds, particles / seconds]), np.ones(len(seconds)))[0]
+    rows = np.column_stack([1.0 / seconds, particles / seconds])
+    return np.asarray(np.linalg.lstsq(rows, np.ones(len(seconds)))[0])
 
 
 def speed_up(kind: str, name: str, seconds: float, rounds: int) -> bool:

@@ -48,8 +48,8 @@ SELF_OBSERVATION = {
     "distributed.admin.tick.interval": "1s",
     "distributed.admin.system-monitor.interval": "5s",
 }
-"""Of local processes. They would look at their own stacks a hundred times a second, ask fifty times a second whether they
-are late, and read the machine's load twice a second, all for pages of the dashboard: some per cent."""
+"""Of local processes. They would look at their own stacks a hundred times a second, ask fifty times a second whether
+they are late, and read the machine's load twice a second, all for pages of the dashboard: some per cent."""
 
 
 class ForeignWorker(TracerError):
