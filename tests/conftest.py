@@ -10,117 +10,18 @@ import numpy as np
 import numpy.typing as npt
 import pytest
 import xarray as xr
+from small_runs import SMALL_LIGHT_RUN, SMALL_RUN
 
-from tracer.engine.batches import compile_kernels, make_work
 from tracer.engine.runspec.load import load_run, parse_run
-from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
 from tracer.fate import FATE_LABELS
-from tracer.kernels.integrated_flight import fly, new_curve, new_flight, start_flight
-from tracer.observe.gas import gas_of
-from tracer.observe.integration import integrals_along
-from tracer.observe.sights import Sights
 from tracer.product.assembling import assemble
 from tracer.product.layout import layout
 from tracer.product.provenance import global_attributes
 from tracer.tally.axes import Grid
 from tracer.tally.field import FieldStatistics
 
-SMALL_RUN = """
-title = "Sodium over Harrow, small"
-
-[body]
-name = "Harrow"
-radius = "1800 km"
-gm = "9500 km3 s-2"
-rotation_period = "60 d"
-
-[gas]
-species = "Na"
-
-[[gas.loss]]
-name = "charge exchange"
-rate = "1e-5 s-1"
-
-[[release]]
-name = "impact vapour"
-rate = "2e24 s-1"
-speed = { law = "maxwell-flux", temperature = "3500 K" }
-place = { law = "cosine-power", toward = "dawn", power = 1 }
-
-[[release]]
-name = "sputtering"
-rate = "5e23 s-1"
-speed = { law = "sigmund-thompson", binding_energy = "2 eV", cutoff_energy = "2020.75 eV" }
-place = { law = "band", latitude = ["30 deg", "60 deg"] }
-
-[surface]
-temperature = { law = "quarter-power", subsolar = "600 K", night = "110 K" }
-sticking = 0.4
-accommodation = 0.7
-
-[domain]
-outer_radius = "20 radii"
-age_limit = "30 d"
-
-[grid]
-altitude = { first_cell = "50 km", top = "3 radii", cells = 5 }
-latitude_cells = 4
-local_time_cells = 6
-
-[[image]]
-name = "tail from north"
-look_from = "north"
-horizontal = ["-5 radii", "3 radii"]
-vertical = ["-3 radii", "3 radii"]
-pixels = [8, 6]
-
-[ensemble]
-particles_per_batch = 250
-batches = 6
-replicates = 3
-"""
-
-SUN = """
-[sun]
-distance = "0.35 au"
-radial_velocity = "8 km/s"
-solar_activity = 0.5
-"""
-
-LIGHT = """scaling = "inverse-square"
-where = "sunlight"
-
-[[gas.line]]
-name = "invented"
-wavelength = "500 nm"
-g = "0.2 s-1"
-"""
-
-SMALL_LIGHT_RUN = SMALL_RUN.replace("\n[gas]", SUN + "\n[gas]").replace(
-    'rate = "1e-5 s-1"\n', 'rate = "1e-5 s-1"\n' + LIGHT
-)
-
-MOVING_RUN = SMALL_LIGHT_RUN.replace(
-    'distance = "0.35 au"\nradial_velocity = "8 km/s"', 'true_anomaly = "60 deg"\nmotion = "moving"'
-).replace('rotation_period = "60 d"', 'orbit = { semi_major_axis = "0.4 au", eccentricity = 0.2 }')
-
-HOST = """
-[body.host]
-gm = "2e7 km3 s-2"
-radius = "30000 km"
-distance = "400000 km"
-phase_angle = "5 deg"
-rotation = "turning"
-"""
-
-HOST_RUN = SMALL_LIGHT_RUN.replace("\n[sun]", HOST + "\n[sun]")
-
-MOVING_HOST_RUN = MOVING_RUN.replace("\n[sun]", HOST.replace('rotation = "turning"\n', "") + "\n[sun]")
-
 WARM_KERNELS = str(Path(__file__).with_name("warm_kernels.py"))
-
-
 CHECK_CONVENTIONS = str(Path(__file__).with_name("check_conventions.py"))
 
 
@@ -139,24 +40,7 @@ def pytest_sessionstart(session: pytest.Session) -> None:
     """Compile the kernels once, into the cache that all test processes share, before these processes start."""
     if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):
         return
-    # The kernels of bodies that move are compiled beside the others, which would take as long again after them; those
-    # of moons beside a host are compiled apart again.
-    beside = subprocess.Popen([sys.executable, WARM_KERNELS], stdin=subprocess.PIPE, text=True)
-    assert beside.stdin
-    beside.stdin.write("\f".join((MOVING_RUN, MOVING_HOST_RUN)))
-    beside.stdin.close()
-    for text in (SMALL_RUN, HOST_RUN, SMALL_LIGHT_RUN):
-        scene = build_scene(parse_run(text, "run file"))
-        work = make_work(scene, 1, 1)
-        compile_kernels(work)
-    flight, curve = new_flight(), new_curve()
-    conditions = work.world.light.conditions
-    start_flight(flight, conditions, 1e-6, scene.body.radius, 0.0, 0.0, 1000.0, 0.0, 0.0)
-    fly(flight, curve, conditions, 1e-6, 1.0)
-    looks = Sights(np.array([[5.0, 0.0, 0.0]]), np.array([[-1.0, 0.0, 0.0]]))
-    grid = Grid(1.0, np.array([0.0, 1.0]), np.array([-90.0, 0.0, 90.0]), np.array([0.0, 12.0, 24.0]))
-    integrals_along(gas_of(_filled(grid, np.ones((1, 1, 2, 2)))), looks)
-    assert beside.wait() == 0
+    subprocess.run([sys.executable, WARM_KERNELS], check=True)
 
 
 @pytest.fixture(scope="session")
