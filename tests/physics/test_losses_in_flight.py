@@ -112,12 +112,14 @@ def test_ionised_share_and_mean_life_are_exact(traced):
     assert haser.mean_life.item() == pytest.approx(LIFE * lost, rel=1e-6)
 
 
-def test_ions_are_made_where_the_gas_is(haser):
+def test_ions_are_made_where_the_gas_is(traced):
+    haser = traced(SUNLIT)
     rate = haser.number_density / LIFE
     np.testing.assert_allclose(haser.ionization_rate.values, rate.values, rtol=3e-5)
 
 
-def test_ions_made_in_all_cells_are_those_of_the_budget(haser):
+def test_ions_made_in_all_cells_are_those_of_the_budget(traced):
+    haser = traced(SUNLIT)
     # The budget is integrated, the cells are sampled: only the grid's top, 10 R, is common to both.
     cells = (haser.ionization_rate * haser.cell_volume).sum().item()
     each = (haser.number_density_replicates / LIFE * haser.cell_volume).sum(

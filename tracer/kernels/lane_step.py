@@ -116,6 +116,9 @@ from tracer.kernels.step_control import far_out, step_change
 LANDS, DOUBTFUL = 1.0, 2.0
 """Flags of a step: it starts well above ground, ends below it and meets nothing else; it wants to be looked at."""
 
+STAGE = STAGE_ROWS * WIDTH
+"""From a stage's first row to that of the next."""
+
 ALOFT = 1.0 + 1e-6
 """Square of the least distance from the centre, in radii, that is well above ground."""
 
@@ -130,42 +133,47 @@ def try_steps(lanes, sky, tables):
     shade_lanes(lanes, sky.forces)
     apart = prepare_apart(lanes, sky, tables)
     _choose_lengths(lanes, sky.forces)
-    # Not a literal, for each of which numba would compile what it is passed to.
-    stage = np.int64(0)
+    # Counted rather than named stage by stage: numba would compile what is passed a literal for each of these, to the
+    # same machine code.
+    node, stage = np.int64(1), np.int64(SECOND)
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
-        arrive(lanes, SECOND, lane, sky, grids, 1, second(p, h, v), second(v, h, a))
-    leave(lanes, SECOND, sky, tables, 1)
+        arrive(lanes, stage, lane, sky, grids, node, second(p, h, v), second(v, h, a))
+    leave(lanes, stage, sky, tables, node)
+    node, stage = node + 1, stage + STAGE
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
-        arrive(lanes, THIRD, lane, sky, grids, 2, third(p, h, v, v2), third(v, h, a, a2))
-    leave(lanes, THIRD, sky, tables, 2)
+        arrive(lanes, stage, lane, sky, grids, node, third(p, h, v, v2), third(v, h, a, a2))
+    leave(lanes, stage, sky, tables, node)
+    node, stage = node + 1, stage + STAGE
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3, a3 = _stage(lanes, THIRD + lane)
         p4 = fourth(p, h, v, v2, v3)
-        arrive(lanes, FOURTH, lane, sky, grids, 3, p4, fourth(v, h, a, a2, a3))
-    leave(lanes, FOURTH, sky, tables, 3)
+        arrive(lanes, stage, lane, sky, grids, node, p4, fourth(v, h, a, a2, a3))
+    leave(lanes, stage, sky, tables, node)
+    node, stage = node + 1, stage + STAGE
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
         v3, a3 = _stage(lanes, THIRD + lane)
         v4, a4 = _stage(lanes, FOURTH + lane)
         p5 = fifth(p, h, v, v2, v3, v4)
-        arrive(lanes, FIFTH, lane, sky, grids, 4, p5, fifth(v, h, a, a2, a3, a4))
-    leave(lanes, FIFTH, sky, tables, 4)
+        arrive(lanes, stage, lane, sky, grids, node, p5, fifth(v, h, a, a2, a3, a4))
+    leave(lanes, stage, sky, tables, node)
+    node, stage = node + 1, stage + STAGE
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
@@ -173,10 +181,11 @@ def try_steps(lanes, sky, tables):
         v4, a4 = _stage(lanes, FOURTH + lane)
         v5, a5 = _stage(lanes, FIFTH + lane)
         p6 = sixth(p, h, v, v2, v3, v4, v5)
-        arrive(lanes, SIXTH, lane, sky, grids, 5, p6, sixth(v, h, a, a2, a3, a4, a5))
-    leave(lanes, SIXTH, sky, tables, 5)
+        arrive(lanes, stage, lane, sky, grids, node, p6, sixth(v, h, a, a2, a3, a4, a5))
+    leave(lanes, stage, sky, tables, node)
+    node, stage = node + 1, stage + STAGE
     if apart > 0:
-        stage = look_apart(lanes, apart, stage, sky, tables)
+        look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v3, a3 = _stage(lanes, THIRD + lane)
@@ -187,12 +196,12 @@ def try_steps(lanes, sky, tables):
         turned = solution(h, a, a3, a4, a5, a6)
         v7 = (v[0] + turned[0], v[1] + turned[1], v[2] + turned[2])
         p7 = (p[0] + moved[0], p[1] + moved[1], p[2] + moved[2])
-        arrive(lanes, SEVENTH, lane, sky, grids, 6, p7, v7)
+        arrive(lanes, stage, lane, sky, grids, node, p7, v7)
         set_lane_vector(lanes, GROWTH + lane, moved)
         set_lane_vector(lanes, GROWTH + VELOCITY + lane, turned)
         set_lane_vector(lanes, END + lane, p7)
         set_lane_vector(lanes, END + VELOCITY + lane, v7)
-    leave(lanes, SEVENTH, sky, tables, 6)
+    leave(lanes, stage, sky, tables, node)
     for lane in range(WIDTH):
         set_lane_vector(
             lanes, END + ACCELERATION + lane, lane_vector(lanes, SEVENTH + STAGE_ACCELERATION + lane)
@@ -236,17 +245,17 @@ def lane_place(lanes, row, lane):
 
 
 @kernel
-def look_apart(lanes, apart, stage, sky, tables):
+def look_apart(lanes, apart, node, sky, tables):
     """Set the light and the push of a stage in the first `apart` listed lanes.
 
-    They see part of the Sun or are pushed by many lines. `stage` counts from 0, the second; its place is known before
-    its rates are. Returns the next one's number.
+    They see part of the Sun or are pushed by many lines. `node` is the stage's number in `NODES`; its place is known
+    before its rates are.
     """
-    forces = sky.forces
+    forces, stage = sky.forces, node - 1
     for i in range(apart):
         lane = int(lanes[APART + i])
         partial = lanes[PARTIAL + lane] > 0.0
-        body = body_in_series(forces, lanes, SERIES + lane, WIDTH, NODES[stage + 1] * lanes[LENGTH + lane])
+        body = body_in_series(forces, lanes, SERIES + lane, WIDTH, NODES[node] * lanes[LENGTH + lane])
         x, y, z = _moved(lanes, stage, lane, START, START + VELOCITY, 0)
         if partial:
             zone = int(lanes[ZONE + lane])
@@ -255,7 +264,6 @@ def look_apart(lanes, apart, stage, sky, tables):
         if tables[0] > MOST_GRIDS:
             v = _moved(lanes, stage, lane, START + VELOCITY, START + ACCELERATION, STAGE_ACCELERATION)
             lanes[EXTRA + lane] = extra_push(body, tables, (x, y, z), v)
-    return stage + 1
 
 
 @inlined
@@ -266,7 +274,7 @@ def _moved(lanes, stage, lane, start, slope, later):
     dy = TABLEAU[stage, 0] * lanes[slope + Y + lane]
     dz = TABLEAU[stage, 0] * lanes[slope + Z + lane]
     for k in range(1, stage + 1):
-        at = SECOND + (k - 1) * STAGE_ROWS * WIDTH + later + lane
+        at = SECOND + (k - 1) * STAGE + later + lane
         dx += TABLEAU[stage, k] * lanes[at]
         dy += TABLEAU[stage, k] * lanes[at + Y]
         dz += TABLEAU[stage, k] * lanes[at + Z]
