@@ -43,14 +43,9 @@ class Heated:
         self._error, self._bias = error, bias
 
     def at(self, logs):
-        length = math.exp(logs[0])
-        value = np.exp(-X / length)
-        return value, (value * X / length)[np.newaxis]
-
-    def at_many(self, logs):
         lengths = np.exp(logs)
         values = np.exp(-X / lengths)
-        return values, (values * X / lengths)[:, np.newaxis]
+        return values, (values * X / lengths)[..., np.newaxis, :]
 
     def replicates_at(self, logs):
         spread = self._error * np.sin(np.outer(np.arange(1.0, 11.0), X))
