@@ -170,11 +170,6 @@ class Likelihood:
             raise ValueError("upper limits have no Gaussian error")
         return np.asarray(solve_triangular(self._whiten, normal.T, lower=True).T)
 
-    def value(self, parameters: Floats) -> float:
-        """Return -2 ln L without constants."""
-        found, _ = self.residuals(parameters)
-        return float(found @ found)
-
     def chi_square(self, parameters: Floats) -> float:
         """Return the chi-square of the measured points alone."""
         found = self.residuals(parameters)[0][: int(self._measured.sum())]

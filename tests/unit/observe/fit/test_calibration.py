@@ -59,7 +59,7 @@ def test_rises_of_a_direction_are_those_of_its_own_distribution(monkeypatch):
     (|y| - R)^2 = 2 R (|y| - R - z1), which is no chi-square: its mean is 2 R E|y| - 2 R^2, 1 + 1/(4 R^2) for large R.
     """
     # Ten times the draws: their scatter is then 0.014 and 0.11, beside 0.13 and 0.45 from Wilks to what is expected.
-    monkeypatch.setattr("tracer.observe.fit.calibration.PAIRS", 2000)
+    monkeypatch.setattr("tracer.observe.fit.calibration.DRAWS", 4096)
     radius = 1.6
     found = fitted(circle(), [radius * math.cos(0.3), radius * math.sin(0.3)], held=radius)
     z = np.random.default_rng(11).normal(size=(400_000, 2))
@@ -225,7 +225,7 @@ def test_what_is_not_calibrated_says_why():
         assert words in range_words(found.calibration, ["a: rate", "a: temperature"])
         assert "risen by 1 and 3.84, not calibrated" in range_words(found.calibration, ["a: rate", "b"])
     drawn = fitted(circle(), [1.6, 0.0], held=1.6)
-    assert calibrated(drawn.scan).draws == 400
+    assert calibrated(drawn.scan).draws == 512
     assert range_words(drawn.calibration, ["angle"]).startswith(
-        "Ranges are calibrated on 400 profiles drawn about the best fit: of 'angle', which that widens most"
+        "Ranges are calibrated on 512 profiles drawn about the best fit: of 'angle', which that widens most"
     )
