@@ -46,11 +46,7 @@ class Curve(Protocol):
     parameters: tuple[Parameter, ...]
 
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
-        """Return the points (N,) and their slopes (K, N) at logarithms (K,)."""
-        ...
-
-    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
-        """Return the points (D, N) and their slopes (D, K, N) at D sets of logarithms (D, K)."""
+        """Return the points (..., N) and their slopes (..., K, N) at logarithms (..., K), of one set or of many."""
         ...
 
     def replicates_at(self, logs: Floats) -> Floats:
@@ -69,16 +65,11 @@ class Fixed:
 
     def __init__(self, mean: Floats, replicates: Floats) -> None:
         self._mean, self._replicates = mean, replicates
-        self._no_slopes = np.zeros((0, len(mean)))
 
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
-        return self._mean, self._no_slopes
-
-    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
-        """Return what `Curve.at_many` does."""
-        count = len(logs)
-        return np.tile(self._mean, (count, 1)), np.zeros((count, 0, len(self._mean)))
+        size = len(self._mean)
+        return np.broadcast_to(self._mean, (*logs.shape[:-1], size)), np.zeros((*logs.shape, size))
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
@@ -109,27 +100,16 @@ class Lawful:
 
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
-        if self._spline is not None:
-            step = self._nodes[1] - self._nodes[0]
-            place = min(max(int((logs[0] - self._nodes[0]) / step), 0), NODES - 2)
-            points, slope = _cubic(self._spline[:, place], logs[0] - self._nodes[place])
-            return points, slope[np.newaxis]
-        mean = self._mean(logs)
-        slopes = np.empty((len(logs), len(mean)))
-        for k in range(len(logs)):
-            step = STEP * np.eye(len(logs))[k]
-            slopes[k] = (self._mean(logs + step) - self._mean(logs - step)) / (2.0 * STEP)
-        return mean, slopes
-
-    def at_many(self, logs: Floats) -> tuple[Floats, Floats]:
-        """Return what `Curve.at_many` does."""
         if self._spline is None:
-            each = [self.at(one) for one in logs]
-            return np.array([points for points, _ in each]), np.array([slopes for _, slopes in each])
+            each = [self._by_differences(one) for one in logs.reshape(-1, logs.shape[-1])]
+            points, slopes = (np.array(part) for part in zip(*each, strict=True))
+            return points.reshape(*logs.shape[:-1], -1), slopes.reshape(*logs.shape, -1)
+        log = logs[..., 0]
         step = self._nodes[1] - self._nodes[0]
-        place = np.clip(((logs[:, 0] - self._nodes[0]) / step).astype(int), 0, NODES - 2)
-        points, slopes = _cubic(self._spline[:, place], (logs[:, 0] - self._nodes[place])[:, np.newaxis])
-        return points, slopes[:, np.newaxis]
+        place = ((log - self._nodes[0]) / step).astype(int)
+        place = np.minimum(np.maximum(place, 0), NODES - 2)
+        points, slopes = _cubic(self._spline[:, place], (log - self._nodes[place])[..., np.newaxis])
+        return points, slopes[..., np.newaxis, :]
 
     def replicates_at(self, logs: Floats) -> Floats:
         """Return what `Curve.replicates_at` does."""
@@ -141,6 +121,15 @@ class Lawful:
         seen = self._response
         doubt = self._asked(logs, lambda law: law_doubt(law, seen.edges, seen.mass))
         return bias_bound(doubt, seen.edges, seen.escape, seen.means)
+
+    def _by_differences(self, logs: Floats) -> tuple[Floats, Floats]:
+        """Return points (N,) and slopes (K, N) at logarithms (K,), by differences."""
+        mean = self._mean(logs)
+        slopes = np.empty((len(logs), len(mean)))
+        for k in range(len(logs)):
+            step = STEP * np.eye(len(logs))[k]
+            slopes[k] = (self._mean(logs + step) - self._mean(logs - step)) / (2.0 * STEP)
+        return mean, slopes
 
     def _mean(self, logs: Floats) -> Floats:
         return np.asarray(np.einsum("bo,bon->n", self._weights(logs), self._response.means, optimize=True))

@@ -14,7 +14,7 @@ from tracer.observe.fit.likelihood import Likelihood
 Floats = NDArray[np.float64]
 Truths = NDArray[np.bool_]
 
-MOST_STEPS = 200
+MOST_STEPS = 400
 SMALLEST_GAIN = 1e-9
 """Fall of -2 ln L, of order 1 over a standard error, below which a descent has arrived."""
 FIRST_DAMPING, LEAST_DAMPING, MOST_DAMPING = 1e-4, 1e-12, 1e12
@@ -33,47 +33,65 @@ class Valley(NamedTuple):
     value: float
 
 
-def descend(likelihood: Likelihood, start: Floats, held: Truths) -> tuple[Floats, float]:
-    """Return the parameters of least -2 ln L near `start`, and that value; parameters `held` stay.
+def descend(
+    likelihood: Likelihood,
+    starts: Floats,
+    held: Truths,
+    values: Floats | None = None,
+    smallest_gain: float = SMALLEST_GAIN,
+) -> tuple[Floats, Floats]:
+    """Return the parameters (D, P) of least -2 ln L near each start, and these values (D,).
 
-    Levenberg-Marquardt steps (Marquardt 1963, J. SIAM 11, 431: memory); one that would leave the bounds ends on them,
-    and a parameter on a bound takes part again only where the slope leads inside.
+    Levenberg-Marquardt steps (Marquardt 1963, J. SIAM 11, 431: memory), of all side by side; one that would leave the
+    bounds ends on them, and a parameter on a bound takes part again only where the slope leads inside.
+
+    Parameters
+    ----------
+    likelihood : Likelihood
+        What falls.
+    starts : ndarray, shape (D, P)
+        Where each descent begins.
+    held : ndarray of bool, shape (P,)
+        Parameters that stay.
+    values : ndarray, shape (D, N), optional
+        A profile for each, in place of the measured one.
+    smallest_gain : float, optional
+        Fall of -2 ln L, of order 1 over a standard error, below which a descent has arrived.
     """
     low, high = likelihood.low, likelihood.high
-    at = np.clip(start, low, high)
-    residual, slope = likelihood.residuals(at)
-    value, damping = float(residual @ residual), FIRST_DAMPING
+    at = np.clip(starts, low, high)
+    residual, slope = likelihood.residuals(at, values)
+    value = np.vecdot(residual, residual)
+    damping = np.full(len(at), FIRST_DAMPING)
+    going = np.arange(len(at))
     for _ in range(MOST_STEPS):
-        gradient = slope.T @ residual
-        free = ~held & ~((at <= low) & (gradient > 0.0)) & ~((at >= high) & (gradient < 0.0))
-        if not free.any():
+        if not len(going):
             break
-        normal = slope[:, free].T @ slope[:, free]
-        found = False
-        while damping < MOST_DAMPING:
-            trial = at.copy()
-            trial[free] += _step(normal, gradient[free], damping)
-            trial = np.clip(trial, low, high)
-            new, new_slope = likelihood.residuals(trial)
-            new_value = float(new @ new)
-            if new_value <= value:
-                found = True
-                break
-            damping *= 8.0
-        if not found:
-            break
-        gain = value - new_value
-        at, residual, slope, value = trial, new, new_slope, new_value
-        damping = max(LEAST_DAMPING, damping / 10.0)
-        if gain < SMALLEST_GAIN * (1.0 + 1e-3 * value):
-            break
+        trial = at[going] + _steps(residual[going], slope[going], damping[going], at[going], likelihood, held)
+        trial = np.minimum(np.maximum(trial, low), high)
+        new, new_slope = likelihood.residuals(trial, None if values is None else values[going])
+        new_value = np.vecdot(new, new)
+        gain = value[going] - new_value
+        good = gain >= 0.0
+        done = going[good]
+        at[done], residual[done], slope[done], value[done] = (
+            part[good] for part in (trial, new, new_slope, new_value)
+        )
+        before = damping[going]
+        damping[going] = np.where(good, np.maximum(LEAST_DAMPING, 0.1 * before), 8.0 * before)
+        going = going[
+            np.where(good, gain > smallest_gain * (1.0 + 1e-3 * new_value), damping[going] < MOST_DAMPING)
+        ]
     return at, value
 
 
 def valleys(likelihood: Likelihood, starts: Sequence[Floats]) -> tuple[Valley, ...]:
     """Return the minima of -2 ln L to which the starts lead, the lowest first."""
     held = np.zeros(len(likelihood.slots), dtype=bool)
-    found = [Valley(*descend(likelihood, start, held)) for start in starts]
+    found = [
+        Valley(at, float(value))
+        for at, value in zip(*descend(likelihood, np.array(starts), held), strict=True)
+    ]
     kept: list[Valley] = []
     for one in sorted(found, key=lambda valley: valley.value):
         if all(np.max(np.abs(one.parameters - other.parameters)) > SAME_PLACE for other in kept):
@@ -81,12 +99,23 @@ def valleys(likelihood: Likelihood, starts: Sequence[Floats]) -> tuple[Valley, .
     return tuple(kept)
 
 
-def _step(normal: Floats, gradient: Floats, damping: float) -> Floats:
-    scale = np.sqrt(np.maximum(np.diag(normal), np.finfo(float).tiny))
-    scaled = normal / np.outer(scale, scale)
+def _steps(
+    residual: Floats, slope: Floats, damping: Floats, at: Floats, likelihood: Likelihood, held: Truths
+) -> Floats:
+    """Return a step (D, P) for each; parameters held, or on a bound that stops them, stay."""
+    gradient = (slope @ residual[:, :, np.newaxis])[:, :, 0]
+    free = (
+        ~held & ~((at <= likelihood.low) & (gradient > 0.0)) & ~((at >= likelihood.high) & (gradient < 0.0))
+    )
+    slope = slope * free[:, :, np.newaxis]
+    normal = slope @ slope.transpose(0, 2, 1)
+    places = np.arange(at.shape[1])
+    scale = np.sqrt(np.maximum(normal[:, places, places], np.finfo(float).tiny))
+    scaled = normal / (scale[:, :, np.newaxis] * scale[:, np.newaxis, :])
     # A part of the trace as well: two parameters that do the same leave a matrix without inverse.
-    scaled.flat[:: len(scale) + 1] += damping + 1e-13
-    return np.asarray(np.linalg.solve(scaled, -gradient / scale) / scale)
+    scaled[:, places, places] = 1.0 + damping[:, np.newaxis] + 1e-13
+    moved = np.linalg.solve(scaled, (-gradient * free / scale)[:, :, np.newaxis])[:, :, 0] / scale
+    return np.where(free, moved, 0.0)
 
 
 def grid_starts(likelihood: Likelihood) -> list[Floats]:
@@ -97,12 +126,11 @@ def grid_starts(likelihood: Likelihood) -> list[Floats]:
         likelihood.low[n] + (likelihood.high[n] - likelihood.low[n]) * (np.arange(count) + 0.5) / count
         for n in places
     ]
-    starts = []
-    for logs in itertools.product(*axes):
-        start = np.zeros(len(likelihood.slots))
-        start[places] = logs
-        starts.append(_linear(likelihood, start))
-    values = np.array([likelihood.value(start) for start in starts])
+    starts = np.zeros((count ** len(places), len(likelihood.slots)))
+    starts[:, places] = list(itertools.product(*axes))
+    starts = _linear(likelihood, starts)
+    residual, _ = likelihood.residuals(starts)
+    values = np.vecdot(residual, residual)
     if places:
         grid = values.reshape([count] * len(places))
         lowest = np.flatnonzero(grid <= minimum_filter(grid, size=3, mode="nearest"))
@@ -112,24 +140,25 @@ def grid_starts(likelihood: Likelihood) -> list[Floats]:
     return [starts[n] for n in order[:MOST_DESCENTS]]
 
 
-def _linear(likelihood: Likelihood, start: Floats) -> Floats:
-    """Return the start with rates and background that suit its law parameters, by non-negative least squares.
+def _linear(likelihood: Likelihood, starts: Floats) -> Floats:
+    """Return starts (S, P) with rates and background that suit their law parameters, by non-negative least squares.
 
     Lawson & Hanson 1974, Solving Least Squares Problems, chapter 23 (memory). A background of either sign is the
     difference of two columns. Upper limits do not count here.
     """
     places = [n for n, slot in enumerate(likelihood.slots) if slot.key is None]
-    start = start.copy()
-    start[places] = 0.0
+    starts = starts.copy()
+    starts[:, places] = 0.0
     if not places:
-        return start
+        return starts
     measured = int((~likelihood.data.upper).sum())
-    residual, slope = (part[:measured] for part in likelihood.residuals(start))
-    # Slopes of the rates do not depend on the rates.
-    columns = -slope[:, places]
+    residuals, slopes = (part[..., :measured] for part in likelihood.residuals(starts))
     signed = [k for k, n in enumerate(places) if likelihood.slots[n].low < 0.0]
-    solution = nnls(np.hstack([columns, -columns[:, signed]]), residual)[0]
-    chosen = solution[: len(places)]
-    chosen[signed] -= solution[len(places) :]
-    start[places] = chosen
-    return start
+    for start, residual, slope in zip(starts, residuals, slopes, strict=True):
+        # Slopes of the rates do not depend on the rates.
+        columns = -slope[places].T
+        solution = nnls(np.hstack([columns, -columns[:, signed]]), residual)[0]
+        chosen = solution[: len(places)]
+        chosen[signed] -= solution[len(places) :]
+        start[places] = chosen
+    return starts

@@ -130,36 +130,33 @@ class Likelihood:
     def model(self, parameters: Floats) -> Model:
         """Return the points of the model."""
         rates = np.array([self._rate(i, parameters) for i in range(len(self.components))])
-        parts = np.array([points for points, _ in self._seen(parameters)])
+        parts = np.array(
+            [
+                one.curve.at(parameters[at])[0]
+                for one, at in zip(self.components, self._law_places, strict=True)
+            ]
+        )
         return Model(rates[:, None] * parts, np.full(parts.shape[1], self._level(parameters)), rates)
 
-    def residuals(self, parameters: Floats) -> tuple[Floats, Floats]:
-        """Return residuals (M,), whose squares sum to -2 ln L, and their slopes (M, P)."""
-        total, steps = self._predicted(parameters, self._seen(parameters))
-        keep = self._measured
-        away = self._whiten @ (self.data.value[keep] - total[keep])
-        turned = -(self._whiten @ steps[:, keep].T)
-        if keep.all():
-            return away, turned
-        limits, tilts = self._limits(total[~keep])
-        return np.concatenate([away, limits]), np.concatenate([turned, tilts[:, None] * steps[:, ~keep].T])
-
-    def residuals_of_many(self, values: Floats, parameters: Floats) -> tuple[Floats, Floats]:
-        """Return residuals (D, N) and their slopes (D, P, N) of D other profiles, none of whose points is a limit.
+    def residuals(self, parameters: Floats, values: Floats | None = None) -> tuple[Floats, Floats]:
+        """Return residuals (..., N), whose squares sum to -2 ln L, and their slopes (..., P, N); limits stand last.
 
         Parameters
         ----------
-        values : ndarray, shape (D, N)
-            Profiles in place of the measured one.
-        parameters : ndarray, shape (D, P)
-            The parameters of each.
+        parameters : ndarray, shape (..., P)
+            The parameters, of one or of many.
+        values : ndarray, shape (..., N), optional
+            Profiles in place of the measured one, whose limits stay limits.
         """
-        seen = [
-            one.curve.at_many(parameters[:, places])
-            for one, places in zip(self.components, self._law_places, strict=True)
-        ]
-        total, steps = self._predicted(parameters, seen)
-        return (values - total) @ self._whiten.T, -(steps @ self._whiten.T)
+        values = self.data.value if values is None else values
+        total, steps = self._predicted(parameters)
+        if not self.data.upper.any():
+            return (values - total) @ self._whiten.T, -(steps @ self._whiten.T)
+        keep = self._measured
+        away = (values[..., keep] - total[..., keep]) @ self._whiten.T
+        limits, tilts = self._limits(values[..., ~keep] - total[..., ~keep])
+        turned = -(steps[..., keep] @ self._whiten.T), tilts[..., np.newaxis, :] * steps[..., ~keep]
+        return np.concatenate([away, limits], axis=-1), np.concatenate(turned, axis=-1)
 
     def noise(self, normal: Floats) -> Floats:
         """Return errors (D, N) of measurement and model together, from D sets of standard normal numbers (D, N).
@@ -173,19 +170,14 @@ class Likelihood:
             raise ValueError("upper limits have no Gaussian error")
         return np.asarray(solve_triangular(self._whiten, normal.T, lower=True).T)
 
-    def value(self, parameters: Floats) -> float:
-        """Return -2 ln L without constants."""
-        found, _ = self.residuals(parameters)
-        return float(found @ found)
-
     def chi_square(self, parameters: Floats) -> float:
         """Return the chi-square of the measured points alone."""
         found = self.residuals(parameters)[0][: int(self._measured.sum())]
         return float(found @ found)
 
-    def _limits(self, total: Floats) -> tuple[Floats, Floats]:
+    def _limits(self, away: Floats) -> tuple[Floats, Floats]:
         sigma = self.total_sigma[self.data.upper]
-        z = (self.data.value[self.data.upper] - total) / sigma
+        z = away / sigma
         log = log_ndtr(z)
         root = np.sqrt(np.maximum(-2.0 * log, TINY))
         hazard = np.exp(-0.5 * z * z - log) / math.sqrt(2.0 * math.pi)
@@ -203,22 +195,13 @@ class Likelihood:
             return np.full(parameters.shape[:-1], self.components[number].held_rate)
         return np.asarray(parameters[..., place] * self.slots[place].unit)
 
-    def _seen(self, parameters: Floats) -> list[tuple[Floats, Floats]]:
-        """Return the points (N,) of each component for one atom per second, and their slopes (K, N)."""
-        return [
-            one.curve.at(parameters[places])
-            for one, places in zip(self.components, self._law_places, strict=True)
-        ]
-
-    def _predicted(self, parameters: Floats, seen: Sequence[tuple[Floats, Floats]]) -> tuple[Floats, Floats]:
-        """Return the points (..., N) of the model at parameters (..., P), and their slopes (..., P, N).
-
-        `seen` are points (..., N) and slopes (..., K, N) of the components' curves there.
-        """
+    def _predicted(self, parameters: Floats) -> tuple[Floats, Floats]:
+        """Return the points (..., N) of the model at parameters (..., P), and their slopes (..., P, N)."""
         total = np.zeros((*parameters.shape[:-1], len(self.data.value)))
         steps = np.zeros((*parameters.shape, len(self.data.value)))
-        for i, (points, slopes) in enumerate(seen):
-            rate, place = self._rate(i, parameters)[..., None], self._rate_places[i]
+        for i, one in enumerate(self.components):
+            points, slopes = one.curve.at(parameters[..., self._law_places[i]])
+            rate, place = self._rate(i, parameters)[..., np.newaxis], self._rate_places[i]
             total += rate * points
             if place is not None:
                 steps[..., place, :] = self.slots[place].unit * points
@@ -228,7 +211,7 @@ class Likelihood:
             return total + self.data.level, steps
         unit = self.slots[self._background].unit
         steps[..., self._background, :] = unit
-        return total + unit * parameters[..., self._background, None], steps
+        return total + unit * parameters[..., self._background, np.newaxis], steps
 
     def _model_covariance(self, parameters: Floats) -> Floats:
         whole = np.zeros((len(self.data.value),) * 2)

@@ -54,9 +54,9 @@ def scan_of(likelihood: Likelihood, valleys: tuple[Valley, ...]) -> Scan:
     best, value = valleys[0]
     _, slope = likelihood.residuals(best)
     # The law of a release that is absent changes nothing.
-    inside = ~on_edge(likelihood, best) & (np.sum(slope**2, axis=0) > 0.0)
+    inside = ~on_edge(likelihood, best) & (np.sum(slope**2, axis=1) > 0.0)
     covariance = np.full((len(best), len(best)), np.nan)
-    normal = slope[:, inside].T @ slope[:, inside]
+    normal = slope[inside] @ slope[inside].T
     scale = np.sqrt(np.maximum(np.diag(normal), np.finfo(float).tiny))
     covariance[np.ix_(inside, inside)] = np.linalg.pinv(
         normal / np.outer(scale, scale), hermitian=True
@@ -158,7 +158,7 @@ def _width(scan: Scan, number: int, best: float) -> float:
     at = np.where(np.isfinite(likelihood.low), likelihood.low, 0.0)
     at = np.where(np.isfinite(likelihood.high), 0.5 * (at + likelihood.high), at)
     at[number] = best
-    slope = likelihood.residuals(at)[1][:, number]
+    slope = likelihood.residuals(at)[1][number]
     norm = float(np.sqrt(slope @ slope))
     span = likelihood.high[number] - likelihood.low[number]
     width = 1.0 / norm if norm > 0.0 else 0.1
@@ -198,7 +198,9 @@ def other_starts(scan: Scan, near: Floats, held: NDArray[np.bool_]) -> list[Floa
 
 
 def _least(scan: Scan, starts: Sequence[Floats], held: NDArray[np.bool_]) -> tuple[Floats, float]:
-    found, value = min((descend(scan.likelihood, one, held) for one in starts), key=lambda one: one[1])
+    found, values = descend(scan.likelihood, np.array(starts), held)
+    lowest = int(np.argmin(values))
+    value = float(values[lowest])
     if value < scan.value - BETTER:
-        raise BetterFound(found)
-    return found, value
+        raise BetterFound(found[lowest])
+    return found[lowest], value

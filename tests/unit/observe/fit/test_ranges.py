@@ -43,14 +43,9 @@ class Heated:
         self._error, self._bias = error, bias
 
     def at(self, logs):
-        length = math.exp(logs[0])
-        value = np.exp(-X / length)
-        return value, (value * X / length)[np.newaxis]
-
-    def at_many(self, logs):
         lengths = np.exp(logs)
         values = np.exp(-X / lengths)
-        return values, (values * X / lengths)[:, np.newaxis]
+        return values, (values * X / lengths)[..., np.newaxis, :]
 
     def replicates_at(self, logs):
         spread = self._error * np.sin(np.outer(np.arange(1.0, 11.0), X))
@@ -173,7 +168,7 @@ def test_parameter_that_meets_its_range_is_named():
 
 def test_small_coverage_of_rate_and_parameter(monkeypatch):
     # Fewer draws in each calibration, for the time it takes.
-    monkeypatch.setattr("tracer.observe.fit.calibration.PAIRS", 40)
+    monkeypatch.setattr("tracer.observe.fit.calibration.DRAWS", 64)
     # 60 draws: a share of 68.27 % lies outside 0.50 to 0.85, or one of 95 % below 0.87, by chance in 1 of 100 sets of
     # the four (binomial). The whole study stands in analysis/validation/fit-coverage.
     rng = np.random.default_rng(4)
