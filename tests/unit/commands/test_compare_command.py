@@ -143,7 +143,7 @@ def test_temperature_is_fitted_from_responses(folder, capsys):
     assert found["degrees_of_freedom"] == len(POSITIONS) - 3
     ends = found["range_ends"]
     assert ends["calibrated"]
-    assert ends["draws"] == 400
+    assert ends["draws"] == 512
     assert sorted(ends["rises"]) == ["desorption: rate", "vapour: rate", "vapour: temperature"]
     assert all(low >= 1.0 and high > 3.84 for low, high in ends["rises"].values())
 

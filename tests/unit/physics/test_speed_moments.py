@@ -25,10 +25,15 @@ EDGES = np.array([0.0, 300.0, 800.0, 950.0, 1500.0, 3000.0, 9000.0, 60_000.0])
 QUANTILES = 2_000_000
 
 
-@pytest.mark.parametrize("law", LAWS, ids=lambda law: type(law).__name__)
-def test_moments_are_those_of_the_quantiles(law):
+@pytest.fixture(scope="module", params=LAWS, ids=lambda law: type(law).__name__)
+def quantiles(request):
+    """Return a law and its speeds at even quantiles."""
     u = (np.arange(QUANTILES) + 0.5) / QUANTILES
-    speeds = law.speeds(u, np.full(QUANTILES, np.nan), SODIUM)
+    return request.param, request.param.speeds(u, np.full(QUANTILES, np.nan), SODIUM)
+
+
+def test_moments_are_those_of_the_quantiles(quantiles):
+    law, speeds = quantiles
     moments = legendre_moments(law, EDGES, SODIUM, 3)
     place = np.searchsorted(EDGES, speeds, side="right") - 1
     for j in range(len(EDGES) - 1):
@@ -39,11 +44,9 @@ def test_moments_are_those_of_the_quantiles(law):
         assert moments[j] == pytest.approx(sums, abs=3.0 / QUANTILES)
 
 
-@pytest.mark.parametrize("law", LAWS, ids=lambda law: type(law).__name__)
 @pytest.mark.parametrize("speed", [0.0, 700.0, 2500.0, 10_000.0])
-def test_share_above_is_that_of_the_quantiles(law, speed):
-    u = (np.arange(QUANTILES) + 0.5) / QUANTILES
-    speeds = law.speeds(u, np.full(QUANTILES, np.nan), SODIUM)
+def test_share_above_is_that_of_the_quantiles(quantiles, speed):
+    law, speeds = quantiles
     assert law.share_above(speed, SODIUM) == pytest.approx(np.mean(speeds > speed), abs=1.0 / QUANTILES)
 
 

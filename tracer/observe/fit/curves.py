@@ -101,9 +101,12 @@ class Lawful:
     def at(self, logs: Floats) -> tuple[Floats, Floats]:
         """Return what `Curve.at` does."""
         if self._spline is None:
-            each = [self._by_differences(one) for one in logs.reshape(-1, logs.shape[-1])]
+            # A law may have none to fit: then there are no numbers from which to infer how many sets there are.
+            sets = logs.reshape(math.prod(logs.shape[:-1]), logs.shape[-1])
+            each = [self._by_differences(one) for one in sets]
             points, slopes = (np.array(part) for part in zip(*each, strict=True))
-            return points.reshape(*logs.shape[:-1], -1), slopes.reshape(*logs.shape, -1)
+            size = points.shape[-1]
+            return points.reshape(*logs.shape[:-1], size), slopes.reshape(*logs.shape, size)
         log = logs[..., 0]
         step = self._nodes[1] - self._nodes[0]
         place = ((log - self._nodes[0]) / step).astype(int)
