@@ -1,5 +1,6 @@
 """Small products that many tests share, and one way to trace a run file's text once a session."""
 
+import os
 import subprocess
 import sys
 from collections.abc import Callable
@@ -37,8 +38,13 @@ def check_conventions() -> Callable[..., "subprocess.CompletedProcess[str]"]:
 
 
 def pytest_sessionstart(session: pytest.Session) -> None:
-    """Compile the kernels once, into the cache that all test processes share, before these processes start."""
+    """Compile the kernels once, into the cache that all test processes share, before these processes start.
+
+    Unless the environment says that this has been done.
+    """
     if hasattr(session.config, "workerinput") or not session.config.getoption("numprocesses", None):
+        return
+    if "KERNELS_ARE_WARM" in os.environ:
         return
     subprocess.run([sys.executable, WARM_KERNELS], check=True)
 

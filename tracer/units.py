@@ -11,6 +11,7 @@ import re
 import warnings
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 from types import MappingProxyType
 from typing import Any, NamedTuple
 
@@ -19,6 +20,9 @@ import astropy.units
 from tracer.constants import AVOGADRO
 
 RADII = "radii"
+
+KNOWN_UNITS = 256
+"""Names of units whose meaning is kept: reading a unit takes as long as all else of a key of a run file."""
 
 
 class Dimension(NamedTuple):
@@ -148,11 +152,7 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
         if radius is None:
             raise ValueError(f"{quantity} is no length before the body's radius is known")
         return quantity.value * radius
-    unit = _unit(quantity.unit)
-    for dimension in DIMENSIONS.values():
-        if unit is not None and unit.is_equivalent(wanted := _unit(dimension.unit)):
-            return float(unit.to(wanted, quantity.value))
-    raise ValueError(f"{quoted(quantity.unit)} is not a unit of any dimension in use")
+    return float(_unit(quantity.unit).to(_unit(si_unit(quantity.unit)), quantity.value))
 
 
 def si_unit(name: str) -> str:
@@ -163,11 +163,10 @@ def si_unit(name: str) -> str:
     ValueError
         As `si`.
     """
-    unit = _unit(DIMENSIONS["length"].unit if name == RADII else name)
-    for dimension in DIMENSIONS.values():
-        if unit is not None and unit.is_equivalent(_unit(dimension.unit)):
-            return dimension.unit
-    raise ValueError(f"{quoted(name)} is not a unit of any dimension in use")
+    found = _si_unit(DIMENSIONS["length"].unit if name == RADII else name)
+    if found is None:
+        raise ValueError(f"{quoted(name)} is not a unit of any dimension in use")
+    return found
 
 
 def as_written(text: str) -> Quantity | None:
@@ -215,6 +214,15 @@ def _refuse_unit(name: str, wanted: Dimension, subject: str, hint: str) -> None:
         raise ValueError(f"{subject} is not a unit of {wanted.word}; {hint}")
 
 
+@lru_cache(KNOWN_UNITS)
+def _si_unit(name: str) -> str | None:
+    unit = _unit(name)
+    if unit is None:
+        return None
+    return next((one.unit for one in DIMENSIONS.values() if unit.is_equivalent(_unit(one.unit))), None)
+
+
+@lru_cache(KNOWN_UNITS)
 def _unit(name: str) -> Any:
     """Return the astropy unit called `name`, or None where there is none."""
     if _SCALED_UNIT.match(name):

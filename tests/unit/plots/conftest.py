@@ -23,7 +23,7 @@ PIXELS = (7, 5)
 BINS = 8
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def make_product() -> Callable[..., xr.Dataset]:
     """Return a function that makes a product whose fields all have one size, known to a tenth."""
 

@@ -2,7 +2,6 @@
 
 from collections.abc import Callable, Sequence
 from contextlib import ExitStack
-from pathlib import Path
 
 import numpy as np
 import pytest
@@ -24,19 +23,20 @@ def _axis(
     return SweptAxis(name, dimension or name, np.array(values, dtype=kind), notes)
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def axis() -> Callable[..., SweptAxis]:
     """Return a function that makes an axis of numbers or words."""
     return _axis
 
 
-@pytest.fixture
-def swept(tmp_path: Path) -> Callable[..., xr.Dataset]:
+@pytest.fixture(scope="module")
+def swept(tmp_path_factory: pytest.TempPathFactory) -> Callable[..., xr.Dataset]:
     """Return a function that makes a sweep's product of the products of its points, in their order, and opens it."""
     with ExitStack() as files:
 
         def make(points: Sequence[xr.Dataset], *axes: SweptAxis) -> xr.Dataset:
-            paths = [tmp_path / f"{number}.nc" for number in range(len(points))]
+            folder = tmp_path_factory.mktemp("sweep")
+            paths = [folder / f"{number}.nc" for number in range(len(points))]
             for product, path in zip(points, paths, strict=True):
                 extra = {
                     "complete": 1,
@@ -45,12 +45,12 @@ def swept(tmp_path: Path) -> Callable[..., xr.Dataset]:
                     "flights": 10,
                     "data_checksum": data_checksum(product),
                 }
-                save_product(product.assign_attrs(extra), path, overwrite=True)
+                save_product(product.assign_attrs(extra), path)
             known = points[0].attrs
             attributes = {key: known[key] for key in ("product_version", "title", "body_radius", "source")}
-            output = tmp_path / "sweep.nc"
+            output = folder / "sweep.nc"
             with swept_product([read_head(path) for path in paths], axes, {**attributes, KIND: SWEEP}) as ds:
-                save_sweep(ds, output, overwrite=True)
+                save_sweep(ds, output)
             return files.enter_context(open_sweep(output))
 
         yield make

@@ -1,5 +1,7 @@
 """Figures against what varies show what each point's own product holds."""
 
+from functools import cache
+
 import numpy as np
 import pytest
 import xarray as xr
@@ -39,7 +41,7 @@ def falling(product, scale: float, radius: float):
     return made
 
 
-@pytest.fixture
+@pytest.fixture(scope="module")
 def seasons(make_product, swept, axis):
     """Return a sweep over three true anomalies, each with twice as much gas as the one before."""
     product = make_product(("impact vapour", "sputtering"), views={IMAGE: "north", "from_the_sun": "sun"})
@@ -153,7 +155,7 @@ def test_lengths_that_begin_or_end_outside_are_said_so():
     assert length_above(np.array([9.0, 9.0, np.nan, 9.0]), places, 1.0) == 1.5
 
 
-@pytest.fixture
+@pytest.fixture(scope="module")
 def tails(make_product, swept, axis):
     """Return a sweep whose tails fall off over 0.8, 1.2 and 1,000 radii."""
     product = make_product(("impact vapour", "sputtering"), views={IMAGE: "north"})
@@ -208,11 +210,12 @@ def test_a_level_that_is_missing_or_too_high_is_refused_with_the_range_there_is(
         swept_tail(tails, 5.0, IMAGE, "na_d2")
 
 
-@pytest.fixture
+@pytest.fixture(scope="module")
 def two(make_product, swept, axis):
     """Return a function that makes a sweep over two dimensions of the given lengths, no two points alike."""
     product = make_product(lines=(), views={IMAGE: "north"})
 
+    @cache
     def make(temperatures: int, stickings: int):
         points = [scaled(product, 1.0 + i) for i in range(temperatures * stickings)]
         first = axis(
