@@ -152,7 +152,8 @@ def si(quantity: Quantity, radius: float | None = None) -> float:
         if radius is None:
             raise ValueError(f"{quantity} is no length before the body's radius is known")
         return quantity.value * radius
-    return float(_unit(quantity.unit).to(_unit(si_unit(quantity.unit)), quantity.value))
+    wanted = _unit(si_unit(quantity.unit))
+    return float(_unit(quantity.unit).to(wanted, quantity.value))
 
 
 def si_unit(name: str) -> str:

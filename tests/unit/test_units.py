@@ -7,7 +7,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from tracer.constants import ASTRONOMICAL_UNIT, ATOMIC_MASS
-from tracer.units import DIMENSIONS, Quantity, conversion_factor, parse, quoted, si
+from tracer.units import DIMENSIONS, Quantity, conversion_factor, parse, quoted, si, si_unit
 
 
 @pytest.mark.parametrize(
@@ -77,6 +77,13 @@ def test_radii_need_the_radius() -> None:
     assert si(quantity, radius=1.8e6) == 4.5e6
     with pytest.raises(ValueError, match="before the body's radius is known"):
         si(quantity)
+
+
+@pytest.mark.parametrize("unit", ["Kelvins", "dB(K)", "mol"])
+def test_what_is_of_no_dimension_in_use_has_no_value(unit: str) -> None:
+    for asked in (lambda: si(Quantity(1.0, unit)), lambda: si_unit(unit)):
+        with pytest.raises(ValueError, match="is not a unit of any dimension in use"):
+            asked()
 
 
 @pytest.mark.parametrize("text", ["1200 K", "1e24 s-1", "5.9e-6 s-1", "-8 radii", "0.1 km / s", "1e-7 s-1"])

@@ -1,6 +1,7 @@
 """Arguments and options that several commands share."""
 
-from typing import Annotated, Any
+from collections.abc import Sequence
+from typing import Annotated, Any, NamedTuple
 
 import typer
 
@@ -49,3 +50,14 @@ LOG = Annotated[str | None, option("FILE", "Append one JSON line an event.")]
 JSON = Annotated[
     bool, typer.Option("--json", help="Print the figures for machines: SI units, angles in degrees.")
 ]
+
+
+class Tracing(NamedTuple):
+    """How to trace, as the options that `tracer run` and `tracer sweep` share say."""
+
+    workers: int | None
+    cluster: str | None
+    log: str | None
+    settings: Sequence[str]
+    overwrite: bool
+    resume: bool

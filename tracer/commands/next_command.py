@@ -2,20 +2,10 @@
 
 import shlex
 from collections.abc import Sequence
-from typing import NamedTuple
 
 import typer
 
-
-class Tracing(NamedTuple):
-    """How to trace, as the options that `tracer run` and `tracer sweep` share say."""
-
-    workers: int | None
-    cluster: str | None
-    log: str | None
-    settings: Sequence[str]
-    overwrite: bool
-    resume: bool
+from tracer.commands.arguments import Tracing
 
 
 def name_next(*words: str, settings: Sequence[str] | None = None) -> None:

@@ -6,11 +6,11 @@ from typing import Annotated, NamedTuple
 import typer
 import xarray as xr
 
-from tracer.commands.arguments import CLUSTER, LOG, RUN_FILE, SETTINGS, WORKERS, option
+from tracer.commands.arguments import CLUSTER, LOG, RUN_FILE, SETTINGS, WORKERS, Tracing, option
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import refuse_inputs
-from tracer.commands.next_command import Tracing, name_next, resuming_command
+from tracer.commands.next_command import name_next, resuming_command
 from tracer.commands.progress import shown_progress
 from tracer.engine.checkpoint_slots import Checkpoints
 from tracer.engine.executors.choice import chosen_executor
@@ -147,7 +147,7 @@ def _trace_and_save(job: Job, checkpoints: Checkpoints, note: Note) -> xr.Datase
                 checkpoints=checkpoints,
                 note=note,
             )
-        save_product(product, job.path, job.tracing.overwrite)
+        save_product(product, job.path, tracing.overwrite)
     except KeyboardInterrupt:
         note("interrupted", "", batches_kept=checkpoints.kept_batches)
         raise Interrupted(

@@ -6,12 +6,12 @@ from typing import Annotated, NamedTuple
 
 import typer
 
-from tracer.commands.arguments import CLUSTER, JSON, LOG, SETTINGS, WORKERS, argument, option
+from tracer.commands.arguments import CLUSTER, JSON, LOG, SETTINGS, WORKERS, Tracing, argument, option
 from tracer.commands.budget_table import print_budget
 from tracer.commands.event_log import event_log
 from tracer.commands.input_guard import about, refuse_inputs
 from tracer.commands.machine_output import print_json
-from tracer.commands.next_command import Tracing, name_next, resuming_command
+from tracer.commands.next_command import name_next, resuming_command
 from tracer.commands.progress import shown_progress
 from tracer.commands.sweep_tables import print_point_budgets, print_prepared
 from tracer.engine.executors.choice import chosen_executor

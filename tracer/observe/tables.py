@@ -181,6 +181,7 @@ def _floats(column: Any, name: str) -> Floats:
     try:
         return np.asarray(column, dtype=np.float64)
     except (ValueError, TypeError):
+        # Which entry it was NumPy does not say.
         pass
     for row, entry in enumerate(column, 1):
         try:

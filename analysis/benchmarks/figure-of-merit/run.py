@@ -30,6 +30,11 @@ CELLS_OF_NOTE = 0.2
 """Cells that hold at least this part of their region's mean count for the mean over cells."""
 
 RESAMPLES = 400
+SCENES = {
+    "sunlight": "Mercury sodium 1,200 K at true anomaly 60 deg",
+    "gravity": "the same under gravity alone",
+    "harrow": "Harrow sodium 1,200 K",
+}
 GOALS = {
     ("sunlight", "tail"): ("far", "sum", 5.0),
     ("sunlight", "high"): ("far", "sum", 5.0),
@@ -168,7 +173,7 @@ def main() -> int:
     )
     parser.add_argument(
         "--scene",
-        choices=("sunlight", "gravity", "harrow"),
+        choices=SCENES,
         action="append",
         help="only this one (default: all)",
     )
@@ -176,20 +181,15 @@ def main() -> int:
     print("machine:", platform.processor() or platform.machine(), platform.platform())
     print("load of the machine:", Path("/proc/loadavg").read_text(encoding="ascii").strip())
     spec = tracer.load_run(HERE / "case.toml")
-    scenes = {
-        "sunlight": ("Mercury sodium 1,200 K at true anomaly 60 deg", spec, 1),
-        "gravity": (
-            "the same under gravity alone",
-            spec.model_copy(update={"sun": None}),
-            arguments.gravity_factor,
-        ),
-        "harrow": ("Harrow sodium 1,200 K", tracer.load_run(HARROW), 1),
+    run_files = {
+        "sunlight": spec,
+        "gravity": spec.model_copy(update={"sun": None}),
+        "harrow": tracer.load_run(HARROW),
     }
     missed = []
-    for name in arguments.scene or scenes:
-        title, run_file, more = scenes[name]
-        scene = build_scene(run_file)
-        missed += report(title, name, measure(scene, arguments.batches, more))
+    for name in arguments.scene or SCENES:
+        more = arguments.gravity_factor if name == "gravity" else 1
+        missed += report(SCENES[name], name, measure(build_scene(run_files[name]), arguments.batches, more))
     print("\nmissed: " + "; ".join(missed) if missed else "\nall goals reached")
     return int(bool(missed))
 

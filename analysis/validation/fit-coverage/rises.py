@@ -8,7 +8,7 @@ from scipy.stats import chi2
 
 import tracer
 from tracer.observe.fit import calibration
-from tracer.observe.fit.descent import Valley, descend
+from tracer.observe.fit.descent import Valley
 from tracer.observe.fit.likelihood import Likelihood, slots_of
 from tracer.observe.fit.ranges import RISE_68, RISE_95, Scan, on_edge, other_starts, scan_of
 
@@ -31,26 +31,19 @@ def at_truth(case: Case) -> tuple[list[str], Scan]:
     return [slot.name for slot in slots], scan_of(likelihood, (Valley(true, float(residual @ residual)),))
 
 
-def lowest(scan: Scan, values: Floats, starts: list[Floats], held: Floats) -> tuple[Floats, Floats]:
-    """Return the best of descents from several starts, (P,) or (D, P) each, for each profile, and their -2 ln L."""
-    every = np.concatenate([np.broadcast_to(one, (len(values), len(held))) for one in starts])
-    at, value = descend(scan.likelihood, every, held, np.tile(values, (len(starts), 1)), 1e-4)
-    value = value.reshape(len(starts), -1)
-    chosen = np.argmin(value, axis=0), np.arange(len(values))
-    return at.reshape(len(starts), len(values), -1)[chosen], value[chosen]
-
-
 def rises_of(scan: Scan, values: Floats) -> tuple[Floats, Floats]:
     """Return by how much -2 ln L of each profile rises (D, P) at the truth, and the best parameters (D, P)."""
     count = len(scan.best)
     held = np.zeros(count, dtype=bool)
-    at, least = lowest(scan, values, [scan.best, *other_starts(scan, scan.best, held)], held)
+    at, least = calibration.lowest(
+        scan.likelihood, values, [scan.best, *other_starts(scan, scan.best, held)], held
+    )
     rises = np.empty_like(at)
     for n in range(count):
         held = np.arange(count) == n
         near = at.copy()
         near[:, n] = scan.best[n]
-        rises[:, n] = lowest(scan, values, [near, scan.best], held)[1] - least
+        rises[:, n] = calibration.lowest(scan.likelihood, values, [near, scan.best], held)[1] - least
     return rises, at
 
 

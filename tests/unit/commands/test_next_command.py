@@ -2,7 +2,8 @@
 
 import shlex
 
-from tracer.commands.next_command import Tracing, resuming_command
+from tracer.commands.arguments import Tracing
+from tracer.commands.next_command import resuming_command
 
 
 def test_resuming_command_says_again_how_to_trace_and_nothing_else():

@@ -2,6 +2,7 @@
 
 import os
 from collections.abc import Sequence
+from contextlib import suppress
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -146,12 +147,10 @@ def _refuse_what_does_not_fit(prepared: PreparedSweep) -> None:
 
 
 def _is_done(prepared: PreparedSweep, output: str | os.PathLike[str], overwrite: bool) -> bool:
-    try:
-        with open_sweep(output) as ds:
-            if ds.attrs.get(SWEEP_HASH) == prepared.sweep_hash:
-                return True
-    except InputError:
-        pass
+    # What cannot be read as a sweep is not this one: whether it may be replaced is asked below.
+    with suppress(InputError), open_sweep(output) as ds:
+        if ds.attrs.get(SWEEP_HASH) == prepared.sweep_hash:
+            return True
     check_output(output, overwrite)
     return False
 

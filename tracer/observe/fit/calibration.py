@@ -15,6 +15,7 @@ shares of the two differ (control variate: Hesterberg 1996, Stat. and Computing 
 the two are the same number, and the rises those of Wilks.
 """
 
+from collections.abc import Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -23,6 +24,7 @@ from scipy.special import gammainc, ndtr, ndtri
 from scipy.stats import qmc
 
 from tracer.observe.fit.descent import descend
+from tracer.observe.fit.likelihood import Likelihood
 from tracer.observe.fit.ranges import RISE_68, RISE_95, Scan, other_starts
 
 Floats = NDArray[np.float64]
@@ -121,14 +123,14 @@ def _drawn(scan: Scan, wanted: NDArray[np.int64]) -> tuple[Floats, Floats]:
     linear = shift**2 / np.diag(scan.covariance)[wanted]
     held = np.zeros(len(best), dtype=bool)
     starts = [best, *(one.parameters for one in scan.valleys[1:]), *other_starts(scan, best, held)]
-    at, least = _lowest(scan, values, [np.tile(start, (len(values), 1)) for start in starts], held)
+    at, least = lowest(scan.likelihood, values, starts, held)
     rises = np.empty((len(values), len(wanted)))
     for k, n in enumerate(wanted):
         held[:] = False
         held[n] = True
         near = at.copy()
         near[:, n] = best[n]
-        rises[:, k] = _lowest(scan, values, [near, np.tile(best, (len(values), 1))], held)[1] - least
+        rises[:, k] = lowest(scan.likelihood, values, [near, best], held)[1] - least
     return rises, linear
 
 
@@ -139,14 +141,16 @@ def _normal(slope: Floats) -> Floats:
     return np.asarray(ndtri(np.maximum(even, SMALLEST_SHARE)) @ directions.T)
 
 
-def _lowest(
-    scan: Scan, values: Floats, starts: list[Floats], held: NDArray[np.bool_]
+def lowest(
+    likelihood: Likelihood, values: Floats, starts: Sequence[Floats], held: NDArray[np.bool_]
 ) -> tuple[Floats, Floats]:
-    """Return the best of descents from several starts, (D, P) each, for each profile, and their -2 ln L."""
+    """Return the best parameters (D, P) of descents from several starts, and their -2 ln L (D,).
+
+    Each profile of `values` (D, N) is fitted from each start, (P,) or (D, P); parameters `held` (P,) stay.
+    """
     count = len(values)
-    at, value = descend(
-        scan.likelihood, np.concatenate(starts), held, np.tile(values, (len(starts), 1)), SMALLEST_GAIN
-    )
+    every = np.concatenate([np.broadcast_to(start, (count, len(held))) for start in starts])
+    at, value = descend(likelihood, every, held, np.tile(values, (len(starts), 1)), SMALLEST_GAIN)
     value = value.reshape(len(starts), count)
     chosen = np.argmin(value, axis=0), np.arange(count)
     return at.reshape(len(starts), count, -1)[chosen], value[chosen]

@@ -4,6 +4,7 @@ import math
 
 import numpy as np
 import pytest
+from scipy.optimize import least_squares
 from scipy.stats import chi2
 
 from tracer.observe.fit.calibration import calibrated, quantiles
@@ -125,7 +126,24 @@ def decay():
     )
 
 
-def test_many_descents_arrive_where_each_alone_does():
+def least_of(likelihood, start, free):
+    """Return the least sum of squares that SciPy finds (Branch et al. 1999, SIAM J. Sci. Comput. 21, 1: memory)."""
+
+    def residuals(part):
+        return likelihood.residuals(whole(part))[0]
+
+    def whole(part):
+        at = start.copy()
+        at[free] = part
+        return at
+
+    bounds = likelihood.low[free], likelihood.high[free]
+    inside = np.clip(start[free], bounds[0] + 1e-3, bounds[1] - 1e-3)
+    found = least_squares(residuals, inside, bounds=bounds, xtol=1e-12, ftol=1e-12, gtol=1e-12)
+    return 2.0 * found.cost
+
+
+def test_many_descents_arrive_where_a_general_minimiser_does():
     curve, flat = decay(), np.ones(20)
     x = np.linspace(0.2, 8.0, 20)
     components = [
@@ -146,6 +164,7 @@ def test_many_descents_arrive_where_each_alone_does():
         for one, found in zip(values, least, strict=True):
             alone = Likelihood(data._replace(value=one), components, slots)
             assert found == pytest.approx(descend(alone, start[np.newaxis], held)[1][0], rel=1e-12)
+            assert found == pytest.approx(least_of(alone, start, ~held), abs=1e-6)
     # The second rate meets its bound in some of the draws, so that bounds are tried.
     assert np.any(at[:, 1] == 0.0)
     assert np.any(at[:, 1] > 0.0)
@@ -176,6 +195,9 @@ def test_residuals_of_many_are_those_of_each(upper):
         residual, slope = alone.residuals(place)
         np.testing.assert_allclose(many[n], residual, rtol=1e-9, atol=1e-9)
         np.testing.assert_allclose(slopes[n], slope, rtol=1e-9, atol=1e-9)
+        for k, step in enumerate(1e-5 * np.eye(len(place))):
+            ahead, behind = alone.residuals(place + step)[0], alone.residuals(place - step)[0]
+            np.testing.assert_allclose(slope[k], (ahead - behind) / 2e-5, rtol=1e-5, atol=1e-5)
 
 
 def test_noise_has_the_covariance_of_measurement_and_model():
