@@ -49,7 +49,7 @@ EQUATOR = {
 """Unit vectors of the places whose residence times are shown."""
 
 ARCS = "closed-form Kepler arcs"
-INTEGRATOR = "adaptive integration (Dormand-Prince 5(4))"
+INTEGRATOR = "adaptive integration (Runge-Kutta 5(4))"
 
 
 class ReleasePreview(NamedTuple):

@@ -7,7 +7,10 @@ from tracer.kernels.temperature import CONDUCTION, HURLEY_2015
 from tracer.physics.release.speed.sigmund_thompson import SigmundThompson
 
 SPUTTERING = "Sigmund, P. (1969), Phys. Rev. 184, 383; Thompson, M. W. (1968), Phil. Mag. 18, 377"
-INTEGRATOR = "Dormand, J. R. & Prince, P. J. (1980), J. Comput. Appl. Math. 6, 19"
+INTEGRATOR = (
+    "Butcher, J. C. (1964), J. Austral. Math. Soc. 4, 179; "
+    "Dormand, J. R. & Prince, P. J. (1980), J. Comput. Appl. Math. 6, 19: Runge-Kutta pair"
+)
 SOLAR_LINES = (
     "Brault, J. & Neckel, H. (1987) and Neckel, H. (1999), Solar Physics 184, 421: solar flux in the lines"
 )

@@ -35,7 +35,6 @@ from tracer.kernels.dense_output import (
     place_at,
     set_component,
 )
-from tracer.kernels.dormand_prince import NODES, trial_step
 from tracer.kernels.endings import AGED, CROSSED, FLYING, LANDED, STRUCK, UNRESOLVED
 from tracer.kernels.host import approach, host_neared, nearest, shade_and_nearness, without_host
 from tracer.kernels.motion import rates_beside
@@ -47,6 +46,7 @@ from tracer.kernels.orbit import (
     longest_on_orbit,
     set_series,
 )
+from tracer.kernels.runge_kutta import NODES, trial_step
 from tracer.kernels.shadow import (
     CYLINDER,
     LIT,

@@ -10,7 +10,6 @@ import numpy as np
 
 from tracer.kernels.apart import lane_value, set_lane_bits, set_lane_value
 from tracer.kernels.compiling import inlined, kernel
-from tracer.kernels.dormand_prince import NODES
 from tracer.kernels.fused import fused
 from tracer.kernels.host import past_host, with_host_pull, with_slip
 from tracer.kernels.lanes import (
@@ -37,6 +36,7 @@ from tracer.kernels.lines import HEADING, HEADING_SIZE, line_value
 from tracer.kernels.lookups import FOUR, look_up_four
 from tracer.kernels.motion import radial_velocity
 from tracer.kernels.orbit import body_in_series, with_turning_growth
+from tracer.kernels.runge_kutta import NODES
 from tracer.kernels.shadow import lit_fraction
 
 COUNTING = 6755399441055744.0

@@ -1,4 +1,4 @@
-"""One trial step in every lane at once: `dormand_prince.trial_step`, stage by stage.
+"""One trial step in every lane at once: `runge_kutta.trial_step`, stage by stage.
 
 A loop for each stage rather than one for all: while one group of lanes waits for its stage's last number, the processor
 is at work on the next group.
@@ -11,20 +11,6 @@ from numba.extending import overload
 
 from tracer.kernels.apart import lane_value, set_lane_value
 from tracer.kernels.compiling import INLINED, inlined, kernel
-from tracer.kernels.dormand_prince import (
-    NODES,
-    TABLEAU,
-    error_row,
-    fifth,
-    fourth,
-    quartic,
-    quartic_row,
-    second,
-    sixth,
-    solution,
-    solution_row,
-    third,
-)
 from tracer.kernels.endings import FLYING
 from tracer.kernels.fused import fused
 from tracer.kernels.host import (
@@ -102,6 +88,20 @@ from tracer.kernels.lanes import (
     Z,
 )
 from tracer.kernels.orbit import body_in_series, longest_on_orbit, set_series
+from tracer.kernels.runge_kutta import (
+    NODES,
+    TABLEAU,
+    error_row,
+    fifth,
+    fourth,
+    quartic,
+    quartic_row,
+    second,
+    sixth,
+    solution,
+    solution_row,
+    third,
+)
 from tracer.kernels.shadow import (
     ANTUMBRA,
     NO_SHADOW,
@@ -148,7 +148,7 @@ def try_steps(lanes, sky, tables):
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
         v2, a2 = _stage(lanes, SECOND + lane)
-        arrive(lanes, stage, lane, sky, grids, node, third(p, h, v, v2), third(v, h, a, a2))
+        arrive(lanes, stage, lane, sky, grids, node, third(p, h, v2), third(v, h, a2))
     leave(lanes, stage, sky, tables, node)
     node, stage = node + 1, stage + STAGE
     if apart > 0:
@@ -165,11 +165,8 @@ def try_steps(lanes, sky, tables):
         look_apart(lanes, apart, node, sky, tables)
     for lane in range(WIDTH):
         h, p, v, a = _begin(lanes, lane)
-        v2, a2 = _stage(lanes, SECOND + lane)
-        v3, a3 = _stage(lanes, THIRD + lane)
         v4, a4 = _stage(lanes, FOURTH + lane)
-        p5 = fifth(p, h, v, v2, v3, v4)
-        arrive(lanes, stage, lane, sky, grids, node, p5, fifth(v, h, a, a2, a3, a4))
+        arrive(lanes, stage, lane, sky, grids, node, fifth(p, h, v, v4), fifth(v, h, a, a4))
     leave(lanes, stage, sky, tables, node)
     node, stage = node + 1, stage + STAGE
     if apart > 0:

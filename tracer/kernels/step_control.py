@@ -12,7 +12,7 @@ DEFAULT_TOLERANCE = 1e-6
 Save some 3 in 100,000, temporary satellites between push and pull, that no step size makes predictable.
 """
 
-STEP_SHARE = 0.1
+STEP_SHARE = 0.25
 """The share of the tolerance that one step may take, in units of the distance from the centre and of the speed."""
 
 FAR = 20.0

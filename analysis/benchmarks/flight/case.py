@@ -11,11 +11,14 @@ from tracer.engine.batches import Work, make_work
 from tracer.engine.launching import draw_launches
 from tracer.engine.scene import build_scene
 from tracer.kernels.launches import Launches
-from tracer.kernels.step_control import DEFAULT_TOLERANCE, FIRST_STEP, STEP_SHARE
+from tracer.kernels.step_control import DEFAULT_TOLERANCE
 
 Floats = NDArray[np.float64]
 
 SEED = 20310601
+STEP_SHARE, FIRST_STEP = 0.1, 1.5
+"""The share of the tolerance that a step of flight.c may take, and its first step in dynamical times."""
+
 HERE = Path(__file__).parent
 
 

@@ -21,11 +21,26 @@ from tracer.kernels.step_control import DEFAULT_TOLERANCE
 try:
     from heyoka_flights import TOLERANCE, heyoka_ends
 except ImportError:
-    heyoka_ends = None
+    heyoka_ends, TOLERANCE = None, np.nan
 
 COMPILER = "gcc -O3 -march=native -ffast-math"
 REFERENCE_TOLERANCE = 1e-12
 TALLIES = ("nothing", "density", "all")
+
+KERNEL_ALONE, KERNEL = "integrated kernel, counting nothing", "integrated kernel, counting all"
+ARCS = "arcs, gravity alone, counting all"
+SCIPY, HEYOKA = f"SciPy RK45, rtol {RELATIVE_TOLERANCE:.0e}", f"heyoka, tolerance {TOLERANCE:.0e}, no shadow"
+GOALS = (
+    (KERNEL, "C, counting density", 2.5),
+    (KERNEL, "C, counting all", 2.5),
+    (KERNEL, HEYOKA, 10.0),
+    (KERNEL, SCIPY, 800.0),
+    (ARCS, KERNEL, 5.0),
+)
+"""Whose flights per second over whose, and how many times as many are asked for."""
+
+MOST_ERROR = 1.1
+"""How much larger than those of C the kernel's landing errors may be, in median, 99 and 99.9 %."""
 
 
 class Result(NamedTuple):
@@ -72,16 +87,12 @@ def contestants(case: Case, program: Path, file: Path, few: int) -> dict[str, Ca
         f"C, counting {word}": lambda tally=tally: fly_c(program, file, tally, count)  # type: ignore[misc]
         for tally, word in enumerate(TALLIES)
     }
-    field["integrated kernel, counting nothing"] = lambda: min(kernel(), kernel(), key=lambda r: r.seconds)
-    field["integrated kernel, counting all"] = integrated
-    field["arcs, gravity alone, counting all"] = lambda: Result(traced(case.gravity, case.launches)[0], count)
-    field[f"SciPy RK45, rtol {RELATIVE_TOLERANCE:.0e}"] = lambda: Result(
-        *_part(scipy_ends(case, few // 10), few // 10)
-    )
+    field[KERNEL_ALONE] = lambda: min(kernel(), kernel(), key=lambda r: r.seconds)
+    field[KERNEL] = integrated
+    field[ARCS] = lambda: Result(traced(case.gravity, case.launches)[0], count)
+    field[SCIPY] = lambda: Result(*_part(scipy_ends(case, few // 10), few // 10))
     if heyoka_ends is not None:
-        field[f"heyoka, tolerance {TOLERANCE:.0e}, no shadow"] = lambda: Result(
-            *_part(heyoka_ends(case, few), few)
-        )
+        field[HEYOKA] = lambda: Result(*_part(heyoka_ends(case, few), few))
     return field
 
 
@@ -100,39 +111,42 @@ def race(field: dict[str, Callable[[], Result]], rounds: int) -> dict[str, Resul
     return best
 
 
-def landing_errors(ends: Floats, reference: Floats, radius: float) -> str:
-    """Return median, 99 % and 99.9 % of the distances between landing places [radii], and endings that differ."""
-    true = reference[: len(ends)]
-    both = (ends[:, 0] == LANDED) & (true[:, 0] == LANDED)
-    miss = np.linalg.norm(ends[both, 2:5] - true[both, 2:5], axis=1) / radius
-    differ = int(np.sum(ends[:, 0] != true[:, 0]))
-    return " ".join(f"{q:8.1e}" for q in np.quantile(miss, [0.5, 0.99, 0.999])) + f" {differ:6d}"
+def landing_errors(result: Result, reference: Floats, radius: float) -> tuple[Floats, int]:
+    """Return median, 99 % and 99.9 % of the distances between landing places [radii], and how many ends differ."""
+    true = reference[: len(result.ends)]
+    both = (result.ends[:, 0] == LANDED) & (true[:, 0] == LANDED)
+    miss = np.linalg.norm(result.ends[both, 2:5] - true[both, 2:5], axis=1) / radius
+    return np.quantile(miss, [0.5, 0.99, 0.999]), int(np.sum(result.ends[:, 0] != true[:, 0]))
 
 
 def report(case: Case, best: dict[str, Result], reference: Floats, own: Floats | None) -> bool:
-    """Print the table and return whether the integrated kernel is at least level with C."""
+    """Print the table and what is asked for, and return whether all of that is reached."""
     rates = {name: result.flights / result.seconds for name, result in best.items()}
-    likes = {"nothing": rates["C, counting nothing"], "all": rates["C, counting all"]}
     print(
         f"{'':40s} {'flights/s':>10s} {'C, nothing':>10s} {'C, density':>10s} {'C, all':>8s} {'steps':>6s}"
         f" {'trials':>6s} landing error [radii]: median, 99 %, 99.9 %; other ending"
     )
+    misses = {}
     for name, result in best.items():
         ratios = [rates[name] / rates[f"C, counting {word}"] for word in TALLIES]
-        truth = own if name.startswith("heyoka") else reference
-        errors = (
-            "" if result.ends is None else landing_errors(result.ends, truth, case.work.scene.body.radius)
-        )
+        errors = ""
+        if result.ends is not None:
+            truth = own if name.startswith("heyoka") else reference
+            misses[name], differ = landing_errors(result, truth, case.work.scene.body.radius)
+            errors = " ".join(f"{miss:8.1e}" for miss in misses[name]) + f" {differ:6d}"
         print(
             f"{name:40s} {rates[name]:10.0f} {ratios[0]:10.3f} {ratios[1]:10.3f} {ratios[2]:8.3f}"
             f" {result.steps / result.flights:6.2f} {result.trials / result.flights:6.2f} {errors}"
         )
-    quotients = {word: rates[f"integrated kernel, counting {word}"] / rate for word, rate in likes.items()}
-    steps = best["integrated kernel, counting nothing"].steps / best["C, counting nothing"].steps
-    print(f"steps of the kernel / steps of C: {steps:.4f}")
-    for word, quotient in quotients.items():
-        print(f"integrated kernel / C, both counting {word}: {quotient:.3f}")
-    return min(quotients.values()) >= 1.0 and abs(steps - 1.0) < 0.1
+    reached = []
+    for name, other, asked in GOALS:
+        if other in rates:
+            ratio = rates[name] / rates[other]
+            print(f"{name} / {other}: {ratio:.2f} (asked: {asked:g})")
+            reached.append(ratio >= asked)
+    worse = np.max(misses[KERNEL_ALONE] / misses["C, counting nothing"])
+    print(f"landing errors of the kernel / those of C: at most {worse:.2f} (asked: {MOST_ERROR})")
+    return all(reached) and worse <= MOST_ERROR
 
 
 def describe() -> None:
@@ -149,7 +163,7 @@ def _output(command: str) -> str:
 
 
 def main() -> int:
-    """Race, report and return 0 where the integrated kernel is at least level with C."""
+    """Race, report and return 0 where all that is asked for is reached."""
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("--launches", type=int, default=20_000)
     parser.add_argument("--rounds", type=int, default=10)
@@ -166,11 +180,11 @@ def main() -> int:
         field = contestants(case, compile_c(Path(folder)), file, few)
         race(field, 1)
         best = race(field, options.rounds)
-    level = report(case, best, reference, own)
+    fine = report(case, best, reference, own)
     if heyoka_ends is None:
         print("heyoka is not installed: pip install 'exosphere-tracer[bench]'")
-    print("holds" if level else "FAILS")
-    return 0 if level else 1
+    print("holds" if fine else "FAILS")
+    return 0 if fine else 1
 
 
 if __name__ == "__main__":
