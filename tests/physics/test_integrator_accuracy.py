@@ -157,5 +157,5 @@ def test_default_tolerance_places_landings_within_a_millionth_of_the_radius(temp
         if ending == LANDED:
             misses.append(np.linalg.norm(place - true_place) / MERCURY.radius)
     assert np.median(misses) < 1e-6
-    # Three in 100,000 circle between push and pull for hours and amplify any error: a thousandth is let off.
+    # Nine in 100,000 circle between push and pull for hours and amplify any error: a thousandth is let off.
     assert np.quantile(misses, 0.999) < 1e-3

@@ -9,7 +9,7 @@ from tracer.kernels.compiling import inlined, kernel, merged
 DEFAULT_TOLERANCE = 1e-6
 """Aimed error of a landing place in radii: half of all lie within it, and all within a thousandfold.
 
-Save some 3 in 100,000, temporary satellites between push and pull, that no step size makes predictable.
+Save some 9 in 100,000, temporary satellites between push and pull, a quarter of which no step size makes predictable.
 """
 
 STEP_SHARE = 0.25
