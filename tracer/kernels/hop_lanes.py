@@ -78,9 +78,9 @@ def launch_on_arc(lanes, lane, frame_rate, time_limit, atom):
 
 @kernel
 def fly_hops(lanes, motion):
-    """End the flights of all lanes that fly closed hops, count them in the lanes' sums and make their samples ready.
+    """Land all lanes that fly closed hops, count them in the lanes' sums and make their samples ready.
 
-    Other lanes have no samples, and fly on if they did.
+    Other lanes get no samples; what flies in them is still to be flown.
     """
     for lane in range(WIDTH):
         _land(lanes, lane, motion)
@@ -115,7 +115,7 @@ def _land(lanes, lane, motion):
 
 @inlined
 def _prepare_samples(lanes, lane, arc, hop, hops, alive):
-    """Set the rows `HOP`: samples stand in even steps of w s from one random start, each even in its stratum."""
+    """Set the rows `HOP`: samples stand in even steps of w s from one start, each even in its stratum."""
     _t, w, per_beta, angle, _g1, _g2 = hop
     samples = LEAST_SAMPLES + np.floor(SAMPLES_PER_ANGLE * angle)
     step = angle / samples

@@ -11,6 +11,7 @@ import pytest
 from tracer.engine.batches import make_work
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
+from tracer.kernels import hop_lanes
 from tracer.kernels import lanes as row
 from tracer.kernels.arc import landing, make_arc, state_at
 from tracer.kernels.arc_flight import LEAST_BINDING, arc_end, arc_state, closed_hop, launch_arc
@@ -192,15 +193,22 @@ def test_samples_of_a_hop_hold_its_duration(small_run_file, share):
 
 
 @pytest.mark.skipif(not (FEATURES.get("avx2") and FEATURES.get("fma")), reason="needs x86 with AVX2")
-def test_hops_and_their_samples_are_vector_operations():
-    for function, arguments, (roots, divisions, fused) in (
-        (fly_hops, (new_lanes(), motion()), (4, 7, 25)),
-        (sample_hops, (new_lanes(), motion(), grid(), False), (0, 2, 8)),
-    ):
-        # Machine code that comes from the cache can't be read.
-        compiled = numba.njit(**OPTIONS, _nrt=False)(function.py_func)
-        compiled(*arguments)
-        text = next(iter(compiled.inspect_asm().values()))
-        assert len(re.findall(r"vsqrtpd\s.*ymm", text)) >= roots
-        assert len(re.findall(r"vdivpd\s.*ymm", text)) >= divisions
-        assert len(re.findall(r"vfn?m(?:add|sub)\d+pd\s.*ymm", text)) >= fused
+@pytest.mark.parametrize(
+    ("function", "arguments", "roots", "divisions", "fused"),
+    [
+        (fly_hops, (motion(),), 4, 7, 25),
+        (hop_lanes._turn_ends, (1e-5,), 0, 0, 18),
+        (sample_hops, (motion(), grid(), False), 0, 2, 8),
+        (hop_lanes._set_velocities, (GM,), 0, 2, 3),
+        (hop_lanes._decay, (1e-5,), 0, 0, 14),
+        (hop_lanes._turn_samples, (1e-5, True), 0, 0, 36),
+    ],
+)
+def test_hops_and_their_samples_are_vector_operations(function, arguments, roots, divisions, fused):
+    # Machine code that comes from the cache can't be read.
+    compiled = numba.njit(**OPTIONS, _nrt=False)(function.py_func)
+    compiled(new_lanes(), *arguments)
+    text = next(iter(compiled.inspect_asm().values()))
+    assert len(re.findall(r"vsqrtpd\s.*ymm", text)) >= roots
+    assert len(re.findall(r"vdivpd\s.*ymm", text)) >= divisions
+    assert len(re.findall(r"vfn?m(?:add|sub)\d+pd\s.*ymm", text)) >= fused
