@@ -158,15 +158,13 @@ class _Slices:
 
 
 def _followed(resume: Resume, scene: Scene) -> float:
-    """Return the atoms followed so far: those that have ended, and of one under way the share of its longest life.
+    """Return the atoms followed so far: those that have ended, and of each under way the share of its longest life.
 
     About a moving body an atom flies several times, and no share is counted.
     """
     if scene.event_window is not None:
         return float(resume.counters[ENDED])
-    ages = (
-        resume.atom[UNDER_WAY] * resume.atom[AGE] + (resume.atoms[:, UNDER_WAY] * resume.atoms[:, AGE]).sum()
-    )
+    ages = (resume.atoms[:, UNDER_WAY] * resume.atoms[:, AGE]).sum()
     return float(resume.counters[ENDED] + ages / scene.age_limit)
 
 

@@ -27,6 +27,11 @@ def set_lane_bits(lanes, index, whole):
     lanes[index : index + 1].view("int64")[0] = whole
 
 
+def lane_bits(lanes, index):
+    """Return the bits of `lanes[index]` as a whole number; `index` >= 0."""
+    return lanes[index : index + 1].view("int64")[0]
+
+
 def promise(access, own, other):
     """Mark a load or store as one to `own`, which doesn't overlap `other`."""
     module = access.module
@@ -56,6 +61,16 @@ def _load_lane(typing_context, lanes, index):
     return types.float64(lanes, types.intp), generate
 
 
+@intrinsic
+def _load_bits(typing_context, lanes, index):
+    def generate(context, builder, signature, arguments):
+        place = pointer_to(context, builder, signature.args[0], *arguments)
+        whole = builder.load(builder.bitcast(place, ir.IntType(64).as_pointer()))
+        return promise(whole, LANES, TABLES)
+
+    return types.int64(lanes, types.intp), generate
+
+
 def _store(context, builder, signature, arguments):
     array, at, number = arguments
     place = pointer_to(context, builder, signature.args[0], array, at)
@@ -76,6 +91,11 @@ def _store_bits(typing_context, lanes, index, whole):
 @overload(lane_value)
 def _compiled_lane_value(lanes, index):
     return lambda lanes, index: _load_lane(lanes, index)
+
+
+@overload(lane_bits)
+def _compiled_lane_bits(lanes, index):
+    return lambda lanes, index: _load_bits(lanes, index)
 
 
 @overload(set_lane_value)

@@ -3,7 +3,7 @@
 import math
 from typing import NamedTuple
 
-from tracer.kernels.compiling import kernel
+from tracer.kernels.compiling import inlined, kernel
 from tracer.kernels.universal import anomaly_from_half_tangent, g_functions
 
 
@@ -23,7 +23,7 @@ class Arc(NamedTuple):
     zeta: float
 
 
-@kernel
+@inlined
 def make_arc(gm, x, y, z, vx, vy, vz):
     """Return the `Arc` through position (x, y, z) with velocity (vx, vy, vz), both in a frame that does not turn."""
     r0 = math.sqrt(x * x + y * y + z * z)

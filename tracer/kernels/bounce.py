@@ -31,6 +31,13 @@ def sticking_at(surface, nx, ny, nz):
     return sticking_probability(surface.sticking, temperature(surface.temperature, nx, ny, nz))
 
 
+@inlined
+def sticks(surface, nx, ny, nz, rng):
+    """Return True where an atom that lands at unit vector (nx, ny, nz) is adsorbed; what is certain draws no number."""
+    chance = sticking_at(surface, nx, ny, nz)
+    return chance > 0.0 and (chance >= 1.0 or rng.random() < chance)
+
+
 @kernel
 def thermal_speed_squared(rng, speed_squared_per_kelvin, kelvin):
     """Draw v^2 [m2 s-2] of a flux-weighted Maxwellian: pdf(v) ~ v^3 exp(-m v^2/2kT), so v^2 = -(2kT/m) ln(u1 u2)."""

@@ -65,37 +65,53 @@ def turn(x, y):
     """Return a number from 0 to 4 that grows with local time, 0 at midnight, 1 at dawn, 2 at noon, 3 at dusk."""
     whole = abs(x) + abs(y)
     # On the axis it is noon.
-    part = y / whole if whole > 0.0 else 0.0
-    if x >= 0.0:
-        return 2.0 + part
-    return 4.0 - part if y > 0.0 else -part
+    part = y / (whole if whole > 0.0 else 1.0)
+    night = 4.0 - part if y > 0.0 else -part
+    return 2.0 + part if x >= 0.0 else night
+
+
+@inlined
+def row_place(tables, sine):
+    """Return where among the `rows` the one of sin(latitude) = `sine` stands, with fractions; perhaps outside."""
+    return (sine + 1.0) * (0.5 * (tables.rows.shape[0] - 1))
+
+
+@inlined
+def column_place(tables, turned):
+    """Return where among the `columns` the one of `turned`, what `turn` gives, stands; with fractions."""
+    return turned * (0.25 * (tables.columns.shape[0] - 1))
+
+
+@inlined
+def layer_ratio(altitude, first_altitude):
+    """Return the `altitude` in units of the first edge, at least 1."""
+    # The product may round into the entry above: `make_tables` leaves room for that.
+    return max(1.0, altitude * (1.0 / first_altitude))
 
 
 @inlined
 def row_of(tables, sine):
     """Return the row of sin(latitude) = `sine`, from the south pole."""
-    last = tables.rows.shape[0] - 1
-    row = int(tables.rows[_entry((sine + 1.0) * (0.5 * last), last)])
-    while sine >= tables.sines[row + 1]:
-        row += 1
-    return row
+    return row_from(tables, _entry(tables.rows, int(row_place(tables, sine))), sine)
+
+
+@inlined
+def row_from(tables, entry, sine):
+    """Return the row of sin(latitude) = `sine` by the `entry` of `rows` at its place."""
+    return _last_below(tables.sines, tables.rows[entry], sine)
 
 
 @inlined
 def column_of(tables, x, y):
     """Return the column of a place at (x, y) in the Sun-fixed frame, from midnight."""
     turned = turn(x, y)
-    last = tables.columns.shape[0] - 1
-    column = int(tables.columns[_entry(turned * (0.25 * last), last)])
-    while turned >= tables.turns[column + 1]:
-        column += 1
-    return column
+    return column_from(tables, _entry(tables.columns, int(column_place(tables, turned))), turned)
 
 
 @inlined
-def _entry(place, last):
-    """Return the entry of `place`; what is not a number has one as well, not one outside the table."""
-    return min(last, max(0, int(place)))
+def column_from(tables, entry, turned):
+    """Return the column of a place by what `turn` gives for it, and by the `entry` of `columns` there."""
+    return _last_below(tables.turns, tables.columns[entry], turned)
 
 
 @inlined
@@ -103,13 +119,37 @@ def layer_of(tables, radii, first_altitude, r):
     """Return the layer of distance `r` [m] from the centre between edges `radii`, -1 above the last."""
     if r >= radii[radii.shape[0] - 1]:
         return -1
-    altitude = r - radii[0]
-    if altitude < first_altitude:
-        return 0
-    # The product may round into the entry above: `make_tables` leaves room for that.
-    bits = np.float64(altitude * (1.0 / first_altitude)).view(np.int64)
-    entry = (bits >> (MANTISSA - LOG_DIGITS)) - (ONE << LOG_DIGITS)
-    layer = int(tables.layers[min(entry, tables.layers.shape[0] - 1)])
-    while r >= radii[layer + 1]:
-        layer += 1
-    return layer
+    entry = _entry(tables.layers, layer_entry(layer_ratio(r - radii[0], first_altitude)))
+    return np.int64(layer_from(tables, radii, entry, r))
+
+
+@inlined
+def layer_entry(ratio):
+    """Return the entry of `layers` for what `layer_ratio` gives."""
+    return (np.float64(ratio).view(np.int64) >> (MANTISSA - LOG_DIGITS)) - (ONE << LOG_DIGITS)
+
+
+@inlined
+def layer_from(tables, radii, entry, r):
+    """Return the layer of distance `r` [m], which is below the top, by the `entry` of `layers`."""
+    return _last_below(radii, tables.layers[entry], r)
+
+
+@inlined
+def _last_below(edges, guess, value):
+    """Return the last cell from `guess` on whose lower edge isn't above `value`.
+
+    The first step is no branch: which of two cells it is nobody can guess, and a third one is seldom met.
+    """
+    # Numbers without a sign spare numba the look whether an index counts from the end.
+    cell, one = np.uint64(guess), np.uint64(1)
+    cell += one if value >= edges[cell + one] else np.uint64(0)
+    while value >= edges[cell + one]:
+        cell += one
+    return cell
+
+
+@inlined
+def _entry(table, place):
+    """Return the entry at `place`; what is not a number has one as well, not one outside the table."""
+    return np.uint64(min(table.shape[0] - 1, max(0, place)))

@@ -8,7 +8,7 @@ from numba.extending import overload
 from tracer.fate import Fate
 from tracer.kernels.adsorption import desorbed, spread_along, stay
 from tracer.kernels.arc_flight import turned
-from tracer.kernels.bounce import rebound, sticking_at
+from tracer.kernels.bounce import rebound, sticks
 from tracer.kernels.compiling import INLINED, field_type, inlined, merged
 from tracer.kernels.endings import AGED, CROSSED, DROPPED, LANDED, STRUCK
 from tracer.kernels.resume import AGE, CLOCK, HOME_COLUMN, HOME_ROW, SURVIVAL, UNDER_WAY, WEIGHT
@@ -91,12 +91,12 @@ def _launch(radius, spin, atom, nx, ny, nz, vx, vy, vz):
 
 @merged
 def _land(world, atom, tally, alive, x, y, z, vx, vy, vz, rng):
-    r = math.sqrt(x * x + y * y + z * z)
-    nx, ny, nz = x / r, y / r, z / r
+    per_r = 1.0 / math.sqrt(x * x + y * y + z * z)
+    nx, ny, nz = x * per_r, y * per_r, z * per_r
     row, column = ground_cell(world.cells, nx, ny, nz, 1.0)
     tally.returned[row, column] += alive
     kept = world.traps.where != NOWHERE and trapped(world.traps, nx, ny, nz, rng)
-    adsorbed = not kept and rng.random() < sticking_at(world.surface, nx, ny, nz)
+    adsorbed = not kept and sticks(world.surface, nx, ny, nz, rng)
     if kept or (adsorbed and not world.adsorption.desorbs):
         tally.captured[row, column] += alive
         tally.ledger[Fate.CAPTURED] += alive

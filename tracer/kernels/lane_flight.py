@@ -4,6 +4,7 @@ import math
 
 from tracer.kernels import integrated_flight as one
 from tracer.kernels import lanes as row
+from tracer.kernels.apart import lane_value
 from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.crossing import (
     ANTUMBRA_EDGE,
@@ -59,13 +60,16 @@ def launch_in_lane(lanes, lane, conditions, tolerance, clock, time_limit, place)
 
 
 @inlined
-def end_in_lane(lanes, lane):
-    """Return (ending, survival, time [s], position, velocity) of a flight, as `ground.come_down` takes it."""
+def end_in_lane(lanes, lane, state):
+    """Return (ending, survival, time [s], position, velocity) of a flight, as `ground.come_down` takes it.
+
+    Its last state is that from row `state` on.
+    """
     return (
-        int(lanes[row.STANDING + lane]),
-        lanes[row.KEPT + lane],
-        lanes[row.TIME + lane],
-        *lane_place(lanes, row.START, lane),
+        int(lane_value(lanes, row.STANDING + lane)),
+        lane_value(lanes, row.KEPT + lane),
+        lane_value(lanes, row.TIME + lane),
+        *lane_place(lanes, state, lane),
     )
 
 

@@ -274,10 +274,16 @@ def _draw_on(lanes, lane):
     One random number a flight, for each further step moved on by the golden ratio: even for each step, as it must be
     for unbiased sums, and spread more evenly over the steps of a flight than numbers drawn for each.
     """
-    drawn = lane_value(lanes, DRAWN + lane) + GOLDEN
-    drawn = drawn - 1.0 if drawn >= 1.0 else drawn
+    drawn = lane_value(lanes, DRAWN + lane)
     accepted = lane_value(lanes, ACCEPTED + lane) > 0.0
-    set_lane_value(lanes, DRAWN + lane, drawn if accepted else lane_value(lanes, DRAWN + lane))
+    set_lane_value(lanes, DRAWN + lane, golden_step(drawn) if accepted else drawn)
+
+
+@inlined
+def golden_step(drawn):
+    """Return the fractional part of `drawn`, from 0 to 1, and the golden ratio's part."""
+    moved = drawn + GOLDEN
+    return moved - 1.0 if moved >= 1.0 else moved
 
 
 @inlined

@@ -28,7 +28,7 @@ from tracer.kernels.lanes import (
 )
 from tracer.kernels.lines import beyond_tables, line_value
 from tracer.kernels.motion import radial_velocity
-from tracer.kernels.scoring import count_in_cell, count_in_images, score_in_light
+from tracer.kernels.scoring import count_in_cell, count_in_images, scaled_to_ground, score_in_light
 from tracer.kernels.shadow import PENUMBRA, lit_fraction, zone_at
 
 
@@ -56,8 +56,9 @@ def score_lanes(world, tally, lanes, shine):
         layer = int(lanes[CELL + lane])
         if layer >= 0:
             row, column = int(lanes[CELL + Y + lane]), int(lanes[CELL + Z + lane])
-            r = lanes[SAMPLE_R + lane]
-            count_in_cell(tally, cells, layer, row, column, r, content, received * sky.losses.ionizing, shine)
+            at_ground = scaled_to_ground(cells.radius, lanes[SAMPLE_R + lane], content)
+            ionizing = received * sky.losses.ionizing
+            count_in_cell(tally, layer, row, column, content, at_ground, ionizing, shine)
         if world.images.first.shape[0] > 0:
             at = SAMPLE_VELOCITY + lane
             velocity = (lanes[at], lanes[at + Y], lanes[at + Z])

@@ -236,9 +236,10 @@ def prepare_apart(lanes, sky, tables):
 @inlined
 def lane_place(lanes, row, lane):
     """Return (x, y, z, vx, vy, vz) of the state whose x is at `row`."""
-    x, y, z = lanes[row + lane], lanes[row + Y + lane], lanes[row + Z + lane]
-    at = row + VELOCITY + lane
-    return x, y, z, lanes[at], lanes[at + Y], lanes[at + Z]
+    at = row + lane
+    x, y, z = lane_value(lanes, at), lane_value(lanes, at + Y), lane_value(lanes, at + Z)
+    at += VELOCITY
+    return x, y, z, lane_value(lanes, at), lane_value(lanes, at + Y), lane_value(lanes, at + Z)
 
 
 @kernel

@@ -26,6 +26,8 @@ STAGE_ACCELERATION, STAGE_LIGHT, STAGE_OTHER = (rows * WIDTH for rows in (3, 6, 
 
 STAGE_ROWS = 8
 
+HOP_ROWS = 17
+
 MOST_GRIDS = 2
 """Tables of pushing lines that all lanes look up at once; the push of further ones is added lane by lane."""
 
@@ -119,6 +121,8 @@ _ROWS = (
     # Where there is a host: how the step lies in its shadow, and the longest step [s] beside it.
     ("SHADE", 1),
     ("HOST_STEP", 1),
+    # A closed hop and its samples, see `hop_lanes`.
+    ("HOP", HOP_ROWS),
 )
 _FIRST = dict(
     zip(
@@ -192,9 +196,13 @@ SERIES = _FIRST["SERIES"]
 SAMPLE_VELOCITY = _FIRST["SAMPLE_VELOCITY"]
 SHADE = _FIRST["SHADE"]
 HOST_STEP = _FIRST["HOST_STEP"]
+HOP = _FIRST["HOP"]
 
 VACANT = -2.0
 """Standing of a lane without a flight."""
+
+UNDRAWN = -1.0
+"""In row DRAWN before a lane's first flight."""
 
 
 def new_lanes() -> np.ndarray:
@@ -203,6 +211,7 @@ def new_lanes() -> np.ndarray:
     lanes[STANDING : STANDING + WIDTH] = VACANT
     pushes = [LINE_PUSH + line * WIDTH for line in range(MOST_GRIDS)]
     others = [GROWTH + STAGE_OTHER, QUARTIC + STAGE_OTHER, OTHER_ERROR]
+    lanes[DRAWN : DRAWN + WIDTH] = UNDRAWN
     for first in [EXTRA, *pushes, *others, SUM_LIFE, SUM_LOST, SUM_IONIZED, SUM_STEPS]:
         lanes[first : first + WIDTH] = 0.0
     return lanes

@@ -51,12 +51,11 @@ ATOM_SIZE = 22
 class Resume(NamedTuple):
     """What a slice leaves for the next, and room to work in.
 
-    `counters` int64 (COUNTERS,); `atom` (ATOM_SIZE,) flies on arcs, `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `curve`
-    serves a step that is looked at closely, `shine` (line,) a sample.
+    `counters` int64 (COUNTERS,); `atoms` (WIDTH, ATOM_SIZE) fly in `lanes`; `curve` serves a step that is looked at
+    closely, `shine` (line,) a sample.
     """
 
     counters: np.ndarray
-    atom: np.ndarray
     atoms: np.ndarray
     lanes: np.ndarray
     curve: np.ndarray
@@ -75,7 +74,6 @@ def new_resume(lines: int) -> Resume:
     """Return the start of a batch of atoms with `lines` emission lines."""
     return Resume(
         _with_margins(np.zeros(COUNTERS, np.int64)),
-        _with_margins(np.zeros(ATOM_SIZE)),
         _with_margins(np.zeros(WIDTH * ATOM_SIZE)).reshape(WIDTH, ATOM_SIZE),
         _with_margins(new_lanes()),
         _with_margins(new_curve()),

@@ -90,7 +90,8 @@ def score_sample(tally, cells, images, x, y, z, r, velocity, content, ionizing, 
     layer = altitude_cell(cells, r)
     if layer >= 0:
         row, column = ground_cell(cells, x, y, z, r)
-        count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine)
+        at_ground = scaled_to_ground(cells.radius, r, content)
+        count_in_cell(tally, layer, row, column, content, at_ground, ionizing, shine)
     count_in_images(tally, images, cells.radius, x, y, z, velocity, content, shine)
 
 
@@ -110,12 +111,18 @@ def score_in_light(world, tally, x, y, z, velocity, content, received, receding,
     score_sample(tally, world.cells, world.images, x, y, z, r, velocity, content, ionizing, shine)
 
 
+@inlined
+def scaled_to_ground(radius, r, content):
+    """Return `content` at distance `r` [m] times (R/r)^2, as it counts above ground at `radius` R [m]."""
+    shrink = radius / r
+    return content * shrink * shrink
+
+
 @merged
-def count_in_cell(tally, cells, layer, row, column, r, content, ionizing, shine):
-    """Count `content` atoms at distance `r` [m] in a cell of the grid and in the column that it belongs to."""
+def count_in_cell(tally, layer, row, column, content, at_ground, ionizing, shine):
+    """Count `content` atoms in a cell of the grid, and `at_ground` of `scaled_to_ground` in its column."""
     tally.gas[layer, row, column, 0] += content
-    shrink = cells.radius / r
-    tally.column_content[row, column] += content * shrink * shrink
+    tally.column_content[row, column] += at_ground
     if ionizing > 0.0:
         tally.ionized[layer, row, column] += content * ionizing
     for line in range(shine.shape[0]):

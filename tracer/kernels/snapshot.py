@@ -257,7 +257,7 @@ def _density_of_ages(ends, age):
 @merged
 def _end_flight(world, resume, tally, cohort, events, scrap, lane, rng):
     atom, lanes = resume.atoms[lane], resume.lanes
-    end = end_in_lane(lanes, lane)
+    end = end_in_lane(lanes, lane, START)
     alive, role = lanes[ALIVE + lane], atom[ROLE]
     book = cohort if role == COHORT else scrap
     if role == VISIT:

@@ -3,23 +3,28 @@
 import numpy as np
 
 from tracer.fate import Fate
-from tracer.kernels.arc_flight import fly_arc
+from tracer.kernels.apart import lane_value, set_lane_value
+from tracer.kernels.arc_lanes import fly_arcs
 from tracer.kernels.compiling import kernel, merged
 from tracer.kernels.endings import DROPPED, FLYING
 from tracer.kernels.ground import come_down, release, take_off
+from tracer.kernels.hop_lanes import launch_on_arc
 from tracer.kernels.lane_flight import end_in_lane, launch_in_lane, step_lanes
 from tracer.kernels.lane_sample import go_on, sample_steps
 from tracer.kernels.lane_scoring import score_further, score_lanes
 from tracer.kernels.lanes import (
     ALIVE,
     DRAWN,
+    END,
     KEPT,
     LEAST,
     STANDING,
+    START,
     SUM_IONIZED,
     SUM_LIFE,
     SUM_LOST,
     SUM_STEPS,
+    UNDRAWN,
     VACANT,
     WIDTH,
 )
@@ -76,7 +81,7 @@ def trace_integrated(world, launches, resume, tally, rng, most_flights):
                 if flights == most_flights:
                     _count_steps(resume)
                     return flights
-                _end_flight(world, resume, tally, lane, rng)
+                _end_flight(world, resume, tally, lane, START, rng)
                 flights += 1
             _begin_flight(world, launches, resume, tally, lane, rng)
         resume.counters[CURSOR] = 0
@@ -127,15 +132,24 @@ def _survives_roulette(world, tally, lanes, lane, rng):
 
 
 @merged
+def _has_atom(world, launches, resume, tally, lane):
+    """Return whether the lane's atom is under way, or a new one that is now; else the lane is vacant."""
+    if resume.atoms[lane, UNDER_WAY] != 0.0:
+        return True
+    if resume.counters[RELEASED] == launches.weights.shape[0]:
+        resume.lanes[STANDING + lane] = VACANT
+        return False
+    release(world, launches, resume.counters[RELEASED], resume.atoms[lane], tally)
+    resume.counters[RELEASED] += 1
+    return True
+
+
+@merged
 def _begin_flight(world, launches, resume, tally, lane, rng):
     """Launch the lane's atom again, or a new one, or leave the lane vacant if there are no more."""
     atom, lanes = resume.atoms[lane], resume.lanes
-    if atom[UNDER_WAY] == 0.0:
-        if resume.counters[RELEASED] == launches.weights.shape[0]:
-            lanes[STANDING + lane] = VACANT
-            return
-        release(world, launches, resume.counters[RELEASED], atom, tally)
-        resume.counters[RELEASED] += 1
+    if not _has_atom(world, launches, resume, tally, lane):
+        return
     lanes[ALIVE + lane] = take_off(atom, tally)
     lanes[DRAWN + lane] = rng.random()
     lanes[LEAST + lane] = world.roulette.aloft / atom[SURVIVAL]
@@ -152,36 +166,46 @@ def _begin_flight(world, launches, resume, tally, lane, rng):
 
 
 @merged
-def _end_flight(world, resume, tally, lane, rng):
+def _end_flight(world, resume, tally, lane, state, rng):
+    """Enter the end of a lane's flight, whose last state begins at row `state`."""
     lanes = resume.lanes
     atom = resume.atoms[lane]
-    come_down(world, atom, tally, lanes[ALIVE + lane], end_in_lane(lanes, lane), rng)
+    come_down(world, atom, tally, lane_value(lanes, ALIVE + lane), end_in_lane(lanes, lane, state), rng)
     if atom[UNDER_WAY] == 0.0:
         resume.counters[ENDED] += 1
 
 
 @kernel
 def trace_arcs(world, launches, resume, tally, rng, most_flights):
-    """Do what `trace_slice` says with flights on closed-form arcs."""
+    """Do what `trace_slice` says with flights on closed-form arcs.
+
+    The flights of all lanes go side by side from launch to end, then the next ones; a slice may stop amid their ends.
+    """
     flights = 0
+    lanes = resume.lanes
     while flights < most_flights and resume.counters[ENDED] < launches.weights.shape[0]:
-        _begin(world, launches, resume, tally)
-        alive = take_off(resume.atom, tally)
-        end = fly_arc(world, tally, resume.atom, alive, resume.shine, rng)
-        _finish(world, resume, tally, alive, end, rng)
-        flights += 1
+        for lane in range(resume.counters[CURSOR], WIDTH):
+            resume.counters[CURSOR] = lane
+            if lane_value(lanes, STANDING + lane) != VACANT:
+                if flights == most_flights:
+                    return flights
+                _end_flight(world, resume, tally, lane, END, rng)
+                flights += 1
+            _begin_arc(world, launches, resume, tally, lane, rng)
+        resume.counters[CURSOR] = 0
+        fly_arcs(world, tally, lanes, resume.shine, rng)
+    if resume.counters[ENDED] == launches.weights.shape[0]:
+        _close_books(resume, tally)
     return flights
 
 
 @merged
-def _begin(world, launches, resume, tally):
-    if resume.atom[UNDER_WAY] == 0.0:
-        release(world, launches, resume.counters[RELEASED], resume.atom, tally)
-        resume.counters[RELEASED] += 1
-
-
-@merged
-def _finish(world, resume, tally, alive, end, rng):
-    come_down(world, resume.atom, tally, alive, end, rng)
-    if resume.atom[UNDER_WAY] == 0.0:
-        resume.counters[ENDED] += 1
+def _begin_arc(world, launches, resume, tally, lane, rng):
+    """Do what `_begin_flight` does for a flight on an arc."""
+    atom, lanes = resume.atoms[lane], resume.lanes
+    if not _has_atom(world, launches, resume, tally, lane):
+        return
+    set_lane_value(lanes, ALIVE + lane, take_off(atom, tally))
+    if lane_value(lanes, DRAWN + lane) == UNDRAWN:
+        set_lane_value(lanes, DRAWN + lane, rng.random())
+    launch_on_arc(lanes, lane, world.motion.frame_rate, world.motion.age_limit - atom[AGE], atom)

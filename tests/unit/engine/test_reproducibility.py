@@ -93,7 +93,7 @@ def _sliced(spec, budget: int) -> tuple[np.ndarray, int, int]:
         made = trace_slice(work.world, launches, resume, tally, rng, budget)
         assert 0 < made <= budget
         flights += made
-        stops_aloft += int(resume.atom[UNDER_WAY])
+        stops_aloft += int(resume.atoms[:, UNDER_WAY].any())
     return buffer, flights, stops_aloft
 
 
