@@ -29,7 +29,7 @@ from tracer.physics.release.speed.table import Table
 from tracer.physics.release.strata import Strata, draw, one_stratum
 
 RUN_FILE = Path(__file__).parents[3] / "runs" / "moon-sodium-gravity.toml"
-REPEATS = 40
+REPEATS = 20
 PARTICLES = 400_000
 """A batch of about a second."""
 ELECTRONVOLT = 1.602176634e-19
