@@ -14,9 +14,13 @@ from tracer.engine.runspec.load import parse_run
 from tracer.engine.scene import build_scene
 from tracer.engine.tracing import run
 from tracer.kernels.integrated_flight import fly, new_curve, new_flight, start_flight
+from tracer.kernels.surface_map import SurfaceMap
 from tracer.observe.gas import gas_of
 from tracer.observe.integration import integrals_along
 from tracer.observe.sights import Sights
+from tracer.physics.release.even_numbers import PLACE, SPEED, TURN, EvenNumbers
+from tracer.physics.release.place.flux_map import flux_map
+from tracer.physics.release.speed.table import Table
 
 
 def compiled(text: str) -> Work:
@@ -39,8 +43,17 @@ def warm_still() -> None:
     integrals_along(gas_of(run(parse_run(SMALL_RUN, "run file"), workers=1)), looks)
 
 
+def warm_laws() -> None:
+    """Compile what launches of the small runs don't call: tables, maps, points of any number."""
+    u = EvenNumbers(np.random.default_rng(1)).points(np.arange(2))
+    Table(np.array([0.0, 1.0]), np.ones(2)).speeds(u[:, SPEED], np.full(2, np.nan), 1.0)
+    everywhere = SurfaceMap(np.array([-45.0, 45.0]), np.array([6.0, 18.0]), np.ones((2, 2)))
+    flux_map(everywhere).places(u[:, PLACE : TURN + 1])
+
+
 def warm_arcs_and_moving() -> None:
-    """Compile flights on arcs and about bodies that move, alone and beside a host."""
+    """Compile further laws, flights on arcs and about bodies that move, alone and beside a host."""
+    warm_laws()
     for text in (SMALL_RUN, MOVING_RUN, MOVING_HOST_RUN):
         compiled(text)
 

@@ -117,8 +117,9 @@ def trace_batch(
     strata = work.strata[task.release] if work.strata else one_stratum(work.particles)
     slices = _Slices(work.scene, tell, stopped)
     for first in range(0, work.particles, BLOCK):
-        u, shares = draw(strata, supply, first, min(BLOCK, work.particles - first))
-        slices.fly(world, make_launches(work.scene, release, u, release.rate * shares), tally, rng)
+        u, weights = draw(strata, supply, first, min(BLOCK, work.particles - first))
+        weights *= release.rate
+        slices.fly(world, make_launches(work.scene, release, u, weights), tally, rng)
     if work.responses is not None:
         seed = (work.seed, task.release, task.batch)
         trace_responses(work.scene, work.responses, work.layout, buffer, seed, slices.fly)
@@ -177,6 +178,8 @@ def next_budget(budget: int, spent: float) -> int:
 def compile_kernels(work: Work) -> None:
     """Compile or load what `trace_batch` calls, without flying an atom, so that workers start together."""
     rng = np.random.default_rng(0)
-    launches = draw_launches(work.scene, work.scene.releases[0], 1, rng, 1.0)
+    # Each law has kernels of its own.
+    for release in work.scene.releases:
+        launches = draw_launches(work.scene, release, 1, rng, 1.0)
     tally = tally_views(work.layout, np.zeros(work.layout.size))
     trace_slice(work.world, launches, new_resume(len(work.scene.lines)), tally, rng, 0)

@@ -23,7 +23,7 @@ def draw_launches(
 
 def make_launches(scene: Scene, release: Release, u: Floats, weights: Floats) -> Launches:
     """Return the launches of `release` that even numbers `u` (n, 5) make, with `weights` (n,) [s-1]."""
-    positions = np.ascontiguousarray(release.place.places(u[:, [PLACE, TURN]]))
+    positions = release.place.places(u[:, PLACE : TURN + 1])
     law = scene.surface_temperature
     kelvin = np.full(len(u), np.nan) if law is None else temperatures(law, positions)
     speeds = release.speed.speeds(u[:, SPEED], kelvin, scene.mass)

@@ -112,9 +112,10 @@ def trace_responses(
     assert found is not None
     own = tally_views(layout, buffer)
     rest = np.zeros(work.layout.size)
+    ends = np.cumsum(strata.counts)
     for first in range(0, work.launches, BLOCK):
         count = min(BLOCK, work.launches - first)
-        place = np.repeat(np.arange(len(strata.counts)), strata.counts)[first : first + count]
+        place = np.searchsorted(ends, np.arange(first, first + count), side="right")
         at, half = np.divmod(place, 2)
         u, shares = draw(strata, supply, first, count)
         law = Ramp(work.edges[at], work.edges[at + 1], half == 1)

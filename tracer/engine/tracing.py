@@ -20,6 +20,7 @@ from tracer.engine.runspec.run import RunSpec
 from tracer.engine.scene import build_scene
 from tracer.engine.tasks import BatchRange
 from tracer.errors import InputError
+from tracer.tally.statistics import compile_folding
 
 
 def run(
@@ -76,6 +77,7 @@ def run(
     refuse_what_does_not_fit(plan, workers)
     plan = plan._replace(work=with_emphasis(plan.work))
     compile_kernels(plan.work)
+    compile_folding()
     prepare(plan.work)
     folder = plan.new_folder()
     checkpoints = Checkpoints(None) if checkpoints is None else checkpoints

@@ -72,7 +72,7 @@ def hurley_2015(x, y, z):
 @allocating_kernel
 def temperatures(law, positions):
     """Return the temperatures [K], (n,), at unit vectors `positions`, (n, 3)."""
-    result = positions[:, 0].copy()
+    result = np.empty(positions.shape[0])
     for i in range(positions.shape[0]):
         result[i] = temperature(law, positions[i, 0], positions[i, 1], positions[i, 2])
     return result

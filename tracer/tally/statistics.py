@@ -66,6 +66,11 @@ class BatchStatistics:
                 yield row / count
 
 
+def compile_folding() -> None:
+    """Compile or load what `BatchStatistics.fold` calls."""
+    fold_batch(np.zeros(1), 1, np.zeros(1), np.zeros(1))
+
+
 def replicate_counts(first_batch: int, batches: int, replicates: int) -> list[int]:
     """Return how many of `batches` batches from `first_batch` on count into each replicate."""
     return [len(range((i - first_batch) % replicates, batches, replicates)) for i in range(replicates)]

@@ -36,6 +36,32 @@ def test_launches_do_not_depend_on_the_blocks_in_which_they_are_drawn():
         assert np.array_equal(np.concatenate([part[k] for part in parts]), whole[k])
 
 
+def test_boxes_hold_runs_of_the_sequence_that_begin_at_powers_of_two():
+    random = np.random.default_rng(4)
+    counts = np.array([1, 300, 5, 64, 1000, 17])
+    low, width = 0.5 * random.random((2, 6, 5))
+    supply = EvenNumbers(random)
+    u, shares = draw(Strata(Boxes(low, width), counts), supply, 0, counts.sum())
+    # Written out: the first multiple of the power of 2 that holds the box's launches, behind the box before.
+    numbers, end = [], 0
+    for count, size in zip(counts, (1, 512, 8, 64, 1024, 32), strict=True):
+        begin = next(number for number in range(0, 8192, size) if number >= end)
+        end = begin + count
+        numbers.append(np.arange(begin, end))
+    box = np.repeat(np.arange(6), counts)
+    expected = low[box] + width[box] * supply.points(np.concatenate(numbers))
+    expected[:, SPEED] = 1.0 - expected[:, SPEED]
+    assert np.array_equal(u, expected)
+    np.testing.assert_allclose(shares, np.prod(width, axis=1)[box] / counts[box], rtol=1e-15)
+
+
+def test_independent_launches_have_the_boxes_too():
+    strata = two_halves((300, 100))
+    u, shares = draw(strata, EvenNumbers(np.random.default_rng(1), stratified=False), 200, 150)
+    assert u[:100, SPEED].min() > 0.9 > u[100:, SPEED].max()
+    np.testing.assert_allclose(shares, np.repeat([0.1 / 300, 0.9 / 100], [100, 50]))
+
+
 def test_thinnest_box_has_finite_quantiles():
     low, width = np.zeros((2, 5)), np.ones((2, 5))
     low[1, SPEED], width[:, SPEED] = 1e-17, (1e-17, 1.0 - 1e-17)

@@ -5,15 +5,12 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
-from tracer.kernels.sobol import sobol_digits
+from tracer.kernels.sobol import BITS, PER_UNIT, sobol_digits, sobol_in_boxes
 from tracer.physics.release.laws import Floats
 
 Digits = NDArray[np.uint64]
 
 PLACE, TURN, SPEED, ZENITH, AZIMUTH = range(5)
-
-BITS = 53
-"""Binary digits of a point, as many as a float64 holds."""
 
 POLYNOMIALS = ((0, 0, (1,)), (1, 0, (1,)), (2, 1, (1, 3)), (3, 1, (1, 3, 1)), (3, 2, (1, 1, 1)))
 """Degree, coefficients, initial numbers of the first coordinates (Joe & Kuo 2008, SIAM J. Sci. Comput. 30, 2635)."""
@@ -49,7 +46,23 @@ class EvenNumbers:
         """
         if not self._stratified:
             return self._rng.random((len(numbers), DIMENSIONS))
-        return np.asarray(sobol_digits(self._directions, self._shift, numbers) * 2.0**-BITS)
+        return np.asarray(sobol_digits(self._directions, self._shift, numbers) * PER_UNIT)
+
+    def points_in_boxes(
+        self, low: Floats, width: Floats, counts: NDArray[np.int64], first: int, count: int
+    ) -> Floats:
+        """Return points `first` to `first` + `count` - 1 of boxes of the unit cube, box by box, (count, DIMENSIONS).
+
+        Boxes begin at `low` (m, DIMENSIONS), are `width` (m, DIMENSIONS) wide and have `counts` (m,) points each: those
+        whose numbers begin at a multiple of the power of 2 that holds them, behind those of the boxes before. In memory
+        a coordinate of all points stands together.
+        """
+        if self._stratified:
+            return np.asarray(
+                sobol_in_boxes(self._directions, self._shift, low, width, counts, first, count).T
+            )
+        box = np.searchsorted(np.cumsum(counts), np.arange(first, first + count), side="right")
+        return np.asarray(low[box] + width[box] * self._rng.random((count, DIMENSIONS)))
 
 
 @cache

@@ -48,24 +48,11 @@ def draw(strata: Strata, supply: EvenNumbers, first: int, count: int) -> tuple[F
     of the release rate: a stratum's probability over its number of launches, so that all launches together have 1.
     """
     ends = np.cumsum(strata.counts)
-    launch = np.arange(first, first + count)
-    stratum = np.searchsorted(ends, launch, side="right")
-    begins = _aligned_begins(strata.counts)
-    points = supply.points(begins[stratum] + launch - (ends - strata.counts)[stratum])
-    u = strata.boxes.low[stratum] + strata.boxes.width[stratum] * points
-    u[:, SPEED] = np.minimum(1.0 - u[:, SPEED], FASTEST)
-    return u, (strata.boxes.probabilities / strata.counts)[stratum]
-
-
-def _aligned_begins(counts: Integers) -> Integers:
-    """Return where in the sequence each stratum begins: at a multiple of the power of 2 that holds its launches."""
-    begins = np.empty_like(counts)
-    end = 0
-    for i, count in enumerate(counts):
-        size = 1 << int(count - 1).bit_length()
-        begins[i] = -(-end // size) * size
-        end = begins[i] + count
-    return begins
+    u = supply.points_in_boxes(*strata.boxes, strata.counts, first, count)
+    speed = u[:, SPEED]
+    np.minimum(np.subtract(1.0, speed, out=speed), FASTEST, out=speed)
+    drawn_before = np.clip(np.concatenate(([0], ends)), first, first + count)
+    return u, np.repeat(strata.boxes.probabilities / strata.counts, drawn_before[1:] - drawn_before[:-1])
 
 
 def shared_out(count: int, wanted: Floats) -> Integers:

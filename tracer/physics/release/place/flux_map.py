@@ -4,6 +4,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.places import places_in_cells
 from tracer.kernels.surface_map import HOURS_A_TURN, SurfaceMap
 from tracer.physics.release.laws import Floats
 
@@ -22,15 +23,10 @@ class FluxMap(NamedTuple):
 
     def places(self, u: Floats) -> Floats:
         """Return unit vectors by inverting first the latitude's and then the row's distribution; see `PlaceLaw`."""
-        row = np.searchsorted(self.rows, u[:, 0], side="right") - 1
-        z = _inside(self.rows, self.sines, row, u[:, 0])
-        hour = np.empty_like(z)
-        for i in np.unique(row):
-            here = row == i
-            column = np.searchsorted(self.columns[i], u[here, 1], side="right") - 1
-            hour[here] = _inside(self.columns[i], self.hours, column, u[here, 1])
-        across, phi = np.sqrt(np.maximum(0.0, 1.0 - z * z)), (hour - 12.0) * (np.pi / 12.0)
-        return np.column_stack([across * np.cos(phi), across * np.sin(phi), z])
+        even_rows, even_columns = np.ascontiguousarray(u.T)
+        return np.asarray(
+            places_in_cells(self.sines, self.hours, self.rows, self.columns, even_rows, even_columns)
+        )
 
 
 def flux_map(table: SurfaceMap) -> FluxMap:
@@ -50,11 +46,3 @@ def _shares(parts: Floats) -> Floats:
     """Return the running sum of `parts` from 0 to 1 exactly; all 0 where there is nothing."""
     sums = np.concatenate(([0.0], np.cumsum(parts)))
     return sums / sums[-1] if sums[-1] > 0.0 else sums
-
-
-def _inside(
-    shares: Floats, edges: Floats, cell: "np.ndarray[tuple[int], np.dtype[np.intp]]", u: Floats
-) -> Floats:
-    """Return the place between the edges of `cell` that the share `u` of all atoms has left before."""
-    part = (u - shares[cell]) / (shares[cell + 1] - shares[cell])
-    return np.asarray(edges[cell] + part * (edges[cell + 1] - edges[cell]))

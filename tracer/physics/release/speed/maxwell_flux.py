@@ -1,18 +1,24 @@
 """Flux-weighted Maxwellian: what leaves a surface in thermal equilibrium."""
 
+from functools import cache
 from typing import NamedTuple
 
 import numpy as np
 
 from tracer.constants import BOLTZMANN
+from tracer.kernels.octaves import OctaveTable, octave_quantiles
 from tracer.physics.release.laws import Floats
+from tracer.physics.release.octave_table import octave_table
 from tracer.physics.thermal import most_probable_speed
 
 NEWTON_STEPS = 3
 """From the first guess, at most 1.2 % off, three steps reach rounding."""
 
-SERIES_LIMIT = 1e-3
-"""Square root of twice the exponent below which the series is used: Newton's difference would cancel."""
+SERIES = (1.0, 1.0 / 3.0, 1.0 / 36.0, -1.0 / 270.0, 1.0 / 4320.0, 1.0 / 17010.0, -139.0 / 5443200.0)
+"""Coefficients of s, s^2, ... of a small energy, see `_energies_at`: they make x - ln(1 + x) = s^2/2 hold."""
+
+SERIES_LIMIT = 0.03
+"""Where s is smaller the series is used, good to 1e-16 there: Newton's difference would cancel."""
 
 
 class MaxwellFlux(NamedTuple):
@@ -27,7 +33,9 @@ class MaxwellFlux(NamedTuple):
     def speeds(self, u: Floats, surface_temperature: Floats, mass: float) -> Floats:
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
-        return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * energies(u)))
+        found = np.asarray(octave_quantiles(_root_energies(), np.ascontiguousarray(u)))
+        found *= np.sqrt(2.0 * BOLTZMANN * kelvin / mass)
+        return found
 
     def density(self, speeds: Floats, mass: float) -> Floats:
         """Return the probability density [s m-1]; see `SpeedDensity`."""
@@ -53,17 +61,25 @@ def speed_scale(temperature: float | None, mass: float) -> float:
 
 
 def energies(u: Floats) -> Floats:
-    """Return the energies x [kT], (n,), at the quantiles `u`, (n,): 1 - u = (1 + x) exp(-x), to 1e-12.
+    """Return the energies x [kT], (n,), at the quantiles `u`, (n,): 1 - u = (1 + x) exp(-x)."""
+    return _energies_at(-np.log1p(-u))
 
-    With y = -ln(1 - u) this is x - ln(1 + x) = y, of which small x is s + s^2/3 + s^3/36 - s^4/270, s^2 = 2 y.
-    """
-    y = -np.log1p(-u)
+
+def _energies_at(y: Floats) -> Floats:
+    """Return the energies x [kT], (n,), to 1e-14, where `y`, (n,), is x - ln(1 + x) = -ln(1 - u)."""
     s = np.sqrt(2.0 * y)
     x = y + np.log1p(s + (2.0 / 3.0) * y)
-    series = s * (1.0 + s * (1.0 / 3.0 + s * (1.0 / 36.0 - s / 270.0)))
     small = s < SERIES_LIMIT
     x[small] = SERIES_LIMIT
     for _ in range(NEWTON_STEPS):
         x -= (x - np.log1p(x) - y) * (1.0 + x) / x
-    x[small] = series[small]
+    x[small] = s[small] * np.polynomial.polynomial.polyval(s[small], SERIES)
     return np.asarray(x)
+
+
+@cache
+def _root_energies() -> OctaveTable:
+    """Return the table of sqrt(x), the speed in most probable ones of a gas; near 0 it is (2 u)^(1/4)."""
+    return octave_table(
+        lambda u: np.sqrt(energies(u)), lambda above: np.sqrt(_energies_at(-np.log(above))), 0.25, np.inf
+    )

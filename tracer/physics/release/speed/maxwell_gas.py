@@ -1,12 +1,15 @@
 """Maxwellian of a gas at rest: the speeds inside a volume, not those that leave a surface."""
 
+from functools import cache
 from typing import NamedTuple
 
 import numpy as np
-from scipy.special import gammaincc, gammaincinv
+from scipy.special import gammaincc, gammainccinv, gammaincinv
 
 from tracer.constants import BOLTZMANN
+from tracer.kernels.octaves import OctaveTable, octave_quantiles
 from tracer.physics.release.laws import Floats
+from tracer.physics.release.octave_table import octave_table
 from tracer.physics.release.speed.maxwell_flux import speed_scale
 
 
@@ -21,7 +24,9 @@ class MaxwellGas(NamedTuple):
     def speeds(self, u: Floats, surface_temperature: Floats, mass: float) -> Floats:
         """Return speeds [m s-1]; see `SpeedLaw`."""
         kelvin = surface_temperature if self.temperature is None else self.temperature
-        return np.asarray(np.sqrt(2.0 * BOLTZMANN * kelvin / mass * gammaincinv(1.5, u)))
+        found = np.asarray(octave_quantiles(_root_energies(), np.ascontiguousarray(u)))
+        found *= np.sqrt(2.0 * BOLTZMANN * kelvin / mass)
+        return found
 
     def density(self, speeds: Floats, mass: float) -> Floats:
         """Return the probability density [s m-1]; see `SpeedDensity`."""
@@ -36,3 +41,14 @@ class MaxwellGas(NamedTuple):
     def kinks(self) -> Floats:
         """Return no speeds; see `SpeedDensity`."""
         return np.empty(0)
+
+
+@cache
+def _root_energies() -> OctaveTable:
+    """Return the table of the speed in most probable ones; near 0 it is (3 sqrt(pi)/4 u)^(1/3)."""
+    return octave_table(
+        lambda u: np.sqrt(gammaincinv(1.5, u)),
+        lambda above: np.sqrt(gammainccinv(1.5, above)),
+        1.0 / 3.0,
+        np.inf,
+    )

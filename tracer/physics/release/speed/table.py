@@ -4,6 +4,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from tracer.kernels.trapezoids import trapezoid_quantiles
 from tracer.physics.release.laws import Floats
 
 
@@ -16,17 +17,8 @@ class Table(NamedTuple):
     def speeds(self, u: Floats, surface_temperature: Floats, mass: float) -> Floats:
         """Return speeds [m s-1] by inverting the piecewise quadratic distribution exactly; see `SpeedLaw`."""
         steps = 0.5 * np.diff(self.speed) * (self.pdf[1:] + self.pdf[:-1])
-        probability = np.concatenate(([0.0], np.cumsum(steps)))
-        target = u * probability[-1]
-        i = np.clip(np.searchsorted(probability, target, side="right") - 1, 0, len(steps) - 1)
-        slope = (np.diff(self.pdf) / np.diff(self.speed))[i]
-        rest = target - probability[i]
-        start = self.pdf[i]
-        root = np.sqrt(np.maximum(start * start + 2.0 * slope * rest, 0.0))
-        # The root of slope/2 d^2 + start d = rest in the form that stays exact for a small slope.
-        sum_ = start + root
-        distance = np.divide(2.0 * rest, sum_, out=np.zeros_like(rest), where=sum_ > 0.0)
-        return np.asarray(np.minimum(self.speed[i] + distance, self.speed[i + 1]))
+        sums = np.concatenate(([0.0], np.cumsum(steps)))
+        return np.asarray(trapezoid_quantiles(self.speed, self.pdf, sums, np.ascontiguousarray(u)))
 
     def density(self, speeds: Floats, mass: float) -> Floats:
         """Return the probability density [s m-1]; see `SpeedDensity`."""
