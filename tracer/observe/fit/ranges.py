@@ -168,15 +168,15 @@ def _width(scan: Scan, number: int, best: float) -> float:
 def _profile(scan: Scan, number: int, place: float, near: Floats, wanted: float) -> tuple[Floats, float]:
     """Return the parameters at their best for one of them held at `place`, and the square root of the rise.
 
-    Where that is about the root `wanted`, other starts than `near` are tried as well: other parameters may do better
-    far from where they were on the way here.
+    Where that is about the root `wanted` or beyond, other starts than `near` are tried as well: other parameters may do
+    better far from where they were on the way here, and a place that is taken to lie outside is not looked at again.
     """
     start = near.copy()
     start[number] = place
     held = np.zeros(len(start), dtype=bool)
     held[number] = True
     found, value = _least(scan, [start], held)
-    if abs(_root(scan, value) - wanted) < CLOSE:
+    if _root(scan, value) > wanted - CLOSE:
         found, value = _least(scan, [found, *other_starts(scan, found, held)], held)
     return found, _root(scan, value)
 

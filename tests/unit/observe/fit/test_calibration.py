@@ -9,9 +9,10 @@ from scipy.stats import chi2
 
 from tracer.observe.fit.calibration import calibrated, quantiles
 from tracer.observe.fit.curves import Fixed, Lawful, Parameter
-from tracer.observe.fit.descent import descend
+from tracer.observe.fit.descent import descend, grid_starts, valleys
 from tracer.observe.fit.fitting import fit
 from tracer.observe.fit.likelihood import Component, Likelihood, Measured, slots_of
+from tracer.observe.fit.ranges import ends, scan_of
 from tracer.observe.fit.sources import Response
 from tracer.observe.fit.words import range_words
 
@@ -114,6 +115,53 @@ def test_range_reaches_over_a_hill_to_the_other_valley():
         end = math.sqrt(1.0 + root / height)
         assert math.log(low) == pytest.approx(-end, rel=2e-3)
         assert math.log(high) == pytest.approx(end, rel=2e-3)
+
+
+LATER, TILT, OFF = 2.0, 0.5, -0.3
+"""How much higher the second explanation of `two_ways` lies, the angle between the two, and where it is at its best."""
+
+
+def two_ways():
+    """Return -2 ln L of p and q that is p^2 for q < 0 and LATER + (p - OFF)^2 sin^2 TILT for q > 0, at the best q.
+
+    A point is measured as 0 of p itself; q keeps its place below 0, takes most of p away above, and a wall is between.
+    """
+
+    def aside(logs):
+        upper = 0.5 * (1.0 + np.tanh(20.0 * logs))
+        away = 3.0 * (logs - 1.5)
+        return np.concatenate(
+            [
+                upper * (-away * math.cos(TILT) - OFF),
+                upper * away * math.sin(TILT),
+                (1.0 - upper) * 9.0 * (logs + 1.0),
+                math.sqrt(LATER) * upper,
+                30.0 * np.exp(-((logs / 0.2) ** 2)),
+            ],
+            axis=-1,
+        )
+
+    first = np.eye(5)[0]
+    curves = (
+        Bent(lambda logs: logs * first, lambda logs: first + 0.0 * logs, -6.0, 6.0),
+        Bent(aside, lambda logs: (aside(logs + 1e-6) - aside(logs - 1e-6)) / 2e-6, -2.0, 4.0),
+    )
+    data = Measured(np.zeros(5), np.ones(5), np.zeros(5, bool), 0.0)
+    components = [Component(name, curve, np.ones(3), 1.0) for name, curve in zip("ab", curves, strict=True)]
+    return Likelihood(data, components, slots_of(data, components, background=False))
+
+
+@pytest.mark.parametrize("width", [1.0, 1.15, 2.0])
+def test_end_of_a_range_is_not_where_the_nearest_of_two_explanations_ends(width):
+    likelihood = two_ways()
+    scan = scan_of(likelihood, valleys(likelihood, grid_starts(likelihood)))
+    np.testing.assert_allclose(scan.best, [0.0, -1.0], atol=1e-3)
+    # A first step to the end of the nearer, short of the true one, and beyond.
+    low, high = ends(scan._replace(covariance=width**2 * scan.covariance), 0, WILKS[1])
+    half = math.sqrt(WILKS[1] - LATER) / math.sin(TILT)
+    assert OFF + half > 1.15 * math.sqrt(WILKS[1]) + 0.2
+    assert high == pytest.approx(OFF + half, rel=3e-3)
+    assert low == pytest.approx(OFF - half, rel=3e-3)
 
 
 def decay():
