@@ -47,9 +47,9 @@ SMALLEST_GAIN = 1e-4
 distributed, which 1e-8 leaves the same to three digits."""
 BLUR = 0.2
 """Width, in the square root, with which draws are counted: alike in both shares, so that it cancels but for what
-differs. Rises of the hard case of analysis/validation/fit-coverage then scatter by 0.03 (68 %) and 0.15 (95 %) from
-one seed to another; with as many independent errors, in pairs of opposite sign, by 0.06 and 0.3. The seed being one for
-all fits, what it has of that does not average out over many."""
+differs. Rises of the hard case of analysis/validation/fit-coverage then scatter by 0.05 (68 %) and 0.2 (95 %) from
+one seed to another; 512 draws leave two thirds of that and cost a quarter more time. The seed being one for all fits,
+what it has of that does not average out over many."""
 
 
 class Calibration(NamedTuple):
