@@ -39,7 +39,7 @@ SMALLEST_SHARE = 2.0**-31
 """Half the step of the sequence."""
 SEED = 20310930
 MOST_POINTS = 500
-"""Points of a profile above which its draws take too long: 0.4 s of one core with 36, 4 s with 288, four parameters."""
+"""Points of a profile above which its draws take too long: 3 s of one core with 36, 15 s with 288, four parameters."""
 LARGEST_ROOT, ROOTS = 4.0, 200
 """Rises are looked for at this many square roots, up to that of 16."""
 SMALLEST_GAIN = 1e-4
