@@ -173,7 +173,7 @@ def _caption(found: Comparison) -> str:
             ends = f"{read.low68:.4g} to {read.high68:.4g}"
             words.append(f"{name}, {key.replace('_', ' ')}: {read.best:.4g} {unit} ({ends}).")
     if found.range_ends.draws:
-        words.append(f"Ranges are calibrated on {found.range_ends.draws} profiles drawn about the best fit.")
+        words.append(f"Ranges are calibrated on {found.range_ends.draws} profiles drawn about each end.")
     words.append("Band: one standard error of the model, Monte Carlo and bins of launch speed.")
     return " ".join(words)
 

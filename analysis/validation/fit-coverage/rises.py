@@ -8,9 +8,9 @@ from scipy.stats import chi2
 
 import tracer
 from tracer.observe.fit import calibration
-from tracer.observe.fit.descent import Valley
+from tracer.observe.fit.descent import Valley, suited
 from tracer.observe.fit.likelihood import Likelihood, slots_of
-from tracer.observe.fit.ranges import RISE_68, RISE_95, Scan, on_edge, other_starts, scan_of
+from tracer.observe.fit.ranges import RISE_68, RISE_95, End, Scan, on_edge, scan_of
 
 Floats = np.ndarray
 
@@ -33,18 +33,24 @@ def at_truth(case: Case) -> tuple[list[str], Scan]:
 
 def rises_of(scan: Scan, values: Floats) -> tuple[Floats, Floats]:
     """Return by how much -2 ln L of each profile rises (D, P) at the truth, and the best parameters (D, P)."""
-    count = len(scan.best)
+    count, true = len(scan.best), scan.best
     held = np.zeros(count, dtype=bool)
-    at, least = calibration.lowest(
-        scan.likelihood, values, [scan.best, *other_starts(scan, scan.best, held)], held
-    )
+    starts = [true, suited(scan.likelihood, values, held, true)]
+    at, least = calibration.lowest(scan.likelihood, values, starts, held)
     rises = np.empty_like(at)
     for n in range(count):
         held = np.arange(count) == n
         near = at.copy()
-        near[:, n] = scan.best[n]
-        rises[:, n] = calibration.lowest(scan.likelihood, values, [near, scan.best], held)[1] - least
+        near[:, n] = true[n]
+        starts = [near, suited(scan.likelihood, values, held, true)]
+        rises[:, n] = calibration.lowest(scan.likelihood, values, starts, held)[1] - least
     return rises, at
+
+
+def thresholds(scan: Scan) -> Floats:
+    """Return the rises (P, 2) that calibration takes at ends of ranges that lie at the truth."""
+    ends = [End(float(place), scan.best, False) for place in scan.best]
+    return np.array([[calibration.due(scan, n, end, rise) for rise in WILKS] for n, end in enumerate(ends)])
 
 
 def report(case: Case) -> None:
@@ -57,7 +63,7 @@ def report(case: Case) -> None:
     found = {}
     for seed in (calibration.SEED, *range(1, SEEDS + 1)):
         calibration.SEED, kept = seed, calibration.SEED
-        found[seed] = calibration.calibrated(scan).rises
+        found[seed] = thresholds(scan)
         calibration.SEED = kept
     for n, name in enumerate(names):
         one = rises[:, n]

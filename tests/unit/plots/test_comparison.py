@@ -40,7 +40,7 @@ def made(value, upper=(False,) * 5, background=0.0):
         degrees_of_freedom=3,
         probability=0.17,
         minus_two_log_likelihood=5.0,
-        range_ends=RangeEnds(200, 1, {"a": (1.0, 3.84)}),
+        range_ends=RangeEnds(200, 1, {"a": ((1.0, 1.0), (3.84, 3.84))}),
         correlations=Correlations(("a", "b"), np.eye(2)),
         points=points,
         statements=(),

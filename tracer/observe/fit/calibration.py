@@ -1,16 +1,20 @@
-"""By how much -2 ln L may rise at a parameter's true value: measured on profiles drawn anew about the best fit.
+"""By how much -2 ln L may rise at the end of a range: measured on profiles drawn anew about that end.
 
 Where parameters can stand in for one another and are poorly known, -2 ln L is no parabola within their ranges, and its
 rise at the truth is not distributed as chi-square with one degree of freedom (Wilks 1938), which holds in the limit of
-small errors alone. Its distribution is then taken from a parametric bootstrap (Efron & Tibshirani 1993, An Introduction
-to the Bootstrap, section 6.5; of likelihood ratios: Davison & Hinkley 1997, Bootstrap Methods and their Application,
-section 4.2; both memory): profiles are drawn about the best fit with the errors of measurement and model, each is
-fitted, and the rise at the parameter with which it was drawn is noted.
+small errors alone. A value belongs to a range if, were it the true one, -2 ln L would rise at it by as much as here in
+more than 32 or 5 % of measurements (Neyman 1937, Phil. Trans. R. Soc. A 236, 333; ordered by the likelihood ratio:
+Feldman & Cousins 1998, Phys. Rev. D 57, 3873; all else at its best for that value: Chuang & Lai 2000, Statistica Sinica
+10, 1; all memory). So at each end that 1 and 3.84 give, profiles are drawn with the errors of measurement and model
+about the fit that is best there, each is fitted with the parameter free and held, and the range ends where the rise is
+that which 68.27 and 95 % of theirs stay below. Draws about the best fit instead (Efron & Tibshirani 1993, An
+Introduction to the Bootstrap, section 6.5: memory) ask about a value that is not at stake: near an edge of what is
+allowed their rises are held down, where those at the end need not be, and the other way about.
 
 Two means make few draws do. Their errors are the points of a scrambled Sobol sequence (Sobol' 1967, USSR Comput. Math.
 Math. Phys. 7, 86; Owen 1998, ACM Trans. Model. Comput. Simul. 8, 71; both memory), whose first directions, the most
 even ones, are those in which the free parameters move the profile: rises depend on these above all. And the same errors
-in the fit made linear about the best give a rise that is exactly chi-square: the draws need only tell by how much the
+in the fit made linear about the end give a rise that is exactly chi-square: the draws need only tell by how much the
 shares of the two differ (control variate: Hesterberg 1996, Stat. and Computing 6, 147: memory). Where the fit is linear
 the two are the same number, and the rises those of Wilks.
 """
@@ -23,19 +27,19 @@ from numpy.typing import NDArray
 from scipy.special import gammainc, ndtr, ndtri
 from scipy.stats import qmc
 
-from tracer.observe.fit.descent import descend
+from tracer.observe.fit.descent import Valley, descend, suited
 from tracer.observe.fit.likelihood import Likelihood
-from tracer.observe.fit.ranges import RISE_68, RISE_95, Scan, other_starts
+from tracer.observe.fit.ranges import RISE_68, RISE_95, End, Scan, end_of, scan_of
 
 Floats = NDArray[np.float64]
 
-DRAWS = 512
-"""A power of two, for which the sequence is even: a second or less of one core with two releases."""
+DRAWS = 256
+"""At each end. A power of two, for which the sequence is even: a tenth of a second of one core with two releases."""
 SMALLEST_SHARE = 2.0**-31
 """Half the step of the sequence."""
 SEED = 20310930
 MOST_POINTS = 500
-"""Points of a profile above which its draws take too long: 0.4 s of one core with 36, 4 s with 288, four parameters."""
+"""Points of a profile above which its draws take too long: 3 s of one core with 36, 15 s with 288, four parameters."""
 LARGEST_ROOT, ROOTS = 4.0, 200
 """Rises are looked for at this many square roots, up to that of 16."""
 SMALLEST_GAIN = 1e-4
@@ -43,15 +47,15 @@ SMALLEST_GAIN = 1e-4
 distributed, which 1e-8 leaves the same to three digits."""
 BLUR = 0.2
 """Width, in the square root, with which draws are counted: alike in both shares, so that it cancels but for what
-differs. Rises of the hard case of analysis/validation/fit-coverage then scatter by 0.03 (68 %) and 0.15 (95 %) from
-one seed to another; with as many independent errors, in pairs of opposite sign, by 0.06 and 0.3. The seed being one for
-all fits, what it has of that does not average out over many."""
+differs. Rises of the hard case of analysis/validation/fit-coverage then scatter by 0.05 (68 %) and 0.2 (95 %) from
+one seed to another; 512 draws leave two thirds of that and cost a quarter more time. The seed being one for all fits,
+what it has of that does not average out over many."""
 
 
 class Calibration(NamedTuple):
-    """Rises of -2 ln L at the ends of the ranges of 68.27 and 95 % of each parameter (P, 2), from so many `draws`.
+    """Rises of -2 ln L at the ends of ranges (P, 2, 2): of each parameter, of 68.27 and 95 %, lower and upper.
 
-    Without draws the rises are those of Wilks, and `reason` says why.
+    They come from so many `draws` about each end. Without draws they are those of Wilks, and `reason` says why.
     """
 
     rises: Floats
@@ -60,15 +64,24 @@ class Calibration(NamedTuple):
 
 
 def calibrated(scan: Scan) -> Calibration:
-    """Return the rises at the ends of ranges; those of Wilks for a parameter on an edge of what is allowed."""
-    rises = np.tile([RISE_68, RISE_95], (len(scan.best), 1))
+    """Return the rises at the ends of ranges; those of Wilks at an end that the edge of what is allowed cuts short.
+
+    Raises
+    ------
+    BetterFound
+        With parameters that are more likely than the best known.
+    """
+    rises = np.empty((len(scan.best), 2, 2))
+    rises[:] = np.array([RISE_68, RISE_95])[:, np.newaxis]
     reason = _reason(scan)
     if reason:
         return Calibration(rises, 0, reason)
-    known = np.flatnonzero(np.diag(scan.covariance) > 0.0)
-    drawn, linear = _drawn(scan, known)
-    for n, one, other in zip(known, drawn.T, linear.T, strict=True):
-        rises[n] = quantiles(one, other)
+    for number, level, side in np.ndindex(rises.shape):
+        wilks = (RISE_68, RISE_95)[level]
+        end = end_of(scan, number, wilks, (-1.0, 1.0)[side])
+        rises[number, level, side] = due(scan, number, end, wilks)
+    # A range of 95 % holds that of 68.
+    rises[:, 1] = np.maximum(rises[:, 1], rises[:, 0])
     return Calibration(rises, DRAWS, "")
 
 
@@ -88,17 +101,16 @@ def _reason(scan: Scan) -> str:
     return ""
 
 
-def quantiles(rises: Floats, linear: Floats) -> tuple[float, float]:
-    """Return what 68.27 and 95 % of rises stay below, at least what Wilks has.
-
-    A range is never made narrower than that of the likelihood ratio: rises that are held down by an edge of what is
-    allowed, near the best fit, need not be so near the truth.
+def quantile(rises: Floats, linear: Floats, wilks: float) -> float:
+    """Return what a share of rises stays below, that of chi-square below `wilks`.
 
     Parameters
     ----------
     rises, linear : ndarray, shape (D,)
         Rises of -2 ln L, and what the same errors give in the fit made linear, which is distributed as chi-square with
         one degree of freedom.
+    wilks : float
+        The answer where the two are distributed alike.
     """
     roots = np.linspace(0.0, LARGEST_ROOT, ROOTS + 1)[1:]
     places = roots**2
@@ -108,30 +120,35 @@ def quantiles(rises: Floats, linear: Floats) -> tuple[float, float]:
     )
     # Sorted, since a share that falls is scatter (rearrangement: Chernozhukov et al. 2009, Biometrika 96, 559: memory).
     shares = np.sort(gammainc(0.5, 0.5 * places) + below - due)
-    wilks = np.array([RISE_68, RISE_95])
-    low, high = np.maximum(np.interp(gammainc(0.5, 0.5 * wilks), shares, places), wilks)
-    return float(low), float(high)
+    return float(np.interp(gammainc(0.5, 0.5 * wilks), shares, places))
 
 
-def _drawn(scan: Scan, wanted: NDArray[np.int64]) -> tuple[Floats, Floats]:
-    """Return rises (D, W) of the wanted parameters, and those of the fit made linear about the best."""
-    likelihood, best = scan.likelihood, scan.best
-    slope = likelihood.residuals(best)[1]
+def due(scan: Scan, number: int, end: End, wilks: float) -> float:
+    """Return what rises of a parameter, over draws about an end of its range, stay below as often as below `wilks`."""
+    covariance = scan_of(scan.likelihood, (Valley(end.parameters, 0.0),)).covariance[number]
+    if end.cut or not covariance[number] > 0.0:
+        return wilks
+    rises, linear = _drawn(scan, number, end.parameters, np.nan_to_num(covariance))
+    return quantile(rises, linear, wilks)
+
+
+def _drawn(scan: Scan, number: int, true: Floats, covariance: Floats) -> tuple[Floats, Floats]:
+    """Return rises (D,) of a parameter over draws about `true` (P,), and those of the fit made linear there.
+
+    `covariance` (P,) is that of the parameter with each, 0 with those that stay.
+    """
+    likelihood = scan.likelihood
+    slope = likelihood.residuals(true)[1]
     normal = _normal(slope)
-    values = likelihood.model(best).total + likelihood.noise(normal)
-    shift = normal @ slope[wanted].T @ scan.covariance[np.ix_(wanted, wanted)]
-    linear = shift**2 / np.diag(scan.covariance)[wanted]
-    held = np.zeros(len(best), dtype=bool)
-    starts = [best, *(one.parameters for one in scan.valleys[1:]), *other_starts(scan, best, held)]
-    at, least = lowest(scan.likelihood, values, starts, held)
-    rises = np.empty((len(values), len(wanted)))
-    for k, n in enumerate(wanted):
-        held[:] = False
-        held[n] = True
-        near = at.copy()
-        near[:, n] = best[n]
-        rises[:, k] = lowest(scan.likelihood, values, [near, best], held)[1] - least
-    return rises, linear
+    values = likelihood.model(true).total + likelihood.noise(normal)
+    linear = (normal @ slope.T @ covariance) ** 2 / covariance[number]
+    held = np.zeros(len(true), dtype=bool)
+    at, least = lowest(likelihood, values, [suited(likelihood, values, held, true), true], held)
+    held[number] = True
+    near = at.copy()
+    near[:, number] = true[number]
+    _, kept = lowest(likelihood, values, [suited(likelihood, values, held, true), near], held)
+    return kept - least, linear
 
 
 def _normal(slope: Floats) -> Floats:

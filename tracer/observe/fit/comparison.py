@@ -332,7 +332,8 @@ def _parameters(
 
 def _range_ends(calibration: Calibration, names: Sequence[str]) -> RangeEnds:
     rises = {
-        name: (float(low), float(high)) for name, (low, high) in zip(names, calibration.rises, strict=True)
+        name: ((float(low68), float(high68)), (float(low95), float(high95)))
+        for name, ((low68, high68), (low95, high95)) in zip(names, calibration.rises, strict=True)
     }
     return RangeEnds(calibration.draws, SEED, rises)
 

@@ -24,6 +24,8 @@ MOST_DESCENTS = 9
 """Most descents from different starts: the lowest of those points of the grid that no neighbour is below."""
 SAME_PLACE = 1e-2
 """Distance between the ends of two descents, in any parameter, below which they lie in one valley."""
+BOUNDED_STEPS = 3
+"""Turns over all rates by which those of a start are brought within their bounds."""
 
 
 class Valley(NamedTuple):
@@ -118,16 +120,62 @@ def _steps(
     return np.where(free, moved, 0.0)
 
 
-def grid_starts(likelihood: Likelihood) -> list[Floats]:
-    """Return the valleys of a grid over the laws' parameters, each with the rates that suit it, the lowest first."""
-    places = [n for n, slot in enumerate(likelihood.slots) if slot.key is not None]
+def suited(likelihood: Likelihood, values: Floats, held: Truths, at: Floats) -> Floats:
+    """Return for each profile (D, N) the parameters (D, P) of least -2 ln L on a grid over the laws' parameters.
+
+    Rates and background have the values that suit the law parameters, near enough to start from. Parameters `held` (P,)
+    stay as in `at` (P,). Upper limits there must be none.
+    """
+    laws = [n for n, slot in enumerate(likelihood.slots) if slot.key is not None and not held[n]]
+    linear = [n for n, slot in enumerate(likelihood.slots) if slot.key is None and not held[n]]
+    grid = np.tile(at, (STARTS_PER_PARAMETER.get(len(laws), FEWEST_STARTS) ** len(laws), 1))
+    grid[:, laws] = _grid(likelihood, laws)
+    grid[:, linear] = 0.0
+    empty, slopes = likelihood.residuals(grid, np.zeros(values.shape[1]))
+    seen = likelihood.residuals(np.broadcast_to(grid[0], (len(values), len(at))), values)[0]
+    shift = empty - empty[0]
+    columns = -slopes[:, linear]
+    normal = columns @ columns.transpose(0, 2, 1)
+    asked = columns @ seen.T + np.vecdot(columns, shift[:, np.newaxis])[:, :, np.newaxis]
+    chosen = _bounded(normal, asked, likelihood.low[linear])
+    fallen = np.sum((2.0 * asked - normal @ chosen) * chosen, axis=1)
+    value = 2.0 * shift @ seen.T + np.vecdot(shift, shift)[:, np.newaxis] - fallen
+    lowest = np.argmin(value, axis=0)
+    starts: Floats = grid[lowest]
+    starts[:, linear] = chosen[lowest, :, np.arange(len(values))]
+    return starts
+
+
+def _bounded(normal: Floats, asked: Floats, low: Floats) -> Floats:
+    """Return x (G, R, D) near the least of x^T M x - 2 b^T x above `low` (R,), for M (G, R, R) and b (G, R, D).
+
+    Gauss-Seidel steps from the least without bounds: each takes one of x to its best, or to its bound.
+    """
+    x = np.maximum(np.linalg.pinv(normal, hermitian=True) @ asked, low[:, np.newaxis])
+    for _ in range(BOUNDED_STEPS):
+        for n in range(len(low)):
+            size = np.maximum(normal[:, n, n, np.newaxis], np.finfo(float).tiny)
+            left = asked[:, n] - (normal[:, n, np.newaxis] @ x)[:, 0]
+            x[:, n] = np.maximum(x[:, n] + left / size, low[n])
+    return x
+
+
+def _grid(likelihood: Likelihood, places: Sequence[int]) -> Floats:
+    """Return the points of a grid over the parameters at these places."""
     count = STARTS_PER_PARAMETER.get(len(places), FEWEST_STARTS)
     axes = [
         likelihood.low[n] + (likelihood.high[n] - likelihood.low[n]) * (np.arange(count) + 0.5) / count
         for n in places
     ]
+    return np.array(list(itertools.product(*axes)))
+
+
+def grid_starts(likelihood: Likelihood) -> list[Floats]:
+    """Return the valleys of a grid over the laws' parameters, each with the rates that suit it, the lowest first."""
+    places = [n for n, slot in enumerate(likelihood.slots) if slot.key is not None]
+    count = STARTS_PER_PARAMETER.get(len(places), FEWEST_STARTS)
     starts = np.zeros((count ** len(places), len(likelihood.slots)))
-    starts[:, places] = list(itertools.product(*axes))
+    starts[:, places] = _grid(likelihood, places)
     starts = _linear(likelihood, starts)
     residual, _ = likelihood.residuals(starts)
     values = np.vecdot(residual, residual)

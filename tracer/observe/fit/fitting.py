@@ -11,7 +11,7 @@ from tracer.errors import InputError
 from tracer.observe.fit.calibration import Calibration, calibrated
 from tracer.observe.fit.descent import Valley, grid_starts, valleys
 from tracer.observe.fit.likelihood import Component, Likelihood, Measured, Slot
-from tracer.observe.fit.ranges import BetterFound, Scan, absences, ends, scan_of
+from tracer.observe.fit.ranges import BetterFound, Scan, absences, end_of, scan_of
 from tracer.observe.fit.result import Estimate
 
 Floats = NDArray[np.float64]
@@ -51,7 +51,7 @@ def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) 
     likelihood = Likelihood(data, components, slots)
     known: tuple[Floats, ...] = ()
     for _ in range(MOST_RESTARTS):
-        scan = scan_of(likelihood, _settled(likelihood, known))
+        scan = scan_of(likelihood, settled(likelihood, known))
         try:
             calibration = calibrated(scan)
             ranges = tuple(_estimate(scan, n, calibration.rises[n]) for n in range(len(slots)))
@@ -61,7 +61,7 @@ def fit(data: Measured, components: Sequence[Component], slots: Sequence[Slot]) 
     raise InputError("the fit finds better and better parameters without end; give narrower ranges")
 
 
-def _settled(likelihood: Likelihood, known: tuple[Floats, ...]) -> tuple[Valley, ...]:
+def settled(likelihood: Likelihood, known: tuple[Floats, ...]) -> tuple[Valley, ...]:
     """Return the valleys of -2 ln L, the lowest first, with the model's error taken there; `known` are starts."""
     likelihood.take_model_error(valleys(likelihood, known or grid_starts(likelihood))[0].parameters)
     found = valleys(likelihood, (*known, *grid_starts(likelihood)))
@@ -74,7 +74,10 @@ def _settled(likelihood: Likelihood, known: tuple[Floats, ...]) -> tuple[Valley,
 
 
 def _estimate(scan: Scan, number: int, rises: Floats) -> Estimate:
-    (low68, high68), (low95, high95) = (ends(scan, number, float(rise)) for rise in rises)
+    (low68, high68), (low95, high95) = (
+        (end_of(scan, number, float(low), -1.0).place, end_of(scan, number, float(high), 1.0).place)
+        for low, high in rises
+    )
     found = Estimate(float(scan.best[number]), low68, high68, low95, high95)
     slot = scan.likelihood.slots[number]
     if slot.key is None:

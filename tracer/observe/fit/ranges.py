@@ -69,18 +69,12 @@ def on_edge(likelihood: Likelihood, parameters: Floats) -> NDArray[np.bool_]:
     return np.asarray((parameters <= likelihood.low + ON_EDGE) | (parameters >= likelihood.high - ON_EDGE))
 
 
-def ends(scan: Scan, number: int, rise: float) -> tuple[float, float]:
-    """Return the ends of a parameter's range; one that the edge of what is allowed cuts short lies on it.
+class End(NamedTuple):
+    """An end of a parameter's range: its `place`, all `parameters` there; `cut` short by an edge of what is allowed."""
 
-    Where -2 ln L has several valleys within `rise`, the range reaches from the first to the last of them: what is as
-    likely as the rest of a range must not lie outside because a hill stands before it.
-
-    Raises
-    ------
-    BetterFound
-        With parameters that are more likely than the best known.
-    """
-    return _end(scan, number, rise, -1.0), _end(scan, number, rise, 1.0)
+    place: float
+    parameters: Floats
+    cut: bool
 
 
 def rise_at(scan: Scan, place: dict[int, float]) -> float:
@@ -89,7 +83,7 @@ def rise_at(scan: Scan, place: dict[int, float]) -> float:
     Raises
     ------
     BetterFound
-        As `ends`.
+        With parameters that are more likely than the best known.
     """
     start = scan.best.copy()
     held = np.zeros(len(start), dtype=bool)
@@ -105,7 +99,7 @@ def absences(scan: Scan) -> dict[tuple[int, ...], float]:
     Raises
     ------
     BetterFound
-        As `ends`.
+        With parameters that are more likely than the best known.
     """
     rates = [
         n for n, slot in enumerate(scan.likelihood.slots) if slot.key is None and slot.component is not None
@@ -114,7 +108,17 @@ def absences(scan: Scan) -> dict[tuple[int, ...], float]:
     return {group: rise_at(scan, dict.fromkeys(group, 0.0)) for group in groups}
 
 
-def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
+def end_of(scan: Scan, number: int, rise: float, sign: float) -> End:
+    """Return the lower or upper end, by `sign`, of a parameter's range; one that is cut short lies on the edge.
+
+    Where -2 ln L has several valleys within `rise`, the range reaches from the first to the last of them: what is as
+    likely as the rest of a range must not lie outside because a hill stands before it.
+
+    Raises
+    ------
+    BetterFound
+        With parameters that are more likely than the best known.
+    """
     likelihood, wanted = scan.likelihood, math.sqrt(rise)
     edge = float((likelihood.low if sign < 0.0 else likelihood.high)[number])
     start, value = max(
@@ -123,7 +127,7 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
     )
     best = float(start[number])
     if sign * (edge - best) <= ON_EDGE:
-        return edge
+        return End(edge, start, True)
     inner, outer = best, math.nan
     low_root, high_root = _root(scan, value), math.nan
     place = best + sign * _width(scan, number, best) * wanted
@@ -131,10 +135,10 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
         place = min(place, edge) if sign > 0.0 else max(place, edge)
         start, root = _profile(scan, number, place, start, wanted)
         if abs(root - wanted) < CLOSE:
-            return place
+            break
         if root < wanted:
             if place == edge:
-                return edge
+                return End(edge, start, True)
             inner, low_root = place, root
         else:
             outer, high_root = place, root
@@ -142,12 +146,12 @@ def _end(scan: Scan, number: int, rise: float, sign: float) -> float:
             # sqrt(rise) runs nearly straight with the distance from the best.
             factor = 1.05 * wanted / root if root > 0.0 else FAR_STEP
             place = best + min(max(factor, LEAST_STEP), FAR_STEP) * (place - best)
+        elif abs(outer - inner) <= 1e-10 * (1.0 + abs(best)):
+            break
         else:
             share = (wanted - low_root) / (high_root - low_root)
             place = inner + min(max(share, 0.05), 0.95) * (outer - inner)
-            if abs(outer - inner) <= 1e-10 * (1.0 + abs(best)):
-                return place
-    return place
+    return End(place, start, False)
 
 
 def _width(scan: Scan, number: int, best: float) -> float:
@@ -168,15 +172,15 @@ def _width(scan: Scan, number: int, best: float) -> float:
 def _profile(scan: Scan, number: int, place: float, near: Floats, wanted: float) -> tuple[Floats, float]:
     """Return the parameters at their best for one of them held at `place`, and the square root of the rise.
 
-    Where that is about the root `wanted`, other starts than `near` are tried as well: other parameters may do better
-    far from where they were on the way here.
+    Where that is about the root `wanted` or beyond, other starts than `near` are tried as well: other parameters may do
+    better far from where they were on the way here, and a place that is taken to lie outside is not looked at again.
     """
     start = near.copy()
     start[number] = place
     held = np.zeros(len(start), dtype=bool)
     held[number] = True
     found, value = _least(scan, [start], held)
-    if abs(_root(scan, value) - wanted) < CLOSE:
+    if _root(scan, value) > wanted - CLOSE:
         found, value = _least(scan, [found, *other_starts(scan, found, held)], held)
     return found, _root(scan, value)
 

@@ -63,13 +63,13 @@ class Correlations(NamedTuple):
 class RangeEnds(NamedTuple):
     """By how much -2 ln L has risen at the ends of the ranges of 68.27 and 95 % of each free parameter, by its name.
 
-    `draws` of profiles about the best fit, with random numbers of `seed`, calibrated the rises; where it is 0 they are
-    those of chi-square with one degree of freedom.
+    Of each range the rise at its lower end and at its upper. So many `draws` of profiles about each end, with random
+    numbers of `seed`, calibrated them; where it is 0 they are those of chi-square with one degree of freedom.
     """
 
     draws: int
     seed: int
-    rises: Mapping[str, tuple[float, float]]
+    rises: Mapping[str, tuple[tuple[float, float], tuple[float, float]]]
 
 
 class Comparison(NamedTuple):

@@ -83,11 +83,12 @@ def range_words(calibration: Calibration, names: Sequence[str]) -> str:
     wilks = f"{RISE_68:g} and {RISE_95:.2f}"
     if not calibration.draws:
         return f"Ranges of 68 and 95 % end where -2 ln L has risen by {wilks}, not calibrated: {calibration.reason}"
-    most = int(np.argmax(np.max(calibration.rises / (RISE_68, RISE_95), axis=1)))
-    low, high = calibration.rises[most]
+    moved = np.abs(np.log(calibration.rises / np.array([RISE_68, RISE_95])[:, np.newaxis]))
+    number, level, side = (int(place) for place in np.unravel_index(np.argmax(moved), moved.shape))
     return (
-        f"Ranges are calibrated on {calibration.draws} profiles drawn about the best fit: of '{names[most]}', which "
-        f"that widens most, they end where -2 ln L has risen by {low:.3g} and {high:.3g} instead of {wilks}"
+        f"Ranges are calibrated on {calibration.draws} profiles drawn about each end: where that changes most, at the "
+        f"{('lower', 'upper')[side]} end of {(68, 95)[level]} % of '{names[number]}', -2 ln L has risen by "
+        f"{calibration.rises[number, level, side]:.3g} instead of {(RISE_68, RISE_95)[level]:.3g}"
     )
 
 

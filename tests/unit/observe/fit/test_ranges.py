@@ -169,21 +169,21 @@ def test_parameter_that_meets_its_range_is_named():
 def test_small_coverage_of_rate_and_parameter(monkeypatch):
     # Fewer draws in each calibration, for the time it takes.
     monkeypatch.setattr("tracer.observe.fit.calibration.DRAWS", 64)
-    # 60 draws: a share of 68.27 % lies outside 0.50 to 0.85, or one of 95 % below 0.87, by chance in 1 of 100 sets of
+    # 40 draws: a share of 68.27 % lies outside 0.45 to 0.90, or one of 95 % below 0.82, by chance in 1 of 100 sets of
     # the four (binomial). The whole study stands in analysis/validation/fit-coverage.
     rng = np.random.default_rng(4)
     component = Component("a", Heated(0.3, 30.0), np.ones(10), None)
     true = np.array([2e4, 2.2])
     hits = []
-    for _ in range(60):
+    for _ in range(40):
         data = measured(2e4 * shape(2.2) + 1500.0 * rng.normal(size=len(X)), 1500.0)
         ends = np.array(fit(data, [component], slots_of(data, [component], background=False)).ranges)
         hits.append(
             [(ends[:, 1] <= true) & (true <= ends[:, 2]), (ends[:, 3] <= true) & (true <= ends[:, 4])]
         )
     shares = np.mean(hits, axis=0)
-    assert np.all((shares[0] > 0.50) & (shares[0] < 0.85)), shares
-    assert np.all(shares[1] > 0.87), shares
+    assert np.all((shares[0] > 0.45) & (shares[0] < 0.90)), shares
+    assert np.all(shares[1] > 0.82), shares
 
 
 @pytest.mark.parametrize(
