@@ -7,7 +7,7 @@ import numpy as np
 from tracer.kernels.apart import lane_bits, lane_value, set_lane_bits
 from tracer.kernels.arc import make_arc
 from tracer.kernels.arc_flight import arc_end, arc_state, score_arc
-from tracer.kernels.cell_tables import column_from, layer_entry, layer_from, row_from
+from tracer.kernels.cell_tables import cell_from, layer_entry
 from tracer.kernels.compiling import inlined, kernel, merged
 from tracer.kernels.endings import FLYING
 from tracer.kernels.foresight import fetch_early
@@ -88,11 +88,13 @@ def _find_cell(cells, tally, lanes, lane):
 @inlined
 def cell_of_sample(cells, lanes, lane):
     """Return (layer, row, column), without signs, of what `sample_hops` has set, where that is below the grid's top."""
-    r, sine = lane_value(lanes, SAMPLE_R + lane), lane_value(lanes, LATITUDE_SINE + lane)
+    tables = cells.tables
+    layer = np.uint64(layer_entry(lane_value(lanes, LAYER + lane)))
+    row, column = _low(lane_bits(lanes, ROW + lane)), _low(lane_bits(lanes, COLUMN + lane))
     return (
-        layer_from(cells.tables, cells.radii, layer_entry(lane_value(lanes, LAYER + lane)), r),
-        row_from(cells.tables, _low(lane_bits(lanes, ROW + lane)), sine),
-        column_from(cells.tables, _low(lane_bits(lanes, COLUMN + lane)), lane_value(lanes, TURN + lane)),
+        cell_from(cells.radii, tables.layers, layer, lane_value(lanes, SAMPLE_R + lane)),
+        cell_from(tables.sines, tables.rows, row, lane_value(lanes, LATITUDE_SINE + lane)),
+        cell_from(tables.turns, tables.columns, column, lane_value(lanes, TURN + lane)),
     )
 
 

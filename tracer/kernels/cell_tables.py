@@ -84,34 +84,34 @@ def column_place(tables, turned):
 
 @inlined
 def layer_ratio(altitude, first_altitude):
-    """Return the `altitude` in units of the first edge, at least 1."""
+    """Return the `altitude` in units of the first edge."""
     # The product may round into the entry above: `make_tables` leaves room for that.
-    return max(1.0, altitude * (1.0 / first_altitude))
+    return altitude * (1.0 / first_altitude)
+
+
+@inlined
+def layer_entry(ratio):
+    """Return the entry of `layers` for what `layer_ratio` gives, which is at least 1."""
+    return (np.float64(ratio).view(np.int64) >> (MANTISSA - LOG_DIGITS)) - (ONE << LOG_DIGITS)
 
 
 @inlined
 def row_of(tables, sine):
     """Return the row of sin(latitude) = `sine`, from the south pole."""
-    return row_from(tables, _entry(tables.rows, int(row_place(tables, sine))), sine)
-
-
-@inlined
-def row_from(tables, entry, sine):
-    """Return the row of sin(latitude) = `sine` by the `entry` of `rows` at its place."""
-    return _last_below(tables.sines, tables.rows[entry], sine)
+    row = int(tables.rows[_entry(tables.rows, row_place(tables, sine))])
+    while sine >= tables.sines[row + 1]:
+        row += 1
+    return row
 
 
 @inlined
 def column_of(tables, x, y):
     """Return the column of a place at (x, y) in the Sun-fixed frame, from midnight."""
     turned = turn(x, y)
-    return column_from(tables, _entry(tables.columns, int(column_place(tables, turned))), turned)
-
-
-@inlined
-def column_from(tables, entry, turned):
-    """Return the column of a place by what `turn` gives for it, and by the `entry` of `columns` there."""
-    return _last_below(tables.turns, tables.columns[entry], turned)
+    column = int(tables.columns[_entry(tables.columns, column_place(tables, turned))])
+    while turned >= tables.turns[column + 1]:
+        column += 1
+    return column
 
 
 @inlined
@@ -119,37 +119,32 @@ def layer_of(tables, radii, first_altitude, r):
     """Return the layer of distance `r` [m] from the centre between edges `radii`, -1 above the last."""
     if r >= radii[radii.shape[0] - 1]:
         return -1
-    entry = _entry(tables.layers, layer_entry(layer_ratio(r - radii[0], first_altitude)))
-    return np.int64(layer_from(tables, radii, entry, r))
-
-
-@inlined
-def layer_entry(ratio):
-    """Return the entry of `layers` for what `layer_ratio` gives."""
-    return (np.float64(ratio).view(np.int64) >> (MANTISSA - LOG_DIGITS)) - (ONE << LOG_DIGITS)
-
-
-@inlined
-def layer_from(tables, radii, entry, r):
-    """Return the layer of distance `r` [m], which is below the top, by the `entry` of `layers`."""
-    return _last_below(radii, tables.layers[entry], r)
-
-
-@inlined
-def _last_below(edges, guess, value):
-    """Return the last cell from `guess` on whose lower edge isn't above `value`.
-
-    The first step is no branch: which of two cells it is nobody can guess, and a third one is seldom met.
-    """
-    # Numbers without a sign spare numba the look whether an index counts from the end.
-    cell, one = np.uint64(guess), np.uint64(1)
-    cell += one if value >= edges[cell + one] else np.uint64(0)
-    while value >= edges[cell + one]:
-        cell += one
-    return cell
+    altitude = r - radii[0]
+    if altitude < first_altitude:
+        return 0
+    entry = layer_entry(layer_ratio(altitude, first_altitude))
+    layer = int(tables.layers[min(entry, tables.layers.shape[0] - 1)])
+    while r >= radii[layer + 1]:
+        layer += 1
+    return layer
 
 
 @inlined
 def _entry(table, place):
     """Return the entry at `place`; what is not a number has one as well, not one outside the table."""
-    return np.uint64(min(table.shape[0] - 1, max(0, place)))
+    return min(table.shape[0] - 1, max(0, int(place)))
+
+
+@inlined
+def cell_from(edges, guesses, entry, value):
+    """Return the cell of `value` between `edges`, by the `entry` of its `guesses` at the place of `value`.
+
+    For many values in a row: numbers without a sign spare numba the look whether an index counts from the end, and the
+    first step is no branch, since which of two cells it is nobody can guess. A third one is seldom met. Where one value
+    is looked up amid other work, waiting for that step costs more than a wrong guess.
+    """
+    cell, one = np.uint64(guesses[entry]), np.uint64(1)
+    cell += one if value >= edges[cell + one] else np.uint64(0)
+    while value >= edges[cell + one]:
+        cell += one
+    return cell

@@ -185,7 +185,7 @@ def _turn_velocity(lanes, place, velocity, rate, sine, cosine):
 def sample_hops(lanes, motion, cells, moving):
     """Set the next sample of every lane and go on to the one after it; velocities are set only if `moving`.
 
-    Where its cell is looked up is left in rows `LAYER`, `ROW` and `COLUMN`: what `layer_ratio` gives, and entries of
+    Where its cell is looked up is left in rows `LAYER`, `ROW` and `COLUMN`: what `layer_entry` takes, and entries of
     tables in the low bits of the others.
     """
     for lane in range(WIDTH):
@@ -272,7 +272,7 @@ def _place_in_cells(lanes, lane, cells):
     turned = turn(lane_value(lanes, SAMPLE + lane), lane_value(lanes, SAMPLE + Y + lane))
     set_lane_value(lanes, LATITUDE_SINE + lane, sine)
     set_lane_value(lanes, TURN + lane, turned)
-    set_lane_value(lanes, LAYER + lane, layer_ratio(r - cells.radius, cells.first_altitude))
+    set_lane_value(lanes, LAYER + lane, max(1.0, layer_ratio(r - cells.radius, cells.first_altitude)))
     set_lane_value(lanes, ROW + lane, _entry(cells.tables.rows, row_place(cells.tables, sine)))
     set_lane_value(lanes, COLUMN + lane, _entry(cells.tables.columns, column_place(cells.tables, turned)))
     set_lane_value(lanes, GROUND_CONTENT + lane, content * (shrink * shrink))
