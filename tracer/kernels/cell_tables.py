@@ -41,12 +41,14 @@ def make_tables(radii: np.ndarray, first_altitude: float, rows: int, columns: in
     turns = np.where(quarters % 1.0 == 0.0, quarters, turns)
     sines[-1], turns[-1] = np.inf, np.inf
     ratios = _ratios((radii[-1] - radii[0]) / first_altitude)
+    # Ratios, and radii beside a low first edge, are rounded: a guess must not be the cell above.
+    entries = radii[0] + first_altitude * ratios * (1.0 - 1e-12) - 2.0 * np.spacing(radii[-1])
     return CellTables(
         sines,
         _guesses(sines, np.linspace(-1.0, 1.0, GUESSES_PER_CELL * rows + 1)),
         turns,
         _guesses(turns, np.linspace(0.0, 4.0, GUESSES_PER_CELL * columns + 1)),
-        _guesses(radii[:-1], radii[0] + first_altitude * ratios * (1.0 - 1e-12)),
+        _guesses(radii[:-1], entries),
     )
 
 

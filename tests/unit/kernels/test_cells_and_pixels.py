@@ -6,6 +6,7 @@ import pytest
 from tracer.engine.kernel_world import kernel_world
 from tracer.engine.runspec.load import load_run
 from tracer.engine.scene import build_scene
+from tracer.kernels.cell_tables import LOG_DIGITS, MANTISSA, ONE, make_tables
 from tracer.kernels.cells import altitude_cell, image_pixel, latitude_cell, local_time_cell
 from tracer.kernels.scoring import mean_survival_time
 
@@ -107,3 +108,15 @@ def test_survival_time_is_the_integral_of_survival():
     assert mean_survival_time(0.01, 500.0) == pytest.approx(expected, rel=1e-9)
     assert mean_survival_time(0.0, 500.0) == 500.0
     assert mean_survival_time(1e-18, 500.0) == pytest.approx(500.0, rel=1e-14)
+
+
+@pytest.mark.parametrize("first", [1e-3, 1.0, 1e3])
+def test_guesses_are_never_above_the_cell_however_low_it_is(first):
+    # Of 1 mm beside 6,000 km a part in a million millions is lost in rounding.
+    radii = 6e6 + np.concatenate([[0.0], np.geomspace(first, 1e5, 30)])
+    tables = make_tables(radii, first, 18, 24)
+    for entry in range(len(tables.layers)):
+        ratio = np.int64((entry << (MANTISSA - LOG_DIGITS)) + (ONE << MANTISSA)).view(np.float64)
+        just_below = np.nextafter(6e6 + first * ratio, 0.0)
+        assert tables.layers[entry] <= max(0, np.searchsorted(radii[:-1], just_below, side="right") - 1)
+    assert tables.layers[0] == 0
