@@ -181,9 +181,9 @@ def test_a_jet_down_the_shadows_axis_shines_again_behind_the_umbras_tip(traced):
     assert np.count_nonzero(beyond) > 10
     expected = np.array([2.0 * np.mean([annular_light(r) for r in np.linspace(*pair, 50)]) for pair in edges])
     # N samples lie evenly in a cell, over which the light rises nearly linearly: their mean scatters by the rise over
-    # sqrt(12 N). Every atom is sampled in at least every third radius: a step at most 16 times, and up to the outer
-    # sphere there are 35 radii behind the tip. Four of these: false alarm 6e-5 a cell.
-    samples = ATOMS / 3.0
+    # sqrt(12 N). A step is sampled once for each whole quarter of a radius, 16 times at the most: up to 8 radii a step,
+    # every atom twice a cell or oftener. Four of these: false alarm 6e-5 a cell.
+    samples = 2.0 * ATOMS
     rise = 2.0 * np.array([annular_light(high) - annular_light(low) for low, high in edges])
     allowed = 4.0 * rise / math.sqrt(12.0 * samples) + 1e-3 * expected
     assert np.all(np.abs(found - expected)[beyond] < allowed[beyond])

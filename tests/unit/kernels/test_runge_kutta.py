@@ -98,24 +98,68 @@ def test_dense_output_has_fourth_order(part):
         assert weights @ stages == pytest.approx(part**order / density, rel=1e-13)
 
 
-def test_dense_output_has_the_least_error_of_fifth_order():
-    # Squared error of all trees' terms over their symmetry, over the step; what may be added without loss of order is
-    # the error row. By this the pair of Dormand & Prince has the dense output that is usually taken with it.
-    symmetries = (24, 2, 2, 1, 2, 6, 1, 2, 1)
+SYMMETRIES = (24, 2, 2, 1, 2, 6, 1, 2, 1)
+"""Of the trees of five nodes: how many orders of their branches are the same."""
+
+DORMAND_PRINCE = (
+    (),
+    (1 / 5,),
+    (3 / 40, 9 / 40),
+    (44 / 45, -56 / 15, 32 / 9),
+    (19372 / 6561, -25360 / 2187, 64448 / 6561, -212 / 729),
+    (9017 / 3168, -355 / 33, 46732 / 5247, 49 / 176, -5103 / 18656),
+    (35 / 384, 0.0, 500 / 1113, 125 / 192, -2187 / 6784, 11 / 84),
+)
+"""Dormand & Prince (1980), J. Comput. Appl. Math. 6, 19, RK5(4)7M."""
+
+
+def best_quartic(a, error, quartic):
+    """Return the quartic row, of all that keep the fourth order, with the least error of fifth order over the step.
+
+    That is the squared error of all trees' terms over their symmetry, integrated; `quartic` plus any part of the
+    `error` row has fourth order.
+    """
+    c = a.sum(axis=1)
+    weights = (
+        *(c**4, c**2 * (a @ c), c * (a @ c**2), c * (a @ (a @ c)), (a @ c) ** 2, a @ c**3),
+        *(a @ (c * (a @ c)), a @ (a @ c**2), a @ (a @ (a @ c))),
+    )
     parts, shares = np.polynomial.legendre.leggauss(12)
     parts = 0.5 * (parts + 1.0)
     rest = 1.0 - parts
-    bend, end = UNITS[0] - B, B - UNITS[6]
+    b = a[6]
+    bend, end = UNITS[0] - b, b - UNITS[6]
 
-    def error(more):
-        quartic = QUARTIC + more * ERROR
+    def size(more):
         total = 0.0
-        for (_, density, stages), symmetry in zip(TREES[8:], symmetries, strict=True):
-            outer = bend @ stages + parts * ((end - bend) @ stages + rest * (quartic @ stages))
-            value = parts * (B @ stages + rest * outer)
+        for stages, (_, density, _), symmetry in zip(weights, TREES[8:], SYMMETRIES, strict=True):
+            inner = (end - bend) @ stages + rest * ((quartic + more * error) @ stages)
+            value = parts * (b @ stages + rest * (bend @ stages + parts * inner))
             total += np.sum(shares * ((value - parts**5 / density) / symmetry) ** 2)
         return total
 
     # A parabola: its vertex from three values.
-    low, middle, high = error(-1.0), error(0.0), error(1.0)
-    assert 0.5 * (low - high) / (low - 2.0 * middle + high) == pytest.approx(0.0, abs=1e-9)
+    low, middle, high = size(-1.0), size(0.0), size(1.0)
+    return quartic + 0.5 * (low - high) / (low - 2.0 * middle + high) * error
+
+
+def test_dense_output_has_the_least_error_of_fifth_order():
+    np.testing.assert_allclose(best_quartic(A, ERROR, QUARTIC), QUARTIC, rtol=1e-9, atol=1e-12)
+
+
+def test_the_same_rule_gives_the_dense_output_that_is_usual_with_another_pair():
+    # Hairer, Norsett & Wanner (1993), section II.6, the program DOPRI5: its row of d.
+    a = np.array([[*row, *[0.0] * (7 - len(row))] for row in DORMAND_PRINCE])
+    error = np.array([71 / 57600, 0.0, -71 / 16695, 71 / 1920, -17253 / 339200, 22 / 525, -1 / 40])
+    usual = np.array(
+        [
+            -12715105075 / 11282082432,
+            0.0,
+            87487479700 / 32700410799,
+            -10690763975 / 1880347072,
+            701980252875 / 199316789632,
+            -1453857185 / 822651844,
+            69997945 / 29380423,
+        ]
+    )
+    np.testing.assert_allclose(best_quartic(a, error, usual + 0.3 * error), usual, rtol=1e-8, atol=1e-12)
